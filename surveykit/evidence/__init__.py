@@ -1,1 +1,1 @@
-
+"""From records to numbers: pass estimates, surfaces with uncertainty, differences, changes."""

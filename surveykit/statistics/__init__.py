@@ -1,1 +1,1 @@
-
+"""Statistics on plain arrays: correlated series, pooled passes, shared draws and verdicts."""

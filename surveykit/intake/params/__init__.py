@@ -1,1 +1,24 @@
+"""Parameter files: strict reading, models, located messages, cross checks and their schema."""
 
+from surveykit.intake.params.amounts import Amount, Uncertain
+from surveykit.intake.params.campaign import Campaign, Parameters
+from surveykit.intake.params.instruments import Calibration, Channel, Instrument
+from surveykit.intake.params.loading import (
+    is_kit,
+    load,
+    load_kit,
+    load_mapping,
+    read_plain,
+    refuse_other_sections,
+)
+from surveykit.intake.params.paths import find_root, inside
+from surveykit.intake.params.schema import campaign_schema, instruments_schema, write_schemas
+from surveykit.intake.params.sections import Clock, LoggerUse, Watch
+from surveykit.intake.params.settings import SettingRow, Settings
+
+__all__ = [
+    "Amount", "Calibration", "Campaign", "Channel", "Clock", "Instrument", "LoggerUse",
+    "Parameters", "SettingRow", "Settings", "Uncertain", "Watch", "campaign_schema", "find_root",
+    "inside", "instruments_schema", "is_kit", "load", "load_kit", "load_mapping", "read_plain",
+    "refuse_other_sections", "write_schemas",
+]

@@ -1,0 +1,81 @@
+"""The commands. Heavy imports come late, so that `--help` answers at once."""
+
+from __future__ import annotations
+
+import argparse
+import sys
+from pathlib import Path
+
+DONE, BUG, USER = 0, 1, 2
+
+
+def main(arguments: list[str] | None = None) -> int:
+    """Run one command; 0 done, 2 the input is at fault, 1 a bug."""
+    parser = argparse.ArgumentParser(
+        prog="surveykit",
+        description="From a day's logger files and a field sheet to a report with uncertainties.")
+    commands = parser.add_subparsers(dest="command", required=True, metavar="COMMAND")
+    for name, words in (("run", "run everything from the raw files and write the report"),
+                        ("check", "read parameters, field sheet and files; list every fault")):
+        one = commands.add_parser(name, help=words, description=words)
+        one.add_argument("files", nargs="+", type=Path, metavar="FILE",
+                         help="parameter file of a campaign, such as params/ID.yml")
+    new = commands.add_parser("new", help="write a parameter file and an empty field sheet",
+                              description="write a parameter file and an empty field sheet")
+    new.add_argument("name", metavar="ID",
+                     help="name of the campaign: lower-case letters, digits and -")
+    asked = parser.parse_args(arguments)
+    if asked.command == "new":
+        return _told(lambda: _new(asked.name))
+    each = _run if asked.command == "run" else _check
+    return max([_told(lambda file=file: each(file)) for file in asked.files])
+
+
+def _told(work: object) -> int:
+    """Call `work`; print the user's faults, one line each, and return the exit code."""
+    from surveykit.core import InputError
+
+    try:
+        work()  # type: ignore[operator]
+    except InputError as error:
+        for fault in error.faults:
+            print(fault, file=sys.stderr)  # noqa: T201
+        return USER
+    return DONE
+
+
+def _run(path: Path) -> None:
+    from surveykit.intake.params import is_kit, read_plain
+
+    if is_kit(read_plain(path)):
+        print(f"{path}: a kit of instruments, nothing to run; passed over")  # noqa: T201
+        return
+    from surveykit.runner import run
+
+    report = run(path, lambda line: print(line, flush=True))  # noqa: T201
+    print(f"report: {_near(report)}")  # noqa: T201
+
+
+def _check(path: Path) -> None:
+    from surveykit.checking import check
+
+    for line in check(path):
+        print(line)  # noqa: T201
+
+
+def _new(name: str) -> None:
+    from surveykit.starting import start
+
+    for line in start(name, Path.cwd()):
+        print(line)  # noqa: T201
+
+
+def _near(path: Path) -> Path:
+    try:
+        return path.resolve().relative_to(Path.cwd().resolve())
+    except ValueError:
+        return path
+
+
+if __name__ == "__main__":
+    sys.exit(main())

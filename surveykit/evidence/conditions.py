@@ -1,0 +1,170 @@
+"""What the day was like during a pass: weather, irradiance, sky, dark readings of the heads."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+
+from surveykit.accounting import BIT, NS, Quality
+from surveykit.core import FloatArray, Input
+from surveykit.intake.capped import windows
+from surveykit.intake.fieldsheet import Sheet
+from surveykit.intake.loggers import Records
+from surveykit.intake.params import Channel, Parameters
+from surveykit.intake.passes import Pass
+from surveykit.physics.sun import Sun, sun_track
+
+
+@dataclass(frozen=True)
+class Dark:
+    """Dark readings of one channel: times, means and the uncertainty of what is subtracted."""
+
+    time_ns: FloatArray
+    value: FloatArray
+    u: float
+
+
+@dataclass(frozen=True)
+class Sky:
+    """Irradiance [W m-2], clear index [1] and class of a stretch of time.
+
+    `kind` is clear, diffuse, mixed, or "" where no shortwave head watched the sky.
+    """
+
+    irradiance_w_m2: float = float("nan")
+    clear_index: float = float("nan")
+    kind: str = ""
+
+
+@dataclass(frozen=True)
+class Day:
+    """Everything that the estimates of one campaign draw upon."""
+
+    parameters: Parameters
+    records: dict[str, Records]
+    sheet: Sheet
+    quality: Quality
+
+    @property
+    def name(self) -> str:
+        """Name of the campaign; the first part of the scope ids that belong to this day."""
+        return self.parameters.campaign.campaign
+
+    @cached_property
+    def channels(self) -> dict[str, list[Channel]]:
+        """Channels of the campaign's loggers by quantity, in the order of the loggers."""
+        out: dict[str, list[Channel]] = {}
+        for logger in self.records:
+            for channel in self.parameters.kit[logger].channels(logger):
+                out.setdefault(channel.quantity, []).append(channel)
+        return out
+
+    def readings(self, channel: Channel, start_ns: int, stop_ns: int,
+                 *, through: tuple[str, ...] = ()) -> tuple[FloatArray, FloatArray]:
+        """Return time [ns] and good readings [SI] of a channel within a stretch of time."""
+        log = self.records[channel.logger]
+        first, last = np.searchsorted(log.time_ns[:log.n_timed], [start_ns, stop_ns])
+        mask = self.quality.masks[channel.logger][channel.column][first:last]
+        for reason in through:
+            mask = mask & ~BIT[reason]
+        good = mask == 0
+        return log.time_ns[first:last][good], log.channels[channel.column][first:last][good]
+
+    def weather(self, quantity: str, this: Pass) -> Input | None:
+        """Return a weather quantity [SI] during a pass, or None where nothing tells it.
+
+        Logged readings inside the pass are averaged; otherwise the neighbours are interpolated,
+        never beyond the first and last by more than `temperature.weather_reach_s`.
+        """
+        reach = int(self.parameters.campaign.settings.temperature.weather_reach_s * NS)
+        middle = (this.start_ns + this.stop_ns) / 2
+        for channel in self.channels.get(quantity, []):
+            time, value = self.readings(channel, this.start_ns - reach, this.stop_ns + reach)
+            during = (time >= this.start_ns) & (time < this.stop_ns)
+            if during.any() or time.size:
+                mean = float(value[during].mean() if during.any()
+                             else np.interp(middle, time, value))
+                u = float(np.hypot(channel.u_offset, channel.u_gain * mean))
+                return Input(quantity, mean, u, channel.offset_scope,
+                             f"{quantity.replace('_', ' ')}, logged")
+        rows = [e for e in self.sheet.entries if e.entry == "weather" and e.quantity == quantity]
+        if not rows:
+            return None
+        time = np.array([e.start_ns for e in rows], dtype=np.float64)
+        if not time[0] - reach <= middle <= time[-1] + reach:
+            return None
+        value = float(np.interp(middle, time, [e.reading for e in rows]))
+        u = max(e.reading_u for e in rows)
+        return Input(quantity, value, u, f"{self.name}:hand-read {quantity}",
+                     f"{quantity.replace('_', ' ')}, read by hand")
+
+    def dark(self, channel: Channel) -> Dark | None:
+        """Return the channel's dark readings (sheet rows `dark`), or None where there is none."""
+        spans = windows(self.sheet, "dark", channel.logger, channel.quantity)
+        edge = int(self.parameters.campaign.settings.passes.sheet_u_s * NS)
+        times, means, errors = [], [], []
+        for start, stop in spans:
+            time, value = self.readings(
+                channel, start + edge, stop - edge,
+                through=("capped", "sun too low", "too little light", "out of range"))
+            if time.size >= 3:
+                times.append(float(time.mean()))
+                means.append(float(np.median(value)))
+                errors.append(float(value.std(ddof=1) / np.sqrt(time.size)))
+        if not times:
+            return None
+        order = np.argsort(times)
+        spread = float(np.ptp(means)) / np.sqrt(12.0)
+        return Dark(np.array(times)[order], np.array(means)[order],
+                    float(np.hypot(np.mean(errors), spread)))
+
+    def without_dark(self, channel: Channel, time_ns: FloatArray,
+                     values: FloatArray) -> FloatArray:
+        """Return readings with the interpolated dark reading of the head taken off."""
+        dark = self.darks[channel.logger, channel.column]
+        if dark is None:
+            return values
+        return values - np.interp(time_ns, dark.time_ns, dark.value)
+
+    @cached_property
+    def darks(self) -> dict[tuple[str, str], Dark | None]:
+        """Dark readings of every channel, found once."""
+        return {(c.logger, c.column): self.dark(c)
+                for some in self.channels.values() for c in some}
+
+    def sun(self, time_ns: FloatArray) -> Sun:
+        """Return the sun's track at the site."""
+        site = self.parameters.campaign.site
+        return sun_track(np.asarray(time_ns, dtype=np.int64), site.latitude, site.longitude,
+                         site.elevation_m)
+
+    def sky(self, start_ns: int, stop_ns: int) -> Sky:
+        """Return irradiance and sky class of a stretch: how much of a clear sky, how steady.
+
+        clear: at least `quality.clear_index_min` of the modelled clear sky and steady within
+        `quality.steady_max` about a straight line; diffuse: at most `overcast_index_max`.
+        """
+        quality = self.parameters.campaign.settings.quality
+        for channel in self.channels.get("shortwave_down", []):
+            time, value = self.readings(channel, start_ns, stop_ns, through=("sun too low",))
+            if time.size < 2:
+                continue
+            value = self.without_dark(channel, time, value)
+            model = float(self.sun(time).clear_sky_w_m2.mean())
+            mean = float(value.mean())
+            if not model > 0:
+                continue
+            index = mean / model
+            seconds = (time - time[0]) / NS
+            scatter = float(np.std(value - np.polyval(np.polyfit(seconds, value, 1), seconds)))
+            steady = scatter <= quality.steady_max * mean
+            kind = "mixed"
+            if index >= quality.clear_index_min and steady:
+                kind = "clear"
+            elif index <= quality.overcast_index_max:
+                kind = "diffuse"
+            return Sky(mean, index, kind)
+        return Sky()
+

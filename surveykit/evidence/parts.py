@@ -1,0 +1,104 @@
+"""What the estimates of all quantities share: gain and offset inputs, raw series, refusals."""
+
+from __future__ import annotations
+
+import hashlib
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+
+from surveykit.core import FloatArray, Input
+from surveykit.evidence.conditions import Day
+from surveykit.intake.params import Channel
+from surveykit.intake.passes import Pass
+
+HALF_WIDTH = 1 / np.sqrt(3.0)  # standard uncertainty of a rectangular distribution of half-width 1
+
+
+class NotEvaluated(Exception):  # noqa: N818 - a refusal with a reason, not an error
+    """A pass lacks what its quantity needs; the text says what."""
+
+
+@dataclass(frozen=True)
+class PassValue:
+    """What a maker returns: raw and final value, scatter within the pass, inputs, flags."""
+
+    value_raw: float
+    value: float
+    u_within: float
+    n_effective: float
+    inputs: tuple[Input, ...]
+    flags: tuple[str, ...]
+    steps: tuple[tuple[str, float], ...]
+    dwells: tuple[tuple[int, int, float, float, int], ...] = ()
+
+
+def series(day: Day, this: Pass, quantity: str) -> tuple[FloatArray, FloatArray]:
+    """Return time [ns] and readings [SI] of one channel at the pass's good records.
+
+    Readings of another logger are those nearest in time to the main logger's; dark readings
+    are taken off where the sheet has them.
+    """
+    channel = this.channels[quantity]
+    records = day.quality.passes[this.name]
+    log = day.records[channel.logger]
+    index = records.index if channel.logger == records.logger else records.partners[channel.logger]
+    time = log.time_ns[index]
+    return time, day.without_dark(channel, time, log.channels[channel.column][index])
+
+
+def fixed(name: str, value: float) -> Input:
+    """Return an input without uncertainty of its own."""
+    return Input(name, float(value), 0.0, "", "")
+
+
+def gain(channel: Channel, name: str) -> Input:
+    """Return the relative gain error of a channel's calibration."""
+    return Input(name, 0.0, channel.u_gain, channel.gain_scope,
+                 f"calibration gain of {channel.logger}, {channel.column}")
+
+
+def offset(channel: Channel, name: str) -> Input:
+    """Return the offset error of a channel's calibration [the channel's SI unit]."""
+    return Input(name, 0.0, channel.u_offset, channel.offset_scope,
+                 f"calibration offset of {channel.logger}, {channel.column}")
+
+
+def zero(day: Day, channel: Channel, name: str, hidden_u: float) -> Input:
+    """Return the error of a channel's zero: dark readings where taken, else the calibration's.
+
+    `hidden_u` is what a cap cannot show (the head's own zero offset under an open sky).
+    """
+    dark = day.darks[channel.logger, channel.column]
+    if dark is None:
+        return Input(name, 0.0, float(np.hypot(channel.u_offset, hidden_u)), channel.offset_scope,
+                     f"zero of {channel.logger}, {channel.column} (no dark reading)")
+    return Input(name, 0.0, float(np.hypot(dark.u, hidden_u)),
+                 f"{day.name}:{channel.logger}:{channel.column}:zero",
+                 f"zero of {channel.logger}, {channel.column} (dark readings)")
+
+
+def surface_scope(word: str, surface: str, entry: Any) -> str:
+    """Return the scope id of a declared property: shared while the declared entry is the same."""
+    digest = hashlib.sha256(repr(entry).encode()).hexdigest()[:12]
+    return f"{word}:{surface}:{digest}"
+
+
+def calibration_flags(day: Day, channels: list[Channel]) -> tuple[str, ...]:
+    """Return flags about the calibrations behind a pass."""
+    flags = []
+    for channel in channels:
+        calibration = channel.calibration
+        if calibration is None:
+            flags.append("no calibration stated")
+        elif calibration.expired_on(day.parameters.campaign.date):
+            flags.append("calibration expired")
+    return tuple(dict.fromkeys(flags))
+
+
+def need(value: Input | None, what: str) -> Input:
+    """Return an input, or refuse the pass with the name of what is missing."""
+    if value is None:
+        raise NotEvaluated(f"{what} is missing")
+    return value

@@ -1,0 +1,98 @@
+"""The plain facts of a run, for the page and for run.json: what was used, set and left out."""
+
+from __future__ import annotations
+
+import platform
+from importlib.metadata import version
+from typing import Any
+
+from surveykit.opening import Survey
+
+PACKAGES = ("surveykit", "numpy", "scipy", "pandas", "pvlib", "pydantic", "PyYAML", "matplotlib",
+            "seaborn", "papermill", "nbconvert", "ipykernel")
+
+NOT_CORRECTED = {
+    "temperature": (
+        "Cooling of sunlit ground under a contact head, and gaps under its rim: both stand in the "
+        "uncertainty of contact temperatures. Ground that stores little heat (bark, dry fibre) can "
+        "cool more than that: prefer stand-off there.",
+        "The sky's infrared radiance is modelled from air temperature and humidity, not measured.",
+        "The day's course between passes: half of what the control shows stands in the differences "
+        "of temperature; surfaces are means at their own passes' times."),
+    "albedo": (
+        "The head's own shade and the surroundings in its view: their sizes stand in the "
+        "uncertainty of each albedo.",
+        "The ratio of the two heads' gains was not checked by swapping them."),
+    "ndvi": (
+        "The ratio of the heads' gains was not checked by a panel or by swapping them, and the "
+        "surroundings in their view stand in the uncertainty.",),
+}
+
+
+def collect(survey: Survey) -> dict[str, Any]:
+    """Return the facts of a run; nothing in it depends on the machine's folders or on the clock."""
+    campaign, parameters = survey.campaign, survey.parameters
+    statistics, site = campaign.settings.statistics, campaign.site
+    path = survey.inputs[0]["path"]
+    quantities = _quantities(survey)
+    return {
+        "campaign": campaign.campaign, "title": campaign.title, "date": campaign.date,
+        "site": {"name": site.name, "latitude": site.latitude, "longitude": site.longitude,
+                 "elevation_m": site.elevation_m, "time_zone": site.time_zone},
+        "time_zone": site.time_zone, "conditions": _conditions(survey), "params_file": path,
+        "inputs": list(survey.inputs), "versions": versions(), "seed": statistics.seed,
+        "draws": statistics.draws, "coverage": statistics.coverage,
+        "settings": [dict(row) for row in campaign.settings.listing()],
+        "instruments": _instruments(survey),
+        "surfaces": {name: surface.label for name, surface in campaign.surfaces.items()},
+        "control": campaign.comparison.control or "",
+        "relevant_change": campaign.relevant_change.model_dump(),
+        "earlier": [p.stem for p in parameters.earlier], "notes": list(parameters.notes),
+        "not_corrected": [line for q, lines in NOT_CORRECTED.items() if q in quantities
+                          for line in lines],
+        "rerun": f"surveykit run {path}",
+    }
+
+
+def versions() -> dict[str, str]:
+    """Return the versions of Python and of the packages that shape the numbers and the page."""
+    return {"Python": platform.python_version()} | {name: version(name) for name in PACKAGES}
+
+
+def _quantities(survey: Survey) -> set[str]:
+    held = {c.quantity for name in survey.campaign.loggers
+            for c in survey.parameters.channels(name)}
+    words = {"brightness_temperature": "temperature", "longwave_up": "temperature",
+             "shortwave_up": "albedo", "red_up": "ndvi"}
+    return {words[q] for q in held if q in words}
+
+
+def _conditions(survey: Survey) -> list[str]:
+    stated = survey.campaign.conditions
+    lines = []
+    if stated.sky:
+        lines.append(f"Sky noted as {stated.sky}.")
+    if stated.rain_48h_mm is not None:
+        lines.append("No rain in the 48 h before." if stated.rain_48h_mm == 0 else
+                     f"{stated.rain_48h_mm:g} mm of rain in the 48 h before.")
+    return lines
+
+
+def _instruments(survey: Survey) -> list[dict[str, Any]]:
+    rows = []
+    for name in survey.campaign.loggers:
+        instrument = survey.parameters.kit[name]
+        for c in survey.parameters.channels(name):
+            calibration = c.calibration
+            status = "not stated"
+            if calibration is not None:
+                expired = calibration.expired_on(survey.campaign.date)
+                status = "expired" if expired else "valid on the day"
+            rows.append({
+                "logger": name, "serial": instrument.serial or "", "column": c.column,
+                "quantity": c.quantity, "unit": c.unit,
+                "calibration": calibration.id if calibration else "",
+                "calibration_date": calibration.date if calibration else "",
+                "gain": c.gain.value, "u_gain": c.u_gain, "offset": c.offset.value,
+                "u_offset": c.u_offset, "status": status})
+    return rows

@@ -1,0 +1,260 @@
+"""Loggers: the raw files of one logger -> records in UTC and SI, every line accounted for."""
+
+from __future__ import annotations
+
+import csv
+import hashlib
+import os
+from collections.abc import Sequence
+from concurrent.futures import ThreadPoolExecutor
+from dataclasses import dataclass
+from decimal import Decimal, InvalidOperation
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+from surveykit.core import BoolArray, FloatArray, InputError, IntArray
+from surveykit.intake import dialect
+from surveykit.intake.params.instruments import Channel, Instrument, Layout
+from surveykit.intake.records import MARKS, NO_TIME_NS, FileFacts, Records, in_order
+from surveykit.intake.times import NS, read_times, to_utc
+
+__all__ = ["MARKS", "NO_TIME_NS", "FileFacts", "Records", "expand_files", "read_logger"]
+
+SAMPLE_LINES = 200
+
+
+@dataclass(frozen=True)
+class _File:
+    facts: FileFacts
+    time_ns: IntArray
+    line: NDArray[np.int32]
+    stepped_back: BoolArray
+    bad_line: BoolArray
+    numbers: dict[str, dialect.Numbers]
+    step: dict[str, float]
+
+
+def expand_files(data_folder: Path, patterns: Sequence[str]) -> list[Path]:
+    """Return the files in `data_folder` that match the patterns, each once, sorted by path.
+
+    Raises
+    ------
+    InputError
+        For each pattern that matches no file; the message lists what the folder holds.
+    """
+    found: set[Path] = set()
+    faults = []
+    for pattern in patterns:
+        matches = [path for path in data_folder.glob(pattern) if path.is_file()]
+        found.update(matches)
+        if not matches:
+            held = sorted(path.name for path in data_folder.glob("*") if path.is_file())
+            listing = ", ".join(held[:20]) + (", ..." if len(held) > 20 else "")
+            state = f"it holds {listing or 'no files'}" if data_folder.is_dir() else \
+                "the folder does not exist"
+            faults.append(f"{data_folder.name}: no file matches {pattern!r}; {state}")
+    if faults:
+        raise InputError(*faults)
+    return sorted(found, key=lambda path: path.as_posix())
+
+
+def read_logger(name: str, instrument: Instrument, paths: Sequence[Path], root: Path) -> Records:
+    """Return all records of one logger.
+
+    Parameters
+    ----------
+    name : str
+        The logger's name in the parameter file.
+    instrument : Instrument
+        Its entry in the kit: layout, times and columns.
+    paths : sequence of Path
+        Its raw files in any order; `.gz` is unpacked.
+    root : Path
+        The project folder; `Records.files` and messages give paths under it.
+
+    Raises
+    ------
+    InputError
+        One sentence for each file that cannot be read: missing or empty, without a declared
+        column, not in the declared encoding or format, a time that the zone lacks or has twice.
+    """
+    channels = instrument.channels(name)
+    files, faults = [], []
+    for path in sorted(set(paths), key=lambda path: path.as_posix()):
+        try:
+            files.append(_read_file(path, root, instrument, channels))
+        except InputError as error:
+            faults += error.faults
+    if not faults and not any(file.facts.records for file in files):
+        named = ", ".join(file.facts.path for file in files) or "no file"
+        faults.append(f"{named}: logger {name!r} has no records; name its files under "
+                      f"loggers.{name}.files")
+    if faults:
+        raise InputError(*faults)
+    return _joined(name, instrument, channels, files)
+
+
+def _read_file(path: Path, root: Path, instrument: Instrument,
+               channels: Sequence[Channel]) -> _File:
+    where = path.relative_to(root).as_posix() if path.is_relative_to(root) else path.name
+    layout = instrument.layout
+    try:
+        data = dialect.open_bytes(path)
+        header = dialect.read_header(data, layout, where)
+    except (OSError, EOFError) as error:
+        raise InputError(f"{where}: cannot be read ({getattr(error, 'strerror', None) or error}); "
+                         "copy it again from the logger") from None
+    time_at, *numbers_at = _places(
+        header, (instrument.time.column, *(c.column for c in channels)), layout, where)
+    fields, iso = len(header.columns), instrument.time.format == "iso8601"
+
+    def read(ends: tuple[int, int]) -> tuple:
+        lines = dialect.whole_lines(data[ends[0]:ends[1]], fields, layout)
+        texts, numbers = dialect.read_table(lines.text, fields, time_at, numbers_at, iso, layout)
+        return lines.at.astype(np.int32), lines.bad, lines.physical, \
+            *read_times(texts, instrument.time.format), numbers
+
+    def digest() -> str:
+        with path.open("rb") as file:
+            return hashlib.file_digest(file, "sha256").hexdigest()
+
+    with ThreadPoolExecutor(min(4, os.cpu_count() or 1)) as pool:
+        sha256 = pool.submit(digest)
+        parts = list(pool.map(read, dialect.blocks(data, header.start)))
+    first = header.line + 1 + np.cumsum([0, *(part[2] for part in parts)])
+    line = _chain([part[0] + np.int32(first[i]) for i, part in enumerate(parts)], np.int32)
+    bad_line = _chain([part[1] for part in parts], np.bool_)
+    wall_ns = _chain([part[3] for part in parts], np.int64)
+    offset_s = _chain([part[4] for part in parts], np.int32)
+    numbers = {
+        channel.column: dialect.Numbers(
+            channel.to_si(_chain([part[5][at].values for part in parts], np.float64)),
+            _chain([part[5][at].unreadable for part in parts], np.bool_))
+        for channel, at in zip(channels, numbers_at, strict=True)}
+
+    def locate(rows: BoolArray) -> str:
+        return f"{where}, line {line[np.flatnonzero(rows)[0]]}"
+
+    _refuse_unlike(data, header, instrument, where, line, bad_line, wall_ns, time_at)
+    time_ns = to_utc(wall_ns, offset_s, instrument.time.zone, locate)
+    before = np.concatenate([[NO_TIME_NS], np.maximum.accumulate(time_ns)[:-1]]) \
+        if len(time_ns) else time_ns
+    sample = _sample(data, header, layout)
+    facts = FileFacts(where, sha256.result(), path.stat().st_size, len(line))
+    return _File(facts, time_ns, line, (time_ns < before) & (time_ns != NO_TIME_NS), bad_line,
+                 numbers, {channel.column: _step(sample, at, layout) * abs(channel.gain.value)
+                           for channel, at in zip(channels, numbers_at, strict=True)})
+
+
+def _chain(parts: list, kind: type) -> NDArray:
+    return parts[0] if len(parts) == 1 else np.concatenate([np.zeros(0, dtype=kind), *parts])
+
+
+def _places(header: dialect.Header, wanted: Sequence[str], layout: Layout,
+            where: str) -> list[int]:
+    faults = []
+    for i, column in enumerate(wanted):
+        count = header.columns.count(column)
+        key = f"columns.{column}" if i else "time.column"
+        if count == 0:
+            names = ", ".join(repr(name) for name in header.columns)
+            faults.append(
+                f"{where}, line {header.line}: no column {column!r} ({key}); the header with "
+                f"delimiter {layout.delimiter!r} has {names[:300] or 'nothing'}; check {key}, "
+                "layout.delimiter and layout.skip_lines")
+        elif count > 1:
+            faults.append(f"{where}, line {header.line}: {count} columns are named {column!r} "
+                          f"({key}); give each its own name in the logger's program")
+    if faults:
+        raise InputError(*faults)
+    return [header.columns.index(column) for column in wanted]
+
+
+def _refuse_unlike(data: dialect.Data, header: dialect.Header, instrument: Instrument, where: str,
+                   line: NDArray[np.int32], bad_line: BoolArray, wall_ns: IntArray,
+                   time_at: int) -> None:
+    """Refuse a file none of whose lines is as declared: then the declaration is at fault."""
+    layout = instrument.layout
+    if not len(line):
+        return
+    number = int(line[0])
+    text = _line(data, header, number).decode(layout.encoding, errors="replace").strip("\r")
+    if bad_line.all():
+        fields = next(csv.reader([text], delimiter=layout.delimiter), [])
+        what = (f"{len(fields)} fields where the header has {len(header.columns)}"
+                if len(fields) != len(header.columns) else
+                f"bytes that are not {layout.encoding}" if "\ufffd" in text else "stray bytes")
+        raise InputError(
+            f"{where}, line {number}: no line of the file can be read, this first one has {what}; "
+            "check layout.delimiter, layout.decimal, layout.encoding and layout.skip_lines")
+    if (wall_ns == NO_TIME_NS).all():
+        number = int(line[~bad_line][0])
+        text = _line(data, header, number).decode(layout.encoding, errors="replace")
+        cell = next(csv.reader([text], delimiter=layout.delimiter, skipinitialspace=True))[time_at]
+        raise InputError(
+            f"{where}, line {number}: no time of the file can be read, the first is {cell!r}; got "
+            f"time.format {instrument.time.format!r}, write iso8601 or the format the logger uses")
+
+
+def _line(data: dialect.Data, header: dialect.Header, number: int) -> bytes:
+    start = header.start
+    for _ in range(number - header.line - 1):
+        start = data.find(b"\n", start) + 1
+    end = data.find(b"\n", start)
+    return data[start:end if end >= 0 else len(data)]
+
+
+def _sample(data: dialect.Data, header: dialect.Header, layout: Layout) -> list[list[str]]:
+    start, lines = header.start, []
+    while start < len(data) and len(lines) < SAMPLE_LINES:
+        end = data.find(b"\n", start)
+        end = len(data) if end < 0 else end
+        lines.append(data[start:end].decode(layout.encoding, errors="replace"))
+        start = end + 1
+    rows = csv.reader(lines, delimiter=layout.delimiter)
+    return [row for row in rows if len(row) == len(header.columns)]
+
+
+def _step(sample: list[list[str]], at: int, layout: Layout) -> float:
+    """Return the step of the last digit printed in a column; NaN if no number is."""
+    codes = dialect.missing_codes(layout)
+    places = []
+    for row in sample:
+        cell = row[at].strip()
+        if cell in codes:
+            continue
+        try:
+            exponent = Decimal(cell.replace(layout.decimal, ".")).as_tuple().exponent
+        except InvalidOperation:
+            continue
+        if isinstance(exponent, int):
+            places.append(exponent)
+    return float(Decimal(1).scaleb(min(min(places), 0))) if places else float("nan")
+
+
+def _joined(name: str, instrument: Instrument, channels: Sequence[Channel],
+            files: list[_File]) -> Records:
+    time_ns = _chain([file.time_ns for file in files], np.int64)
+    bad_line = _chain([file.bad_line for file in files], np.bool_)
+    values: dict[str, FloatArray] = {}
+    unreadable: dict[str, BoolArray] = {}
+    for column in (channel.column for channel in channels):
+        values[column] = _chain([file.numbers[column].values for file in files], np.float64)
+        unreadable[column] = _chain([file.numbers[column].unreadable for file in files], np.bool_)
+    steps = np.array([[file.step[c.column] for c in channels] for file in files])
+    finest = [float(np.nanmin(column)) if np.isfinite(column).any() else float("nan")
+              for column in steps.T]
+    records = Records(
+        logger=name, time_ns=time_ns,
+        file=np.repeat(np.arange(len(files), dtype=np.int16), [len(f.line) for f in files]),
+        line=_chain([file.line for file in files], np.int32),
+        channels=values, unreadable=unreadable,
+        marks={"unreadable line": bad_line,
+               "unreadable time": (time_ns == NO_TIME_NS) & ~bad_line,
+               "time stepped back": _chain([file.stepped_back for file in files], np.bool_)},
+        files=tuple(file.facts for file in files),
+        resolution={c.column: finest[i] for i, c in enumerate(channels)},
+        interval_s=instrument.interval_s or float("nan"))
+    return in_order(records)

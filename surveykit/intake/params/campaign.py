@@ -1,0 +1,144 @@
+"""One campaign's parameters: the model of the file, and what loading it gives."""
+
+from __future__ import annotations
+
+from collections.abc import Hashable
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Annotated, Any, Literal
+
+from pydantic import Discriminator, Field, Tag
+
+from surveykit.intake.params.base import (
+    DATE_WRITE,
+    NAME_WRITE,
+    TEXT_WRITE,
+    DateText,
+    Name,
+    Strict,
+    Text,
+    key,
+)
+from surveykit.intake.params.instruments import Channel, Instrument
+from surveykit.intake.params.sections import (
+    Comparison,
+    Conditions,
+    LoggerUse,
+    RelevantChange,
+    Site,
+    Surface,
+    Watch,
+)
+from surveykit.intake.params.settings import Settings
+
+CAMPAIGN_PATTERN = r"^[a-z0-9][a-z0-9-]{0,63}$"
+LATER = "reserved for later work; leave it out"
+
+
+def _spelling(data: Any) -> Hashable:
+    return "<inline>" if isinstance(data, dict) else "<path>"
+
+
+Kit = Annotated[dict[Name, Instrument], Field(min_length=1)]
+
+
+class Campaign(Strict):
+    """Parameters of one campaign: one survey day at a site."""
+
+    RESERVED = dict.fromkeys(("crew", "notes", "interventions", "derived", "caution"), LATER)
+
+    format: Literal[1] = key("Format of this file.", default=1,
+                             write="1, the format this surveykit reads")
+    campaign: str = key("Its name, the file's name without .yml.", pattern=CAMPAIGN_PATTERN,
+                        write="lower-case letters, digits and -, at most 64, as the file's name")
+    title: Text = key("Title of the report.", write=TEXT_WRITE)
+    date: DateText = key("Day of the survey at the site.", write=DATE_WRITE)
+    site: Site = key("The site.", write="{name, latitude, longitude, elevation_m, time_zone}")
+    instruments: Annotated[
+        Annotated[Text, Tag("<path>")] | Annotated[Kit, Tag("<inline>")],
+        Discriminator(_spelling)] = key(
+        "The kit: a file, from the project folder, or its entries here.",
+        write="the path of the kit, such as params/instruments.yml")
+    data_folder: Text = key("Folder of the raw files, from the project folder.",
+                            write="a path such as data/mill-yard-2025-07-24")
+    field_sheet: Text = key("The field sheet, in data_folder.",
+                            write="a file name such as field_sheet.csv")
+    loggers: dict[Name, LoggerUse] = key(
+        "Files and clock of each logger used.", min_length=1,
+        write="at least one logger: its name in the kit, then {files, clock}")
+    surfaces: dict[Name, Surface] = key(
+        "The surfaces surveyed.", min_length=1,
+        write="at least one surface: its name, then {label, emissivity, around}")
+    conditions: Conditions = key("The weather as noted.", default_factory=Conditions,
+                                 write="{sky, rain_48h_mm}")
+    settings: Settings = key("Defaults of the method that are changed.",
+                             default_factory=Settings, write="keys of the settings")
+    comparison: Comparison = key("Comparison with earlier campaigns.",
+                                 default_factory=Comparison,
+                                 write="{earlier, control, relevant_change}")
+    watch: Watch = key("The clock of the field sheet.", default={}, validate_default=True,
+                       write="{offset_s, u_s}")
+
+    @property
+    def relevant_change(self) -> RelevantChange:
+        """The smallest differences that matter."""
+        return self.comparison.relevant_change
+
+
+@dataclass(frozen=True)
+class Parameters:
+    """A campaign's parameters, checked, with its kit.
+
+    `files` are the parameter file and the kit file, for hashing; `notes` say what is worth
+    knowing but no fault, such as a calibration that has run out.
+    """
+
+    path: Path
+    root: Path
+    campaign: Campaign
+    kit: dict[str, Instrument]
+    kit_path: Path | None
+    files: tuple[Path, ...]
+    notes: tuple[str, ...] = ()
+
+    @property
+    def name(self) -> str:
+        """The campaign's name."""
+        return self.campaign.campaign
+
+    def relative(self, path: Path) -> str:
+        """Return how a file of the project is called on the page: from the project folder."""
+        return path.resolve().relative_to(self.root.resolve()).as_posix()
+
+    @property
+    def settings(self) -> Settings:
+        """The campaign's settings."""
+        return self.campaign.settings
+
+    @property
+    def data_folder(self) -> Path:
+        """Folder of the raw files."""
+        return self.root / self.campaign.data_folder
+
+    @property
+    def sheet_path(self) -> Path:
+        """The field sheet."""
+        return self.data_folder / self.campaign.field_sheet
+
+    @property
+    def earlier(self) -> tuple[Path, ...]:
+        """Parameter files of the earlier campaigns."""
+        return tuple(self.root / text for text in self.campaign.comparison.earlier)
+
+    def channels(self, logger: str) -> tuple[Channel, ...]:
+        """Return the channels of one logger, defaults from the campaign's settings.
+
+        Raises
+        ------
+        KeyError
+            If the kit has no such logger.
+        """
+        return self.kit[logger].channels(logger, self.settings)
+
+
+__all__ = ["CAMPAIGN_PATTERN", "NAME_WRITE", "Campaign", "Kit", "Parameters"]

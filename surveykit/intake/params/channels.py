@@ -1,0 +1,89 @@
+"""Channels: the columns of the kit with all that holds for them, in SI."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+from numpy.typing import ArrayLike
+
+from surveykit.core import FloatArray
+from surveykit.intake.params.amounts import Amount, Uncertain
+from surveykit.intake.params.quantities import DEFAULT_U, PHYSICAL_UNITS
+from surveykit.intake.params.settings import Settings
+
+if TYPE_CHECKING:
+    from surveykit.intake.params.instruments import Bands, Calibration, Instrument
+
+
+@dataclass(frozen=True)
+class Channel:
+    """A column with all that holds for it, in SI: value = offset + gain * reading.
+
+    Gain and offset lead from the logged number straight to SI (K, W m-2, 1, Pa, m s-1); no
+    further conversion by `unit` is due. `u_gain` is relative, `u_offset` in SI; equal scopes share
+    an error. None means that the kit does not say.
+    """
+
+    logger: str
+    column: str
+    quantity: str
+    unit: str
+    gain: Uncertain
+    offset: Uncertain
+    u_gain: float
+    u_offset: float
+    gain_scope: str
+    offset_scope: str
+    calibration: Calibration | None
+    band_um: tuple[float, float] | None
+    half_angle_deg: float | None
+    time_constant_s: float | None
+    head_radius_m: float | None
+    bore_emissivity: Uncertain
+    emissivity_setting: float | None
+    band_centres_nm: Bands | None
+    band_widths_nm: Bands | None
+
+    def to_si(self, reading: ArrayLike) -> FloatArray:
+        """Return the readings in SI, NaN where they are."""
+        return self.offset.value + self.gain.value * np.asarray(reading, dtype=np.float64)
+
+
+def channel(name: str, header: str, entry: Instrument, settings: Settings) -> Channel:
+    """Return one column of the entry `name`; what it does not state itself, the entry states."""
+    column = entry.columns[header]
+
+    def stated(field: str) -> Any:
+        own = getattr(column, field)
+        return getattr(entry, field) if own is None else own
+
+    units = PHYSICAL_UNITS[column.quantity]
+    scale, shift = units.get(column.unit, next(iter(units.values())))
+    gain, offset = column.gain or Amount(value=1.0), column.offset or Amount(value=0.0)
+    u_gain, u_offset = column.u_gain, column.u_offset
+    if gain.u is not None:
+        u_gain = gain.u / abs(gain.value)
+    if offset.u is not None:
+        u_offset = offset.u
+    if u_gain is None and u_offset is None and column.quantity in DEFAULT_U:
+        u_offset = getattr(settings.temperature, DEFAULT_U[column.quantity]) / scale
+    u_gain, u_offset = u_gain or 0.0, (u_offset or 0.0) * scale
+    gain_si = gain.value * scale
+    calibration = stated("calibration")
+    owner = calibration.id if calibration else entry.serial or name
+    radius = stated("head_radius_cm")
+    bore = stated("bore_emissivity") or Uncertain(
+        value=settings.temperature.bore_emissivity, u=settings.temperature.bore_emissivity_u)
+    return Channel(
+        logger=name, column=header, quantity=column.quantity, unit=column.unit,
+        gain=Uncertain(value=gain_si, u=abs(gain_si) * u_gain),
+        offset=Uncertain(value=shift + scale * offset.value, u=u_offset),
+        u_gain=u_gain, u_offset=u_offset,
+        gain_scope=f"{owner}:{header}:gain", offset_scope=f"{owner}:{header}:offset",
+        calibration=calibration, band_um=stated("band_um"),
+        half_angle_deg=stated("half_angle_deg"), time_constant_s=stated("tau_s"),
+        head_radius_m=None if radius is None else radius / 100, bore_emissivity=bore,
+        emissivity_setting=column.emissivity_setting,
+        band_centres_nm=stated("band_centres_nm"), band_widths_nm=stated("band_widths_nm"))

@@ -1,0 +1,63 @@
+"""The project folder, and paths that stay inside it."""
+
+from __future__ import annotations
+
+import re
+import unicodedata
+from pathlib import Path, PurePosixPath
+
+from surveykit.core import InputError
+
+
+def find_root(start: Path) -> Path:
+    """Return the folder that holds params/ and notebooks/, from `start` upwards, else from here.
+
+    Raises
+    ------
+    InputError
+        If neither way leads to one.
+    """
+    for origin in (Path(start), Path.cwd()):
+        for folder in (origin.resolve(), *origin.resolve().parents):
+            if (folder / "params").is_dir() and (folder / "notebooks").is_dir():
+                return folder
+    raise InputError(f"{start}: no project folder: no folder above it, nor above {Path.cwd()}, "
+                     "holds params/ and notebooks/; work from a clone of the project")
+
+
+def path_fault(root: Path, text: str, base: Path | None = None) -> str | None:
+    """Return what is wrong with a path the user wrote, None if it stays inside `root`.
+
+    `base` is the folder it is relative to, `root` itself where absent.
+    """
+    shown = repr(text[:80])
+    if not text.strip() or any(unicodedata.category(c) == "Cc" for c in text):
+        return f"got {shown}; write a path inside the project folder"
+    if "\\" in text:
+        return f"got {shown}; write the path with forward slashes"
+    path = PurePosixPath(text)
+    if path.is_absolute() or re.match(r"[A-Za-z]:", text) or text.startswith("~"):
+        return f"got {shown}; write a path relative to the project folder, not an absolute one"
+    if ".." in path.parts:
+        return f"got {shown}; write a path inside the project folder, without .."
+    try:
+        inside_root = ((base or root) / path).resolve().is_relative_to(root.resolve())
+    except (OSError, RuntimeError, ValueError):
+        return f"got {shown}, which cannot be followed; write a path inside the project folder"
+    if not inside_root:
+        return f"got {shown}, a link that leads out of the project folder; write a path inside it"
+    return None
+
+
+def inside(root: Path, text: str, key: str) -> Path:
+    """Return `root / text`, refusing absolute paths, `..` and links that lead out.
+
+    Raises
+    ------
+    InputError
+        If the path leaves `root`; the sentence begins with `key`.
+    """
+    wrong = path_fault(Path(root), text)
+    if wrong:
+        raise InputError(f"{key}: {wrong}")
+    return Path(root) / PurePosixPath(text)

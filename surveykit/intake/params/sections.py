@@ -1,0 +1,265 @@
+"""The sections of a campaign's parameter file."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from datetime import UTC, datetime
+from typing import Annotated, Any, Literal
+from zoneinfo import ZoneInfo
+
+from pydantic import AfterValidator, Field, field_validator
+
+from surveykit.intake.params.amounts import (
+    Amount,
+    BareNumber,
+    FromSettings,
+    Uncertain,
+    given_once,
+    u_field,
+)
+from surveykit.intake.params.base import (
+    TEXT_WRITE,
+    Fault,
+    Name,
+    Strict,
+    Text,
+    fault,
+    key,
+    number_words,
+)
+from surveykit.intake.params.instruments import zone_fault
+
+MAX_ZONE_GAP_H = 3.5
+NOT_YET = "not available yet; "
+
+
+def _zone(zone: str) -> str:
+    wrong = zone_fault(zone)
+    if wrong:
+        raise fault(wrong)
+    return zone
+
+
+class Walls(Strict):
+    """What hides part of the sky."""
+
+    temperature_degC: Annotated[Uncertain, BareNumber(  # noqa: N815 - the unit is written so
+        "temperature.walls_u_k", -60, 120, number_words("degC", ge=-60, le=120))] | None = key(
+        "Temperature; absent: the air's.", default=None,
+        write="a number in degC, or {value, u}")
+    emissivity: Annotated[float, FromSettings("temperature.walls_emissivity")] = key(
+        "Emissivity; absent: settings.temperature.walls_emissivity.", default=None,
+        validate_default=True, gt=0, le=1, write=number_words("", gt=0, le=1))
+
+
+class Site(Strict):
+    """Where the campaign took place."""
+
+    name: Text = key("Name of the site.", write=TEXT_WRITE)
+    latitude: float = key("Degrees north; south negative.", ge=-90, le=90,
+                          write="degrees north, a number from -90 to 90, south negative")
+    longitude: float = key("Degrees east; west negative.", ge=-180, le=180,
+                           write="degrees east, a number from -180 to 180, west negative")
+    elevation_m: float = key("Height above sea level.", ge=-450, le=9000,
+                             write=number_words("m", ge=-450, le=9000))
+    time_zone: Annotated[str, AfterValidator(_zone)] = key(
+        "Time zone of the field sheet: UTC or an IANA name.",
+        write="UTC or an IANA name such as Europe/Lisbon")
+    sky_view: Annotated[Uncertain, BareNumber(
+        "temperature.sky_view_u", 0.0, 1.0, number_words("", ge=0, le=1))] = key(
+        "Share of the sky seen from the ground.", default=1.0, validate_default=True,
+        write="a number from 0 to 1, or {value, u}")
+    walls: Walls | None = key("What hides the rest of the sky.", default=None,
+                              write="{temperature_degC, emissivity}")
+
+    def faults(self) -> Iterator[Fault]:
+        """Longitude and time zone must belong together."""
+        if self.time_zone in ("UTC", "Etc/UTC", "Etc/UCT", "UCT", "Zulu", "Etc/Zulu", "Universal",
+                              "Etc/Universal"):
+            return
+        offset_h = _standard_offset_h(self.time_zone)
+        gap = (self.longitude / 15 - offset_h + 12) % 24 - 12
+        if abs(gap) > MAX_ZONE_GAP_H:
+            yield ("longitude",), (
+                f"got {self.longitude:g}, {abs(gap):.1f} h of sun away from time_zone "
+                f"{self.time_zone} ({offset_h:+g} h); write degrees east (west negative), "
+                "or the zone of the site")
+
+
+def _standard_offset_h(zone: str) -> float:
+    # Standard time is the smaller of the offsets of winter and summer, either hemisphere.
+    offsets = [datetime(2025, month, 1, tzinfo=UTC).astimezone(ZoneInfo(zone)).utcoffset()
+               for month in (1, 7)]
+    return min(offset.total_seconds() for offset in offsets if offset is not None) / 3600
+
+
+class Clock(Strict):
+    """A logger's clock against UTC, found out in the field."""
+
+    RESERVED = {
+        "align_with": NOT_YET + "write offset_s and u_s",
+        "search_s": NOT_YET + "it belongs to align_with; write offset_s and u_s",
+        "cover_events": NOT_YET + "write offset_s and u_s",
+    }
+
+    offset_s: Annotated[Amount, BareNumber(
+        None, -86400.0 * 366, 86400.0 * 366, number_words("s"))] = key(
+        "Seconds to ADD to the logger's time; positive: its clock was slow.",
+        default=0.0, validate_default=True, write="a number of seconds, or {value, u}")
+    u_s: float | None = u_field("s", "Standard uncertainty of offset_s.")
+    drift_ppm: float = key(
+        "Rate of the offset: microseconds to add for each second after drift_from.", default=0.0,
+        ge=-10000, le=10000, write=number_words("ppm", ge=-10000, le=10000))
+    drift_from: str | None = key(
+        "When offset_s held, ISO 8601 with its offset or Z.", default=None,
+        write='a time such as "2025-07-24T08:00:00Z", in quotes')
+
+    def faults(self) -> Iterator[Fault]:
+        """The u of the offset once; a drift needs its beginning."""
+        yield from given_once("offset_s", self.offset_s, "u_s", self.u_s)
+        if self.offset_s.u is None and self.u_s is None:
+            yield ("u_s",), "missing; write the standard uncertainty of offset_s in s"
+        if self.drift_ppm and self.drift_from is None:
+            yield ("drift_from",), "missing; drift_ppm needs the time when offset_s held, " \
+                                   'such as "2025-07-24T08:00:00Z"'
+        if self.drift_from is not None and self.drift_from_ns is None:
+            yield ("drift_from",), f"got {self.drift_from[:40]!r}; write a time with its offset, " \
+                                   'such as "2025-07-24T08:00:00Z", in quotes'
+
+    @property
+    def offset(self) -> Uncertain:
+        """offset_s with its u [s], whichever way that was written."""
+        u = self.offset_s.u if self.offset_s.u is not None else self.u_s
+        return Uncertain(value=self.offset_s.value, u=u or 0.0)
+
+    @property
+    def drift_from_ns(self) -> int | None:
+        """drift_from in ns since the epoch, UTC; None if it is absent or no time."""
+        try:
+            moment = datetime.fromisoformat(self.drift_from or "")
+        except ValueError:
+            return None
+        if moment.tzinfo is None or not 1950 <= moment.year <= 2199:
+            return None
+        step = moment - datetime(1970, 1, 1, tzinfo=UTC)
+        return ((step.days * 86400 + step.seconds) * 1_000_000 + step.microseconds) * 1000
+
+
+class Watch(Strict):
+    """The clock the field sheet was written by."""
+
+    offset_s: Annotated[Amount, BareNumber(None, -86400.0, 86400.0, number_words("s"))] = key(
+        "Seconds to ADD to the sheet's times to reach UTC.", default=0.0, validate_default=True,
+        write="a number of seconds, or {value, u}")
+    u_s: Annotated[float, FromSettings("clocks.unchecked_u_s")] = key(
+        "Standard uncertainty of offset_s; absent: settings.clocks.unchecked_u_s.",
+        default=None, validate_default=True, ge=0, write=number_words("s", ge=0))
+
+    def faults(self) -> Iterator[Fault]:
+        """The u of the offset once."""
+        if "u_s" in self.model_fields_set:
+            yield from given_once("offset_s", self.offset_s, "u_s", self.u_s)
+
+    @property
+    def checked(self) -> bool:
+        """Whether an uncertainty was stated."""
+        return self.offset_s.u is not None or "u_s" in self.model_fields_set
+
+    @property
+    def offset(self) -> Uncertain:
+        """offset_s with its u [s], whichever way that was written."""
+        u = self.u_s if self.offset_s.u is None else self.offset_s.u
+        return Uncertain(value=self.offset_s.value, u=u)
+
+
+class LoggerUse(Strict):
+    """One logger's files and clock on this day."""
+
+    files: Annotated[tuple[Text, ...], Field(strict=False, min_length=1)] = key(
+        "Its files in data_folder; * and ? stand for any text.",
+        write='a file name or a pattern such as "thermal*.csv", or a list of them')
+    clock: Clock | None = key("Its clock; absent: not checked.", default=None,
+                              write="{offset_s, u_s}")
+
+    @field_validator("files", mode="before")
+    @classmethod
+    def _one_or_more(cls, data: Any) -> Any:
+        return data if isinstance(data, list | tuple) else [data]
+
+
+class Emissivity(Strict):
+    """A stated emissivity."""
+
+    RESERVED = {"from": NOT_YET + "write {value, u, source}"}
+
+    value: float = key("The emissivity.", gt=0, le=1, write=number_words("", gt=0, le=1))
+    u: float = key("Its standard uncertainty (k = 1).", ge=0, le=1,
+                   write=number_words("", ge=0, le=1))
+    source: Text = key("Where it comes from.", write="where the value comes from, plain text")
+
+
+class Around(Strict):
+    """What surrounds a patch."""
+
+    albedo: Annotated[Amount, BareNumber(None, 0.0, 1.0, number_words("", ge=0, le=1))] = key(
+        "Its albedo.", write="a number from 0 to 1, or {value, u}")
+    u: float | None = u_field("1", "Standard uncertainty of albedo.")
+
+    def faults(self) -> Iterator[Fault]:
+        """The u of the albedo, once."""
+        yield from given_once("albedo", self.albedo, "u", self.u)
+        if self.albedo.u is None and self.u is None:
+            yield ("u",), "missing; write the standard uncertainty of albedo"
+
+    @property
+    def amount(self) -> Uncertain:
+        """The albedo with its u, whichever way that was written."""
+        u = self.albedo.u if self.albedo.u is not None else self.u
+        return Uncertain(value=self.albedo.value, u=u or 0.0)
+
+
+class Surface(Strict):
+    """A kind of ground."""
+
+    label: Text = key("Its name on the page.", write=TEXT_WRITE)
+    emissivity: Emissivity | None = key("Emissivity in the band of the infrared head.",
+                                        default=None, write="{value, u, source}")
+    emissivity_broadband: Emissivity | None = key(
+        "Emissivity over all wavelengths, for longwave pairs.", default=None,
+        write="{value, u, source}")
+    around: Around | None = key("What surrounds its patches.", default=None, write="{albedo, u}")
+
+
+class Conditions(Strict):
+    """What was noted of the weather."""
+
+    sky: Literal["clear", "broken", "overcast"] | None = key(
+        "The sky as seen.", default=None, write="clear, broken or overcast")
+    rain_48h_mm: float | None = key(
+        "Rain in the 48 h before.", default=None, ge=0, le=2000,
+        write=number_words("mm", ge=0, le=2000))
+
+
+class RelevantChange(Strict):
+    """The smallest difference that matters."""
+
+    temperature: float = key("Of temperatures [K].", default=1.0, gt=0,
+                             write=number_words("K", gt=0))
+    albedo: float = key("Of albedos.", default=0.02, gt=0, write=number_words("", gt=0))
+    ndvi: float = key("Of NDVI.", default=0.03, gt=0, write=number_words("", gt=0))
+
+
+class Comparison(Strict):
+    """Comparison with earlier campaigns."""
+
+    RESERVED = dict.fromkeys(("second_control", "families"),
+                             "reserved for later work; leave it out")
+
+    earlier: Annotated[tuple[Text, ...], Field(strict=False)] = key(
+        "Parameter files of earlier campaigns, from the project folder.", default=(),
+        write="a list such as [params/mill-yard-2025-06-12.yml]")
+    control: Name | None = key("The surface left unchanged.", default=None,
+                               write="the name of one of surfaces")
+    relevant_change: RelevantChange = key(
+        "The smallest difference that matters.", default_factory=RelevantChange,
+        write="{temperature, albedo, ndvi}")

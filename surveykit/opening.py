@@ -1,0 +1,152 @@
+"""A campaign opened: its parameters, its input files with their hashes, and where results go."""
+
+from __future__ import annotations
+
+import hashlib
+from collections.abc import Mapping
+from dataclasses import dataclass
+from functools import cached_property
+from importlib.metadata import version
+from pathlib import Path
+from typing import Any
+
+import pandas as pd
+
+from surveykit.core import InputError
+from surveykit.intake.loggers import expand_files
+from surveykit.intake.params import (
+    Campaign,
+    Parameters,
+    find_root,
+    load,
+    read_plain,
+    refuse_other_sections,
+)
+from surveykit.intake.passes import Pass
+from surveykit.intake.records import Records
+from surveykit.statistics.draws import Draws
+
+SECTIONS = tuple(Campaign.model_fields)
+
+
+@dataclass(frozen=True)
+class Survey:
+    """One campaign opened: parameters, where results go, and the inputs with their hashes."""
+
+    parameters: Parameters
+    run_folder: Path
+    inputs: tuple[dict[str, Any], ...]
+
+    @cached_property
+    def key(self) -> str:
+        """Hash of all inputs and of the package's version; results of another key are not used."""
+        digest = hashlib.sha256(version("surveykit").encode())
+        for item in self.inputs:
+            digest.update(f"{item['path']}\0{item['sha256']}\0".encode())
+        return digest.hexdigest()
+
+    @property
+    def campaign(self) -> Campaign:
+        """The campaign's part of the parameters."""
+        return self.parameters.campaign
+
+    def draws(self) -> Draws:
+        """Return the shared draws of this study."""
+        statistics = self.campaign.settings.statistics
+        return Draws(statistics.seed, statistics.draws)
+
+
+def open_survey(names: Mapping[str, Any]) -> Survey:
+    """Open the campaign that a notebook's parameters name.
+
+    Parameters
+    ----------
+    names : mapping
+        The notebook's globals: either every section as papermill handed it over, or `params_file`;
+        `run_folder` may be None.
+
+    Raises
+    ------
+    InputError
+        If the file is at fault, or the sections differ from the file of their campaign.
+    """
+    sections = {key: names[key] for key in SECTIONS if names.get(key) is not None}
+    here = Path.cwd()
+    if sections:
+        name = sections.get("campaign")
+        if not isinstance(name, str):
+            raise InputError("parameters: sections were handed over without the key campaign; "
+                             "hand over a whole parameter file (-f) or params_file alone")
+        path = find_root(here) / "params" / f"{name}.yml"
+        if not path.is_file():
+            raise InputError(f"parameters: campaign {name!r} has no file params/{name}.yml; "
+                             "a parameter file is named as its campaign and lies in params/")
+        refuse_other_sections(sections, read_plain(path), path)
+    else:
+        path = Path(str(names["params_file"]))
+        if not path.is_absolute() and not path.exists():
+            path = find_root(here) / path
+    return open_file(path, run_folder=names.get("run_folder"))
+
+
+def open_file(path: Path, run_folder: str | Path | None = None) -> Survey:
+    """Open a campaign by its parameter file; see `open_survey`.
+
+    Raises
+    ------
+    InputError
+        If the parameters, the kit, or a named file is at fault.
+    """
+    parameters = load(path)
+    root, campaign = parameters.root, parameters.campaign
+    files = [*parameters.files, parameters.sheet_path]
+    faults: list[str] = []
+    if not parameters.sheet_path.is_file():
+        faults.append(f"{_shown(path, root)}: field_sheet: no file {campaign.field_sheet!r} in "
+                      f"{campaign.data_folder}; write the name of the field sheet")
+    for name, use in campaign.loggers.items():
+        try:
+            files += expand_files(parameters.data_folder, use.files)
+        except InputError as error:
+            faults += [f"{_shown(path, root)}: loggers.{name}.files: {f}" for f in error.faults]
+    if faults:
+        raise InputError(*faults)
+    inputs = []
+    for file in files:
+        data = file.read_bytes()
+        inputs.append({"path": _shown(file, root), "sha256": hashlib.sha256(data).hexdigest(),
+                       "bytes": len(data)})
+    folder = Path(run_folder) if run_folder else root / ".surveykit" / campaign.campaign
+    return Survey(parameters, folder, tuple(inputs))
+
+
+def strangers(survey: Survey, records: dict[str, Records],
+               passes: tuple[Pass, ...]) -> list[str]:
+    """Return the faults of loggers that hold nothing of the day, or of any of their passes."""
+    campaign = survey.campaign
+    midnight = pd.Timestamp(campaign.date, tz=campaign.site.time_zone)
+    start, stop = midnight.value, (midnight + pd.DateOffset(days=1)).value
+    faults = []
+    for name, log in records.items():
+        time = log.time_ns[:log.n_timed]
+        where = f"{campaign.campaign}: loggers.{name}"
+        if not ((time >= start) & (time < stop)).any():
+            days = sorted({str(d) for d in pd.to_datetime(time, utc=True)
+                           .tz_convert(campaign.site.time_zone).date}) if time.size else []
+            span = f"{days[0]} to {days[-1]}" if len(days) > 1 else (days or ["no readable day"])[0]
+            faults.append(f"{where}: no record falls on {campaign.date} "
+                          f"({campaign.site.time_zone}); the files cover {span}: check files, "
+                          "date or zone")
+            continue
+        mine = [p for p in passes if any(c.logger == name for c in p.channels.values())]
+        if mine and not any(((time >= p.start_ns) & (time < p.stop_ns)).any() for p in mine):
+            faults.append(f"{where}: its records miss every pass of the field sheet; check clock, "
+                          "zone or the sheet's times")
+    return faults
+
+
+def _shown(path: Path, root: Path) -> str:
+    try:
+        return path.resolve().relative_to(root.resolve()).as_posix()
+    except ValueError:
+        return path.name

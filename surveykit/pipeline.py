@@ -1,0 +1,248 @@
+"""The stages in their order; all that the notebooks call to compute.
+
+Each stage keeps what it made in the run folder under the key of its inputs, and computes its
+predecessors first where their results are absent or belong to other inputs.
+"""
+
+from __future__ import annotations
+
+import hashlib
+from collections.abc import Callable
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any
+
+import pandas as pd
+
+from surveykit.accounting import Quality
+from surveykit.core import InputError, require, table
+from surveykit.evidence import compare, handing
+from surveykit.evidence import surfaces as pooling
+from surveykit.evidence.comparability import Date
+from surveykit.evidence.conditions import Day
+from surveykit.evidence.estimates import PassEstimate, estimate_all
+from surveykit.handover import load_facts, load_table, save_facts, save_table
+from surveykit.intake.clocks import Clock, set_clock
+from surveykit.intake.fieldsheet import Sheet, read_sheet
+from surveykit.intake.loggers import expand_files, read_logger
+from surveykit.intake.passes import Pass, match_passes
+from surveykit.intake.records import Records
+from surveykit.keeping import load_quality, load_records, save_quality, save_records
+from surveykit.opening import Survey, open_file, strangers
+from surveykit.quality import examine
+from surveykit.statistics.draws import Draws
+
+Tables = dict[str, pd.DataFrame]
+STAGES = ("ingest", "quality", "surfaces", "comparison")
+
+
+@dataclass(frozen=True)
+class Ingested:
+    """Records in UTC and SI, clocks, field sheet and passes."""
+
+    records: dict[str, Records]
+    clocks: tuple[Clock, ...]
+    sheet: Sheet
+    passes: tuple[Pass, ...]
+
+
+@dataclass(frozen=True)
+class Evidence:
+    """Pass estimates, the groups they come to, and the tables made of them."""
+
+    estimates: tuple[PassEstimate, ...]
+    groups: tuple[pooling.Group, ...]
+    tables: Tables
+
+
+def read_inputs(survey: Survey) -> Ingested:
+    """Read loggers and field sheet onto one time line, and match passes to channels.
+
+    Raises
+    ------
+    InputError
+        With every fault of the loggers' files and of the field sheet.
+    """
+    return _align(survey, *_read_logs(survey))
+
+
+def ingest(survey: Survey) -> Ingested:
+    """Return records, clocks, field sheet and passes, the records read from the files once.
+
+    Raises
+    ------
+    InputError
+        With every fault of the loggers' files and of the field sheet.
+    """
+    folder = survey.run_folder / "ingest"
+    if _fresh(folder, survey.key):
+        return _align(survey, load_records(folder), [])
+    logs, faults = _read_logs(survey)
+    made = _align(survey, logs, faults)
+    save_records(folder, logs)
+    save_table(folder / "clocks.npz", clock_table(survey, made))
+    _finish(folder, survey.key)
+    return made
+
+
+def _read_logs(survey: Survey) -> tuple[dict[str, Records], list[str]]:
+    """Return every logger's records in its own time, and the faults of those that have some."""
+    parameters = survey.parameters
+    logs: dict[str, Records] = {}
+    faults: list[str] = []
+    for name, use in survey.campaign.loggers.items():
+        try:
+            logs[name] = read_logger(
+                name, parameters.kit[name], expand_files(parameters.data_folder, use.files),
+                parameters.root)
+        except InputError as error:
+            faults += error.faults
+    return logs, faults
+
+
+def _align(survey: Survey, logs: dict[str, Records], faults: list[str]) -> Ingested:
+    """Set the clocks, read the field sheet, match its passes; raise all faults together."""
+    campaign = survey.campaign
+    records: dict[str, Records] = {}
+    clocks: list[Clock] = []
+    for name, log in logs.items():
+        records[name], clock = set_clock(log, campaign.loggers[name], campaign.settings)
+        clocks.append(clock)
+    try:
+        sheet = read_sheet(survey.parameters.sheet_path, survey.parameters)
+        passes = match_passes(sheet, survey.parameters, tuple(clocks)) if not faults else ()
+        faults += strangers(survey, records, passes)
+    except InputError as error:
+        raise InputError(*faults, *error.faults) from None
+    if faults:
+        raise InputError(*faults)
+    return Ingested(records, tuple(clocks), sheet, passes)
+
+
+def clock_table(survey: Survey, ingested: Ingested) -> pd.DataFrame:
+    """Return the table `clocks`."""
+    return table("clocks", [
+        {"campaign": survey.campaign.campaign} | {
+            name: getattr(clock, name) for name in
+            ("logger", "method", "offset_s", "u_s", "drift_ppm", "status", "note")}
+        for clock in ingested.clocks])
+
+
+def quality(survey: Survey) -> Quality:
+    """Mark every reading, choose each pass's records, and account for all of them."""
+    folder = survey.run_folder / "quality"
+    if _fresh(folder, survey.key):
+        columns = {name: tuple(survey.parameters.kit[name].columns)
+                   for name in survey.campaign.loggers}
+        return load_quality(folder, columns)
+    ingested = ingest(survey)
+    made = examine(survey.parameters, ingested.records, ingested.sheet, ingested.passes)
+    notes = _intake_notes(survey, ingested)
+    made = Quality(made.masks, made.passes,
+                   pd.concat([table("checks", notes), made.checks], ignore_index=True),
+                   made.ledger)
+    save_quality(folder, made)
+    _finish(folder, survey.key)
+    return made
+
+
+def surfaces(survey: Survey) -> Evidence:
+    """Estimate every pass and pool the estimates to surfaces, with budgets."""
+    folder = survey.run_folder / "surfaces"
+    name = survey.campaign.campaign
+    coverage = survey.campaign.settings.statistics.coverage
+    if _fresh(folder, survey.key):
+        passes = ingest(survey).passes
+        frames = {key: load_table(folder / f"{key}.npz") for key in ("estimates", "inputs")}
+        estimates = handing.from_frames(frames, passes)
+        tables = {key: load_table(folder / f"{key}.npz")
+                  for key in ("surfaces", "budget", "passes", "dwells", "corrections")}
+        groups = pooling.groups(name, estimates, survey.draws(), coverage=coverage)
+        return Evidence(estimates, groups, tables)
+    ingested = ingest(survey)
+    day = Day(survey.parameters, ingested.records, ingested.sheet, quality(survey))
+    estimates = estimate_all(day, ingested.passes)
+    groups = pooling.groups(name, estimates, survey.draws(), coverage=coverage)
+    tables = pooling.pass_tables(name, estimates) | {
+        "surfaces": pooling.surface_table(groups, coverage),
+        "budget": pooling.budget_table(groups)}
+    for key, frame in (tables | handing.to_frames(estimates)).items():
+        save_table(folder / f"{key}.npz", frame)
+    _finish(folder, survey.key)
+    return Evidence(estimates, groups, tables)
+
+
+def comparison(survey: Survey) -> Tables:
+    """Compare the surfaces of this date, and this date with each earlier one."""
+    folder = survey.run_folder / "comparison"
+    earlier = [open_file(path) for path in survey.parameters.earlier]
+    key = hashlib.sha256("".join(s.key for s in (survey, *earlier)).encode()).hexdigest()
+    if _fresh(folder, key):
+        return {name: load_table(folder / f"{name}.npz") for name in ("differences", "changes")}
+    draws = survey.draws()
+    now = _date(survey, draws)
+    then = tuple(_date(one, draws) for one in earlier)
+    _refuse_later(now, then)
+    made = {"differences": compare.differences(now, draws),
+            "changes": compare.changes(now, then, draws)}
+    for name, frame in made.items():
+        save_table(folder / f"{name}.npz", frame)
+    _finish(folder, key)
+    return made
+
+
+def all_tables(survey: Survey) -> Tables:
+    """Return every published table of a survey whose stages have run."""
+    marked = quality(survey)
+    tables = {"checks": marked.checks, "ledger": marked.ledger,
+              "clocks": load_table(survey.run_folder / "ingest" / "clocks.npz"),
+              **surfaces(survey).tables, **comparison(survey)}
+    return {name: require(frame, name) for name, frame in tables.items()}
+
+
+def _date(survey: Survey, draws: Draws) -> Date:
+    evidence, own = surfaces(survey), survey.draws()
+    found = evidence.groups
+    if (own.seed, own.size) != (draws.seed, draws.size):
+        found = pooling.groups(survey.campaign.campaign, evidence.estimates, draws,
+                               coverage=survey.campaign.settings.statistics.coverage)
+    return Date(survey.parameters, {group.key: group for group in found})
+
+
+def _refuse_later(now: Date, earlier: tuple[Date, ...]) -> None:
+    """Refuse an earlier campaign that had not ended before this one's first pass."""
+    def ends(date: Date, name: str, pick: Callable[..., int]) -> int | None:
+        return pick((getattr(p.this, name) for g in date.groups.values() for p in g.passes),
+                    default=None)
+
+    first = ends(now, "start_ns", min)
+    faults = []
+    for then in earlier:
+        last = ends(then, "stop_ns", max)
+        if first is not None and last is not None and last > first:
+            faults.append(f"{now.name}: comparison.earlier: {then.name} had not ended before this "
+                          "campaign's first pass; name earlier campaigns only")
+    if faults:
+        raise InputError(*faults)
+
+
+def _intake_notes(survey: Survey, ingested: Ingested) -> list[dict[str, Any]]:
+    name = survey.campaign.campaign
+    notes = [("field sheet", "note", "", text) for text in ingested.sheet.notices]
+    notes += [("parameters", "note", "", text) for text in survey.parameters.notes]
+    notes += [("clock", "flag", clock.logger, clock.note) for clock in ingested.clocks
+              if clock.note]
+    return [{"campaign": name, "check": check, "logger": logger, "column": "", "surface": "",
+             "pass": "", "severity": severity, "records": 0, "message": text,
+             "source": "field practice"} for check, severity, logger, text in notes]
+
+
+def _fresh(folder: Path, key: str) -> bool:
+    try:
+        return bool(load_facts(folder / "done.json").get("key") == key)
+    except (FileNotFoundError, ValueError):
+        return False
+
+
+def _finish(folder: Path, key: str) -> None:
+    save_facts(folder / "done.json", {"key": key})

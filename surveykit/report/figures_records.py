@@ -1,0 +1,185 @@
+"""Figures of how the numbers came about: the day, the record ledger, the shares of variance."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from zoneinfo import ZoneInfo
+
+import matplotlib.dates as mdates
+import numpy as np
+import pandas as pd
+import seaborn as sns
+from matplotlib.axes import Axes
+from matplotlib.figure import Figure
+
+from . import wording as w
+from .style import HATCHES, INK, MUTED, PALETTE, PAPER, Drawing, panels, shorten, styled
+
+Labels = Mapping[str, str] | None
+TRACKS = (("irradiance_w_m2", "Irradiance,\nW m⁻²", "irradiance", "W m⁻²"),
+          ("zenith_deg", "Sun height,\n°", "sun height", "°"),
+          ("air_temperature_degc", "Air,\n°C", "air temperature", "°C"))
+POINTS, MANY = 600, 6
+
+
+@styled
+def day_timeline(passes: pd.DataFrame, sky: pd.DataFrame | None = None,
+                 weather: pd.DataFrame | None = None, time_zone: str = "UTC",
+                 labels: Labels = None) -> Drawing:
+    """Draw the passes as bars by surface over irradiance, sun height and air temperature.
+
+    Parameters
+    ----------
+    passes : DataFrame
+        Table `passes`; bars of those that were not used are pale.
+    sky, weather : DataFrame, optional
+        `time_utc` with `irradiance_w_m2` and `zenith_deg` [deg]; with `air_temperature_degc`.
+    time_zone : str
+        IANA name of the zone of the time axis.
+    """
+    if passes.empty:
+        return Drawing(None, "No pass could be matched with records, so there is no day to draw.")
+    tracks = [(column, title, _thinned(frame, column), name, unit)
+              for column, title, name, unit in TRACKS
+              for frame in (sky, weather) if frame is not None and column in frame
+              and frame[column].notna().any()]
+    names = list(dict.fromkeys(passes["surface"]))[::-1]
+    figure, axes = panels(1 + len(tracks), [0.9 + 0.36 * len(names), *[0.95] * len(tracks)],
+                          sharex=True)
+    keys = [pair for pair, _ in w.families(passes)]
+    for place, pair in enumerate(keys):
+        rows = passes[(passes["quantity"] == pair[0]) & (passes["kind"] == pair[1])]
+        for row in rows.to_dict("records"):
+            start, stop = (mdates.date2num(row[end]) for end in ("start_utc", "stop_utc"))
+            used = row["status"] != "not evaluated"
+            axes[0].barh(names.index(row["surface"]), stop - start, left=start, height=0.62,
+                         color=PALETTE[place % 8] if used else PAPER, edgecolor=PALETTE[place % 8],
+                         linewidth=1.2, hatch=HATCHES[place % 8] if used else None)
+        axes[0].bar(np.nan, 0, color=PALETTE[place % 8], hatch=HATCHES[place % 8],
+                    edgecolor=PAPER, linewidth=0, label=w.quantity_text(*pair))
+    axes[0].set_yticks(range(len(names)), [shorten(w.label(n, labels)) for n in names])
+    axes[0].set_ylim(-0.6, len(names) - 0.4)
+    axes[0].legend(loc="lower left", bbox_to_anchor=(0, 1), ncols=2, borderaxespad=0,
+                   handlelength=1.4)
+    spans = []
+    for axis, (_, title, (when, what), name, unit) in zip(axes[1:], tracks, strict=True):
+        axis.plot(when, what, color=INK, linewidth=1.1)
+        axis.set_ylabel(title, rotation=0, ha="right", va="center")
+        spans.append(f"{name} from {w.figures(what.min(), 3)} to {w.figures(what.max(), 3)} {unit}")
+    for axis in axes:
+        axis.grid(axis="x")
+        axis.tick_params(axis="y", length=2)
+        sns.despine(ax=axis)
+    _clock_axis(axes[-1], time_zone)
+    first, last = (f"{time.tz_convert(time_zone):%H:%M}"
+                   for time in (passes["start_utc"].min(), passes["stop_utc"].max()))
+    unused = int((passes["status"] == "not evaluated").sum())
+    alt = (f"{w.plural(len(passes), 'pass', 'passes')} on {w.plural(len(names), 'surface')} from "
+           f"{first} to {last} ({time_zone})" + "".join(f"; {span}" for span in spans) + ".")
+    if unused:
+        alt += f" {w.plural(unused, 'pass', 'passes')} could not be evaluated."
+    return Drawing(figure, alt, "The day: passes by surface" + (
+        " over " + w.listing(name for *_, name, _ in tracks) if tracks else "") + (
+        "; empty bars could not be evaluated." if unused else "."))
+
+
+@styled
+def ledger_plot(ledger: pd.DataFrame) -> Drawing:
+    """Draw for each logger the shares of records used, excluded by reason, outside passes."""
+    if ledger.empty or not ledger["records"].sum():
+        return Drawing(None, "No record was logged, so there is no ledger to draw.")
+    keys = ledger["disposition"].where(ledger["disposition"] != "excluded",
+                                       "excluded: " + ledger["reason"])
+    counts = ledger.assign(key=keys).pivot_table(index="logger", columns="key", values="records",
+                                                 aggfunc="sum", fill_value=0)
+    outer = [key for key in ("used", "outside passes") if key in counts]
+    excluded = counts.drop(columns=outer).sum().sort_values(ascending=False, kind="stable").index
+    counts = _merged(counts[[*outer[:1], *excluded, *outer[1:]]], "excluded: other reasons")
+    totals = counts.sum(axis="columns")
+    shares = counts.div(totals.where(totals > 0), axis="index").fillna(0.0)
+    names = [f"{name}\n{w.count(int(total))} records" for name, total in totals.items()]
+    drawing = _stack(shares, names, "Share of records, %")
+    told = [f"{logger}: {w.count(int(total))} records, " + w.listing(
+        f"{w.percent(part)} {key}" for key, part in row.items() if part > 0) + "."
+        for (logger, row), total in zip(shares.iterrows(), totals, strict=True)]
+    return Drawing(drawing, " ".join(told), "What became of the records of each logger.")
+
+
+@styled
+def budget_plot(budget: pd.DataFrame, labels: Labels = None) -> Drawing:
+    """Draw for each surface, quantity and kind the shares of variance by source."""
+    known = budget[budget["share"].notna()]
+    if known.empty:
+        return Drawing(None, "No uncertainty budget could be drawn up, so there are no shares to "
+                             "draw.")
+    known = known.assign(row=known[["quantity", "kind", "surface"]].apply(tuple, axis="columns"))
+    shares = known.pivot_table(index="row", columns="source", values="share", aggfunc="sum",
+                               fill_value=0.0, sort=False)
+    order = [(*pair, name) for pair, block in w.families(known)
+             for name in dict.fromkeys(block["surface"])]
+    ranked = shares.sum().sort_values(ascending=False, kind="stable").index
+    shares = _merged(shares.reindex(order)[ranked], "other sources")
+    titles = [f"{shorten(w.label(name, labels), 22)}\n{w.quantity_text(quantity, kind)}"
+              for quantity, kind, name in order]
+    told = []
+    for title, (_, row) in zip(titles, shares.iterrows(), strict=True):
+        head = title.replace("\n", ", ")
+        told.append(f"{head}: {w.percent(row.max())} {row.idxmax()}.")
+    return Drawing(_stack(shares, titles, "Share of variance, %"),
+                   "Largest source of variance. " + " ".join(told),
+                   "Where the uncertainty comes from: shares of variance by source.")
+
+
+def _stack(shares: pd.DataFrame, names: list[str], title: str) -> Figure:
+    figure, (axis,) = panels(1, [0.95 + 0.2 * ((len(shares.columns) + 1) // 2)
+                                 + 0.44 * len(shares)])
+    left = np.zeros(len(shares))
+    rows = np.arange(len(shares))[::-1]
+    for place, key in enumerate(shares):
+        part = 100 * shares[key].to_numpy(float)
+        axis.barh(rows, part, left=left, height=0.66, color=PALETTE[place % 8], edgecolor=PAPER,
+                  linewidth=0.8, hatch=HATCHES[place % 8], label=str(key))
+        for y, start, size in zip(rows, left, part, strict=True):
+            if size >= 12:
+                axis.text(start + size / 2, y, f"{size:.0f}", ha="center", va="center",
+                          fontsize=8.5, color=INK,
+                          bbox={"facecolor": PAPER, "edgecolor": "none", "pad": 1.2})
+        left += part
+    axis.set_yticks(rows, names, fontsize=8.5, linespacing=1.2)
+    axis.set_xlim(0, 100)
+    axis.set_xlabel(title)
+    axis.tick_params(axis="y", length=0)
+    axis.legend(loc="lower left", bbox_to_anchor=(0, 1), ncols=2, borderaxespad=0.3,
+                handlelength=1.6, columnspacing=1.2)
+    sns.despine(ax=axis, left=True)
+    return figure
+
+
+def _merged(table: pd.DataFrame, rest: str) -> pd.DataFrame:
+    """Keep the first columns and add the rest up into one."""
+    if len(table.columns) <= MANY + 1:
+        return table
+    kept = table.iloc[:, :MANY].copy()
+    kept[rest] = table.iloc[:, MANY:].sum(axis="columns")
+    return kept
+
+
+def _thinned(frame: pd.DataFrame, column: str) -> tuple[np.ndarray, np.ndarray]:
+    """Means over at most POINTS stretches of time; zenith becomes height above the horizon."""
+    known = frame[["time_utc", column]].dropna().sort_values("time_utc")
+    if len(known) > POINTS:
+        time = known["time_utc"].dt.as_unit("ns").astype("int64")
+        stretch = (time - time.iloc[0]) * POINTS // max(int(time.iloc[-1] - time.iloc[0]), 1)
+        known = known.groupby(stretch.to_numpy()).mean()
+    values = known[column].to_numpy(float)
+    return (mdates.date2num(known["time_utc"].to_numpy()),
+            90 - values if column == "zenith_deg" else values)
+
+
+def _clock_axis(axis: Axes, time_zone: str) -> None:
+    zone = ZoneInfo(time_zone)
+    locator = mdates.AutoDateLocator(tz=zone, minticks=3, maxticks=7)
+    axis.xaxis.set_major_locator(locator)
+    axis.xaxis.set_major_formatter(mdates.DateFormatter("%H:%M", tz=zone))
+    axis.set_xlabel(f"Time of day ({time_zone})")
+    axis.xaxis.label.set_color(MUTED)

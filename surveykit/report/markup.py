@@ -1,0 +1,131 @@
+"""The page's few kinds of markup: tables, lists and paragraphs, every text escaped here.
+
+No identifiers are written, so the same table may stand twice on one page. A table without rows
+becomes a sentence that says so.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+from html import escape
+from typing import Literal
+
+NO_BREAK = "\u00a0"
+Align = Literal["text", "long", "number", "code"]
+
+
+@dataclass(frozen=True)
+class Html:
+    """Finished markup: a notebook shows it by its `_repr_html_`, the page puts it in as it is."""
+
+    html: str
+    text: str = ""
+
+    def _repr_html_(self) -> str:
+        return self.html
+
+    def __html__(self) -> str:
+        return self.html
+
+    def __repr__(self) -> str:
+        return self.text
+
+
+@dataclass(frozen=True)
+class Column:
+    """A heading and how its cells are set: short text, running text, numbers or code."""
+
+    heading: str
+    align: Align = "text"
+
+
+@dataclass(frozen=True)
+class Cell:
+    """A cell: a muted word (`quiet`), the letter of a note below the table, or a number and its U.
+
+    `tail` follows the number in a box `room` characters wide: equal over a column, the decimal
+    marks of values and of uncertainties stand in line.
+    """
+
+    text: str
+    note: str = ""
+    quiet: bool = False
+    tail: str = ""
+    room: int = 0
+
+    @property
+    def html(self) -> str:
+        """The cell's escaped content."""
+        inner = escape(self.text)
+        if self.quiet:
+            inner = f'<span class="quiet">{inner}</span>'
+        if self.room:
+            tail = f"{NO_BREAK}{escape(self.tail)}" if self.tail else ""
+            inner += f'<span class="tail" style="min-width:{self.room + 1}ch">{tail}</span>'
+        return inner + (f'<sup class="note">{escape(self.note)}</sup>' if self.note else "")
+
+
+def table(caption: str, columns: Sequence[Column], rows: Sequence[Sequence[str | Cell]], *,
+          empty: str, notes: Iterable[tuple[str, str]] = ()) -> Html:
+    """Return a table whose first column heads its rows.
+
+    Parameters
+    ----------
+    caption : str
+        What the table shows, with units and coverage where they hold for all of it.
+    columns : sequence of Column
+    rows : sequence of sequences of str or Cell
+    empty : str
+        The sentence that stands in place of a table without rows.
+    notes : iterable of (letter, text)
+        Notes set below the table.
+    """
+    if not rows:
+        return paragraph(empty, "empty")
+    head = "".join(f'<th scope="col" class="{c.align}">{escape(c.heading)}</th>' for c in columns)
+    body = "".join(f"<tr>{_row(columns, row)}</tr>\n" for row in rows)
+    below = "".join(f'<li><span class="letter">{escape(letter)}</span> {escape(text)}</li>'
+                    for letter, text in notes)
+    html = (f'<div class="table" role="group" aria-label="{escape(caption)}" tabindex="0">\n'
+            f"<table>\n<caption>{escape(caption)}</caption>\n"
+            f"<thead><tr>{head}</tr></thead>\n<tbody>\n{body}</tbody>\n</table>\n</div>\n")
+    if below:
+        html += f'<ul class="notes">{below}</ul>\n'
+    return Html(html, f"{caption} ({len(rows)} rows)")
+
+
+def paragraph(text: str, css: str = "") -> Html:
+    """Return one escaped paragraph."""
+    attribute = f' class="{css}"' if css else ""
+    return Html(f"<p{attribute}>{escape(text)}</p>\n", text)
+
+
+def bullets(lines: Sequence[str], *, empty: str = "", css: str = "") -> Html:
+    """Return escaped sentences as a list; one as a paragraph; none as the sentence `empty`.
+
+    A line's beginning up to a first ": " is set strong where it is short: it names the subject.
+    """
+    if not lines:
+        return paragraph(empty, "empty") if empty else Html("")
+    if len(lines) == 1:
+        return Html(f"<p>{_lead(lines[0])}</p>\n", lines[0])
+    attribute = f' class="{css}"' if css else ""
+    items = "".join(f"<li>{_lead(line)}</li>\n" for line in lines)
+    return Html(f"<ul{attribute}>\n{items}</ul>\n", "\n".join(lines))
+
+
+def _row(columns: Sequence[Column], row: Sequence[str | Cell]) -> str:
+    written = []
+    for place, (column, cell) in enumerate(zip(columns, row, strict=True)):
+        inner = cell.html if isinstance(cell, Cell) else escape(cell)
+        tag = 'th scope="row"' if place == 0 else "td"
+        written.append(f'<{tag} class="{column.align}">{inner}</{tag.split()[0]}>')
+    return "".join(written)
+
+
+def _lead(line: str) -> str:
+    subject, colon, rest = line.partition(": ")
+    if colon and len(subject) <= 60:
+        return f"<strong>{escape(subject)}:</strong> {escape(rest)}"
+    return escape(line)

@@ -1,0 +1,190 @@
+"""One self-contained page: summary first, then the executed notebooks, then the appendix.
+
+The page holds no script and asks the network for nothing; equal inputs give equal bytes. Code is
+not shown; what the cells printed to standard error stays in the executed notebooks.
+"""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Mapping, Sequence
+from html import escape, unescape
+from pathlib import Path
+from typing import Any
+
+import pandas as pd
+from jinja2 import Environment, FileSystemLoader, StrictUndefined
+from nbconvert import HTMLExporter
+from nbformat import NotebookNode
+from traitlets.config import Config
+
+from . import sentences
+from . import tables as t
+from . import wording as w
+from .markup import Html, bullets, paragraph
+
+TEMPLATES = Path(__file__).parent / "template"
+LEFT_OUT = {"remove_cell", "page-skip"}  # cells with one of these tags are not on the page
+HEADING = re.compile(r"<h([1-6])[^>]*>(.*?)</h\1>", re.DOTALL)
+LEAVING = re.compile(r"""<script\b|<link\b|<iframe\b|\s(?:src|href)\s*=\s*["']?(?!["'#]|data:)"""
+                     r"|url\(\s*[\"']?(?!data:|#)", re.IGNORECASE)
+
+
+def build_page(notebooks: Sequence[NotebookNode], tables: Mapping[str, pd.DataFrame],
+               facts: Mapping[str, Any]) -> str:
+    """Return the report as one HTML page.
+
+    Parameters
+    ----------
+    notebooks : sequence of NotebookNode
+        Executed, in reading order; each becomes a part named by its first level-one heading.
+    tables : mapping of str to DataFrame
+        All tables of `core.TABLES`.
+    facts : mapping
+        The run's plain facts (site, date, conditions, inputs, versions, settings, ...).
+
+    Returns
+    -------
+    str
+        HTML, the same for equal inputs.
+
+    Raises
+    ------
+    ValueError
+        If a notebook holds a failed cell, or something on the page would leave it (a script, a
+        remote image or link).
+    """
+    parts = [_part(notebook, place) for place, notebook in enumerate(notebooks, start=1)]
+    environment = Environment(loader=FileSystemLoader(TEMPLATES), autoescape=True,
+                              undefined=StrictUndefined, trim_blocks=True, lstrip_blocks=True)
+    page = environment.get_template("page.html.j2").render(
+        facts=facts, css=Html((TEMPLATES / "page.css").read_text("utf-8")), parts=parts,
+        title_block=_title_block(facts), summary=_summary(tables, facts),
+        appendix=_appendix(facts))
+    leaving = LEAVING.search(re.sub(r'(?<=base64,)[A-Za-z0-9+/=\s]+', "", page))
+    if leaving:
+        around = page[max(0, leaving.start() - 40):leaving.end() + 40]
+        raise ValueError(f"the page would not stand alone: {around!r}; write the source in words")
+    return page
+
+
+def _part(notebook: NotebookNode, place: int) -> dict[str, Any]:
+    """Return one notebook as a part: its title and its body under numbered anchors."""
+    cells = [cell for cell in notebook.cells
+             if not LEFT_OUT & {*cell.get("metadata", {}).get("tags", [])}]
+    for cell in cells:
+        for output in cell.get("outputs", []):
+            _refuse_unfit(output, place)
+    exporter = HTMLExporter(
+        config=Config({"NbConvertBase": {"display_data_priority": [
+            "text/html", "image/png", "text/plain"]}}),
+        extra_template_basedirs=[str(TEMPLATES.parent)], template_name=TEMPLATES.name,
+        exclude_input=True, exclude_anchor_links=True, mathjax_url="", require_js_url="",
+        jquery_url="", mermaid_js_url="", embed_images=False)
+    body, _ = exporter.from_notebook_node(NotebookNode(
+        cells=cells, metadata=notebook.metadata, nbformat=notebook.nbformat,
+        nbformat_minor=notebook.nbformat_minor))
+    title = f"Notebook {place}"
+    first = HEADING.search(body)
+    if first and first[1] == "1":
+        title, body = unescape(re.sub("<[^>]+>", "", first[2])), body.replace(first[0], "", 1)
+    headings = _Headings(f"part-{place}")
+    body = HEADING.sub(headings.renumber, body)
+    return {"id": f"part-{place}", "title": title, "body": Html(body), "headings": headings.found}
+
+
+class _Headings:
+    """Sets a part's headings below its own (h2), without a jump, each with its anchor."""
+
+    def __init__(self, prefix: str) -> None:
+        self.prefix, self.level, self.count = prefix, 2, 0
+        self.found: list[tuple[str, str]] = []
+
+    def renumber(self, match: re.Match[str]) -> str:
+        self.level = max(3, min(int(match[1]) + 1, self.level + 1, 6))
+        self.count += 1
+        anchor = f"{self.prefix}-{self.count}"
+        if self.level == 3:
+            self.found.append((anchor, unescape(re.sub("<[^>]+>", "", match[2]))))
+        return f'<h{self.level} id="{anchor}">{match[2]}</h{self.level}>'
+
+
+def _refuse_unfit(output: NotebookNode, place: int) -> None:
+    if output.output_type == "error":
+        raise ValueError(f"part {place} holds a failed cell ({output.ename}: {output.evalue}); "
+                         "a failed run has no page")
+    image = "image/png" in output.get("data", {}) and "text/html" not in output.data
+    if image and not output.get("metadata", {}).get("image/png", {}).get("alt"):
+        raise ValueError(f"part {place} shows an image without alt text; show it by figures.show")
+
+
+def _title_block(facts: Mapping[str, Any]) -> list[tuple[str, list[str]]]:
+    site, labels = facts["site"], facts.get("surfaces")
+    where = ", ".join([site["name"], _degrees(site["latitude"], "N", "S"),
+                       _degrees(site["longitude"], "E", "W"),
+                       f"{w.number(site['elevation_m'], 0)} m above sea level"])
+    rows = [("Date", [w.date_text(facts["date"])]), ("Site", [where]),
+            ("Conditions", [*facts.get("conditions", [])] or ["Not stated."])]
+    if facts.get("earlier"):
+        rows.append(("Compared with", [*facts["earlier"]]))
+        rows.append(("Control", [w.label(facts.get("control") or "", labels) or "None named."]))
+    rows.append(("Times", [f"{facts.get('time_zone') or site['time_zone']} unless UTC is stated."]))
+    return rows
+
+
+def _summary(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> list[dict[str, Any]]:
+    """Return the sections of the summary: identifier, heading, markup; the first has no heading."""
+    labels, surfaces = facts.get("surfaces"), tables["surfaces"]
+    beside = [*sentences.two_kinds(surfaces, labels), *sentences.value_only(surfaces, labels)]
+    sections = [
+        ("", "", [bullets(sentences.measured(tables, facts)), t.surface_overview(surfaces, labels),
+                  *(paragraph(line) for line in beside)]),
+        ("differs", "What differs", [bullets(
+            sentences.differs(tables["differences"], facts),
+            empty="No two surfaces could be compared.")]),
+        ("changed", "What changed", [_changes(tables["changes"], facts)]),
+        ("not-evaluated", "What could not be evaluated, and why", [bullets(
+            sentences.not_evaluated(tables, labels),
+            empty="Everything on the field sheet was evaluated.")]),
+        ("narrowing", "What would narrow the uncertainty most", [bullets(
+            sentences.narrowing(tables["budget"], labels),
+            empty="No uncertainty budget could be drawn up.")]),
+        ("not-corrected", "What is not corrected yet", [bullets(
+            [*facts.get("not_corrected", [])],
+            empty="This run names no correction as missing.")]),
+        ("cautions", "Cautions", [bullets(sentences.cautions(surfaces, labels))]),
+    ]
+    if facts.get("notes"):
+        sections.insert(-1, ("notes", "Notes on this run", [bullets([*facts["notes"]])]))
+    return [{"id": anchor, "heading": heading, "body": body} for anchor, heading, body in sections]
+
+
+def _changes(changes: pd.DataFrame, facts: Mapping[str, Any]) -> Html:
+    if not facts.get("earlier") and changes.empty:
+        return paragraph("No earlier campaign was named, so no change was looked for.", "empty")
+    return bullets(sentences.changed(changes, facts),
+                   empty="No change could be judged; the reasons stand in the next section.")
+
+
+def _appendix(facts: Mapping[str, Any]) -> list[dict[str, Any]]:
+    """Return the sections of the appendix: identifier, heading, markup."""
+    rerun = Html(f"<pre>{escape(facts.get('rerun') or 'Not handed over.')}</pre>\n")
+    return [
+        {"id": "reading", "heading": "How to read the numbers",
+         "body": [bullets(sentences.reading(facts))]},
+        {"id": "instruments", "heading": "Instruments and calibrations",
+         "body": [t.instrument_table(facts.get("instruments", []))]},
+        {"id": "settings", "heading": "Settings",
+         "body": [t.settings_table(facts.get("settings", []))]},
+        {"id": "inputs", "heading": "Input files",
+         "body": [t.inputs_table(facts.get("inputs", []))]},
+        {"id": "versions", "heading": "Programs",
+         "body": [t.versions_table(facts.get("versions", {}))]},
+        {"id": "rerun", "heading": "How to run it again", "body": [
+            paragraph("From the project's folder, with the same input files and programs, this "
+                      "gives the same page and tables:"), rerun]},
+    ]
+
+
+def _degrees(value: float, positive: str, negative: str) -> str:
+    return f"{abs(value):.4f}° {positive if value >= 0 else negative}"

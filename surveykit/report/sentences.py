@@ -1,0 +1,272 @@
+"""Sentences built from the tables: what was measured, differs, changed, was not evaluated and why.
+
+`tables` maps names of `core.TABLES` to frames; `facts` is the run's plain facts. No number is
+typed here. Each function returns plain text, one string a sentence or point; escaping is the
+page's work.
+"""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from collections.abc import Mapping
+from typing import Any
+
+import pandas as pd
+
+from . import wording as w
+
+Tables = Mapping[str, pd.DataFrame]
+Facts = Mapping[str, Any]
+Labels = Mapping[str, str] | None
+
+
+def measured(tables: Tables, facts: Facts) -> list[str]:
+    """Say how much was surveyed, and for each quantity and kind the span of the surfaces."""
+    surfaces, labels = tables["surfaces"], facts.get("surfaces")
+    names, passes = surfaces["surface"].unique(), tables["passes"]
+    lines = [f"{w.plural(len(names), 'surface')} at {facts['site']['name']} "
+             f"{'was' if len(names) == 1 else 'were'} surveyed in "
+             f"{w.plural(len(passes), 'pass', 'passes')} on {w.date_text(facts['date'])}."]
+    for (quantity, kind), block in w.families(surfaces):
+        known = block[block["value"].notna()].sort_values("value", kind="stable")
+        if known.empty:
+            continue
+        ends = [known.iloc[0], known.iloc[-1]][:len(known)]
+        texts = [f"{_value(row)} ({w.label(row['surface'], labels)})" for row in ends]
+        lines.append(f"{w.quantity_text(quantity, kind)}: " + (
+            f"from {texts[0]} to {texts[1]}." if len(texts) > 1 else f"{texts[0]}."))
+    return lines
+
+
+def two_kinds(surfaces: pd.DataFrame, labels: Labels = None) -> list[str]:
+    """Say why a surface has two values of one quantity where it has."""
+    why = {
+        "temperature": "the head sees other background radiation in each way of reading, and the "
+                       "readings were taken at other times and spots",
+        "albedo": "it depends on the direction that the light comes from",
+    }
+    lines = []
+    for quantity, reason in why.items():
+        block = surfaces[(surfaces["quantity"] == quantity) & surfaces["value"].notna()]
+        kinds = block.groupby("surface", sort=False)["kind"].unique()
+        twice = [w.label(str(name), labels) for name, found in kinds.items() if len(found) > 1]
+        if twice:
+            lines.append(f"{w.listing(twice)} {'has' if len(twice) == 1 else 'have'} more than one "
+                         f"{quantity}, kept apart because {reason}.")
+    return lines
+
+
+def differs(differences: pd.DataFrame, facts: Facts) -> list[str]:
+    """Say, for each quantity and kind, how many pairs differ, the largest, and which do not."""
+    labels, lines = facts.get("surfaces"), []
+    for (quantity, kind), block in w.families(differences):
+        judged = block[~block["verdict"].isin(["", "not evaluated", "not comparable"])]
+        large = judged[judged["verdict"].isin(["higher", "lower"])]
+        parts = [f"{len(large)} of {w.plural(len(judged), 'pair')} "
+                 f"{'differs' if len(large) == 1 else 'differ'}{_by_at_least(quantity, facts)}"]
+        if len(large):
+            largest = large.iloc[int(large["difference"].abs().argmax())]
+            parts[0] += f", the largest: {pair_sentence(largest, labels, facts)[:-1]}"
+        for verdict in ("higher, small", "lower, small", "equivalent", "no difference shown"):
+            rows = judged[judged["verdict"] == verdict].to_dict("records")
+            parts += [pair_sentence(row, labels, facts)[:-1] for row in rows[:3]]
+            if len(rows) > 3:
+                parts.append(f"{w.plural(len(rows) - 3, 'more pair')}: {verdict}")
+        if len(judged):
+            lines.append(f"{w.quantity_text(quantity, kind)}: {'; '.join(parts)}.")
+    return lines
+
+
+def pair_sentence(row: Any, labels: Labels, facts: Facts) -> str:
+    """Return the verdict on a pair as a sentence; "" where the row is not judged."""
+    one, other = (w.label(row[end], labels) for end in ("surface", "other"))
+    size, small = _size(row, "difference"), _relevant(row["quantity"], facts)
+    within = f"±{small}" if small else "the relevant change"
+    small = small or "change"
+    return {
+        "higher": f"{one} is higher than {other} by {size}.",
+        "lower": f"{one} is lower than {other} by {size}.",
+        "higher, small": f"{one} is higher than {other} by {size}, less than the relevant {small}.",
+        "lower, small": f"{one} is lower than {other} by {size}, less than the relevant {small}.",
+        "equivalent": f"{one} and {other} are equivalent within {within}.",
+        "no difference shown": f"no difference is shown between {one} and {other}{_missed(row)}.",
+        "not comparable": f"{one} and {other} are not comparable{_because(row['note'])}.",
+        "not evaluated": f"{one} and {other} were not evaluated{_because(row['note'])}.",
+    }.get(row["verdict"], "")
+
+
+def changed(changes: pd.DataFrame, facts: Facts) -> list[str]:
+    """Return a sentence for each change shown, then the others gathered by verdict and date."""
+    labels, lines = facts.get("surfaces"), []
+    gathered: dict[tuple[str, str], list[str]] = defaultdict(list)
+    for row in changes.to_dict("records"):
+        if row["verdict"] in ("equivalent", "no difference shown"):
+            missed = _missed(row) if row["verdict"] == "no difference shown" else ""
+            gathered[row["verdict"], row["earlier"]].append(
+                f"{w.inside_sentence(row['quantity'], row['kind'])} of "
+                f"{w.label(row['surface'], labels)}{missed}")
+        elif row["verdict"] not in ("", "not evaluated", "not comparable"):
+            lines.append(change_sentence(row, facts))
+    return lines + [f"{w.sentence_case(verdict)[:-1]} since {earlier}: {', '.join(items)}."
+                    for (verdict, earlier), items in gathered.items()]
+
+
+def change_sentence(row: Any, facts: Facts) -> str:
+    """Return the verdict on a change as a sentence; "" where the row is not judged."""
+    surface = w.label(row["surface"], facts.get("surfaces"))
+    what = w.inside_sentence(row["quantity"], row["kind"])
+    control = w.label(row["control"], facts.get("surfaces"))
+    since = row["earlier"]
+    against = {
+        "ratio to control": f"than {control}, the control, leads to expect since {since}",
+        "difference in differences": f"than in {since}, the change of {control} taken off",
+    }.get(row["method"], f"than in {since}")
+    size, small = _size(row, "change"), _relevant(row["quantity"], facts)
+    within = f"±{small}" if small else "the relevant change"
+    small = small or "change"
+    sure = f" (conditions {row['comparability']})" if row["comparability"] else ""
+    verb = {
+        "higher": f"is higher by {size} {against}{sure}",
+        "lower": f"is lower by {size} {against}{sure}",
+        "higher, small": f"is higher by {size} {against}, less than the relevant {small}{sure}",
+        "lower, small": f"is lower by {size} {against}, less than the relevant {small}{sure}",
+        "equivalent": f"is equivalent within {within} to {since}{sure}",
+        "no difference shown": f"shows no difference from {since}{_missed(row)}{sure}",
+        "not comparable": f"is not comparable with {since}{_because(row['note'])}",
+        "not evaluated": f"was not evaluated against {since}{_because(row['note'])}",
+    }.get(row["verdict"], "")
+    return f"{surface}: {what} {verb}." if verb else ""
+
+
+def not_evaluated(tables: Tables, labels: Labels = None) -> list[str]:
+    """Return what has no value or no verdict, gathered by reason, surfaces first."""
+    gathered: dict[str, list[str]] = defaultdict(list)
+    for row in _with(tables.get("surfaces"), "status", ("not evaluated",)):
+        reason = row["note"] or "no reason was handed over"
+        gathered[reason].append(f"{w.inside_sentence(row['quantity'], row['kind'])} of "
+                                f"{w.label(row['surface'], labels)}")
+    for row in _with(tables.get("differences"), "verdict", ("not evaluated", "not comparable")):
+        pair = w.listing([w.label(row["surface"], labels), w.label(row["other"], labels)])
+        gathered[f"{row['verdict']}: {row['note'] or 'no reason was handed over'}"].append(
+            f"{w.inside_sentence(row['quantity'], row['kind'])} of {pair}")
+    for row in _with(tables.get("changes"), "verdict", ("not evaluated", "not comparable")):
+        gathered[f"{row['verdict']}: {row['note'] or 'no reason was handed over'}"].append(
+            f"{w.inside_sentence(row['quantity'], row['kind'])} of "
+            f"{w.label(row['surface'], labels)} since {row['earlier']}")
+    return [f"{w.sentence_case(reason)[:-1]}: {'; '.join(dict.fromkeys(items))}."
+            for reason, items in gathered.items()]
+
+
+def value_only(surfaces: pd.DataFrame, labels: Labels = None) -> list[str]:
+    """Say which values stand without an interval."""
+    rows = _with(surfaces, "status", ("value only",))
+    if not rows:
+        return []
+    names = [f"{w.inside_sentence(row['quantity'], row['kind'])} of "
+             f"{w.label(row['surface'], labels)}" for row in rows]
+    return [f"Value without an interval: {w.listing(names)}; a single pass cannot show how much "
+            "passes differ, so no verdict uses it."]
+
+
+def narrowing(budget: pd.DataFrame, labels: Labels = None) -> list[str]:
+    """Say, for each quantity and kind, which source holds the largest part of the variance."""
+    lines = []
+    for (quantity, kind), block in w.families(budget):
+        shares = block.groupby(["surface", "source"], as_index=False)["share"].sum()
+        mean = shares.groupby("source")["share"].sum() / shares["surface"].nunique()
+        if mean.dropna().empty or not mean.max() > 0:
+            continue
+        top = str(mean.idxmax())
+        own = shares[shares["source"] == top]
+        most = own.iloc[int(own["share"].argmax())]
+        lines.append(f"{w.quantity_text(quantity, kind)}: {top} holds {w.percent(mean[top])} of "
+                     "the variance on average over the surfaces, most of all for "
+                     f"{w.label(str(most['surface']), labels)} ({w.percent(most['share'])}).")
+    return lines
+
+
+def cautions(surfaces: pd.DataFrame, labels: Labels = None) -> list[str]:
+    """Return the cautions, led by the hottest upper end among the surfaces."""
+    hot = surfaces[(surfaces["quantity"] == "temperature") & surfaces["value"].notna()]
+    lines = []
+    if len(hot):
+        top = hot.assign(end=hot["upper"].fillna(hot["value"]))
+        row = top.iloc[int(top["end"].argmax())]
+        lines.append("Hot surfaces: the highest upper end of an interval is "
+                     f"{w.with_unit(w.number(row['end'], 1), row['unit'])} "
+                     f"({w.label(row['surface'], labels)}), a mean over an area: single spots are "
+                     "hotter. What contact is acceptable, for whom and how long, is for local "
+                     "codes and licensed practice to say.")
+    return [
+        *lines,
+        "Heat, sun and traffic: work outdoors, on roofs and beside traffic follows local rules and "
+        "the people licensed to apply them; nothing here replaces them.",
+        "This report certifies nothing: it states what was measured on one day with its "
+        "uncertainty. It holds for the patches, times and conditions named, and judges no code, "
+        "standard or contract.",
+    ]
+
+
+def reading(facts: Facts) -> list[str]:
+    """Say how the numbers are written and made, with the published methods."""
+    coverage = w.percent(facts["coverage"]) if facts.get("coverage") else "the stated coverage"
+    return [
+        f"Value ± U: U is the expanded uncertainty, half the interval that covers {coverage}; "
+        "where the two arms of an interval differ by more than a fifth, both ends are printed. The "
+        "page rounds temperatures to 0.1 and albedo and NDVI to 0.001; the CSV tables keep every "
+        "digit.",
+        "Uncertainty: each uncertain input is drawn "
+        f"{w.count(facts.get('draws') or 0)} times (seed {facts.get('seed', 'not stated')}) and "
+        "carried through to the result; an error that two results share is the same draw in both, "
+        "so it cancels in their difference as far as it should (JCGM 100:2008; JCGM 101:2008).",
+        "Passes: the pass is the statistical unit. Records within a pass are correlated, so they "
+        "count for fewer (Geyer 1992); passes are pooled by weights that include how much they "
+        "differ (Paule and Mandel 1982), with the interval of Hartung and Knapp (2001) never below "
+        "what the passes' own uncertainties give (Röver, Knapp and Friede 2015).",
+        "Verdicts: higher and lower mean that the interval excludes zero after allowance for many "
+        "comparisons (Holm 1979) and that the size is at least the relevant one; no difference "
+        "shown is not proof of none, so it comes with the size that could have been missed.",
+    ]
+
+
+def _with(frame: pd.DataFrame | None, column: str, words: tuple[str, ...]) -> list[dict[str, Any]]:
+    rows = [] if frame is None else frame[frame[column].isin(words)].to_dict("records")
+    return [{str(key): value for key, value in row.items()} for row in rows]
+
+
+def _value(row: pd.Series) -> str:
+    text = w.interval(row["value"], row["lower"], row["upper"], w.places(row["quantity"]))
+    return w.with_unit(text, row["unit"])
+
+
+def _size(row: Any, column: str) -> str:
+    """The size of a signed difference with its interval: the verb tells the direction."""
+    value, lower, upper = row[column], row["lower"], row["upper"]
+    if value < 0:
+        value, lower, upper = -value, -upper, -lower
+    return w.with_unit(w.interval(value, lower, upper, w.places(row["quantity"])), row["unit"])
+
+
+def _relevant(quantity: str, facts: Facts) -> str:
+    limit = (facts.get("relevant_change") or {}).get(quantity)
+    if limit is None:
+        return ""
+    unit = "K" if quantity == "temperature" else "1"
+    return w.with_unit(w.number(float(limit), w.places(quantity)), unit)
+
+
+def _by_at_least(quantity: str, facts: Facts) -> str:
+    limit = _relevant(quantity, facts)
+    return f" by at least the relevant {limit}" if limit else ""
+
+
+def _missed(row: Any) -> str:
+    missed = row["could_have_missed"]
+    if pd.isna(missed):
+        return ""
+    size = w.with_unit(w.expanded(missed, w.places(row["quantity"])), row["unit"])
+    return f" (could have missed up to {size})"
+
+
+def _because(note: str) -> str:
+    return f": {note.strip().rstrip('.')}" if note.strip() else ""

@@ -1,0 +1,101 @@
+"""One look for all figures, and the one way in which a figure is shown: PNG with alt text.
+
+Figures are drawn without pyplot (nothing to close, no backend) at the width of the text column,
+so that their lettering stays readable on a phone. seaborn's colour-blind palette always goes
+with a marker or a hatch; maps use one hue, light to dark.
+"""
+
+from __future__ import annotations
+
+import base64
+import io
+import warnings
+from collections.abc import Iterable
+from typing import Any, NamedTuple
+
+import matplotlib as mpl
+import seaborn as sns
+from IPython.display import display
+from matplotlib.axes import Axes
+from matplotlib.figure import Figure
+
+from .markup import paragraph
+
+WIDTH_IN, DPI = 5.6, 150
+PAPER, INK, MUTED, HAIRLINE = "#fdfcf9", "#1f1e1b", "#5d5a53", "#d9d5ca"
+_COLOURS = sns.color_palette("colorblind").as_hex()
+PALETTE = tuple(_COLOURS[i] for i in (0, 3, 2, 4, 5, 1, 9, 7))  # strongest on paper first
+MARKERS = ("o", "s", "D", "^", "v", "P", "X", "*")
+HATCHES = ("", "////", "....", "\\\\\\\\", "xxxx", "----", "++++", "oo")
+RAMP = sns.light_palette(_COLOURS[0], as_cmap=True)
+STYLE: Any = {
+    **sns.axes_style("ticks"), "figure.facecolor": PAPER, "axes.facecolor": PAPER,
+    "savefig.facecolor": PAPER, "font.family": "sans-serif", "font.sans-serif": ["DejaVu Sans"],
+    "font.size": 9, "axes.titlesize": 9.5, "axes.titleweight": "bold", "axes.titlelocation": "left",
+    "axes.labelsize": 9, "xtick.labelsize": 8.5, "ytick.labelsize": 9, "legend.fontsize": 8.5,
+    "legend.frameon": False, "text.color": INK, "axes.labelcolor": INK, "axes.edgecolor": MUTED,
+    "xtick.color": MUTED, "ytick.color": MUTED, "xtick.labelcolor": INK, "ytick.labelcolor": INK,
+    "axes.linewidth": 0.7, "grid.color": HAIRLINE, "grid.linewidth": 0.7, "hatch.linewidth": 0.6,
+    "text.parse_math": False, "axes.unicode_minus": True, "svg.hashsalt": "surveykit",
+}
+
+
+class Drawing(NamedTuple):
+    """A figure with its caption and the text that stands in for it; no figure, only the text."""
+
+    figure: Figure | None
+    alt: str
+    caption: str = ""
+
+
+styled = mpl.rc_context(STYLE)  # a decorator: draws under the house style
+
+
+def panels(n: int, heights: Iterable[float], **kwargs: Any) -> tuple[Figure, list[Axes]]:
+    """Return a figure of the text column's width with `n` stacked panels, heights in inches."""
+    tall = [*heights]
+    figure = Figure(figsize=(WIDTH_IN, sum(tall) + 0.25), dpi=DPI, layout="constrained")
+    axes = figure.subplots(n, 1, squeeze=False, height_ratios=tall, **kwargs)
+    return figure, [*axes[:, 0]]
+
+
+def shorten(text: str, width: int = 24) -> str:
+    """Return a label broken over two lines, and cut where it is longer still."""
+    words, lines = text.split(), [""]
+    for word in words:
+        if lines[-1] and len(lines[-1]) + 1 + len(word) > width:
+            lines.append("")
+        lines[-1] = f"{lines[-1]} {word}".strip()
+    kept = [line if len(line) <= width + 4 else line[:width + 3] + "…" for line in lines[:2]]
+    return "\n".join(kept) + ("…" if len(lines) > 2 else "")
+
+
+@styled
+def png(figure: Figure) -> bytes:
+    """Return the figure as PNG, the same bytes for the same figure."""
+    buffer = io.BytesIO()
+    with warnings.catch_warnings():
+        # A label in a script that the font lacks is drawn as boxes; the table has it in full.
+        warnings.filterwarnings("ignore", message="Glyph .* missing from font")
+        warnings.filterwarnings("ignore", message="Matplotlib currently does not support")
+        figure.savefig(buffer, format="png", dpi=DPI, metadata={"Software": None})
+    return buffer.getvalue()
+
+
+def show(*drawings: Drawing | Iterable[Drawing]) -> None:
+    """Display drawings in a notebook, each as PNG with its alt text; a missing one as a sentence.
+
+    Parameters
+    ----------
+    *drawings : Drawing or iterable of Drawing
+        What the functions of `figures` return.
+    """
+    for drawing in drawings:
+        if not isinstance(drawing, Drawing):
+            show(*drawing)
+        elif drawing.figure is None:
+            display(paragraph(drawing.alt, "empty"))
+        else:
+            image = base64.b64encode(png(drawing.figure)).decode("ascii")
+            display({"image/png": image, "text/plain": drawing.alt}, raw=True,
+                    metadata={"image/png": {"alt": drawing.alt, "caption": drawing.caption}})

@@ -1,0 +1,88 @@
+"""The published tables as a reader wants them: rounded by the page rule, labelled, captioned.
+
+Each function takes a table of `core.TABLES` and returns `Html`; `show` displays it in a notebook.
+`labels` maps a surface's name to the label that the user gave it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import Any
+
+import pandas as pd
+from IPython.display import display
+
+from . import wording as w
+from .markup import Column, Html, bullets, table
+from .sentences import not_evaluated
+from .tables_records import (
+    check_table,
+    clock_table,
+    inputs_table,
+    instrument_table,
+    ledger_table,
+    settings_table,
+    versions_table,
+)
+from .tables_results import (
+    Labels,
+    budget_table,
+    change_table,
+    difference_table,
+    pass_table,
+    surface_overview,
+    surface_table,
+)
+
+__all__ = [
+    "budget_table", "change_table", "check_table", "clock_table", "difference_table",
+    "frame_table", "inputs_table", "instrument_table", "ledger_table", "not_evaluated_list",
+    "pass_table", "settings_table", "show", "surface_overview", "surface_table", "versions_table",
+]
+
+
+def show(item: Html | pd.DataFrame | Sequence[str], caption: str = "",
+         columns: Sequence[str] | None = None) -> None:
+    """Display a finished table, a frame under a caption, or sentences as a list.
+
+    Parameters
+    ----------
+    item : Html, DataFrame or sequence of str
+        What the functions of this module return, any frame, or what `sentences` returns.
+    caption : str
+        Needed with a frame.
+    columns : sequence of str, optional
+        The frame's columns to show, in order; all by default.
+    """
+    if isinstance(item, pd.DataFrame):
+        item = frame_table(item, caption, columns)
+    elif not isinstance(item, Html):
+        item = bullets(item, empty="Nothing to report.")
+    display(item)
+
+
+def frame_table(frame: pd.DataFrame, caption: str, columns: Sequence[str] | None = None) -> Html:
+    """Return any frame as a table, numbers to four significant digits, underscores as spaces."""
+    shown = frame if columns is None else frame[[*columns]]
+    numeric = {name: pd.api.types.is_numeric_dtype(shown[name]) for name in shown}
+    heads = [Column(str(name).replace("_", " "), "number" if numeric[name] else "text")
+             for name in shown]
+    rows = [[_any_text(value) for value in row]
+            for row in shown.itertuples(index=False, name=None)]
+    return table(caption, heads, rows, empty=f"{caption.rstrip('.')}: no rows.")
+
+
+def not_evaluated_list(surfaces: pd.DataFrame, labels: Labels = None) -> Html:
+    """Return the surfaces without a value and why, gathered by reason."""
+    return bullets(not_evaluated({"surfaces": surfaces}, labels),
+                   empty="Every surface on the field sheet was evaluated.")
+
+
+def _any_text(value: Any) -> str:
+    if isinstance(value, float):
+        return w.figures(value, 4)
+    if isinstance(value, pd.Timestamp):
+        return f"{value:%Y-%m-%d %H:%M:%S}" + (" UTC" if str(value.tz) == "UTC" else "")
+    if value is None or value is pd.NaT:
+        return ""
+    return w.plain(value)

@@ -1,0 +1,164 @@
+"""The mean of a correlated series and how many independent records it is worth."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import ArrayLike
+from scipy.fft import irfft, next_fast_len, rfft
+
+from surveykit.core import Estimate, FloatArray
+
+
+def autocorrelation(x: ArrayLike) -> FloatArray:
+    """Return the sample autocorrelation of an evenly spaced series.
+
+    Parameters
+    ----------
+    x : array_like, shape (n,)
+        Records in order of time, any unit, none missing.
+
+    Returns
+    -------
+    ndarray, shape (n,)
+        Autocorrelation [1] at lags 0 to n - 1, each lag's sum divided by n (not by n - lag);
+        NaN at every lag where the records are all equal, for then it does not exist.
+
+    Raises
+    ------
+    ValueError
+        If x is empty, not one-dimensional, or holds a NaN or an infinity.
+
+    References
+    ----------
+    Box, Jenkins & Reinsel, Time Series Analysis, 3rd ed. 1994, section 2.1.5 (from memory).
+
+    Examples
+    --------
+    >>> autocorrelation([1.0, 2.0, 3.0, 4.0]).round(3)
+    array([ 1.  ,  0.25, -0.3 , -0.45])
+    """
+    values = _series(x)
+    if np.ptp(values) == 0:
+        return np.full(values.size, np.nan)
+    # Scaled first: the squares of very small or very large records stay within range.
+    deviation = (values - values.mean()) / np.ptp(values)
+    length = next_fast_len(2 * values.size - 1, real=True)
+    covariance = irfft(np.abs(rfft(deviation, length)) ** 2, length)[: values.size]
+    return np.asarray(covariance / covariance[0], dtype=np.float64)
+
+
+def integrated_time(correlation: ArrayLike) -> float:
+    """Return how many records of a series are worth one independent record.
+
+    The sum 1 + 2 (rho_1 + rho_2 + ...) is cut where the sum of two neighbouring lags is no longer
+    positive (the initial positive sequence): further lags hold noise only.
+
+    Parameters
+    ----------
+    correlation : array_like, shape (n,)
+        Autocorrelation [1] at lags 0 to n - 1; the first is 1.
+
+    Returns
+    -------
+    float
+        Integrated autocorrelation time in records [1]; below 1 where neighbours alternate.
+
+    References
+    ----------
+    Geyer, Statistical Science 7 (1992) 473-483, section 3.3 (from memory).
+
+    Examples
+    --------
+    >>> integrated_time([1.0, 0.5, 0.25, -0.3, 0.1, 0.1])
+    2.0
+    """
+    rho = np.asarray(correlation, dtype=np.float64)
+    pairs = np.append(rho, 0.0)[: 2 * ((rho.size + 1) // 2)].reshape(-1, 2).sum(axis=1)
+    ends = np.flatnonzero(pairs <= 0)
+    kept = pairs[: ends[0]] if ends.size else pairs
+    return float(2 * kept.sum() - 1)
+
+
+def effective_sample_size(x: ArrayLike) -> float:
+    """Return how many independent records the mean of a correlated series is worth.
+
+    Parameters
+    ----------
+    x : array_like, shape (n,)
+        Records in order of time, any unit, none missing.
+
+    Returns
+    -------
+    float
+        n over the integrated autocorrelation time, held within 1 and n [1]. Records that are all
+        equal show nothing of their correlation and count as one.
+
+    Raises
+    ------
+    ValueError
+        If x is empty, not one-dimensional, or holds a NaN or an infinity.
+
+    References
+    ----------
+    Geyer, Statistical Science 7 (1992) 473-483 (from memory).
+
+    Examples
+    --------
+    >>> effective_sample_size([5.0, 5.0, 5.0])
+    1.0
+    """
+    values = _series(x)
+    if np.ptp(values) == 0:
+        return 1.0
+    time = integrated_time(autocorrelation(values))
+    return values.size if time <= 1 else max(1.0, values.size / time)
+
+
+def mean_of_series(x: ArrayLike, unit: str, method: str) -> Estimate:
+    """Return the mean of a correlated series with the standard uncertainty of sampling.
+
+    Parameters
+    ----------
+    x : array_like, shape (n,)
+        Records in order of time, none missing, n >= 2.
+    unit : str
+        Unit of the records.
+    method : str
+        How the records were made, for the report.
+
+    Returns
+    -------
+    Estimate
+        Mean; u = sd / sqrt(n_eff) with sd over n - 1; n; n_eff.
+
+    Raises
+    ------
+    ValueError
+        If x holds fewer than two records, a NaN or an infinity, or is not one-dimensional.
+
+    References
+    ----------
+    JCGM 100:2008, 4.2.3 (independent records) with n replaced by the effective number.
+
+    Examples
+    --------
+    >>> mean_of_series([1.0, 2.0, 1.0, 2.0], "K", "alternating").n_eff
+    4.0
+    """
+    values = _series(x)
+    if values.size < 2:
+        raise ValueError("the spread of a series needs at least two records, got one")
+    n_eff = float(effective_sample_size(values))
+    return Estimate(value=float(values.mean()), u=float(values.std(ddof=1) / np.sqrt(n_eff)),
+                    unit=unit, n=values.size, n_eff=n_eff, method=method)
+
+
+def _series(x: ArrayLike) -> FloatArray:
+    values = np.asarray(x, dtype=np.float64)
+    if values.ndim != 1 or values.size == 0:
+        raise ValueError(f"a series needs shape (n,) with n >= 1, got {values.shape}")
+    if not np.isfinite(values).all():
+        raise ValueError(f"a series may not hold a NaN or an infinity, got "
+                         f"{np.count_nonzero(~np.isfinite(values))} of {values.size}: "
+                         "leave such records out first")
+    return values

@@ -1,0 +1,67 @@
+"""A finished folder takes the place of the old one whole, whatever stops the process."""
+
+from __future__ import annotations
+
+import ctypes
+import os
+import shutil
+import sys
+from pathlib import Path
+
+AT_FDCWD = -100
+RENAME_EXCHANGE = 2
+
+
+class SwapRefused(OSError):
+    """The system would not rename a folder (a table open elsewhere); both folders are whole."""
+
+
+def heal(folder: Path, name: str) -> None:
+    """Put right what a stopped swap left: an aside with nothing in its place goes back."""
+    place, aside = folder / name, folder / f".{name}.old"
+    if not aside.exists():
+        return
+    if place.exists():
+        shutil.rmtree(aside, ignore_errors=True)
+    else:
+        os.rename(aside, place)
+
+
+def swap_in(folder: Path, name: str) -> None:
+    """Let `.name.new` take the place of `name`, the old one gone after.
+
+    Exchanges the two folders in one step where the system offers it; else the old one goes aside
+    first, and `heal` puts it back should the process stop between the two steps.
+
+    Raises
+    ------
+    SwapRefused
+        If a rename is refused; the new folder then still stands as `.name.new`.
+    """
+    place, new, aside = folder / name, folder / f".{name}.new", folder / f".{name}.old"
+    try:
+        if not place.exists():
+            os.rename(new, place)
+        elif exchange(new, place):
+            os.rename(new, aside)
+        else:
+            os.rename(place, aside)
+            os.rename(new, place)
+    except OSError as error:
+        heal(folder, name)
+        raise SwapRefused(
+            f"the old report of {name} could not be replaced ({error.strerror}); close what has "
+            f"it open. The new one stands in {new.name} beside it") from error
+    shutil.rmtree(aside, ignore_errors=True)
+
+
+def exchange(first: Path, second: Path) -> bool:
+    """Exchange two folders in one step; False where the system cannot."""
+    if not sys.platform.startswith("linux"):
+        return False
+    rename = getattr(ctypes.CDLL(None, use_errno=True), "renameat2", None)
+    if rename is None:
+        return False
+    result = rename(AT_FDCWD, os.fsencode(first), AT_FDCWD, os.fsencode(second),
+                    ctypes.c_uint(RENAME_EXCHANGE))
+    return bool(result == 0)

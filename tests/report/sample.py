@@ -1,0 +1,319 @@
+"""A whole set of tables for the report's tests: every number is invented, nothing was measured.
+
+Five surfaces; temperature by contact and stand-off, albedo, NDVI; every status and verdict word.
+`hostile=True` gives labels and notes that would break out of markup, CSV or figure text.
+"""
+
+from __future__ import annotations
+
+import math
+from itertools import combinations
+from typing import Any
+
+import numpy as np
+import pandas as pd
+
+from surveykit.core import TABLES, table
+
+CAMPAIGN, EARLIER = "mill-yard-2025-07-24", "mill-yard-2025-06-12"
+LABELS = {"worn-asphalt": "Worn asphalt", "coated-court": "Coated court",
+          "pale-slabs": "Pale concrete slabs", "lawn": "Lawn", "planting-bed": "Planting bed"}
+HOSTILE = {**LABELS, "lawn": "<b>Lawn</b> {{ 7*7 }} & $x_1$ \"q\"",
+           "planting-bed": "Bed </table><script>alert(1)</script>"}
+UNIT = {"temperature": "degC", "albedo": "1", "ndvi": "1"}
+NAN = float("nan")
+# surface, quantity, kind, value, U, status, note, patches, passes
+VALUES: list[tuple[str, str, str, float, float, str, str, int, int]] = [
+    ("worn-asphalt", "temperature", "contact", 58.34, 1.22, "ok", "", 2, 5),
+    ("coated-court", "temperature", "contact", 49.87, 1.41, "ok", "", 2, 4),
+    ("pale-slabs", "temperature", "contact", 47.93, 2.18, "qualified",
+     "one patch only, holds for this patch", 1, 2),
+    ("lawn", "temperature", "contact", NAN, NAN, "not evaluated",
+     "no contact dwell settled for 3 s", 1, 1),
+    ("worn-asphalt", "temperature", "stand-off", 57.61, 1.74, "ok", "", 2, 4),
+    ("coated-court", "temperature", "stand-off", 48.95, 1.88, "ok", "", 2, 4),
+    ("lawn", "temperature", "stand-off", 33.12, 10.4, "qualified", "two passes only", 1, 2),
+    ("planting-bed", "temperature", "stand-off", 36.48, NAN, "value only", "one pass", 1, 1),
+    ("worn-asphalt", "albedo", "clear", 0.1023, 0.0071, "ok", "", 2, 4),
+    ("coated-court", "albedo", "clear", 0.2871, 0.0118, "ok", "", 2, 4),
+    ("pale-slabs", "albedo", "clear", 0.3012, 0.0125, "qualified", "sun low: zenith 47°", 1, 2),
+    ("lawn", "albedo", "clear", 0.2213, 0.0194, "ok", "", 2, 3),
+    ("planting-bed", "albedo", "clear", NAN, NAN, "not evaluated",
+     "width_m of the patch is missing", 1, 1),
+    ("lawn", "ndvi", "", 0.7812, 0.0214, "ok", "", 2, 3),
+    ("planting-bed", "ndvi", "", 0.5634, 0.0481, "qualified", "calibration expired", 1, 2),
+    ("worn-asphalt", "ndvi", "", 0.0312, 0.0098, "ok", "", 2, 2),
+]
+SOURCES = {
+    "temperature": [("emissivity of the surface", "surface:emissivity", 0.55),
+                    ("between passes", "pass", 0.24), ("sky radiance", "day:sky", 0.12),
+                    ("calibration offset", "thermal-2025-02:target:offset", 0.09)],
+    "albedo": [("calibration gain, sky side", "shortwave-2025-01:sky_mV:gain", 0.36),
+               ("calibration gain, ground side", "shortwave-2025-01:ground_mV:gain", 0.34),
+               ("between passes", "pass", 0.18), ("surroundings", "surface:around", 0.08),
+               ("levelling", "pass:level", 0.04)],
+    "ndvi": [("between passes", "pass", 0.62), ("calibration gain, red", "rednir:red:gain", 0.25),
+             ("dark reading", "day:dark", 0.13)],
+}
+
+
+def tables(*, hostile: bool = False) -> dict[str, pd.DataFrame]:
+    """Return all tables of `core.TABLES`, filled."""
+    surfaces = [_surface(*row) for row in VALUES]
+    rows: dict[str, list[dict[str, Any]]] = {
+        "surfaces": surfaces, "passes": _passes(), "dwells": _dwells(), "budget": _budget(),
+        "ledger": _ledger(), "checks": _checks(), "clocks": _clocks(),
+        "differences": _differences(surfaces), "changes": _changes(), "corrections": _steps(),
+    }
+    if hostile:
+        rows["surfaces"][3]["note"] = "=HYPERLINK(\"http://example.org\") <i>x</i>"
+        rows["checks"][0]["message"] = "</td><script>alert(2)</script> & {{ config }}"
+        rows["passes"][0]["note"] = "@sum <b>note</b>"
+    return {name: table(name, rows[name]) for name in TABLES}
+
+
+def empty_tables() -> dict[str, pd.DataFrame]:
+    """Return all tables without rows."""
+    return {name: table(name, []) for name in TABLES}
+
+
+def bare_tables() -> dict[str, pd.DataFrame]:
+    """Return the tables of a refused date: one surface, not evaluated, nothing else."""
+    row = _surface("lawn", "albedo", "", NAN, NAN, "not evaluated", "sun below the limit", 0, 0)
+    return {**empty_tables(), "surfaces": table("surfaces", [row])}
+
+
+def facts(*, hostile: bool = False) -> dict[str, Any]:
+    """Return the run's plain facts."""
+    labels = HOSTILE if hostile else LABELS
+    return {
+        "campaign": CAMPAIGN, "title": "Mill Yard, five weeks after the pale coating"
+        + (" <i>&</i>" if hostile else ""), "date": "2025-07-24",
+        "site": {"name": "Mill Yard", "latitude": 41.30, "longitude": -7.75, "elevation_m": 120.0,
+                 "time_zone": "Europe/Lisbon"},
+        "conditions": ["Sky declared clear; clearness between 0.86 and 0.93 during the passes.",
+                       "Air 29.4 to 33.8 °C, wind 0.8 to 2.6 m s⁻¹.",
+                       "No rain in the 48 hours before."],
+        "params_file": f"params/{CAMPAIGN}.yml", "time_zone": "Europe/Lisbon",
+        "inputs": [{"path": f"params/{CAMPAIGN}.yml", "sha256": "3f" * 32, "bytes": 1834},
+                   {"path": f"demo_data/{CAMPAIGN}/thermal.csv", "sha256": "a7" * 32,
+                    "bytes": 2_418_337},
+                   {"path": f"demo_data/{CAMPAIGN}/field_sheet.csv", "sha256": "0c" * 32,
+                    "bytes": 2210}],
+        "versions": {"surveykit": "0.1.0", "python": "3.11.7", "numpy": "2.4.0",
+                     "pandas": "3.1.1"},
+        "seed": 20251, "draws": 20_000, "coverage": 0.95,
+        "settings": [
+            {"section": "temperature", "name": "sky_radiance_u", "value": 0.15, "unit": "1",
+             "origin": "engineering default", "source": "engineering default"},
+            {"section": "albedo", "name": "zenith_standard_deg", "value": 45.0, "unit": "deg",
+             "origin": "standard", "source": "ASTM E1918, sun angle to the normal below 45°"},
+            {"section": "albedo", "name": "zenith_max_deg", "value": 65.0, "unit": "deg",
+             "origin": "yours", "source": "parameter file"},
+            {"section": "quality", "name": "ranges",
+             "value": {"albedo": [-0.01, 1.05], "temperature_k": [233.15, 393.15]}, "unit": "",
+             "origin": "engineering default", "source": "engineering default"},
+            {"section": "statistics", "name": "seed", "value": 20251, "unit": "1",
+             "origin": "engineering default", "source": "any number; printed here to rerun"}],
+        "instruments": [
+            {"logger": "thermal", "serial": "T-07", "column": "target",
+             "quantity": "brightness_temperature", "unit": "degC", "calibration": "thermal-2025-02",
+             "calibration_date": "2025-02-10", "gain": 1.0, "u_gain": 0.0, "offset": 0.0,
+             "u_offset": 0.2, "status": "valid"},
+            {"logger": "shortwave", "serial": "S-02", "column": "sky_mV",
+             "quantity": "shortwave_down", "unit": "mV", "calibration": "shortwave-2025-01",
+             "calibration_date": "2025-01-20", "gain": 10.4, "u_gain": 0.015, "offset": 0.0,
+             "u_offset": 3.0, "status": "valid"},
+            {"logger": "rednir", "serial": None, "column": "red_up", "quantity": "red_up",
+             "unit": "mV", "calibration": "rednir-2022", "calibration_date": "2022-03-01",
+             "gain": 0.82, "u_gain": 0.02, "offset": -0.01, "u_offset": None,
+             "status": "expired"}],
+        "surfaces": labels, "control": "worn-asphalt", "earlier": [EARLIER],
+        "relevant_change": {"temperature": 1.0, "albedo": 0.02, "ndvi": 0.03},
+        "notes": ["The calibration of rednir (rednir-2022) expired on 2024-03-01."],
+        "not_corrected": ["The rod and the operator shade part of the sky that the patch sees.",
+                          "The two heads of the red and near-infrared pair keep their own clocks."],
+        "rerun": f"surveykit run params/{CAMPAIGN}.yml",
+    }
+
+
+def sky() -> pd.DataFrame:
+    """Return a clear day's irradiance and sun zenith, a value a minute."""
+    time = pd.date_range("2025-07-24 08:00", "2025-07-24 17:00", freq="min", tz="UTC", unit="ns")
+    angle = np.linspace(-1.1, 1.1, len(time))
+    return pd.DataFrame({"time_utc": time, "irradiance_w_m2": 960 * np.cos(angle),
+                         "zenith_deg": 22 + 46 * np.abs(angle) ** 1.6})
+
+
+def weather() -> pd.DataFrame:
+    """Return air temperatures read by hand, one of them missing."""
+    time = pd.date_range("2025-07-24 09:00", "2025-07-24 16:00", periods=8, tz="UTC", unit="ns")
+    return pd.DataFrame({"time_utc": time, "air_temperature_degc": [
+        29.4, 30.1, 31.2, NAN, 33.0, 33.8, 33.6, 33.1]})
+
+
+def _surface(surface: str, quantity: str, kind: str, value: float, expanded: float, status: str,
+             note: str, patches: int, passes: int) -> dict[str, Any]:
+    lower, upper = value - expanded, value + expanded
+    if surface == "coated-court" and quantity == "ndvi":
+        upper += 0.5 * expanded
+    k = {1: NAN, 2: 3.18, 3: 2.78}.get(passes, 2.36)
+    return {
+        "campaign": CAMPAIGN, "surface": surface, "quantity": quantity, "kind": kind,
+        "unit": UNIT[quantity], "value": value, "u": expanded / k, "lower": lower, "upper": upper,
+        "coverage": 0.95, "k": k if not math.isnan(expanded) else NAN,
+        "dof": NAN if math.isnan(expanded) else (math.inf if quantity == "ndvi" else 3.4 * passes),
+        "n_patches": patches, "n_passes": passes, "n_records": 612 * passes,
+        "n_effective": 21.4 * passes,
+        "u_at_least": 0.44 if status == "value only" else NAN, "status": status, "note": note,
+    }
+
+
+def _passes() -> list[dict[str, Any]]:
+    rows, minute = [], 0
+    for surface, quantity, kind, value, _, status, note, patches, passes in VALUES:
+        for n in range(max(passes, 1)):
+            start = pd.Timestamp("2025-07-24 10:05", tz="UTC") + pd.Timedelta(minutes=minute)
+            minute += 7
+            gone = status == "not evaluated"
+            patch = f"{surface[0].upper()}{1 + n % max(patches, 1)}"
+            word = kind.replace("-", "") if quantity == "temperature" else quantity
+            rows.append({
+                "campaign": CAMPAIGN, "surface": surface, "patch": patch,
+                "pass": f"{patch}-{word}-{n + 1}", "quantity": quantity, "kind": kind,
+                "mode": kind if quantity == "temperature" else "",
+                "instrument": {"temperature": "thermal", "albedo": "shortwave"}.get(
+                    quantity, "rednir"),
+                "unit": UNIT[quantity], "start_utc": start,
+                "stop_utc": start + pd.Timedelta(seconds=185),
+                "value_raw": value * 0.99, "value": NAN if gone else value * (1 + 0.004 * (n - 1)),
+                "u_within": NAN if gone else 0.004 * abs(value), "n_records": 612,
+                "n_effective": 21.4, "zenith_deg": 24.2 + 0.1 * minute,
+                "flags": "few effective records" if n == 2 else "",
+                "status": status if gone else "ok", "note": note if gone else "",
+            })
+    return rows
+
+
+def _dwells() -> list[dict[str, Any]]:
+    first = pd.Timestamp("2025-07-24 10:05:10", tz="UTC")
+    return [{"campaign": CAMPAIGN, "surface": "worn-asphalt", "patch": "W1", "pass": "W1-contact-1",
+             "dwell": n, "start_utc": first + pd.Timedelta(seconds=9.5 * n),
+             "stop_utc": first + pd.Timedelta(seconds=9.5 * n + 5), "value": 58.1 + 0.2 * n,
+             "u": 0.3, "n_records": 50} for n in range(3)]
+
+
+def _budget() -> list[dict[str, Any]]:
+    rows = []
+    for surface, quantity, kind, _, expanded, *_ in VALUES:
+        if math.isnan(expanded):
+            continue
+        for source, scope, share in SOURCES[quantity]:
+            rows.append({"campaign": CAMPAIGN, "surface": surface, "quantity": quantity,
+                         "kind": kind, "scope": scope, "source": source, "unit": UNIT[quantity],
+                         "u_input": 0.01, "contribution": expanded / 2.4 * math.sqrt(share),
+                         "share": share})
+    return rows
+
+
+def _ledger() -> list[dict[str, Any]]:
+    spec = [("thermal", "used", "", 8_420), ("thermal", "excluded", "head still settling", 2_311),
+            ("thermal", "excluded", "out of range", 12), ("thermal", "outside passes", "", 10_857),
+            ("shortwave", "used", "", 6_720), ("shortwave", "excluded", "unsteady sky", 655),
+            ("shortwave", "outside passes", "", 14_225), ("rednir", "used", "", 930),
+            ("rednir", "excluded", "unreadable line", 3), ("rednir", "outside passes", "", 1_227)]
+    return [{"campaign": CAMPAIGN, "logger": logger, "file": f"{logger}.csv", "surface": "",
+             "patch": "", "pass": "", "disposition": what, "reason": why, "records": n}
+            for logger, what, why, n in spec]
+
+
+def _checks() -> list[dict[str, Any]]:
+    spec = [("range", "thermal", "target", "", "", "exclude", 12,
+             "12 records lie above 120 °C", "engineering default"),
+            ("flatline", "rednir", "nir_up", "lawn", "L1-ndvi-1", "flag", 14,
+             "the reading stood still for 14 s", "engineering default"),
+            ("rare irradiance", "shortwave", "sky_mV", "", "", "note", 41,
+             "41 records exceed the extremely rare limit, as sunlit cloud edges do",
+             "Long and Shi 2008"),
+            ("sun height", "", "", "planting-bed", "P1-albedo-1", "refuse", 612,
+             "the sun stood 72° from the zenith, beyond 70°", "engineering default")]
+    return [{"campaign": CAMPAIGN, "check": check, "logger": logger, "column": column,
+             "surface": surface, "pass": walk, "severity": severity, "records": n,
+             "message": message, "source": source}
+            for check, logger, column, surface, walk, severity, n, message, source in spec]
+
+
+def _clocks() -> list[dict[str, Any]]:
+    return [{"campaign": CAMPAIGN, "logger": logger, "method": method, "offset_s": offset,
+             "u_s": u, "drift_ppm": drift, "status": status, "note": note}
+            for logger, method, offset, u, drift, status, note in [
+                ("thermal", "declared", 12.0, 0.5, 3.0, "ok", ""),
+                ("shortwave", "declared", -3.5, 0.5, 0.0, "ok", ""),
+                ("rednir", "not checked", 0.0, 2.0, 0.0, "not checked", "no clock was stated")]]
+
+
+def _differences(surfaces: list[dict[str, Any]]) -> list[dict[str, Any]]:
+    rows = []
+    relevant = {"temperature": 1.0, "albedo": 0.02, "ndvi": 0.03}
+    for one, other in combinations(surfaces, 2):
+        if (one["quantity"], one["kind"]) != (other["quantity"], other["kind"]):
+            continue
+        d = one["value"] - other["value"]
+        expanded = 0.8 * math.hypot(one["upper"] - one["value"], other["upper"] - other["value"])
+        limit = relevant[one["quantity"]]
+        if math.isnan(d):
+            verdict, note = "not evaluated", one["note"] or other["note"]
+        elif math.isnan(expanded):
+            verdict, note = "not evaluated", "one pass"
+        elif abs(d) <= expanded:
+            verdict, note = "no difference shown", ""
+        else:
+            verdict = ("higher" if d > 0 else "lower") + (", small" if abs(d) < limit else "")
+            note = ""
+        rows.append({
+            "campaign": CAMPAIGN, "quantity": one["quantity"], "kind": one["kind"],
+            "surface": one["surface"], "other": other["surface"],
+            "unit": "K" if one["quantity"] == "temperature" else "1", "difference": d,
+            "u": expanded / 2.2, "lower": d - expanded, "upper": d + expanded, "coverage": 0.95,
+            "p_adjusted": NAN if math.isnan(expanded) else (0.31 if abs(d) <= expanded else 2e-4),
+            "could_have_missed": 1.4 * expanded, "verdict": verdict, "note": note})
+    return rows
+
+
+def _changes() -> list[dict[str, Any]]:
+    ratio, did, raw = "ratio to control", "difference in differences", "raw"
+    spec = [
+        ("temperature", "contact", "coated-court", ratio, -7.94, 1.62, "partly matched", "lower",
+         ""),
+        ("temperature", "contact", "coated-court", did, -8.31, 1.55, "partly matched", "", ""),
+        ("temperature", "contact", "coated-court", raw, -2.12, 1.91, "partly matched", "", ""),
+        ("temperature", "contact", "pale-slabs", ratio, 0.34, 1.90, "partly matched",
+         "no difference shown", "wind not stated on 2025-06-12"),
+        ("temperature", "contact", "lawn", ratio, NAN, NAN, "not matched", "not evaluated",
+         "no contact dwell settled for 3 s"),
+        ("temperature", "stand-off", "lawn", ratio, NAN, NAN, "not matched", "not comparable",
+         "the control was 5.2 K above the air on 2025-06-12, less than 8 K"),
+        ("temperature", "stand-off", "coated-court", ratio, -0.62, 0.41, "matched",
+         "lower, small", ""),
+        ("albedo", "clear", "coated-court", raw, 0.1742, 0.0131, "matched", "higher", ""),
+        ("albedo", "clear", "pale-slabs", raw, 0.0121, 0.0098, "matched", "higher, small", ""),
+        ("albedo", "clear", "lawn", raw, -0.0042, 0.0089, "matched", "equivalent", ""),
+        ("albedo", "clear", "worn-asphalt", raw, 0.0011, 0.0103, "matched",
+         "no difference shown", ""),
+        ("ndvi", "", "lawn", raw, -0.0413, 0.0290, "matched", "lower", "")]
+    return [{
+        "campaign": CAMPAIGN, "earlier": EARLIER, "quantity": quantity, "kind": kind,
+        "surface": surface, "control": "" if method == raw else "worn-asphalt", "method": method,
+        "unit": "K" if quantity == "temperature" else "1", "change": change, "u": half / 2.1,
+        "lower": change - half, "upper": change + half, "coverage": 0.95,
+        "comparability": conditions, "could_have_missed": 1.4 * half, "verdict": verdict,
+        "note": note}
+        for quantity, kind, surface, method, change, half, conditions, verdict, note in spec]
+
+
+def _steps() -> list[dict[str, Any]]:
+    return [{"campaign": CAMPAIGN, "surface": "worn-asphalt", "pass": "W1-standoff-1",
+             "quantity": "temperature", "kind": "stand-off", "unit": "degC", "step": step,
+             "value": value} for step, value in [
+                 ("as logged", 55.9), ("emissivity setting taken out", 55.9),
+                 ("emissivity and background", 57.6)]]
