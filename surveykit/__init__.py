@@ -1,1 +1,1 @@
-"""surveykit: from a day's logger files and a field sheet to per-surface numbers with uncertainty."""
+"""From a day's logger files and a field sheet to per-surface numbers with uncertainty."""

@@ -14,6 +14,7 @@ from typing import Any
 
 import pandas as pd
 
+from surveykit import overview
 from surveykit.accounting import Quality
 from surveykit.core import InputError, require, table
 from surveykit.evidence import compare, handing
@@ -109,8 +110,9 @@ def _align(survey: Survey, logs: dict[str, Records], faults: list[str]) -> Inges
         records[name], clock = set_clock(log, campaign.loggers[name], campaign.settings)
         clocks.append(clock)
     try:
+        by_name = {clock.logger: clock for clock in clocks}
         sheet = read_sheet(survey.parameters.sheet_path, survey.parameters)
-        passes = match_passes(sheet, survey.parameters, tuple(clocks)) if not faults else ()
+        passes = match_passes(sheet, survey.parameters, by_name) if not faults else ()
         faults += strangers(survey, records, passes)
     except InputError as error:
         raise InputError(*faults, *error.faults) from None
@@ -146,6 +148,17 @@ def quality(survey: Survey) -> Quality:
     return made
 
 
+def day(survey: Survey) -> Day:
+    """Return everything that estimates draw upon: records, field sheet, marks."""
+    ingested = ingest(survey)
+    return Day(survey.parameters, ingested.records, ingested.sheet, quality(survey))
+
+
+def day_course(survey: Survey) -> Tables:
+    """Return the course of the day for the timeline: frames `sky` and `weather`."""
+    return overview.day_course(day(survey), ingest(survey).passes)
+
+
 def surfaces(survey: Survey) -> Evidence:
     """Estimate every pass and pool the estimates to surfaces, with budgets."""
     folder = survey.run_folder / "surfaces"
@@ -159,9 +172,7 @@ def surfaces(survey: Survey) -> Evidence:
                   for key in ("surfaces", "budget", "passes", "dwells", "corrections")}
         groups = pooling.groups(name, estimates, survey.draws(), coverage=coverage)
         return Evidence(estimates, groups, tables)
-    ingested = ingest(survey)
-    day = Day(survey.parameters, ingested.records, ingested.sheet, quality(survey))
-    estimates = estimate_all(day, ingested.passes)
+    estimates = estimate_all(day(survey), ingest(survey).passes)
     groups = pooling.groups(name, estimates, survey.draws(), coverage=coverage)
     tables = pooling.pass_tables(name, estimates) | {
         "surfaces": pooling.surface_table(groups, coverage),

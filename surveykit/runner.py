@@ -100,13 +100,19 @@ def _execute(survey: Survey, folder: Path, say: Say) -> dict[str, float]:
     for name in NOTEBOOKS:
         begun = time.perf_counter()
         papermill.execute_notebook(
-            str(survey.parameters.root / "notebooks" / f"{name}.ipynb"), str(folder / f"{name}.ipynb"),
+            _literal(survey.parameters.root / "notebooks" / f"{name}.ipynb"),
+            _literal(folder / f"{name}.ipynb"),
             parameters=handed, kernel_name="python3", progress_bar=False, log_output=False,
             cwd=str(survey.parameters.root),
             kernel_manager_class="surveykit.kernels.QuietKernelManager")
         durations[name] = time.perf_counter() - begun
         say(f"  {name:<14} {durations[name]:5.1f} s")
     return durations
+
+
+def _literal(path: Path) -> str:
+    """Return a path for papermill, which reads braces in paths as names of parameters."""
+    return str(path).replace("{", "{{").replace("}", "}}")
 
 
 def _check_parameters(root: Path) -> None:

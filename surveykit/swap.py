@@ -12,7 +12,7 @@ AT_FDCWD = -100
 RENAME_EXCHANGE = 2
 
 
-class SwapRefused(OSError):
+class SwapError(OSError):
     """The system would not rename a folder (a table open elsewhere); both folders are whole."""
 
 
@@ -35,7 +35,7 @@ def swap_in(folder: Path, name: str) -> None:
 
     Raises
     ------
-    SwapRefused
+    SwapError
         If a rename is refused; the new folder then still stands as `.name.new`.
     """
     place, new, aside = folder / name, folder / f".{name}.new", folder / f".{name}.old"
@@ -49,7 +49,7 @@ def swap_in(folder: Path, name: str) -> None:
             os.rename(new, place)
     except OSError as error:
         heal(folder, name)
-        raise SwapRefused(
+        raise SwapError(
             f"the old report of {name} could not be replaced ({error.strerror}); close what has "
             f"it open. The new one stands in {new.name} beside it") from error
     shutil.rmtree(aside, ignore_errors=True)

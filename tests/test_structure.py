@@ -20,7 +20,7 @@ FLOORS = {
     "physics": 1, "statistics": 1, "handover": 1, "accounting": 1,
     "intake": 2,
     "quality": 3, "evidence": 3, "opening": 3, "keeping": 3,
-    "report": 4, "facts": 4,
+    "report": 4, "facts": 4, "overview": 4,
     "pipeline": 5, "checking": 6, "starting": 5, "swap": 1, "kernels": 1,
     "runner": 6, "cli": 6,
 }

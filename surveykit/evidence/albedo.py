@@ -19,7 +19,7 @@ from surveykit.evidence.parts import (
 )
 from surveykit.intake.params import Channel
 from surveykit.intake.passes import Pass
-from surveykit.physics.footprint import disc_share, rectangle_share, self_shade
+from surveykit.physics.footprint import disc_share, limited_share, rectangle_share, self_shade
 from surveykit.physics.shortwave import ratio_of_sums
 from surveykit.statistics.series import mean_of_series
 
@@ -34,7 +34,7 @@ def albedo(day: Day, this: Pass, sky: Sky) -> PassValue:
     if not np.isfinite(value):
         raise NotEvaluated("the irradiance of the pass does not sum to more than zero")
     zenith = day.quality.passes[this.name].zenith_deg
-    share = footprint_share(this)
+    share = footprint_share(this, head_up)
     shade, assumed = shade_share(day, this, head_up, zenith)
     around, flags = _around(day, this)
     if 1 - share + shade > settings.max_shade_contamination:
@@ -83,8 +83,10 @@ def albedo(day: Day, this: Pass, sky: Sky) -> PassValue:
                      (("raw", raw), ("dark readings", value)))
 
 
-def footprint_share(this: Pass) -> float:
-    """Return the share of a level cosine head's view that the patch fills, head over its centre.
+def footprint_share(this: Pass, head: Channel) -> float:
+    """Return the share of a level head's view that the patch fills, the head over its centre.
+
+    A head of limited view is given the largest circle within the patch.
 
     Raises
     ------
@@ -93,6 +95,10 @@ def footprint_share(this: Pass) -> float:
     """
     if np.isnan(this.length_m):
         raise NotEvaluated(f"width_m and length_m of patch {this.patch!r} are missing")
+    half_angle = head.half_angle_deg or 90.0
+    if half_angle < 90:
+        smaller = np.nanmin([this.length_m, this.width_m])
+        return float(limited_share(smaller / 2, this.height_m, half_angle))
     if np.isnan(this.width_m):
         return float(disc_share(this.length_m / 2, this.height_m))
     half_width, half_length = this.width_m / 2, this.length_m / 2
@@ -123,7 +129,7 @@ def _around(day: Day, this: Pass) -> tuple[Input, tuple[str, ...]]:
         return Input("around_albedo", settings.around_albedo, settings.around_albedo_u,
                      f"{day.name}:{this.surface}:around", "albedo around the patch, assumed"), (
                          "albedo around the patch not stated",)
-    return Input("around_albedo", entry.albedo.value, entry.albedo.u,
+    return Input("around_albedo", entry.amount.value, entry.amount.u,
                  surface_scope("around", this.surface, entry),
                  "albedo around the patch, as stated"), ()
 

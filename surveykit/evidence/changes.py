@@ -26,8 +26,7 @@ RAW = "raw"
 def changes_between(now: Date, then: Date, draws: Draws) -> list[dict[str, Any]]:
     """Return the rows of one pair of dates, `judged` marking those that carry a verdict."""
     rows: list[dict[str, Any]] = []
-    comparison = now.parameters.campaign.comparison
-    control = comparison.control if comparison else None
+    control = now.parameters.campaign.comparison.control
     for key in dict.fromkeys([*now.groups, *then.groups]):
         surface, quantity, kind = key
         if quantity == "albedo" and key not in now.groups and any(

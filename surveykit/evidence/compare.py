@@ -66,7 +66,7 @@ def judge(rows: list[dict[str, Any]], name: str, date: Date, quantity: str) -> N
     """Set the verdicts of one family in place: Holm over those that can be judged."""
     campaign = date.parameters.campaign
     coverage = campaign.settings.statistics.coverage
-    relevant = campaign.relevant_change(quantity)
+    relevant = getattr(campaign.relevant_change, quantity)
     open_rows = [row for row in rows if row["verdict"] == ""]
     for row, p in zip(open_rows, holm([row["p"] for row in open_rows]), strict=True):
         row["p_adjusted"] = float(p)
@@ -101,8 +101,7 @@ def _day_course(date: Date, a: Group, b: Group, draws: Draws) -> tuple[list[Resu
     """
     if a.quantity != "temperature":
         return [], ""
-    comparison = date.parameters.campaign.comparison
-    control = date.find(comparison.control or "", a.quantity, a.kind) if comparison else None
+    control = date.find(date.parameters.campaign.comparison.control or "", a.quantity, a.kind)
     if control is None or len(control.used) < 3:
         return [], "the day's course was not watched by a control"
     time_h = np.array([p.middle_ns for p in control.used]) / 3.6e12

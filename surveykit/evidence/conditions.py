@@ -57,7 +57,7 @@ class Day:
         """Channels of the campaign's loggers by quantity, in the order of the loggers."""
         out: dict[str, list[Channel]] = {}
         for logger in self.records:
-            for channel in self.parameters.kit[logger].channels(logger):
+            for channel in self.parameters.channels(logger):
                 out.setdefault(channel.quantity, []).append(channel)
         return out
 

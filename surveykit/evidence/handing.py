@@ -22,7 +22,7 @@ AIR = "air temperature of the pass"
 
 
 def to_frames(estimates: Sequence[PassEstimate]) -> dict[str, pd.DataFrame]:
-    """Return the estimates as the frames `estimates` (a row a pass) and `inputs` (a row an input)."""
+    """Return the frames `estimates` (a row a pass) and `inputs` (a row an input)."""
     rows: list[dict[str, Any]] = []
     inputs: list[dict[str, Any]] = []
     for e in estimates:

@@ -12,7 +12,6 @@ from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
 import numpy as np
-from surveykit.physics.vegetation import ndvi
 
 from surveykit.core import FloatArray, Input
 from surveykit.physics.thermal import (
@@ -23,6 +22,7 @@ from surveykit.physics.thermal import (
     sky_radiance,
     standoff_temperature_k,
 )
+from surveykit.physics.vegetation import ndvi
 from surveykit.statistics.draws import Draws
 
 Values = Mapping[str, Any]

@@ -171,7 +171,8 @@ def _notes(passes: tuple[PassEstimate, ...], used: tuple[PassEstimate, ...]) -> 
     left = [p for p in passes if not p.evaluated]
     notes = list(flags)
     if left:
-        notes.append(f"{len(left)} of {len(passes)} passes not evaluated: {_why_not(tuple(left))[0]}")
+        why = _why_not(tuple(left))[0]
+        notes.append(f"{len(left)} of {len(passes)} passes not evaluated: {why}")
     return tuple(notes)
 
 

@@ -79,7 +79,7 @@ def contact(day: Day, this: Pass, sky: Sky) -> PassValue:
     sun = sky.irradiance_w_m2
     if not np.isfinite(sun):
         sun = float(day.sun(time).clear_sky_w_m2.mean())
-    cooled = float(head_cooling_k(sun, longest / 2 + settle * channel.time_constant_s,
+    cooled = float(head_cooling_k(sun, longest / 2 + settle * (channel.time_constant_s or 0.0),
                                   settings.effusivity))
     inputs["head_cooling_error"] = Input(
         "head_cooling_error", 0.0, cooled * HALF_WIDTH, f"{day.name}:{this.surface}:head cooling",
@@ -141,7 +141,7 @@ def _infrared(day: Day, this: Pass,
     if entry is None:
         raise NotEvaluated(f"surfaces.{this.surface}.emissivity is missing")
     mean = float(brightness.mean())
-    low, high = channel.band_um
+    low, high = channel.band_um or (8.0, 14.0)
     inputs = [
         fixed("brightness_k", mean), fixed("gain_reading", mean - 273.15 - channel.offset.value),
         fixed("band_low_um", low), fixed("band_high_um", high),
@@ -151,7 +151,7 @@ def _infrared(day: Day, this: Pass,
     ]
     rate = _body_rate_k_min(day, this, channel)
     settings = day.parameters.campaign.settings.temperature
-    inputs.append(Input("body_rate_error", 0.0, settings.body_rate_u_min * abs(rate),
+    inputs.append(Input("body_rate_error", 0.0, settings.body_rate_u_s_k * abs(rate),
                         f"{day.name}:{channel.logger}:body rate",
                         "warming or cooling of the instrument's housing"))
     return {i.name: i for i in inputs}, calibration_flags(day, [channel])

@@ -33,7 +33,7 @@ def vegetation_index(day: Day, this: Pass, sky: Sky) -> PassValue:
     if not np.isfinite(value):
         raise NotEvaluated("red and near-infrared of the pass do not sum to more than zero")
     inputs: list[Input] = [
-        fixed("footprint_share", footprint_share(this)),
+        fixed("footprint_share", footprint_share(this, this.channels["red_up"])),
         Input("around_ndvi", settings.around_ndvi, settings.around_ndvi_u,
               f"{day.name}:{this.surface}:around ndvi", "NDVI around the patch, assumed"),
         Input("contamination_error", 0.0, HALF_WIDTH, f"{day.name}:{this.surface}:contamination",

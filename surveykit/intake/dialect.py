@@ -1,23 +1,20 @@
-"""Delimited text: its header, blocks of whole lines, and one table row for each line in use."""
+"""Delimited text at the level of bytes: the header, blocks of whole lines, well-formed or not."""
 
 from __future__ import annotations
 
 import csv
 import gzip
-import io
 import mmap
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
-import pandas as pd
 
-from surveykit.core import BoolArray, FloatArray, InputError, IntArray
+from surveykit.core import BoolArray, InputError, IntArray
 from surveykit.intake.params.instruments import Layout
 
 BLOCK_BYTES = 1 << 21  # fits a processor's cache; measured best of 1 to 8 MB
-_NUMBER = r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?"
 _BOM = b"\xef\xbb\xbf"
 
 Data = bytes | mmap.mmap
@@ -45,14 +42,6 @@ class Lines:
     at: IntArray
     bad: BoolArray
     physical: int
-
-
-@dataclass(frozen=True)
-class Numbers:
-    """One column: values as logged (NaN where there is none), and which cells are no number."""
-
-    values: FloatArray
-    unreadable: BoolArray
 
 
 def open_bytes(path: Path) -> Data:
@@ -205,52 +194,23 @@ def _utf8(text: bytes, encoding: str) -> bytes:
     return text if encoding == "utf-8" or text.isascii() else text.decode(encoding).encode()
 
 
-def read_table(text: bytes, fields: int, time_at: int, numbers_at: Sequence[int], iso: bool,
-               layout: Layout) -> tuple[pd.Series, dict[int, Numbers]]:
-    """Return the column of times and the columns of numbers of well-formed lines.
-
-    Times are datetime64 where pandas' reader could convert every one (ISO 8601), else text.
-    """
-    if not text:
-        empty = Numbers(np.zeros(0), np.zeros(0, dtype=np.bool_))
-        return pd.Series([], dtype=object), dict.fromkeys(numbers_at, empty)
-    codes = missing_codes(layout)
-    options: dict = {
-        "header": None, "names": range(fields), "usecols": [time_at, *numbers_at],
-        "index_col": False, "sep": layout.delimiter, "decimal": layout.decimal,
-        "skipinitialspace": f"{layout.delimiter} ".encode() in text[: text.find(b"\n")],
-        "skip_blank_lines": False, "keep_default_na": False,
-        "na_values": codes, "low_memory": False, "encoding": "utf-8"}
-    dates = {"parse_dates": [time_at], "date_format": "ISO8601"} if iso else {}
-    kinds: dict[int, type] = {} if iso else {time_at: object}
-    try:
-        frame = pd.read_csv(io.BytesIO(text), **options, **dates,
-                            dtype=kinds | dict.fromkeys(numbers_at, float))
-    except ValueError:
-        frame = pd.read_csv(io.BytesIO(text), **options, **dates,
-                            dtype=kinds | dict.fromkeys(numbers_at, object))
-    return frame[time_at], {at: _numbers(frame[at], codes, layout) for at in numbers_at}
+def line_text(data: Data, header: Header, number: int, encoding: str) -> str:
+    """Return one line after the header as text, for a message."""
+    start = header.start
+    for _ in range(number - header.line - 1):
+        start = data.find(b"\n", start) + 1
+    end = data.find(b"\n", start)
+    return data[start:end if end >= 0 else len(data)].decode(encoding, "replace").strip("\r")
 
 
-def missing_codes(layout: Layout) -> list[str]:
-    """Return the codes of a missing reading; numbers match whatever way they are written."""
-    with_point = [code.replace(layout.decimal, ".") for code in layout.missing]
-    return list(dict.fromkeys(["", *layout.missing, *with_point]))
-
-
-def _numbers(column: pd.Series, codes: list[str], layout: Layout) -> Numbers:
-    if column.dtype == np.float64:
-        values = column.to_numpy(copy=True)
-        unreadable = np.isinf(values)
-        values[unreadable] = np.nan
-        return Numbers(values, unreadable)
-    cells = column.astype(object).where(column.notna(), "").astype(str).str.strip()
-    if layout.decimal != ".":
-        cells = cells.str.replace(".", "x", regex=False).str.replace(layout.decimal, ".")
-    good = cells.str.fullmatch(_NUMBER).to_numpy(dtype=np.bool_)
-    text = "\n".join(cells.where(good, "")) + "\n"
-    again = pd.read_csv(io.StringIO(text), header=None, names=["value"], dtype=float, sep="\t",
-                        skip_blank_lines=False, keep_default_na=False, na_values=codes)
-    read = _numbers(again["value"], codes, layout)
-    missing = cells.isin(codes).to_numpy()
-    return Numbers(read.values, read.unreadable | ~(good | missing))
+def sample_rows(data: Data, header: Header, layout: Layout, lines: int) -> list[list[str]]:
+    """Return the cells of the first well-formed lines after the header."""
+    start = header.start
+    texts: list[str] = []
+    while start < len(data) and len(texts) < lines:
+        end = data.find(b"\n", start)
+        end = len(data) if end < 0 else end
+        texts.append(data[start:end].decode(layout.encoding, "replace"))
+        start = end + 1
+    rows = csv.reader(texts, delimiter=layout.delimiter)
+    return [row for row in rows if len(row) == len(header.columns)]

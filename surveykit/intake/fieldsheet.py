@@ -1,38 +1,236 @@
-"""The field sheet: one row an entry, read into UTC and SI."""
+"""The field sheet: one row an entry, read into UTC and SI, with every fault of every row."""
 
 from __future__ import annotations
 
+import hashlib
+from collections.abc import Callable
 from dataclasses import dataclass
+from datetime import date, timedelta
+from pathlib import Path
+from typing import Any
 
+from surveykit.core import InputError
+from surveykit.intake.params import Parameters
+from surveykit.intake.serving import MODES, QUANTITIES, Offers, Service, offers, serve
+from surveykit.intake.sheet_checks import day_faults, overlap_faults, patch_faults
+from surveykit.intake.sheet_csv import read_rows
+from surveykit.intake.sheet_times import SheetTime, read_time
+from surveykit.intake.sheet_words import NAN, Entry, number, weather_reading
 
-@dataclass(frozen=True)
-class Entry:
-    """One row of the field sheet."""
+__all__ = ["Entry", "Sheet", "read_sheet"]
 
-    row: int
-    entry: str
-    surface: str
-    patch: str
-    quantity: str
-    mode: str
-    instrument: str
-    start_ns: int
-    stop_ns: int
-    edge_u_s: float
-    height_m: float
-    width_m: float
-    length_m: float
-    lanes: int
-    reading: float
-    reading_u: float
-    note: str
+NS = 1_000_000_000
+NEEDED = {
+    "pass": ("surface", "patch", "quantity", "start", "stop"),
+    "cover": ("start", "stop"),
+    "dark": ("start", "stop"),
+    "weather": ("quantity", "start", "reading"),
+}
+LATER = ("swap", "sky", "foil", "reference", "panel", "check", "lid")
+MAX_LABEL, MAX_NOTE = 120, 2000
 
 
 @dataclass(frozen=True)
 class Sheet:
-    """The field sheet as read."""
+    """The field sheet: path under the project folder, SHA-256, entries in order of their start.
+
+    `notices` are sentences worth reading that are no faults.
+    """
 
     path: str
     sha256: str
     entries: tuple[Entry, ...]
     notices: tuple[str, ...]
+
+
+def read_sheet(path: Path, parameters: Parameters) -> Sheet:
+    """Return the entries of a field sheet.
+
+    Times are wall time at the site on the campaign's date, or full ISO 8601, plus the watch's
+    offset (`watch.offset_s`; positive: the watch was slow). Heights and sizes are in m, hand-read
+    weather in SI.
+
+    Parameters
+    ----------
+    path : Path
+        A CSV file as spreadsheets save it: comma, semicolon or tab, decimal point or comma, UTF-8
+        (with or without a byte-order mark) or Windows-1252.
+    parameters : Parameters
+        The campaign and its kit.
+
+    Raises
+    ------
+    InputError
+        All faults of all rows, each with the spreadsheet's row (header = 1).
+    """
+    where = path.relative_to(parameters.root).as_posix() \
+        if path.is_relative_to(parameters.root) else path.name
+    try:
+        data = path.read_bytes()
+    except OSError as error:
+        raise InputError(f"{where}: the field sheet cannot be read ({error.strerror}); "
+                         "check field_sheet and data_folder") from None
+    table = read_rows(data, where)
+    faults, entries = list(table.faults), []
+    services: dict[int, Service] = {}
+    times: dict[int, dict[str, SheetTime]] = {}
+    offered = offers(parameters)
+    for row, cells in table.rows:
+        reader = _Row(row, cells, parameters, offered)
+        entry = reader.entry()
+        times[row] = reader.times
+        faults += [f"{where} row {row}: {fault}" for fault in reader.faults]
+        if entry is not None:
+            entries.append(entry)
+            if reader.service is not None:
+                services[row] = reader.service
+    day, notices = day_faults(table.rows, times, parameters.campaign)
+    faults += [f"{where} {fault}" for fault in day]
+    if not faults and not any(entry.entry == "pass" for entry in entries):
+        faults.append(f"{where}: the field sheet holds no pass; write one row for each")
+    found = [*patch_faults(entries), *overlap_faults(entries, services, times)]
+    faults += [f"{where} row {row}: {fault}" for row, fault in found]
+    if faults:
+        raise InputError(*faults)
+    entries.sort(key=lambda entry: (entry.start_ns, entry.row))
+    return Sheet(where, hashlib.sha256(data).hexdigest(), tuple(entries),
+                 (*table.notices, *(f"{where}: {notice}" for notice in notices)))
+
+
+class _Row:
+    """One row being read; every fault is kept, an entry comes out only if there is none."""
+
+    def __init__(self, row: int, cells: dict[str, str], parameters: Parameters,
+                 offered: Offers) -> None:
+        self.row, self.cells, self.offered = row, cells, offered
+        self.parameters = parameters
+        self.faults: list[str] = []
+        self.times: dict[str, SheetTime] = {}
+        self.service: Service | None = None
+
+    def entry(self) -> Entry | None:
+        kind = self.cells["entry"].lower()
+        if kind in LATER:
+            self.faults.append(f"entry {kind!r} is reserved for later work; take the row out")
+        elif kind not in NEEDED:
+            self.faults.append(f"entry {self.cells['entry']!r} is not known; write one of "
+                               f"{', '.join(NEEDED)}")
+        if self.faults:
+            return None
+        self.faults += [f"a {kind} row needs {name}; the cell is empty" for name in NEEDED[kind]
+                        if not self.cells[name]]
+        for name in ("start", "stop"):
+            if self.cells[name]:
+                self._time(name)
+        self._order()
+        texts = self._texts(kind)
+        values = self._values(kind, texts)
+        if self.faults:
+            return None
+        start = self.times["start"]
+        stop = self.times.get("stop", start)
+        watch_ns = round(self.parameters.campaign.watch.offset.value * NS)
+        limits = self.parameters.settings.passes
+        written = all(time.seconds for time in self.times.values())
+        return Entry(
+            row=self.row, entry=kind, **texts, note=self.cells["note"],
+            start_ns=start.time_ns + watch_ns, stop_ns=stop.time_ns + watch_ns,
+            edge_u_s=limits.sheet_u_s if written else limits.sheet_minutes_u_s, **values)
+
+    def _time(self, name: str) -> None:
+        campaign = self.parameters.campaign
+        day = date.fromisoformat(campaign.date)
+        try:
+            time = read_time(self.cells[name], day, campaign.site.time_zone)
+        except ValueError as error:
+            self.faults.append(f"{name} {error}")
+            return
+        self.times[name] = time
+        if name == "start" and time.wall.date() not in (day, day + timedelta(days=1)):
+            self.faults.append(f"start {self.cells[name]!r} is not on the campaign's date {day}")
+
+    def _order(self) -> None:
+        start, stop = self.times.get("start"), self.times.get("stop")
+        if start and stop and stop.time_ns <= start.time_ns:
+            self.faults.append(
+                f"stop {self.cells['stop']} is not after start {self.cells['start']}; a pass over "
+                f"midnight needs full times such as {start.wall.isoformat()}")
+
+    def _texts(self, kind: str) -> dict[str, Any]:
+        cells = self.cells
+        texts = {"surface": cells["surface"], "patch": cells["patch"],
+                 "quantity": cells["quantity"].lower(), "mode": cells["mode"].lower(),
+                 "instrument": cells["instrument"]}
+        surfaces = self.parameters.campaign.surfaces
+        if texts["surface"] and texts["surface"] not in surfaces:
+            self.faults.append(f"surface {texts['surface']!r} is not known; write one of "
+                               f"{', '.join(surfaces)}")
+        if len(texts["patch"]) > MAX_LABEL or not texts["patch"].isprintable():
+            self.faults.append(f"patch {texts['patch'][:40]!r} is no plain text of up to "
+                               f"{MAX_LABEL} characters")
+        if len(cells["note"]) > MAX_NOTE:
+            self.faults.append(f"note has {len(cells['note'])} characters; up to {MAX_NOTE} fit")
+        if kind == "weather":
+            return texts
+        known = True
+        for name, words in (("quantity", QUANTITIES), ("mode", MODES)):
+            if texts[name] and texts[name] not in words:
+                known = False
+                self.faults.append(f"{name} {texts[name]!r} is not known; write one of "
+                                   f"{', '.join(words)}")
+        if kind == "pass" and texts["quantity"] and known:
+            self._collect(lambda: self._serve(texts))
+        elif texts["instrument"] and texts["instrument"] not in self.offered:
+            self.faults.append(f"instrument {texts['instrument']!r} is none of the campaign's "
+                               f"loggers; write one of {', '.join(self.offered)}")
+        return texts
+
+    def _serve(self, texts: dict[str, Any]) -> None:
+        self.service = serve(self.offered, texts["quantity"], texts["mode"], texts["instrument"])
+
+    def _values(self, kind: str, texts: dict[str, Any]) -> dict[str, Any]:
+        values: dict[str, Any] = {}
+        for name, scale in (("height_cm", 100.0), ("width_m", 1.0), ("length_m", 1.0)):
+            value = self._number(name, 0.0, above=True)
+            values[f"{name.split('_')[0]}_m"] = value / scale
+        lanes = self._number("lanes", 1.0)
+        if lanes % 1 > 0:
+            self.faults.append(f"lanes {self.cells['lanes']!r} is no whole number")
+        values["lanes"] = int(lanes) if lanes == lanes else 0
+        values["reading"] = self._number("reading", -1e12)
+        values["reading_u"] = self._number("reading_u", 0.0)
+        if kind == "weather" and texts["quantity"] and self.cells["reading"]:
+            self._collect(lambda: values.update(weather_reading(
+                texts["quantity"], values["reading"], values["reading_u"],
+                self.parameters.settings.temperature)))
+        if kind == "pass":
+            product = texts["quantity"]
+            if not self.cells["height_cm"] and (
+                    product in ("albedo", "ndvi") or texts["mode"] == "stand-off"):
+                self.faults.append(f"{'a stand-off' if texts['mode'] else f'an {product}'} pass "
+                                   "needs height_cm, the head's height over the ground; the cell "
+                                   "is empty")
+            if self.cells["width_m"] and not self.cells["length_m"]:
+                self.faults.append("width_m without length_m; a disc has length_m (its diameter) "
+                                   "alone, a rectangle both")
+        return values
+
+    def _number(self, name: str, low: float, *, above: bool = False) -> float:
+        if not self.cells[name]:
+            return NAN
+        try:
+            value = number(self.cells[name])
+        except ValueError as error:
+            self.faults.append(f"{name} {error}")
+            return NAN
+        if value < low or (above and value == low):
+            self.faults.append(f"{name} {self.cells[name]!r} is too small; write a number "
+                               f"{'above' if above else 'from'} {low:g}{'' if above else ' up'}")
+            return NAN
+        return value
+
+    def _collect(self, action: Callable[[], None]) -> None:
+        try:
+            action()
+        except ValueError as error:
+            self.faults.append(str(error))

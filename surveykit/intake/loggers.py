@@ -8,17 +8,16 @@ import os
 from collections.abc import Sequence
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
-from decimal import Decimal, InvalidOperation
 from pathlib import Path
 
 import numpy as np
 from numpy.typing import NDArray
 
 from surveykit.core import BoolArray, FloatArray, InputError, IntArray
-from surveykit.intake import dialect
+from surveykit.intake import cells, dialect
 from surveykit.intake.params.instruments import Channel, Instrument, Layout
 from surveykit.intake.records import MARKS, NO_TIME_NS, FileFacts, Records, in_order
-from surveykit.intake.times import NS, read_times, to_utc
+from surveykit.intake.times import read_times, to_utc
 
 __all__ = ["MARKS", "NO_TIME_NS", "FileFacts", "Records", "expand_files", "read_logger"]
 
@@ -32,7 +31,7 @@ class _File:
     line: NDArray[np.int32]
     stepped_back: BoolArray
     bad_line: BoolArray
-    numbers: dict[str, dialect.Numbers]
+    numbers: dict[str, cells.Numbers]
     step: dict[str, float]
 
 
@@ -81,7 +80,8 @@ def read_logger(name: str, instrument: Instrument, paths: Sequence[Path], root: 
         column, not in the declared encoding or format, a time that the zone lacks or has twice.
     """
     channels = instrument.channels(name)
-    files, faults = [], []
+    files: list[_File] = []
+    faults: list[str] = []
     for path in sorted(set(paths), key=lambda path: path.as_posix()):
         try:
             files.append(_read_file(path, root, instrument, channels))
@@ -112,7 +112,7 @@ def _read_file(path: Path, root: Path, instrument: Instrument,
 
     def read(ends: tuple[int, int]) -> tuple:
         lines = dialect.whole_lines(data[ends[0]:ends[1]], fields, layout)
-        texts, numbers = dialect.read_table(lines.text, fields, time_at, numbers_at, iso, layout)
+        texts, numbers = cells.read_table(lines.text, fields, time_at, numbers_at, iso, layout)
         return lines.at.astype(np.int32), lines.bad, lines.physical, \
             *read_times(texts, instrument.time.format), numbers
 
@@ -129,7 +129,7 @@ def _read_file(path: Path, root: Path, instrument: Instrument,
     wall_ns = _chain([part[3] for part in parts], np.int64)
     offset_s = _chain([part[4] for part in parts], np.int32)
     numbers = {
-        channel.column: dialect.Numbers(
+        channel.column: cells.Numbers(
             channel.to_si(_chain([part[5][at].values for part in parts], np.float64)),
             _chain([part[5][at].unreadable for part in parts], np.bool_))
         for channel, at in zip(channels, numbers_at, strict=True)}
@@ -141,11 +141,12 @@ def _read_file(path: Path, root: Path, instrument: Instrument,
     time_ns = to_utc(wall_ns, offset_s, instrument.time.zone, locate)
     before = np.concatenate([[NO_TIME_NS], np.maximum.accumulate(time_ns)[:-1]]) \
         if len(time_ns) else time_ns
-    sample = _sample(data, header, layout)
+    sample = dialect.sample_rows(data, header, layout, SAMPLE_LINES)
+    steps = {channel.column: abs(channel.gain.value) * cells.printed_step(sample, at, layout)
+             for channel, at in zip(channels, numbers_at, strict=True)}
     facts = FileFacts(where, sha256.result(), path.stat().st_size, len(line))
     return _File(facts, time_ns, line, (time_ns < before) & (time_ns != NO_TIME_NS), bad_line,
-                 numbers, {channel.column: _step(sample, at, layout) * abs(channel.gain.value)
-                           for channel, at in zip(channels, numbers_at, strict=True)})
+                 numbers, steps)
 
 
 def _chain(parts: list, kind: type) -> NDArray:
@@ -154,7 +155,7 @@ def _chain(parts: list, kind: type) -> NDArray:
 
 def _places(header: dialect.Header, wanted: Sequence[str], layout: Layout,
             where: str) -> list[int]:
-    faults = []
+    faults: list[str] = []
     for i, column in enumerate(wanted):
         count = header.columns.count(column)
         key = f"columns.{column}" if i else "time.column"
@@ -180,7 +181,7 @@ def _refuse_unlike(data: dialect.Data, header: dialect.Header, instrument: Instr
     if not len(line):
         return
     number = int(line[0])
-    text = _line(data, header, number).decode(layout.encoding, errors="replace").strip("\r")
+    text = dialect.line_text(data, header, number, layout.encoding)
     if bad_line.all():
         fields = next(csv.reader([text], delimiter=layout.delimiter), [])
         what = (f"{len(fields)} fields where the header has {len(header.columns)}"
@@ -191,47 +192,11 @@ def _refuse_unlike(data: dialect.Data, header: dialect.Header, instrument: Instr
             "check layout.delimiter, layout.decimal, layout.encoding and layout.skip_lines")
     if (wall_ns == NO_TIME_NS).all():
         number = int(line[~bad_line][0])
-        text = _line(data, header, number).decode(layout.encoding, errors="replace")
+        text = dialect.line_text(data, header, number, layout.encoding)
         cell = next(csv.reader([text], delimiter=layout.delimiter, skipinitialspace=True))[time_at]
         raise InputError(
             f"{where}, line {number}: no time of the file can be read, the first is {cell!r}; got "
             f"time.format {instrument.time.format!r}, write iso8601 or the format the logger uses")
-
-
-def _line(data: dialect.Data, header: dialect.Header, number: int) -> bytes:
-    start = header.start
-    for _ in range(number - header.line - 1):
-        start = data.find(b"\n", start) + 1
-    end = data.find(b"\n", start)
-    return data[start:end if end >= 0 else len(data)]
-
-
-def _sample(data: dialect.Data, header: dialect.Header, layout: Layout) -> list[list[str]]:
-    start, lines = header.start, []
-    while start < len(data) and len(lines) < SAMPLE_LINES:
-        end = data.find(b"\n", start)
-        end = len(data) if end < 0 else end
-        lines.append(data[start:end].decode(layout.encoding, errors="replace"))
-        start = end + 1
-    rows = csv.reader(lines, delimiter=layout.delimiter)
-    return [row for row in rows if len(row) == len(header.columns)]
-
-
-def _step(sample: list[list[str]], at: int, layout: Layout) -> float:
-    """Return the step of the last digit printed in a column; NaN if no number is."""
-    codes = dialect.missing_codes(layout)
-    places = []
-    for row in sample:
-        cell = row[at].strip()
-        if cell in codes:
-            continue
-        try:
-            exponent = Decimal(cell.replace(layout.decimal, ".")).as_tuple().exponent
-        except InvalidOperation:
-            continue
-        if isinstance(exponent, int):
-            places.append(exponent)
-    return float(Decimal(1).scaleb(min(min(places), 0))) if places else float("nan")
 
 
 def _joined(name: str, instrument: Instrument, channels: Sequence[Channel],

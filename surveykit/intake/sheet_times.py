@@ -95,8 +95,9 @@ def _utc_ns(local: datetime, zone: str, text: str) -> int:
         raise ValueError(f"{text!r} does not exist in {zone} on {local:%Y-%m-%d} "
                          "(clocks go forward); write the time the watch should have shown")
     if len(found) > 1:
+        first = min(found).astimezone(ZoneInfo(zone)).isoformat()
         raise ValueError(f"{text!r} occurs twice in {zone} on {local:%Y-%m-%d} (clocks go back); "
-                         f"write it with its offset, such as {min(found).astimezone(ZoneInfo(zone)).isoformat()}")
+                         f"write it with its offset, such as {first}")
     return _since_epoch_ns(found.pop())
 
 

@@ -62,7 +62,8 @@ def _iso(texts: NDArray[np.object_]) -> pd.Series:
         texts = np.array([text.replace(",", ".") if isinstance(text, str) else text
                           for text in texts], dtype=object)
     try:
-        return pd.Series(pd.to_datetime(texts, format="ISO8601", errors="coerce"))
+        return pd.Series(pd.to_datetime(pd.Series(texts, dtype=object), format="ISO8601",
+                                        errors="coerce"))
     except ValueError:  # more than one offset
         return pd.Series(texts)
 
@@ -91,7 +92,7 @@ def _formatted(texts: NDArray[np.object_], form: str) -> tuple[IntArray, Offsets
         return _one_by_one(texts, lambda text: datetime.strptime(text, form))  # noqa: DTZ007
     if rest.any():
         stripped = np.array([str(text).strip() for text in texts[rest]], dtype=object)
-        times = pd.to_datetime(stripped, format=form, errors="coerce")
+        times = pd.to_datetime(pd.Series(stripped, dtype=object), format=form, errors="coerce")
         wall[rest] = times.to_numpy(dtype="datetime64[ns]").view(np.int64)
     return wall, offsets
 
@@ -198,10 +199,9 @@ def to_utc(wall_ns: IntArray, offset_s: Offsets, zone: str, locate: Locate) -> I
 
 
 def _localized(wall_ns: IntArray, plain: BoolArray, zone: str, locate: Locate) -> IntArray:
-    wall = pd.DatetimeIndex(wall_ns.view("datetime64[ns]"))
-    wall = wall if plain.all() else wall.where(plain)
+    wall = pd.DatetimeIndex(np.where(plain, wall_ns, NO_TIME_NS).view("datetime64[ns]"))
     utc = wall.tz_localize(ZoneInfo(zone), ambiguous="NaT", nonexistent="NaT")
-    lost = np.asarray(utc.isna() & wall.notna())
+    lost: BoolArray = np.asarray(utc.isna()) & np.asarray(wall.notna())
     if lost.any():
         first = wall[lost][0]
         gap = pd.isna(first.tz_localize(ZoneInfo(zone), nonexistent="NaT", ambiguous=True))

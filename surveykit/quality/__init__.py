@@ -6,14 +6,13 @@ A reading is never changed here, only marked. The first bit set, in the order of
 
 from __future__ import annotations
 
-from surveykit.physics.sun import sun_track
-
 from surveykit.accounting import Quality
 from surveykit.core import table
 from surveykit.intake.fieldsheet import Sheet
 from surveykit.intake.loggers import Records
 from surveykit.intake.params import Parameters
 from surveykit.intake.passes import Pass
+from surveykit.physics.sun import sun_track
 from surveykit.quality.ledger import ledger
 from surveykit.quality.marks import Study, mark
 from surveykit.quality.selection import choose
@@ -33,7 +32,7 @@ def examine(parameters: Parameters, records: dict[str, Records], sheet: Sheet,
     study = Study(parameters, records, sheet, passes)
     site = parameters.campaign.site
     for name, log in records.items():
-        study.channels[name] = {c.column: c for c in parameters.kit[name].channels(name)}
+        study.channels[name] = {c.column: c for c in parameters.channels(name)}
         study.sun[name] = sun_track(log.time_ns, site.latitude, site.longitude, site.elevation_m)
     masks = {name: mark(study, name) for name in records}
     chosen = {p.name: choose(study, p, masks) for p in passes}

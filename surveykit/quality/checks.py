@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 import numpy as np
-from surveykit.physics.shortwave import shortwave_limits
-from surveykit.physics.sun import Sun
 
 from surveykit.accounting import NS, Mask
 from surveykit.core import BoolArray, FloatArray, IntArray
+from surveykit.physics.shortwave import shortwave_limits
+from surveykit.physics.sun import Sun
 
 
 def out_of_range(values: FloatArray, low: float, high: float) -> BoolArray:

@@ -6,8 +6,6 @@ from dataclasses import dataclass, field
 from typing import Any
 
 import numpy as np
-from surveykit.physics.shortwave import shortwave_limits
-from surveykit.physics.sun import Sun
 
 from surveykit.accounting import BIT, NS, REASONS, Mask
 from surveykit.core import BoolArray, FloatArray
@@ -16,6 +14,8 @@ from surveykit.intake.fieldsheet import Sheet
 from surveykit.intake.loggers import Records
 from surveykit.intake.params import Channel, Parameters
 from surveykit.intake.passes import Pass
+from surveykit.physics.shortwave import shortwave_limits
+from surveykit.physics.sun import Sun
 from surveykit.quality.checks import inside, out_of_range, physically_impossible, stuck
 
 LIGHT = ("shortwave_down", "shortwave_up", "red_down", "red_up", "nir_down", "nir_up")
@@ -47,6 +47,7 @@ def mark(study: Study, logger: str) -> dict[str, Mask]:
     """Return one mask a column: bit i set where REASONS[i] applies."""
     log, sun = study.records[logger], study.sun[logger]
     settings = study.parameters.campaign.settings
+    ranges = settings.quality.ranges
     line = np.zeros(log.time_ns.size, dtype=np.uint32)
     for name, marked in log.marks.items():
         line |= np.where(marked, BIT[name], np.uint32(0))
@@ -58,7 +59,7 @@ def mark(study: Study, logger: str) -> dict[str, Mask]:
         faults = {
             "no reading": np.isnan(values) & ~log.unreadable[column],
             "unreadable value": log.unreadable[column],
-            "out of range": out_of_range(values, *settings.quality.range_of(channel.quantity)),
+            "out of range": out_of_range(values, *getattr(ranges, channel.quantity)),
             "physically impossible": physically_impossible(values, channel.quantity, sun),
         }
         if channel.quantity in MAIN:

@@ -68,7 +68,7 @@ def _place(study: Study, this: Pass, window: IntArray,
     good = np.flatnonzero(mask == 0)
     found = find_dwells(
         log.time_ns[window][good] / NS, log.channels[channel.column][window][good],
-        settle_s=settings.passes.settle_time_constants * channel.time_constant_s,
+        settle_s=settings.passes.settle_time_constants * (channel.time_constant_s or 0.0),
         min_s=settings.temperature.dwell_min_s,
         max_rate_k_s=settings.temperature.dwell_max_rate_k_s)
     settled = np.zeros(window.size, dtype=bool)

@@ -16,10 +16,9 @@ from . import wording as w
 from .style import HATCHES, INK, MUTED, PALETTE, PAPER, Drawing, panels, shorten, styled
 
 Labels = Mapping[str, str] | None
-TRACKS = (("irradiance_w_m2", "Irradiance,\nW m⁻²", "irradiance", "W m⁻²"),
-          ("zenith_deg", "Sun height,\n°", "sun height", "°"),
-          ("air_temperature_degc", "Air,\n°C", "air temperature", "°C"))
-POINTS, MANY = 600, 6
+TRACKS = (("irradiance_w_m2", "irradiance", "W m⁻²"), ("zenith_deg", "sun height", "°"),
+          ("air_temperature_degc", "air temperature", "°C"))
+POINTS, FEW, MANY = 600, 40, 6
 
 
 @styled
@@ -31,7 +30,7 @@ def day_timeline(passes: pd.DataFrame, sky: pd.DataFrame | None = None,
     Parameters
     ----------
     passes : DataFrame
-        Table `passes`; bars of those that were not used are pale.
+        Table `passes`; a cross stands over one that could not be evaluated.
     sky, weather : DataFrame, optional
         `time_utc` with `irradiance_w_m2` and `zenith_deg` [deg]; with `air_temperature_degc`.
     time_zone : str
@@ -39,48 +38,47 @@ def day_timeline(passes: pd.DataFrame, sky: pd.DataFrame | None = None,
     """
     if passes.empty:
         return Drawing(None, "No pass could be matched with records, so there is no day to draw.")
-    tracks = [(column, title, _thinned(frame, column), name, unit)
-              for column, title, name, unit in TRACKS
+    tracks = [(_thinned(frame, column), name, unit) for column, name, unit in TRACKS
               for frame in (sky, weather) if frame is not None and column in frame
               and frame[column].notna().any()]
     names = list(dict.fromkeys(passes["surface"]))[::-1]
-    figure, axes = panels(1 + len(tracks), [0.9 + 0.36 * len(names), *[0.95] * len(tracks)],
+    figure, axes = panels(1 + len(tracks), [0.75 + 0.3 * len(names), *[0.85] * len(tracks)],
                           sharex=True)
-    keys = [pair for pair, _ in w.families(passes)]
-    for place, pair in enumerate(keys):
-        rows = passes[(passes["quantity"] == pair[0]) & (passes["kind"] == pair[1])]
-        for row in rows.to_dict("records"):
-            start, stop = (mdates.date2num(row[end]) for end in ("start_utc", "stop_utc"))
-            used = row["status"] != "not evaluated"
-            axes[0].barh(names.index(row["surface"]), stop - start, left=start, height=0.62,
-                         color=PALETTE[place % 8] if used else PAPER, edgecolor=PALETTE[place % 8],
-                         linewidth=1.2, hatch=HATCHES[place % 8] if used else None)
-        axes[0].bar(np.nan, 0, color=PALETTE[place % 8], hatch=HATCHES[place % 8],
-                    edgecolor=PAPER, linewidth=0, label=w.quantity_text(*pair))
+    for place, (pair, block) in enumerate(w.families(passes)):
+        rows = block["surface"].map(names.index).to_numpy(float)
+        start, stop = (mdates.date2num(block[end]) for end in ("start_utc", "stop_utc"))
+        axes[0].barh(rows, stop - start, left=start, height=0.62, color=PALETTE[place % 8],
+                     edgecolor=PAPER, linewidth=0.3, hatch=HATCHES[place % 8],
+                     label=w.quantity_text(*pair))
+        gone = (block["status"] == "not evaluated").to_numpy(bool)
+        axes[0].plot(((start + stop) / 2)[gone], rows[gone], "x", color=INK, markersize=5)
     axes[0].set_yticks(range(len(names)), [shorten(w.label(n, labels)) for n in names])
     axes[0].set_ylim(-0.6, len(names) - 0.4)
     axes[0].legend(loc="lower left", bbox_to_anchor=(0, 1), ncols=2, borderaxespad=0,
                    handlelength=1.4)
+    first, last = passes["start_utc"].min(), passes["stop_utc"].max()
+    margin = max(0.04 * (last - first), pd.Timedelta(minutes=5))
+    axes[0].set_xlim(*mdates.date2num([first - margin, last + margin]))
     spans = []
-    for axis, (_, title, (when, what), name, unit) in zip(axes[1:], tracks, strict=True):
-        axis.plot(when, what, color=INK, linewidth=1.1)
-        axis.set_ylabel(title, rotation=0, ha="right", va="center")
+    for axis, ((when, what), name, unit) in zip(axes[1:], tracks, strict=True):
+        axis.plot(when, what, color=INK, linewidth=1.1,
+                  marker="o" if len(what) <= FEW else None, markersize=3)
+        axis.set_title(f"{w.sentence_case(name)[:-1]}, {unit}", fontweight="normal", fontsize=9)
         spans.append(f"{name} from {w.figures(what.min(), 3)} to {w.figures(what.max(), 3)} {unit}")
     for axis in axes:
         axis.grid(axis="x")
         axis.tick_params(axis="y", length=2)
         sns.despine(ax=axis)
     _clock_axis(axes[-1], time_zone)
-    first, last = (f"{time.tz_convert(time_zone):%H:%M}"
-                   for time in (passes["start_utc"].min(), passes["stop_utc"].max()))
+    begin, end = (f"{time.tz_convert(time_zone):%H:%M}" for time in (first, last))
     unused = int((passes["status"] == "not evaluated").sum())
     alt = (f"{w.plural(len(passes), 'pass', 'passes')} on {w.plural(len(names), 'surface')} from "
-           f"{first} to {last} ({time_zone})" + "".join(f"; {span}" for span in spans) + ".")
+           f"{begin} to {end} ({time_zone})" + "".join(f"; {span}" for span in spans) + ".")
     if unused:
         alt += f" {w.plural(unused, 'pass', 'passes')} could not be evaluated."
     return Drawing(figure, alt, "The day: passes by surface" + (
-        " over " + w.listing(name for *_, name, _ in tracks) if tracks else "") + (
-        "; empty bars could not be evaluated." if unused else "."))
+        " over " + w.listing(name for _, name, _ in tracks) if tracks else "") + (
+        "; a cross marks one that could not be evaluated." if unused else "."))
 
 
 @styled
@@ -105,29 +103,36 @@ def ledger_plot(ledger: pd.DataFrame) -> Drawing:
     return Drawing(drawing, " ".join(told), "What became of the records of each logger.")
 
 
+def budget_plots(budget: pd.DataFrame, labels: Labels = None) -> tuple[Drawing, ...]:
+    """Return one plot of variance shares a quantity of the table `budget`."""
+    quantities = dict.fromkeys(quantity for (quantity, _), _ in w.families(budget))
+    return tuple(budget_plot(budget, quantity, labels) for quantity in quantities) or (
+        Drawing(None, "No uncertainty budget could be drawn up, so there are no shares to draw."),)
+
+
 @styled
-def budget_plot(budget: pd.DataFrame, labels: Labels = None) -> Drawing:
-    """Draw for each surface, quantity and kind the shares of variance by source."""
-    known = budget[budget["share"].notna()]
+def budget_plot(budget: pd.DataFrame, quantity: str, labels: Labels = None) -> Drawing:
+    """Draw for each surface and kind of one quantity the shares of variance by source."""
+    known = budget[(budget["quantity"] == quantity) & budget["share"].notna()]
     if known.empty:
-        return Drawing(None, "No uncertainty budget could be drawn up, so there are no shares to "
-                             "draw.")
-    known = known.assign(row=known[["quantity", "kind", "surface"]].apply(tuple, axis="columns"))
+        return Drawing(None, f"No uncertainty budget of {w.inside_sentence(quantity)} could be "
+                             "drawn up, so there are no shares to draw.")
+    known = known.assign(row=known[["kind", "surface"]].apply(tuple, axis="columns"))
     shares = known.pivot_table(index="row", columns="source", values="share", aggfunc="sum",
                                fill_value=0.0, sort=False)
-    order = [(*pair, name) for pair, block in w.families(known)
+    order = [(kind, name) for (_, kind), block in w.families(known)
              for name in dict.fromkeys(block["surface"])]
     ranked = shares.sum().sort_values(ascending=False, kind="stable").index
     shares = _merged(shares.reindex(order)[ranked], "other sources")
-    titles = [f"{shorten(w.label(name, labels), 22)}\n{w.quantity_text(quantity, kind)}"
-              for quantity, kind, name in order]
-    told = []
-    for title, (_, row) in zip(titles, shares.iterrows(), strict=True):
-        head = title.replace("\n", ", ")
-        told.append(f"{head}: {w.percent(row.max())} {row.idxmax()}.")
-    return Drawing(_stack(shares, titles, "Share of variance, %"),
-                   "Largest source of variance. " + " ".join(told),
-                   "Where the uncertainty comes from: shares of variance by source.")
+    names = [shorten(w.label(name, labels)) + (f"\n{kind}" if kind else "")
+             for kind, name in order]
+    told = [f"{w.label(name, labels)}{f' ({kind})' if kind else ''} "
+            f"{w.percent(row.max())} {row.idxmax()}"
+            for (kind, name), (_, row) in zip(order, shares.iterrows(), strict=True)]
+    return Drawing(_stack(shares, names, "Share of variance, %"),
+                   f"{w.quantity_text(quantity)}, largest source of variance: {'; '.join(told)}.",
+                   f"Where the uncertainty of {w.inside_sentence(quantity)} comes from: shares of "
+                   "variance by source.")
 
 
 def _stack(shares: pd.DataFrame, names: list[str], title: str) -> Figure:
@@ -147,10 +152,11 @@ def _stack(shares: pd.DataFrame, names: list[str], title: str) -> Figure:
         left += part
     axis.set_yticks(rows, names, fontsize=8.5, linespacing=1.2)
     axis.set_xlim(0, 100)
+    axis.set_ylim(-0.5, len(shares) - 0.5)
     axis.set_xlabel(title)
     axis.tick_params(axis="y", length=0)
-    axis.legend(loc="lower left", bbox_to_anchor=(0, 1), ncols=2, borderaxespad=0.3,
-                handlelength=1.6, columnspacing=1.2)
+    axis.legend(loc="lower left", bbox_to_anchor=(0, 1), ncols=2 if max(map(len, map(str, shares))) < 26 else 1,
+                borderaxespad=0.3, handlelength=1.6, columnspacing=1.2)
     sns.despine(ax=axis, left=True)
     return figure
 

@@ -11,12 +11,10 @@ import seaborn as sns
 from matplotlib.axes import Axes
 
 from . import wording as w
-from .style import INK, MARKERS, MUTED, PALETTE, RAMP, WIDTH_IN, Drawing, panels, shorten, styled
+from .style import INK, MARKERS, MUTED, PALETTE, PAPER, RAMP, Drawing, panels, shorten, styled
 
 Labels = Mapping[str, str] | None
 ROW_IN, FRAME_IN = 0.34, 0.75
-SHORT = {"no difference shown": "not shown", "not comparable": "not comp.",
-         "not evaluated": "not eval.", "higher, small": "small", "lower, small": "small"}
 
 
 def interval_plots(surfaces: pd.DataFrame, labels: Labels = None) -> tuple[Drawing, ...]:
@@ -78,37 +76,35 @@ def difference_matrix(differences: pd.DataFrame, quantity: str, kind: str | None
         return Drawing(None, f"No difference of {w.inside_sentence(quantity, kind)} between "
                              "surfaces could be evaluated, so there is no matrix to draw.")
     names = list(dict.fromkeys([*block["surface"], *block["other"]]))
-    size = len(names)
-    value, text = np.full((size, size), np.nan), np.full((size, size), "", dtype=object)
+    size = np.full((len(names), len(names)), np.nan)
+    words = np.full(size.shape, "", dtype=object)
     for row in block.to_dict("records"):
-        i, j, d = names.index(row["surface"]), names.index(row["other"]), row["difference"]
-        if i < j:
-            i, j, d = j, i, -d
-        value[i, j] = abs(d)
-        written = w.number(d, w.places(quantity), sign=True)
-        verdict = SHORT.get(row["verdict"], row["verdict"])
-        if verdict in ("higher", "lower"):
-            verdict = "higher" if d > 0 else "lower"
-        text[i, j] = f"{written}\n{verdict}" if written else verdict
-    figure, (axis,) = panels(1, [min(0.7 + 0.62 * (size - 1), 1.1 * WIDTH_IN)])
-    small = 8.5 if size <= 6 else 6.5
-    sns.heatmap(value[1:, :-1], ax=axis, cmap=RAMP, annot=text[1:, :-1], fmt="", cbar=False,
-                linewidths=1.5, annot_kws={"fontsize": small, "linespacing": 1.25}, vmin=0)
-    _unshaded(axis, value[1:, :-1], text[1:, :-1], small)
-    axis.set_yticklabels([shorten(w.label(n, labels), 18) for n in names[1:]], rotation=0)
-    axis.set_xticklabels([shorten(w.label(n, labels), 12) for n in names[:-1]], rotation=0)
-    axis.tick_params(length=0, labelsize=small)
+        i, j = names.index(row["surface"]), names.index(row["other"])
+        sign = 1 if i < j else -1
+        written = w.number(sign * row["difference"], w.places(quantity), sign=True)
+        size[min(i, j), max(i, j)] = abs(row["difference"])
+        words[min(i, j), max(i, j)] = "\n".join(filter(None, (
+            written, shorten(row["verdict"] if sign > 0 else _turned(row["verdict"]), 13))))
+    size, words = size[:-1, 1:], words[:-1, 1:]
+    figure, (axis,) = panels(1, [0.7 + 0.66 * len(size)])
+    small = 8.0 if len(size) < 5 else 6.5
+    sns.heatmap(size, ax=axis, cmap=RAMP, cbar=False, linewidths=1.5, linecolor=PAPER, vmin=0)
+    for i, j in zip(*np.nonzero(words != ""), strict=True):
+        axis.text(j + 0.5, i + 0.5, words[i, j], ha="center", va="center", color=INK,
+                  fontsize=small, linespacing=1.25)
+    axis.set_yticks(np.arange(len(size)) + 0.5,
+                    [shorten(w.label(n, labels), 16, 3) for n in names[:-1]], rotation=0)
+    axis.set_xticks(np.arange(len(size)) + 0.5,
+                    [shorten(w.label(n, labels), 13, 3) for n in names[1:]], rotation=0)
+    axis.tick_params(length=0, labelsize=small + 0.5, labeltop=True, labelbottom=False)
     unit = w.unit_text(block["unit"].iloc[0])
-    counts = block["verdict"].value_counts()
-    tally = w.listing(f"{n} {word}" for word, n in counts.items())
-    return Drawing(
-        figure, f"{w.quantity_text(quantity, kind)}, row minus column: "
-        + "; ".join(f"{w.label(r['surface'], labels)} minus {w.label(r['other'], labels)} "
-                    + (w.with_unit(w.number(r["difference"], w.places(quantity), sign=True),
-                                   r["unit"]) or "no number") + f", {r['verdict']}"
-                    for r in block.to_dict("records")) + ".",
-        f"Differences of {w.inside_sentence(quantity, kind)}{f' in {unit}' if unit else ''}, row "
-        f"minus column, darker for larger, each with its verdict ({tally}).")
+    told = [f"{w.label(row['surface'], labels)} minus {w.label(row['other'], labels)} "
+            + (w.with_unit(w.number(row["difference"], w.places(quantity), sign=True), row["unit"])
+               or "no number") + f", {row['verdict']}" for row in block.to_dict("records")]
+    return Drawing(figure, f"{w.quantity_text(quantity, kind)}: {'; '.join(told)}.",
+                   f"Differences of {w.inside_sentence(quantity, kind)}"
+                   f"{f' in {unit}' if unit else ''}, row minus column, darker for larger, each "
+                   "with its verdict.")
 
 
 def change_plots(changes: pd.DataFrame, relevant: Mapping[str, float] | None = None,
@@ -142,7 +138,7 @@ def change_plot(changes: pd.DataFrame, earlier: str, relevant: Mapping[str, floa
         axis.set_title(w.quantity_text(quantity, kind))
         unit = block["unit"].iloc[0]
         axis.set_xlabel(f"Change{f', {w.unit_text(unit)}' if w.unit_text(unit) else ''}")
-        reach = max(abs(end) for end in axis.get_xlim())
+        reach = max(*(abs(end) for end in axis.get_xlim()), 1.5 * (limit or 0))
         axis.set_xlim(-reach, reach)
         told = [f"{w.label(row['surface'], labels)} "
                 + w.with_unit(w.interval(row["change"], row["lower"], row["upper"],
@@ -151,8 +147,8 @@ def change_plot(changes: pd.DataFrame, earlier: str, relevant: Mapping[str, floa
         findings.append(f"{w.quantity_text(quantity, kind)}: {w.listing(told)}.")
     band = "; the grey band is the change that was declared relevant" if relevant else ""
     return Drawing(figure, f"Change since {earlier}. " + " ".join(findings),
-                   f"Changes since {earlier} with their intervals{band}; hollow marks are not "
-                   "shown to exceed it.")
+                   f"Changes since {earlier} with their intervals{band}; filled marks are judged "
+                   "higher or lower, hollow ones small, equivalent or not shown.")
 
 
 def _rows(axis: Axes, names: list[str]) -> None:
@@ -179,11 +175,10 @@ def _mark(axis: Axes, y: int, row: Any, column: str, place: int, *, hollow: bool
               markerfacecolor=axis.get_facecolor() if hollow else colour, markeredgewidth=1.4)
 
 
-def _unshaded(axis: Axes, value: np.ndarray, text: np.ndarray, size: float) -> None:
-    """Write the words of pairs without a number, which the shading leaves blank."""
-    for i, j in zip(*np.nonzero(np.isnan(value) & (text != "")), strict=True):
-        axis.text(j + 0.5, i + 0.5, text[i, j], ha="center", va="center", color=INK,
-                  style="italic", fontsize=size)
+def _turned(verdict: str) -> str:
+    """The verdict on a pair named the other way round."""
+    return {"higher": "lower", "lower": "higher", "higher, small": "lower, small",
+            "lower, small": "higher, small"}.get(verdict, verdict)
 
 
 def _axis(quantity: str, unit: str) -> str:

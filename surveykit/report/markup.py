@@ -12,7 +12,7 @@ from html import escape
 from typing import Literal
 
 NO_BREAK = "\u00a0"
-Align = Literal["text", "long", "number", "code"]
+Align = Literal["text", "short", "long", "number", "code"]
 
 
 @dataclass(frozen=True)
@@ -34,7 +34,7 @@ class Html:
 
 @dataclass(frozen=True)
 class Column:
-    """A heading and how its cells are set: short text, running text, numbers or code."""
+    """A heading and how its cells are set: text, unbroken, running text, numbers or code."""
 
     heading: str
     align: Align = "text"
@@ -44,15 +44,15 @@ class Column:
 class Cell:
     """A cell: a muted word (`quiet`), the letter of a note below the table, or a number and its U.
 
-    `tail` follows the number in a box `room` characters wide: equal over a column, the decimal
-    marks of values and of uncertainties stand in line.
+    `tail` follows the number in a box `room` digits wide: equal over a column, the decimal marks
+    of values and of uncertainties stand in line.
     """
 
     text: str
     note: str = ""
     quiet: bool = False
     tail: str = ""
-    room: int = 0
+    room: float = 0.0
 
     @property
     def html(self) -> str:
@@ -60,39 +60,53 @@ class Cell:
         inner = escape(self.text)
         if self.quiet:
             inner = f'<span class="quiet">{inner}</span>'
+        note = f'<sup class="note">{escape(self.note)}</sup>' if self.note else ""
+        tail = f"{NO_BREAK}{escape(self.tail)}{note}" if self.tail else ""
+        if not tail:
+            inner += note
         if self.room:
-            tail = f"{NO_BREAK}{escape(self.tail)}" if self.tail else ""
-            inner += f'<span class="tail" style="min-width:{self.room + 1}ch">{tail}</span>'
-        return inner + (f'<sup class="note">{escape(self.note)}</sup>' if self.note else "")
+            inner += f'<span class="tail" style="min-width:{self.room:g}ch">{tail}</span>'
+        return inner
 
 
-def table(caption: str, columns: Sequence[Column], rows: Sequence[Sequence[str | Cell]], *,
-          empty: str, notes: Iterable[tuple[str, str]] = ()) -> Html:
-    """Return a table whose first column heads its rows.
+Row = Sequence[str | Cell]
+
+
+def table(caption: str, columns: Sequence[Column], rows: Sequence[Row], *, empty: str,
+          notes: Iterable[tuple[str, str]] = ()) -> Html:
+    """Return a table whose first column heads its rows, without groups; see `grouped_table`."""
+    return grouped_table(caption, columns, [("", rows)], empty=empty, notes=notes)
+
+
+def grouped_table(caption: str, columns: Sequence[Column], groups: Sequence[tuple[str, Sequence[Row]]],
+                  *, empty: str, notes: Iterable[tuple[str, str]] = ()) -> Html:
+    """Return a table whose first column heads its rows, in groups under headings of their own.
 
     Parameters
     ----------
     caption : str
         What the table shows, with units and coverage where they hold for all of it.
     columns : sequence of Column
-    rows : sequence of sequences of str or Cell
+    groups : sequence of (heading, rows)
+        A row is a sequence of str or Cell; a group without rows is left out.
     empty : str
         The sentence that stands in place of a table without rows.
     notes : iterable of (letter, text)
         Notes set below the table.
     """
-    if not rows:
+    filled = [(heading, rows) for heading, rows in groups if rows]
+    if not filled:
         return paragraph(empty, "empty")
     head = "".join(f'<th scope="col" class="{c.align}">{escape(c.heading)}</th>' for c in columns)
-    body = "".join(f"<tr>{_row(columns, row)}</tr>\n" for row in rows)
+    body = "".join(_group(columns, heading, rows) for heading, rows in filled)
     below = "".join(f'<li><span class="letter">{escape(letter)}</span> {escape(text)}</li>'
                     for letter, text in notes)
     html = (f'<div class="table" role="group" aria-label="{escape(caption)}" tabindex="0">\n'
-            f"<table>\n<caption>{escape(caption)}</caption>\n"
-            f"<thead><tr>{head}</tr></thead>\n<tbody>\n{body}</tbody>\n</table>\n</div>\n")
+            f"<table>\n<caption><span>{escape(caption)}</span></caption>\n"
+            f"<thead><tr>{head}</tr></thead>\n{body}</table>\n</div>\n")
     if below:
         html += f'<ul class="notes">{below}</ul>\n'
-    return Html(html, f"{caption} ({len(rows)} rows)")
+    return Html(html, f"{caption} ({sum(len(rows) for _, rows in filled)} rows)")
 
 
 def paragraph(text: str, css: str = "") -> Html:
@@ -115,7 +129,14 @@ def bullets(lines: Sequence[str], *, empty: str = "", css: str = "") -> Html:
     return Html(f"<ul{attribute}>\n{items}</ul>\n", "\n".join(lines))
 
 
-def _row(columns: Sequence[Column], row: Sequence[str | Cell]) -> str:
+def _group(columns: Sequence[Column], heading: str, rows: Sequence[Row]) -> str:
+    head = (f'<tr class="group"><th scope="rowgroup" colspan="{len(columns)}">'
+            f"<span>{escape(heading)}</span></th></tr>\n") if heading else ""
+    body = "".join(f"<tr>{_row(columns, row)}</tr>\n" for row in rows)
+    return f"<tbody>\n{head}{body}</tbody>\n"
+
+
+def _row(columns: Sequence[Column], row: Row) -> str:
     written = []
     for place, (column, cell) in enumerate(zip(columns, row, strict=True)):
         inner = cell.html if isinstance(cell, Cell) else escape(cell)

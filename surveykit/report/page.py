@@ -178,8 +178,7 @@ def _appendix(facts: Mapping[str, Any]) -> list[dict[str, Any]]:
          "body": [t.settings_table(facts.get("settings", []))]},
         {"id": "inputs", "heading": "Input files",
          "body": [t.inputs_table(facts.get("inputs", []))]},
-        {"id": "versions", "heading": "Programs",
-         "body": [t.versions_table(facts.get("versions", {}))]},
+        {"id": "versions", "heading": "Programs", "body": [paragraph(sentences.programs(facts))]},
         {"id": "rerun", "heading": "How to run it again", "body": [
             paragraph("From the project's folder, with the same input files and programs, this "
                       "gives the same page and tables:"), rerun]},

@@ -102,9 +102,7 @@ def changed(changes: pd.DataFrame, facts: Facts) -> list[str]:
     for row in changes.to_dict("records"):
         if row["verdict"] in ("equivalent", "no difference shown"):
             missed = _missed(row) if row["verdict"] == "no difference shown" else ""
-            gathered[row["verdict"], row["earlier"]].append(
-                f"{w.inside_sentence(row['quantity'], row['kind'])} of "
-                f"{w.label(row['surface'], labels)}{missed}")
+            gathered[row["verdict"], row["earlier"]].append(f"{_of_surface(row, labels)}{missed}")
         elif row["verdict"] not in ("", "not evaluated", "not comparable"):
             lines.append(change_sentence(row, facts))
     return lines + [f"{w.sentence_case(verdict)[:-1]} since {earlier}: {', '.join(items)}."
@@ -118,7 +116,7 @@ def change_sentence(row: Any, facts: Facts) -> str:
     control = w.label(row["control"], facts.get("surfaces"))
     since = row["earlier"]
     against = {
-        "ratio to control": f"than {control}, the control, leads to expect since {since}",
+        "ratio to control": f"than the control, {control}, leads to expect from {since}",
         "difference in differences": f"than in {since}, the change of {control} taken off",
     }.get(row["method"], f"than in {since}")
     size, small = _size(row, "change"), _relevant(row["quantity"], facts)
@@ -141,18 +139,21 @@ def change_sentence(row: Any, facts: Facts) -> str:
 def not_evaluated(tables: Tables, labels: Labels = None) -> list[str]:
     """Return what has no value or no verdict, gathered by reason, surfaces first."""
     gathered: dict[str, list[str]] = defaultdict(list)
+    pairs: dict[tuple[str, str, str, str], list[str]] = defaultdict(list)
     for row in _with(tables.get("surfaces"), "status", ("not evaluated",)):
-        reason = row["note"] or "no reason was handed over"
-        gathered[reason].append(f"{w.inside_sentence(row['quantity'], row['kind'])} of "
-                                f"{w.label(row['surface'], labels)}")
+        gathered[_reason(row)].append(f"{_of_surface(row, labels)} was not evaluated")
     for row in _with(tables.get("differences"), "verdict", ("not evaluated", "not comparable")):
-        pair = w.listing([w.label(row["surface"], labels), w.label(row["other"], labels)])
-        gathered[f"{row['verdict']}: {row['note'] or 'no reason was handed over'}"].append(
-            f"{w.inside_sentence(row['quantity'], row['kind'])} of {pair}")
+        pairs[_reason(row), row["quantity"], row["kind"], row["verdict"]].append(
+            f"{w.label(row['surface'], labels)} and {w.label(row['other'], labels)}")
+    for (reason, quantity, kind, verdict), names in pairs.items():
+        which = f"between {names[0]}" if len(names) == 1 else f"of {len(names)} pairs"
+        verb = "was" if len(names) == 1 else "were"
+        gathered[reason].append(f"the {w.inside_sentence(quantity, kind)} difference"
+                                f"{'' if len(names) == 1 else 's'} {which} {verb} {verdict}")
     for row in _with(tables.get("changes"), "verdict", ("not evaluated", "not comparable")):
-        gathered[f"{row['verdict']}: {row['note'] or 'no reason was handed over'}"].append(
-            f"{w.inside_sentence(row['quantity'], row['kind'])} of "
-            f"{w.label(row['surface'], labels)} since {row['earlier']}")
+        verb = ("is not comparable with" if row["verdict"] == "not comparable" else
+                "was not evaluated against")
+        gathered[_reason(row)].append(f"{_of_surface(row, labels)} {verb} {row['earlier']}")
     return [f"{w.sentence_case(reason)[:-1]}: {'; '.join(dict.fromkeys(items))}."
             for reason, items in gathered.items()]
 
@@ -162,8 +163,7 @@ def value_only(surfaces: pd.DataFrame, labels: Labels = None) -> list[str]:
     rows = _with(surfaces, "status", ("value only",))
     if not rows:
         return []
-    names = [f"{w.inside_sentence(row['quantity'], row['kind'])} of "
-             f"{w.label(row['surface'], labels)}" for row in rows]
+    names = [_of_surface(row, labels) for row in rows]
     return [f"Value without an interval: {w.listing(names)}; a single pass cannot show how much "
             "passes differ, so no verdict uses it."]
 
@@ -179,9 +179,11 @@ def narrowing(budget: pd.DataFrame, labels: Labels = None) -> list[str]:
         top = str(mean.idxmax())
         own = shares[shares["source"] == top]
         most = own.iloc[int(own["share"].argmax())]
-        lines.append(f"{w.quantity_text(quantity, kind)}: {top} holds {w.percent(mean[top])} of "
-                     "the variance on average over the surfaces, most of all for "
-                     f"{w.label(str(most['surface']), labels)} ({w.percent(most['share'])}).")
+        most_of_all = (f", most of all for {w.label(str(most['surface']), labels)} "
+                       f"({w.percent(most['share'])})") if most["share"] > mean[top] + 0.05 else ""
+        lines.append(f"{w.quantity_text(quantity, kind)}: the largest part of the variance is "
+                     f"“{top}”, {w.percent(mean[top])} on average over the "
+                     f"surfaces{most_of_all}.")
     return lines
 
 
@@ -227,6 +229,22 @@ def reading(facts: Facts) -> list[str]:
         "comparisons (Holm 1979) and that the size is at least the relevant one; no difference "
         "shown is not proof of none, so it comes with the size that could have been missed.",
     ]
+
+
+def programs(facts: Facts) -> str:
+    """Name the programs that computed the numbers, with their versions."""
+    versions = facts.get("versions") or {}
+    named = w.listing(f"{name} {version}" for name, version in versions.items())
+    return f"Computed by {named}." if versions else "No version was handed over."
+
+
+def _of_surface(row: Any, labels: Labels) -> str:
+    return (f"{w.inside_sentence(row['quantity'], row['kind'])} of "
+            f"{w.label(row['surface'], labels)}")
+
+
+def _reason(row: Any) -> str:
+    return row["note"].strip().rstrip(".") or "no reason was handed over"
 
 
 def _with(frame: pd.DataFrame | None, column: str, words: tuple[str, ...]) -> list[dict[str, Any]]:

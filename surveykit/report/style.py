@@ -21,13 +21,13 @@ from matplotlib.figure import Figure
 
 from .markup import paragraph
 
-WIDTH_IN, DPI = 5.6, 150
+WIDTH_IN, DPI = 4.7, 180
 PAPER, INK, MUTED, HAIRLINE = "#fdfcf9", "#1f1e1b", "#5d5a53", "#d9d5ca"
 _COLOURS = sns.color_palette("colorblind").as_hex()
 PALETTE = tuple(_COLOURS[i] for i in (0, 3, 2, 4, 5, 1, 9, 7))  # strongest on paper first
 MARKERS = ("o", "s", "D", "^", "v", "P", "X", "*")
-HATCHES = ("", "////", "....", "\\\\\\\\", "xxxx", "----", "++++", "oo")
-RAMP = sns.light_palette(_COLOURS[0], as_cmap=True)
+HATCHES = ("", "//", "..", "\\\\", "xx", "--", "++", "o")
+RAMP = sns.light_palette("#62a9d8", as_cmap=True)  # light enough for ink at its dark end
 STYLE: Any = {
     **sns.axes_style("ticks"), "figure.facecolor": PAPER, "axes.facecolor": PAPER,
     "savefig.facecolor": PAPER, "font.family": "sans-serif", "font.sans-serif": ["DejaVu Sans"],
@@ -55,19 +55,20 @@ def panels(n: int, heights: Iterable[float], **kwargs: Any) -> tuple[Figure, lis
     """Return a figure of the text column's width with `n` stacked panels, heights in inches."""
     tall = [*heights]
     figure = Figure(figsize=(WIDTH_IN, sum(tall) + 0.25), dpi=DPI, layout="constrained")
+    figure.get_layout_engine().set(h_pad=0.09)
     axes = figure.subplots(n, 1, squeeze=False, height_ratios=tall, **kwargs)
     return figure, [*axes[:, 0]]
 
 
-def shorten(text: str, width: int = 24) -> str:
-    """Return a label broken over two lines, and cut where it is longer still."""
+def shorten(text: str, width: int = 22, most: int = 2) -> str:
+    """Return a label broken over at most so many lines, and cut where it is longer still."""
     words, lines = text.split(), [""]
     for word in words:
         if lines[-1] and len(lines[-1]) + 1 + len(word) > width:
             lines.append("")
         lines[-1] = f"{lines[-1]} {word}".strip()
-    kept = [line if len(line) <= width + 4 else line[:width + 3] + "…" for line in lines[:2]]
-    return "\n".join(kept) + ("…" if len(lines) > 2 else "")
+    kept = [line if len(line) <= width + 4 else line[:width + 3] + "…" for line in lines[:most]]
+    return "\n".join(kept) + ("…" if len(lines) > most else "")
 
 
 @styled

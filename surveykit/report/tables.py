@@ -22,7 +22,6 @@ from .tables_records import (
     instrument_table,
     ledger_table,
     settings_table,
-    versions_table,
 )
 from .tables_results import (
     Labels,
@@ -37,7 +36,7 @@ from .tables_results import (
 __all__ = [
     "budget_table", "change_table", "check_table", "clock_table", "difference_table",
     "frame_table", "inputs_table", "instrument_table", "ledger_table", "not_evaluated_list",
-    "pass_table", "settings_table", "show", "surface_overview", "surface_table", "versions_table",
+    "pass_table", "settings_table", "show", "surface_overview", "surface_table",
 ]
 
 
@@ -65,7 +64,7 @@ def frame_table(frame: pd.DataFrame, caption: str, columns: Sequence[str] | None
     """Return any frame as a table, numbers to four significant digits, underscores as spaces."""
     shown = frame if columns is None else frame[[*columns]]
     numeric = {name: pd.api.types.is_numeric_dtype(shown[name]) for name in shown}
-    heads = [Column(str(name).replace("_", " "), "number" if numeric[name] else "text")
+    heads = [Column(w.sentence_case(str(name).replace("_", " "))[:-1], "number" if numeric[name] else "text")
              for name in shown]
     rows = [[_any_text(value) for value in row]
             for row in shown.itertuples(index=False, name=None)]

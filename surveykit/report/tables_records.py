@@ -11,7 +11,7 @@ from typing import Any
 import pandas as pd
 
 from . import wording as w
-from .markup import Cell, Column, Html, table
+from .markup import Column, Html, grouped_table, table
 
 SEVERITIES = ("refuse", "exclude", "flag", "note")
 Rows = Sequence[Mapping[str, Any]]
@@ -35,22 +35,21 @@ def check_table(checks: pd.DataFrame, labels: Mapping[str, str] | None = None) -
 
 def ledger_table(ledger: pd.DataFrame) -> Html:
     """Return one row a logger and disposition: every record is in exactly one of them."""
-    totals = ledger.groupby("logger")["records"].sum()
     order = {"used": 0, "excluded": 1, "outside passes": 2}
-    grouped = ledger.groupby(["logger", "disposition", "reason"], as_index=False)["records"].sum()
-    grouped = grouped.assign(order=grouped["disposition"].map(order).fillna(3)).sort_values(
-        ["logger", "order", "records", "reason"], ascending=[True, True, False, True])
-    rows: list[list[str | Cell]] = []
-    for logger, block in grouped.groupby("logger", sort=True):
-        total = totals[logger]
-        rows.extend([row["logger"], row["disposition"], row["reason"], w.count(row["records"]),
-                     w.percent(row["records"] / total if total else float("nan"))]
-                    for row in block.to_dict("records"))
-        rows.append([str(logger), "all", "", w.count(int(total)), w.percent(1.0)])
-    heads = [Column("Logger"), Column("Disposition"), Column("Reason"),
-             Column("Records", "number"), Column("Share", "number")]
-    return table("What became of each logged record; a record has one disposition and one reason.",
-                 heads, rows, empty="No record was logged.")
+    summed = ledger.groupby(["logger", "disposition", "reason"], as_index=False)["records"].sum()
+    summed = summed.assign(order=summed["disposition"].map(order).fillna(3)).sort_values(
+        ["order", "records", "reason"], ascending=[True, False, True], kind="stable")
+    groups = []
+    for logger, block in summed.groupby("logger", sort=True):
+        total = int(block["records"].sum())
+        groups.append((f"{logger}, {w.plural(total, 'record')}", [
+            [row["disposition"], row["reason"], w.count(row["records"]),
+             w.percent(row["records"] / total if total else float("nan"))]
+            for row in block.to_dict("records")]))
+    heads = [Column("Disposition"), Column("Reason"), Column("Records", "number"),
+             Column("Share", "number")]
+    return grouped_table("What became of each logged record: one disposition, one reason.", heads,
+                         groups, empty="No record was logged.")
 
 
 def clock_table(clocks: pd.DataFrame) -> Html:
@@ -66,28 +65,38 @@ def clock_table(clocks: pd.DataFrame) -> Html:
 
 
 def settings_table(settings: Rows) -> Html:
-    """Return one row a setting with its origin and source."""
-    rows = [[row["name"], row["section"], w.plain(row["value"]), w.unit_text(row["unit"]),
-             row["origin"], row["source"]] for row in settings]
-    heads = [Column("Setting", "code"), Column("Section"), Column("Value", "number"),
-             Column("Unit"), Column("Origin"), Column("Source", "long")]
-    return table("Every setting of the method; origin “yours” marks one changed in the parameter "
-                 "file.", heads, rows, empty="No setting was handed over.")
+    """Return one row a setting, grouped by section, with its origin and source."""
+    groups: dict[str, list[list[str]]] = {}
+    for row in settings:
+        parts = row["value"] if isinstance(row["value"], Mapping) else {"": row["value"]}
+        groups.setdefault(str(row["section"]), []).extend(
+            [f"{row['name']}.{key}" if key else row["name"], w.plain(value),
+             w.unit_text(row["unit"]), row["origin"],
+             "" if row["source"] == row["origin"] else row["source"]]
+            for key, value in parts.items())
+    heads = [Column("Setting", "code"), Column("Value", "number"), Column("Unit", "short"),
+             Column("Origin"), Column("Source", "long")]
+    return grouped_table("Every setting of the method; “yours” marks one changed in the parameter "
+                         "file.", heads, [*groups.items()], empty="No setting was handed over.")
 
 
 def instrument_table(instruments: Rows) -> Html:
-    """Return one row a channel with its calibration."""
-    rows = [[row["logger"], w.plain(row["serial"]), row["column"],
-             str(row["quantity"]).replace("_", " "), w.plain(row["calibration"]),
-             w.plain(row["calibration_date"]), w.plain(row["gain"]), _relative(row["u_gain"]),
-             w.plain(row["offset"]), w.plain(row["u_offset"]), w.unit_text(row["unit"]),
-             row["status"]] for row in instruments]
-    heads = [Column("Logger"), Column("Serial"), Column("Column", "code"), Column("Quantity"),
-             Column("Calibration"), Column("Dated"), Column("Gain", "number"),
-             Column("u of gain", "number"), Column("Offset", "number"),
-             Column("u of offset", "number"), Column("Logged in"), Column("Status")]
-    return table("Instruments and calibrations: value = offset + gain × reading; u of gain is "
-                 "relative.", heads, rows, empty="No instrument was handed over.")
+    """Return one row a channel, grouped by logger, with its calibration."""
+    groups: dict[str, list[list[str]]] = {}
+    for row in instruments:
+        serial = f", serial {row['serial']}" if row["serial"] else ""
+        groups.setdefault(f"{row['logger']}{serial}", []).append(
+            [row["column"], str(row["quantity"]).replace("_", " "), w.unit_text(row["unit"]),
+             w.plain(row["gain"]), _relative(row["u_gain"]), w.plain(row["offset"]),
+             w.plain(row["u_offset"]), w.plain(row["calibration"]),
+             w.plain(row["calibration_date"]), row["status"]])
+    heads = [Column("Column", "code"), Column("Quantity"), Column("Logged in", "short"),
+             Column("Gain", "number"), Column("u of gain", "number"), Column("Offset", "number"),
+             Column("u of offset", "number"), Column("Calibration"), Column("Dated", "short"),
+             Column("Status")]
+    return grouped_table("Instruments and calibrations: value = offset + gain × reading; u of gain "
+                         "is relative.", heads, [*groups.items()],
+                         empty="No instrument was handed over.")
 
 
 def inputs_table(inputs: Rows) -> Html:
@@ -95,14 +104,6 @@ def inputs_table(inputs: Rows) -> Html:
     rows = [[row["path"], w.count(row["bytes"]), row["sha256"]] for row in inputs]
     heads = [Column("File", "code"), Column("Bytes", "number"), Column("SHA-256", "code")]
     return table("Files that went in.", heads, rows, empty="No input file was handed over.")
-
-
-def versions_table(versions: Mapping[str, str]) -> Html:
-    """Return one row a program that took part."""
-    heads = [Column("Program"), Column("Version", "number")]
-    return table("Programs that computed this report.", heads,
-                 [[name, version] for name, version in sorted(versions.items())],
-                 empty="No version was handed over.")
 
 
 def _relative(u_gain: Any) -> str:

@@ -15,7 +15,7 @@ from typing import Any
 import pandas as pd
 
 from . import wording as w
-from .markup import Cell, Column, Html, table
+from .markup import Cell, Column, Html, grouped_table, table
 
 Labels = Mapping[str, str] | None
 NONE = Cell("none", quiet=True)
@@ -44,117 +44,114 @@ def surface_overview(surfaces: pd.DataFrame, labels: Labels = None) -> Html:
     units = {pair: w.unit_text(block["unit"].iloc[0]) for pair, block in families}
     heads = [Column("Surface"), *(Column(w.quantity_text(*pair) + (f", {u}" if u else ""), "number")
                                   for pair, u in units.items())]
-    caption = f"Mean of each surface ± U, {_coverage(surfaces)}, over its passes' own times."
+    caption = f"Mean of each surface ± U ({_coverage(surfaces)}), at its passes’ own times."
     return table(caption, heads, rows, empty="No surface was surveyed.",
                  notes=[(letter, w.sentence_case(note)) for note, letter in letters.items()])
 
 
 def surface_table(surfaces: pd.DataFrame, labels: Labels = None) -> Html:
-    """Return one row a surface and quantity: value ± U, k, counts, status and why."""
-    rows = []
-    for pair, block in w.families(surfaces):
+    """Return one row a surface, grouped by quantity: value ± U, k, counts, status and why."""
+    groups = []
+    for (quantity, kind), block in w.families(surfaces):
         values = _values(block)
-        for index, row in block.iterrows():
-            rows.append([w.label(row["surface"], labels), w.quantity_text(*pair),
-                         values[index], w.unit_text(row["unit"]),
-                         w.number(row["k"], 2), w.number(row["dof"], 0), w.count(row["n_patches"]),
-                         w.count(row["n_passes"]), w.count(row["n_records"]), row["status"],
-                         _note(row)])
-    heads = [Column("Surface"), Column("Quantity"), Column("Value ± U", "number"), Column("Unit"),
-             Column("k", "number"), Column("Degrees of freedom", "number"),
-             Column("Patches", "number"), Column("Passes", "number"), Column("Records", "number"),
-             Column("Status"), Column("Note", "long")]
-    return table(f"Surfaces: mean ± U, {_coverage(surfaces)}, U = k times the standard "
-                 "uncertainty.", heads, rows, empty="No surface was surveyed.")
+        groups.append((_heading(quantity, kind, block), [
+            [w.label(row["surface"], labels), values[index], w.number(row["k"], 2),
+             w.number(row["dof"], 0), w.count(row["n_patches"]), w.count(row["n_passes"]),
+             w.count(row["n_records"]), _word(row["status"], _note(row))]
+            for index, row in block.iterrows()]))
+    heads = [Column("Surface"), Column("Value ± U", "number"), Column("k", "number"),
+             Column("Degrees of freedom", "number"), Column("Patches", "number"),
+             Column("Passes", "number"), Column("Records", "number"), Column("Status", "long")]
+    return grouped_table(f"Surfaces: mean ± U, {_coverage(surfaces)}, U = k times the standard "
+                         "uncertainty.", heads, groups, empty="No surface was surveyed.")
 
 
 def pass_table(passes: pd.DataFrame, labels: Labels = None, time_zone: str = "UTC") -> Html:
-    """Return one row a pass: when, how, value and its uncertainty within the pass."""
-    rows = []
-    for row in passes.sort_values(["start_utc", "pass"]).to_dict("records"):
-        decimals = w.places(row["quantity"])
-        rows.append([row["pass"], w.label(row["surface"], labels),
-                     w.quantity_text(row["quantity"], row["kind"]),
-                     f"{row['start_utc'].tz_convert(time_zone):%H:%M:%S}",
-                     f"{row['stop_utc'].tz_convert(time_zone):%H:%M:%S}",
-                     w.number(row["value"], decimals) or NONE,
-                     w.unit_text(row["unit"]), w.figures(row["u_within"]),
-                     w.count(row["n_records"]), w.figures(row["n_effective"]),
-                     w.number(row["zenith_deg"], 0), row["status"],
-                     "; ".join(filter(None, (row["note"], row["flags"])))])
-    heads = [Column("Pass"), Column("Surface"), Column("Quantity"), Column("From", "number"),
-             Column("To", "number"), Column("Value", "number"), Column("Unit"),
-             Column("u within", "number"), Column("Records", "number"),
-             Column("Effective", "number"), Column("Sun zenith, °", "number"), Column("Status"),
-             Column("Note", "long")]
-    return table(f"Passes in order of time ({time_zone}), after trimming; u within is the standard "
-                 "uncertainty of the pass mean from its own records.", heads, rows,
-                 empty="No pass could be matched with records.")
+    """Return one row a pass, grouped by quantity: when, value, uncertainty within the pass."""
+    groups = []
+    for (quantity, kind), block in w.families(passes.sort_values(["start_utc", "pass"])):
+        groups.append((_heading(quantity, kind, block), [
+            [row["pass"], w.label(row["surface"], labels),
+             f"{row['start_utc'].tz_convert(time_zone):%H:%M:%S}",
+             f"{row['stop_utc'].tz_convert(time_zone):%H:%M:%S}",
+             w.number(row["value"], w.places(quantity)) or NONE,
+             w.expanded(row["u_within"], w.places(quantity) + 1), w.count(row["n_records"]),
+             w.number(row["n_effective"], 0), w.number(row["zenith_deg"], 0),
+             _word(row["status"], "; ".join(filter(None, (row["note"], row["flags"]))))]
+            for row in block.to_dict("records")]))
+    heads = [Column("Pass", "short"), Column("Surface"), Column("From", "number"),
+             Column("To", "number"), Column("Value", "number"), Column("u within", "number"),
+             Column("Records", "number"), Column("Effective", "number"),
+             Column("Sun zenith, °", "number"), Column("Status", "long")]
+    return grouped_table(
+        f"Passes in order of time ({time_zone}), after trimming. u within: standard uncertainty of "
+        "the pass mean from its own records; effective: records reduced for their correlation.",
+        heads, groups, empty="No pass could be matched with records.")
 
 
 def difference_table(differences: pd.DataFrame, labels: Labels = None) -> Html:
-    """Return one row a pair: difference ± U, adjusted p, what could have been missed, verdict."""
-    rows = []
-    for pair, block in w.families(differences):
+    """Return one row a pair, grouped by quantity: difference ± U, p, what was missed, verdict."""
+    groups = []
+    for (quantity, kind), block in w.families(differences):
         values = _values(block, "difference", sign=True)
-        for index, row in block.iterrows():
-            missed = w.expanded(row["could_have_missed"], w.places(pair[0]))
-            rows.append([f"{w.label(row['surface'], labels)} {w.MINUS} "
-                         f"{w.label(row['other'], labels)}", w.quantity_text(*pair),
-                         values[index], w.unit_text(row["unit"]),
-                         w.probability(row["p_adjusted"]), missed, row["verdict"], row["note"]])
-    heads = [Column("Pair"), Column("Quantity"), Column("Difference ± U", "number"), Column("Unit"),
-             Column("p, adjusted", "number"), Column("Could have missed", "number"),
-             Column("Verdict"), Column("Note", "long")]
-    return table(f"Differences between surfaces of this campaign, {_coverage(differences)}; p "
-                 "after Holm within each quantity; verdicts weigh the difference against the "
-                 "relevant one.", heads, rows, empty="No two surfaces could be compared.")
+        groups.append((_heading(quantity, kind, block), [
+            [f"{w.label(row['surface'], labels)} {w.MINUS} {w.label(row['other'], labels)}",
+             values[index], w.probability(row["p_adjusted"]),
+             w.expanded(row["could_have_missed"], w.places(quantity)),
+             _word(row["verdict"], row["note"])] for index, row in block.iterrows()]))
+    heads = [Column("Pair"), Column("Difference ± U", "number"), Column("p, adjusted", "number"),
+             Column("Could have missed", "number"), Column("Verdict", "long")]
+    return grouped_table(
+        f"Differences between surfaces of this campaign, {_coverage(differences)}; p after Holm "
+        "within each quantity; a verdict also weighs the difference against the relevant one.",
+        heads, groups, empty="No two surfaces could be compared.")
 
 
-def change_table(changes: pd.DataFrame, labels: Labels = None, *,
-                 judged_only: bool = False) -> Html:
-    """Return one row a surface, quantity and method: change ± U, comparability, verdict."""
-    shown = changes[changes["verdict"] != ""] if judged_only else changes
-    rows = []
-    for pair, block in w.families(shown):
-        values = _values(block, "change", sign=True)
-        for index, row in block.iterrows():
-            rows.append([w.label(row["surface"], labels), w.quantity_text(*pair),
-                         values[index], w.unit_text(row["unit"]),
-                         row["verdict"] or Cell("not judged", quiet=True), row["comparability"],
-                         _method(row["method"], w.label(row["control"], labels)), row["earlier"],
-                         row["note"]])
-    heads = [Column("Surface"), Column("Quantity"), Column("Change ± U", "number"), Column("Unit"),
-             Column("Verdict"), Column("Conditions"), Column("Method"), Column("Since"),
-             Column("Note", "long")]
-    return table(f"Changes since earlier campaigns, {_coverage(shown)}.", heads, rows,
-                 empty="No earlier campaign was named, so no change was looked for.")
+def change_table(changes: pd.DataFrame, labels: Labels = None) -> Html:
+    """Return one row a surface and method, grouped by date and quantity: change ± U, verdict."""
+    groups = []
+    for earlier in dict.fromkeys(changes["earlier"]):
+        for (quantity, kind), block in w.families(changes[changes["earlier"] == earlier]):
+            values = _values(block, "change", sign=True)
+            groups.append((f"{_heading(quantity, kind, block)}, since {earlier}", [
+                [w.label(row["surface"], labels), values[index],
+                 _method(row["method"], w.label(row["control"], labels)), row["comparability"],
+                 _word(row["verdict"] or "not judged", row["note"], quiet=not row["verdict"])]
+                for index, row in block.iterrows()]))
+    heads = [Column("Surface"), Column("Change ± U", "number"), Column("Method"),
+             Column("Conditions"), Column("Verdict", "long")]
+    return grouped_table(f"Changes since earlier campaigns, {_coverage(changes)}.", heads, groups,
+                         empty="No earlier campaign was named, so no change was looked for.")
 
 
 def budget_table(budget: pd.DataFrame, labels: Labels = None) -> Html:
-    """Return one row a source of uncertainty, the largest share of each surface first."""
-    rows = []
-    for pair, block in w.families(budget):
-        ordered = block.sort_values(["surface", "share", "scope"], ascending=[True, False, True],
-                                    kind="stable")
-        for row in ordered.to_dict("records"):
-            rows.append([w.label(row["surface"], labels), w.quantity_text(*pair), row["source"],
-                         w.figures(row["contribution"]), w.unit_text(_difference_unit(row["unit"])),
-                         w.percent(row["share"]), row["scope"]])
-    heads = [Column("Surface"), Column("Quantity"), Column("Source"),
-             Column("Contribution to u", "number"), Column("Unit"),
-             Column("Share of variance", "number"), Column("Shared as", "code")]
-    return table("Sources of uncertainty: what each adds to the standard uncertainty u.", heads,
-                 rows, empty="No uncertainty budget could be drawn up.")
+    """Return one row a source, grouped by surface and quantity, the largest share first."""
+    groups = []
+    for (quantity, kind), block in w.families(budget):
+        for name in dict.fromkeys(block["surface"]):
+            rows = block[block["surface"] == name].sort_values(
+                ["share", "source"], ascending=[False, True], kind="stable")
+            groups.append((f"{w.label(name, labels)}, {_heading(quantity, kind, rows, 'K')}", [
+                [row["source"], w.expanded(row["contribution"], w.places(quantity) + 1),
+                 w.percent(row["share"]), row["scope"]] for row in rows.to_dict("records")]))
+    heads = [Column("Source"), Column("Contribution to u", "number"),
+             Column("Share of variance", "number"), Column("Error shared as", "code")]
+    return grouped_table("Sources of uncertainty: what each adds to the standard uncertainty u.",
+                         heads, groups, empty="No uncertainty budget could be drawn up.")
 
 
 def _values(block: pd.DataFrame, column: str = "value", *, sign: bool = False) -> dict[Any, Cell]:
     """Write a block's values ± U, what follows the value given the same room in every row."""
     texts = {index: w.interval(row[column], row["lower"], row["upper"], w.places(row["quantity"]),
                                sign=sign).partition(" ") for index, row in block.iterrows()}
-    room = max((len(tail) for _, _, tail in texts.values()), default=0)
+    room = max((_room(tail) for _, _, tail in texts.values()), default=0.0)
     return {index: Cell(value, tail=tail, room=room) if value else NONE
             for index, (value, _, tail) in texts.items()}
+
+
+def _room(tail: str) -> float:
+    """About how many digits wide a tail is: spaces, marks and points are half as wide."""
+    return sum(0.5 if c in " .()" else 1.0 for c in tail) + 0.8 if tail else 0.0
 
 
 def _note(row: pd.Series) -> str:
@@ -178,8 +175,20 @@ def _coverage(frame: pd.DataFrame) -> str:
 
 
 def _method(method: str, control: str) -> str:
-    return f"{method} {control}" if method == "ratio to control" else (
-        f"{method} against {control}" if control else method)
+    if not control:
+        return method
+    return f"{method} {control}" if method == "ratio to control" else f"{method}, {control}"
+
+
+def _heading(quantity: str, kind: str, block: pd.DataFrame, degrees: str = "degC") -> str:
+    """A group's heading with its unit; uncertainties of a temperature in degC are in K."""
+    unit = block["unit"].iloc[0]
+    written = w.unit_text(degrees if unit == "degC" else unit)
+    return w.quantity_text(quantity, kind) + (f", {written}" if written else "")
+
+
+def _word(word: str, why: str, *, quiet: bool = False) -> Cell:
+    return Cell(": ".join(filter(None, (word, why))), quiet=quiet)
 
 
 def _letter(n: int) -> str:

@@ -229,15 +229,18 @@ def label(name: str, labels: Mapping[str, str] | None) -> str:
 
 
 def sentence_case(text: str) -> str:
-    """Return the text with its first letter raised and a full stop at its end.
+    """Return the text with its first letter raised, unless a name in code, and a full stop.
 
     Examples
     --------
-    >>> sentence_case("one pass")
-    'One pass.'
+    >>> sentence_case("one pass"), sentence_case("width_m is missing")
+    ('One pass.', 'width_m is missing.')
     """
     text = text.strip()
-    return text[:1].upper() + text[1:] + ("" if text[-1:] in ".!?" else ".") if text else ""
+    first = text.split(" ")[0]
+    if first.isalpha():
+        text = text[:1].upper() + text[1:]
+    return text + ("" if text[-1:] in ".!?" else ".") if text else ""
 
 
 def plain(value: Any) -> str:

@@ -5,6 +5,7 @@ from surveykit.intake.params.campaign import Campaign, Parameters
 from surveykit.intake.params.instruments import Calibration, Channel, Instrument
 from surveykit.intake.params.loading import (
     is_kit,
+    is_kit_file,
     load,
     load_kit,
     load_mapping,
@@ -19,6 +20,6 @@ from surveykit.intake.params.settings import SettingRow, Settings
 __all__ = [
     "Amount", "Calibration", "Campaign", "Channel", "Clock", "Instrument", "LoggerUse",
     "Parameters", "SettingRow", "Settings", "Uncertain", "Watch", "campaign_schema", "find_root",
-    "inside", "instruments_schema", "is_kit", "load", "load_kit", "load_mapping", "read_plain",
-    "refuse_other_sections", "write_schemas",
+    "inside", "instruments_schema", "is_kit", "is_kit_file", "load", "load_kit", "load_mapping",
+    "read_plain", "refuse_other_sections", "write_schemas",
 ]

@@ -23,7 +23,8 @@ class Channel:
 
     Gain and offset lead from the logged number straight to SI (K, W m-2, 1, Pa, m s-1); no
     further conversion by `unit` is due. `u_gain` is relative, `u_offset` in SI; equal scopes share
-    an error. None means that the kit does not say.
+    an error. None means that the kit does not say; the time constant of a weather or housing
+    channel that states none is 0.
     """
 
     logger: str
@@ -39,7 +40,7 @@ class Channel:
     calibration: Calibration | None
     band_um: tuple[float, float] | None
     half_angle_deg: float | None
-    time_constant_s: float | None
+    time_constant_s: float
     head_radius_m: float | None
     bore_emissivity: Uncertain
     emissivity_setting: float | None
@@ -83,7 +84,7 @@ def channel(name: str, header: str, entry: Instrument, settings: Settings) -> Ch
         u_gain=u_gain, u_offset=u_offset,
         gain_scope=f"{owner}:{header}:gain", offset_scope=f"{owner}:{header}:offset",
         calibration=calibration, band_um=stated("band_um"),
-        half_angle_deg=stated("half_angle_deg"), time_constant_s=stated("tau_s"),
+        half_angle_deg=stated("half_angle_deg"), time_constant_s=stated("tau_s") or 0.0,
         head_radius_m=None if radius is None else radius / 100, bore_emissivity=bore,
         emissivity_setting=column.emissivity_setting,
         band_centres_nm=stated("band_centres_nm"), band_widths_nm=stated("band_widths_nm"))

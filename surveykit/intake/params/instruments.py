@@ -231,6 +231,10 @@ class Instrument(Head):
             if first != header:
                 yield ("columns", header), f"holds {column.quantity} as column {first!r} does; " \
                                            "keep one of the two"
+            if column.quantity in MAIN and column.tau_s is None and self.tau_s is None:
+                yield ("columns", header), (
+                    f"time_constant_s missing; a column of {column.quantity} needs it (or t95_s), "
+                    "here or in the entry: the ends of a pass are trimmed by it")
         if self.time.column in self.columns:
             yield ("columns", self.time.column), "is the column of times; write another header"
 

@@ -73,12 +73,7 @@ def load_kit(path: Path | str, root: Path | None = None) -> dict[str, Instrument
     InputError
         With every fault, located.
     """
-    path = Path(path)
-    try:
-        root = _root(path, root)
-    except InputError:
-        root = path.parent
-    document = read_document(path, display_name(path, root))
+    document = _read_alone(Path(path), root)
     kit, faults = _kit(document, Settings())
     if faults:
         raise InputError(*located(document, faults))
@@ -93,27 +88,25 @@ def read_plain(path: Path | str, root: Path | None = None) -> dict[str, Any]:
     InputError
         If the file is not strict YAML.
     """
-    path = Path(path)
-    document = read_document(path, display_name(path, root or path.parent))
+    document = _read_alone(Path(path), root)
     if document.faults:
         raise InputError(*located(document, document.faults))
     return document.data
 
 
-def refuse_other_sections(handed: Mapping[str, Any], path: Path | str,
-                          root: Path | None = None) -> None:
+def refuse_other_sections(
+        handed: Mapping[str, Any], plain: Mapping[str, Any], path: Path) -> None:
     """Refuse sections that differ from those of the file they are said to come from.
 
-    A runner that reads YAML its own way loses a duplicate key, 0120 and 12:30; `handed` holds its
-    reading of the top-level keys, None for absent.
+    A runner that reads YAML its own way loses a duplicate key, 0120 and 12:30. `handed` is its
+    reading of the top-level keys, `plain` that of `read_plain`; None counts as absent.
 
     Raises
     ------
     InputError
         Naming each top-level key that differs.
     """
-    plain = read_plain(path, root)
-    name = display_name(Path(path), root or Path(path).parent)
+    name = f"{path.parent.name}/{path.name}"
     odd = [key for key in sorted({*plain, *handed}) if plain.get(key) != handed.get(key)]
     if odd:
         raise InputError(*(f"{name}: {key}: the notebook was handed another value than the file "
@@ -134,12 +127,32 @@ def is_kit(data: Any) -> bool:
             and all(isinstance(entry, Mapping) for entry in data.values()))
 
 
+def is_kit_file(path: Path | str) -> bool:
+    """Return whether a file is an instruments file; False also where it cannot be read.
+
+    Faults are left to `load` and `load_kit`, which tell all of them together.
+    """
+    try:
+        return is_kit(_read_alone(Path(path), None).data)
+    except InputError:
+        return False
+
+
+def _read_alone(path: Path, root: Path | None) -> Document:
+    try:
+        root = _root(path, root)
+    except InputError:
+        root = path.parent
+    return read_document(path, display_name(path, root))
+
+
 def display_name(path: Path, root: Path) -> str:
     """Return how a file is called in messages: from the project folder where it lies inside."""
     try:
-        return path.resolve().relative_to(root.resolve()).as_posix()
+        name = path.resolve().relative_to(root.resolve()).as_posix()
     except (ValueError, OSError, RuntimeError):
-        return str(path)
+        name = str(path)
+    return name if name.isprintable() else repr(name)
 
 
 def _root(path: Path, root: Path | None) -> Path:
@@ -223,7 +236,7 @@ def _valid_sections(
             adapter: TypeAdapter[Any] = TypeAdapter(cast(Any, Annotated[info.annotation, info]))
             yield key, adapter.validate_python(data[key], context=context)
     for key, model in (("surfaces", Surface), ("loggers", LoggerUse), ("instruments", Instrument)):
-        if key in bad and isinstance(data[key], Mapping):
+        if key in bad and isinstance(data.get(key), Mapping):
             yield key, _valid_entries(model, data[key], context)
 
 

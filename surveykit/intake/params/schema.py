@@ -21,7 +21,8 @@ class _Untitled(GenerateJsonSchema):
 
 def campaign_schema() -> dict[str, Any]:
     """Return the JSON Schema of a campaign's parameter file."""
-    return _finish(Campaign.model_json_schema(schema_generator=_Untitled), "Parameter file of a campaign")
+    return _finish(Campaign.model_json_schema(schema_generator=_Untitled),
+                   "Parameter file of a campaign")
 
 
 def instruments_schema() -> dict[str, Any]:

@@ -44,8 +44,8 @@ class Walls(Strict):
     """What hides part of the sky."""
 
     temperature_degC: Annotated[Uncertain, BareNumber(  # noqa: N815 - the unit is written so
-        "temperature.walls_u_k", -60, 120, number_words("degC", ge=-60, le=120))] | None = key(
-        "Temperature; absent: the air's.", default=None,
+        "temperature.walls_u_k", -60, 120, number_words("degC", ge=-60, le=120))] = key(
+        "Temperature; where walls are absent, the air's.",
         write="a number in degC, or {value, u}")
     emissivity: Annotated[float, FromSettings("temperature.walls_emissivity")] = key(
         "Emissivity; absent: settings.temperature.walls_emissivity.", default=None,
@@ -247,6 +247,10 @@ class RelevantChange(Strict):
                              write=number_words("K", gt=0))
     albedo: float = key("Of albedos.", default=0.02, gt=0, write=number_words("", gt=0))
     ndvi: float = key("Of NDVI.", default=0.03, gt=0, write=number_words("", gt=0))
+
+    def of(self, quantity: str) -> float:
+        """Return that of a quantity: temperature [K], albedo or ndvi."""
+        return float(getattr(self, quantity))
 
 
 class Comparison(Strict):

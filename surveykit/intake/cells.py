@@ -1,0 +1,93 @@
+"""Delimited text at the level of cells: times and numbers of well-formed lines."""
+
+from __future__ import annotations
+
+import io
+from collections.abc import Sequence
+from dataclasses import dataclass
+from decimal import Decimal, InvalidOperation
+from typing import Any
+
+import numpy as np
+import pandas as pd
+
+from surveykit.core import BoolArray, FloatArray
+from surveykit.intake.params.instruments import Layout
+
+_NUMBER = r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?"
+
+
+@dataclass(frozen=True)
+class Numbers:
+    """One column: values as logged (NaN where there is none), and which cells are no number."""
+
+    values: FloatArray
+    unreadable: BoolArray
+
+
+def read_table(text: bytes, fields: int, time_at: int, numbers_at: Sequence[int], iso: bool,
+               layout: Layout) -> tuple[pd.Series, dict[int, Numbers]]:
+    """Return the column of times and the columns of numbers of well-formed lines.
+
+    Times are datetime64 where pandas' reader could convert every one (ISO 8601), else text.
+    """
+    if not text:
+        empty = Numbers(np.zeros(0), np.zeros(0, dtype=np.bool_))
+        return pd.Series([], dtype=object), dict.fromkeys(numbers_at, empty)
+    codes = missing_codes(layout)
+    options: dict[str, Any] = {
+        "header": None, "names": range(fields), "usecols": [time_at, *numbers_at],
+        "index_col": False, "sep": layout.delimiter, "decimal": layout.decimal,
+        "skipinitialspace": f"{layout.delimiter} ".encode() in text[: text.find(b"\n")],
+        "skip_blank_lines": False, "keep_default_na": False,
+        "na_values": codes, "low_memory": False, "encoding": "utf-8"}
+    dates: dict[str, Any] = {"parse_dates": [time_at], "date_format": "ISO8601"} if iso else {}
+    kinds: dict[int, type] = {} if iso else {time_at: object}
+    try:
+        frame = pd.read_csv(io.BytesIO(text), **options, **dates,
+                            dtype=kinds | dict.fromkeys(numbers_at, float))
+    except ValueError:
+        frame = pd.read_csv(io.BytesIO(text), **options, **dates,
+                            dtype=kinds | dict.fromkeys(numbers_at, object))
+    return frame[time_at], {at: _numbers(frame[at], codes, layout) for at in numbers_at}
+
+
+def missing_codes(layout: Layout) -> list[str]:
+    """Return the codes of a missing reading; numbers match whatever way they are written."""
+    with_point = [code.replace(layout.decimal, ".") for code in layout.missing]
+    return list(dict.fromkeys(["", *layout.missing, *with_point]))
+
+
+def _numbers(column: pd.Series, codes: list[str], layout: Layout) -> Numbers:
+    if column.dtype == np.float64:
+        values = column.to_numpy(copy=True)
+        unreadable = np.isinf(values)
+        values[unreadable] = np.nan
+        return Numbers(values, unreadable)
+    cells = column.astype(object).where(column.notna(), "").astype(str).str.strip()
+    if layout.decimal != ".":
+        cells = cells.str.replace(".", "x", regex=False).str.replace(layout.decimal, ".")
+    good = cells.str.fullmatch(_NUMBER).to_numpy(dtype=np.bool_)
+    text = "\n".join(cells.where(good, "")) + "\n"
+    again = pd.read_csv(io.StringIO(text), header=None, names=["value"], dtype=float, sep="\t",
+                        skip_blank_lines=False, keep_default_na=False, na_values=codes)
+    read = _numbers(again["value"], codes, layout)
+    missing = cells.isin(codes).to_numpy()
+    return Numbers(read.values, read.unreadable | ~(good | missing))
+
+
+def printed_step(sample: list[list[str]], at: int, layout: Layout) -> float:
+    """Return the step of the last digit printed in a column; NaN if no number is."""
+    codes = missing_codes(layout)
+    places = []
+    for row in sample:
+        cell = row[at].strip()
+        if cell in codes:
+            continue
+        try:
+            exponent = Decimal(cell.replace(layout.decimal, ".")).as_tuple().exponent
+        except InvalidOperation:
+            continue
+        if isinstance(exponent, int):
+            places.append(exponent)
+    return float(Decimal(1).scaleb(min(min(places), 0))) if places else float("nan")

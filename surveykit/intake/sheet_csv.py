@@ -1,0 +1,75 @@
+"""The field sheet as a spreadsheet saved it: cells by column, with row numbers."""
+
+from __future__ import annotations
+
+import csv
+import io
+from dataclasses import dataclass
+
+from surveykit.core import InputError
+
+COLUMNS = ("entry", "surface", "patch", "quantity", "mode", "instrument", "start", "stop",
+           "height_cm", "width_m", "length_m", "lanes", "reading", "reading_u", "note",
+           "date", "campaign")
+RESERVED_COLUMNS = ("rod_side", "operator_side")
+
+
+@dataclass(frozen=True)
+class Rows:
+    """Rows that are not blank: (spreadsheet row, cells by column); notices; faults."""
+
+    rows: tuple[tuple[int, dict[str, str]], ...]
+    notices: tuple[str, ...]
+    faults: tuple[str, ...]
+
+
+def read_rows(data: bytes, where: str) -> Rows:
+    """Return the cells of a sheet; the header is row 1.
+
+    Raises
+    ------
+    InputError
+        If the bytes are no CSV, or row 1 does not hold the column names.
+    """
+    text = _decoded(data, where)
+    first = text.splitlines()[0] if text.strip() else ""
+    if not text.strip():
+        raise InputError(f"{where}: the field sheet is empty; its first row holds the columns "
+                         f"{', '.join(COLUMNS[:15])}")
+    delimiter = max((",", ";", "\t"), key=lambda mark: len(
+        {name.strip().lower() for name in first.replace('"', "").split(mark)} & {*COLUMNS}))
+    try:
+        table = list(csv.reader(io.StringIO(text, newline=""), delimiter=delimiter))
+    except csv.Error as error:
+        raise InputError(f"{where}: is no CSV table ({error}); save the sheet as CSV") from None
+    header = [name.strip().lower() for name in table[0]]
+    if "entry" not in header:
+        raise InputError(f"{where} row 1: no column entry; the first row holds the columns "
+                         f"{', '.join(COLUMNS[:15])}; got {', '.join(header)[:200]}")
+    faults = [f"{where} row 1: the column {name} stands twice; keep one" for name in COLUMNS
+              if header.count(name) > 1]
+    faults += [f"{where} row 1: the column {name} is reserved for later work; take it out"
+               for name in RESERVED_COLUMNS if name in header]
+    notices = [f"{where}: the column {name!r} is not known and is left out" for name in header
+               if name and name not in COLUMNS + RESERVED_COLUMNS]
+    rows = []
+    for number, cells in enumerate(table[1:], start=2):
+        cells = [cell.replace("\N{NO-BREAK SPACE}", " ").strip() for cell in cells]
+        if any(cells[len(header):]):
+            faults.append(f"{where} row {number}: has {len(cells)} cells where the first row has "
+                          f"{len(header)}; put cells that hold {delimiter!r} in quotes")
+        elif any(cells):
+            named = dict(zip(header, cells, strict=False))
+            rows.append((number, {name: named.get(name, "") for name in COLUMNS}))
+    return Rows(tuple(rows), tuple(notices), tuple(faults))
+
+
+def _decoded(data: bytes, where: str) -> str:
+    if data[:4] == b"PK\x03\x04" or data[:4] == b"\xd0\xcf\x11\xe0":
+        raise InputError(f"{where}: is a spreadsheet workbook; save the sheet as CSV (UTF-8)")
+    if data[:2] in (b"\xff\xfe", b"\xfe\xff") or b"\0" in data:
+        raise InputError(f"{where}: is UTF-16 or no text at all; save the sheet as CSV (UTF-8)")
+    try:
+        return data.decode("utf-8-sig")
+    except UnicodeDecodeError:
+        return data.decode("windows-1252", errors="replace")
