@@ -26,9 +26,9 @@ class Reason:
 REASONS = (
     Reason("unreadable line", "the line does not have the header's columns", "file format"),
     Reason("unreadable time", "the time does not have the stated format", "file format"),
-    Reason("time stepped back", "the logger's time runs backward", "order of records"),
     Reason("repeated record", "the same record stands in the files twice", "order of records"),
     Reason("conflicting records", "two different records carry one time", "order of records"),
+    Reason("time stepped back", "the logger's time runs backward", "order of records"),
     Reason("no reading", "the cell is empty or holds a missing code", "file format"),
     Reason("unreadable value", "the cell is not a number", "file format"),
     Reason("out of range", "the reading is outside the quantity's range",

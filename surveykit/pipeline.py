@@ -241,8 +241,8 @@ def _intake_notes(survey: Survey, ingested: Ingested) -> list[dict[str, Any]]:
     name = survey.campaign.campaign
     notes = [("field sheet", "note", "", text) for text in ingested.sheet.notices]
     notes += [("parameters", "note", "", text) for text in survey.parameters.notes]
-    notes += [("clock", "flag", clock.logger, clock.note) for clock in ingested.clocks
-              if clock.note]
+    notes += [("clock", "note" if clock.status == "ok" else "flag", clock.logger, clock.note)
+              for clock in ingested.clocks if clock.note]
     return [{"campaign": name, "check": check, "logger": logger, "column": "", "surface": "",
              "pass": "", "severity": severity, "records": 0, "message": text,
              "source": "field practice"} for check, severity, logger, text in notes]

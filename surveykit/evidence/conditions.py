@@ -144,7 +144,8 @@ class Day:
         """Return irradiance and sky class of a stretch: how much of a clear sky, how steady.
 
         clear: at least `quality.clear_index_min` of the modelled clear sky and steady within
-        `quality.steady_max` about a straight line; diffuse: at most `overcast_index_max`.
+        `quality.steady_max` (half the middle 68 %, so that a hand over the head for a few seconds
+        does not make a cloud); diffuse: at most `overcast_index_max`.
         """
         quality = self.parameters.campaign.settings.quality
         for channel in self.channels.get("shortwave_down", []):
@@ -152,19 +153,16 @@ class Day:
             if time.size < 2:
                 continue
             value = self.without_dark(channel, time, value)
-            model = float(self.sun(time).clear_sky_w_m2.mean())
-            mean = float(value.mean())
-            if not model > 0:
+            model = self.sun(time).clear_sky_w_m2
+            if not model.min() > 0:
                 continue
-            index = mean / model
-            seconds = (time - time[0]) / NS
-            scatter = float(np.std(value - np.polyval(np.polyfit(seconds, value, 1), seconds)))
-            steady = scatter <= quality.steady_max * mean
+            low, index, high = np.quantile(value / model, [0.16, 0.5, 0.84])
+            steady = high - low <= 2 * quality.steady_max * index
             kind = "mixed"
             if index >= quality.clear_index_min and steady:
                 kind = "clear"
             elif index <= quality.overcast_index_max:
                 kind = "diffuse"
-            return Sky(mean, index, kind)
+            return Sky(float(value.mean()), float(index), kind)
         return Sky()
 

@@ -163,11 +163,12 @@ def _budget(campaign: str, used: tuple[PassEstimate, ...], weights: FloatArray, 
 
 
 def _notes(passes: tuple[PassEstimate, ...], used: tuple[PassEstimate, ...]) -> tuple[str, ...]:
-    """Return what lowers the status of a surface, each said once."""
+    """Return what lowers the status of a surface: what half its passes or more are flagged with."""
     serious = ("calibration expired", "no calibration stated", "sun lower than",
                "small footprint share", "head radius not stated", "no dark reading",
                "cloud in the sky model", "few placements")
-    flags = dict.fromkeys(f for p in used for f in p.flags if f.startswith(serious))
+    seen = [f for p in used for f in p.flags if f.startswith(serious)]
+    flags = [f for f in dict.fromkeys(seen) if 2 * seen.count(f) >= len(used)]
     left = [p for p in passes if not p.evaluated]
     notes = list(flags)
     if left:

@@ -151,7 +151,7 @@ def _infrared(day: Day, this: Pass,
     ]
     rate = _body_rate_k_min(day, this, channel)
     settings = day.parameters.campaign.settings.temperature
-    inputs.append(Input("body_rate_error", 0.0, settings.body_rate_u_s_k * abs(rate),
+    inputs.append(Input("body_rate_error", 0.0, settings.body_rate_u_min * abs(rate),
                         f"{day.name}:{channel.logger}:body rate",
                         "warming or cooling of the instrument's housing"))
     return {i.name: i for i in inputs}, calibration_flags(day, [channel])

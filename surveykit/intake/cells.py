@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import io
+import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 from decimal import Decimal, InvalidOperation
@@ -34,13 +35,12 @@ def read_table(text: bytes, fields: int, time_at: int, numbers_at: Sequence[int]
     if not text:
         empty = Numbers(np.zeros(0), np.zeros(0, dtype=np.bool_))
         return pd.Series([], dtype=object), dict.fromkeys(numbers_at, empty)
-    codes = missing_codes(layout)
     options: dict[str, Any] = {
         "header": None, "names": range(fields), "usecols": [time_at, *numbers_at],
         "index_col": False, "sep": layout.delimiter, "decimal": layout.decimal,
         "skipinitialspace": f"{layout.delimiter} ".encode() in text[: text.find(b"\n")],
         "skip_blank_lines": False, "keep_default_na": False,
-        "na_values": codes, "low_memory": False, "encoding": "utf-8"}
+        "na_values": missing_codes(layout)[0], "low_memory": False, "encoding": "utf-8"}
     dates: dict[str, Any] = {"parse_dates": [time_at], "date_format": "ISO8601"} if iso else {}
     kinds: dict[int, type] = {} if iso else {time_at: object}
     try:
@@ -49,45 +49,56 @@ def read_table(text: bytes, fields: int, time_at: int, numbers_at: Sequence[int]
     except ValueError:
         frame = pd.read_csv(io.BytesIO(text), **options, **dates,
                             dtype=kinds | dict.fromkeys(numbers_at, object))
-    return frame[time_at], {at: _numbers(frame[at], codes, layout) for at in numbers_at}
+    return frame[time_at], {at: _numbers(frame[at], layout) for at in numbers_at}
 
 
-def missing_codes(layout: Layout) -> list[str]:
-    """Return the codes of a missing reading; numbers match whatever way they are written."""
-    with_point = [code.replace(layout.decimal, ".") for code in layout.missing]
-    return list(dict.fromkeys(["", *layout.missing, *with_point]))
+def missing_codes(layout: Layout) -> tuple[list[str], FloatArray]:
+    """Return the codes of a missing reading: the texts, and those that are numbers.
+
+    Examples
+    --------
+    >>> missing_codes(Layout(missing=["", "NAN", "-99,9"], decimal=",", delimiter=";"))
+    (['', 'NAN'], array([-99.9]))
+    """
+    texts, numbers = [""], []
+    for code in map(str.strip, layout.missing):
+        if re.fullmatch(_NUMBER, code.replace(layout.decimal, ".")):
+            numbers.append(float(code.replace(layout.decimal, ".")))
+        else:
+            texts.append(code)
+    return list(dict.fromkeys(texts)), np.array(numbers, dtype=np.float64)
 
 
-def _numbers(column: pd.Series, codes: list[str], layout: Layout) -> Numbers:
+def _numbers(column: pd.Series, layout: Layout) -> Numbers:
+    texts, codes = missing_codes(layout)
     if column.dtype == np.float64:
-        values = column.to_numpy(copy=True)
+        values = column.to_numpy()
         unreadable = np.isinf(values)
-        values[unreadable] = np.nan
-        return Numbers(values, unreadable)
+        missing = unreadable.copy()
+        for code in codes:
+            missing |= values == code
+        return Numbers(np.where(missing, np.nan, values) if missing.any() else values, unreadable)
     cells = column.astype(object).where(column.notna(), "").astype(str).str.strip()
     if layout.decimal != ".":
         cells = cells.str.replace(".", "x", regex=False).str.replace(layout.decimal, ".")
     good = cells.str.fullmatch(_NUMBER).to_numpy(dtype=np.bool_)
     text = "\n".join(cells.where(good, "")) + "\n"
     again = pd.read_csv(io.StringIO(text), header=None, names=["value"], dtype=float, sep="\t",
-                        skip_blank_lines=False, keep_default_na=False, na_values=codes)
-    read = _numbers(again["value"], codes, layout)
-    missing = cells.isin(codes).to_numpy()
-    return Numbers(read.values, read.unreadable | ~(good | missing))
+                        skip_blank_lines=False, keep_default_na=False, na_values=[""])
+    read = _numbers(again["value"], layout)
+    return Numbers(read.values, read.unreadable | ~(good | cells.isin(texts).to_numpy()))
 
 
 def printed_step(sample: list[list[str]], at: int, layout: Layout) -> float:
     """Return the step of the last digit printed in a column; NaN if no number is."""
-    codes = missing_codes(layout)
+    codes = missing_codes(layout)[1]
     places = []
     for row in sample:
-        cell = row[at].strip()
-        if cell in codes:
-            continue
         try:
-            exponent = Decimal(cell.replace(layout.decimal, ".")).as_tuple().exponent
+            value = Decimal(row[at].strip().replace(layout.decimal, "."))
         except InvalidOperation:
             continue
-        if isinstance(exponent, int):
+        exponent = value.as_tuple().exponent
+        if isinstance(exponent, int) and float(value) not in codes:
             places.append(exponent)
     return float(Decimal(1).scaleb(min(min(places), 0))) if places else float("nan")

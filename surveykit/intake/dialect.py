@@ -10,8 +10,9 @@ from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
+from numpy.typing import NDArray
 
-from surveykit.core import BoolArray, InputError, IntArray
+from surveykit.core import BoolArray, InputError
 from surveykit.intake.params.instruments import Layout
 
 BLOCK_BYTES = 1 << 21  # fits a processor's cache; measured best of 1 to 8 MB
@@ -39,7 +40,7 @@ class Lines:
     """
 
     text: bytes
-    at: IntArray
+    at: NDArray[np.int32]
     bad: BoolArray
     physical: int
 
@@ -133,8 +134,9 @@ def whole_lines(block: bytes, fields: int, layout: Layout) -> Lines:
     row = separators[: separators.find(b"\n") + 1]
     count = len(separators) // len(row)
     if (separators == row * count and _well_formed(row[:-1], fields, layout)
-            and _quotes_enclose(block, delimiter) and _decodes(block, layout.encoding)):
-        at, bad = np.arange(count), np.zeros(count, dtype=np.bool_)
+            and (b'"' not in row or _quotes_enclose(block, delimiter))
+            and _decodes(block, layout.encoding)):
+        at, bad = np.arange(count, dtype=np.int32), np.zeros(count, dtype=np.bool_)
         return Lines(_utf8(block, layout.encoding), at, bad, count)
     return _one_by_one(block, separators, fields, layout)
 
@@ -157,7 +159,7 @@ def _one_by_one(block: bytes, separators: bytes, fields: int, layout: Layout) ->
         at.append(number)
         bad.append(not good)
     joined = b"".join(line + b"\n" for line in text)
-    return Lines(_utf8(joined, layout.encoding), np.array(at, dtype=np.int64),
+    return Lines(_utf8(joined, layout.encoding), np.array(at, dtype=np.int32),
                  np.array(bad, dtype=np.bool_), len(lines))
 
 
@@ -174,9 +176,7 @@ def _well_formed(line: bytes, fields: int, layout: Layout) -> bool:
 
 def _quotes_enclose(block: bytes, delimiter: bytes) -> bool:
     quotes = block.count(b'"')
-    if not quotes:
-        return True
-    opening = (block.count(delimiter + b'"') + block.count(b'\n"') + block.startswith(b'"'))
+    opening = block.count(delimiter + b'"') + block.count(b'\n"') + block.startswith(b'"')
     return quotes == 2 * opening == 2 * (block.count(b'"' + delimiter) + block.count(b'"\n'))
 
 

@@ -113,12 +113,14 @@ def _read_file(path: Path, root: Path, instrument: Instrument,
     def read(ends: tuple[int, int]) -> tuple:
         lines = dialect.whole_lines(data[ends[0]:ends[1]], fields, layout)
         texts, numbers = cells.read_table(lines.text, fields, time_at, numbers_at, iso, layout)
-        return lines.at.astype(np.int32), lines.bad, lines.physical, \
-            *read_times(texts, instrument.time.format), numbers
+        values = [channel.to_si(numbers[at].values)
+                  for channel, at in zip(channels, numbers_at, strict=True)]
+        return lines.at, lines.bad, lines.physical, \
+            *read_times(texts, instrument.time.format), values, numbers
 
     def digest() -> str:
-        with path.open("rb") as file:
-            return hashlib.file_digest(file, "sha256").hexdigest()
+        packed = isinstance(data, bytes)
+        return hashlib.sha256(path.read_bytes() if packed else data).hexdigest()
 
     with ThreadPoolExecutor(min(4, os.cpu_count() or 1)) as pool:
         sha256 = pool.submit(digest)
@@ -130,23 +132,29 @@ def _read_file(path: Path, root: Path, instrument: Instrument,
     offset_s = _chain([part[4] for part in parts], np.int32)
     numbers = {
         channel.column: cells.Numbers(
-            channel.to_si(_chain([part[5][at].values for part in parts], np.float64)),
-            _chain([part[5][at].unreadable for part in parts], np.bool_))
-        for channel, at in zip(channels, numbers_at, strict=True)}
+            _chain([part[5][i] for part in parts], np.float64),
+            _chain([part[6][at].unreadable for part in parts], np.bool_))
+        for i, (channel, at) in enumerate(zip(channels, numbers_at, strict=True))}
 
     def locate(rows: BoolArray) -> str:
         return f"{where}, line {line[np.flatnonzero(rows)[0]]}"
 
     _refuse_unlike(data, header, instrument, where, line, bad_line, wall_ns, time_at)
     time_ns = to_utc(wall_ns, offset_s, instrument.time.zone, locate)
-    before = np.concatenate([[NO_TIME_NS], np.maximum.accumulate(time_ns)[:-1]]) \
-        if len(time_ns) else time_ns
     sample = dialect.sample_rows(data, header, layout, SAMPLE_LINES)
     steps = {channel.column: abs(channel.gain.value) * cells.printed_step(sample, at, layout)
              for channel, at in zip(channels, numbers_at, strict=True)}
     facts = FileFacts(where, sha256.result(), path.stat().st_size, len(line))
-    return _File(facts, time_ns, line, (time_ns < before) & (time_ns != NO_TIME_NS), bad_line,
-                 numbers, steps)
+    return _File(facts, time_ns, line, _stepped_back(time_ns), bad_line, numbers, steps)
+
+
+def _stepped_back(time_ns: IntArray) -> BoolArray:
+    """Mark times earlier than any before them in their file."""
+    marked = np.zeros(len(time_ns), dtype=np.bool_)
+    if (time_ns[1:] < time_ns[:-1]).any():
+        latest = np.maximum.accumulate(time_ns)
+        marked[1:] = (time_ns[1:] < latest[:-1]) & (time_ns[1:] != NO_TIME_NS)
+    return marked
 
 
 def _chain(parts: list, kind: type) -> NDArray:

@@ -76,7 +76,7 @@ class Records:
     @property
     def n_timed(self) -> int:
         """Number of records whose time is readable; they stand first."""
-        return len(self) - int((self.time_ns == NO_TIME_NS).sum())
+        return len(self) - int(np.count_nonzero(self.time_ns == NO_TIME_NS))
 
 
 def in_order(records: Records) -> Records:
@@ -86,19 +86,28 @@ def in_order(records: Records) -> Records:
     later ones are marked "repeated record". If any two differ, all of that time are marked
     "conflicting records".
     """
-    untimed = records.time_ns == NO_TIME_NS
-    key = np.where(untimed, np.iinfo(np.int64).max, records.time_ns)
-    if (key[1:] < key[:-1]).any():
-        records = _taken(records, np.argsort(key, kind="stable"))
+    time_ns = records.time_ns
+    if (time_ns[1:] < time_ns[:-1]).any() or (time_ns[:1] == NO_TIME_NS).any():
+        last = np.where(time_ns == NO_TIME_NS, np.iinfo(np.int64).max, time_ns)
+        records = _taken(records, np.argsort(last, kind="stable"))
     time_ns = records.time_ns[:records.n_timed]
     repeated, conflicting = _same_time(records, time_ns)
     marks = records.marks | {"repeated record": repeated, "conflicting records": conflicting}
     interval_s = records.interval_s
     if np.isnan(interval_s):
-        steps = np.diff(time_ns)
-        steps = steps[steps > 0]
-        interval_s = float(np.median(steps)) / 1e9 if steps.size else interval_s
+        interval_s = _median_step_s(time_ns)
     return replace(records, marks={mark: marks[mark] for mark in MARKS}, interval_s=interval_s)
+
+
+def _median_step_s(time_ns: IntArray) -> float:
+    steps = np.diff(time_ns)
+    steps = steps if (steps > 0).all() else steps[steps > 0]
+    if not steps.size:
+        return float("nan")
+    middle = steps[steps.size // 2]
+    if 2 * np.count_nonzero(steps == middle) > steps.size + 1:  # a majority holds the median
+        return float(middle) / 1e9
+    return float(np.median(steps)) / 1e9
 
 
 def _taken(records: Records, order: IntArray) -> Records:

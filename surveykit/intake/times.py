@@ -182,8 +182,9 @@ def to_utc(wall_ns: IntArray, offset_s: Offsets, zone: str, locate: Locate) -> I
         the log is not the zone's at that time.
     """
     with_offset = offset_s != NO_OFFSET
-    utc = wall_ns.copy()
+    utc = wall_ns
     if with_offset.any():
+        utc = wall_ns.copy()
         utc[with_offset] -= offset_s[with_offset].astype(np.int64) * NS
         there = pd.DatetimeIndex(utc.view("datetime64[ns]"), tz="UTC").tz_convert(ZoneInfo(zone))
         wrong = with_offset & (there.tz_localize(None).asi8 != wall_ns)

@@ -89,6 +89,8 @@ def _refusal(study: Study, this: Pass, window: IntArray, share: float, reasons: 
     if share > study.parameters.campaign.settings.quality.excluded_refuse or n_used < 2:
         if sun_low.any():
             return _dark_refusal(study, this, window[sun_low])
+        if this.kind == "contact" and "between placements" in reasons:
+            return "no settled placement of the head was found"
         if not reasons or (len(reasons) == 1 and "pass edge" in reasons):
             return "nothing is left of the pass between its uncertain edges"
         worst = max(reasons, key=lambda name: (reasons[name], name))

@@ -155,8 +155,9 @@ def _stack(shares: pd.DataFrame, names: list[str], title: str) -> Figure:
     axis.set_ylim(-0.5, len(shares) - 0.5)
     axis.set_xlabel(title)
     axis.tick_params(axis="y", length=0)
-    axis.legend(loc="lower left", bbox_to_anchor=(0, 1), ncols=2 if max(map(len, map(str, shares))) < 26 else 1,
-                borderaxespad=0.3, handlelength=1.6, columnspacing=1.2)
+    wide = max(len(str(key)) for key in shares) > 25
+    axis.legend(loc="lower left", bbox_to_anchor=(0, 1), ncols=1 if wide else 2, borderaxespad=0.3,
+                handlelength=1.6, columnspacing=1.2)
     sns.despine(ax=axis, left=True)
     return figure
 

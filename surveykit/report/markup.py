@@ -70,6 +70,7 @@ class Cell:
 
 
 Row = Sequence[str | Cell]
+Group = tuple[str, Sequence[Row]]  # its heading, "" for none
 
 
 def table(caption: str, columns: Sequence[Column], rows: Sequence[Row], *, empty: str,
@@ -78,8 +79,8 @@ def table(caption: str, columns: Sequence[Column], rows: Sequence[Row], *, empty
     return grouped_table(caption, columns, [("", rows)], empty=empty, notes=notes)
 
 
-def grouped_table(caption: str, columns: Sequence[Column], groups: Sequence[tuple[str, Sequence[Row]]],
-                  *, empty: str, notes: Iterable[tuple[str, str]] = ()) -> Html:
+def grouped_table(caption: str, columns: Sequence[Column], groups: Sequence[Group], *, empty: str,
+                  notes: Iterable[tuple[str, str]] = ()) -> Html:
     """Return a table whose first column heads its rows, in groups under headings of their own.
 
     Parameters

@@ -18,6 +18,7 @@ import seaborn as sns
 from IPython.display import display
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
+from matplotlib.layout_engine import ConstrainedLayoutEngine
 
 from .markup import paragraph
 
@@ -54,8 +55,8 @@ styled = mpl.rc_context(STYLE)  # a decorator: draws under the house style
 def panels(n: int, heights: Iterable[float], **kwargs: Any) -> tuple[Figure, list[Axes]]:
     """Return a figure of the text column's width with `n` stacked panels, heights in inches."""
     tall = [*heights]
-    figure = Figure(figsize=(WIDTH_IN, sum(tall) + 0.25), dpi=DPI, layout="constrained")
-    figure.get_layout_engine().set(h_pad=0.09)
+    figure = Figure(figsize=(WIDTH_IN, sum(tall) + 0.25), dpi=DPI,
+                    layout=ConstrainedLayoutEngine(h_pad=0.09))
     axes = figure.subplots(n, 1, squeeze=False, height_ratios=tall, **kwargs)
     return figure, [*axes[:, 0]]
 

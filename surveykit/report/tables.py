@@ -64,8 +64,8 @@ def frame_table(frame: pd.DataFrame, caption: str, columns: Sequence[str] | None
     """Return any frame as a table, numbers to four significant digits, underscores as spaces."""
     shown = frame if columns is None else frame[[*columns]]
     numeric = {name: pd.api.types.is_numeric_dtype(shown[name]) for name in shown}
-    heads = [Column(w.sentence_case(str(name).replace("_", " "))[:-1], "number" if numeric[name] else "text")
-             for name in shown]
+    heads = [Column(w.sentence_case(str(name).replace("_", " "))[:-1],
+                    "number" if numeric[name] else "text") for name in shown]
     rows = [[_any_text(value) for value in row]
             for row in shown.itertuples(index=False, name=None)]
     return table(caption, heads, rows, empty=f"{caption.rstrip('.')}: no rows.")

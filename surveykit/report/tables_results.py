@@ -15,7 +15,7 @@ from typing import Any
 import pandas as pd
 
 from . import wording as w
-from .markup import Cell, Column, Html, grouped_table, table
+from .markup import Cell, Column, Group, Html, grouped_table, table
 
 Labels = Mapping[str, str] | None
 NONE = Cell("none", quiet=True)
@@ -51,7 +51,7 @@ def surface_overview(surfaces: pd.DataFrame, labels: Labels = None) -> Html:
 
 def surface_table(surfaces: pd.DataFrame, labels: Labels = None) -> Html:
     """Return one row a surface, grouped by quantity: value ± U, k, counts, status and why."""
-    groups = []
+    groups: list[Group] = []
     for (quantity, kind), block in w.families(surfaces):
         values = _values(block)
         groups.append((_heading(quantity, kind, block), [
@@ -68,7 +68,7 @@ def surface_table(surfaces: pd.DataFrame, labels: Labels = None) -> Html:
 
 def pass_table(passes: pd.DataFrame, labels: Labels = None, time_zone: str = "UTC") -> Html:
     """Return one row a pass, grouped by quantity: when, value, uncertainty within the pass."""
-    groups = []
+    groups: list[Group] = []
     for (quantity, kind), block in w.families(passes.sort_values(["start_utc", "pass"])):
         groups.append((_heading(quantity, kind, block), [
             [row["pass"], w.label(row["surface"], labels),
@@ -91,7 +91,7 @@ def pass_table(passes: pd.DataFrame, labels: Labels = None, time_zone: str = "UT
 
 def difference_table(differences: pd.DataFrame, labels: Labels = None) -> Html:
     """Return one row a pair, grouped by quantity: difference ± U, p, what was missed, verdict."""
-    groups = []
+    groups: list[Group] = []
     for (quantity, kind), block in w.families(differences):
         values = _values(block, "difference", sign=True)
         groups.append((_heading(quantity, kind, block), [
@@ -109,7 +109,7 @@ def difference_table(differences: pd.DataFrame, labels: Labels = None) -> Html:
 
 def change_table(changes: pd.DataFrame, labels: Labels = None) -> Html:
     """Return one row a surface and method, grouped by date and quantity: change ± U, verdict."""
-    groups = []
+    groups: list[Group] = []
     for earlier in dict.fromkeys(changes["earlier"]):
         for (quantity, kind), block in w.families(changes[changes["earlier"] == earlier]):
             values = _values(block, "change", sign=True)
@@ -126,7 +126,7 @@ def change_table(changes: pd.DataFrame, labels: Labels = None) -> Html:
 
 def budget_table(budget: pd.DataFrame, labels: Labels = None) -> Html:
     """Return one row a source, grouped by surface and quantity, the largest share first."""
-    groups = []
+    groups: list[Group] = []
     for (quantity, kind), block in w.families(budget):
         for name in dict.fromkeys(block["surface"]):
             rows = block[block["surface"] == name].sort_values(
