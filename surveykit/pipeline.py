@@ -30,6 +30,7 @@ from surveykit.intake.passes import Pass, match_passes
 from surveykit.intake.records import Records
 from surveykit.keeping import load_quality, load_records, save_quality, save_records
 from surveykit.opening import Survey, open_file, strangers
+from surveykit.opening import open_survey as open_survey
 from surveykit.quality import examine
 from surveykit.statistics.draws import Draws
 

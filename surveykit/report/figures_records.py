@@ -38,27 +38,30 @@ def day_timeline(passes: pd.DataFrame, sky: pd.DataFrame | None = None,
     """
     if passes.empty:
         return Drawing(None, "No pass could be matched with records, so there is no day to draw.")
-    tracks = [(_thinned(frame, column), name, unit) for column, name, unit in TRACKS
+    first, last = passes["start_utc"].min(), passes["stop_utc"].max()
+    margin = max(0.04 * (last - first), pd.Timedelta(minutes=5))
+    window = (first - margin, last + margin)
+    tracks = [(_thinned(frame, column, window), name, unit) for column, name, unit in TRACKS
               for frame in (sky, weather) if frame is not None and column in frame
-              and frame[column].notna().any()]
+              and frame.loc[frame["time_utc"].between(*window), column].notna().any()]
     names = list(dict.fromkeys(passes["surface"]))[::-1]
-    figure, axes = panels(1 + len(tracks), [0.75 + 0.3 * len(names), *[0.85] * len(tracks)],
+    figure, axes = panels(1 + len(tracks), [0.75 + 0.36 * len(names), *[0.9] * len(tracks)],
                           sharex=True)
-    for place, (pair, block) in enumerate(w.families(passes)):
+    families = w.families(passes)
+    lane = 0.76 / len(families)  # a quantity keeps its lane in each surface's row
+    for place, (pair, block) in enumerate(families):
         rows = block["surface"].map(names.index).to_numpy(float)
+        rows += 0.38 - lane * (place + 0.5)
         start, stop = (mdates.date2num(block[end]) for end in ("start_utc", "stop_utc"))
-        axes[0].barh(rows, stop - start, left=start, height=0.62, color=PALETTE[place % 8],
-                     edgecolor=PAPER, linewidth=0.3, hatch=HATCHES[place % 8],
-                     label=w.quantity_text(*pair))
+        axes[0].barh(rows, stop - start, left=start, height=0.9 * lane, color=PALETTE[place % 8],
+                     linewidth=0, label=w.quantity_text(*pair))
         gone = (block["status"] == "not evaluated").to_numpy(bool)
-        axes[0].plot(((start + stop) / 2)[gone], rows[gone], "x", color=INK, markersize=5)
+        axes[0].plot(((start + stop) / 2)[gone], rows[gone], "x", color=INK, markersize=4.5)
     axes[0].set_yticks(range(len(names)), [shorten(w.label(n, labels)) for n in names])
     axes[0].set_ylim(-0.6, len(names) - 0.4)
     axes[0].legend(loc="lower left", bbox_to_anchor=(0, 1), ncols=2, borderaxespad=0,
                    handlelength=1.4)
-    first, last = passes["start_utc"].min(), passes["stop_utc"].max()
-    margin = max(0.04 * (last - first), pd.Timedelta(minutes=5))
-    axes[0].set_xlim(*mdates.date2num([first - margin, last + margin]))
+    axes[0].set_xlim(*mdates.date2num(window))
     spans = []
     for axis, ((when, what), name, unit) in zip(axes[1:], tracks, strict=True):
         axis.plot(when, what, color=INK, linewidth=1.1,
@@ -171,9 +174,11 @@ def _merged(table: pd.DataFrame, rest: str) -> pd.DataFrame:
     return kept
 
 
-def _thinned(frame: pd.DataFrame, column: str) -> tuple[np.ndarray, np.ndarray]:
+def _thinned(frame: pd.DataFrame, column: str,
+             window: tuple[pd.Timestamp, pd.Timestamp]) -> tuple[np.ndarray, np.ndarray]:
     """Means over at most POINTS stretches of time; zenith becomes height above the horizon."""
-    known = frame[["time_utc", column]].dropna().sort_values("time_utc")
+    inside = frame["time_utc"].between(*window)
+    known = frame.loc[inside, ["time_utc", column]].dropna().sort_values("time_utc")
     if len(known) > POINTS:
         time = known["time_utc"].dt.as_unit("ns").astype("int64")
         stretch = (time - time.iloc[0]) * POINTS // max(int(time.iloc[-1] - time.iloc[0]), 1)

@@ -56,7 +56,7 @@ def panels(n: int, heights: Iterable[float], **kwargs: Any) -> tuple[Figure, lis
     """Return a figure of the text column's width with `n` stacked panels, heights in inches."""
     tall = [*heights]
     figure = Figure(figsize=(WIDTH_IN, sum(tall) + 0.25), dpi=DPI,
-                    layout=ConstrainedLayoutEngine(h_pad=0.09))
+                    layout=ConstrainedLayoutEngine(h_pad=0.06))
     axes = figure.subplots(n, 1, squeeze=False, height_ratios=tall, **kwargs)
     return figure, [*axes[:, 0]]
 

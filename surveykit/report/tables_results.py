@@ -82,10 +82,11 @@ def pass_table(passes: pd.DataFrame, labels: Labels = None, time_zone: str = "UT
     heads = [Column("Pass", "short"), Column("Surface"), Column("From", "number"),
              Column("To", "number"), Column("Value", "number"), Column("u within", "number"),
              Column("Records", "number"), Column("Effective", "number"),
-             Column("Sun zenith, °", "number"), Column("Status", "long")]
+             Column("Zenith, °", "number"), Column("Status", "long")]
     return grouped_table(
         f"Passes in order of time ({time_zone}), after trimming. u within: standard uncertainty of "
-        "the pass mean from its own records; effective: records reduced for their correlation.",
+        "the pass mean from its own records; effective: records reduced for their correlation; "
+        "zenith: of the sun.",
         heads, groups, empty="No pass could be matched with records.")
 
 
@@ -188,7 +189,7 @@ def _heading(quantity: str, kind: str, block: pd.DataFrame, degrees: str = "degC
 
 
 def _word(word: str, why: str, *, quiet: bool = False) -> Cell:
-    return Cell(": ".join(filter(None, (word, why))), quiet=quiet)
+    return Cell(("; " if word == "ok" else ": ").join(filter(None, (word, why))), quiet=quiet)
 
 
 def _letter(n: int) -> str:

@@ -51,7 +51,10 @@ class Layout(Strict):
         default=("", "NAN", "-9999"), write='texts in quotes, such as ["", "NAN", "-9999"]')
 
     def faults(self) -> list[Fault]:
-        """Delimiter and decimal mark must differ."""
+        """The delimiter separates, and is not the decimal mark."""
+        if self.delimiter.isalnum() or self.delimiter in "\"'\r\n+-":
+            return [(("delimiter",), f"got {self.delimiter!r}; write one character in quotes, "
+                     '"," or ";" or "\\t"')]
         if self.delimiter == self.decimal:
             return [(("delimiter",), f"got {self.delimiter!r}, which is the decimal mark as well; "
                      'write another delimiter, or decimal: "."')]
@@ -89,6 +92,8 @@ class TimeColumn(Strict):
 
 
 def _holds_a_moment(form: str) -> bool:
+    if not any(f"%{letter}" in form for letter in "YyGcx"):
+        return False  # no year
     moment = datetime(2025, 7, 24, 13, 5, tzinfo=UTC)
     try:
         back = datetime.strptime(moment.strftime(form), form)  # noqa: DTZ007

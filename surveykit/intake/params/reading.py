@@ -190,7 +190,8 @@ def _events(text: str, name: str) -> list[Fault]:
                 raise InputError(here + f"more than {MAX_ALIASES} aliases; write the values out")
         elif isinstance(event, yaml.CollectionStartEvent | yaml.ScalarEvent):
             if event.tag is not None:
-                faults.append(((), f"tag {_short(event.tag)} in line {line}; write the value "
+                tag = event.tag.replace("tag:yaml.org,2002:", "!!")
+                faults.append(((), f"tag {_short(tag)} in line {line}; write the value "
                                "without a tag, a text in quotes"))
             if isinstance(event, yaml.CollectionStartEvent):
                 open_anchors.append(event.anchor)

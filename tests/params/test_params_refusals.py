@@ -1,0 +1,346 @@
+"""One refusal a kind: the sentence in part (file, line, key, value, repair), and a clean twin.
+
+The rules are the project's own (its design of the parameter file); no outside source decides them.
+The twin is what the sentence asks for, so that following the sentence mends the file.
+"""
+
+from __future__ import annotations
+
+import pytest
+
+from surveykit.core import InputError
+from surveykit.intake.params import load
+
+YML, KIT = "params/mill-yard-2025-07-24.yml", "params/instruments.yml"
+SITE_ZONE = "  longitude: -7.75\n  elevation_m: 120\n  time_zone: Europe/Lisbon"
+
+# id: (passage of the campaign, refused, mended, pieces of the one sentence)
+CAMPAIGN_CASES = {
+    "not a number": (
+        "offset_s: 12.0", "offset_s: abc", "offset_s: 12",
+        "line 18: loggers.thermal.clock.offset_s: got 'abc'; write a number of seconds"),
+    "number in quotes": (
+        "latitude: 41.30", 'latitude: "41.30"', "latitude: 41.30",
+        "line 7: site.latitude: got '41.30'; write degrees north, a number from -90 to 90",
+        "without quotes"),
+    "true for a number": (
+        "elevation_m: 120", "elevation_m: true", "elevation_m: 1",
+        "line 9: site.elevation_m: got true; write a number from -450 to 9000"),
+    "number for a text": (
+        "label: Lawn", "label: 12", 'label: "12"',
+        "surfaces.lawn.label: got 12; write plain text", 'in quotes: "12"'),
+    "latitude range": (
+        "latitude: 41.30", "latitude: 91", "latitude: 90", "site.latitude: got 91; write degrees"),
+    "longitude range": (
+        "longitude: -7.75", "longitude: 352.25", "longitude: -7.75",
+        "site.longitude: got 352.25; write degrees east, a number from -180 to 180"),
+    "longitude's sign": (
+        SITE_ZONE, SITE_ZONE.replace("-7.75\n", "75.7\n"), SITE_ZONE.replace("-7.75\n", "7.75\n"),
+        "line 8: site.longitude: got 75.7, 5.0 h of sun away from time_zone Europe/Lisbon (+0 h)",
+        "west negative"),
+    "zone unknown": (
+        "Europe/Lisbon", "Europe/Lisbonne", "Europe/Lisbon",
+        "line 10: site.time_zone: got 'Europe/Lisbonne'; write UTC or an IANA name"),
+    "zone as a path": (
+        "Europe/Lisbon", "../Lisbon", "UTC", "site.time_zone: got '../Lisbon'; write UTC"),
+    "sky view range": (
+        "sky_view: 0.85", "sky_view: 85", "sky_view: 0.85",
+        "line 11: site.sky_view: got 85; write a number from 0 to 1"),
+    "half an amount": (
+        "sky_view: 0.85", "sky_view: {value: 0.85}", "sky_view: {value: 0.85, u: 0.1}",
+        "line 11: site.sky_view.u: missing; write the standard uncertainty"),
+    "negative u": (
+        "sky_view: 0.85", "sky_view: {value: 0.85, u: -0.1}", "sky_view: {value: 0.85, u: 0}",
+        "site.sky_view.u: got -0.1; write the standard uncertainty, a number, 0 or more"),
+    "not a number at all": (
+        "sky_view: 0.85", "sky_view: .nan", "sky_view: 0", "site.sky_view: got nan; write"),
+    "date in another order": (
+        '"2025-07-24"', '"24/07/2025"', '"2025-07-24"',
+        "line 4: date: got '24/07/2025'; write a date as \"YYYY-MM-DD\", in quotes"),
+    "no such day": (
+        '"2025-07-24"', '"2025-02-30"', '"2025-07-24"', "date: got '2025-02-30'; write a date"),
+    "unknown key": (
+        "data_folder:", "data_foldr:", "data_folder:",
+        "line 14: data_foldr: unknown key; did you mean data_folder? known here: format, campaign"),
+    "unknown key below": (
+        "u_s: 0.5", "u_sec: 0.5", "u_s: 0.5",
+        "line 18: loggers.thermal.clock.u_sec: unknown key; did you mean u_s?"),
+    "unknown setting": (
+        "settings: {}", "settings: {albedo: {zenith_max: 60}}",
+        "settings: {albedo: {zenith_max_deg: 60}}",
+        "settings.albedo.zenith_max: unknown key; did you mean zenith_max_deg?"),
+    "setting out of limits": (
+        "settings: {}", "settings: {statistics: {coverage: 95}}",
+        "settings: {statistics: {coverage: 0.95}}",
+        "settings.statistics.coverage: got 95; write a number above 0.5, below 1"),
+    "limits that do not rise": (
+        "settings: {}", "settings: {albedo: {zenith_max_deg: 50}}",
+        "settings: {albedo: {zenith_max_deg: 75}}",
+        "settings.albedo.zenith_max_deg: got 50, below zenith_qualified_deg (60)"),
+    "range upside down": (
+        "settings: {}", "settings: {quality: {ranges: {wind_speed: [60, 0]}}}",
+        "settings: {quality: {ranges: {wind_speed: [0, 60]}}}",
+        "settings.quality.ranges.wind_speed: got [60.0, 0.0]; write [low, high]"),
+    "half a range": (
+        "settings: {}", "settings: {quality: {ranges: {wind_speed: [60]}}}",
+        "settings: {quality: {ranges: {wind_speed: [0, 60]}}}",
+        "settings.quality.ranges.wind_speed: got a list; write [low, high]"),
+    "section not a mapping": (
+        "settings: {}", "settings: {albedo: 3}", "settings: {albedo: {}}",
+        "settings.albedo: got 3; write keys of this section"),
+    "reserved": (
+        "settings: {}", "settings: {}\ncrew: [ab]", "settings: {}",
+        "crew: reserved for later work"),
+    "reserved in comparison": (
+        "  control:", "  second_control: lawn\n  control:", "  control:",
+        "comparison.second_control: reserved for later work"),
+    "reserved setting": (
+        "settings: {}", "settings: {statistics: {between_passes: common}}", "settings: {}",
+        "settings.statistics.between_passes: reserved for later work"),
+    "clock by another logger": (
+        "clock: {offset_s: 12.0, u_s: 0.5}", "clock: {align_with: shortwave}",
+        "clock: {offset_s: 12.0, u_s: 0.5}",
+        "loggers.thermal.clock.align_with: not available yet; write offset_s and u_s"),
+    "clock by cover events": (
+        "clock: {offset_s: 12.0, u_s: 0.5}", "clock: {cover_events: true}",
+        "clock: {offset_s: 12.0, u_s: 0.5}",
+        "loggers.thermal.clock.cover_events: not available yet"),
+    "emissivity from elsewhere": (
+        "{value: 0.95, u: 0.01, source: handbook}", "{from: reference_pairs}",
+        "{value: 0.95, u: 0.01, source: handbook}",
+        "surfaces.worn-asphalt.emissivity.from: not available yet; write {value, u, source}"),
+    "emissivity from ndvi": (
+        "{value: 0.95, u: 0.01, source: handbook}",
+        "{from: ndvi, vegetation: 0.985, soil: 0.96, u: 0.01}",
+        "{value: 0.95, u: 0.01, source: handbook}",
+        "line 24: surfaces.worn-asphalt.emissivity.from: not available yet"),
+    "emissivity without source": (
+        ", source: handbook", "", ", source: handbook",
+        "surfaces.worn-asphalt.emissivity.source: missing; write where the value comes from"),
+    "emissivity of bare metal": (
+        "value: 0.95", "value: 0.3", "value: 0.6",
+        "surfaces.worn-asphalt.emissivity.value: got 0.3; below 0.6",
+        "settings.temperature.min_emissivity"),
+    "around without u": (
+        "{albedo: 0.20, u: 0.05}", "{albedo: 0.20}", "{albedo: {value: 0.20, u: 0.05}}",
+        "surfaces.worn-asphalt.around.u: missing; write the standard uncertainty of albedo"),
+    "u given twice": (
+        "offset_s: 12.0, u_s: 0.5", "offset_s: {value: 12, u: 0.5}, u_s: 0.5",
+        "offset_s: {value: 12, u: 0.5}",
+        "loggers.thermal.clock.u_s: got 0.5, and offset_s gives u 0.5 as well; write the "
+        "uncertainty once"),
+    "u of the watch twice": (
+        "{offset_s: 0, u_s: 1}", "{offset_s: {value: 0, u: 1}, u_s: 1}",
+        "{offset_s: {value: 0, u: 1}}", "line 16: watch.u_s: got 1, and offset_s gives u 1"),
+    "clock without u": (
+        ", u_s: 0.5", "", ", u_s: 0.5",
+        "loggers.thermal.clock.u_s: missing; write the standard uncertainty of offset_s"),
+    "drift without beginning": (
+        "u_s: 0.5", "u_s: 0.5, drift_ppm: 20",
+        'u_s: 0.5, drift_ppm: 20, drift_from: "2025-07-24T08:00:00Z"',
+        "loggers.thermal.clock.drift_from: missing; drift_ppm needs the time"),
+    "drift from a bare time": (
+        "u_s: 0.5", 'u_s: 0.5, drift_from: "2025-07-24T08:00:00"',
+        'u_s: 0.5, drift_from: "2025-07-24T08:00:00+01:00"',
+        "loggers.thermal.clock.drift_from: got '2025-07-24T08:00:00'; write a time with its offset"),
+    "name with a blank": (
+        "  lawn: {", "  front lawn: {", "  front-lawn: {",
+        "surfaces.'front lawn': got the name 'front lawn'; write letters, digits, - and _"),
+    "control characters": (
+        "label: Lawn", 'label: "La\\u0007wn"', "label: Lawn",
+        "surfaces.lawn.label: got 'La\\x07wn'; write plain text on one line"),
+    "direction-changing characters": (
+        "label: Lawn", 'label: "La\\u202ewn"', "label: Lawn",
+        "surfaces.lawn.label: got 'La\\u202ewn'; write plain text without direction"),
+    "blank label": ("label: Lawn", 'label: " "', "label: Lawn",
+                    "surfaces.lawn.label: got ' '; write some text"),
+    "long label": ("label: Lawn", f"label: {'x' * 121}", f"label: {'x' * 120}",
+                   "surfaces.lawn.label: got 'xxx", "write plain text, up to 120 characters"),
+    "unknown sky": ("sky: clear", "sky: hazy", "sky: broken",
+                    "conditions.sky: got 'hazy'; write clear, broken or overcast"),
+    "campaign of another name": (
+        "campaign: mill-yard-2025-07-24", "campaign: mill-yard", "campaign: mill-yard-2025-07-24",
+        "line 2: campaign: got 'mill-yard' in the file mill-yard-2025-07-24.yml; write mill-yard-"),
+    "campaign in capitals": (
+        "campaign: mill-yard-2025-07-24", "campaign: Mill", "campaign: mill-yard-2025-07-24",
+        "line 2: campaign: got 'Mill'; write lower-case letters, digits and -"),
+    "later format": ("format: 1", "format: 2", "format: 1", "line 1: format: got 2; write 1"),
+    "control no surface": (
+        "control: worn-asphalt", "control: worn-asfalt", "control: lawn",
+        "comparison.control: got 'worn-asfalt', no surface of this file; did you mean "
+        "worn-asphalt? write one of worn-asphalt, lawn"),
+    "logger not in the kit": (
+        "  weather: {", "  wether: {", "  weather: {",
+        "line 20: loggers.wether: no such entry in the kit; did you mean weather? write one of "
+        "thermal, shortwave, weather"),
+    "no logger": (
+        """loggers:
+  thermal: {files: "thermal*.csv", clock: {offset_s: 12.0, u_s: 0.5}}
+  shortwave: {files: [shortwave.csv, shortwave_2.csv]}
+  weather: {files: weather.csv}
+""", "loggers: {}\n", "loggers: {weather: {files: weather.csv}}\n",
+        "line 17: loggers: got a mapping; write at least one logger"),
+    "absolute path": (
+        "data_folder: demo_data/mill-yard-2025-07-24", "data_folder: /tmp/survey",
+        "data_folder: demo_data",
+        "line 14: data_folder: got '/tmp/survey'; write a path relative to the project folder"),
+    "path upwards": (
+        "field_sheet: field_sheet.csv", "field_sheet: ../../../sheet.csv",
+        "field_sheet: sheet.csv", "field_sheet: got '../../../sheet.csv'; write a path inside"),
+    "files upwards": (
+        "[shortwave.csv, shortwave_2.csv]", "[shortwave.csv, ../x.csv]",
+        "[shortwave.csv, x.csv]",
+        "line 19: loggers.shortwave.files[1]: got '../x.csv'; write a path inside the project"),
+    "backslashes": (
+        "field_sheet: field_sheet.csv", "field_sheet: a\\sheet.csv", "field_sheet: a/sheet.csv",
+        "field_sheet: got 'a\\\\sheet.csv'; write the path with forward slashes"),
+    "kit not there": (
+        "params/instruments.yml", "params/instrument.yml", "params/instruments.yml",
+        "line 13: instruments: got 'params/instrument.yml', but there is no such file"),
+    "campaign as its kit": (
+        "params/instruments.yml", "params/mill-yard-2025-06-12.yml", "params/instruments.yml",
+        "params/mill-yard-2025-06-12.yml: is a campaign's parameter file, not a kit"),
+    "earlier is itself": (
+        "[params/mill-yard-2025-06-12.yml]", f"[{YML}]", "[params/mill-yard-2025-06-12.yml]",
+        f"comparison.earlier[0]: got '{YML}', this file itself"),
+    "earlier twice": (
+        "[params/mill-yard-2025-06-12.yml]",
+        "[params/mill-yard-2025-06-12.yml, params/mill-yard-2025-06-12.yml]", "[]",
+        "comparison.earlier[1]: got 'params/mill-yard-2025-06-12.yml' a second time"),
+    "earlier not there": (
+        "[params/mill-yard-2025-06-12.yml]", "[params/no.yml]", "[]",
+        "comparison.earlier[0]: got 'params/no.yml', but there is no such file"),
+    "section missing": (
+        "field_sheet: field_sheet.csv\n", "", "field_sheet: sheet.csv\n",
+        "field_sheet: missing; write a file name such as field_sheet.csv"),
+    "section left empty": (
+        "field_sheet: field_sheet.csv", "field_sheet:", "field_sheet: sheet.csv",
+        "field_sheet: missing; write a file name"),
+}
+
+# the same for the kit
+KIT_CASES = {
+    "main channel without u": (
+        ", u_offset: 0.2}", "}", ", u_offset: 0}",
+        "line 6: thermal.columns.target: a column of brightness_temperature must state u_gain or "
+        "u_offset (0 is allowed, silence is not)"),
+    "u of a gain twice": (
+        "gain: 10.4", "gain: {value: 10.4, u: 0.1}", "gain: 10.5",
+        "line 17: shortwave.columns.sky_mV.u_gain: got 0.015, and gain gives u 0.1 as well"),
+    "raw unit without gain": (
+        "gain: 10.4, offset: 0.0, ", "offset: 0.0, ", "gain: 10, offset: 0.0, ",
+        "shortwave.columns.sky_mV.gain: missing; a column in mV needs gain and offset",
+        "in W m-2"),
+    "unit of another quantity": (
+        'unit: "%"', "unit: hPa", 'unit: "1"',
+        "weather.columns.humidity.unit: got 'hPa' for relative_humidity; write one of %, 1"),
+    "unknown unit": (
+        "{quantity: housing_temperature, unit: degC}", "{quantity: housing_temperature, unit: C}",
+        "{quantity: housing_temperature, unit: K}",
+        "thermal.columns.body.unit: got 'C'; write one of degC, K, W m-2"),
+    "unknown quantity": (
+        "quantity: air_temperature", "quantity: temperature", "quantity: air_temperature",
+        "weather.columns.air.quantity: got 'temperature'; write one of brightness_temperature"),
+    "gain of zero": ("gain: 10.4", "gain: 0", "gain: -1",
+                     "shortwave.columns.sky_mV.gain: got 0; write a gain other than 0"),
+    "emissivity setting elsewhere": (
+        "{quantity: housing_temperature, unit: degC}",
+        "{quantity: housing_temperature, unit: degC, emissivity_setting: 1}",
+        "{quantity: housing_temperature, unit: degC, u_offset: 1}",
+        "thermal.columns.body.emissivity_setting: got 1 in a column of housing_temperature"),
+    "two time constants": (
+        "t95_s: 3.0", "t95_s: 3.0\n  time_constant_s: 1", "time_constant_s: 1",
+        "shortwave.t95_s: got 3 beside time_constant_s; write one of the two"),
+    "no time constant": (
+        "  time_constant_s: 0.3\n", "", "  t95_s: 0.9\n",
+        "line 6: thermal.columns.target: time_constant_s missing"),
+    "band upside down": ("band_um: [8, 14]", "band_um: [14, 8]", "band_um: [8, 14]",
+                         "thermal.band_um: got [14.0, 8.0]; write [low, high] in um"),
+    "half angle range": ("half_angle_deg: 22", "half_angle_deg: 125", "half_angle_deg: 62.5",
+                         "thermal.half_angle_deg: got 125; write a number above 0, at most 90"),
+    "calibration after the campaign": (
+        '"2025-02-10"', '"2025-08-01"', '"2025-07-24"',
+        "line 8: thermal.calibration.date: got '2025-08-01', after the campaign of 2025-07-24"),
+    "two columns of one quantity": (
+        "body: {quantity: housing_temperature, unit: degC}",
+        "body: {quantity: brightness_temperature, unit: degC, u_offset: 0}",
+        "body: {quantity: air_temperature, unit: degC}",
+        "thermal.columns.body: holds brightness_temperature as column 'target' does"),
+    "errors that would cancel": (
+        'calibration: {id: shortwave-2025-01, date: "2025-01-20", valid_days: 730}',
+        'calibration: {id: thermal-2025-02, date: "2025-01-20"}\n'
+        "  # as if one sheet\n",
+        'calibration: {id: other, date: "2025-01-20"}', None),
+    "time among the columns": (
+        "    air: {", "    time: {", "    air: {",
+        "weather.columns.time: is the column of times"),
+    "date and time columns": (
+        "{column: time, zone: UTC}", "{column: [date, time], zone: UTC}",
+        "{column: time, zone: UTC}", "weather.time.column: a date and a time column are reserved"),
+    "epoch seconds": ("format: iso8601", "format: epoch_s", "format: iso8601",
+                      "thermal.time.format: epoch_s is reserved for later work"),
+    "half a date": ('"%d/%m/%Y %H:%M:%S"', '"%d/%m %H:%M:%S"', '"%d/%m/%y %H:%M"',
+                    "shortwave.time.format: got '%d/%m %H:%M:%S', which does not hold a whole"),
+    "hours of twelve": ('"%d/%m/%Y %H:%M:%S"', '"%d/%m/%Y %I:%M:%S"', '"%d/%m/%Y %I:%M:%S %p"',
+                        "shortwave.time.format: got '%d/%m/%Y %I:%M:%S', which does not hold"),
+    "zone of a logger": ("zone: Europe/Lisbon", "zone: Lisbon", "zone: Etc/GMT-1",
+                         "line 15: shortwave.time.zone: got 'Lisbon'; write UTC or an IANA name"),
+    "delimiter is the decimal mark": (
+        'decimal: "."', 'decimal: ","', 'decimal: "."',
+        "thermal.layout.delimiter: got ',', which is the decimal mark as well"),
+    "delimiter a letter": ('delimiter: ","', "delimiter: x", 'delimiter: "\\t"',
+                           "thermal.layout.delimiter: got 'x'; write one character in quotes"),
+    "missing code a number": (
+        '["", "NAN", "-9999"]', '["", -9999]', '["", "-9999"]',
+        "thermal.layout.missing[1]: got -9999; write a text, in quotes: \"-9999\""),
+    "unknown encoding": ("skip_lines: 0", "encoding: utf8", "encoding: latin-1",
+                         "thermal.layout.encoding: got 'utf8'; write utf-8, windows-1252"),
+    "reserved in the kit": (
+        "head_radius_cm: 1.2", "rod_width_cm: 1.5", "head_radius_cm: 1.2",
+        "shortwave.rod_width_cm: reserved for later work"),
+    "serial a number": ("serial: T-07", "serial: 1234", 'serial: "1234"',
+                        'thermal.serial: got 1234; write plain text', '"1234"'),
+    "unknown key in the kit": (
+        "interval_s: 60", "intervall_s: 60", "interval_s: 60",
+        "weather.intervall_s: unknown key; did you mean interval_s?"),
+}
+KIT_CASES.pop("errors that would cancel")  # needs equal headers: its own test below
+
+
+def refused(path):
+    with pytest.raises(InputError) as caught:
+        load(path)
+    return caught.value.faults
+
+
+def clean_twin_and_base_load(project):
+    assert load(project.path).campaign.campaign == "mill-yard-2025-07-24"
+
+
+@pytest.mark.parametrize("case", CAMPAIGN_CASES)
+def test_campaign_is_refused_with_one_sentence_and_its_mended_twin_loads(project, case):
+    old, bad, good, *pieces = CAMPAIGN_CASES[case]
+    faults = refused(project.write(old, bad))
+    if case == "unknown key":  # the misspelt key is missing as well: two sentences
+        assert [fault for fault in faults if "data_folder: missing" in fault]
+        faults = tuple(fault for fault in faults if "unknown key" in fault)
+    if case == "unknown key below":  # likewise
+        faults = tuple(fault for fault in faults if "unknown key" in fault)
+    assert len(faults) == 1, faults
+    assert faults[0].startswith("params/")
+    for piece in pieces:
+        assert piece in faults[0]
+    project.write(old, good)
+    clean_twin_and_base_load(project)
+
+
+@pytest.mark.parametrize("case", KIT_CASES)
+def test_kit_is_refused_with_one_sentence_and_its_mended_twin_loads(project, case):
+    old, bad, good, *pieces = KIT_CASES[case]
+    faults = refused(project.write(kit_old=old, kit_new=bad))
+    assert len(faults) == 1, faults
+    assert faults[0].startswith(f"{KIT} line ")
+    for piece in pieces:
+        assert piece in faults[0]
+    project.write(kit_old=old, kit_new=good)
+    clean_twin_and_base_load(project)
