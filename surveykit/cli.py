@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import argparse
 import sys
+from collections.abc import Callable
 from pathlib import Path
 
 DONE, BUG, USER = 0, 1, 2
@@ -31,16 +32,20 @@ def main(arguments: list[str] | None = None) -> int:
     return max([_told(lambda file=file: each(file)) for file in asked.files])
 
 
-def _told(work: object) -> int:
+def _told(work: Callable[[], None]) -> int:
     """Call `work`; print the user's faults, one line each, and return the exit code."""
     from surveykit.core import InputError
+    from surveykit.swap import SwapError
 
     try:
-        work()  # type: ignore[operator]
+        work()
     except InputError as error:
         for fault in error.faults:
             print(fault, file=sys.stderr)  # noqa: T201
         return USER
+    except SwapError as error:
+        print(error, file=sys.stderr)  # noqa: T201
+        return BUG
     return DONE
 
 

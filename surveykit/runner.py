@@ -82,10 +82,10 @@ def _run_one(survey: Survey, say: Say) -> Path:
         say(f"{name}: {survey.campaign.title}")
         durations = _execute(survey, new / "notebooks", say)
         _write(survey, new, durations, started)
-        swap_in(reports, name)
     except BaseException:
         shutil.rmtree(new, ignore_errors=True)
         raise
+    swap_in(reports, name)
     say(f"  report in {time.perf_counter() - started:.1f} s")
     return reports / name / "report.html"
 
@@ -99,12 +99,17 @@ def _execute(survey: Survey, folder: Path, say: Say) -> dict[str, float]:
     handed = {"params_file": survey.inputs[0]["path"], "run_folder": str(survey.run_folder)}
     for name in NOTEBOOKS:
         begun = time.perf_counter()
-        papermill.execute_notebook(
-            _literal(survey.parameters.root / "notebooks" / f"{name}.ipynb"),
-            _literal(folder / f"{name}.ipynb"),
-            parameters=handed, kernel_name="python3", progress_bar=False, log_output=False,
-            cwd=str(survey.parameters.root),
-            kernel_manager_class="surveykit.kernels.QuietKernelManager")
+        try:
+            papermill.execute_notebook(
+                _literal(survey.parameters.root / "notebooks" / f"{name}.ipynb"),
+                _literal(folder / f"{name}.ipynb"),
+                parameters=handed, kernel_name="python3", progress_bar=False, log_output=False,
+                cwd=str(survey.parameters.root),
+                kernel_manager_class="surveykit.kernels.QuietKernelManager")
+        except papermill.PapermillExecutionError as error:
+            if error.ename == InputError.__name__:
+                raise InputError(*error.evalue.splitlines()) from None
+            raise
         durations[name] = time.perf_counter() - begun
         say(f"  {name:<14} {durations[name]:5.1f} s")
     return durations

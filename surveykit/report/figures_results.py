@@ -50,7 +50,8 @@ def interval_plot(surfaces: pd.DataFrame, quantity: str, labels: Labels = None) 
                 + w.with_unit(w.interval(row["value"], row["lower"], row["upper"],
                                          w.places(quantity)), unit)
                 for row in rows[rows["value"].notna()].iloc[::-1].to_dict("records")]
-        findings.append(f"{w.quantity_text(quantity, kind)}: {w.listing(told)}.")
+        findings.append(f"{w.quantity_text(quantity, kind)}: "
+                        f"{w.listing(told) or 'none evaluated'}.")
     axes[-1].set_xlabel(_axis(quantity, unit))
     hollow = surfaces[surfaces["quantity"] == quantity]["status"].isin(["qualified", "value only"])
     caption = f"{w.quantity_text(quantity)} of each surface with its interval" + (
@@ -154,6 +155,7 @@ def change_plot(changes: pd.DataFrame, earlier: str, relevant: Mapping[str, floa
 def _rows(axis: Axes, names: list[str]) -> None:
     axis.set_yticks(range(len(names)), [shorten(name) for name in names])
     axis.set_ylim(-0.6, len(names) - 0.4)
+    axis.locator_params(axis="x", nbins=6, steps=[1, 2, 5, 10])
     axis.grid(axis="x")
     axis.tick_params(axis="y", length=0)
     axis.tick_params(axis="x", labelbottom=True)

@@ -9,6 +9,7 @@ from __future__ import annotations
 import re
 from collections.abc import Mapping, Sequence
 from html import escape, unescape
+from html.parser import HTMLParser
 from pathlib import Path
 from typing import Any
 
@@ -26,8 +27,8 @@ from .markup import Html, bullets, paragraph
 TEMPLATES = Path(__file__).parent / "template"
 LEFT_OUT = {"remove_cell", "page-skip"}  # cells with one of these tags are not on the page
 HEADING = re.compile(r"<h([1-6])[^>]*>(.*?)</h\1>", re.DOTALL)
-LEAVING = re.compile(r"""<script\b|<link\b|<iframe\b|\s(?:src|href)\s*=\s*["']?(?!["'#]|data:)"""
-                     r"|url\(\s*[\"']?(?!data:|#)", re.IGNORECASE)
+ACTIVE = {"script", "link", "iframe", "object", "embed", "base", "form"}
+ADDRESSES = {"src", "href", "srcset", "action", "poster", "data", "background"}
 
 
 def build_page(notebooks: Sequence[NotebookNode], tables: Mapping[str, pd.DataFrame],
@@ -61,11 +62,32 @@ def build_page(notebooks: Sequence[NotebookNode], tables: Mapping[str, pd.DataFr
         facts=facts, css=Html((TEMPLATES / "page.css").read_text("utf-8")), parts=parts,
         title_block=_title_block(facts), summary=_summary(tables, facts),
         appendix=_appendix(facts))
-    leaving = LEAVING.search(re.sub(r'(?<=base64,)[A-Za-z0-9+/=\s]+', "", page))
-    if leaving:
-        around = page[max(0, leaving.start() - 40):leaving.end() + 40]
-        raise ValueError(f"the page would not stand alone: {around!r}; write the source in words")
+    watch = _Watch()
+    watch.feed(page)
+    if watch.found:
+        raise ValueError("the page would not stand alone; write sources in words, show figures by "
+                         f"figures.show: {'; '.join(watch.found)}")
     return page
+
+
+class _Watch(HTMLParser):
+    """Finds what would run on the page or ask the network for something."""
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.found: list[str] = []
+
+    def handle_starttag(self, tag: str, attrs: list[tuple[str, str | None]]) -> None:
+        if tag in ACTIVE:
+            self.found.append(f"<{tag}>")
+        for name, value in attrs:
+            remote = name in ADDRESSES and not (value or "").startswith(("#", "data:image/"))
+            if remote or name.startswith("on") or (name == "style" and "url(" in (value or "")):
+                self.found.append(f'<{tag} {name}="{(value or "")[:60]}">')
+
+    def handle_data(self, data: str) -> None:
+        if self.cdata_elem == "style" and re.search(r"@import|url\(", data):
+            self.found.append("an address in a style sheet")
 
 
 def _part(notebook: NotebookNode, place: int) -> dict[str, Any]:
@@ -145,7 +167,8 @@ def _summary(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> li
         ("changed", "What changed", [_changes(tables["changes"], facts)]),
         ("not-evaluated", "What could not be evaluated, and why", [bullets(
             sentences.not_evaluated(tables, labels),
-            empty="Everything on the field sheet was evaluated.")]),
+            empty="Nothing was surveyed." if surfaces.empty else
+            "Everything on the field sheet was evaluated.")]),
         ("narrowing", "What would narrow the uncertainty most", [bullets(
             sentences.narrowing(tables["budget"], labels),
             empty="No uncertainty budget could be drawn up.")]),
@@ -162,8 +185,9 @@ def _summary(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> li
 def _changes(changes: pd.DataFrame, facts: Mapping[str, Any]) -> Html:
     if not facts.get("earlier") and changes.empty:
         return paragraph("No earlier campaign was named, so no change was looked for.", "empty")
-    return bullets(sentences.changed(changes, facts),
-                   empty="No change could be judged; the reasons stand in the next section.")
+    return bullets(sentences.changed(changes, facts), empty=(
+        "The earlier campaigns share no surface and quantity with this one." if changes.empty else
+        "No change could be judged; the reasons stand in the next section."))
 
 
 def _appendix(facts: Mapping[str, Any]) -> list[dict[str, Any]]:
@@ -180,7 +204,7 @@ def _appendix(facts: Mapping[str, Any]) -> list[dict[str, Any]]:
          "body": [t.inputs_table(facts.get("inputs", []))]},
         {"id": "versions", "heading": "Programs", "body": [paragraph(sentences.programs(facts))]},
         {"id": "rerun", "heading": "How to run it again", "body": [
-            paragraph("From the project's folder, with the same input files and programs, this "
+            paragraph("From the project’s folder, with the same input files and programs, this "
                       "gives the same page and tables:"), rerun]},
     ]
 

@@ -24,9 +24,14 @@ def measured(tables: Tables, facts: Facts) -> list[str]:
     """Say how much was surveyed, and for each quantity and kind the span of the surfaces."""
     surfaces, labels = tables["surfaces"], facts.get("surfaces")
     names, passes = surfaces["surface"].unique(), tables["passes"]
-    lines = [f"{w.plural(len(names), 'surface')} at {facts['site']['name']} "
-             f"{'was' if len(names) == 1 else 'were'} surveyed in "
-             f"{w.plural(len(passes), 'pass', 'passes')} on {w.date_text(facts['date'])}."]
+    where, were = facts["site"]["name"], "was" if len(names) == 1 else "were"
+    visited = f"{w.plural(len(names), 'surface')} at {where} {were}"
+    lines = [f"{visited} surveyed in {w.plural(len(passes), 'pass', 'passes')} on "
+             f"{w.date_text(facts['date'])}."]
+    if passes.empty:
+        lines = [f"{visited} visited on {w.date_text(facts['date'])}, but no pass could be matched "
+                 "with records."] if len(names) else [
+                 f"No surface at {where} was surveyed on {w.date_text(facts['date'])}."]
     for (quantity, kind), block in w.families(surfaces):
         known = block[block["value"].notna()].sort_values("value", kind="stable")
         if known.empty:
@@ -194,7 +199,8 @@ def cautions(surfaces: pd.DataFrame, labels: Labels = None) -> list[str]:
     if len(hot):
         top = hot.assign(end=hot["upper"].fillna(hot["value"]))
         row = top.iloc[int(top["end"].argmax())]
-        lines.append("Hot surfaces: the highest upper end of an interval is "
+        what = "value" if pd.isna(row["upper"]) else "upper end of an interval"
+        lines.append(f"Hot surfaces: the highest {what} is "
                      f"{w.with_unit(w.number(row['end'], 1), row['unit'])} "
                      f"({w.label(row['surface'], labels)}), a mean over an area: single spots are "
                      "hotter. What contact is acceptable, for whom and how long, is for local "
@@ -224,7 +230,7 @@ def reading(facts: Facts) -> list[str]:
         "Passes: the pass is the statistical unit. Records within a pass are correlated, so they "
         "count for fewer (Geyer 1992); passes are pooled by weights that include how much they "
         "differ (Paule and Mandel 1982), with the interval of Hartung and Knapp (2001) never below "
-        "what the passes' own uncertainties give (Röver, Knapp and Friede 2015).",
+        "what the passes’ own uncertainties give (Röver, Knapp and Friede 2015).",
         "Verdicts: higher and lower mean that the interval excludes zero after allowance for many "
         "comparisons (Holm 1979) and that the size is at least the relevant one; no difference "
         "shown is not proof of none, so it comes with the size that could have been missed.",

@@ -60,7 +60,7 @@ def clock_table(clocks: pd.DataFrame) -> Html:
     heads = [Column("Logger"), Column("Method"), Column("Offset added, s", "number"),
              Column("u, s", "number"), Column("Drift, 10⁻⁶", "number"), Column("Status"),
              Column("Note", "long")]
-    return table("Clocks: seconds added to each logger's time to reach UTC, with the standard "
+    return table("Clocks: seconds added to each logger’s time to reach UTC, with the standard "
                  "uncertainty u.", heads, rows, empty="No logger was read.")
 
 
@@ -107,4 +107,6 @@ def inputs_table(inputs: Rows) -> Html:
 
 
 def _relative(u_gain: Any) -> str:
-    return f"{100 * u_gain:.3g} %" if isinstance(u_gain, int | float) else w.plain(u_gain)
+    if isinstance(u_gain, int | float):
+        return f"{100 * u_gain:.3g}{w.NO_BREAK}%"
+    return w.plain(u_gain)

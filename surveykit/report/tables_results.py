@@ -59,7 +59,7 @@ def surface_table(surfaces: pd.DataFrame, labels: Labels = None) -> Html:
              w.number(row["dof"], 0), w.count(row["n_patches"]), w.count(row["n_passes"]),
              w.count(row["n_records"]), _word(row["status"], _note(row))]
             for index, row in block.iterrows()]))
-    heads = [Column("Surface"), Column("Value ± U", "number"), Column("k", "number"),
+    heads = [Column("Surface"), _with_u("Value"), Column("k", "number"),
              Column("Degrees of freedom", "number"), Column("Patches", "number"),
              Column("Passes", "number"), Column("Records", "number"), Column("Status", "long")]
     return grouped_table(f"Surfaces: mean ± U, {_coverage(surfaces)}, U = k times the standard "
@@ -97,11 +97,12 @@ def difference_table(differences: pd.DataFrame, labels: Labels = None) -> Html:
         values = _values(block, "difference", sign=True)
         groups.append((_heading(quantity, kind, block), [
             [f"{w.label(row['surface'], labels)} {w.MINUS} {w.label(row['other'], labels)}",
-             values[index], w.probability(row["p_adjusted"]),
-             w.expanded(row["could_have_missed"], w.places(quantity)),
-             _word(row["verdict"], row["note"])] for index, row in block.iterrows()]))
-    heads = [Column("Pair"), Column("Difference ± U", "number"), Column("p, adjusted", "number"),
-             Column("Could have missed", "number"), Column("Verdict", "long")]
+             values[index], _word(row["verdict"], row["note"]), w.probability(row["p_adjusted"]),
+             w.expanded(row["could_have_missed"], w.places(quantity))]
+            for index, row in block.iterrows()]))
+    heads = [Column("Pair"), _with_u("Difference"),
+             Column("Verdict", "long"), Column(f"p,{w.NO_BREAK}adjusted", "number"),
+             Column("Could have missed", "number")]
     return grouped_table(
         f"Differences between surfaces of this campaign, {_coverage(differences)}; p after Holm "
         "within each quantity; a verdict also weighs the difference against the relevant one.",
@@ -116,11 +117,11 @@ def change_table(changes: pd.DataFrame, labels: Labels = None) -> Html:
             values = _values(block, "change", sign=True)
             groups.append((f"{_heading(quantity, kind, block)}, since {earlier}", [
                 [w.label(row["surface"], labels), values[index],
-                 _method(row["method"], w.label(row["control"], labels)), row["comparability"],
-                 _word(row["verdict"] or "not judged", row["note"], quiet=not row["verdict"])]
+                 _word(row["verdict"] or "not judged", row["note"], quiet=not row["verdict"]),
+                 row["comparability"], _method(row["method"], w.label(row["control"], labels))]
                 for index, row in block.iterrows()]))
-    heads = [Column("Surface"), Column("Change ± U", "number"), Column("Method"),
-             Column("Conditions"), Column("Verdict", "long")]
+    heads = [Column("Surface"), _with_u("Change"),
+             Column("Verdict", "long"), Column("Conditions"), Column("Method")]
     return grouped_table(f"Changes since earlier campaigns, {_coverage(changes)}.", heads, groups,
                          empty="No earlier campaign was named, so no change was looked for.")
 
@@ -144,7 +145,7 @@ def budget_table(budget: pd.DataFrame, labels: Labels = None) -> Html:
 def _values(block: pd.DataFrame, column: str = "value", *, sign: bool = False) -> dict[Any, Cell]:
     """Write a block's values ± U, what follows the value given the same room in every row."""
     texts = {index: w.interval(row[column], row["lower"], row["upper"], w.places(row["quantity"]),
-                               sign=sign).partition(" ") for index, row in block.iterrows()}
+                               sign=sign).partition(w.NO_BREAK) for index, row in block.iterrows()}
     room = max((_room(tail) for _, _, tail in texts.values()), default=0.0)
     return {index: Cell(value, tail=tail, room=room) if value else NONE
             for index, (value, _, tail) in texts.items()}
@@ -152,7 +153,7 @@ def _values(block: pd.DataFrame, column: str = "value", *, sign: bool = False) -
 
 def _room(tail: str) -> float:
     """About how many digits wide a tail is: spaces, marks and points are half as wide."""
-    return sum(0.5 if c in " .()" else 1.0 for c in tail) + 0.8 if tail else 0.0
+    return sum(0.5 if c in f"{w.NO_BREAK}.()" else 1.0 for c in tail) + 0.8 if tail else 0.0
 
 
 def _note(row: pd.Series) -> str:
@@ -171,8 +172,12 @@ def _difference_unit(unit: str) -> str:
 
 
 def _coverage(frame: pd.DataFrame) -> str:
-    levels = sorted({*frame["coverage"].dropna()})
-    return "coverage " + w.listing([f"{100 * level:g} %" for level in levels] or ["not stated"])
+    levels = [f"{100 * level:g}{w.NO_BREAK}%" for level in sorted({*frame["coverage"].dropna()})]
+    return "coverage " + w.listing(levels or ["not stated"])
+
+
+def _with_u(name: str) -> Column:
+    return Column(f"{name} ± U".replace(" ", w.NO_BREAK), "number")
 
 
 def _method(method: str, control: str) -> str:

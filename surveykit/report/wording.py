@@ -13,7 +13,7 @@ from typing import Any
 
 import pandas as pd
 
-MINUS, FIGURE_SPACE, NARROW_SPACE, DASH = "\u2212", "\u2007", "\u202f", "\u2013"
+MINUS, NO_BREAK, NARROW_SPACE, DASH = "\u2212", "\u00a0", "\u202f", "\u2013"
 PLACES = {"temperature": 1, "albedo": 3, "ndvi": 3}
 UNITS = {"degC": "°C", "1": "", "W m-2": "W m⁻²", "m s-1": "m s⁻¹", "uV": "µV", "deg": "°",
          "J m-2 K-1 s-1/2": "J m⁻² K⁻¹ s⁻¹ᐟ²", "K-1": "K⁻¹", "kg m-3": "kg m⁻³"}
@@ -106,12 +106,14 @@ def interval(value: float, lower: float, upper: float, decimals: int, *,
              sign: bool = False) -> str:
     """Return `value ± U`, or both ends where the arms differ by more than a fifth.
 
-    Without an interval the value stands alone; without a value the text is empty.
+    Without an interval the value stands alone; without a value the text is empty. Its spaces do
+    not break.
 
     Examples
     --------
-    >>> interval(41.66, 39.54, 43.78, 1), interval(0.3, 0.2, 0.6, 3)
-    ('41.7 ± 2.1', '0.300 (0.200 to 0.600)')
+    >>> [text.replace(NO_BREAK, " ") for text in (
+    ...     interval(41.66, 39.54, 43.78, 1), interval(0.3, 0.2, 0.6, 3))]
+    ['41.7 ± 2.1', '0.300 (0.200 to 0.600)']
     """
     centre = number(value, decimals, sign=sign)
     if not centre or math.isnan(lower) or math.isnan(upper):
@@ -120,8 +122,8 @@ def interval(value: float, lower: float, upper: float, decimals: int, *,
     if min(below, above) < (1 - ASYMMETRY) * max(below, above):
         ends = (number(end, decimals, sign=sign) for end in (lower, upper))
         if len(set(texts := [*ends])) > 1:
-            return f"{centre} ({texts[0]} to {texts[1]})"
-    return f"{centre} ± {expanded((upper - lower) / 2, decimals)}"
+            return f"{centre} ({texts[0]} to {texts[1]})".replace(" ", NO_BREAK)
+    return f"{centre} ± {expanded((upper - lower) / 2, decimals)}".replace(" ", NO_BREAK)
 
 
 def with_unit(text: str, unit: str) -> str:
@@ -129,11 +131,11 @@ def with_unit(text: str, unit: str) -> str:
 
     Examples
     --------
-    >>> with_unit("41.7 ± 2.1", "degC"), with_unit("0.300", "1")
-    ('41.7 ± 2.1 °C', '0.300')
+    >>> with_unit("41.7", "degC").replace(NO_BREAK, " "), with_unit("0.300", "1")
+    ('41.7 °C', '0.300')
     """
     written = unit_text(unit)
-    return f"{text} {written}" if written and text else text
+    return f"{text}{NO_BREAK}{written}" if written and text else text
 
 
 def figures(value: float, digits: int = 2) -> str:
@@ -166,12 +168,12 @@ def percent(share: float) -> str:
 
     Examples
     --------
-    >>> percent(0.613), percent(0.004), percent(0.0)
-    ('61 %', '< 1 %', '0 %')
+    >>> [percent(share).replace(NO_BREAK, " ") for share in (0.613, 0.004, 0.0)]
+    ['61 %', '< 1 %', '0 %']
     """
     if math.isnan(share):
         return ""
-    return "< 1 %" if 0 < share < 0.005 else f"{100 * share:.0f} %"
+    return ("< 1 %" if 0 < share < 0.005 else f"{100 * share:.0f} %").replace(" ", NO_BREAK)
 
 
 def probability(p: float) -> str:

@@ -5,9 +5,9 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
 from pathlib import Path
-from typing import Annotated, Any, cast
+from typing import Any
 
-from pydantic import TypeAdapter, ValidationError
+from pydantic import TypeAdapter, ValidationError, create_model
 
 from surveykit.core import InputError
 from surveykit.intake.params.base import Fault, Loc, Strict
@@ -231,10 +231,12 @@ def _settings(raw: Any) -> Settings:
 
 def _valid_sections(
         data: dict[str, Any], bad: set[Any], context: dict[str, Any]) -> Iterator[tuple[str, Any]]:
-    for key, info in Campaign.model_fields.items():
-        if data.get(key) is not None and key not in bad:
-            adapter: TypeAdapter[Any] = TypeAdapter(cast(Any, Annotated[info.annotation, info]))
-            yield key, adapter.validate_python(data[key], context=context)
+    fields: dict[str, Any] = {
+        key: (info.annotation, info) for key, info in Campaign.model_fields.items()
+        if data.get(key) is not None and key not in bad}
+    part = create_model("Part", __base__=Strict, **fields)
+    valid = part.model_validate({key: data[key] for key in fields}, context=context)
+    yield from ((key, getattr(valid, key)) for key in fields)
     for key, model in (("surfaces", Surface), ("loggers", LoggerUse), ("instruments", Instrument)):
         if key in bad and isinstance(data.get(key), Mapping):
             yield key, _valid_entries(model, data[key], context)
@@ -269,7 +271,8 @@ def _find_kit(data: dict[str, Any], sections: Mapping[str, Any], root: Path, set
         return _Kit()
     kit, faults = _kit(document, settings)
     sentences += located(document, faults)
-    return _Kit(kit, tuple(document.data), document, path)
+    names = None if "campaign" in document.data else tuple(document.data)
+    return _Kit(kit, names, document, path)
 
 
 def _kit(document: Document, settings: Settings) -> tuple[dict[str, Instrument], list[Fault]]:

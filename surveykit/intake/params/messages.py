@@ -95,10 +95,18 @@ def model_faults(
             continue
         word, text = _sentence(kind, dict(item), path, model, data)
         faults.append((word, (path, text)))
-    # A reserved key explains what is missing or unknown beside it.
+    # A reserved key explains what is missing or unknown beside it, a misspelt one what it meant.
     explained = {fault[0][:-1] for word, fault in faults if word == "reserved"}
+    meant = {(*path[:-1], _close(str(path[-1]), model_at(model, path[:-1])))
+             for word, (path, _) in faults if word == "unknown"}
     return [fault for word, fault in faults
-            if word not in ("missing", "unknown") or fault[0][:-1] not in explained]
+            if word not in ("missing", "unknown")
+            or (fault[0][:-1] not in explained and fault[0] not in meant)]
+
+
+def _close(name: str, parent: type[Strict] | None) -> str | None:
+    known = parent.model_fields if parent is not None else {}
+    return next(iter(difflib.get_close_matches(name, known, 1, 0.6)), None)
 
 
 def _user_path(loc: Loc, data: Any, *, missing: bool) -> Loc:
@@ -127,8 +135,8 @@ def _sentence(
         name = str(path[-1])
         if name in parent.RESERVED:
             return "reserved", parent.RESERVED[name]
-        close = difflib.get_close_matches(name, known, 1, 0.6)
-        hint = f"did you mean {close[0]}? " if close else ""
+        close = _close(name, parent)
+        hint = f"did you mean {close}? " if close else ""
         return "unknown", f"unknown key; {hint}known here: {', '.join(known)}"
     write = _write(known.get(str(path[-1]))) if path else None
     got = _at(data, path)

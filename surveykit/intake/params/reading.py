@@ -11,7 +11,7 @@ import yaml
 
 from surveykit.core import InputError
 from surveykit.intake.params.base import Fault, Loc
-from surveykit.intake.params.scalars import plain_reading
+from surveykit.intake.params.scalars import implicit_tag, plain_reading
 
 MAX_BYTES = 256 * 1024
 MAX_DEPTH = 12
@@ -58,9 +58,9 @@ class _Reader:
                 self.lines[(*path, index)] = child.start_mark.line + 1
                 values.append(self.value(child, (*path, index)))
             return values
-        if getattr(node, "style", None) is not None:
-            return node.value
-        value, spelling = plain_reading(node.tag, node.value)
+        if getattr(node, "style", None) is not None or node.tag != implicit_tag(node.value):
+            return node.value  # quoted, or tagged and refused for that
+        value, spelling = plain_reading(node.value)
         if spelling:
             self.refuse(path, f"got {_short(node.value)}; {spelling}")
         return value
@@ -87,7 +87,7 @@ class _Reader:
             return None
         if node.style is not None:
             return str(node.value)
-        value, spelling = plain_reading(node.tag, node.value)
+        value, spelling = plain_reading(node.value)
         if spelling is None and isinstance(value, str):
             return value
         text = str(node.value)

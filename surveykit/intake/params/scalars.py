@@ -51,15 +51,13 @@ def old_reading(tag: str, text: str) -> Any:
     return _LOADER.construct_object(yaml.ScalarNode(tag, text), deep=True)
 
 
-def plain_reading(tag: str, text: str) -> tuple[Scalar, str | None]:
-    """Return the value of a plain scalar, and the spelling to use where editions differ.
+def implicit_tag(text: str) -> str:
+    """Return the tag YAML 1.1 resolves a plain scalar to."""
+    return str(_LOADER.resolve(yaml.ScalarNode, text, (True, False)))
 
-    Parameters
-    ----------
-    tag : str
-        The tag YAML 1.1 resolves it to.
-    text : str
-        The scalar as written.
+
+def plain_reading(text: str) -> tuple[Scalar, str | None]:
+    """Return the value of a plain scalar, and the spelling to use where editions differ.
 
     Returns
     -------
@@ -70,11 +68,12 @@ def plain_reading(tag: str, text: str) -> tuple[Scalar, str | None]:
 
     Examples
     --------
-    >>> plain_reading("tag:yaml.org,2002:int", "12")
+    >>> plain_reading("12")
     (12, None)
-    >>> plain_reading("tag:yaml.org,2002:int", "12:30")
+    >>> plain_reading("12:30")
     ('12:30', 'YAML reads a bare 12:30 as 750; write "12:30", in quotes')
     """
+    tag = implicit_tag(text)
     quoted = f'"{text}", in quotes' if '"' not in text else f"'{text}', in quotes"
     if tag.endswith((":int", ":float")) and len(text) > MAX_NUMBER:
         return text, f"a number of {len(text)} characters; write {MAX_NUMBER} or fewer"

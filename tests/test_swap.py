@@ -1,0 +1,87 @@
+"""The swap of report folders, stopped at each of its steps on purpose."""
+
+import os
+
+import pytest
+
+from surveykit import swap
+
+
+@pytest.fixture
+def reports(tmp_path):
+    for name, text in (("yard", "old"), (".yard.new", "new")):
+        (tmp_path / name).mkdir()
+        (tmp_path / name / "report.html").write_text(text)
+    return tmp_path
+
+
+def names(folder):
+    return sorted(p.name for p in folder.iterdir())
+
+
+def content(folder):
+    return (folder / "yard" / "report.html").read_text()
+
+
+@pytest.mark.parametrize("offered", [True, False])
+def test_the_new_folder_takes_the_place_of_the_old(reports, offered, monkeypatch):
+    if not offered:
+        monkeypatch.setattr(swap, "exchange", lambda a, b: False)
+    swap.swap_in(reports, "yard")
+    assert names(reports) == ["yard"]
+    assert content(reports) == "new"
+
+
+def test_the_first_report_needs_no_old_one(reports):
+    (reports / "yard" / "report.html").unlink()
+    (reports / "yard").rmdir()
+    swap.swap_in(reports, "yard")
+    assert content(reports) == "new"
+
+
+class Stop(BaseException):
+    """Stands for kill -9: nothing of the process's own runs after it."""
+
+
+@pytest.mark.parametrize("offered", [True, False])
+@pytest.mark.parametrize("step", [0, 1, 2])
+def test_a_stop_at_any_step_leaves_a_whole_report(reports, offered, step, monkeypatch):
+    if not offered:
+        monkeypatch.setattr(swap, "exchange", lambda a, b: False)
+    calls = {"n": 0}
+
+    def stopping(real):
+        def call(*arguments, **named):
+            if calls["n"] == step:
+                raise Stop
+            calls["n"] += 1
+            return real(*arguments, **named)
+        return call
+
+    monkeypatch.setattr(os, "rename", stopping(os.rename))
+    monkeypatch.setattr(swap.shutil, "rmtree", stopping(swap.shutil.rmtree))
+    finished = False
+    try:
+        swap.swap_in(reports, "yard")
+        finished = True
+    except Stop:
+        pass
+    assert not finished or calls["n"] <= step
+    monkeypatch.undo()
+    swap.heal(reports, "yard")
+    assert content(reports) in ("old", "new")
+    assert ".yard.old" not in names(reports)
+
+
+def test_a_refused_rename_keeps_both_folders_and_says_where(reports, monkeypatch):
+    monkeypatch.setattr(swap, "exchange", lambda a, b: False)
+
+    def refuse(*arguments):
+        raise PermissionError(13, "Permission denied")
+
+    monkeypatch.setattr(os, "rename", refuse)
+    with pytest.raises(swap.SwapError, match=r"\.yard\.new"):
+        swap.swap_in(reports, "yard")
+    monkeypatch.undo()
+    assert content(reports) == "old"
+    assert (reports / ".yard.new" / "report.html").read_text() == "new"
