@@ -7,7 +7,7 @@ from pathlib import Path
 
 import pandas as pd
 
-from surveykit.intake.params import is_kit, load_kit, read_plain
+from surveykit.intake.params import is_kit_file, load_kit
 from surveykit.opening import open_file
 from surveykit.pipeline import read_inputs
 
@@ -20,7 +20,7 @@ def check(path: Path) -> list[str]:
     InputError
         With every fault found.
     """
-    if is_kit(read_plain(path)):
+    if is_kit_file(path):
         kit = load_kit(path)
         return [f"{path}: a kit of {len(kit)} loggers: {', '.join(kit)}; no fault found"]
     survey = open_file(path)

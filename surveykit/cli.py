@@ -50,9 +50,9 @@ def _told(work: Callable[[], None]) -> int:
 
 
 def _run(path: Path) -> None:
-    from surveykit.intake.params import is_kit, read_plain
+    from surveykit.intake.params import is_kit_file
 
-    if is_kit(read_plain(path)):
+    if is_kit_file(path):
         print(f"{path}: a kit of instruments, nothing to run; passed over")  # noqa: T201
         return
     from surveykit.runner import run

@@ -78,7 +78,13 @@ def _numbers(column: pd.Series, layout: Layout) -> Numbers:
         for code in codes:
             missing |= values == code
         return Numbers(np.where(missing, np.nan, values) if missing.any() else values, unreadable)
-    cells = column.astype(object).where(column.notna(), "").astype(str).str.strip()
+    return _from_text(column, texts, layout)
+
+
+def _from_text(column: pd.Series, texts: list[str], layout: Layout) -> Numbers:
+    """Read a column that holds other text than numbers; each different cell once."""
+    code, different = pd.factorize(column.astype(object).where(column.notna(), ""))
+    cells = pd.Series(different, dtype=object).str.strip()
     if layout.decimal != ".":
         cells = cells.str.replace(".", "x", regex=False).str.replace(layout.decimal, ".")
     good = cells.str.fullmatch(_NUMBER).to_numpy(dtype=np.bool_)
@@ -86,7 +92,8 @@ def _numbers(column: pd.Series, layout: Layout) -> Numbers:
     again = pd.read_csv(io.StringIO(text), header=None, names=["value"], dtype=float, sep="\t",
                         skip_blank_lines=False, keep_default_na=False, na_values=[""])
     read = _numbers(again["value"], layout)
-    return Numbers(read.values, read.unreadable | ~(good | cells.isin(texts).to_numpy()))
+    unreadable = read.unreadable | ~(good | cells.isin(texts).to_numpy())
+    return Numbers(read.values[code], unreadable[code])  # noqa: PD011 - not a table
 
 
 def printed_step(sample: list[list[str]], at: int, layout: Layout) -> float:

@@ -66,6 +66,12 @@ def open_bytes(path: Path) -> Data:
     return data
 
 
+def release(data: Data) -> None:
+    """Give back the memory of a mapped file's pages; they can still be read."""
+    if isinstance(data, mmap.mmap) and hasattr(mmap, "MADV_DONTNEED"):
+        data.madvise(mmap.MADV_DONTNEED)
+
+
 def read_header(data: Data, layout: Layout, where: str) -> Header:
     """Return the header of a file.
 
@@ -95,8 +101,7 @@ def read_header(data: Data, layout: Layout, where: str) -> Header:
             f"{where}, line {layout.skip_lines + 1}: the header holds the byte "
             f"0x{line[error.start]:02X}, which is not {layout.encoding}; "
             "write the file's encoding under layout.encoding (windows-1252 or latin-1)") from None
-    names = next(csv.reader([text], delimiter=layout.delimiter, skipinitialspace=True), [])
-    return Header(tuple(name.strip() for name in names), layout.skip_lines + 1,
+    return Header(tuple(cells_of(text, layout)), layout.skip_lines + 1,
                   min(start, len(data)))
 
 
@@ -155,12 +160,18 @@ def _one_by_one(block: bytes, separators: bytes, fields: int, layout: Layout) ->
         if not good and not line.strip() and layout.delimiter.encode() not in line:
             continue
         good = good and _decodes(line, layout.encoding)
-        text.append(line if good else filler)
+        text.append((_requoted(line, layout) if b'"' in shape else line) if good else filler)
         at.append(number)
         bad.append(not good)
     joined = b"".join(line + b"\n" for line in text)
     return Lines(_utf8(joined, layout.encoding), np.array(at, dtype=np.int32),
                  np.array(bad, dtype=np.bool_), len(lines))
+
+
+def _requoted(line: bytes, layout: Layout) -> bytes:
+    cells = cells_of(line.decode("latin-1"), layout)
+    quoted = ('"' + cell.replace('"', '""') + '"' for cell in cells)
+    return layout.delimiter.join(quoted).encode("latin-1")
 
 
 def _others(delimiter: bytes) -> bytes:
@@ -170,8 +181,7 @@ def _others(delimiter: bytes) -> bytes:
 def _well_formed(line: bytes, fields: int, layout: Layout) -> bool:
     if b"\0" in line or b"\r" in line or line.count(b'"') % 2:
         return False
-    text = line.decode("latin-1")
-    return len(next(csv.reader([text], delimiter=layout.delimiter), [])) == fields
+    return len(cells_of(line.decode("latin-1"), layout)) == fields
 
 
 def _quotes_enclose(block: bytes, delimiter: bytes) -> bool:
@@ -212,5 +222,15 @@ def sample_rows(data: Data, header: Header, layout: Layout, lines: int) -> list[
         end = len(data) if end < 0 else end
         texts.append(data[start:end].decode(layout.encoding, "replace"))
         start = end + 1
-    rows = csv.reader(texts, delimiter=layout.delimiter)
+    rows = (cells_of(text, layout) for text in texts)
     return [row for row in rows if len(row) == len(header.columns)]
+
+
+def cells_of(line: str, layout: Layout) -> list[str]:
+    """Return the cells of one line, blanks around them taken off; none if it is no CSV."""
+    try:
+        cells = next(csv.reader([line.replace("\r", "")], delimiter=layout.delimiter,
+                                skipinitialspace=layout.delimiter != " ", strict=True), [])
+    except csv.Error:
+        return []
+    return [cell.strip() for cell in cells]

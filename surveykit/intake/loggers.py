@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
-import csv
 import hashlib
 import os
+import zlib
 from collections.abc import Sequence
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
@@ -46,7 +46,7 @@ def expand_files(data_folder: Path, patterns: Sequence[str]) -> list[Path]:
     found: set[Path] = set()
     faults = []
     for pattern in patterns:
-        matches = [path for path in data_folder.glob(pattern) if path.is_file()]
+        matches = _matches(data_folder, pattern)
         found.update(matches)
         if not matches:
             held = sorted(path.name for path in data_folder.glob("*") if path.is_file())
@@ -57,6 +57,15 @@ def expand_files(data_folder: Path, patterns: Sequence[str]) -> list[Path]:
     if faults:
         raise InputError(*faults)
     return sorted(found, key=lambda path: path.as_posix())
+
+
+def _matches(folder: Path, pattern: str) -> list[Path]:
+    if (folder / pattern).is_file():  # a name that holds [ or ] is no pattern
+        return [folder / pattern]
+    try:
+        return [path for path in folder.glob(pattern) if path.is_file()]
+    except (ValueError, NotImplementedError):
+        return []
 
 
 def read_logger(name: str, instrument: Instrument, paths: Sequence[Path], root: Path) -> Records:
@@ -100,51 +109,57 @@ def _read_file(path: Path, root: Path, instrument: Instrument,
                channels: Sequence[Channel]) -> _File:
     where = path.relative_to(root).as_posix() if path.is_relative_to(root) else path.name
     layout = instrument.layout
+    if not path.resolve().is_relative_to(root.resolve()):
+        raise InputError(f"{where}: is a link that leads out of the project folder; copy the file")
     try:
         data = dialect.open_bytes(path)
         header = dialect.read_header(data, layout, where)
-    except (OSError, EOFError) as error:
+    except (OSError, EOFError, zlib.error) as error:
         raise InputError(f"{where}: cannot be read ({getattr(error, 'strerror', None) or error}); "
                          "copy it again from the logger") from None
     time_at, *numbers_at = _places(
         header, (instrument.time.column, *(c.column for c in channels)), layout, where)
     fields, iso = len(header.columns), instrument.time.format == "iso8601"
 
-    def read(ends: tuple[int, int]) -> tuple:
+    def read(ends: tuple[int, int]) -> tuple[int, dict[str, NDArray]]:
         lines = dialect.whole_lines(data[ends[0]:ends[1]], fields, layout)
         texts, numbers = cells.read_table(lines.text, fields, time_at, numbers_at, iso, layout)
-        values = [channel.to_si(numbers[at].values)
-                  for channel, at in zip(channels, numbers_at, strict=True)]
-        return lines.at, lines.bad, lines.physical, \
-            *read_times(texts, instrument.time.format), values, numbers
+        wall_ns, offset_s = read_times(texts, instrument.time.format)
+        part: dict[str, NDArray] = {
+            "line": lines.at, "bad": lines.bad, "wall_ns": wall_ns, "offset_s": offset_s}
+        for channel, at in zip(channels, numbers_at, strict=True):
+            part[f"value {channel.column}"] = channel.to_si(numbers[at].values)
+            part[f"unreadable {channel.column}"] = numbers[at].unreadable
+        return lines.physical, part
 
     def digest() -> str:
         packed = isinstance(data, bytes)
         return hashlib.sha256(path.read_bytes() if packed else data).hexdigest()
 
     with ThreadPoolExecutor(min(4, os.cpu_count() or 1)) as pool:
-        sha256 = pool.submit(digest)
-        parts = list(pool.map(read, dialect.blocks(data, header.start)))
-    first = header.line + 1 + np.cumsum([0, *(part[2] for part in parts)])
-    line = _chain([part[0] + np.int32(first[i]) for i, part in enumerate(parts)], np.int32)
-    bad_line = _chain([part[1] for part in parts], np.bool_)
-    wall_ns = _chain([part[3] for part in parts], np.int64)
-    offset_s = _chain([part[4] for part in parts], np.int32)
-    numbers = {
-        channel.column: cells.Numbers(
-            _chain([part[5][i] for part in parts], np.float64),
-            _chain([part[6][at].unreadable for part in parts], np.bool_))
-        for i, (channel, at) in enumerate(zip(channels, numbers_at, strict=True))}
+        sha256 = pool.submit(digest)  # beside the reading: hashing and parsing share the cores
+        ends = list(dialect.blocks(data, header.start)) or [(header.start, header.start)]
+        blocks = list(pool.map(read, ends))
+    dialect.release(data)
+    above = header.line + 1
+    for physical, part in blocks:
+        part["line"] += np.int32(above)
+        above += physical
+    whole = _chained([part for _, part in blocks])
+    line, bad_line, wall_ns = whole["line"], whole["bad"], whole["wall_ns"]
 
     def locate(rows: BoolArray) -> str:
         return f"{where}, line {line[np.flatnonzero(rows)[0]]}"
 
     _refuse_unlike(data, header, instrument, where, line, bad_line, wall_ns, time_at)
-    time_ns = to_utc(wall_ns, offset_s, instrument.time.zone, locate)
+    time_ns = to_utc(wall_ns, whole["offset_s"], instrument.time.zone, locate)
     sample = dialect.sample_rows(data, header, layout, SAMPLE_LINES)
     steps = {channel.column: abs(channel.gain.value) * cells.printed_step(sample, at, layout)
              for channel, at in zip(channels, numbers_at, strict=True)}
     facts = FileFacts(where, sha256.result(), path.stat().st_size, len(line))
+    numbers = {channel.column: cells.Numbers(whole[f"value {channel.column}"],
+                                             whole[f"unreadable {channel.column}"])
+               for channel in channels}
     return _File(facts, time_ns, line, _stepped_back(time_ns), bad_line, numbers, steps)
 
 
@@ -157,8 +172,13 @@ def _stepped_back(time_ns: IntArray) -> BoolArray:
     return marked
 
 
-def _chain(parts: list, kind: type) -> NDArray:
-    return parts[0] if len(parts) == 1 else np.concatenate([np.zeros(0, dtype=kind), *parts])
+def _chained(parts: list[dict[str, NDArray]]) -> dict[str, NDArray]:
+    """Join each array of the parts, taking it out of them so that memory is held once."""
+    return {name: _chain([part.pop(name) for part in parts]) for name in list(parts[0])}
+
+
+def _chain(parts: list[NDArray]) -> NDArray:
+    return parts[0] if len(parts) == 1 else np.concatenate(parts)
 
 
 def _places(header: dialect.Header, wanted: Sequence[str], layout: Layout,
@@ -191,7 +211,7 @@ def _refuse_unlike(data: dialect.Data, header: dialect.Header, instrument: Instr
     number = int(line[0])
     text = dialect.line_text(data, header, number, layout.encoding)
     if bad_line.all():
-        fields = next(csv.reader([text], delimiter=layout.delimiter), [])
+        fields = dialect.cells_of(text, layout)
         what = (f"{len(fields)} fields where the header has {len(header.columns)}"
                 if len(fields) != len(header.columns) else
                 f"bytes that are not {layout.encoding}" if "\ufffd" in text else "stray bytes")
@@ -201,7 +221,7 @@ def _refuse_unlike(data: dialect.Data, header: dialect.Header, instrument: Instr
     if (wall_ns == NO_TIME_NS).all():
         number = int(line[~bad_line][0])
         text = dialect.line_text(data, header, number, layout.encoding)
-        cell = next(csv.reader([text], delimiter=layout.delimiter, skipinitialspace=True))[time_at]
+        cell = dialect.cells_of(text, layout)[time_at]
         raise InputError(
             f"{where}, line {number}: no time of the file can be read, the first is {cell!r}; got "
             f"time.format {instrument.time.format!r}, write iso8601 or the format the logger uses")
@@ -209,24 +229,24 @@ def _refuse_unlike(data: dialect.Data, header: dialect.Header, instrument: Instr
 
 def _joined(name: str, instrument: Instrument, channels: Sequence[Channel],
             files: list[_File]) -> Records:
-    time_ns = _chain([file.time_ns for file in files], np.int64)
-    bad_line = _chain([file.bad_line for file in files], np.bool_)
+    time_ns = _chain([file.time_ns for file in files])
+    bad_line = _chain([file.bad_line for file in files])
     values: dict[str, FloatArray] = {}
     unreadable: dict[str, BoolArray] = {}
     for column in (channel.column for channel in channels):
-        values[column] = _chain([file.numbers[column].values for file in files], np.float64)
-        unreadable[column] = _chain([file.numbers[column].unreadable for file in files], np.bool_)
+        values[column] = _chain([file.numbers[column].values for file in files])
+        unreadable[column] = _chain([file.numbers[column].unreadable for file in files])
     steps = np.array([[file.step[c.column] for c in channels] for file in files])
     finest = [float(np.nanmin(column)) if np.isfinite(column).any() else float("nan")
               for column in steps.T]
     records = Records(
         logger=name, time_ns=time_ns,
         file=np.repeat(np.arange(len(files), dtype=np.int16), [len(f.line) for f in files]),
-        line=_chain([file.line for file in files], np.int32),
+        line=_chain([file.line for file in files]),
         channels=values, unreadable=unreadable,
         marks={"unreadable line": bad_line,
                "unreadable time": (time_ns == NO_TIME_NS) & ~bad_line,
-               "time stepped back": _chain([file.stepped_back for file in files], np.bool_)},
+               "time stepped back": _chain([file.stepped_back for file in files])},
         files=tuple(file.facts for file in files),
         resolution={c.column: finest[i] for i, c in enumerate(channels)},
         interval_s=instrument.interval_s or float("nan"))

@@ -16,6 +16,7 @@ from surveykit.intake.records import NO_TIME_NS
 
 NS = 1_000_000_000
 NO_OFFSET = -(2**31)
+_FIRST_NS, _END_NS = (int(np.datetime64(year, "ns").astype(np.int64)) for year in ("1700", "2200"))
 _WIDTHS = {"Y": 4, "m": 2, "d": 2, "H": 2, "M": 2, "S": 2}
 
 Offsets = NDArray[np.int32]
@@ -52,9 +53,17 @@ def read_times(column: pd.Series, form: str) -> tuple[IntArray, Offsets]:
     if zone is not None:
         offsets[:] = int(zone.utcoffset(None).total_seconds())
         column = column.dt.tz_localize(None)
-    wall = column.to_numpy(dtype="datetime64[ns]").view(np.int64)
+    wall = _in_ns(column)
     offsets[wall == NO_TIME_NS] = NO_OFFSET
     return wall, offsets
+
+
+def _in_ns(column: pd.Series) -> IntArray:
+    """Return datetime64 of any unit in ns; no time outside the years 1700 to 2199."""
+    scale = {"s": NS, "ms": 1_000_000, "us": 1000, "ns": 1}[column.dt.unit]
+    values = column.to_numpy().view(np.int64)
+    inside = (values >= _FIRST_NS // scale) & (values < _END_NS // scale)
+    return values * scale if inside.all() else np.where(inside, values * scale, NO_TIME_NS)
 
 
 def _iso(texts: NDArray[np.object_]) -> pd.Series:
@@ -80,7 +89,7 @@ def _one_by_one(texts: NDArray[np.object_], read: Callable[[str], datetime]
         offset = time.utcoffset()
         if offset is not None:
             offsets[i] = int(offset.total_seconds())
-        wall[i] = np.datetime64(time.replace(tzinfo=None), "ns").astype(np.int64)
+        wall[i] = _in_ns(pd.Series([time.replace(tzinfo=None)], dtype="datetime64[us]"))[0]
     return wall, offsets
 
 
@@ -93,7 +102,7 @@ def _formatted(texts: NDArray[np.object_], form: str) -> tuple[IntArray, Offsets
     if rest.any():
         stripped = np.array([str(text).strip() for text in texts[rest]], dtype=object)
         times = pd.to_datetime(pd.Series(stripped, dtype=object), format=form, errors="coerce")
-        wall[rest] = times.to_numpy(dtype="datetime64[ns]").view(np.int64)
+        wall[rest] = _in_ns(times)
     return wall, offsets
 
 
@@ -140,8 +149,8 @@ def _sliced(texts: NDArray[np.object_], form: str) -> IntArray:
     first = months.astype("datetime64[D]").astype(np.int64)
     following = (months + 1).astype("datetime64[D]").astype(np.int64)
     good &= (part["d"] >= 1) & (part["d"] <= following - first)
-    good &= (part["Y"] >= 1700) & (part["Y"] < 2200)
     seconds = (first + part["d"] - 1) * 86400 + part["H"] * 3600 + part["M"] * 60 + part["S"]
+    good &= (seconds >= _FIRST_NS // NS) & (seconds < _END_NS // NS)
     wall[good] = (seconds * NS + fraction)[good]
     return wall
 

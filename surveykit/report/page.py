@@ -172,13 +172,13 @@ def _summary(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> li
         ("narrowing", "What would narrow the uncertainty most", [bullets(
             sentences.narrowing(tables["budget"], labels),
             empty="No uncertainty budget could be drawn up.")]),
+        ("cautions", "Cautions", [bullets(sentences.cautions(surfaces, labels))]),
         ("not-corrected", "What is not corrected yet", [bullets(
             [*facts.get("not_corrected", [])],
             empty="This run names no correction as missing.")]),
-        ("cautions", "Cautions", [bullets(sentences.cautions(surfaces, labels))]),
     ]
     if facts.get("notes"):
-        sections.insert(-1, ("notes", "Notes on this run", [bullets([*facts["notes"]])]))
+        sections.append(("notes", "Notes on this run", [bullets([*facts["notes"]])]))
     return [{"id": anchor, "heading": heading, "body": body} for anchor, heading, body in sections]
 
 

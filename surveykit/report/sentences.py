@@ -127,14 +127,16 @@ def change_sentence(row: Any, facts: Facts) -> str:
     size, small = _size(row, "change"), _relevant(row["quantity"], facts)
     within = f"±{small}" if small else "the relevant change"
     small = small or "change"
-    sure = f" (conditions {row['comparability']})" if row["comparability"] else ""
+    sure = (f" (conditions {row['comparability']}{_because(row['note'])})"
+            if row["comparability"] else "")
+    if row["verdict"] == "no difference shown":
+        return f"{surface}: no difference of {what} from {since} is shown{_missed(row)}{sure}."
     verb = {
         "higher": f"is higher by {size} {against}{sure}",
         "lower": f"is lower by {size} {against}{sure}",
         "higher, small": f"is higher by {size} {against}, less than the relevant {small}{sure}",
         "lower, small": f"is lower by {size} {against}, less than the relevant {small}{sure}",
-        "equivalent": f"is equivalent within {within} to {since}{sure}",
-        "no difference shown": f"shows no difference from {since}{_missed(row)}{sure}",
+        "equivalent": f"is equivalent to {since} within {within}{sure}",
         "not comparable": f"is not comparable with {since}{_because(row['note'])}",
         "not evaluated": f"was not evaluated against {since}{_because(row['note'])}",
     }.get(row["verdict"], "")

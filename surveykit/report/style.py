@@ -23,7 +23,7 @@ from matplotlib.layout_engine import ConstrainedLayoutEngine
 from .markup import paragraph
 
 WIDTH_IN, DPI = 4.7, 180
-PAPER, INK, MUTED, HAIRLINE = "#fdfcf9", "#1f1e1b", "#5d5a53", "#d9d5ca"
+PAPER, INK, MUTED, HAIRLINE = "#ffffff", "#1f1e1b", "#5d5a53", "#d9d5ca"
 _COLOURS = sns.color_palette("colorblind").as_hex()
 PALETTE = tuple(_COLOURS[i] for i in (0, 3, 2, 4, 5, 1, 9, 7))  # strongest on paper first
 MARKERS = ("o", "s", "D", "^", "v", "P", "X", "*")

@@ -116,12 +116,11 @@ def change_table(changes: pd.DataFrame, labels: Labels = None) -> Html:
         for (quantity, kind), block in w.families(changes[changes["earlier"] == earlier]):
             values = _values(block, "change", sign=True)
             groups.append((f"{_heading(quantity, kind, block)}, since {earlier}", [
-                [w.label(row["surface"], labels), values[index],
-                 _word(row["verdict"] or "not judged", row["note"], quiet=not row["verdict"]),
-                 row["comparability"], _method(row["method"], w.label(row["control"], labels))]
+                [w.label(row["surface"], labels), values[index], *_judged(row),
+                 _method(row["method"], w.label(row["control"], labels))]
                 for index, row in block.iterrows()]))
     heads = [Column("Surface"), _with_u("Change"),
-             Column("Verdict", "long"), Column("Conditions"), Column("Method")]
+             Column("Verdict", "long"), Column("Conditions", "long"), Column("Method")]
     return grouped_table(f"Changes since earlier campaigns, {_coverage(changes)}.", heads, groups,
                          empty="No earlier campaign was named, so no change was looked for.")
 
@@ -180,6 +179,18 @@ def _with_u(name: str) -> Column:
     return Column(f"{name} ± U".replace(" ", w.NO_BREAK), "number")
 
 
+def _judged(row: pd.Series) -> tuple[Cell, str]:
+    """Verdict and conditions; the note says why there is no verdict, else how conditions differ."""
+    verdict, note, conditions = row["verdict"], row["note"], row["comparability"]
+    if verdict in ("not evaluated", "not comparable"):
+        return Cell(f"{verdict}: {note}" if note else verdict), conditions
+    missed = w.expanded(row["could_have_missed"], w.places(row["quantity"]))
+    if verdict == "no difference shown" and missed:
+        verdict = f"{verdict} (could have missed up to {missed})"
+    return (Cell(verdict or "not judged", quiet=not verdict),
+            ": ".join(filter(None, (conditions, note))))
+
+
 def _method(method: str, control: str) -> str:
     if not control:
         return method
@@ -193,8 +204,8 @@ def _heading(quantity: str, kind: str, block: pd.DataFrame, degrees: str = "degC
     return w.quantity_text(quantity, kind) + (f", {written}" if written else "")
 
 
-def _word(word: str, why: str, *, quiet: bool = False) -> Cell:
-    return Cell(("; " if word == "ok" else ": ").join(filter(None, (word, why))), quiet=quiet)
+def _word(word: str, why: str) -> str:
+    return ("; " if word == "ok" else ": ").join(filter(None, (word, why)))
 
 
 def _letter(n: int) -> str:

@@ -33,6 +33,22 @@ KIT = {"thermal": THERMAL, "shortwave": SHORTWAVE,
        "rednir-sky": pair("red_down", "nir_down"), "rednir-ground": pair("red_up", "nir_up")}
 
 
+COLUMNS = ("entry,surface,patch,quantity,mode,instrument,start,stop,height_cm,width_m,length_m,"
+           "lanes,reading,reading_u,note").split(",")
+PASS = {"entry": "pass", "surface": "asphalt", "patch": "A1", "quantity": "temperature",
+        "mode": "contact", "start": "12:00:00", "stop": "12:05:00"}
+ALBEDO = {**PASS, "quantity": "albedo", "mode": "", "height_cm": "12", "width_m": "4",
+          "length_m": "5", "lanes": "4"}
+WEATHER = {"entry": "weather", "quantity": "air_temperature", "start": "12:00:00",
+           "reading": "31.5"}
+
+# a thermal log of three records
+CLEAN = ("time,target,body\n"
+         "2025-07-24T11:00:00,40.25,30.0\n"
+         "2025-07-24T11:00:01,40.50,30.1\n"
+         "2025-07-24T11:00:02,40.75,30.2\n")
+
+
 def instrument(entry: dict[str, Any] = THERMAL, **changed: Any) -> Instrument:
     return Instrument.model_validate({**entry, **changed})
 
@@ -58,3 +74,9 @@ def write(folder: Path, name: str, text: str | bytes) -> Path:
     path = folder / name
     path.write_bytes(text if isinstance(text, bytes) else text.encode())
     return path
+
+
+def text_of(*rows: dict[str, str], delimiter: str = ",", columns: list[str] = COLUMNS) -> str:
+    lines = [columns, *([row.get(name, "") for name in columns] for row in rows)]
+    return "".join(delimiter.join(f'"{cell}"' if delimiter in cell else cell for cell in cells)
+                   + "\n" for cells in lines)

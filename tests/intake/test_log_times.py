@@ -11,6 +11,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from invented import THERMAL, instrument, write
 from numpy.testing import assert_array_equal
+
 from surveykit.core import InputError
 from surveykit.intake.loggers import read_logger
 from surveykit.intake.times import NO_OFFSET, NO_TIME_NS, read_times
@@ -71,7 +72,8 @@ def test_format_with_offsets_agrees_with_strptime(tmp_path):
     form = "%d.%m.%Y %H:%M:%S %z"
     texts = ["24.07.2025 12:00:00 +0100", "24.12.2025 12:00:00 +0000"]
     records = read(tmp_path, texts, "Europe/Lisbon", form)
-    assert_array_equal(records.time_ns, [ns(datetime.strptime(text, form)) for text in texts])
+    assert_array_equal(records.time_ns, [
+        ns(datetime.strptime(text, form)) for text in texts])  # noqa: DTZ007 - form has %z
 
 
 # ---- zones. European Union: clocks go forward at 01:00 UTC on the last Sunday of March, back at
@@ -114,3 +116,15 @@ def test_some_lines_with_an_offset_some_without(tmp_path):
                    "Europe/Lisbon")
     assert_array_equal(np.diff(records.time_ns[:2]), [10**9])
     assert records.marks["unreadable time"].sum() == 1
+
+
+@pytest.mark.parametrize(("form", "good", "far"), [
+    ("iso8601", "2025-07-24T12:00:00", "0001-01-01T00:00:00"),
+    ("iso8601", "2025-07-24T12:00:00", "2925-07-24T12:00:00"),
+    ("iso8601", "2025-07-24T12:00:00+01:00", "2925-07-24T12:00:00"),
+    ("%d.%m.%Y %H:%M", "24.07.2025 12:00", "24.07.2925 12:00"),
+    ("%d/%m/%Y %H:%M:%S", "24/07/2025 12:00:00", "24/07/0925 12:00:00"),
+    ("%d-%b-%Y %H:%M:%S", "24-Jul-2025 12:00:00", "24-Jul-2925 12:00:00")])
+def test_a_year_that_cannot_be_meant_is_no_time(tmp_path, form, good, far):
+    records = read(tmp_path, [good, far], "Europe/Lisbon", form)
+    assert_array_equal(records.time_ns, [ns(datetime(2025, 7, 24, 11, tzinfo=UTC)), NO_TIME_NS])

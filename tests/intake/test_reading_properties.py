@@ -11,6 +11,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from invented import THERMAL, instrument, write
 from numpy.testing import assert_allclose, assert_array_equal
+
 from surveykit.intake import dialect
 from surveykit.intake.loggers import Records, read_logger
 

@@ -10,6 +10,7 @@ import pandas as pd
 import pytest
 from invented import THERMAL, instrument
 from numpy.testing import assert_allclose, assert_array_equal
+
 from surveykit.intake.loggers import read_logger
 
 ROWS = 300_000

@@ -23,7 +23,8 @@ shortwave:
   serial: S-02
   time: {column: time, format: "%d/%m/%Y %H:%M:%S", zone: Europe/Lisbon}
   columns:
-    sky_mV: {quantity: shortwave_down, unit: mV, gain: 10.4, offset: 0.0, u_gain: 0.015, u_offset: 3}
+    sky_mV:
+      {quantity: shortwave_down, unit: mV, gain: 10.4, offset: 0.0, u_gain: 0.015, u_offset: 3}
     ground_mV: {quantity: shortwave_up, unit: mV, gain: {value: 10.1, u: 0.15}, offset: 0.0}
   calibration: {id: shortwave-2025-01, date: "2025-01-20", valid_days: 730}
   head_radius_cm: 1.2

@@ -36,7 +36,7 @@ VALUES: list[tuple[str, str, str, float, float, str, str, int, int]] = [
     ("planting-bed", "temperature", "stand-off", 36.48, NAN, "value only", "one pass", 1, 1),
     ("worn-asphalt", "albedo", "clear", 0.1023, 0.0071, "ok", "", 2, 4),
     ("coated-court", "albedo", "clear", 0.2871, 0.0118, "ok", "", 2, 4),
-    ("pale-slabs", "albedo", "clear", 0.3012, 0.0125, "qualified", "sun low: zenith 47°", 1, 2),
+    ("pale-slabs", "albedo", "clear", 0.3012, 0.0125, "qualified", "sun at 47° from the zenith", 1, 2),
     ("lawn", "albedo", "clear", 0.2213, 0.0194, "ok", "", 2, 3),
     ("planting-bed", "albedo", "clear", NAN, NAN, "not evaluated",
      "width_m of the patch is missing", 1, 1),
@@ -262,7 +262,8 @@ def _differences(surfaces: list[dict[str, Any]]) -> list[dict[str, Any]]:
         expanded = 0.8 * math.hypot(one["upper"] - one["value"], other["upper"] - other["value"])
         limit = relevant[one["quantity"]]
         if math.isnan(d):
-            verdict, note = "not evaluated", one["note"] or other["note"]
+            gone = one if math.isnan(one["value"]) else other
+            verdict, note = "not evaluated", gone["note"]
         elif math.isnan(expanded):
             verdict, note = "not evaluated", "one pass"
         elif abs(d) <= expanded:

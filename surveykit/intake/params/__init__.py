@@ -2,7 +2,9 @@
 
 from surveykit.intake.params.amounts import Amount, Uncertain
 from surveykit.intake.params.campaign import Campaign, Parameters
-from surveykit.intake.params.instruments import Calibration, Channel, Instrument
+from surveykit.intake.params.channels import Channel
+from surveykit.intake.params.heads import Calibration
+from surveykit.intake.params.instruments import Instrument
 from surveykit.intake.params.loading import (
     is_kit,
     is_kit_file,

@@ -11,7 +11,6 @@ from pydantic import Discriminator, Field, Tag
 
 from surveykit.intake.params.base import (
     DATE_WRITE,
-    NAME_WRITE,
     TEXT_WRITE,
     DateText,
     Name,
@@ -19,7 +18,8 @@ from surveykit.intake.params.base import (
     Text,
     key,
 )
-from surveykit.intake.params.instruments import Channel, Instrument
+from surveykit.intake.params.channels import Channel
+from surveykit.intake.params.instruments import Instrument
 from surveykit.intake.params.sections import (
     Comparison,
     Conditions,
@@ -139,6 +139,3 @@ class Parameters:
             If the kit has no such logger.
         """
         return self.kit[logger].channels(logger, self.settings)
-
-
-__all__ = ["CAMPAIGN_PATTERN", "NAME_WRITE", "Campaign", "Kit", "Parameters"]

@@ -3,18 +3,16 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import TYPE_CHECKING, Any
+from typing import Any
 
 import numpy as np
 from numpy.typing import ArrayLike
 
 from surveykit.core import FloatArray
 from surveykit.intake.params.amounts import Amount, Uncertain
+from surveykit.intake.params.heads import Bands, Calibration, Column, Head
 from surveykit.intake.params.quantities import DEFAULT_U, PHYSICAL_UNITS
 from surveykit.intake.params.settings import Settings
-
-if TYPE_CHECKING:
-    from surveykit.intake.params.instruments import Bands, Calibration, Instrument
 
 
 @dataclass(frozen=True)
@@ -52,10 +50,12 @@ class Channel:
         return self.offset.value + self.gain.value * np.asarray(reading, dtype=np.float64)
 
 
-def channel(name: str, header: str, entry: Instrument, settings: Settings) -> Channel:
-    """Return one column of the entry `name`; what it does not state itself, the entry states."""
-    column = entry.columns[header]
+def channel(name: str, header: str, column: Column, entry: Head, owner: str,
+            settings: Settings) -> Channel:
+    """Return one column of the logger `name`; what it does not state itself, its entry states.
 
+    `owner` is whom its errors belong to where it has no calibration.
+    """
     def stated(field: str) -> Any:
         own = getattr(column, field)
         return getattr(entry, field) if own is None else own
@@ -73,7 +73,7 @@ def channel(name: str, header: str, entry: Instrument, settings: Settings) -> Ch
     u_gain, u_offset = u_gain or 0.0, (u_offset or 0.0) * scale
     gain_si = gain.value * scale
     calibration = stated("calibration")
-    owner = calibration.id if calibration else entry.serial or name
+    owner = calibration.id if calibration else owner
     radius = stated("head_radius_cm")
     bore = stated("bore_emissivity") or Uncertain(
         value=settings.temperature.bore_emissivity, u=settings.temperature.bore_emissivity_u)

@@ -8,7 +8,8 @@ from pathlib import Path
 from typing import Any
 
 from surveykit.intake.params.base import Fault, Loc
-from surveykit.intake.params.instruments import Calibration, Instrument
+from surveykit.intake.params.heads import Calibration
+from surveykit.intake.params.instruments import Instrument
 from surveykit.intake.params.paths import path_fault
 from surveykit.intake.params.sections import Comparison, LoggerUse, Surface
 from surveykit.intake.params.settings import Settings

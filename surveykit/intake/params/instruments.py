@@ -2,29 +2,18 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Iterator
-from datetime import UTC, date, datetime, timedelta
+from datetime import UTC, datetime
 from typing import Annotated, Any, Literal
 from zoneinfo import ZoneInfo
 
 from pydantic import Field, field_validator
 
-from surveykit.intake.params.amounts import Amount, BareNumber, Uncertain, given_once, u_field
-from surveykit.intake.params.base import (
-    DATE_WRITE,
-    TEXT_WRITE,
-    DateText,
-    Fault,
-    Strict,
-    Text,
-    fault,
-    key,
-    number_words,
-)
+from surveykit.intake.params.base import TEXT_WRITE, Fault, Strict, Text, fault, key, number_words
 from surveykit.intake.params.channels import Channel, channel
-from surveykit.intake.params.quantities import MAIN, PHYSICAL_UNITS, RAW_UNITS, Quantity, Unit
-from surveykit.intake.params.settings import Pair, Settings
+from surveykit.intake.params.heads import Column, Head
+from surveykit.intake.params.quantities import MAIN
+from surveykit.intake.params.settings import Settings
 
 
 def zone_fault(zone: str) -> str | None:
@@ -102,117 +91,6 @@ def _holds_a_moment(form: str) -> bool:
     return back.replace(tzinfo=UTC) == moment
 
 
-class Calibration(Strict):
-    """The calibration a gain and an offset come from."""
-
-    id: Text = key("Its name; equal ids share one error.", write=TEXT_WRITE)
-    date: DateText = key("Its date.", write=DATE_WRITE)
-    valid_days: int | None = key("Days it holds; absent: it does not expire.", default=None, gt=0,
-                                 write=number_words("days", whole=True, gt=0))
-
-    def expired_on(self, day: str) -> bool:
-        """Return whether it had run out by `day` ("YYYY-MM-DD")."""
-        if self.valid_days is None:
-            return False
-        limit = date.fromisoformat(self.date) + timedelta(days=min(self.valid_days, 36500))
-        return date.fromisoformat(day) > limit
-
-
-class Bands(Strict):
-    """One number for each of the two bands."""
-
-    red: float = key("Red band.", gt=0, le=5000, write=number_words("nm", gt=0, le=5000))
-    nir: float = key("Near-infrared band.", gt=0, le=5000,
-                     write=number_words("nm", gt=0, le=5000))
-
-
-class Head(Strict):
-    """What may stand in the entry, for all its columns, or in one column, for that one."""
-
-    RESERVED = dict.fromkeys(
-        ("class_terms", "spectrally_flat", "rod_width_cm", "band_ratio"),
-        "reserved for later work; leave it out")
-
-    calibration: Calibration | None = key(
-        "Calibration of the channel.", default=None, write="{id, date, valid_days}")
-    band_um: Pair | None = key("Thermal band [um].", default=None,
-                               write="[low, high] in um, such as [8, 14]")
-    half_angle_deg: float | None = key(
-        "Half of the field of view; 90 for a hemisphere.", default=None, gt=0, le=90,
-        write=number_words("deg", gt=0, le=90))
-    time_constant_s: float | None = key(
-        "Time constant (63 %).", default=None, ge=0, le=3600,
-        write=number_words("s", ge=0, le=3600))
-    t95_s: float | None = key("Time to 95 %, in place of time_constant_s.", default=None, ge=0,
-                              le=3600, write=number_words("s", ge=0, le=3600))
-    head_radius_cm: float | None = key("Radius of the head.", default=None, gt=0, le=100,
-                                       write=number_words("cm", gt=0, le=100))
-    bore_emissivity: Annotated[Uncertain, BareNumber(
-        "temperature.bore_emissivity_u", 0.01, 1.0, number_words("", ge=0.01, le=1))] | None = key(
-        "Emissivity of the bore of an infrared head.", default=None,
-        write="a number from 0.01 to 1, or {value, u}")
-    band_centres_nm: Bands | None = key("Centres of the red and near-infrared bands [nm].",
-                                        default=None, write="{red, nir} in nm")
-    band_widths_nm: Bands | None = key("Widths of the red and near-infrared bands [nm].",
-                                       default=None, write="{red, nir} in nm")
-
-    def faults(self) -> Iterator[Fault]:
-        """time_constant_s or t95_s; a band from low to high."""
-        if self.time_constant_s is not None and self.t95_s is not None:
-            yield ("t95_s",), f"got {self.t95_s:g} beside time_constant_s; write one of the two"
-        if self.band_um and not 0.1 <= self.band_um[0] < self.band_um[1] <= 100:
-            yield ("band_um",), f"got {list(self.band_um)}; write [low, high] in um, " \
-                                "such as [8, 14]"
-
-    @property
-    def tau_s(self) -> float | None:
-        """Time constant [s], from t95 where that is given (t95 = tau ln 20); None if unstated."""
-        return self.t95_s / math.log(20) if self.t95_s is not None else self.time_constant_s
-
-
-class Column(Head):
-    """One column: value = offset + gain * reading, in the quantity's physical unit."""
-
-    quantity: Quantity = key("What the column holds.", write="one of " + ", ".join(PHYSICAL_UNITS))
-    unit: Unit = key("Unit as logged.", write="one of degC, K, W m-2, mV, uV, count, 1, %, hPa, "
-                     "kPa, Pa, m s-1 (1 and % in quotes)")
-    gain: Annotated[Amount, BareNumber()] | None = key(
-        "Physical unit for one of the logged unit.", default=None,
-        write="a number, or {value, u}")
-    offset: Annotated[Amount, BareNumber()] | None = key(
-        "Physical unit; added after the gain.", default=None, write="a number, or {value, u}")
-    u_gain: float | None = u_field("1", "Relative standard uncertainty of the gain.")
-    u_offset: float | None = u_field("", "Standard uncertainty of the offset, physical unit.")
-    emissivity_setting: float | None = key(
-        "Emissivity set in the infrared logger.", default=None, gt=0, le=1,
-        write=number_words("", gt=0, le=1))
-
-    def faults(self) -> Iterator[Fault]:
-        """Unit, gain, offset and u must fit the quantity."""
-        yield from super().faults()
-        yield from given_once("gain", self.gain, "u_gain", self.u_gain)
-        yield from given_once("offset", self.offset, "u_offset", self.u_offset)
-        units = PHYSICAL_UNITS[self.quantity]
-        if self.unit in RAW_UNITS:
-            for name in ("gain", "offset"):
-                if getattr(self, name) is None:
-                    yield (name,), f"missing; a column in {self.unit} needs gain and offset: " \
-                                   f"value = offset + gain * reading, in {next(iter(units))}"
-        elif self.unit not in units:
-            yield ("unit",), f"got {self.unit!r} for {self.quantity}; write one of " \
-                             + ", ".join([*units, *RAW_UNITS])
-        if self.gain is not None and self.gain.value == 0:
-            yield ("gain",), "got 0; write a gain other than 0"
-        stated = (self.u_gain, self.u_offset, self.gain and self.gain.u,
-                  self.offset and self.offset.u)
-        if self.quantity in MAIN and all(u is None for u in stated):
-            yield (), f"a column of {self.quantity} must state u_gain or u_offset " \
-                      "(0 is allowed, silence is not)"
-        if self.emissivity_setting is not None and self.quantity != "brightness_temperature":
-            yield ("emissivity_setting",), f"got {self.emissivity_setting:g} in a column of " \
-                f"{self.quantity}; only a brightness_temperature column has one: leave it out"
-
-
 class Instrument(Head):
     """One logger: one clock, one layout, one or more heads."""
 
@@ -245,4 +123,6 @@ class Instrument(Head):
 
     def channels(self, name: str, settings: Settings | None = None) -> tuple[Channel, ...]:
         """Return the channels of this entry, `name` in the kit, in the order of its columns."""
-        return tuple(channel(name, header, self, settings or Settings()) for header in self.columns)
+        return tuple(
+            channel(name, header, column, self, self.serial or name, settings or Settings())
+            for header, column in self.columns.items())

@@ -7,7 +7,7 @@ from datetime import UTC, datetime
 from typing import Annotated, Any, Literal
 from zoneinfo import ZoneInfo
 
-from pydantic import AfterValidator, Field, field_validator
+from pydantic import AfterValidator, BeforeValidator, Field
 
 from surveykit.intake.params.amounts import (
     Amount,
@@ -172,19 +172,20 @@ class Watch(Strict):
         return Uncertain(value=self.offset_s.value, u=u)
 
 
+def _one_or_more(data: Any) -> Any:
+    return data if isinstance(data, list | tuple) else [data]
+
+
 class LoggerUse(Strict):
     """One logger's files and clock on this day."""
 
-    files: Annotated[tuple[Text, ...], Field(strict=False, min_length=1)] = key(
+    files: Annotated[
+        tuple[Text, ...], Field(strict=False, min_length=1),
+        BeforeValidator(_one_or_more, json_schema_input_type=Text | list[Text])] = key(
         "Its files in data_folder; * and ? stand for any text.",
         write='a file name or a pattern such as "thermal*.csv", or a list of them')
     clock: Clock | None = key("Its clock; absent: not checked.", default=None,
                               write="{offset_s, u_s}")
-
-    @field_validator("files", mode="before")
-    @classmethod
-    def _one_or_more(cls, data: Any) -> Any:
-        return data if isinstance(data, list | tuple) else [data]
 
 
 class Emissivity(Strict):

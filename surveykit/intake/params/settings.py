@@ -69,7 +69,7 @@ class QualitySettings(Strict):
     clear_index_min: float = setting(
         0.80, "1", "Irradiance over clear-sky irradiance from which the sky is clear.", ge=0)
     overcast_index_max: float = setting(
-        0.50, "1", "Irradiance over clear-sky irradiance up to which it is overcast.", ge=0)
+        0.55, "1", "Irradiance over clear-sky irradiance up to which it is overcast.", ge=0)
     steady_max: float = setting(
         0.05, "1", "Largest relative standard deviation of a steady irradiance.", gt=0)
 

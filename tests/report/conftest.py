@@ -1,0 +1,85 @@
+"""Pages built once for the report's tests: two small notebooks, executed, on invented tables."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import nbformat
+import pytest
+import sample
+from nbclient import NotebookClient
+
+from surveykit.report.page import build_page
+
+HERE = Path(__file__).parent
+SETUP = """import sys; sys.path.insert(0, {here!r})
+import sample
+from surveykit.report import figures, tables
+t, facts = sample.tables(hostile={hostile}), sample.facts(hostile={hostile})
+labels, zone = facts["surfaces"], facts["time_zone"]"""
+FIRST = """tables.show(tables.clock_table(t["clocks"]))
+figures.show(figures.day_timeline(t["passes"], sample.sky(), sample.weather(), zone, labels))
+tables.show(tables.pass_table(t["passes"], labels, zone))
+figures.show(figures.ledger_plot(t["ledger"]))
+tables.show(tables.ledger_table(t["ledger"]))
+tables.show(tables.check_table(t["checks"], labels))
+print("<b>3</b> loggers & their files")"""
+SECOND = """figures.show(figures.interval_plots(t["surfaces"], labels))
+tables.show(tables.surface_table(t["surfaces"], labels))
+figures.show(figures.budget_plots(t["budget"], labels))
+tables.show(tables.budget_table(t["budget"], labels))
+figures.show(figures.difference_matrices(t["differences"], labels))
+tables.show(tables.difference_table(t["differences"], labels))
+figures.show(figures.change_plots(t["changes"], facts["relevant_change"], labels))
+tables.show(tables.change_table(t["changes"], labels))
+tables.show(t["corrections"], "Correction steps", ["pass", "step", "value"])"""
+
+
+def notebook(title: str, *cells: str) -> nbformat.NotebookNode:
+    """Return an unexecuted notebook: headings that jump and repeat, a skipped cell, `cells`."""
+    v4 = nbformat.v4
+    book = v4.new_notebook()
+    book.cells = [v4.new_markdown_cell(f"# {title}\n\nWhat this step asks."),
+                  v4.new_markdown_cell("## How to read this\n\nFirst *words*, then the figure.")]
+    book.cells += [v4.new_code_cell(cell) for cell in cells]
+    skipped = v4.new_code_cell('print("not for the page")')
+    skipped.metadata.tags = ["page-skip"]
+    book.cells += [v4.new_markdown_cell("#### A jump\n\n## How to read this\n\nAgain."), skipped]
+    return book
+
+
+def executed(hostile: bool) -> list[nbformat.NotebookNode]:
+    setup = SETUP.format(here=str(HERE), hostile=hostile)
+    books = [notebook("From files to passes", setup, FIRST),
+             notebook("Surfaces, differences & changes", setup, SECOND)]
+    for book in books:
+        NotebookClient(book, kernel_name="python3", timeout=120).execute()
+    return books
+
+
+@pytest.fixture(scope="session")
+def books() -> list[nbformat.NotebookNode]:
+    return executed(hostile=False)
+
+
+@pytest.fixture(scope="session")
+def page(books: list[nbformat.NotebookNode]) -> str:
+    return build_page(books, sample.tables(), sample.facts())
+
+
+@pytest.fixture(scope="session")
+def hostile_page() -> str:
+    return build_page(executed(hostile=True), sample.tables(hostile=True),
+                      sample.facts(hostile=True))
+
+
+@pytest.fixture(scope="session", params=["empty", "bare"])
+def sparse_page(request: pytest.FixtureRequest) -> str:
+    """Return the page of a campaign with nothing, or with one surface that was refused."""
+    tables = sample.empty_tables() if request.param == "empty" else sample.bare_tables()
+    facts = sample.facts()
+    for key in ("conditions", "earlier", "notes", "not_corrected", "instruments", "settings",
+                "inputs", "versions"):
+        del facts[key]
+    facts["control"] = None
+    return build_page([], tables, facts)

@@ -1,0 +1,150 @@
+"""Tables: strict HTML, scope and caption, escaping, rounding; a sentence where rows are absent."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+
+import html5lib
+import pandas as pd
+import pytest
+import sample
+from bs4 import BeautifulSoup
+
+from surveykit.report import tables as t
+from surveykit.report.markup import Html
+from surveykit.report.wording import NO_BREAK
+
+BUILDERS: dict[str, Callable[[dict[str, pd.DataFrame], dict], Html]] = {
+    "overview": lambda d, f: t.surface_overview(d["surfaces"], f["surfaces"]),
+    "surfaces": lambda d, f: t.surface_table(d["surfaces"], f["surfaces"]),
+    "passes": lambda d, f: t.pass_table(d["passes"], f["surfaces"], "Europe/Lisbon"),
+    "differences": lambda d, f: t.difference_table(d["differences"], f["surfaces"]),
+    "changes": lambda d, f: t.change_table(d["changes"], f["surfaces"]),
+    "budget": lambda d, f: t.budget_table(d["budget"], f["surfaces"]),
+    "checks": lambda d, f: t.check_table(d["checks"], f["surfaces"]),
+    "ledger": lambda d, f: t.ledger_table(d["ledger"]),
+    "clocks": lambda d, f: t.clock_table(d["clocks"]),
+    "any frame": lambda d, f: t.frame_table(d["dwells"], "Dwells"),
+}
+
+
+def soup(html: Html) -> BeautifulSoup:
+    document = f"<!DOCTYPE html><html><head><title>t</title></head><body>{html.html}</body></html>"
+    html5lib.HTMLParser(strict=True).parse(document)
+    return BeautifulSoup(document, "html5lib")
+
+
+def cells(html: Html) -> list[list[str]]:
+    return [[cell.get_text().replace(NO_BREAK, " ") for cell in row.find_all(["th", "td"])]
+            for row in soup(html).find_all("tr")]
+
+
+@pytest.mark.parametrize("name", BUILDERS)
+def test_a_table_is_valid_scoped_and_captioned(name: str) -> None:
+    page = soup(BUILDERS[name](sample.tables(), sample.facts()))
+    assert len(page.find_all("table")) == 1
+    assert page.caption.get_text(strip=True)
+    assert all(th.get("scope") in {"col", "row", "rowgroup"} for th in page.find_all("th"))
+    assert page.find("div", class_="table")["tabindex"] == "0"
+    assert not page.find_all(id=True)
+    width = len(page.thead.find_all("th"))
+    for row in page.tbody.find_all("tr"):
+        assert sum(int(c.get("colspan", 1)) for c in row.find_all(["th", "td"])) == width
+    assert "nan" not in page.get_text().lower().split()
+
+
+@pytest.mark.parametrize("name", BUILDERS)
+def test_a_table_without_rows_is_a_sentence(name: str) -> None:
+    page = soup(BUILDERS[name](sample.empty_tables(), sample.facts()))
+    assert page.find("table") is None
+    assert page.p.get_text().endswith(".")
+    assert len(page.p.get_text().split()) >= 2
+
+
+@pytest.mark.parametrize("name", ["overview", "passes", "checks", "changes", "differences"])
+def test_markup_in_labels_and_notes_comes_out_as_text(name: str) -> None:
+    html = BUILDERS[name](sample.tables(hostile=True), sample.facts(hostile=True))
+    page = soup(html)
+    assert not page.find_all(["script", "b", "i", "a"])
+    if name != "checks":
+        assert "<b>Lawn</b> {{ 7*7 }} & $x_1$ \"q\"" in page.get_text()
+    else:
+        assert "</td><script>alert(2)</script> & {{ config }}" in page.get_text()
+
+
+def test_overview_shows_value_and_u_and_says_why_not() -> None:
+    rows = {row[0]: row[1:] for row in cells(BUILDERS["overview"](sample.tables(), sample.facts()))}
+    assert rows["Surface"] == ["Temperature, contact, °C", "Temperature, stand-off, °C",
+                               "Albedo, clear", "NDVI"]
+    assert rows["Worn asphalt"] == ["58.3 ± 1.2", "57.6 ± 1.7", "0.102 ± 0.007", "0.031 ± 0.010"]
+    assert rows["Lawn"][0] == "not evaluatedc"  # the note's letter is set raised
+    assert rows["Planting bed"][:2] == ["not surveyed", "36.5e"]
+    notes = [li.get_text() for li in soup(
+        BUILDERS["overview"](sample.tables(), sample.facts())).find_all("li")]
+    assert "c No contact dwell settled for 3 s." in notes
+    assert "e One pass; no interval; standard uncertainty at least 0.4 K." in [
+        note.replace(NO_BREAK, " ") for note in notes]
+
+
+def test_interval_with_unequal_arms_prints_both_ends() -> None:
+    frame = sample.tables()["surfaces"].iloc[[0]].assign(lower=57.0, upper=61.0)
+    assert cells(t.surface_table(frame))[2][1] == "58.3 (57.0 to 61.0)"
+
+
+def test_times_are_those_of_the_named_zone() -> None:
+    # 10:05 UTC on a July day is 11:05 in Lisbon (IANA time zone database, summer time UTC+1)
+    rows = cells(BUILDERS["passes"](sample.tables(), sample.facts()))
+    assert rows[2][:4] == ["W1-contact-1", "Worn asphalt", "11:05:00", "11:08:05"]
+
+
+def test_ledger_shares_are_of_each_loggers_total() -> None:
+    rows = cells(BUILDERS["ledger"](sample.tables(), sample.facts()))
+    heads = [row[0].replace("\u202f", " ") for row in rows if len(row) == 1]
+    # hand sums: 930 + 3 + 1227; 6720 + 655 + 14225; 8420 + 2311 + 12 + 10857
+    assert heads == ["rednir, 2 160 records", "shortwave, 21 600 records",
+                     "thermal, 21 600 records"]
+    assert ["used", "", "930", "43 %"] in rows  # 930 / 2160 = 0.4306
+    assert ["excluded", "unreadable line", "3", "< 1 %"] in rows
+
+
+def test_checks_come_most_severe_first() -> None:
+    rows = cells(BUILDERS["checks"](sample.tables(), sample.facts()))
+    assert [row[1] for row in rows[1:]] == ["refuse", "exclude", "flag", "note"]
+    assert rows[1][4] == "The sun stood 72° from the zenith, beyond 70°."
+
+
+def test_settings_say_what_is_yours_and_split_maps() -> None:
+    rows = cells(t.settings_table(sample.facts()["settings"]))
+    assert ["zenith_max_deg", "65", "°", "yours", "parameter file"] in rows
+    assert ["ranges.temperature_k", "233.15, 393.15", "", "engineering default", ""] in rows
+    assert t.settings_table([]).html.startswith("<p")
+
+
+def test_changes_say_why_not_and_what_could_have_been_missed() -> None:
+    rows = cells(BUILDERS["changes"](sample.tables(), sample.facts()))
+    # 1.4 * 1.90 = 2.66 and 1.4 * 0.0103 = 0.0144 by the sample's own rule
+    assert ["Pale concrete slabs", "+0.3 ± 1.9", "no difference shown (could have missed up to "
+            "2.7)", "partly matched: wind not stated on 2025-06-12",
+            "ratio to control Worn asphalt"] in rows
+    assert ["Lawn", "none", "not evaluated: no contact dwell settled for 3 s", "not matched",
+            "ratio to control Worn asphalt"] in rows
+    assert ["Coated court", "−2.1 ± 1.9", "not judged", "partly matched", "raw"] in rows
+
+
+def test_inputs_carry_the_whole_hash() -> None:
+    rows = cells(t.inputs_table(sample.facts()["inputs"]))
+    assert rows[2][1].replace("\u202f", " ") == "2 418 337"
+    assert rows[2][2] == "a7" * 32
+
+
+def test_show_displays_frames_sentences_and_tables(monkeypatch: pytest.MonkeyPatch) -> None:
+    shown: list[Html] = []
+    monkeypatch.setattr("surveykit.report.tables.display", shown.append)
+    t.show(sample.tables()["dwells"], "Dwells", ["pass", "value"])
+    t.show(["First: one.", "Second."])
+    t.show([])
+    t.show(t.clock_table(sample.tables()["clocks"]))
+    assert cells(shown[0])[:2] == [["Pass", "Value"], ["W1-contact-1", "58.10"]]
+    assert shown[1].html.count("<li>") == 2
+    assert shown[2].html == '<p class="empty">Nothing to report.</p>\n'
+    assert "<caption>" in shown[3].html
