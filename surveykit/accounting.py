@@ -41,7 +41,7 @@ REASONS = (
     Reason("sun too low", "the sun stands lower than the method's limit",
            "ASTM E1918 scope and engineering default"),
     Reason("too little light", "the irradiance is below the floor", "engineering default"),
-    Reason("no partner", "the other logger has no record at this time", "field practice"),
+    Reason("no partner", "the other logger has no usable record at this time", "field practice"),
     Reason("pass edge", "within the uncertainty of the pass's start or stop",
            "engineering default"),
     Reason("between placements", "the head was not settled on the surface",
@@ -59,6 +59,7 @@ class PassRecords:
     `index` points into the main logger's records; `partners` holds, per other logger, the index
     of the matching record. `reasons` counts the rest of the window by primary reason; `refusal`
     says why nothing may be used; `dwells` are spans of `index` (first, one past the last).
+    `zenith_deg` is the mean over the records used, or over the window where none is.
     """
 
     logger: str

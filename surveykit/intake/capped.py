@@ -4,9 +4,19 @@ from __future__ import annotations
 
 from surveykit.intake.fieldsheet import Sheet
 
+NS = 1_000_000_000
 
-def windows(sheet: Sheet, kind: str, logger: str, quantity: str) -> list[tuple[int, int]]:
-    """Return (start_ns, stop_ns) of the sheet's rows of `kind` that concern this channel."""
+
+def windows(sheet: Sheet, kind: str, logger: str, quantity: str, *,
+            certain: bool = False) -> list[tuple[int, int]]:
+    """Return (start_ns, stop_ns) of the sheet's rows of `kind` that concern this channel.
+
+    With `certain`, each end gives way by the uncertainty of its written time, so that what is
+    left lies within the row whatever the watch said; rows of which nothing is left are kept, with
+    a stop not after their start.
+    """
     product = {"shortwave": "albedo", "red": "ndvi", "nir": "ndvi"}.get(quantity.split("_")[0], "")
-    return [(e.start_ns, e.stop_ns) for e in sheet.entries if e.entry == kind
+    rows = [e for e in sheet.entries if e.entry == kind
             and e.instrument in ("", logger) and e.quantity in ("", product)]
+    edges = [round(e.edge_u_s * NS) if certain else 0 for e in rows]
+    return [(e.start_ns + edge, e.stop_ns - edge) for e, edge in zip(rows, edges, strict=True)]

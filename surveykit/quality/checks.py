@@ -9,6 +9,8 @@ from surveykit.core import BoolArray, FloatArray, IntArray
 from surveykit.physics.shortwave import shortwave_limits
 from surveykit.physics.sun import Sun
 
+MOST_REPEATS = 0.98
+
 
 def out_of_range(values: FloatArray, low: float, high: float) -> BoolArray:
     """Readings [the quantity's unit] below `low` or above `high`; NaN is never out of range."""
@@ -17,7 +19,10 @@ def out_of_range(values: FloatArray, low: float, high: float) -> BoolArray:
 
 
 def physically_impossible(values: FloatArray, quantity: str, sun: Sun) -> BoolArray:
-    """Shortwave irradiance [W m-2] beyond the limits of Long & Shi (2008); others never.
+    """Shortwave irradiance [W m-2] above the limits of Long & Shi (2008); others never.
+
+    The lower limits are left out: readings still hold the head's dark reading here, which may lie
+    below them.
 
     References
     ----------
@@ -39,12 +44,14 @@ def stuck(values: FloatArray, time_ns: IntArray, *, min_s: float,
     With p the share of steps that repeat the reading, a run of m repeats is expected
     n * p**m times by chance; runs are marked from the m that makes this `false_alarms`, and
     never under `min_s` [s]. So a coarse but living channel (whole numbers once a minute) passes.
+    p is held at `MOST_REPEATS` or below: what repeats more often than that is stuck, not coarse.
+    Times must ascend.
     """
     out = np.zeros(values.shape, dtype=bool)
     if values.size < 3:
         return out
     same = values[1:] == values[:-1]
-    p = float(np.clip(same.mean(), 1e-3, 0.98))
+    p = float(np.clip(same.mean(), 1e-3, MOST_REPEATS))
     repeats = max(2, int(np.ceil(np.log(false_alarms / values.size) / np.log(p))))
     edges = np.flatnonzero(np.diff(np.concatenate(([0], same.view(np.int8), [0]))))
     for start, stop in edges.reshape(-1, 2):
@@ -63,7 +70,10 @@ def inside(time_ns: IntArray, spans: list[tuple[int, int]]) -> BoolArray:
 
 
 def nearest(time_ns: IntArray, other_ns: IntArray, within_s: float) -> IntArray:
-    """Return for each time the index of the nearest other time, or -1 if none is `within_s`."""
+    """Return for each time the index of the nearest other time, or -1 if none is `within_s`.
+
+    The other times must ascend: leave out records without a time.
+    """
     if other_ns.size == 0:
         return np.full(time_ns.shape, -1, dtype=np.int64)
     right = np.clip(np.searchsorted(other_ns, time_ns), 1, max(other_ns.size - 1, 1))

@@ -20,6 +20,7 @@ from surveykit.quality.checks import inside, out_of_range, physically_impossible
 
 LIGHT = ("shortwave_down", "shortwave_up", "red_down", "red_up", "nir_down", "nir_up")
 MAIN = (*LIGHT, "brightness_temperature", "longwave_down", "longwave_up")
+CLEAR_MAXIMUM = 0.99  # quantile of a head's readings that stands for its clear maximum
 
 
 @dataclass
@@ -63,8 +64,10 @@ def mark(study: Study, logger: str) -> dict[str, Mask]:
             "physically impossible": physically_impossible(values, channel.quantity, sun),
         }
         if channel.quantity in MAIN:
-            faults["stuck reading"] = stuck(
-                values, log.time_ns, min_s=settings.quality.flatline_min_s,
+            n = log.n_timed
+            faults["stuck reading"] = np.zeros(values.size, dtype=bool)
+            faults["stuck reading"][:n] = stuck(
+                values[:n], log.time_ns[:n], min_s=settings.quality.flatline_min_s,
                 false_alarms=settings.quality.flatline_false_alarms)
         if channel.quantity in LIGHT:
             capped = inside(log.time_ns, windows(study.sheet, "dark", logger, channel.quantity))
@@ -74,12 +77,13 @@ def mark(study: Study, logger: str) -> dict[str, Mask]:
             faults["capped"] = capped
             faults["sun too low"] = (sun.zenith_deg > limits.zenith_max_deg) & in_passes
             faults["too little light"] = in_passes & ~capped & _dim(values, channel, study, capped)
+            _short_darks(study, channel)
         for name, marked in faults.items():
             marked = marked & ((line & BIT["unreadable line"]) == 0)
             mask |= np.where(marked, BIT[name], np.uint32(0))
             if name != "capped":
                 _count(study, name, logger, column, int(marked.sum()))
-        if channel.quantity == "shortwave_down":
+        if channel.quantity == "shortwave_down" and settings.quality.rare_limit_warning:
             _rare(study, logger, column, values, mask, sun)
         masks[column] = mask
     _gaps(study, logger)
@@ -92,7 +96,7 @@ def _dim(values: FloatArray, channel: Channel, study: Study, capped: BoolArray) 
         floor = settings.albedo.min_down_w_m2
     elif channel.quantity in ("red_down", "nir_down"):
         bright = values[~capped & np.isfinite(values)]
-        top = float(np.quantile(bright, 0.99)) if bright.size else 0.0
+        top = float(np.quantile(bright, CLEAR_MAXIMUM)) if bright.size else 0.0
         floor = settings.ndvi.min_down_share * top
     else:
         return np.zeros(values.shape, dtype=bool)
@@ -112,10 +116,20 @@ def _rare(study: Study, logger: str, column: str, values: FloatArray, mask: Mask
                    logger=logger, column=column, records=count)
 
 
+def _short_darks(study: Study, channel: Channel) -> None:
+    """Note dark rows of which nothing is left between their uncertain ends."""
+    log = study.records[channel.logger]
+    for start, stop in windows(study.sheet, "dark", channel.logger, channel.quantity,
+                               certain=True):
+        if not inside(log.time_ns, [(start, stop)]).any():
+            study.note("dark reading", "flag", "no record lies within a dark row once its written "
+                       "times give way by their uncertainty: cap longer, or write seconds",
+                       "field practice", logger=channel.logger, column=channel.column)
+
+
 def _gaps(study: Study, logger: str) -> None:
     log, quality = study.records[logger], study.parameters.campaign.settings.quality
-    good = log.time_ns[log.time_ns > np.iinfo(np.int64).min]
-    steps_s = np.diff(good) / NS
+    steps_s = np.diff(log.time_ns[:log.n_timed]) / NS
     wide = steps_s > quality.gap_intervals * log.interval_s
     if wide.any():
         study.note("gap", "flag", f"{int(wide.sum())} gaps of more than "

@@ -9,15 +9,18 @@ import numpy as np
 from surveykit.accounting import BIT, NOT_A_FAULT, NS, REASONS, Mask, PassRecords
 from surveykit.core import BoolArray, IntArray
 from surveykit.intake.passes import Pass, find_dwells
+from surveykit.intake.records import Records
 from surveykit.quality.checks import nearest, primary
 from surveykit.quality.marks import Study
+
+ROUNDING_S = 1e-3  # of printed times, beyond half an interval between partners
+FEWEST = 2  # records that have a spread
 
 
 def choose(study: Study, this: Pass, masks: dict[str, dict[str, Mask]]) -> PassRecords:
     """Return the records of a pass that may be used, and count the rest of its window."""
     main = next(iter(this.channels.values())).logger
     log, sun = study.records[main], study.sun[main]
-    settings = study.parameters.campaign.settings
     window = np.flatnonzero((log.time_ns >= this.start_ns) & (log.time_ns < this.stop_ns))
     mask = np.zeros(window.size, dtype=np.uint32)
     partners: dict[str, IntArray] = {}
@@ -25,10 +28,8 @@ def choose(study: Study, this: Pass, masks: dict[str, dict[str, Mask]]) -> PassR
         if channel.logger == main:
             mask |= masks[main][channel.column][window]
             continue
-        other = study.records[channel.logger]
         if channel.logger not in partners:
-            reach_s = 0.5 * max(log.interval_s, other.interval_s) + 1e-3
-            partners[channel.logger] = nearest(log.time_ns[window], other.time_ns, reach_s)
+            partners[channel.logger] = _partners(log, window, study.records[channel.logger])
         at = partners[channel.logger]
         mask |= np.where(at < 0, BIT["no partner"], masks[channel.logger][channel.column][at])
     times = log.time_ns[window]
@@ -37,78 +38,127 @@ def choose(study: Study, this: Pass, masks: dict[str, dict[str, Mask]]) -> PassR
     dwells: list[tuple[int, int]] = []
     if this.kind == "contact":
         mask, dwells = _place(study, this, window, mask)
-    faults = (mask & ~NOT_A_FAULT) != 0
-    inside = (mask & BIT["pass edge"]) == 0
-    share = float((faults & inside).sum() / max(inside.sum(), 1))
-    names = [REASONS[i].name for i in primary(mask) if i >= 0]
-    reasons = dict(Counter(names))
     used = mask == 0
-    sun_low = (mask & BIT["sun too low"]) != 0
-    refusal = _refusal(study, this, window, share, reasons, int(used.sum()), sun_low & inside)
-    severity = "refuse" if refusal else "flag"
-    if refusal or share > settings.quality.excluded_flag:
-        study.note("records of a pass", severity, refusal or f"{share:.0%} of the pass's records "
-                   "are excluded", "engineering default", logger=main, surface=this.surface,
-                   pass_=this.name, records=int((faults & inside).sum()))
-    zenith = float(np.mean(sun.zenith_deg[window])) if window.size else float("nan")
-    keep = window[used] if not refusal else window[:0]
+    refusal = _refusal(study, this, window, mask)
+    _note(study, this, main, mask, refusal)
+    if refusal:
+        used[:] = False
+        dwells = []
+    _missing(study, this)
+    lit = window[used] if used.any() else window
+    zenith = float(np.mean(sun.zenith_deg[lit])) if lit.size else float("nan")
     where = np.cumsum(used) - 1
     return PassRecords(
-        main, keep, {k: v[used] if not refusal else v[:0] for k, v in partners.items()},
-        int(window.size), reasons, refusal,
-        tuple((int(where[a]), int(where[b - 1]) + 1) for a, b in dwells) if not refusal else (),
-        zenith)
+        main, window[used], {name: at[used] for name, at in partners.items()}, int(window.size),
+        dict(Counter(REASONS[i].name for i in primary(mask) if i >= 0)), refusal,
+        tuple((int(where[a]), int(where[b - 1]) + 1) for a, b in dwells), zenith)
+
+
+def _partners(log: Records, window: IntArray, other: Records) -> IntArray:
+    """Return for each record of a window the nearest of another logger, or -1."""
+    reach_s = 0.5 * max(log.interval_s, other.interval_s) + ROUNDING_S
+    return nearest(log.time_ns[window], other.time_ns[:other.n_timed], reach_s)
 
 
 def _place(study: Study, this: Pass, window: IntArray,
            mask: Mask) -> tuple[Mask, list[tuple[int, int]]]:
-    """Find the settled placements among a contact pass's good records and mark the rest."""
+    """Find the settled placements among a contact pass's good records and mark the rest.
+
+    A placement is a run of settled records that lasts `temperature.dwell_min_s`; its first
+    `passes.settle_time_constants` time constants are not used.
+    """
     channel = this.channels["brightness_temperature"]
     log, settings = study.records[channel.logger], study.parameters.campaign.settings
     good = np.flatnonzero(mask == 0)
+    time_s = log.time_ns[window][good] / NS
     found = find_dwells(
-        log.time_ns[window][good] / NS, log.channels[channel.column][window][good],
-        settle_s=settings.passes.settle_time_constants * (channel.time_constant_s or 0.0),
+        time_s, log.channels[channel.column][window][good], settle_s=0.0,
         min_s=settings.temperature.dwell_min_s,
         max_rate_k_s=settings.temperature.dwell_max_rate_k_s)
+    settle_s = settings.passes.settle_time_constants * (channel.time_constant_s or 0.0)
     settled = np.zeros(window.size, dtype=bool)
     spans = []
     for part in found:
-        rows = good[part]
-        settled[rows] = True
-        spans.append((int(rows[0]), int(rows[-1]) + 1))
+        rows = good[part][time_s[part] >= time_s[part.start] + settle_s]
+        if rows.size >= FEWEST:
+            settled[rows] = True
+            spans.append((int(rows[0]), int(rows[-1]) + 1))
     mask = mask | np.where(settled | (mask != 0), np.uint32(0), BIT["between placements"])
     return mask.astype(np.uint32), spans
 
 
-def _refusal(study: Study, this: Pass, window: IntArray, share: float, reasons: dict[str, int],
-             n_used: int, sun_low: BoolArray) -> str:
+def _faulty(mask: Mask) -> tuple[BoolArray, BoolArray]:
+    """Return which records lie between the pass's edges, and which of these are at fault."""
+    inside = (mask & BIT["pass edge"]) == 0
+    return inside, inside & ((mask & ~NOT_A_FAULT) != 0)
+
+
+def _refusal(study: Study, this: Pass, window: IntArray, mask: Mask) -> str:
     """Return why the pass cannot be evaluated, or an empty text."""
+    settings = study.parameters.campaign.settings
     if window.size == 0:
         return "no record of its logger falls into the pass"
-    if share > study.parameters.campaign.settings.quality.excluded_refuse or n_used < 2:
-        if sun_low.any():
-            return _dark_refusal(study, this, window[sun_low])
-        if this.kind == "contact" and "between placements" in reasons:
-            return "no settled placement of the head was found"
-        if not reasons or (len(reasons) == 1 and "pass edge" in reasons):
-            return "nothing is left of the pass between its uncertain edges"
-        worst = max(reasons, key=lambda name: (reasons[name], name))
+    left_s = max((this.to_ns - this.from_ns) / NS, 0.0)
+    if left_s < settings.passes.min_duration_s:
+        return (f"{left_s:.0f} s of the pass lie between its uncertain edges, less than "
+                f"{settings.passes.min_duration_s:g} s")
+    inside, faults = _faulty(mask)
+    share = float(faults.sum() / max(inside.sum(), 1))
+    if share <= settings.quality.excluded_refuse and (mask == 0).sum() >= FEWEST:
+        return ""
+    dark = inside & ((mask & BIT["sun too low"]) != 0)
+    if 2 * dark.sum() > inside.sum():
+        return _dark_refusal(study, this, window[dark])
+    if share > settings.quality.excluded_refuse:
+        reasons = Counter(REASONS[i].name for i in primary(mask & ~NOT_A_FAULT)[faults])
+        worst = min(reasons, key=lambda name: (-reasons[name], name))
         return f"{share:.0%} of the records are excluded, most as: {worst}"
-    return ""
+    if this.kind == "contact" and (mask & BIT["between placements"]).any():
+        return "no settled placement of the head was found"
+    return f"fewer than {FEWEST} records are left of the pass"
 
 
 def _dark_refusal(study: Study, this: Pass, rows: IntArray) -> str:
     channel = next((c for q, c in this.channels.items() if q.endswith("_down")), None)
     main = next(iter(this.channels.values())).logger
     zenith = float(np.mean(study.sun[main].zenith_deg[rows]))
-    where = "below the horizon" if zenith > 90 else f"only {90 - zenith:.0f} degrees high"
-    if channel is not None and channel.quantity == "shortwave_down" and zenith > 90:
-        log = study.records[channel.logger]
-        at = nearest(study.records[main].time_ns[rows], log.time_ns, log.interval_s)
-        down = float(np.mean(log.channels[channel.column][at[at >= 0]]))
-        if down > study.parameters.campaign.settings.albedo.min_down_w_m2:
-            return (f"computed sun {where} while the pair reads {down:.0f} W m-2: "
-                    "check longitude, zone or clock")
-        return f"the sun is {where}: an albedo read in the dark is the ratio of two offsets"
-    return f"the sun is {where}, lower than the limit of the method"
+    if zenith <= 90:
+        return f"the sun is only {90 - zenith:.0f} degrees high, lower than the method's limit"
+    if channel is None or channel.quantity != "shortwave_down":
+        return "the sun is below the horizon"
+    log = study.records[channel.logger]
+    at = _partners(study.records[main], rows, log)
+    read = log.channels[channel.column][at[at >= 0]]
+    read = read[np.isfinite(read)]
+    if read.size and read.mean() > study.parameters.campaign.settings.albedo.min_down_w_m2:
+        return (f"computed sun below the horizon while the pair reads {read.mean():.0f} W m-2: "
+                "check longitude, zone or clock")
+    return "the sun is below the horizon: an albedo read in the dark is the ratio of two offsets"
+
+
+def _note(study: Study, this: Pass, logger: str, mask: Mask, refusal: str) -> None:
+    """Note a pass that is refused, or of which much is excluded."""
+    inside, faults = _faulty(mask)
+    share = float(faults.sum() / max(inside.sum(), 1))
+    if refusal or share > study.parameters.campaign.settings.quality.excluded_flag:
+        study.note("records of a pass", "refuse" if refusal else "flag",
+                   refusal or f"{share:.0%} of the pass's records are excluded",
+                   "engineering default", logger=logger, surface=this.surface, pass_=this.name,
+                   records=int(faults.sum()))
+
+
+def _missing(study: Study, this: Pass) -> None:
+    """Note the loggers of a pass that hold fewer records than their interval promises."""
+    limit = study.parameters.campaign.settings.quality.missing_flag
+    for name in this.loggers:
+        log = study.records[name]
+        if not log.interval_s > 0:
+            continue
+        inside = (log.time_ns >= this.start_ns) & (log.time_ns < this.stop_ns)
+        got = int((inside & ~log.marks["repeated record"]).sum())
+        due = int((this.stop_ns - this.start_ns) / NS / log.interval_s)
+        if due and 1 - got / due > limit:
+            study.note("missing records", "flag", f"{1 - got / due:.0%} of the records expected "
+                       f"in the pass, one every {log.interval_s:g} s, are missing",
+                       "engineering default", logger=name, surface=this.surface,
+                       pass_=this.name, records=due - got)
