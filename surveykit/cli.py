@@ -5,6 +5,7 @@ from __future__ import annotations
 import argparse
 import sys
 from collections.abc import Callable
+from functools import partial
 from pathlib import Path
 
 DONE, BUG, USER = 0, 1, 2
@@ -29,7 +30,7 @@ def main(arguments: list[str] | None = None) -> int:
     if asked.command == "new":
         return _told(lambda: _new(asked.name))
     each = _run if asked.command == "run" else _check
-    return max([_told(lambda file=file: each(file)) for file in asked.files])
+    return max(_told(partial(each, file)) for file in asked.files)
 
 
 def _told(work: Callable[[], None]) -> int:

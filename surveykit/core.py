@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any, Literal
 
@@ -142,7 +142,7 @@ TABLES: dict[str, dict[str, str]] = {
 PUBLISHED = tuple(TABLES)
 
 
-def table(name: str, rows: list[Mapping[str, Any]]) -> pd.DataFrame:
+def table(name: str, rows: Sequence[Mapping[str, Any]]) -> pd.DataFrame:
     """Return `rows` as the table `name`, columns in contract order and of the contract's kinds.
 
     Raises

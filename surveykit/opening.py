@@ -10,8 +10,6 @@ from importlib.metadata import version
 from pathlib import Path
 from typing import Any
 
-import pandas as pd
-
 from surveykit.core import InputError
 from surveykit.intake.loggers import expand_files
 from surveykit.intake.params import (
@@ -22,8 +20,6 @@ from surveykit.intake.params import (
     read_plain,
     refuse_other_sections,
 )
-from surveykit.intake.passes import Pass
-from surveykit.intake.records import Records
 from surveykit.statistics.draws import Draws
 
 SECTIONS = tuple(Campaign.model_fields)
@@ -118,31 +114,6 @@ def open_file(path: Path, run_folder: str | Path | None = None) -> Survey:
                        "bytes": len(data)})
     folder = Path(run_folder) if run_folder else root / ".surveykit" / campaign.campaign
     return Survey(parameters, folder, tuple(inputs))
-
-
-def strangers(survey: Survey, records: dict[str, Records],
-               passes: tuple[Pass, ...]) -> list[str]:
-    """Return the faults of loggers that hold nothing of the day, or of any of their passes."""
-    campaign = survey.campaign
-    midnight = pd.Timestamp(campaign.date, tz=campaign.site.time_zone)
-    start, stop = midnight.value, (midnight + pd.DateOffset(days=1)).value
-    faults = []
-    for name, log in records.items():
-        time = log.time_ns[:log.n_timed]
-        where = f"{campaign.campaign}: loggers.{name}"
-        if not ((time >= start) & (time < stop)).any():
-            days = sorted({str(d) for d in pd.to_datetime(time, utc=True)
-                           .tz_convert(campaign.site.time_zone).date}) if time.size else []
-            span = f"{days[0]} to {days[-1]}" if len(days) > 1 else (days or ["no readable day"])[0]
-            faults.append(f"{where}: no record falls on {campaign.date} "
-                          f"({campaign.site.time_zone}); the files cover {span}: check files, "
-                          "date or zone")
-            continue
-        mine = [p for p in passes if any(c.logger == name for c in p.channels.values())]
-        if mine and not any(((time >= p.start_ns) & (time < p.stop_ns)).any() for p in mine):
-            faults.append(f"{where}: its records miss every pass of the field sheet; check clock, "
-                          "zone or the sheet's times")
-    return faults
 
 
 def _shown(path: Path, root: Path) -> str:

@@ -7,10 +7,11 @@ predecessors first where their results are absent or belong to other inputs.
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from functools import partial
 from pathlib import Path
-from typing import Any
+from typing import Any, TypeVar
 
 import pandas as pd
 
@@ -23,18 +24,20 @@ from surveykit.evidence.comparability import Date
 from surveykit.evidence.conditions import Day
 from surveykit.evidence.estimates import PassEstimate, estimate_all
 from surveykit.handover import load_facts, load_table, save_facts, save_table
-from surveykit.intake.clocks import Clock, set_clock
+from surveykit.intake.clocks import Clock, check_days, set_clock
 from surveykit.intake.fieldsheet import Sheet, read_sheet
 from surveykit.intake.loggers import expand_files, read_logger
-from surveykit.intake.passes import Pass, match_passes
+from surveykit.intake.params import Parameters
+from surveykit.intake.passes import Pass, check_coverage, match_passes
 from surveykit.intake.records import Records
 from surveykit.keeping import load_quality, load_records, save_quality, save_records
-from surveykit.opening import Survey, open_file, strangers
+from surveykit.opening import Survey, open_file
 from surveykit.opening import open_survey as open_survey
 from surveykit.quality import examine
 from surveykit.statistics.draws import Draws
 
 Tables = dict[str, pd.DataFrame]
+Made = TypeVar("Made")
 STAGES = ("ingest", "quality", "surfaces", "comparison")
 
 
@@ -93,13 +96,15 @@ def _read_logs(survey: Survey) -> tuple[dict[str, Records], list[str]]:
     logs: dict[str, Records] = {}
     faults: list[str] = []
     for name, use in survey.campaign.loggers.items():
-        try:
-            logs[name] = read_logger(
-                name, parameters.kit[name], expand_files(parameters.data_folder, use.files),
-                parameters.root)
-        except InputError as error:
-            faults += error.faults
+        log = _gather(faults, partial(_read_log, parameters, name, use.files))
+        if log is not None:
+            logs[name] = log
     return logs, faults
+
+
+def _read_log(parameters: Parameters, name: str, files: Sequence[str]) -> Records:
+    return read_logger(name, parameters.kit[name],
+                       expand_files(parameters.data_folder, files), parameters.root)
 
 
 def _align(survey: Survey, logs: dict[str, Records], faults: list[str]) -> Ingested:
@@ -110,16 +115,24 @@ def _align(survey: Survey, logs: dict[str, Records], faults: list[str]) -> Inges
     for name, log in logs.items():
         records[name], clock = set_clock(log, campaign.loggers[name], campaign.settings)
         clocks.append(clock)
-    try:
-        by_name = {clock.logger: clock for clock in clocks}
-        sheet = read_sheet(survey.parameters.sheet_path, survey.parameters)
-        passes = match_passes(sheet, survey.parameters, by_name) if not faults else ()
-        faults += strangers(survey, records, passes)
-    except InputError as error:
-        raise InputError(*faults, *error.faults) from None
-    if faults:
+    passes: tuple[Pass, ...] = ()
+    sheet = _gather(faults, lambda: read_sheet(survey.parameters.sheet_path, survey.parameters))
+    _gather(faults, lambda: check_days(records, survey.parameters))
+    if sheet is not None and not faults:
+        passes = match_passes(sheet, survey.parameters, {c.logger: c for c in clocks})
+        check_coverage(passes, records, sheet.path)
+    if faults or sheet is None:
         raise InputError(*faults)
     return Ingested(records, tuple(clocks), sheet, passes)
+
+
+def _gather(faults: list[str], work: Callable[[], Made]) -> Made | None:
+    """Return what `work` gives; where the input is at fault, add its faults and return None."""
+    try:
+        return work()
+    except InputError as error:
+        faults += error.faults
+        return None
 
 
 def clock_table(survey: Survey, ingested: Ingested) -> pd.DataFrame:

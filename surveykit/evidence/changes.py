@@ -84,10 +84,11 @@ def _rows(now: Date, then: Date, key: tuple[str, str, str], control: str,
         if controls and grade.letter != "C":
             lead_row |= _summary(now, _ratio(now, then, new, old, controls, grade, draws))
     elif controls:
-        terms = [_zenith(now, new, old, draws, 1.0), _zenith(now, *controls, draws, -1.0)]
+        terms = [zenith_term(now, new, old, draws, 1.0),
+                 zenith_term(now, *controls, draws, -1.0)]
         lead_row |= _summary(now, _double(new, old, controls, terms))
     else:
-        terms = [_zenith(now, new, old, draws, 1.0), _drift(now, then, new, old, draws)]
+        terms = [zenith_term(now, new, old, draws, 1.0), _drift(now, then, new, old, draws)]
         made = combine(lambda a, b, *t: a - b + sum(t), new.result, old.result, *terms)
         lead_row |= _summary(now, made)
     return [lead_row, *rows]
@@ -100,10 +101,13 @@ def _absent(now: Date, then: Date, key: tuple[str, str, str]) -> dict[str, Any]:
         if group is not None and group.result is None:
             return {"verdict": NOT_EVALUATED, "note": f"{date.name}: {'; '.join(group.notes)}"}
         if group is None:
-            kinds = [k[2] for k in date.groups if k[:2] == key[:2]]
-            if kinds and key[1] == "albedo":
+            here = {k[2]: g for k, g in date.groups.items() if k[:2] == key[:2]}
+            if key[1] == "albedo" and "" in here:  # refused before its sky was known
+                return {"verdict": NOT_EVALUATED,
+                        "note": f"{date.name}: {'; '.join(here[''].notes)}"}
+            if key[1] == "albedo" and here:
                 return {"verdict": NOT_COMPARABLE, "comparability": "not matched",
-                        "note": f"the sky differs: {kinds[0]} albedo on {date.name}, "
+                        "note": f"the sky differs: {' and '.join(here)} albedo on {date.name}, "
                                 f"{key[2]} on {other.name}"}
             return {"verdict": NOT_EVALUATED, "note": f"no such passes on {date.name}"}
     raise AssertionError("both dates have an interval")
@@ -152,7 +156,7 @@ def _ratio(now: Date, then: Date, new: Group, old: Group, controls: tuple[Group,
         controls[1].result, _air(controls[1], draws), form)
 
 
-def _zenith(now: Date, new: Group, old: Group, draws: Draws, sign: float) -> Result:
+def zenith_term(date: Date, new: Group, old: Group, draws: Draws, sign: float) -> Result:
     """Return what another sun height can have done to an albedo; nothing for other quantities.
 
     The dependence is that of Dickinson (1983) and Briegleb et al. (1986) with d of
@@ -160,7 +164,7 @@ def _zenith(now: Date, new: Group, old: Group, draws: Draws, sign: float) -> Res
     """
     if new.quantity != "albedo":
         return _known(0.0, np.zeros(draws.size))
-    d = now.parameters.campaign.settings.comparison.zenith_dependence
+    d = date.parameters.campaign.settings.comparison.zenith_dependence
     ratio = (zenith_factor(new.mean("zenith_deg"), d) / zenith_factor(old.mean("zenith_deg"), d))
     size = sign * old.value * float(ratio - 1)
     return _known(0.0, size * draws.standard(f"zenith dependence:{new.surface}"))

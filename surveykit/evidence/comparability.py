@@ -76,7 +76,7 @@ def comparability(now: Date, then: Date, new: Group, old: Group,
             lowered.append(f"rain before {date.name} not stated")
         elif rain > limits.wet_rain_mm:
             barred.append(f"wet ground on {date.name}: {rain:g} mm of rain in 48 h")
-        elif rain > 0:
+        elif rain > limits.rain_max_mm:
             lowered.append(f"{rain:g} mm of rain in the 48 h before {date.name}")
     _match(lowered, "sun height", abs(new.mean("cos_zenith") - old.mean("cos_zenith")),
            limits.cos_zenith_match, "cosine of the zenith angle differs by {:.2f}")
@@ -86,15 +86,18 @@ def comparability(now: Date, then: Date, new: Group, old: Group,
                "irradiance differs by {:.0%}")
         _match(lowered, "wind", abs(new.mean("wind_m_s") - old.mean("wind_m_s")),
                limits.wind_match_m_s, "wind differs by {:.1f} m s-1")
-    if new.quantity == "ndvi" and _bands(new) != _bands(old):
-        barred.append("the bands differ")
+    if new.quantity == "ndvi":
+        if _bands(new) != _bands(old):
+            barred.append("the bands differ")
+        elif None in _bands(new):
+            lowered.append("the bands are not stated")
     if controls is None:
         missing = "no control with an interval on both dates"
         (barred if new.quantity == "temperature" else lowered).append(missing)
     elif new.quantity == "temperature":
-        for date, control in zip((now, then), controls, strict=True):
+        for date, group, control in zip((now, then), (new, old), controls, strict=True):
             excess = control.value - control.mean("air_k")
-            if np.isnan(excess):
+            if np.isnan(excess) or np.isnan(group.mean("air_k")):
                 barred.append(f"air temperature on {date.name} is missing")
             elif excess < limits.min_control_excess_k:
                 barred.append(f"the control is only {excess:.1f} K above the air on {date.name}")
@@ -110,6 +113,7 @@ def _match(lowered: list[str], what: str, size: float, limit: float, words: str)
 
 
 def _bands(group: Group) -> tuple[object, ...]:
+    """Return centres and widths of the bands of a group's heads; None where one is not stated."""
     channels = group.used[0].this.channels
-    return tuple((name, channels[name].band_centres_nm, channels[name].band_widths_nm)
-                 for name in sorted(channels))
+    return tuple(getattr(channels[name], part) for name in sorted(channels)
+                 for part in ("band_centres_nm", "band_widths_nm"))

@@ -9,7 +9,7 @@ import numpy as np
 import pandas as pd
 
 from surveykit.core import table
-from surveykit.evidence.changes import changes_between
+from surveykit.evidence.changes import changes_between, zenith_term
 from surveykit.evidence.comparability import Date
 from surveykit.evidence.parts import HALF_WIDTH
 from surveykit.evidence.surfaces import Group
@@ -22,6 +22,7 @@ from surveykit.statistics.verdicts import (
     verdict,
 )
 
+CONTROL_PASSES = 3  # that show the day's course
 DIFFERENCE_UNITS = {"temperature": "K", "albedo": "1", "ndvi": "1"}
 
 
@@ -96,13 +97,13 @@ def _difference(date: Date, a: Group, b: Group, draws: Draws) -> dict[str, Any]:
 def _day_course(date: Date, a: Group, b: Group, draws: Draws) -> tuple[list[Result], str]:
     """Return what the day's course can have done between the mean times of two surfaces.
 
-    Not corrected yet: half the control's linear course times the time between, as a rectangular
-    uncertainty of its whole size.
+    For an albedo that is the sun's height. For a temperature, not corrected yet: the control's
+    linear course times the time between, allowed on either side (rectangular).
     """
     if a.quantity != "temperature":
-        return [], ""
+        return [zenith_term(date, a, b, draws, 1.0)], ""
     control = date.find(date.parameters.campaign.comparison.control or "", a.quantity, a.kind)
-    if control is None or len(control.used) < 3:
+    if control is None or len(control.used) < CONTROL_PASSES:
         return [], "the day's course was not watched by a control"
     time_h = np.array([p.middle_ns for p in control.used]) / 3.6e12
     slope = float(np.polyfit(time_h - time_h.mean(), [p.value for p in control.used], 1)[0])

@@ -8,13 +8,14 @@ from functools import cached_property
 import numpy as np
 
 from surveykit.accounting import BIT, NS, Quality
-from surveykit.core import FloatArray, Input
+from surveykit.core import FloatArray, Input, IntArray
 from surveykit.intake.capped import windows
 from surveykit.intake.fieldsheet import Sheet
 from surveykit.intake.loggers import Records
 from surveykit.intake.params import Channel, Parameters
 from surveykit.intake.passes import Pass
 from surveykit.physics.sun import Sun, sun_track
+from surveykit.statistics.series import mean_of_series
 
 
 @dataclass(frozen=True)
@@ -62,8 +63,11 @@ class Day:
         return out
 
     def readings(self, channel: Channel, start_ns: int, stop_ns: int,
-                 *, through: tuple[str, ...] = ()) -> tuple[FloatArray, FloatArray]:
-        """Return time [ns] and good readings [SI] of a channel within a stretch of time."""
+                 *, through: tuple[str, ...] = ()) -> tuple[IntArray, FloatArray]:
+        """Return time [ns] and good readings [SI] of a channel within a stretch of time.
+
+        Readings marked for the reasons `through` and no other count as good.
+        """
         log = self.records[channel.logger]
         first, last = np.searchsorted(log.time_ns[:log.n_timed], [start_ns, stop_ns])
         mask = self.quality.masks[channel.logger][channel.column][first:last]
@@ -83,10 +87,11 @@ class Day:
         for channel in self.channels.get(quantity, []):
             time, value = self.readings(channel, this.start_ns - reach, this.stop_ns + reach)
             during = (time >= this.start_ns) & (time < this.stop_ns)
-            if during.any() or time.size:
+            if time.size:
                 mean = float(value[during].mean() if during.any()
                              else np.interp(middle, time, value))
-                u = float(np.hypot(channel.u_offset, channel.u_gain * mean))
+                scaled = channel.u_gain * (mean - channel.offset.value)
+                u = float(np.hypot(channel.u_offset, scaled))
                 return Input(quantity, mean, u, channel.offset_scope,
                              f"{quantity.replace('_', ' ')}, logged")
         rows = [e for e in self.sheet.entries if e.entry == "weather" and e.quantity == quantity]
@@ -95,24 +100,27 @@ class Day:
         time = np.array([e.start_ns for e in rows], dtype=np.float64)
         if not time[0] - reach <= middle <= time[-1] + reach:
             return None
-        value = float(np.interp(middle, time, [e.reading for e in rows]))
+        read = float(np.interp(middle, time, [e.reading for e in rows]))
         u = max(e.reading_u for e in rows)
-        return Input(quantity, value, u, f"{self.name}:hand-read {quantity}",
+        return Input(quantity, read, u, f"{self.name}:hand-read {quantity}",
                      f"{quantity.replace('_', ' ')}, read by hand")
 
     def dark(self, channel: Channel) -> Dark | None:
-        """Return the channel's dark readings (sheet rows `dark`), or None where there is none."""
-        spans = windows(self.sheet, "dark", channel.logger, channel.quantity)
-        edge = int(self.parameters.campaign.settings.passes.sheet_u_s * NS)
+        """Return the channel's dark readings (sheet rows `dark`), or None where there is none.
+
+        Their uncertainty holds the scatter within the rows and, as a rectangular distribution,
+        the whole course between them.
+        """
         times, means, errors = [], [], []
-        for start, stop in spans:
+        for start, stop in windows(self.sheet, "dark", channel.logger, channel.quantity,
+                                   certain=True):
             time, value = self.readings(
-                channel, start + edge, stop - edge,
+                channel, start, stop,
                 through=("capped", "sun too low", "too little light", "out of range"))
-            if time.size >= 3:
+            if time.size >= 2:
                 times.append(float(time.mean()))
                 means.append(float(np.median(value)))
-                errors.append(float(value.std(ddof=1) / np.sqrt(time.size)))
+                errors.append(mean_of_series(value, unit=channel.unit, method="dark").u)
         if not times:
             return None
         order = np.argsort(times)
@@ -120,7 +128,7 @@ class Day:
         return Dark(np.array(times)[order], np.array(means)[order],
                     float(np.hypot(np.mean(errors), spread)))
 
-    def without_dark(self, channel: Channel, time_ns: FloatArray,
+    def without_dark(self, channel: Channel, time_ns: IntArray,
                      values: FloatArray) -> FloatArray:
         """Return readings with the interpolated dark reading of the head taken off."""
         dark = self.darks[channel.logger, channel.column]
@@ -134,11 +142,20 @@ class Day:
         return {(c.logger, c.column): self.dark(c)
                 for some in self.channels.values() for c in some}
 
-    def sun(self, time_ns: FloatArray) -> Sun:
+    @cached_property
+    def largest(self) -> dict[tuple[str, str], float]:
+        """Largest good reading [SI] of every channel over the day, dark taken off; 0 if none."""
+        out = {}
+        for channel in (c for some in self.channels.values() for c in some):
+            time, value = self.readings(channel, 0, np.iinfo(np.int64).max)
+            good = self.without_dark(channel, time, value)
+            out[channel.logger, channel.column] = float(good.max(initial=0.0))
+        return out
+
+    def sun(self, time_ns: IntArray) -> Sun:
         """Return the sun's track at the site."""
         site = self.parameters.campaign.site
-        return sun_track(np.asarray(time_ns, dtype=np.int64), site.latitude, site.longitude,
-                         site.elevation_m)
+        return sun_track(time_ns, site.latitude, site.longitude, site.elevation_m)
 
     def sky(self, start_ns: int, stop_ns: int) -> Sky:
         """Return irradiance and sky class of a stretch: how much of a clear sky, how steady.
@@ -165,4 +182,3 @@ class Day:
                 kind = "diffuse"
             return Sky(float(value.mean()), float(index), kind)
         return Sky()
-

@@ -98,9 +98,13 @@ def estimate(day: Day, this: Pass) -> PassEstimate:
         return replace(base, note=str(refusal))
     if not np.isfinite(made.value):
         return replace(base, note="the readings lie outside the range of the model")
+    flags = made.flags + this.notes
+    if made.n_effective < day.parameters.campaign.settings.statistics.few_effective and \
+            model != "contact":  # which counts placements, with a flag of its own
+        flags += ("few effective records",)
     return replace(
         base, value_raw=made.value_raw, value=made.value, u_within=made.u_within,
-        n_effective=made.n_effective, status="ok", note="", flags=made.flags, inputs=made.inputs,
+        n_effective=made.n_effective, status="ok", note="", flags=flags, inputs=made.inputs,
         steps=made.steps, dwells=made.dwells)
 
 

@@ -3,7 +3,8 @@
 Each model takes a mapping of input name -> number or vector of draws and returns the value in the
 unit of its quantity. The same function gives the value, the sensitivities and the draws.
 Inputs called `..._error` are zero by expectation: their u is the size of an effect that is known
-but not removed.
+but not removed. Where such an effect has one sign only, its whole size is allowed on either side:
+the value is not moved, and the interval holds the effect.
 """
 
 from __future__ import annotations
@@ -37,13 +38,17 @@ def stand_off(x: Values) -> FloatArray:
 
 
 def contact(x: Values) -> FloatArray:
-    """Surface temperature [K] under the head: the bore's cavity, rim gap and head cooling."""
+    """Surface temperature [K] under the head: the bore's cavity, rim gap and head cooling.
+
+    The rim is taken as closed. A gap lies between 0 and its largest and is never negative; what it
+    does to the temperature is allowed on either side of the closed value.
+    """
     window = band(float(x["band_low_um"]), float(x["band_high_um"]))
     sky = x["sky_factor"] * sky_radiance(window, x["air_k"], x["relative_humidity"])
-    surface = contact_temperature_k(
-        window, _brightness(x), x["emissivity"], x["body_k"], x["bore_emissivity"],
-        x["rim_gap_error"], sky)
-    return surface + x["head_cooling_error"]
+    rest = _brightness(x), x["emissivity"], x["body_k"], x["bore_emissivity"]
+    closed = contact_temperature_k(window, *rest, 0.0, sky)
+    leaking = contact_temperature_k(window, *rest, np.abs(x["rim_gap_error"]), sky)
+    return closed + np.sign(x["rim_gap_error"]) * (leaking - closed) + x["head_cooling_error"]
 
 
 def longwave(x: Values) -> FloatArray:
@@ -54,13 +59,17 @@ def longwave(x: Values) -> FloatArray:
 
 
 def albedo(x: Values) -> FloatArray:
-    """Albedo [1]: ratio of sums, with what is budgeted and not removed around it."""
+    """Albedo [1]: ratio of sums, with what is budgeted and not removed around it.
+
+    Shade and foreign ground are not removed: `..._per_m` say how their shares move with the
+    height of the head, so that passes held at other heights than written scatter.
+    """
     up = x["up"] * (1 + x["up_gain_error"]) + x["up_zero_error"]
     down = x["down"] * (1 + x["down_gain_error"]) + x["down_zero_error"]
     ratio = up / down * (1 + x["directional_error"] + x["levelling_error"])
-    seen = 1 - x["footprint_share"]
-    return (ratio + x["shade_error"] * x["shade_share"] * ratio
-            + x["contamination_error"] * seen * (x["around_albedo"] - ratio))
+    return (ratio * (1 + x["shade_error"] * x["shade_share"]
+                     + x["height_error"] * x["shade_per_m"])
+            + _foreign(x, x["around_albedo"] - ratio))
 
 
 def vegetation_index(x: Values) -> FloatArray:
@@ -72,8 +81,7 @@ def vegetation_index(x: Values) -> FloatArray:
                 + x[f"{name}_down_zero_error"])
         factor[name] = up / down
     index = ndvi(factor["red"], factor["nir"])
-    seen = 1 - x["footprint_share"]
-    return index + x["contamination_error"] * seen * (x["around_ndvi"] - index)
+    return index + _foreign(x, x["around_ndvi"] - index)
 
 
 MODELS: dict[str, Callable[[Values], FloatArray]] = {
@@ -114,6 +122,12 @@ def deviations(model: str, inputs: Sequence[Input], draws: Draws, pass_scope: st
     return np.asarray(MODELS[model](x) - nominal)
 
 
+def _foreign(x: Values, contrast: Any) -> Any:
+    """What foreign ground in view can have done: surroundings less patch, known to around_error."""
+    return ((x["contamination_error"] * contrast - x["around_error"]) * (1 - x["footprint_share"])
+            + x["height_error"] * x["footprint_per_m"] * contrast)
+
+
 def _brightness(x: Values) -> Any:
     return (x["brightness_k"] + x["gain_error"] * x["gain_reading"] + x["offset_error"]
-            + x["body_rate_error"])
+            + x["body_rate_error"] * x["body_rate_k_min"])

@@ -8,7 +8,7 @@ from typing import Any
 
 import numpy as np
 
-from surveykit.core import FloatArray, Input
+from surveykit.core import FloatArray, Input, IntArray
 from surveykit.evidence.conditions import Day
 from surveykit.intake.params import Channel
 from surveykit.intake.passes import Pass
@@ -22,7 +22,10 @@ class NotEvaluated(Exception):  # noqa: N818 - a refusal with a reason, not an e
 
 @dataclass(frozen=True)
 class PassValue:
-    """What a maker returns: raw and final value, scatter within the pass, inputs, flags."""
+    """What a maker returns: raw and final value, scatter within the pass, inputs, flags.
+
+    `dwells` are (start, stop [ns], value, u, records) of each placement of a contact pass.
+    """
 
     value_raw: float
     value: float
@@ -34,18 +37,22 @@ class PassValue:
     dwells: tuple[tuple[int, int, float, float, int], ...] = ()
 
 
-def series(day: Day, this: Pass, quantity: str) -> tuple[FloatArray, FloatArray]:
-    """Return time [ns] and readings [SI] of one channel at the pass's good records.
+def raw_series(day: Day, this: Pass, quantity: str) -> tuple[IntArray, FloatArray]:
+    """Return time [ns] and readings [SI], darks left in, of a channel at the pass's good records.
 
-    Readings of another logger are those nearest in time to the main logger's; dark readings
-    are taken off where the sheet has them.
+    Readings of another logger are those nearest in time to the main logger's.
     """
     channel = this.channels[quantity]
     records = day.quality.passes[this.name]
     log = day.records[channel.logger]
     index = records.index if channel.logger == records.logger else records.partners[channel.logger]
-    time = log.time_ns[index]
-    return time, day.without_dark(channel, time, log.channels[channel.column][index])
+    return log.time_ns[index], log.channels[channel.column][index]
+
+
+def series(day: Day, this: Pass, quantity: str) -> tuple[IntArray, FloatArray]:
+    """Return the same, dark readings taken off where the sheet has them."""
+    time, values = raw_series(day, this, quantity)
+    return time, day.without_dark(this.channels[quantity], time, values)
 
 
 def fixed(name: str, value: float) -> Input:
@@ -77,6 +84,18 @@ def zero(day: Day, channel: Channel, name: str, hidden_u: float) -> Input:
     return Input(name, 0.0, float(np.hypot(dark.u, hidden_u)),
                  f"{day.name}:{channel.logger}:{channel.column}:zero",
                  f"zero of {channel.logger}, {channel.column} (dark readings)")
+
+
+def pass_scope(day: Day, this: Pass) -> str:
+    """Return the scope id of what belongs to this pass alone."""
+    return f"{day.name}:pass:{this.name}"
+
+
+def in_range(values: FloatArray) -> FloatArray:
+    """Return a model's values, or refuse the pass where they lie outside the model's range."""
+    if not np.isfinite(values).all():
+        raise NotEvaluated("the readings lie outside the range of the model")
+    return values
 
 
 def surface_scope(word: str, surface: str, entry: Any) -> str:

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 import pandas as pd
+from scipy.special import ndtri
 
 from surveykit.core import FloatArray, Input, table
 from surveykit.evidence import models
@@ -16,6 +18,7 @@ from surveykit.statistics.draws import Draws, Result, Sampling, Summary, observe
 from surveykit.statistics.pooling import Pooled, pool
 
 SAMPLING = "scatter between passes and patches"
+MEASURED = re.compile(r"\d+(?=%| s of| W m-2| degrees)")  # numbers in a reason that passes share
 
 
 @dataclass(frozen=True)
@@ -86,6 +89,10 @@ def _group(campaign: str, key: tuple[str, str, str], passes: tuple[PassEstimate,
     for weight, p in zip(weights, used, strict=True):
         systematic += weight * models.deviations(p.model, p.inputs, draws,
                                                  f"{campaign}:pass:{p.this.name}")
+    if not np.isfinite(systematic).all():
+        return Group(campaign, surface, quantity, kind, passes, (), np.zeros(0), np.nan, np.nan,
+                     0, None, "not evaluated", ("the stated uncertainties of its inputs reach "
+                                                "beyond the range of the model",))
     at_least = float(np.sqrt(systematic.var() + (weights**2) @ (own**2)))
     notes = _notes(passes, used)
     rows = _budget(campaign, used, weights, pooled, float(np.sqrt((weights**2) @ (own**2))))
@@ -102,7 +109,7 @@ def _group(campaign: str, key: tuple[str, str, str], passes: tuple[PassEstimate,
         notes = ("two passes only", *notes)
     group = Group(campaign, surface, quantity, kind, passes, used, weights, value, at_least,
                   pooled.dof, result, "qualified" if notes else "ok", notes, rows)
-    _assert_floor(group, summarise(result, coverage))
+    _assert_floor(group, summarise(result, coverage), coverage)
     return group
 
 
@@ -149,7 +156,7 @@ def _budget(campaign: str, used: tuple[PassEstimate, ...], weights: FloatArray, 
     unit = {"temperature": "K"}.get(quantity, "1")
     base = {"campaign": campaign, "surface": used[0].this.surface, "quantity": quantity,
             "kind": used[0].kind, "unit": unit}
-    rows = [base | {"scope": scope, "source": inputs[scope].source, "u_input": inputs[scope].u,
+    rows: list[dict[str, Any]] = [base | {"scope": scope, "source": inputs[scope].source, "u_input": inputs[scope].u,
                     "contribution": abs(total)} for scope, total in sums.items()]
     scatter = pooled.u if pooled.dof > 0 else own
     rows.append(base | {
@@ -166,7 +173,7 @@ def _notes(passes: tuple[PassEstimate, ...], used: tuple[PassEstimate, ...]) -> 
     """Return what lowers the status of a surface: what half its passes or more are flagged with."""
     serious = ("calibration expired", "no calibration stated", "sun lower than",
                "small footprint share", "head radius not stated", "no dark reading",
-               "cloud in the sky model", "few placements")
+               "cloud in the sky model", "few placements", "higher than", "field of view")
     seen = [f for p in used for f in p.flags if f.startswith(serious)]
     flags = [f for f in dict.fromkeys(seen) if 2 * seen.count(f) >= len(used)]
     left = [p for p in passes if not p.evaluated]
@@ -178,18 +185,20 @@ def _notes(passes: tuple[PassEstimate, ...], used: tuple[PassEstimate, ...]) -> 
 
 
 def _why_not(passes: tuple[PassEstimate, ...]) -> tuple[str, ...]:
-    """Return the reason most passes share; the number in it is the mean over those passes."""
-    reasons = [p.note for p in passes]
-    best = max(dict.fromkeys(reasons), key=reasons.count)
-    return (best,)
+    """Return the reason most passes share; a number in it is the mean over those passes."""
+    kinds = [MEASURED.sub("#", p.note) for p in passes]
+    best = max(dict.fromkeys(kinds), key=kinds.count)
+    alike = [p.note for p, kind in zip(passes, kinds, strict=True) if kind == best]
+    means = iter(np.mean([[int(n) for n in MEASURED.findall(note)] for note in alike], axis=0))
+    return (MEASURED.sub(lambda _: f"{next(means):.0f}", alike[0]),)
 
 
-def _assert_floor(group: Group, summary: Summary) -> None:
-    floor = max((row["contribution"] for row in group.budget if ":gain" in row["scope"]),
-                default=0.0)
-    half = (summary.upper - summary.lower) / 2
-    assert half >= 1.5 * floor, (
-        f"{group.key}: half-width {half:g} is below its calibration's {floor:g}")
+def _assert_floor(group: Group, summary: Summary, coverage: float) -> None:
+    floor = max((row["contribution"] for row in group.budget
+                 if row["scope"].endswith((":gain", ":offset"))), default=0.0)
+    half, least = (summary.upper - summary.lower) / 2, float(ndtri((1 + coverage) / 2)) * floor
+    assert half >= 0.95 * least, (  # Monte Carlo may miss a quantile by a little
+        f"{group.key}: half-width {half:g} is below its calibration's {least:g}")
 
 
 def surface_table(found: Sequence[Group], coverage: float) -> pd.DataFrame:
@@ -232,10 +241,10 @@ def pass_tables(campaign: str, estimates: Sequence[PassEstimate]) -> dict[str, p
             "u_within": e.u_within, "n_records": e.n_records, "n_effective": e.n_effective,
             "zenith_deg": e.zenith_deg, "flags": "; ".join(e.flags), "status": e.status,
             "note": e.note})
-        for number, (start, stop, value, sd, n) in enumerate(e.dwells, start=1):
+        for number, (start, stop, value, u, n) in enumerate(e.dwells, start=1):
             dwells.append(where | {
                 "patch": this.patch, "dwell": number, "start_utc": start, "stop_utc": stop,
-                "value": display(value, quantity), "u": sd / np.sqrt(n), "n_records": n})
+                "value": display(value, quantity), "u": u, "n_records": n})
         for step, value in e.steps:
             steps.append(where | {
                 "quantity": quantity, "kind": e.kind, "unit": UNITS[quantity], "step": step,

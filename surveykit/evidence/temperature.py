@@ -16,6 +16,7 @@ from surveykit.evidence.parts import (
     calibration_flags,
     fixed,
     gain,
+    in_range,
     need,
     offset,
     series,
@@ -26,18 +27,19 @@ from surveykit.intake.passes import Pass
 from surveykit.physics.thermal import head_cooling_k
 from surveykit.statistics.series import mean_of_series
 
+FEW_PLACEMENTS = 3
+
 
 def stand_off(day: Day, this: Pass, sky: Sky) -> PassValue:
     """Return a stand-off pass: emissivity, modelled sky and what stands beside the sky."""
-    time, brightness = series(day, this, "brightness_temperature")
+    _, brightness = series(day, this, "brightness_temperature")
     inputs, flags = _infrared(day, this, brightness)
     site, settings = day.parameters.campaign.site, day.parameters.campaign.settings.temperature
-    air = need(day.weather("air_temperature", this), "air temperature during the pass")
     inputs |= _sky(day, this)
     inputs["sky_view"] = Input("sky_view", site.sky_view.value, site.sky_view.u,
                                f"{day.name}:sky view", "share of sky over the site")
     if site.walls is None:
-        walls = Input("walls_k", air.value, settings.walls_u_k, f"{day.name}:walls",
+        walls = Input("walls_k", inputs["air_k"].value, settings.walls_u_k, f"{day.name}:walls",
                       "temperature of what hides the sky, taken as the air's")
         emissivity = settings.walls_emissivity
         if site.sky_view.value < 1:
@@ -51,6 +53,8 @@ def stand_off(day: Day, this: Pass, sky: Sky) -> PassValue:
     inputs["walls_emissivity"] = fixed("walls_emissivity", emissivity)
     if sky.kind in ("mixed", "diffuse"):
         flags += ("cloud in the sky model",)
+    if this.height_m > settings.path_limit_m:
+        flags += (f"higher than {settings.path_limit_m:g} m: the air in between is not corrected",)
     return _along(models.stand_off, inputs, brightness, flags)
 
 
@@ -66,7 +70,7 @@ def contact(day: Day, this: Pass, sky: Sky) -> PassValue:
     inputs["body_k"] = replace(body, name="body_k")
     bore = channel.bore_emissivity
     inputs["bore_emissivity"] = Input("bore_emissivity", bore.value, bore.u,
-                                      f"{channel.logger}:bore", "emissivity of the bore")
+                                      f"{channel.gain_scope}:bore", "emissivity of the bore")
     inputs |= _sky(day, this)
     inputs["rim_gap_error"] = Input(
         "rim_gap_error", 0.0, settings.rim_gap_max * HALF_WIDTH,
@@ -86,12 +90,13 @@ def contact(day: Day, this: Pass, sky: Sky) -> PassValue:
         "cooling of the ground under the head, not corrected", "rectangular")
     flags += ("head cooling not corrected", "rim gap not corrected")
     per_record = _per_record(models.contact, inputs, brightness)
-    rows = [(int(time[a]), int(time[b - 1]), float(per_record[a:b].mean()),
-             float(per_record[a:b].std()), b - a) for a, b in spans]
-    means = np.array([row[2] for row in rows])
+    found = [mean_of_series(per_record[a:b], unit="K", method="contact") for a, b in spans]
+    rows = [(int(time[a]), int(time[b - 1]), one.value, one.u, one.n)
+            for (a, b), one in zip(spans, found, strict=True)]
+    means = np.array([one.value for one in found])
     n = means.size
-    u = float(means.std(ddof=1) / np.sqrt(n)) if n > 1 else float(per_record.std())
-    if n < 3:
+    u = float(means.std(ddof=1) / np.sqrt(n)) if n > 1 else float(per_record.std(ddof=1))
+    if n < FEW_PLACEMENTS:
         flags += ("few placements",)
     value = float(means.mean())
     raw = float(np.mean([brightness[a:b].mean() for a, b in spans]))
@@ -120,7 +125,7 @@ def longwave(day: Day, this: Pass, sky: Sky) -> PassValue:
             f"broadband emissivity of the surface ({entry.source})"),
     }
     nominal = {name: i.value for name, i in inputs.items()}
-    values = np.asarray(models.longwave({**nominal, "up": up, "down": down}))
+    values = in_range(np.asarray(models.longwave({**nominal, "up": up, "down": down})))
     raw = float(models.longwave({**nominal, "up": up.mean(), "emissivity_broadband": 1.0}))
     mean = mean_of_series(values, unit="K", method="longwave")
     return PassValue(raw, mean.value, mean.u, mean.n_eff, tuple(inputs.values()),
@@ -140,20 +145,22 @@ def _infrared(day: Day, this: Pass,
     entry = day.parameters.campaign.surfaces[this.surface].emissivity
     if entry is None:
         raise NotEvaluated(f"surfaces.{this.surface}.emissivity is missing")
+    if channel.band_um is None:
+        raise NotEvaluated(f"band_um of {channel.logger}, {channel.column} is missing")
     mean = float(brightness.mean())
-    low, high = channel.band_um or (8.0, 14.0)
+    low, high = channel.band_um
     inputs = [
-        fixed("brightness_k", mean), fixed("gain_reading", mean - 273.15 - channel.offset.value),
+        fixed("brightness_k", mean), fixed("gain_reading", mean - channel.offset.value),
         fixed("band_low_um", low), fixed("band_high_um", high),
         gain(channel, "gain_error"), offset(channel, "offset_error"),
         Input("emissivity", entry.value, entry.u, surface_scope("emissivity", this.surface, entry),
               f"emissivity of the surface ({entry.source})"),
     ]
-    rate = _body_rate_k_min(day, this, channel)
     settings = day.parameters.campaign.settings.temperature
-    inputs.append(Input("body_rate_error", 0.0, settings.body_rate_u_min * abs(rate),
-                        f"{day.name}:{channel.logger}:body rate",
-                        "warming or cooling of the instrument's housing"))
+    inputs += [fixed("body_rate_k_min", _body_rate_k_min(day, this, channel)),
+               Input("body_rate_error", 0.0, settings.body_rate_u_min,
+                     f"{day.name}:{channel.logger}:body rate",
+                     "warming or cooling of the instrument's housing")]
     return {i.name: i for i in inputs}, calibration_flags(day, [channel])
 
 
@@ -191,7 +198,7 @@ def _body_rate_k_min(day: Day, this: Pass, channel: Channel) -> float:
 def _per_record(model: models.Callable, inputs: dict[str, Input],
                 brightness: FloatArray) -> FloatArray:
     nominal = {name: i.value for name, i in inputs.items()}
-    return np.asarray(model({**nominal, "brightness_k": brightness}))
+    return in_range(np.asarray(model({**nominal, "brightness_k": brightness})))
 
 
 def _along(model: models.Callable, inputs: dict[str, Input], brightness: FloatArray,

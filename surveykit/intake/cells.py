@@ -35,6 +35,10 @@ def read_table(text: bytes, fields: int, time_at: int, numbers_at: Sequence[int]
     if not text:
         empty = Numbers(np.zeros(0), np.zeros(0, dtype=np.bool_))
         return pd.Series([], dtype=object), dict.fromkeys(numbers_at, empty)
+    if iso and layout.decimal == "," and b"." not in text:  # then the fast readers can be used
+        text = text.replace(b",", b".")
+        layout = layout.model_copy(update={
+            "decimal": ".", "missing": tuple(code.replace(",", ".") for code in layout.missing)})
     options: dict[str, Any] = {
         "header": None, "names": range(fields), "usecols": [time_at, *numbers_at],
         "index_col": False, "sep": layout.delimiter, "decimal": layout.decimal,

@@ -146,7 +146,9 @@ class _Row:
             self.faults.append(f"{name} {error}")
             return
         self.times[name] = time
-        if name == "start" and time.wall.date() not in (day, day + timedelta(days=1)):
+        # A full time may lie a day off: a station's UTC day reaches into the site's neighbour days.
+        away = abs((time.wall.date() - day).days)
+        if name == "start" and away > (1 if time.full else 0):
             self.faults.append(f"start {self.cells[name]!r} is not on the campaign's date {day}")
 
     def _order(self) -> None:
@@ -155,6 +157,9 @@ class _Row:
             self.faults.append(
                 f"stop {self.cells['stop']} is not after start {self.cells['start']}; a pass over "
                 f"midnight needs full times such as {start.wall.isoformat()}")
+        elif start and stop and stop.time_ns - start.time_ns > 86400 * NS:
+            self.faults.append(f"stop {self.cells['stop']} is more than a day after start "
+                               f"{self.cells['start']}")
 
     def _texts(self, kind: str) -> dict[str, Any]:
         cells = self.cells

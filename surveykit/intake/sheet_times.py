@@ -7,10 +7,11 @@ from dataclasses import dataclass
 from datetime import UTC, date, datetime, timedelta
 from zoneinfo import ZoneInfo
 
-_WALL = re.compile(r"(\d{1,2}):(\d{2})(?::(\d{2})(?:[.,](\d{1,6}))?)?(?:\s*([AaPp])\.?[Mm]\.?)?")
+_WALL = re.compile(r"(\d{1,2}):(\d{2})(?::(\d{2})(?:[.,](\d{1,6}))?)?(?:\s*([AaPp])\.?[Mm]\.?)?",
+                   re.ASCII)
 _ISO = re.compile(r"\d{4}-\d{2}-\d{2}[T ]\d{2}:\d{2}(:\d{2}(?:[.,]\d{1,6})?)?"
-                  r"\s*(Z|[+-]\d{2}:?\d{2})?")
-_FRACTION = re.compile(r"\d*[.,]\d+")
+                  r"\s*(Z|[+-]\d{2}:?\d{2})?", re.ASCII)
+_FRACTION = re.compile(r"\d*[.,]\d+", re.ASCII)
 FORMS = "H:MM:SS, or a full time such as 2025-07-24T14:05:00"
 
 
@@ -57,6 +58,8 @@ def read_time(text: str, day: date, zone: str) -> SheetTime:
     if iso:
         try:
             read = datetime.fromisoformat(re.sub(r"\s+(?=[Z+-])", "", text))
+            if not 1950 <= read.year <= 2199:
+                raise ValueError
         except ValueError:
             raise ValueError(f"{text!r} is no time; write {FORMS}") from None
         if read.tzinfo is None:

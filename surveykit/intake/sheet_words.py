@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from surveykit.intake.params.settings import TemperatureSettings
 
 NAN = float("nan")
-_NUMBER = re.compile(r"[+-]?(\d+[.,]?\d*|[.,]\d+)([eE][+-]?\d+)?")
+_NUMBER = re.compile(r"[+-]?(\d+[.,]?\d*|[.,]\d+)([eE][+-]?\d{1,2})?", re.ASCII)
 # quantity: scale and shift to SI, lowest and highest reading, unit, setting that gives u [SI]
 WEATHER: dict[str, tuple[float, float, float, float, str, str]] = {
     "air_temperature": (1.0, 273.15, -60.0, 60.0, "degC", "air_temperature_u_k"),

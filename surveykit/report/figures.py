@@ -6,7 +6,7 @@ as a tuple; where there is nothing to draw, the drawing holds only a sentence th
 
 from __future__ import annotations
 
-from .figures_records import budget_plot, budget_plots, day_timeline, ledger_plot
+from .figures_records import budget_plot, day_timeline, ledger_plot
 from .figures_results import (
     change_plot,
     change_plots,
@@ -18,7 +18,7 @@ from .figures_results import (
 from .style import Drawing, show
 
 __all__ = [
-    "Drawing", "budget_plot", "budget_plots", "change_plot", "change_plots", "day_timeline",
+    "Drawing", "budget_plot", "change_plot", "change_plots", "day_timeline",
     "difference_matrices", "difference_matrix", "interval_plot", "interval_plots", "ledger_plot",
     "show",
 ]

@@ -95,7 +95,9 @@ def ledger_plot(ledger: pd.DataFrame) -> Drawing:
                                                  aggfunc="sum", fill_value=0)
     outer = [key for key in ("used", "outside passes") if key in counts]
     excluded = counts.drop(columns=outer).sum().sort_values(ascending=False, kind="stable").index
-    counts = _merged(counts[[*outer[:1], *excluded, *outer[1:]]], "excluded: other reasons")
+    counts = pd.concat([counts[outer[:1]],
+                        _merged(counts[excluded], "excluded: other reasons", MANY - 2),
+                        counts[outer[1:]]], axis="columns")
     totals = counts.sum(axis="columns")
     shares = counts.div(totals.where(totals > 0), axis="index").fillna(0.0)
     names = [f"{name}\n{w.count(int(total))} records" for name, total in totals.items()]
@@ -106,15 +108,15 @@ def ledger_plot(ledger: pd.DataFrame) -> Drawing:
     return Drawing(drawing, " ".join(told), "What became of the records of each logger.")
 
 
-def budget_plots(budget: pd.DataFrame, labels: Labels = None) -> tuple[Drawing, ...]:
+def budget_plot(budget: pd.DataFrame, labels: Labels = None) -> tuple[Drawing, ...]:
     """Return one plot of variance shares a quantity of the table `budget`."""
     quantities = dict.fromkeys(quantity for (quantity, _), _ in w.families(budget))
-    return tuple(budget_plot(budget, quantity, labels) for quantity in quantities) or (
+    return tuple(_budget_of(budget, quantity, labels) for quantity in quantities) or (
         Drawing(None, "No uncertainty budget could be drawn up, so there are no shares to draw."),)
 
 
 @styled
-def budget_plot(budget: pd.DataFrame, quantity: str, labels: Labels = None) -> Drawing:
+def _budget_of(budget: pd.DataFrame, quantity: str, labels: Labels) -> Drawing:
     """Draw for each surface and kind of one quantity the shares of variance by source."""
     known = budget[(budget["quantity"] == quantity) & budget["share"].notna()]
     if known.empty:
@@ -126,7 +128,7 @@ def budget_plot(budget: pd.DataFrame, quantity: str, labels: Labels = None) -> D
     order = [(kind, name) for (_, kind), block in w.families(known)
              for name in dict.fromkeys(block["surface"])]
     ranked = shares.sum().sort_values(ascending=False, kind="stable").index
-    shares = _merged(shares.reindex(order)[ranked], "other sources")
+    shares = _merged(shares.reindex(order)[ranked], "other sources", MANY)
     names = [shorten(w.label(name, labels)) + (f"\n{kind}" if kind else "")
              for kind, name in order]
     told = [f"{w.label(name, labels)}{f' ({kind})' if kind else ''} "
@@ -139,14 +141,16 @@ def budget_plot(budget: pd.DataFrame, quantity: str, labels: Labels = None) -> D
 
 
 def _stack(shares: pd.DataFrame, names: list[str], title: str) -> Figure:
-    figure, (axis,) = panels(1, [0.95 + 0.2 * ((len(shares.columns) + 1) // 2)
+    wide = max(len(str(key)) for key in shares) > 25
+    lines = sum(1 + (len(str(key)) > 40) for key in shares)
+    figure, (axis,) = panels(1, [0.75 + 0.19 * (lines if wide else (lines + 1) // 2)
                                  + 0.44 * len(shares)])
     left = np.zeros(len(shares))
     rows = np.arange(len(shares))[::-1]
     for place, key in enumerate(shares):
         part = 100 * shares[key].to_numpy(float)
         axis.barh(rows, part, left=left, height=0.66, color=PALETTE[place % 8], edgecolor=PAPER,
-                  linewidth=0.8, hatch=HATCHES[place % 8], label=str(key))
+                  linewidth=0.8, hatch=HATCHES[place % 8], label=shorten(str(key), 40))
         for y, start, size in zip(rows, left, part, strict=True):
             if size >= 12:
                 axis.text(start + size / 2, y, f"{size:.0f}", ha="center", va="center",
@@ -158,19 +162,18 @@ def _stack(shares: pd.DataFrame, names: list[str], title: str) -> Figure:
     axis.set_ylim(-0.5, len(shares) - 0.5)
     axis.set_xlabel(title)
     axis.tick_params(axis="y", length=0)
-    wide = max(len(str(key)) for key in shares) > 25
-    axis.legend(loc="lower left", bbox_to_anchor=(0, 1), ncols=1 if wide else 2, borderaxespad=0.3,
-                handlelength=1.6, columnspacing=1.2)
+    figure.legend(loc="outside upper left", ncols=1 if wide else 2, handlelength=1.6,
+                  columnspacing=1.2, borderaxespad=0)
     sns.despine(ax=axis, left=True)
     return figure
 
 
-def _merged(table: pd.DataFrame, rest: str) -> pd.DataFrame:
+def _merged(table: pd.DataFrame, rest: str, most: int) -> pd.DataFrame:
     """Keep the first columns and add the rest up into one."""
-    if len(table.columns) <= MANY + 1:
+    if len(table.columns) <= most + 1:
         return table
-    kept = table.iloc[:, :MANY].copy()
-    kept[rest] = table.iloc[:, MANY:].sum(axis="columns")
+    kept = table.iloc[:, :most].copy()
+    kept[rest] = table.iloc[:, most:].sum(axis="columns")
     return kept
 
 

@@ -148,6 +148,6 @@ def _row(columns: Sequence[Column], row: Row) -> str:
 
 def _lead(line: str) -> str:
     subject, colon, rest = line.partition(": ")
-    if colon and len(subject) <= 60:
+    if colon and len(subject) <= 90:
         return f"<strong>{escape(subject)}:</strong> {escape(rest)}"
     return escape(line)

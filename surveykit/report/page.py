@@ -19,7 +19,7 @@ from nbconvert import HTMLExporter
 from nbformat import NotebookNode
 from traitlets.config import Config
 
-from . import sentences
+from . import sentences, standing
 from . import tables as t
 from . import wording as w
 from .markup import Html, bullets, paragraph
@@ -172,7 +172,7 @@ def _summary(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> li
         ("narrowing", "What would narrow the uncertainty most", [bullets(
             sentences.narrowing(tables["budget"], labels),
             empty="No uncertainty budget could be drawn up.")]),
-        ("cautions", "Cautions", [bullets(sentences.cautions(surfaces, labels))]),
+        ("cautions", "Cautions", [bullets(standing.cautions(surfaces, labels))]),
         ("not-corrected", "What is not corrected yet", [bullets(
             [*facts.get("not_corrected", [])],
             empty="This run names no correction as missing.")]),
@@ -195,14 +195,14 @@ def _appendix(facts: Mapping[str, Any]) -> list[dict[str, Any]]:
     rerun = Html(f"<pre>{escape(facts.get('rerun') or 'Not handed over.')}</pre>\n")
     return [
         {"id": "reading", "heading": "How to read the numbers",
-         "body": [bullets(sentences.reading(facts))]},
+         "body": [bullets(standing.reading(facts))]},
         {"id": "instruments", "heading": "Instruments and calibrations",
          "body": [t.instrument_table(facts.get("instruments", []))]},
         {"id": "settings", "heading": "Settings",
          "body": [t.settings_table(facts.get("settings", []))]},
         {"id": "inputs", "heading": "Input files",
          "body": [t.inputs_table(facts.get("inputs", []))]},
-        {"id": "versions", "heading": "Programs", "body": [paragraph(sentences.programs(facts))]},
+        {"id": "versions", "heading": "Programs", "body": [paragraph(standing.programs(facts))]},
         {"id": "rerun", "heading": "How to run it again", "body": [
             paragraph("From the project’s folder, with the same input files and programs, this "
                       "gives the same page and tables:"), rerun]},

@@ -56,8 +56,9 @@ def two_kinds(surfaces: pd.DataFrame, labels: Labels = None) -> list[str]:
         kinds = block.groupby("surface", sort=False)["kind"].unique()
         twice = [w.label(str(name), labels) for name, found in kinds.items() if len(found) > 1]
         if twice:
-            lines.append(f"{w.listing(twice)} {'has' if len(twice) == 1 else 'have'} more than one "
-                         f"{quantity}, kept apart because {reason}.")
+            who = w.listing(twice) if len(twice) < 4 else f"{len(twice)} surfaces"
+            lines.append(f"{who} {'has' if len(twice) == 1 else 'have'} more than one {quantity}, "
+                         f"kept apart because {reason}.")
     return lines
 
 
@@ -74,9 +75,12 @@ def differs(differences: pd.DataFrame, facts: Facts) -> list[str]:
             parts[0] += f", the largest: {pair_sentence(largest, labels, facts)[:-1]}"
         for verdict in ("higher, small", "lower, small", "equivalent", "no difference shown"):
             rows = judged[judged["verdict"] == verdict].to_dict("records")
-            parts += [pair_sentence(row, labels, facts)[:-1] for row in rows[:3]]
-            if len(rows) > 3:
-                parts.append(f"{w.plural(len(rows) - 3, 'more pair')}: {verdict}")
+            if len(rows) <= 2:
+                parts += [pair_sentence(row, labels, facts)[:-1] for row in rows]
+            else:
+                widest = max(rows, key=lambda row: row["could_have_missed"])
+                missed = _missed(widest) if verdict == "no difference shown" else ""
+                parts.append(f"{w.plural(len(rows), 'pair')}: {verdict}{missed}")
         if len(judged):
             lines.append(f"{w.quantity_text(quantity, kind)}: {'; '.join(parts)}.")
     return lines
@@ -103,15 +107,20 @@ def pair_sentence(row: Any, labels: Labels, facts: Facts) -> str:
 def changed(changes: pd.DataFrame, facts: Facts) -> list[str]:
     """Return a sentence for each change shown, then the others gathered by verdict and date."""
     labels, lines = facts.get("surfaces"), []
-    gathered: dict[tuple[str, str], list[str]] = defaultdict(list)
+    gathered: dict[tuple[str, str], dict[str, list[str]]] = {}
     for row in changes.to_dict("records"):
         if row["verdict"] in ("equivalent", "no difference shown"):
-            missed = _missed(row) if row["verdict"] == "no difference shown" else ""
-            gathered[row["verdict"], row["earlier"]].append(f"{_of_surface(row, labels)}{missed}")
+            missed = _missed(row, "") if row["verdict"] == "no difference shown" else ""
+            gathered.setdefault((row["verdict"], row["earlier"]), {}).setdefault(
+                w.inside_sentence(row["quantity"], row["kind"]), []).append(
+                f"{w.label(row['surface'], labels)}{missed}")
         elif row["verdict"] not in ("", "not evaluated", "not comparable"):
             lines.append(change_sentence(row, facts))
-    return lines + [f"{w.sentence_case(verdict)[:-1]} since {earlier}: {', '.join(items)}."
-                    for (verdict, earlier), items in gathered.items()]
+    for (verdict, earlier), items in gathered.items():
+        told = "; ".join(f"{what} of {w.listing(names)}" for what, names in items.items())
+        size = ", with what could have been missed" if verdict == "no difference shown" else ""
+        lines.append(f"{w.sentence_case(verdict)[:-1]} since {earlier}{size}: {told}.")
+    return lines
 
 
 def change_sentence(row: Any, facts: Facts) -> str:
@@ -194,58 +203,6 @@ def narrowing(budget: pd.DataFrame, labels: Labels = None) -> list[str]:
     return lines
 
 
-def cautions(surfaces: pd.DataFrame, labels: Labels = None) -> list[str]:
-    """Return the cautions, led by the hottest upper end among the surfaces."""
-    hot = surfaces[(surfaces["quantity"] == "temperature") & surfaces["value"].notna()]
-    lines = []
-    if len(hot):
-        top = hot.assign(end=hot["upper"].fillna(hot["value"]))
-        row = top.iloc[int(top["end"].argmax())]
-        what = "value" if pd.isna(row["upper"]) else "upper end of an interval"
-        lines.append(f"Hot surfaces: the highest {what} is "
-                     f"{w.with_unit(w.number(row['end'], 1), row['unit'])} "
-                     f"({w.label(row['surface'], labels)}), a mean over an area: single spots are "
-                     "hotter. What contact is acceptable, for whom and how long, is for local "
-                     "codes and licensed practice to say.")
-    return [
-        *lines,
-        "Heat, sun and traffic: work outdoors, on roofs and beside traffic follows local rules and "
-        "the people licensed to apply them; nothing here replaces them.",
-        "This report certifies nothing: it states what was measured on one day with its "
-        "uncertainty. It holds for the patches, times and conditions named, and judges no code, "
-        "standard or contract.",
-    ]
-
-
-def reading(facts: Facts) -> list[str]:
-    """Say how the numbers are written and made, with the published methods."""
-    coverage = w.percent(facts["coverage"]) if facts.get("coverage") else "the stated coverage"
-    return [
-        f"Value ± U: U is the expanded uncertainty, half the interval that covers {coverage}; "
-        "where the two arms of an interval differ by more than a fifth, both ends are printed. The "
-        "page rounds temperatures to 0.1 and albedo and NDVI to 0.001; the CSV tables keep every "
-        "digit.",
-        "Uncertainty: each uncertain input is drawn "
-        f"{w.count(facts.get('draws') or 0)} times (seed {facts.get('seed', 'not stated')}) and "
-        "carried through to the result; an error that two results share is the same draw in both, "
-        "so it cancels in their difference as far as it should (JCGM 100:2008; JCGM 101:2008).",
-        "Passes: the pass is the statistical unit. Records within a pass are correlated, so they "
-        "count for fewer (Geyer 1992); passes are pooled by weights that include how much they "
-        "differ (Paule and Mandel 1982), with the interval of Hartung and Knapp (2001) never below "
-        "what the passes’ own uncertainties give (Röver, Knapp and Friede 2015).",
-        "Verdicts: higher and lower mean that the interval excludes zero after allowance for many "
-        "comparisons (Holm 1979) and that the size is at least the relevant one; no difference "
-        "shown is not proof of none, so it comes with the size that could have been missed.",
-    ]
-
-
-def programs(facts: Facts) -> str:
-    """Name the programs that computed the numbers, with their versions."""
-    versions = facts.get("versions") or {}
-    named = w.listing(f"{name} {version}" for name, version in versions.items())
-    return f"Computed by {named}." if versions else "No version was handed over."
-
-
 def _of_surface(row: Any, labels: Labels) -> str:
     return (f"{w.inside_sentence(row['quantity'], row['kind'])} of "
             f"{w.label(row['surface'], labels)}")
@@ -286,12 +243,12 @@ def _by_at_least(quantity: str, facts: Facts) -> str:
     return f" by at least the relevant {limit}" if limit else ""
 
 
-def _missed(row: Any) -> str:
+def _missed(row: Any, words: str = "could have missed up to ") -> str:
     missed = row["could_have_missed"]
     if pd.isna(missed):
         return ""
     size = w.with_unit(w.expanded(missed, w.places(row["quantity"])), row["unit"])
-    return f" (could have missed up to {size})"
+    return f" ({words}{size})"
 
 
 def _because(note: str) -> str:

@@ -64,7 +64,7 @@ def frame_table(frame: pd.DataFrame, caption: str, columns: Sequence[str] | None
     """Return any frame as a table, numbers to four significant digits, underscores as spaces."""
     shown = frame if columns is None else frame[[*columns]]
     numeric = {name: pd.api.types.is_numeric_dtype(shown[name]) for name in shown}
-    heads = [Column(w.sentence_case(str(name).replace("_", " "))[:-1],
+    heads = [Column(w.sentence_case(str(name).replace("_", " "))[:-1].replace("Ndvi", "NDVI"),
                     "number" if numeric[name] else "text") for name in shown]
     rows = [[_any_text(value) for value in row]
             for row in shown.itertuples(index=False, name=None)]
@@ -84,4 +84,6 @@ def _any_text(value: Any) -> str:
         return f"{value:%Y-%m-%d %H:%M:%S}" + (" UTC" if str(value.tz) == "UTC" else "")
     if value is None or value is pd.NaT:
         return ""
+    if isinstance(value, int) and not isinstance(value, bool):
+        return w.count(value)
     return w.plain(value)

@@ -57,9 +57,9 @@ def clock_table(clocks: pd.DataFrame) -> Html:
     rows = [[row["logger"], row["method"], w.number(row["offset_s"], 1, sign=True),
              w.expanded(row["u_s"], 1), w.number(row["drift_ppm"], 1, sign=True), row["status"],
              row["note"]] for row in clocks.to_dict("records")]
-    heads = [Column("Logger"), Column("Method"), Column("Offset added, s", "number"),
-             Column("u, s", "number"), Column("Drift, 10⁻⁶", "number"), Column("Status"),
-             Column("Note", "long")]
+    heads = [Column("Logger"), Column("Method"), Column(f"Offset added,{w.NO_BREAK}s", "number"),
+             Column(f"u,{w.NO_BREAK}s", "number"), Column(f"Drift,{w.NO_BREAK}10⁻⁶", "number"),
+             Column("Status"), Column("Note", "long")]
     return table("Clocks: seconds added to each logger’s time to reach UTC, with the standard "
                  "uncertainty u.", heads, rows, empty="No logger was read.")
 

@@ -56,7 +56,7 @@ def surface_table(surfaces: pd.DataFrame, labels: Labels = None) -> Html:
         values = _values(block)
         groups.append((_heading(quantity, kind, block), [
             [w.label(row["surface"], labels), values[index], w.number(row["k"], 2),
-             w.number(row["dof"], 0), w.count(row["n_patches"]), w.count(row["n_passes"]),
+             _dof(row["dof"]), w.count(row["n_patches"]), w.count(row["n_passes"]),
              w.count(row["n_records"]), _word(row["status"], _note(row))]
             for index, row in block.iterrows()]))
     heads = [Column("Surface"), _with_u("Value"), Column("k", "number"),
@@ -70,19 +70,23 @@ def pass_table(passes: pd.DataFrame, labels: Labels = None, time_zone: str = "UT
     """Return one row a pass, grouped by quantity: when, value, uncertainty within the pass."""
     groups: list[Group] = []
     for (quantity, kind), block in w.families(passes.sort_values(["start_utc", "pass"])):
-        groups.append((_heading(quantity, kind, block), [
+        shared = _shared_flags(block)
+        groups.append((_heading(quantity, kind, block)
+                       + (f"; every pass: {', '.join(shared)}" if shared else ""), [
             [row["pass"], w.label(row["surface"], labels),
              f"{row['start_utc'].tz_convert(time_zone):%H:%M:%S}",
              f"{row['stop_utc'].tz_convert(time_zone):%H:%M:%S}",
              w.number(row["value"], w.places(quantity)) or NONE,
              w.expanded(row["u_within"], w.places(quantity) + 1), w.count(row["n_records"]),
              w.number(row["n_effective"], 0), w.number(row["zenith_deg"], 0),
-             _word(row["status"], "; ".join(filter(None, (row["note"], row["flags"]))))]
+             _word(row["status"], "; ".join(filter(None, (row["note"], *(
+                 flag for flag in row["flags"].split("; ") if flag not in shared)))))]
             for row in block.to_dict("records")]))
     heads = [Column("Pass", "short"), Column("Surface"), Column("From", "number"),
-             Column("To", "number"), Column("Value", "number"), Column("u within", "number"),
-             Column("Records", "number"), Column("Effective", "number"),
-             Column("Zenith, °", "number"), Column("Status", "long")]
+             Column("To", "number"), Column("Value", "number"),
+             Column(f"u{w.NO_BREAK}within", "number"), Column("Records", "number"),
+             Column("Effective", "number"),
+             Column(f"Zenith,{w.NO_BREAK}°", "number"), Column("Status", "long")]
     return grouped_table(
         f"Passes in order of time ({time_zone}), after trimming. u within: standard uncertainty of "
         "the pass mean from its own records; effective: records reduced for their correlation; "
@@ -173,6 +177,17 @@ def _difference_unit(unit: str) -> str:
 def _coverage(frame: pd.DataFrame) -> str:
     levels = [f"{100 * level:g}{w.NO_BREAK}%" for level in sorted({*frame["coverage"].dropna()})]
     return "coverage " + w.listing(levels or ["not stated"])
+
+
+def _shared_flags(passes: pd.DataFrame) -> list[str]:
+    """The flags that all of several passes carry, in their order; told once in the heading."""
+    flags = [text.split("; ") for text in passes["flags"]]
+    shared = {*flags[0]}.intersection(*flags) if len(flags) > 1 else set()
+    return [flag for flag in flags[0] if flag and flag in shared]
+
+
+def _dof(dof: float) -> str:
+    return f">{w.NO_BREAK}1000" if 1000 < dof < math.inf else w.number(dof, 0)
 
 
 def _with_u(name: str) -> Column:

@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+import tempfile
 from datetime import UTC, datetime
+from pathlib import Path
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 from invented import ALBEDO, COLUMNS, PASS, WEATHER, parameters, text_of, write
 from numpy.testing import assert_allclose
@@ -150,6 +152,8 @@ def test_weather_that_cannot_be_meant(tmp_path, changed, sentence):
     ({"start": "13:00 PM"}, "with AM or PM hours run from 1 to 12"),
     ({"start": "2025-07-24T25:00"}, "is no time; write"),
     ({"stop": "12:00:00"}, "stop 12:00:00 is not after start 12:00:00"),
+    ({"stop": "2025-07-25T12:01:00"}, "is more than a day after start 12:00:00"),
+    ({"height_cm": "1e400"}, "height_cm '1e400' is no number"),
     ({"start": "2025-06-12T12:00:00"}, "is not on the campaign's date 2025-07-24"),
     ({"mode": "stand-off"}, "a stand-off pass needs height_cm"),
     ({"quantity": "albedo", "mode": ""}, "an albedo pass needs height_cm"),
@@ -272,3 +276,18 @@ def test_a_file_that_is_no_sheet(tmp_path, data, sentence):
 def test_a_missing_sheet_is_refused(tmp_path):
     with pytest.raises(InputError, match=r"none.csv: the field sheet cannot be read"):
         read_sheet(tmp_path / "none.csv", parameters(tmp_path))
+
+
+@settings(max_examples=100, deadline=None)
+@given(st.dictionaries(st.sampled_from(COLUMNS), st.sampled_from(
+    ["", "0", "-1", "1e400", "nan", "\u0663", "\u2028", '"', "=1+1", "12:61", "24:00:00",
+     "2025-07-24T24:00", "2025-02-30T12:00:00", "9999-12-31T23:59:59+00:00", "0001-01-01T00:00:00",
+     "0.99999999", "weather", "dark", "stand-off", "ndvi", "thermal", "x" * 130]), max_size=6))
+def test_whatever_a_row_holds_it_is_read_or_refused_by_its_number(cells):
+    with tempfile.TemporaryDirectory() as folder:
+        try:
+            sheet = read(Path(folder), {**PASS, **cells})
+        except InputError as error:
+            assert all(fault.startswith("sheet.csv") for fault in error.faults)  # noqa: PT017
+        else:
+            assert all(entry.row == 2 for entry in sheet.entries)

@@ -141,6 +141,19 @@ def test_missing_codes_count_as_text_and_as_numbers(tmp_path):
                     [np.nan, 274.65])
 
 
+def test_a_point_in_a_log_with_decimal_commas_is_no_number(tmp_path):
+    # 1.234 may be meant as one thousand and more: never guessed
+    comma = {"delimiter": ";", "decimal": ","}
+    text = "time;target;body\n2025-07-24T11:00:00,5;40,25;1.234\n2025-07-24T11:00:01,5;x;30\n"
+    records = read(tmp_path, text, layout=comma)
+    assert_array_equal(records.unreadable["body"], [True, False])
+    assert_array_equal(records.unreadable["target"], [False, True])
+    assert_array_equal(records.time_ns, START_NS + np.array([500, 1500]) * 10**6)
+    clean = read(tmp_path, text.replace("1.234", "1,234"), layout=comma, name="clean.csv")
+    assert_allclose(clean.channels["body"], [274.384, 303.15])
+    assert_allclose(clean.channels["target"], [313.4, np.nan])
+
+
 def test_a_cell_that_is_no_number_is_unreadable_not_missing(tmp_path):
     text = CLEAN.replace("40.50", "4o.50").replace("40.75", "inf").replace("30.2", "1,000")
     records = read(tmp_path, text.replace("1,000", "nan"))

@@ -26,7 +26,7 @@ tables.show(tables.check_table(t["checks"], labels))
 print("<b>3</b> loggers & their files")"""
 SECOND = """figures.show(figures.interval_plots(t["surfaces"], labels))
 tables.show(tables.surface_table(t["surfaces"], labels))
-figures.show(figures.budget_plots(t["budget"], labels))
+figures.show(figures.budget_plot(t["budget"], labels))
 tables.show(tables.budget_table(t["budget"], labels))
 figures.show(figures.difference_matrices(t["differences"], labels))
 tables.show(tables.difference_table(t["differences"], labels))

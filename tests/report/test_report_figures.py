@@ -19,7 +19,7 @@ ALL = {
     "intervals": lambda t, lab: figures.interval_plots(t["surfaces"], lab),
     "matrices": lambda t, lab: figures.difference_matrices(t["differences"], lab),
     "changes": lambda t, lab: figures.change_plots(t["changes"], {"temperature": 1.0}, lab),
-    "budget": lambda t, lab: figures.budget_plots(t["budget"], lab),
+    "budget": lambda t, lab: figures.budget_plot(t["budget"], lab),
     "ledger": lambda t, lab: (figures.ledger_plot(t["ledger"]),),
     "day": lambda t, lab: (figures.day_timeline(
         t["passes"], sample.sky(), sample.weather(), "Europe/Lisbon", lab),),
@@ -130,16 +130,16 @@ def test_shares_of_records_add_up_to_a_hundred() -> None:
 
 def test_many_reasons_are_merged_without_losing_a_record() -> None:
     rows = pd.concat([T["ledger"].iloc[[1]].assign(reason=f"reason {n}", records=10 + n)
-                      for n in range(20)] + [T["ledger"].iloc[[0]]])
-    axis = figure_of(figures.ledger_plot(rows)).axes[0]
-    assert sum(bar.get_width() for bar in axis.patches) == pytest.approx(100.0)
-    names = [text.get_text() for text in axis.get_legend().get_texts()]
-    assert len(names) == 7
-    assert "excluded: other reasons" in names
+                      for n in range(20)] + [T["ledger"].iloc[[0, 3]]])
+    figure = figure_of(figures.ledger_plot(rows))
+    assert sum(bar.get_width() for bar in figure.axes[0].patches) == pytest.approx(100.0)
+    names = [text.get_text() for text in figure.legends[0].get_texts()]
+    assert names == ["used", *(f"excluded: reason {n}" for n in (19, 18, 17, 16)),
+                     "excluded: other reasons", "outside passes"]
 
 
 def test_budget_keeps_each_surfaces_shares() -> None:
-    drawings = figures.budget_plots(T["budget"], LABELS)
+    drawings = figures.budget_plot(T["budget"], LABELS)
     axis = figure_of(drawings[2]).axes[0]  # NDVI: shares 0.62, 0.25, 0.13
     assert sorted({round(bar.get_width(), 6) for bar in axis.patches}) == [13.0, 25.0, 62.0]
     assert f"Lawn 62{NO_BREAK}% between passes" in drawings[2].alt

@@ -4,10 +4,11 @@ from __future__ import annotations
 
 import re
 
+import pandas as pd
 import pytest
 import sample
 
-from surveykit.report import sentences
+from surveykit.report import sentences, standing
 from surveykit.report.wording import NO_BREAK
 
 FACTS = sample.facts()
@@ -105,6 +106,27 @@ def test_what_differs_counts_judged_pairs_and_names_the_largest() -> None:
     assert "Coated court is lower than Pale concrete slabs by 0.014" in lines[2]
 
 
+def test_changes_not_shown_are_gathered_by_quantity() -> None:
+    changes = sample.tables()["changes"]
+    row = changes[changes["verdict"] == "no difference shown"].iloc[[0]]
+    more = [row.assign(surface=name, could_have_missed=size) for name, size in [
+        ("lawn", 4.84), ("worn-asphalt", 5.91)]]
+    ndvi = row.assign(quantity="ndvi", kind="", unit="1", could_have_missed=0.0291)
+    lines = sentences.changed(pd.concat([*more, ndvi]), FACTS)
+    assert [plain(line) for line in lines] == [
+        f"No difference shown since {SINCE}, with what could have been missed: temperature "
+        "(contact) of Lawn (4.8 K) and Worn asphalt (5.9 K); NDVI of Pale concrete slabs (0.029)."]
+
+
+def test_many_pairs_without_a_difference_are_counted() -> None:
+    rows = sample.tables()["differences"]
+    row = rows[rows["verdict"] == "no difference shown"].iloc[[0]]
+    three = pd.concat([row.assign(could_have_missed=size) for size in (2.0, 4.72, 3.0)])
+    assert [plain(line) for line in sentences.differs(three, FACTS)] == [
+        "Temperature, contact: 0 of 3 pairs differ by at least the relevant 1.0 K; 3 pairs: no "
+        "difference shown (could have missed up to 4.7 K)."]
+
+
 def test_not_evaluated_is_gathered_by_reason() -> None:
     lines = sentences.not_evaluated(sample.tables(), sample.LABELS)
     assert lines[0] == (
@@ -127,19 +149,19 @@ def test_narrowing_names_the_largest_mean_share() -> None:
 
 
 def test_cautions_defer_and_lead_with_the_hottest_upper_end() -> None:
-    lines = sentences.cautions(sample.tables()["surfaces"], sample.LABELS)
+    lines = standing.cautions(sample.tables()["surfaces"], sample.LABELS)
     assert "59.6" in lines[0]  # 58.34 + 1.22
     assert "local codes and licensed practice" in lines[0]
     assert lines[-1].startswith("This report certifies nothing")
-    assert len(sentences.cautions(sample.empty_tables()["surfaces"])) == 2
+    assert len(standing.cautions(sample.empty_tables()["surfaces"])) == 2
 
 
 def test_no_sentence_claims_more_than_was_measured() -> None:
     tables = sample.tables()
     lines = [*sentences.measured(tables, FACTS), *sentences.changed(tables["changes"], FACTS),
-             *sentences.differs(tables["differences"], FACTS), *sentences.reading(FACTS),
+             *sentences.differs(tables["differences"], FACTS), *standing.reading(FACTS),
              *sentences.not_evaluated(tables), *sentences.narrowing(tables["budget"]),
-             *sentences.cautions(tables["surfaces"]), *sentences.two_kinds(tables["surfaces"]),
+             *standing.cautions(tables["surfaces"]), *sentences.two_kinds(tables["surfaces"]),
              *sentences.value_only(tables["surfaces"])]
     assert len(lines) > 25
     for line in lines:

@@ -97,6 +97,21 @@ def test_times_are_those_of_the_named_zone() -> None:
     assert rows[2][:4] == ["W1-contact-1", "Worn asphalt", "11:05:00", "11:08:05"]
 
 
+def test_what_every_pass_shares_is_told_once_in_the_heading() -> None:
+    passes = sample.tables()["passes"]
+    passes = passes[passes["quantity"] == "ndvi"].copy()
+    passes["flags"] = ["no swap; few effective records"] + ["no swap"] * (len(passes) - 1)
+    rows = cells(t.pass_table(passes))
+    assert rows[1] == ["NDVI; every pass: no swap"]
+    assert [row[-1] for row in rows[2:]] == ["ok; few effective records"] + ["ok"] * (
+        len(passes) - 1)
+
+
+def test_many_degrees_of_freedom_print_as_more_than_a_thousand() -> None:
+    frame = sample.tables()["surfaces"].iloc[[0, 1, 2]].assign(dof=[135685.2, 1000.0, 4.4])
+    assert [row[3] for row in cells(t.surface_table(frame))[2:]] == ["> 1000", "1000", "4"]
+
+
 def test_ledger_shares_are_of_each_loggers_total() -> None:
     rows = cells(BUILDERS["ledger"](sample.tables(), sample.facts()))
     heads = [row[0].replace("\u202f", " ") for row in rows if len(row) == 1]
