@@ -7,9 +7,11 @@ from pathlib import Path
 
 import pandas as pd
 
-from surveykit.intake.params import is_kit_file, load_kit
-from surveykit.opening import open_file
-from surveykit.pipeline import read_inputs
+from surveykit import overview
+from surveykit.core import InputError
+from surveykit.intake.aligning import Ingested, align, read_logs
+from surveykit.intake.params import Parameters, is_kit_file, load_kit
+from surveykit.intake.params.partly import load_partly
 
 
 def check(path: Path) -> list[str]:
@@ -23,19 +25,51 @@ def check(path: Path) -> list[str]:
     if is_kit_file(path):
         kit = load_kit(path)
         return [f"{path}: a kit of {len(kit)} loggers: {', '.join(kit)}; no fault found"]
-    survey = open_file(path)
-    found = read_inputs(survey)
-    zone = survey.campaign.site.time_zone
-    lines = [f"{survey.campaign.campaign}: {survey.campaign.title}"]
-    for name, log in found.records.items():
-        time = pd.to_datetime(log.time_ns[[0, log.n_timed - 1]], utc=True)
-        first, last = time.tz_convert(zone)
+    known = load_partly(path)
+    faults = list(known.faults)
+    if known.parameters is None:
+        raise InputError(*faults)
+    parameters = known.parameters
+    logs, found = read_logs(parameters)
+    ingested = align(parameters, logs, [*faults, *found], known.doubtful)
+    return [f"{parameters.name}: {parameters.campaign.title}",
+            *_loggers(parameters, ingested), *_sheet(ingested),
+            *(f"  {notice}" for notice in (*ingested.sheet.notices, *parameters.notes)),
+            "  no fault found"]
+
+
+def _loggers(parameters: Parameters, ingested: Ingested) -> list[str]:
+    """Return for each logger a line on its records, and one for each of its channels."""
+    zone = parameters.campaign.site.time_zone
+    lines = []
+    channels = overview.channels(overview.Understood(parameters, ingested.records))
+    for log, (_, row) in zip(ingested.records.values(),
+                             overview.loggers(ingested.records, zone).iterrows(), strict=True):
+        ends = pd.to_datetime(log.time_ns[[0, log.n_timed - 1]], utc=True).tz_convert(zone)
+        days = " to ".join(dict.fromkeys(ends.strftime("%Y-%m-%d")))
         lines.append(
-            f"  {name}: {len(log)} records, every {log.interval_s:g} s, {time[0]:%H:%M:%S} to "
-            f"{time[1]:%H:%M:%S} UTC ({first:%H:%M:%S} to {last:%H:%M:%S} {zone})")
-    counts = Counter((p.quantity, p.kind) for p in found.passes)
-    lines.append("  field sheet: " + ", ".join(
+            f"  {row['Logger']}: {row['Records']} records in {row['Files']} "
+            f"file{'s' if row['Files'] > 1 else ''}, every {float(row['Interval, s']):g} s, {days} "
+            f"{row['First (UTC)']} to {row['Last (UTC)']} UTC "
+            f"({row['First (site)']} to {row['Last (site)']} {zone})")
+        mine = channels[channels["Logger"] == row["Logger"]]
+        width = max(len(column) for column in mine["Column"])
+        lines += [f"    {column:<{width}}  {quantity}, logged in {unit}, typically "
+                  + (f"{median:.4g} {shown}" if median == median else shown)
+                  for column, quantity, unit, median, shown in zip(
+                      mine["Column"], mine["Quantity"], mine["Logged in"], mine["Median"],
+                      mine["Unit"], strict=True)]
+        counts = {reason: int(marked.sum()) for reason, marked in log.marks.items()}
+        counts |= {f"unreadable {column}": int(cells.sum())
+                   for column, cells in log.unreadable.items()}
+        counts["repeated head, no record"] = sum(file.head_lines for file in log.files)
+        told = ", ".join(f"{n} {reason}" for reason, n in counts.items() if n)
+        lines += [f"    lines not as declared: {told}"] if told else []
+    return lines
+
+
+def _sheet(ingested: Ingested) -> list[str]:
+    counts = Counter((p.quantity, p.kind) for p in ingested.passes)
+    return ["  field sheet: " + ", ".join(
         f"{n} {' '.join(w for w in (kind, quantity) if w)} passes"
-        for (quantity, kind), n in counts.items()))
-    lines += [f"  {notice}" for notice in (*found.sheet.notices, *survey.parameters.notes)]
-    return [*lines, "  no fault found"]
+        for (quantity, kind), n in counts.items())]

@@ -26,9 +26,24 @@ def main(arguments: list[str] | None = None) -> int:
                               description="write a parameter file and an empty field sheet")
     new.add_argument("name", metavar="ID",
                      help="name of the campaign: lower-case letters, digits and -")
+    verify = commands.add_parser(
+        "verify", help="say whether a report still belongs to its inputs and tables",
+        description="say whether a report still belongs to its inputs and tables")
+    verify.add_argument("folder", type=Path, metavar="FOLDER", help="a report, reports/ID")
+    verify.add_argument("--rerun", action="store_true",
+                        help="compute the tables again and list every cell that moved")
+    for name, words in (("pack", "write one zip from which the report is made again elsewhere"),
+                        ("plan", "plan a survey day and write a field sheet to print")):
+        one = commands.add_parser(name, help=words, description=words)
+        one.add_argument("file", type=Path, metavar="FILE",
+                         help="parameter file of a campaign, such as params/ID.yml")
     asked = parser.parse_args(arguments)
     if asked.command == "new":
         return _told(lambda: _new(asked.name))
+    if asked.command == "verify":
+        return _told(lambda: _verify(asked.folder, asked.rerun))
+    if asked.command in ("pack", "plan"):
+        return _told(partial(_pack if asked.command == "pack" else _plan, asked.file))
     each = _run if asked.command == "run" else _check
     return max(_told(partial(each, file)) for file in asked.files)
 
@@ -74,6 +89,26 @@ def _new(name: str) -> None:
 
     for line in start(name, Path.cwd()):
         print(line)  # noqa: T201
+
+
+def _verify(folder: Path, rerun: bool) -> None:
+    from surveykit.verifying import verify
+
+    for line in verify(folder.resolve(), rerun=rerun):
+        print(line)  # noqa: T201
+
+
+def _pack(path: Path) -> None:
+    from surveykit.packing import pack
+
+    print(f"packed: {_near(pack(path))}")  # noqa: T201
+
+
+def _plan(path: Path) -> None:
+    from surveykit.runner import plan
+
+    for written in plan(path):
+        print(f"wrote {_near(written)}")  # noqa: T201
 
 
 def _near(path: Path) -> Path:

@@ -21,12 +21,12 @@ NOT_CORRECTED = {
         "of temperature; surfaces are means at their own passes' times."),
     "albedo": (
         "The head's own shade and the surroundings in its view: their sizes stand in the "
-        "uncertainty of each albedo.",
-        "The ratio of the two heads' gains was not checked by swapping them."),
+        "uncertainty of each albedo.",),
     "ndvi": (
-        "The ratio of the heads' gains was not checked by a panel or by swapping them, and the "
-        "surroundings in their view stand in the uncertainty.",),
+        "The surroundings in the view of the red and near-infrared heads: their size stands in "
+        "the uncertainty of each NDVI.",),
 }
+GAINS = {"albedo": "of the shortwave heads", "ndvi": "of the red and near-infrared heads"}
 
 
 def collect(survey: Survey) -> dict[str, Any]:
@@ -39,7 +39,8 @@ def collect(survey: Survey) -> dict[str, Any]:
         "campaign": campaign.campaign, "title": campaign.title, "date": campaign.date,
         "site": {"name": site.name, "latitude": site.latitude, "longitude": site.longitude,
                  "elevation_m": site.elevation_m, "time_zone": site.time_zone},
-        "time_zone": site.time_zone, "conditions": _conditions(survey), "params_file": path,
+        "time_zone": site.time_zone, "conditions": _conditions(survey),
+        "sky": campaign.conditions.sky, "params_file": path,
         "inputs": list(survey.inputs), "versions": versions(), "seed": statistics.seed,
         "draws": statistics.draws, "coverage": statistics.coverage,
         "settings": [dict(row) for row in campaign.settings.listing()],
@@ -48,8 +49,8 @@ def collect(survey: Survey) -> dict[str, Any]:
         "control": campaign.comparison.control or "",
         "relevant_change": campaign.relevant_change.model_dump(),
         "earlier": [p.stem for p in parameters.earlier], "notes": list(parameters.notes),
-        "not_corrected": [line for q, lines in NOT_CORRECTED.items() if q in quantities
-                          for line in lines],
+        "not_corrected": _not_corrected(quantities), "crew": list(campaign.crew),
+        "remarks": campaign.notes.splitlines(),
         "rerun": f"surveykit run {path}",
     }
 
@@ -57,6 +58,15 @@ def collect(survey: Survey) -> dict[str, Any]:
 def versions() -> dict[str, str]:
     """Return the versions of Python and of the packages that shape the numbers and the page."""
     return {"Python": platform.python_version()} | {name: version(name) for name in PACKAGES}
+
+
+def _not_corrected(quantities: set[str]) -> list[str]:
+    lines = [line for q, some in NOT_CORRECTED.items() if q in quantities for line in some]
+    heads = [words for q, words in GAINS.items() if q in quantities]
+    if heads:
+        lines.append(f"The ratios of the gains {' and '.join(heads)} were not checked by swapping "
+                     "heads or with a panel: the calibrations' own uncertainties stand for them.")
+    return lines
 
 
 def _quantities(survey: Survey) -> set[str]:

@@ -3,15 +3,38 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 import numpy as np
 import pandas as pd
 
-from surveykit.evidence.conditions import Day
+from surveykit.accounting import BIT, NOT_A_FAULT, REASONS
+from surveykit.intake.params import Parameters
 from surveykit.intake.passes import Pass
 from surveykit.intake.records import Records
 
-STEP_NS = 60_000_000_000
+if TYPE_CHECKING:  # `check` shows loggers and channels without what evidence has to import
+    from surveykit.evidence.conditions import Day
+
+STEP_NS, SHOWN_FROM_NS = 60_000_000_000, 10_000_000_000
+SHOWN = {  # how a quantity is shown: unit, and scale and shift from SI
+    **dict.fromkeys(("brightness_temperature", "housing_temperature", "air_temperature"),
+                    ("degC", 1.0, -273.15)),
+    **dict.fromkeys(("shortwave_down", "shortwave_up", "longwave_down", "longwave_up", "red_down",
+                     "red_up", "nir_down", "nir_up"), ("W m-2", 1.0, 0.0)),
+    "relative_humidity": ("%", 100.0, 0.0), "wind_speed": ("m s-1", 1.0, 0.0),
+    "air_pressure": ("hPa", 0.01, 0.0)}
+COURSE = {"housing_temperature": "body_temperature_degc", "air_temperature": "air_temperature_degc",
+          "wind_speed": "wind_speed_m_s", "relative_humidity": "relative_humidity_percent"}
+
+
+@dataclass(frozen=True)
+class Understood:
+    """Records by logger beside the parameters that say what they are."""
+
+    parameters: Parameters
+    records: Mapping[str, Records]
 
 
 def loggers(records: Mapping[str, Records], time_zone: str) -> pd.DataFrame:
@@ -24,23 +47,23 @@ def loggers(records: Mapping[str, Records], time_zone: str) -> pd.DataFrame:
             "First (UTC)": f"{first:%H:%M:%S}", "Last (UTC)": f"{last:%H:%M:%S}",
             "First (site)": f"{first.tz_convert(time_zone):%H:%M:%S}",
             "Last (site)": f"{last.tz_convert(time_zone):%H:%M:%S}",
-            "Interval, s": f"{log.interval_s:g}"})
+            "Interval, s": float(log.interval_s)})
     return pd.DataFrame(rows)
 
 
-def channels(day: Day) -> pd.DataFrame:
+def channels(day: Understood | Day) -> pd.DataFrame:
     """Return one row a channel: quantity, unit as logged, typical value in its own unit."""
     rows = []
     for logger, log in day.records.items():
         for channel in day.parameters.channels(logger):
             good = log.channels[channel.column]
             good = good[np.isfinite(good)]
-            degc = channel.quantity.endswith("temperature")
-            median = float(np.median(good)) - (273.15 if degc else 0.0) if good.size else np.nan
+            unit, scale, shift = SHOWN[channel.quantity]
+            median = float(np.median(good)) * scale + shift if good.size else np.nan
             rows.append({
                 "Logger": logger, "Column": channel.column,
                 "Quantity": channel.quantity.replace("_", " "), "Logged in": channel.unit,
-                "Median": f"{median:.4g}" + (" degC" if degc else "") if good.size else "none"})
+                "Median": median, "Unit": unit if good.size else "no reading"})
     return pd.DataFrame(rows)
 
 
@@ -63,7 +86,8 @@ def day_course(day: Day, some: tuple[Pass, ...]) -> dict[str, pd.DataFrame]:
     """Return frames `sky` and `weather` over the time of the passes, one row a minute.
 
     `sky` holds time_utc, zenith_deg and, where a shortwave head watched, irradiance_w_m2;
-    `weather` holds time_utc and air_temperature_degc, or no row where nothing tells it.
+    `weather` holds time_utc and, where a logger tells them, body_temperature_degc (of the infrared
+    head), air_temperature_degc, wind_speed_m_s and relative_humidity_percent.
     """
     if not some:
         return {"sky": pd.DataFrame(), "weather": pd.DataFrame()}
@@ -75,10 +99,66 @@ def day_course(day: Day, some: tuple[Pass, ...]) -> dict[str, pd.DataFrame]:
         time, value = day.readings(channel, start, stop + STEP_NS, through=("sun too low",))
         sky["irradiance_w_m2"] = _minutes(grid, time, day.without_dark(channel, time, value))
     weather = {"time_utc": sky["time_utc"]}
-    for channel in day.channels.get("air_temperature", []):
-        time, value = day.readings(channel, start, stop + STEP_NS)
-        weather["air_temperature_degc"] = _minutes(grid, time, value) - 273.15
+    for quantity, column in COURSE.items():
+        _, scale, shift = SHOWN[quantity]
+        for channel in day.channels.get(quantity, []):
+            time, value = day.readings(channel, start, stop + STEP_NS)
+            weather[column] = _minutes(grid, time, value) * scale + shift
     return {"sky": pd.DataFrame(sky), "weather": pd.DataFrame(weather)}
+
+
+def excluded(day: Day, some: tuple[Pass, ...]) -> pd.DataFrame:
+    """Return stretches of at least 10 s whose readings were left out for a fault of their own.
+
+    One row a stretch: start_utc, stop_utc, reason with the logger's name.
+    """
+    faults = [(r.name, BIT[r.name]) for r in REASONS
+              if not BIT[r.name] & (NOT_A_FAULT | BIT["capped"] | BIT["no partner"])]
+    rows = []
+    for logger, columns in day.quality.masks.items():
+        log = day.records[logger]
+        time = log.time_ns[:log.n_timed]
+        for mask in columns.values():
+            for reason, bit in faults:
+                hit = time[(mask[:log.n_timed] & bit) != 0]
+                apart = np.flatnonzero(np.diff(hit) > 2.5e9 * log.interval_s) + 1
+                rows += [(run[0], run[-1], f"{logger}, {reason}") for run in np.split(hit, apart)
+                         if run.size and run[-1] - run[0] >= SHOWN_FROM_NS]
+    frame = pd.DataFrame(dict.fromkeys(rows), columns=["start_utc", "stop_utc", "reason"])
+    if some:
+        frame = frame[(frame["stop_utc"] > min(p.start_ns for p in some))
+                      & (frame["start_utc"] < max(p.stop_ns for p in some))]
+    return frame.assign(start_utc=pd.to_datetime(frame["start_utc"], utc=True),
+                        stop_utc=pd.to_datetime(frame["stop_utc"], utc=True))
+
+
+def conditions(course: Mapping[str, pd.DataFrame]) -> list[str]:
+    """Return one sentence on what was measured of the day's weather, from `day_course`."""
+    spans = []
+    for frame, column, word, unit in (
+            ("weather", "air_temperature_degc", "air", "degC"),
+            ("weather", "relative_humidity_percent", "relative humidity", "%"),
+            ("weather", "wind_speed_m_s", "wind", "m s-1"),
+            ("sky", "irradiance_w_m2", "irradiance", "W m-2")):
+        known = course[frame][column].dropna() if column in course[frame] else pd.Series()
+        if len(known):
+            digits = 0 if unit in ("%", "W m-2") else 1
+            spans.append(f"{word} {known.min():.{digits}f} to {known.max():.{digits}f} {unit}")
+    line = f"Measured, means of a minute: {', '.join(spans)}." if spans else ""
+    if "air_temperature_degc" not in course["weather"]:
+        line = f"{line} Air temperature was not logged.".strip()
+    return [line]
+
+
+def geometry(some: tuple[Pass, ...]) -> dict[str, float | None]:
+    """Return how albedo was read: least and greatest height and least patch width [m]."""
+    albedo = [p for p in some if p.quantity == "albedo"]
+    heights = [p.height_m for p in albedo if np.isfinite(p.height_m)]
+    sizes = [float(np.fmin(p.width_m, p.length_m)) for p in albedo]  # a disc has no width
+    if not albedo:
+        return {}
+    return {"height_min_m": min(heights, default=None), "height_max_m": max(heights, default=None),
+            "size_min_m": min(sizes) if np.isfinite(sizes).all() else None}
 
 
 def _minutes(grid: np.ndarray, time: np.ndarray, value: np.ndarray) -> np.ndarray:

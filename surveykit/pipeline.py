@@ -7,11 +7,10 @@ predecessors first where their results are absent or belong to other inputs.
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Callable, Sequence
+from collections.abc import Callable
 from dataclasses import dataclass
-from functools import partial
 from pathlib import Path
-from typing import Any, TypeVar
+from typing import Any
 
 import pandas as pd
 
@@ -24,12 +23,7 @@ from surveykit.evidence.comparability import Date
 from surveykit.evidence.conditions import Day
 from surveykit.evidence.estimates import PassEstimate, estimate_all
 from surveykit.handover import load_facts, load_table, save_facts, save_table
-from surveykit.intake.clocks import Clock, check_days, set_clock
-from surveykit.intake.fieldsheet import Sheet, read_sheet
-from surveykit.intake.loggers import expand_files, read_logger
-from surveykit.intake.params import Parameters
-from surveykit.intake.passes import Pass, check_coverage, match_passes
-from surveykit.intake.records import Records
+from surveykit.intake.aligning import Ingested, align, read_logs
 from surveykit.keeping import load_quality, load_records, save_quality, save_records
 from surveykit.opening import Survey, open_file
 from surveykit.opening import open_survey as open_survey
@@ -37,18 +31,7 @@ from surveykit.quality import examine
 from surveykit.statistics.draws import Draws
 
 Tables = dict[str, pd.DataFrame]
-Made = TypeVar("Made")
 STAGES = ("ingest", "quality", "surfaces", "comparison")
-
-
-@dataclass(frozen=True)
-class Ingested:
-    """Records in UTC and SI, clocks, field sheet and passes."""
-
-    records: dict[str, Records]
-    clocks: tuple[Clock, ...]
-    sheet: Sheet
-    passes: tuple[Pass, ...]
 
 
 @dataclass(frozen=True)
@@ -58,17 +41,6 @@ class Evidence:
     estimates: tuple[PassEstimate, ...]
     groups: tuple[pooling.Group, ...]
     tables: Tables
-
-
-def read_inputs(survey: Survey) -> Ingested:
-    """Read loggers and field sheet onto one time line, and match passes to channels.
-
-    Raises
-    ------
-    InputError
-        With every fault of the loggers' files and of the field sheet.
-    """
-    return _align(survey, *_read_logs(survey))
 
 
 def ingest(survey: Survey) -> Ingested:
@@ -81,58 +53,14 @@ def ingest(survey: Survey) -> Ingested:
     """
     folder = survey.run_folder / "ingest"
     if _fresh(folder, survey.key):
-        return _align(survey, load_records(folder), [])
-    logs, faults = _read_logs(survey)
-    made = _align(survey, logs, faults)
+        kept = load_records(folder)  # in the campaign's order again, whatever order was kept
+        return align(survey.parameters, {name: kept[name] for name in survey.campaign.loggers}, [])
+    logs, faults = read_logs(survey.parameters)
+    made = align(survey.parameters, logs, faults)
     save_records(folder, logs)
     save_table(folder / "clocks.npz", clock_table(survey, made))
     _finish(folder, survey.key)
     return made
-
-
-def _read_logs(survey: Survey) -> tuple[dict[str, Records], list[str]]:
-    """Return every logger's records in its own time, and the faults of those that have some."""
-    parameters = survey.parameters
-    logs: dict[str, Records] = {}
-    faults: list[str] = []
-    for name, use in survey.campaign.loggers.items():
-        log = _gather(faults, partial(_read_log, parameters, name, use.files))
-        if log is not None:
-            logs[name] = log
-    return logs, faults
-
-
-def _read_log(parameters: Parameters, name: str, files: Sequence[str]) -> Records:
-    return read_logger(name, parameters.kit[name],
-                       expand_files(parameters.data_folder, files), parameters.root)
-
-
-def _align(survey: Survey, logs: dict[str, Records], faults: list[str]) -> Ingested:
-    """Set the clocks, read the field sheet, match its passes; raise all faults together."""
-    campaign = survey.campaign
-    records: dict[str, Records] = {}
-    clocks: list[Clock] = []
-    for name, log in logs.items():
-        records[name], clock = set_clock(log, campaign.loggers[name], campaign.settings)
-        clocks.append(clock)
-    passes: tuple[Pass, ...] = ()
-    sheet = _gather(faults, lambda: read_sheet(survey.parameters.sheet_path, survey.parameters))
-    _gather(faults, lambda: check_days(records, survey.parameters))
-    if sheet is not None and not faults:
-        passes = match_passes(sheet, survey.parameters, {c.logger: c for c in clocks})
-        check_coverage(passes, records, sheet.path)
-    if faults or sheet is None:
-        raise InputError(*faults)
-    return Ingested(records, tuple(clocks), sheet, passes)
-
-
-def _gather(faults: list[str], work: Callable[[], Made]) -> Made | None:
-    """Return what `work` gives; where the input is at fault, add its faults and return None."""
-    try:
-        return work()
-    except InputError as error:
-        faults += error.faults
-        return None
 
 
 def clock_table(survey: Survey, ingested: Ingested) -> pd.DataFrame:
@@ -169,8 +97,9 @@ def day(survey: Survey) -> Day:
 
 
 def day_course(survey: Survey) -> Tables:
-    """Return the course of the day for the timeline: frames `sky` and `weather`."""
-    return overview.day_course(day(survey), ingest(survey).passes)
+    """Return the course of the day for the timeline: frames `sky`, `weather` and `excluded`."""
+    today, passes = day(survey), ingest(survey).passes
+    return overview.day_course(today, passes) | {"excluded": overview.excluded(today, passes)}
 
 
 def surfaces(survey: Survey) -> Evidence:
@@ -214,6 +143,13 @@ def comparison(survey: Survey) -> Tables:
         save_table(folder / f"{name}.npz", frame)
     _finish(folder, key)
     return made
+
+
+def series(survey: Survey) -> pd.DataFrame:
+    """Return the table `surfaces` of the earlier campaigns and of this one, with their dates."""
+    dates = [*(open_file(path) for path in survey.parameters.earlier), survey]
+    return pd.concat([surfaces(one).tables["surfaces"].assign(date=one.campaign.date)
+                      for one in dates], ignore_index=True)
 
 
 def all_tables(survey: Survey) -> Tables:

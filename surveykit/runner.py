@@ -7,15 +7,17 @@ import os
 import shutil
 import sys
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any
 
-from surveykit import facts, pipeline
+from surveykit import facts, overview, pipeline
 from surveykit.core import InputError
+from surveykit.kernels import QuietKernelManager, kernels_ahead
 from surveykit.opening import Survey, open_file
 from surveykit.report import datapackage, page
 from surveykit.swap import heal, swap_in
+from surveykit.verifying import outputs
 
 # jupyterlab brings rfc3987_syntax, which compiles a grammar for 1.2 s at import, reached through
 # jsonschema's optional format checkers; without it jsonschema skips that one optional format.
@@ -70,49 +72,57 @@ def up_to_date(survey: Survey) -> bool:
 def _run_one(survey: Survey, say: Say) -> Path:
     started = time.perf_counter()
     name = survey.campaign.campaign
-    reports = _reports(survey)
-    heal(reports, name)
-    for stage in pipeline.STAGES:
-        shutil.rmtree(survey.run_folder / stage, ignore_errors=True)
-    pipeline.ingest(survey)
-    new = reports / f".{name}.new"
-    shutil.rmtree(new, ignore_errors=True)
-    (new / "notebooks").mkdir(parents=True)
-    try:
-        say(f"{name}: {survey.campaign.title}")
-        durations = _execute(survey, new / "notebooks", say)
-        _write(survey, new, durations, started)
-    except BaseException:
+    root = survey.parameters.root
+    with kernels_ahead(root, len(NOTEBOOKS)) as kernels:
+        for stage in pipeline.STAGES:
+            shutil.rmtree(survey.run_folder / stage, ignore_errors=True)
+        pipeline.ingest(survey)
+        reports = _reports(survey)
+        heal(reports, name)
+        new = reports / f".{name}.new"
         shutil.rmtree(new, ignore_errors=True)
-        raise
+        (new / "notebooks").mkdir(parents=True)
+        try:
+            say(f"{name}: {survey.campaign.title}")
+            durations = _execute(survey, new / "notebooks", kernels, say)
+            _write(survey, new, durations, started)
+        except BaseException:
+            shutil.rmtree(new, ignore_errors=True)
+            raise
     swap_in(reports, name)
     say(f"  report in {time.perf_counter() - started:.1f} s")
     return reports / name / "report.html"
 
 
-def _execute(survey: Survey, folder: Path, say: Say) -> dict[str, float]:
+def _execute(survey: Survey, folder: Path, kernels: Iterator[QuietKernelManager],
+             say: Say) -> dict[str, float]:
     """Run the notebooks in order, each in a kernel of its own; one line of progress each."""
     import papermill
 
-    _check_parameters(survey.parameters.root)
+    root = survey.parameters.root
+    _check_parameters(root)
     durations = {}
-    handed = {"params_file": survey.inputs[0]["path"], "run_folder": str(survey.run_folder)}
-    for name in NOTEBOOKS:
-        begun = time.perf_counter()
+    handed = {"params_file": survey.inputs[0]["path"], "run_folder": _from_root(survey)}
+    begun = time.perf_counter()
+    for name, kernel in zip(NOTEBOOKS, kernels, strict=True):
         try:
             papermill.execute_notebook(
-                _literal(survey.parameters.root / "notebooks" / f"{name}.ipynb"),
-                _literal(folder / f"{name}.ipynb"),
+                _literal(root / "notebooks" / f"{name}.ipynb"), _literal(folder / f"{name}.ipynb"),
                 parameters=handed, kernel_name="python3", progress_bar=False, log_output=False,
-                cwd=str(survey.parameters.root),
-                kernel_manager_class="surveykit.kernels.QuietKernelManager")
+                cwd=str(root), km=kernel)
         except papermill.PapermillExecutionError as error:
             if error.ename == InputError.__name__:
                 raise InputError(*error.evalue.splitlines()) from None
             raise
         durations[name] = time.perf_counter() - begun
+        begun += durations[name]
         say(f"  {name:<14} {durations[name]:5.1f} s")
     return durations
+
+
+def _from_root(survey: Survey) -> str:
+    """Return the run folder as the notebooks, which run in the project folder, reach it."""
+    return survey.run_folder.relative_to(survey.parameters.root).as_posix()
 
 
 def _literal(path: Path) -> str:
@@ -141,14 +151,24 @@ def _write(survey: Survey, new: Path, durations: dict[str, float], started: floa
 
     tables = pipeline.all_tables(survey)
     known = facts.collect(survey)
+    passes = pipeline.ingest(survey).passes
+    known["conditions"] += overview.conditions(pipeline.day_course(survey))
+    known["albedo_geometry"] = overview.geometry(passes)
     datapackage.write_tables(tables, new / "tables", known)
-    notebooks = [nbformat.read(new / "notebooks" / f"{name}.ipynb", as_version=4)
-                 for name in NOTEBOOKS]
+    notebooks = []
+    for name in NOTEBOOKS:
+        notebook = nbformat.read(new / "notebooks" / f"{name}.ipynb", as_version=4)
+        notebook.metadata.pop("papermill", None)  # it holds this machine's folders
+        nbformat.write(notebook, new / "notebooks" / f"{name}.ipynb")
+        notebooks.append(notebook)
     (new / "report.html").write_text(page.build_page(notebooks, tables, known), encoding="utf-8",
                                      newline="\n")
     kept: dict[str, Any] = {
         "key": survey.key, "command": known["rerun"], "campaign": known["campaign"],
-        "inputs": known["inputs"], "versions": known["versions"], "seed": known["seed"],
+        "inputs": known["inputs"], "params_file": known["params_file"],
+        "earlier_inputs": [item for path in survey.parameters.earlier
+                           for item in open_file(path).inputs],
+        "outputs": outputs(new), "versions": known["versions"], "seed": known["seed"],
         "draws": known["draws"],
         "finished_utc": time.strftime("%Y-%m-%dT%H:%M:%SZ", time.gmtime()),
         "durations_s": {k: round(v, 3) for k, v in durations.items()},

@@ -42,7 +42,7 @@ def project(tmp_path):
 
 @pytest.fixture(scope="session")
 def demo(tmp_path_factory):
-    """A project in which the last demo date was run by its one command, the earlier ones with it."""
+    """A project in which the last demo date was run, and the earlier ones with it."""
     folder = copy_project(tmp_path_factory.mktemp("demo") / "project")
     done = surveykit(folder, "run", f"params/{DEMO[2]}.yml")
     assert done.returncode == 0, done.stderr

@@ -49,7 +49,8 @@ def swap_times(path):
     lines = path.read_text(encoding="utf-8").splitlines()
     header = lines[0].split(",")
     start, stop = header.index("start"), header.index("stop")
-    row = next(i for i, line in enumerate(lines) if line.split(",")[header.index("entry")] == "pass")
+    entry = header.index("entry")
+    row = next(i for i, line in enumerate(lines) if line.split(",")[entry] == "pass")
     cells = lines[row].split(",")
     cells[start], cells[stop] = cells[stop], cells[start]
     lines[row] = ",".join(cells)

@@ -35,6 +35,9 @@ def albedo(day: Day, this: Pass, sky: Sky) -> PassValue:
     value = float(ratio_of_sums(up, down))
     if not np.isfinite(value):
         raise NotEvaluated("the irradiance of the pass does not sum to more than zero")
+    if not 0 <= value <= 1:
+        raise NotEvaluated(f"a share of {value:.2f} of the light comes back, which cannot be: "
+                           "check which head looks up, and their gains and darks")
     zenith = day.quality.passes[this.name].zenith_deg
     around, flags = albedo_around(day, this)
     foreign, more = foreign_ground(day, this, head_up, around)

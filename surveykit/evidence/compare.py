@@ -22,7 +22,7 @@ from surveykit.statistics.verdicts import (
     verdict,
 )
 
-CONTROL_PASSES = 3  # that show the day's course
+CONTROL_PASSES = 3  # at as many times, that show the day's course
 DIFFERENCE_UNITS = {"temperature": "K", "albedo": "1", "ndvi": "1"}
 
 
@@ -103,9 +103,9 @@ def _day_course(date: Date, a: Group, b: Group, draws: Draws) -> tuple[list[Resu
     if a.quantity != "temperature":
         return [zenith_term(date, a, b, draws, 1.0)], ""
     control = date.find(date.parameters.campaign.comparison.control or "", a.quantity, a.kind)
-    if control is None or len(control.used) < CONTROL_PASSES:
+    time_h = np.array([p.middle_ns for p in control.used]) / 3.6e12 if control else np.zeros(0)
+    if control is None or np.unique(time_h).size < CONTROL_PASSES:
         return [], "the day's course was not watched by a control"
-    time_h = np.array([p.middle_ns for p in control.used]) / 3.6e12
     slope = float(np.polyfit(time_h - time_h.mean(), [p.value for p in control.used], 1)[0])
     apart_h = (a.mean("middle_ns") - b.mean("middle_ns")) / 3.6e12
     z = draws.standard(f"{date.name}:day course", "rectangular")

@@ -156,8 +156,9 @@ def _budget(campaign: str, used: tuple[PassEstimate, ...], weights: FloatArray, 
     unit = {"temperature": "K"}.get(quantity, "1")
     base = {"campaign": campaign, "surface": used[0].this.surface, "quantity": quantity,
             "kind": used[0].kind, "unit": unit}
-    rows: list[dict[str, Any]] = [base | {"scope": scope, "source": inputs[scope].source, "u_input": inputs[scope].u,
-                    "contribution": abs(total)} for scope, total in sums.items()]
+    rows: list[dict[str, Any]] = [
+        base | {"scope": scope, "source": inputs[scope].source, "u_input": inputs[scope].u,
+                "contribution": abs(total)} for scope, total in sums.items()]
     scatter = pooled.u if pooled.dof > 0 else own
     rows.append(base | {
         "scope": f"{campaign}:{used[0].this.surface}:sampling",

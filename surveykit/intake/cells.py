@@ -26,34 +26,41 @@ class Numbers:
     unreadable: BoolArray
 
 
-def read_table(text: bytes, fields: int, time_at: int, numbers_at: Sequence[int], iso: bool,
-               layout: Layout) -> tuple[pd.Series, dict[int, Numbers]]:
+def read_table(text: bytes, fields: int, texts_at: Sequence[int], numbers_at: Sequence[int],
+               iso: bool, layout: Layout) -> tuple[pd.Series, dict[int, Numbers]]:
     """Return the column of times and the columns of numbers of well-formed lines.
 
-    Times are datetime64 where pandas' reader could convert every one (ISO 8601), else text.
+    Times are datetime64 where pandas' reader could convert every one (ISO 8601), else text; of
+    several columns of text, the texts joined by a blank. Without `texts_at` they are an empty
+    column.
     """
     if not text:
         empty = Numbers(np.zeros(0), np.zeros(0, dtype=np.bool_))
         return pd.Series([], dtype=object), dict.fromkeys(numbers_at, empty)
+    iso = iso and len(texts_at) == 1
     if iso and layout.decimal == "," and b"." not in text:  # then the fast readers can be used
         text = text.replace(b",", b".")
         layout = layout.model_copy(update={
             "decimal": ".", "missing": tuple(code.replace(",", ".") for code in layout.missing)})
     options: dict[str, Any] = {
-        "header": None, "names": range(fields), "usecols": [time_at, *numbers_at],
+        "header": None, "names": range(fields), "usecols": [*texts_at, *numbers_at],
         "index_col": False, "sep": layout.delimiter, "decimal": layout.decimal,
         "skipinitialspace": f"{layout.delimiter} ".encode() in text[: text.find(b"\n")],
         "skip_blank_lines": False, "keep_default_na": False,
         "na_values": missing_codes(layout)[0], "low_memory": False, "encoding": "utf-8"}
-    dates: dict[str, Any] = {"parse_dates": [time_at], "date_format": "ISO8601"} if iso else {}
-    kinds: dict[int, type] = {} if iso else {time_at: object}
+    dates: dict[str, Any] = {"parse_dates": [*texts_at], "date_format": "ISO8601"} if iso else {}
+    kinds: dict[int, type] = {} if iso else dict.fromkeys(texts_at, object)
     try:
         frame = pd.read_csv(io.BytesIO(text), **options, **dates,
                             dtype=kinds | dict.fromkeys(numbers_at, float))
     except ValueError:
         frame = pd.read_csv(io.BytesIO(text), **options, **dates,
                             dtype=kinds | dict.fromkeys(numbers_at, object))
-    return frame[time_at], {at: _numbers(frame[at], layout) for at in numbers_at}
+    times = pd.Series([], dtype=object)
+    for at in texts_at:  # a text and a missing one give a missing one
+        part = frame[at] if iso or len(texts_at) == 1 else frame[at].str.strip()
+        times = part if at == texts_at[0] else times + " " + part
+    return times, {at: _numbers(frame[at], layout) for at in numbers_at}
 
 
 def missing_codes(layout: Layout) -> tuple[list[str], FloatArray]:

@@ -16,6 +16,7 @@ from surveykit.core import BoolArray, InputError
 from surveykit.intake.params.instruments import Layout
 
 BLOCK_BYTES = 1 << 21  # fits a processor's cache; measured best of 1 to 8 MB
+MIN_PREAMBLE = 4  # a shorter line of the preamble may as well be a record
 _BOM = b"\xef\xbb\xbf"
 
 Data = bytes | mmap.mmap
@@ -23,11 +24,17 @@ Data = bytes | mmap.mmap
 
 @dataclass(frozen=True)
 class Header:
-    """The names of the columns, the line they stand in (1 = first), where the records begin."""
+    """The names of the columns, the line they stand in (1 = first), where the records begin.
+
+    `start` is the byte and `first` the line where they do. `head` holds the lines above, blank
+    ones left out: a logger that restarts writes them again.
+    """
 
     columns: tuple[str, ...]
     line: int
     start: int
+    first: int
+    head: frozenset[bytes]
 
 
 @dataclass(frozen=True)
@@ -36,13 +43,15 @@ class Lines:
 
     `text` is UTF-8 and holds one well-formed line each; where `bad`, the line was none and stands
     as an empty one. `at` is its place in the block (0 = first line), `physical` the number of
-    lines in the block, blank ones included.
+    lines in the block, blank ones included, `again` the number of lines that repeat the file's
+    head and are no records.
     """
 
     text: bytes
     at: NDArray[np.int32]
     bad: BoolArray
     physical: int
+    again: int = 0
 
 
 def open_bytes(path: Path) -> Data:
@@ -86,14 +95,18 @@ def read_header(data: Data, layout: Layout, where: str) -> Header:
     if data[:2] in (b"\xff\xfe", b"\xfe\xff"):
         raise InputError(f"{where}: the file is UTF-16; save it as UTF-8")
     start = len(_BOM) if data[: len(_BOM)] == _BOM else 0
-    line = b""
-    for number in range(layout.skip_lines + 1):
+    above: list[bytes] = []
+    for number in range(layout.skip_lines + 1 + layout.unit_lines):
         if start >= len(data):
-            raise InputError(f"{where}: the file ends at line {number}, before its header; "
-                             f"got skip_lines {layout.skip_lines}, check layout.skip_lines")
+            what, key = ("its header", "skip_lines") if number <= layout.skip_lines else \
+                ("its records", "unit_lines")
+            raise InputError(f"{where}: the file ends at line {number}, before {what}; "
+                             f"got {key} {getattr(layout, key)}, check layout.{key}")
         end = data.find(b"\n", start)
         end = len(data) if end < 0 else end
-        line, start = data[start:end], end + 1
+        above.append(data[start:end])
+        start = end + 1
+    line = above[layout.skip_lines]
     try:
         text = line.decode(layout.encoding).strip("\r\n")
     except UnicodeDecodeError as error:
@@ -101,8 +114,10 @@ def read_header(data: Data, layout: Layout, where: str) -> Header:
             f"{where}, line {layout.skip_lines + 1}: the header holds the byte "
             f"0x{line[error.start]:02X}, which is not {layout.encoding}; "
             "write the file's encoding under layout.encoding (windows-1252 or latin-1)") from None
+    head = frozenset(line.strip() for number, line in enumerate(above)
+                     if len(line.strip()) >= (MIN_PREAMBLE if number < layout.skip_lines else 1))
     return Header(tuple(cells_of(text, layout)), layout.skip_lines + 1,
-                  min(start, len(data)))
+                  min(start, len(data)), len(above) + 1, head)
 
 
 def blocks(data: Data, start: int) -> Iterator[tuple[int, int]]:
@@ -117,8 +132,11 @@ def blocks(data: Data, start: int) -> Iterator[tuple[int, int]]:
         start = end
 
 
-def whole_lines(block: bytes, fields: int, layout: Layout) -> Lines:
+def whole_lines(block: bytes, fields: int, layout: Layout,
+                head: frozenset[bytes] = frozenset()) -> Lines:
     r"""Return the lines of a block that are not blank, the malformed ones emptied and named.
+
+    Lines equal to one of `head` are left out and counted.
 
     A line is malformed if it has not `fields` fields, an open quote, a NUL byte, or bytes that are
     not in the layout's encoding. Separators alone decide: with every other byte deleted, the lines
@@ -138,20 +156,26 @@ def whole_lines(block: bytes, fields: int, layout: Layout) -> Lines:
     separators = block.translate(None, _others(delimiter))
     row = separators[: separators.find(b"\n") + 1]
     count = len(separators) // len(row)
-    if (separators == row * count and _well_formed(row[:-1], fields, layout)
+    again = any(line in block for line in head)
+    if (not again and separators == row * count and _well_formed(row[:-1], fields, layout)
             and (b'"' not in row or _quotes_enclose(block, delimiter))
             and _decodes(block, layout.encoding)):
         at, bad = np.arange(count, dtype=np.int32), np.zeros(count, dtype=np.bool_)
         return Lines(_utf8(block, layout.encoding), at, bad, count)
-    return _one_by_one(block, separators, fields, layout)
+    return _one_by_one(block, separators, fields, layout, head if again else frozenset())
 
 
-def _one_by_one(block: bytes, separators: bytes, fields: int, layout: Layout) -> Lines:
+def _one_by_one(block: bytes, separators: bytes, fields: int, layout: Layout,
+                head: frozenset[bytes]) -> Lines:
     filler = layout.delimiter.encode() * (fields - 1)
     known: dict[bytes, bool] = {}
     text, at, bad = [], [], []
+    again = 0
     lines = block.split(b"\n")[:-1]
     for number, (line, shape) in enumerate(zip(lines, separators.split(b"\n"), strict=False)):
+        if head and line.removeprefix(_BOM).strip() in head:
+            again += 1
+            continue
         good = known.get(shape)
         if good is None:
             good = _well_formed(line, fields, layout)
@@ -165,7 +189,7 @@ def _one_by_one(block: bytes, separators: bytes, fields: int, layout: Layout) ->
         bad.append(not good)
     joined = b"".join(line + b"\n" for line in text)
     return Lines(_utf8(joined, layout.encoding), np.array(at, dtype=np.int32),
-                 np.array(bad, dtype=np.bool_), len(lines))
+                 np.array(bad, dtype=np.bool_), len(lines), again)
 
 
 def _requoted(line: bytes, layout: Layout) -> bytes:
@@ -207,7 +231,7 @@ def _utf8(text: bytes, encoding: str) -> bytes:
 def line_text(data: Data, header: Header, number: int, encoding: str) -> str:
     """Return one line after the header as text, for a message."""
     start = header.start
-    for _ in range(number - header.line - 1):
+    for _ in range(number - header.first):
         start = data.find(b"\n", start) + 1
     end = data.find(b"\n", start)
     return data[start:end if end >= 0 else len(data)].decode(encoding, "replace").strip("\r")

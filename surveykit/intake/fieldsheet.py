@@ -5,7 +5,7 @@ from __future__ import annotations
 import hashlib
 from collections.abc import Callable
 from dataclasses import dataclass
-from datetime import date, timedelta
+from datetime import date
 from pathlib import Path
 from typing import Any
 
@@ -43,7 +43,8 @@ class Sheet:
     notices: tuple[str, ...]
 
 
-def read_sheet(path: Path, parameters: Parameters) -> Sheet:
+def read_sheet(path: Path, parameters: Parameters,
+               doubtful: frozenset[str] = frozenset()) -> Sheet:
     """Return the entries of a field sheet.
 
     Times are wall time at the site on the campaign's date, or full ISO 8601, plus the watch's
@@ -54,9 +55,13 @@ def read_sheet(path: Path, parameters: Parameters) -> Sheet:
     ----------
     path : Path
         A CSV file as spreadsheets save it: comma, semicolon or tab, decimal point or comma, UTF-8
-        (with or without a byte-order mark) or Windows-1252.
+        (with or without a byte-order mark) or Windows-1252; or a spreadsheet's own file (.xlsx,
+        needs openpyxl).
     parameters : Parameters
         The campaign and its kit.
+    doubtful : frozenset of str
+        Top-level keys of the parameter file that could not be read: rows are not held against
+        what they would say (`date`, `site`, `surfaces`, `loggers`).
 
     Raises
     ------
@@ -76,7 +81,7 @@ def read_sheet(path: Path, parameters: Parameters) -> Sheet:
     times: dict[int, dict[str, SheetTime]] = {}
     offered = offers(parameters)
     for row, cells in table.rows:
-        reader = _Row(row, cells, parameters, offered)
+        reader = _Row(row, cells, parameters, offered, doubtful)
         entry = reader.entry()
         times[row] = reader.times
         faults += [f"{where} row {row}: {fault}" for fault in reader.faults]
@@ -85,6 +90,7 @@ def read_sheet(path: Path, parameters: Parameters) -> Sheet:
             if reader.service is not None:
                 services[row] = reader.service
     day, notices = day_faults(table.rows, times, parameters.campaign)
+    day = [] if doubtful & {"date", "site"} else day
     faults += [f"{where} {fault}" for fault in day]
     if not faults and not any(entry.entry == "pass" for entry in entries):
         faults.append(f"{where}: the field sheet holds no pass; write one row for each")
@@ -101,8 +107,8 @@ class _Row:
     """One row being read; every fault is kept, an entry comes out only if there is none."""
 
     def __init__(self, row: int, cells: dict[str, str], parameters: Parameters,
-                 offered: Offers) -> None:
-        self.row, self.cells, self.offered = row, cells, offered
+                 offered: Offers, doubtful: frozenset[str]) -> None:
+        self.row, self.cells, self.offered, self.doubtful = row, cells, offered, doubtful
         self.parameters = parameters
         self.faults: list[str] = []
         self.times: dict[str, SheetTime] = {}
@@ -148,7 +154,7 @@ class _Row:
         self.times[name] = time
         # A full time may lie a day off: a station's UTC day reaches into the site's neighbour days.
         away = abs((time.wall.date() - day).days)
-        if name == "start" and away > (1 if time.full else 0):
+        if name == "start" and away > (1 if time.full else 0) and "date" not in self.doubtful:
             self.faults.append(f"start {self.cells[name]!r} is not on the campaign's date {day}")
 
     def _order(self) -> None:
@@ -167,7 +173,8 @@ class _Row:
                  "quantity": cells["quantity"].lower(), "mode": cells["mode"].lower(),
                  "instrument": cells["instrument"]}
         surfaces = self.parameters.campaign.surfaces
-        if texts["surface"] and texts["surface"] not in surfaces:
+        if texts["surface"] and texts["surface"] not in surfaces \
+                and "surfaces" not in self.doubtful:
             self.faults.append(f"surface {texts['surface']!r} is not known; write one of "
                                f"{', '.join(surfaces)}")
         if len(texts["patch"]) > MAX_LABEL or not texts["patch"].isprintable():
@@ -183,6 +190,8 @@ class _Row:
                 known = False
                 self.faults.append(f"{name} {texts[name]!r} is not known; write one of "
                                    f"{', '.join(words)}")
+        if "loggers" in self.doubtful:
+            return texts
         if kind == "pass" and texts["quantity"] and known:
             self._collect(lambda: self._serve(texts))
         elif texts["instrument"] and texts["instrument"] not in self.offered:

@@ -15,7 +15,8 @@ from numpy.typing import NDArray
 
 from surveykit.core import BoolArray, FloatArray, InputError, IntArray
 from surveykit.intake import cells, dialect
-from surveykit.intake.params.instruments import Channel, Instrument, Layout
+from surveykit.intake.counted import counted_times
+from surveykit.intake.params.instruments import COUNTED, Channel, Instrument, Layout
 from surveykit.intake.records import MARKS, NO_TIME_NS, FileFacts, Records, in_order
 from surveykit.intake.times import read_times, to_utc
 
@@ -117,20 +118,24 @@ def _read_file(path: Path, root: Path, instrument: Instrument,
     except (OSError, EOFError, zlib.error) as error:
         raise InputError(f"{where}: cannot be read ({getattr(error, 'strerror', None) or error}); "
                          "copy it again from the logger") from None
-    time_at, *numbers_at = _places(
-        header, (instrument.time.column, *(c.column for c in channels)), layout, where)
-    fields, iso = len(header.columns), instrument.time.format == "iso8601"
+    form = instrument.time
+    times_at, numbers_at = _places(header, form.column, [c.column for c in channels], layout, where)
+    texts_at, counts_at = ([], times_at) if form.format in COUNTED else (times_at, [])
+    fields = len(header.columns)
 
-    def read(ends: tuple[int, int]) -> tuple[int, dict[str, NDArray]]:
-        lines = dialect.whole_lines(data[ends[0]:ends[1]], fields, layout)
-        texts, numbers = cells.read_table(lines.text, fields, time_at, numbers_at, iso, layout)
-        wall_ns, offset_s = read_times(texts, instrument.time.format)
+    def read(ends: tuple[int, int]) -> tuple[int, int, dict[str, NDArray]]:
+        lines = dialect.whole_lines(data[ends[0]:ends[1]], fields, layout, header.head)
+        texts, numbers = cells.read_table(
+            lines.text, fields, texts_at, [*counts_at, *numbers_at], form.format == "iso8601",
+            layout)
+        wall_ns, offset_s = read_times(texts, form.format) if texts_at else \
+            counted_times([numbers[at].values for at in counts_at], form.format, form.year)
         part: dict[str, NDArray] = {
             "line": lines.at, "bad": lines.bad, "wall_ns": wall_ns, "offset_s": offset_s}
         for channel, at in zip(channels, numbers_at, strict=True):
             part[f"value {channel.column}"] = channel.to_si(numbers[at].values)
             part[f"unreadable {channel.column}"] = numbers[at].unreadable
-        return lines.physical, part
+        return lines.physical, lines.again, part
 
     def digest() -> str:
         packed = isinstance(data, bytes)
@@ -141,22 +146,23 @@ def _read_file(path: Path, root: Path, instrument: Instrument,
         ends = list(dialect.blocks(data, header.start)) or [(header.start, header.start)]
         blocks = list(pool.map(read, ends))
     dialect.release(data)
-    above = header.line + 1
-    for physical, part in blocks:
+    above = header.first
+    for physical, _, part in blocks:
         part["line"] += np.int32(above)
         above += physical
-    whole = _chained([part for _, part in blocks])
+    whole = _chained([part for _, _, part in blocks])
     line, bad_line, wall_ns = whole["line"], whole["bad"], whole["wall_ns"]
 
     def locate(rows: BoolArray) -> str:
         return f"{where}, line {line[np.flatnonzero(rows)[0]]}"
 
-    _refuse_unlike(data, header, instrument, where, line, bad_line, wall_ns, time_at)
+    _refuse_unlike(data, header, instrument, where, line, bad_line, wall_ns, times_at)
     time_ns = to_utc(wall_ns, whole["offset_s"], instrument.time.zone, locate)
     sample = dialect.sample_rows(data, header, layout, SAMPLE_LINES)
     steps = {channel.column: abs(channel.gain.value) * cells.printed_step(sample, at, layout)
              for channel, at in zip(channels, numbers_at, strict=True)}
-    facts = FileFacts(where, sha256.result(), path.stat().st_size, len(line))
+    facts = FileFacts(where, sha256.result(), path.stat().st_size, len(line),
+                      sum(again for _, again, _ in blocks))
     numbers = {channel.column: cells.Numbers(whole[f"value {channel.column}"],
                                              whole[f"unreadable {channel.column}"])
                for channel in channels}
@@ -181,12 +187,13 @@ def _chain(parts: list[NDArray]) -> NDArray:
     return parts[0] if len(parts) == 1 else np.concatenate(parts)
 
 
-def _places(header: dialect.Header, wanted: Sequence[str], layout: Layout,
-            where: str) -> list[int]:
+def _places(header: dialect.Header, times: Sequence[str], values: Sequence[str], layout: Layout,
+            where: str) -> tuple[list[int], list[int]]:
+    """Return where the columns of the time and those of readings stand."""
     faults: list[str] = []
-    for i, column in enumerate(wanted):
+    for key, column in ([("time.column", name) for name in times]
+                        + [(f"columns.{name}", name) for name in values]):
         count = header.columns.count(column)
-        key = f"columns.{column}" if i else "time.column"
         if count == 0:
             names = ", ".join(repr(name) for name in header.columns)
             faults.append(
@@ -198,12 +205,13 @@ def _places(header: dialect.Header, wanted: Sequence[str], layout: Layout,
                           f"({key}); give each its own name in the logger's program")
     if faults:
         raise InputError(*faults)
-    return [header.columns.index(column) for column in wanted]
+    return ([header.columns.index(column) for column in times],
+            [header.columns.index(column) for column in values])
 
 
 def _refuse_unlike(data: dialect.Data, header: dialect.Header, instrument: Instrument, where: str,
                    line: NDArray[np.int32], bad_line: BoolArray, wall_ns: IntArray,
-                   time_at: int) -> None:
+                   times_at: Sequence[int]) -> None:
     """Refuse a file none of whose lines is as declared: then the declaration is at fault."""
     layout = instrument.layout
     if not len(line):
@@ -221,7 +229,8 @@ def _refuse_unlike(data: dialect.Data, header: dialect.Header, instrument: Instr
     if (wall_ns == NO_TIME_NS).all():
         number = int(line[~bad_line][0])
         text = dialect.line_text(data, header, number, layout.encoding)
-        cell = dialect.cells_of(text, layout)[time_at]
+        fields = dialect.cells_of(text, layout)
+        cell = " ".join(fields[at] for at in times_at)
         raise InputError(
             f"{where}, line {number}: no time of the file can be read, the first is {cell!r}; got "
             f"time.format {instrument.time.format!r}, write iso8601 or the format the logger uses")

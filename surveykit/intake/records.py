@@ -24,12 +24,17 @@ MARKS = (
 
 @dataclass(frozen=True)
 class FileFacts:
-    """One raw file: path under the project root, SHA-256, size in bytes, number of records."""
+    """One raw file: path under the project root, SHA-256, size in bytes, number of records.
+
+    `head_lines` counts lines that repeat the file's head, as a restarted logger writes them; they
+    are no records.
+    """
 
     path: str
     sha256: str
     size: int
     records: int
+    head_lines: int = 0
 
 
 @dataclass(frozen=True, eq=False)

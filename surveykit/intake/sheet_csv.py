@@ -7,6 +7,7 @@ import io
 from dataclasses import dataclass
 
 from surveykit.core import InputError
+from surveykit.intake.sheet_xlsx import read_cells
 
 COLUMNS = ("entry", "surface", "patch", "quantity", "mode", "instrument", "start", "stop",
            "height_cm", "width_m", "length_m", "lanes", "reading", "reading_u", "note",
@@ -24,24 +25,15 @@ class Rows:
 
 
 def read_rows(data: bytes, where: str) -> Rows:
-    """Return the cells of a sheet; the header is row 1.
+    """Return the cells of a sheet, CSV or .xlsx; the header is row 1.
 
     Raises
     ------
     InputError
-        If the bytes are no CSV, or row 1 does not hold the column names.
+        If the bytes are no table, or row 1 does not hold the column names.
     """
-    text = _decoded(data, where)
-    first = text.splitlines()[0] if text.strip() else ""
-    if not text.strip():
-        raise InputError(f"{where}: the field sheet is empty; its first row holds the columns "
-                         f"{', '.join(COLUMNS[:15])}")
-    delimiter = max((",", ";", "\t"), key=lambda mark: len(
-        {name.strip().lower() for name in first.replace('"', "").split(mark)} & {*COLUMNS}))
-    try:
-        table = list(csv.reader(io.StringIO(text, newline=""), delimiter=delimiter))
-    except csv.Error as error:
-        raise InputError(f"{where}: is no CSV table ({error}); save the sheet as CSV") from None
+    table, mark = (read_cells(data, where), "") if data[:4] == b"PK\x03\x04" \
+        else _csv_cells(data, where)
     header = [name.strip().lower() for name in table[0]]
     if "entry" not in header:
         raise InputError(f"{where} row 1: no column entry; the first row holds the columns "
@@ -57,16 +49,34 @@ def read_rows(data: bytes, where: str) -> Rows:
         cells = [cell.replace("\N{NO-BREAK SPACE}", " ").strip() for cell in cells]
         if any(cells[len(header):]):
             faults.append(f"{where} row {number}: has {len(cells)} cells where the first row has "
-                          f"{len(header)}; put cells that hold {delimiter!r} in quotes")
+                          f"{len(header)}; "
+                          + (f"put cells that hold {mark!r} in quotes" if mark else
+                             "give each column its name in the first row"))
         elif any(cells):
             named = dict(zip(header, cells, strict=False))
             rows.append((number, {name: named.get(name, "") for name in COLUMNS}))
     return Rows(tuple(rows), tuple(notices), tuple(faults))
 
 
+def _csv_cells(data: bytes, where: str) -> tuple[list[list[str]], str]:
+    """Return the cells of a CSV and its delimiter."""
+    text = _decoded(data, where)
+    first = text.splitlines()[0] if text.strip() else ""
+    if not text.strip():
+        raise InputError(f"{where}: the field sheet is empty; its first row holds the columns "
+                         f"{', '.join(COLUMNS[:15])}")
+    delimiter = max((",", ";", "\t"), key=lambda mark: len(
+        {name.strip().lower() for name in first.replace('"', "").split(mark)} & {*COLUMNS}))
+    try:
+        return list(csv.reader(io.StringIO(text, newline=""), delimiter=delimiter)), delimiter
+    except csv.Error as error:
+        raise InputError(f"{where}: is no CSV table ({error}); save the sheet as CSV") from None
+
+
 def _decoded(data: bytes, where: str) -> str:
-    if data[:4] == b"PK\x03\x04" or data[:4] == b"\xd0\xcf\x11\xe0":
-        raise InputError(f"{where}: is a spreadsheet workbook; save the sheet as CSV (UTF-8)")
+    if data[:4] == b"\xd0\xcf\x11\xe0":
+        raise InputError(f"{where}: is a workbook of the old kind (.xls); save the sheet as .xlsx "
+                         "or CSV (UTF-8)")
     if data[:2] in (b"\xff\xfe", b"\xfe\xff") or b"\0" in data:
         raise InputError(f"{where}: is UTF-16 or no text at all; save the sheet as CSV (UTF-8)")
     try:

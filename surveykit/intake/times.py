@@ -16,7 +16,9 @@ from surveykit.intake.records import NO_TIME_NS
 
 NS = 1_000_000_000
 NO_OFFSET = -(2**31)
-_FIRST_NS, _END_NS = (int(np.datetime64(year, "ns").astype(np.int64)) for year in ("1700", "2200"))
+FIRST_NS, END_NS = (int(np.datetime64(year, "ns").astype(np.int64)) for year in ("1700", "2200"))
+_OFFSET = re.compile(r"^\s*(.*?\d:?\d\d(?:[.,]\d+)?)\s*"
+                     r"(Z|[+-](?:[01]\d|2[0-3])(?::?[0-5]\d)?)?\s*$")
 _WIDTHS = {"Y": 4, "m": 2, "d": 2, "H": 2, "M": 2, "S": 2}
 
 Offsets = NDArray[np.int32]
@@ -47,7 +49,7 @@ def read_times(column: pd.Series, form: str) -> tuple[IntArray, Offsets]:
             return _formatted(texts, form)
         column = _iso(texts)
         if column.dtype.kind != "M":
-            return _one_by_one(texts, datetime.fromisoformat)
+            return _of_several_offsets(texts)
     offsets = np.full(len(column), NO_OFFSET, dtype=np.int32)
     zone = column.dt.tz
     if zone is not None:
@@ -62,12 +64,12 @@ def _in_ns(column: pd.Series) -> IntArray:
     """Return datetime64 of any unit in ns; no time outside the years 1700 to 2199."""
     scale = {"s": NS, "ms": 1_000_000, "us": 1000, "ns": 1}[column.dt.unit]
     values = column.to_numpy().view(np.int64)
-    inside = (values >= _FIRST_NS // scale) & (values < _END_NS // scale)
+    inside = (values >= FIRST_NS // scale) & (values < END_NS // scale)
     return values * scale if inside.all() else np.where(inside, values * scale, NO_TIME_NS)
 
 
 def _iso(texts: NDArray[np.object_]) -> pd.Series:
-    if any("," in text for text in texts[:1] if isinstance(text, str)):
+    if any("," in text for text in texts if isinstance(text, str)):
         texts = np.array([text.replace(",", ".") if isinstance(text, str) else text
                           for text in texts], dtype=object)
     try:
@@ -77,9 +79,30 @@ def _iso(texts: NDArray[np.object_]) -> pd.Series:
         return pd.Series(texts)
 
 
+def _of_several_offsets(texts: NDArray[np.object_]) -> tuple[IntArray, Offsets]:
+    """Read ISO 8601 times and their offsets apart; each different offset once."""
+    parts = pd.Series(texts, dtype=object).str.extract(_OFFSET)
+    walls = _iso(parts[0].to_numpy(dtype=object))
+    if walls.dtype.kind != "M" or walls.dt.tz is not None:
+        return _one_by_one(texts, datetime.fromisoformat)
+    wall = _in_ns(walls)
+    code, different = pd.factorize(parts[1].fillna(""))
+    offset_s = [_offset_s(str(text)) for text in different]
+    offsets = np.array(offset_s, dtype=np.int32)[code]
+    offsets[wall == NO_TIME_NS] = NO_OFFSET
+    return wall, offsets
+
+
+def _offset_s(text: str) -> int:
+    if not text:
+        return NO_OFFSET
+    offset = datetime.fromisoformat(f"2000-01-01T00:00{text}").utcoffset()
+    return int(offset.total_seconds()) if offset is not None else NO_OFFSET
+
+
 def _one_by_one(texts: NDArray[np.object_], read: Callable[[str], datetime]
                 ) -> tuple[IntArray, Offsets]:
-    wall = np.full(len(texts), NO_TIME_NS, dtype=np.int64)
+    walls: list[datetime | None] = [None] * len(texts)
     offsets = np.full(len(texts), NO_OFFSET, dtype=np.int32)
     for i, text in enumerate(texts):
         try:
@@ -89,8 +112,8 @@ def _one_by_one(texts: NDArray[np.object_], read: Callable[[str], datetime]
         offset = time.utcoffset()
         if offset is not None:
             offsets[i] = int(offset.total_seconds())
-        wall[i] = _in_ns(pd.Series([time.replace(tzinfo=None)], dtype="datetime64[us]"))[0]
-    return wall, offsets
+        walls[i] = time.replace(tzinfo=None)
+    return _in_ns(pd.Series(np.array(walls, dtype="datetime64[us]"))), offsets
 
 
 def _formatted(texts: NDArray[np.object_], form: str) -> tuple[IntArray, Offsets]:
@@ -150,7 +173,7 @@ def _sliced(texts: NDArray[np.object_], form: str) -> IntArray:
     following = (months + 1).astype("datetime64[D]").astype(np.int64)
     good &= (part["d"] >= 1) & (part["d"] <= following - first)
     seconds = (first + part["d"] - 1) * 86400 + part["H"] * 3600 + part["M"] * 60 + part["S"]
-    good &= (seconds >= _FIRST_NS // NS) & (seconds < _END_NS // NS)
+    good &= (seconds >= FIRST_NS // NS) & (seconds < END_NS // NS)
     wall[good] = (seconds * NS + fraction)[good]
     return wall
 
@@ -218,7 +241,8 @@ def _localized(wall_ns: IntArray, plain: BoolArray, zone: str, locate: Locate) -
         what = ("does not exist (clocks go forward)" if gap else
                 "occurs twice (clocks go back)")
         raise InputError(f"{locate(lost)}: the time {first.isoformat(sep=' ')} {what} in {zone}; "
-                         "let the logger write UTC, or times with their offset")
+                         "let the logger write UTC, or times with their offset; where it kept one "
+                         "offset all day, write that as its zone, such as Etc/GMT-1 for +01:00")
     return utc.asi8
 
 

@@ -15,10 +15,11 @@ from .figures_results import (
     interval_plot,
     interval_plots,
 )
+from .figures_steps import correction_plots, placement_plot, series_plots
 from .style import Drawing, show
 
 __all__ = [
-    "Drawing", "budget_plot", "change_plot", "change_plots", "day_timeline",
+    "Drawing", "budget_plot", "change_plot", "change_plots", "correction_plots", "day_timeline",
     "difference_matrices", "difference_matrix", "interval_plot", "interval_plots", "ledger_plot",
-    "show",
+    "placement_plot", "series_plots", "show",
 ]

@@ -17,15 +17,16 @@ from .style import HATCHES, INK, MUTED, PALETTE, PAPER, Drawing, panels, shorten
 
 Labels = Mapping[str, str] | None
 TRACKS = (("irradiance_w_m2", "irradiance", "W m⁻²"), ("zenith_deg", "sun height", "°"),
-          ("air_temperature_degc", "air temperature", "°C"))
+          ("air_temperature_degc", "air temperature", "°C"),
+          ("body_temperature_degc", "body temperature", "°C"))
 POINTS, FEW, MANY = 600, 40, 6
 
 
 @styled
 def day_timeline(passes: pd.DataFrame, sky: pd.DataFrame | None = None,
                  weather: pd.DataFrame | None = None, time_zone: str = "UTC",
-                 labels: Labels = None) -> Drawing:
-    """Draw the passes as bars by surface over irradiance, sun height and air temperature.
+                 labels: Labels = None, excluded: pd.DataFrame | None = None) -> Drawing:
+    """Draw the passes as bars by surface over irradiance, sun height, air and body temperature.
 
     Parameters
     ----------
@@ -35,6 +36,8 @@ def day_timeline(passes: pd.DataFrame, sky: pd.DataFrame | None = None,
         `time_utc` with `irradiance_w_m2` and `zenith_deg` [deg]; with `air_temperature_degc`.
     time_zone : str
         IANA name of the zone of the time axis.
+    excluded : DataFrame, optional
+        `start_utc`, `stop_utc` and `reason` of stretches whose records were left out.
     """
     if passes.empty:
         return Drawing(None, "No pass could be matched with records, so there is no day to draw.")
@@ -72,6 +75,7 @@ def day_timeline(passes: pd.DataFrame, sky: pd.DataFrame | None = None,
         axis.grid(axis="x")
         axis.tick_params(axis="y", length=2)
         sns.despine(ax=axis)
+    reasons = _stretches(axes[0], excluded, window)
     _clock_axis(axes[-1], time_zone)
     begin, end = (f"{time.tz_convert(time_zone):%H:%M}" for time in (first, last))
     unused = int((passes["status"] == "not evaluated").sum())
@@ -79,9 +83,25 @@ def day_timeline(passes: pd.DataFrame, sky: pd.DataFrame | None = None,
            f"{begin} to {end} ({time_zone})" + "".join(f"; {span}" for span in spans) + ".")
     if unused:
         alt += f" {w.plural(unused, 'pass', 'passes')} could not be evaluated."
+    alt += f" Left out: {reasons}." if reasons else ""
     return Drawing(figure, alt, "The day: passes by surface" + (
         " over " + w.listing(name for _, name, _ in tracks) if tracks else "") + (
-        "; a cross marks one that could not be evaluated." if unused else "."))
+        "; a cross marks one that could not be evaluated" if unused else "") + (
+        f". Grey stretches were left out: {reasons}." if reasons else "."))
+
+
+def _stretches(axis: Axes, excluded: pd.DataFrame | None,
+               window: tuple[pd.Timestamp, pd.Timestamp]) -> str:
+    """Shade what was left out inside the window; return the reasons with their counts."""
+    if excluded is None or excluded.empty:
+        return ""
+    inside = excluded[(excluded["stop_utc"] > window[0]) & (excluded["start_utc"] < window[1])]
+    for start, stop in zip(inside["start_utc"], inside["stop_utc"], strict=True):
+        axis.axvspan(mdates.date2num(start), mdates.date2num(stop), color=MUTED, alpha=0.3,
+                     linewidth=0, zorder=0)
+    counts = inside["reason"].value_counts(sort=False)
+    return w.listing(f"{reason} ({w.plural(int(n), 'stretch', 'stretches')})"
+                     for reason, n in counts.items()) if len(inside) else ""
 
 
 @styled

@@ -11,6 +11,8 @@ from dataclasses import dataclass
 from html import escape
 from typing import Literal
 
+from .typeset import typeset
+
 NO_BREAK = "\u00a0"
 Align = Literal["text", "short", "long", "number", "code"]
 
@@ -57,11 +59,11 @@ class Cell:
     @property
     def html(self) -> str:
         """The cell's escaped content."""
-        inner = escape(self.text)
+        inner = _set(self.text)
         if self.quiet:
             inner = f'<span class="quiet">{inner}</span>'
         note = f'<sup class="note">{escape(self.note)}</sup>' if self.note else ""
-        tail = f"{NO_BREAK}{escape(self.tail)}{note}" if self.tail else ""
+        tail = f"{NO_BREAK}{_set(self.tail)}{note}" if self.tail else ""
         if not tail:
             inner += note
         if self.room:
@@ -98,12 +100,12 @@ def grouped_table(caption: str, columns: Sequence[Column], groups: Sequence[Grou
     filled = [(heading, rows) for heading, rows in groups if rows]
     if not filled:
         return paragraph(empty, "empty")
-    head = "".join(f'<th scope="col" class="{c.align}">{escape(c.heading)}</th>' for c in columns)
+    head = "".join(f'<th scope="col" class="{c.align}">{_set(c.heading)}</th>' for c in columns)
     body = "".join(_group(columns, heading, rows) for heading, rows in filled)
-    below = "".join(f'<li><span class="letter">{escape(letter)}</span> {escape(text)}</li>'
+    below = "".join(f'<li><span class="letter">{escape(letter)}</span> {_set(text)}</li>'
                     for letter, text in notes)
-    html = (f'<div class="table" role="group" aria-label="{escape(caption)}" tabindex="0">\n'
-            f"<table>\n<caption><span>{escape(caption)}</span></caption>\n"
+    html = (f'<div class="table" role="group" aria-label="{_set(caption)}" tabindex="0">\n'
+            f"<table>\n<caption><span>{_set(caption)}</span></caption>\n"
             f"<thead><tr>{head}</tr></thead>\n{body}</table>\n</div>\n")
     if below:
         html += f'<ul class="notes">{below}</ul>\n'
@@ -113,7 +115,7 @@ def grouped_table(caption: str, columns: Sequence[Column], groups: Sequence[Grou
 def paragraph(text: str, css: str = "") -> Html:
     """Return one escaped paragraph."""
     attribute = f' class="{css}"' if css else ""
-    return Html(f"<p{attribute}>{escape(text)}</p>\n", text)
+    return Html(f"<p{attribute}>{_set(text)}</p>\n", text)
 
 
 def bullets(lines: Sequence[str], *, empty: str = "", css: str = "") -> Html:
@@ -132,7 +134,7 @@ def bullets(lines: Sequence[str], *, empty: str = "", css: str = "") -> Html:
 
 def _group(columns: Sequence[Column], heading: str, rows: Sequence[Row]) -> str:
     head = (f'<tr class="group"><th scope="rowgroup" colspan="{len(columns)}">'
-            f"<span>{escape(heading)}</span></th></tr>\n") if heading else ""
+            f"<span>{_set(heading)}</span></th></tr>\n") if heading else ""
     body = "".join(f"<tr>{_row(columns, row)}</tr>\n" for row in rows)
     return f"<tbody>\n{head}{body}</tbody>\n"
 
@@ -140,7 +142,8 @@ def _group(columns: Sequence[Column], heading: str, rows: Sequence[Row]) -> str:
 def _row(columns: Sequence[Column], row: Row) -> str:
     written = []
     for place, (column, cell) in enumerate(zip(columns, row, strict=True)):
-        inner = cell.html if isinstance(cell, Cell) else escape(cell)
+        inner = (cell.html if isinstance(cell, Cell) else escape(cell) if column.align == "code"
+                 else _set(cell))
         tag = 'th scope="row"' if place == 0 else "td"
         written.append(f'<{tag} class="{column.align}">{inner}</{tag.split()[0]}>')
     return "".join(written)
@@ -149,5 +152,9 @@ def _row(columns: Sequence[Column], row: Row) -> str:
 def _lead(line: str) -> str:
     subject, colon, rest = line.partition(": ")
     if colon and len(subject) <= 90:
-        return f"<strong>{escape(subject)}:</strong> {escape(rest)}"
-    return escape(line)
+        return f"<strong>{_set(subject)}:</strong> {_set(rest)}"
+    return _set(line)
+
+
+def _set(text: str) -> str:
+    return escape(typeset(text))

@@ -23,6 +23,8 @@ from . import sentences, standing
 from . import tables as t
 from . import wording as w
 from .markup import Html, bullets, paragraph
+from .methods import methods
+from .typeset import typeset
 
 TEMPLATES = Path(__file__).parent / "template"
 LEFT_OUT = {"remove_cell", "page-skip"}  # cells with one of these tags are not on the page
@@ -60,8 +62,8 @@ def build_page(notebooks: Sequence[NotebookNode], tables: Mapping[str, pd.DataFr
                               undefined=StrictUndefined, trim_blocks=True, lstrip_blocks=True)
     page = environment.get_template("page.html.j2").render(
         facts=facts, css=Html((TEMPLATES / "page.css").read_text("utf-8")), parts=parts,
-        title_block=_title_block(facts), summary=_summary(tables, facts),
-        appendix=_appendix(facts))
+        title_block=_title_block(tables, facts), summary=_summary(tables, facts),
+        appendix=_appendix(tables, facts))
     watch = _Watch()
     watch.feed(page)
     if watch.found:
@@ -140,18 +142,27 @@ def _refuse_unfit(output: NotebookNode, place: int) -> None:
         raise ValueError(f"part {place} shows an image without alt text; show it by figures.show")
 
 
-def _title_block(facts: Mapping[str, Any]) -> list[tuple[str, list[str]]]:
+def _title_block(tables: Mapping[str, pd.DataFrame],
+                 facts: Mapping[str, Any]) -> list[tuple[str, list[str]]]:
     site, labels = facts["site"], facts.get("surfaces")
     where = ", ".join([site["name"], _degrees(site["latitude"], "N", "S"),
                        _degrees(site["longitude"], "E", "W"),
                        f"{w.number(site['elevation_m'], 0)} m above sea level"])
+    conditions = [*facts.get("conditions", [])] or ["Not stated."]
+    height = 90 - tables["passes"]["zenith_deg"].dropna()
+    if len(height):
+        conditions.append(f"Sun {height.min():.0f}° to {height.max():.0f}° above the horizon "
+                          "during the passes.")
     rows = [("Date", [w.date_text(facts["date"])]), ("Site", [where]),
-            ("Conditions", [*facts.get("conditions", [])] or ["Not stated."])]
+            ("Crew", [", ".join(facts.get("crew") or []) or "Not stated."]),
+            ("Conditions", conditions)]
+    if facts.get("remarks"):
+        rows.append(("Notes", [*facts["remarks"]]))
     if facts.get("earlier"):
         rows.append(("Compared with", [*facts["earlier"]]))
         rows.append(("Control", [w.label(facts.get("control") or "", labels) or "None named."]))
     rows.append(("Times", [f"{facts.get('time_zone') or site['time_zone']} unless UTC is stated."]))
-    return rows
+    return [(term, [typeset(line) for line in lines]) for term, lines in rows]
 
 
 def _summary(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> list[dict[str, Any]]:
@@ -190,12 +201,17 @@ def _changes(changes: pd.DataFrame, facts: Mapping[str, Any]) -> Html:
         "No change could be judged; the reasons stand in the next section."))
 
 
-def _appendix(facts: Mapping[str, Any]) -> list[dict[str, Any]]:
+def _appendix(tables: Mapping[str, pd.DataFrame],
+              facts: Mapping[str, Any]) -> list[dict[str, Any]]:
     """Return the sections of the appendix: identifier, heading, markup."""
-    rerun = Html(f"<pre>{escape(facts.get('rerun') or 'Not handed over.')}</pre>\n")
+    rerun = facts.get("rerun") or "Not handed over."
+    commands = [f"surveykit verify reports/{facts['campaign']}", rerun]
+    verify, again = (Html(f"<pre>{escape(command)}</pre>\n") for command in commands)
     return [
         {"id": "reading", "heading": "How to read the numbers",
          "body": [bullets(standing.reading(facts))]},
+        {"id": "methods", "heading": "Methods and their sources",
+         "body": [bullets(methods(tables, facts))]},
         {"id": "instruments", "heading": "Instruments and calibrations",
          "body": [t.instrument_table(facts.get("instruments", []))]},
         {"id": "settings", "heading": "Settings",
@@ -204,8 +220,10 @@ def _appendix(facts: Mapping[str, Any]) -> list[dict[str, Any]]:
          "body": [t.inputs_table(facts.get("inputs", []))]},
         {"id": "versions", "heading": "Programs", "body": [paragraph(standing.programs(facts))]},
         {"id": "rerun", "heading": "How to run it again", "body": [
-            paragraph("From the project’s folder, with the same input files and programs, this "
-                      "gives the same page and tables:"), rerun]},
+            paragraph("From the project’s folder, with the input files listed above. First: do "
+                      "inputs, tables and page still belong together?"), verify,
+            paragraph("The same page and tables again, on one machine and with the programs "
+                      "listed above byte for byte:"), again]},
     ]
 
 

@@ -18,6 +18,19 @@ from . import wording as w
 Tables = Mapping[str, pd.DataFrame]
 Facts = Mapping[str, Any]
 Labels = Mapping[str, str] | None
+NEXT = {  # a word of the largest source: what to do about it next time
+    "cooling of the ground": " Next: read stand-off on sunlit ground, or press for a few seconds "
+                             "only.",
+    "emissivity": " Next: a surer emissivity for these surfaces, from a sample or a reference "
+                  "thermometer on the spot.",
+    "calibration": " Next: a fresh calibration of these heads; it holds for every surface at once.",
+    "scatter": " Next: more passes and, where there is one patch, more patches.",
+    "sky": " Next: a reading of the sky itself, and air temperature and humidity at the site.",
+    "ground in the head": " Next: a lower head or a larger patch, and the albedo around it.",
+    "shade": " Next: a higher head or a smaller one.",
+    "zero": " Next: capped readings at the start, in the middle and at the end.",
+    "dark": " Next: capped readings at the start, in the middle and at the end.",
+}
 
 
 def measured(tables: Tables, facts: Facts) -> list[str]:
@@ -37,7 +50,7 @@ def measured(tables: Tables, facts: Facts) -> list[str]:
         if known.empty:
             continue
         ends = [known.iloc[0], known.iloc[-1]][:len(known)]
-        texts = [f"{_value(row)} ({w.label(row['surface'], labels)})" for row in ends]
+        texts = [f"{_value(row)} for {w.label(row['surface'], labels)}" for row in ends]
         lines.append(f"{w.quantity_text(quantity, kind)}: " + (
             f"from {texts[0]} to {texts[1]}." if len(texts) > 1 else f"{texts[0]}."))
     return lines
@@ -197,9 +210,10 @@ def narrowing(budget: pd.DataFrame, labels: Labels = None) -> list[str]:
         most = own.iloc[int(own["share"].argmax())]
         most_of_all = (f", most of all for {w.label(str(most['surface']), labels)} "
                        f"({w.percent(most['share'])})") if most["share"] > mean[top] + 0.05 else ""
+        advice = next((text for part, text in NEXT.items() if part in top), "")
         lines.append(f"{w.quantity_text(quantity, kind)}: the largest part of the variance is "
                      f"“{top}”, {w.percent(mean[top])} on average over the "
-                     f"surfaces{most_of_all}.")
+                     f"surfaces{most_of_all}.{advice}")
     return lines
 
 

@@ -21,6 +21,7 @@ from matplotlib.figure import Figure
 from matplotlib.layout_engine import ConstrainedLayoutEngine
 
 from .markup import paragraph
+from .typeset import typeset
 
 WIDTH_IN, DPI = 4.7, 180
 PAPER, INK, MUTED, HAIRLINE = "#ffffff", "#1f1e1b", "#5d5a53", "#d9d5ca"
@@ -63,7 +64,7 @@ def panels(n: int, heights: Iterable[float], **kwargs: Any) -> tuple[Figure, lis
 
 def shorten(text: str, width: int = 22, most: int = 2) -> str:
     """Return a label broken over at most so many lines, and cut where it is longer still."""
-    words, lines = text.split(), [""]
+    words, lines = typeset(text).split(), [""]
     for word in words:
         if lines[-1] and len(lines[-1]) + 1 + len(word) > width:
             lines.append("")
@@ -99,5 +100,6 @@ def show(*drawings: Drawing | Iterable[Drawing]) -> None:
             display(paragraph(drawing.alt, "empty"))
         else:
             image = base64.b64encode(png(drawing.figure)).decode("ascii")
-            display({"image/png": image, "text/plain": drawing.alt}, raw=True,
-                    metadata={"image/png": {"alt": drawing.alt, "caption": drawing.caption}})
+            alt, caption = typeset(drawing.alt), typeset(drawing.caption)
+            display({"image/png": image, "text/plain": alt}, raw=True,
+                    metadata={"image/png": {"alt": alt, "caption": caption}})

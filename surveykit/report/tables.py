@@ -49,14 +49,14 @@ def show(item: Html | pd.DataFrame | Sequence[str], caption: str = "",
     item : Html, DataFrame or sequence of str
         What the functions of this module return, any frame, or what `sentences` returns.
     caption : str
-        Needed with a frame.
+        Needed with a frame; with sentences, what is said where there is none.
     columns : sequence of str, optional
         The frame's columns to show, in order; all by default.
     """
     if isinstance(item, pd.DataFrame):
         item = frame_table(item, caption, columns)
     elif not isinstance(item, Html):
-        item = bullets(item, empty="Nothing to report.")
+        item = bullets(item, empty=caption or "There is none.")
     display(item)
 
 
@@ -64,7 +64,7 @@ def frame_table(frame: pd.DataFrame, caption: str, columns: Sequence[str] | None
     """Return any frame as a table, numbers to four significant digits, underscores as spaces."""
     shown = frame if columns is None else frame[[*columns]]
     numeric = {name: pd.api.types.is_numeric_dtype(shown[name]) for name in shown}
-    heads = [Column(w.sentence_case(str(name).replace("_", " "))[:-1].replace("Ndvi", "NDVI"),
+    heads = [Column(_heading(str(name)),
                     "number" if numeric[name] else "text") for name in shown]
     rows = [[_any_text(value) for value in row]
             for row in shown.itertuples(index=False, name=None)]
@@ -75,6 +75,13 @@ def not_evaluated_list(surfaces: pd.DataFrame, labels: Labels = None) -> Html:
     """Return the surfaces without a value and why, gathered by reason."""
     return bullets(not_evaluated({"surfaces": surfaces}, labels),
                    empty="Every surface on the field sheet was evaluated.")
+
+
+def _heading(name: str) -> str:
+    quantity, _, kind = name.partition(" ")
+    if quantity in w.QUANTITIES:
+        return w.quantity_text(quantity, kind)
+    return w.sentence_case(name.replace("_", " "))[:-1]
 
 
 def _any_text(value: Any) -> str:

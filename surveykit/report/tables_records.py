@@ -26,7 +26,9 @@ def check_table(checks: pd.DataFrame, labels: Mapping[str, str] | None = None) -
     for row in ordered.to_dict("records"):
         where = [row["logger"], row["column"], w.label(row["surface"], labels), row["pass"]]
         rows.append([row["check"], row["severity"], ", ".join(filter(None, where)) or "campaign",
-                     w.count(row["records"]), w.sentence_case(row["message"]), row["source"]])
+                     w.count(row["records"]) if row["records"] else "",
+                     w.sentence_case(row["message"].removeprefix(f"{row['records']} records: ")),
+                     row["source"]])
     heads = [Column("Check"), Column("Severity"), Column("Where"), Column("Records", "number"),
              Column("Finding", "long"), Column("Source of the limit")]
     return table("Checks that found something, the most severe first.", heads, rows,
@@ -75,7 +77,7 @@ def settings_table(settings: Rows) -> Html:
              "" if row["source"] == row["origin"] else row["source"]]
             for key, value in parts.items())
     heads = [Column("Setting", "code"), Column("Value", "number"), Column("Unit", "short"),
-             Column("Origin"), Column("Source", "long")]
+             Column("Origin", "short"), Column("Source", "long")]
     return grouped_table("Every setting of the method; “yours” marks one changed in the parameter "
                          "file.", heads, [*groups.items()], empty="No setting was handed over.")
 

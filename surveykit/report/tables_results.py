@@ -59,7 +59,7 @@ def surface_table(surfaces: pd.DataFrame, labels: Labels = None) -> Html:
              _dof(row["dof"]), w.count(row["n_patches"]), w.count(row["n_passes"]),
              w.count(row["n_records"]), _word(row["status"], _note(row))]
             for index, row in block.iterrows()]))
-    heads = [Column("Surface"), _with_u("Value"), Column("k", "number"),
+    heads = [_surface_column(surfaces, labels), _with_u("Value"), Column("k", "number"),
              Column("Degrees of freedom", "number"), Column("Patches", "number"),
              Column("Passes", "number"), Column("Records", "number"), Column("Status", "long")]
     return grouped_table(f"Surfaces: mean ± U, {_coverage(surfaces)}, U = k times the standard "
@@ -82,11 +82,11 @@ def pass_table(passes: pd.DataFrame, labels: Labels = None, time_zone: str = "UT
              _word(row["status"], "; ".join(filter(None, (row["note"], *(
                  flag for flag in row["flags"].split("; ") if flag not in shared)))))]
             for row in block.to_dict("records")]))
-    heads = [Column("Pass", "short"), Column("Surface"), Column("From", "number"),
+    heads = [Column("Pass", "short"), _surface_column(passes, labels), Column("From", "number"),
              Column("To", "number"), Column("Value", "number"),
              Column(f"u{w.NO_BREAK}within", "number"), Column("Records", "number"),
              Column("Effective", "number"),
-             Column(f"Zenith,{w.NO_BREAK}°", "number"), Column("Status", "long")]
+             Column(f"Zenith,{w.NO_BREAK}°", "number"), Column("Status")]
     return grouped_table(
         f"Passes in order of time ({time_zone}), after trimming. u within: standard uncertainty of "
         "the pass mean from its own records; effective: records reduced for their correlation; "
@@ -120,12 +120,14 @@ def change_table(changes: pd.DataFrame, labels: Labels = None) -> Html:
         for (quantity, kind), block in w.families(changes[changes["earlier"] == earlier]):
             values = _values(block, "change", sign=True)
             groups.append((f"{_heading(quantity, kind, block)}, since {earlier}", [
-                [w.label(row["surface"], labels), values[index], *_judged(row),
-                 _method(row["method"], w.label(row["control"], labels))]
+                [w.label(row["surface"], labels), values[index], *_judged(row), row["method"]]
                 for index, row in block.iterrows()]))
-    heads = [Column("Surface"), _with_u("Change"),
+    heads = [_surface_column(changes, labels), _with_u("Change"),
              Column("Verdict", "long"), Column("Conditions", "long"), Column("Method")]
-    return grouped_table(f"Changes since earlier campaigns, {_coverage(changes)}.", heads, groups,
+    controls = [w.label(name, labels) for name in dict.fromkeys(changes["control"]) if name]
+    against = f"; control: {w.listing(controls)}" if controls else ""
+    return grouped_table(f"Changes since earlier campaigns, {_coverage(changes)}{against}.", heads,
+                         groups,
                          empty="No earlier campaign was named, so no change was looked for.")
 
 
@@ -190,6 +192,12 @@ def _dof(dof: float) -> str:
     return f">{w.NO_BREAK}1000" if 1000 < dof < math.inf else w.number(dof, 0)
 
 
+def _surface_column(frame: pd.DataFrame, labels: Labels) -> Column:
+    """Surfaces stay on one line unless a label is long."""
+    longest = max((len(w.label(name, labels)) for name in frame["surface"]), default=0)
+    return Column("Surface", "short" if longest <= 24 else "text")
+
+
 def _with_u(name: str) -> Column:
     return Column(f"{name} ± U".replace(" ", w.NO_BREAK), "number")
 
@@ -204,12 +212,6 @@ def _judged(row: pd.Series) -> tuple[Cell, str]:
         verdict = f"{verdict} (could have missed up to {missed})"
     return (Cell(verdict or "not judged", quiet=not verdict),
             ": ".join(filter(None, (conditions, note))))
-
-
-def _method(method: str, control: str) -> str:
-    if not control:
-        return method
-    return f"{method} {control}" if method == "ratio to control" else f"{method}, {control}"
 
 
 def _heading(quantity: str, kind: str, block: pd.DataFrame, degrees: str = "degC") -> str:

@@ -13,6 +13,8 @@ from typing import Any
 
 import pandas as pd
 
+from .typeset import typeset
+
 MINUS, NO_BREAK, NARROW_SPACE, DASH = "\u2212", "\u00a0", "\u202f", "\u2013"
 PLACES = {"temperature": 1, "albedo": 3, "ndvi": 3}
 UNITS = {"degC": "°C", "1": "", "W m-2": "W m⁻²", "m s-1": "m s⁻¹", "uV": "µV", "deg": "°",
@@ -31,7 +33,7 @@ def unit_text(unit: str) -> str:
     >>> unit_text("degC"), unit_text("1"), unit_text("W m-2")
     ('°C', '', 'W m⁻²')
     """
-    return UNITS.get(unit, unit)
+    return UNITS.get(unit, typeset(unit))
 
 
 def quantity_text(quantity: str, kind: str = "") -> str:

@@ -62,12 +62,37 @@ KIT_CASES = {
         "thermal.columns.body: holds brightness_temperature as column 'target' does"),
     "time among the columns": (
         "    air: {", "    time: {", "    air: {",
-        "weather.columns.time: is the column of times"),
-    "date and time columns": (
-        "{column: time, zone: UTC}", "{column: [date, time], zone: UTC}",
-        "{column: time, zone: UTC}", "weather.time.column: a date and a time column are reserved"),
-    "epoch seconds": ("format: iso8601", "format: epoch_s", "format: iso8601",
-                      "thermal.time.format: epoch_s is reserved for later work"),
+        "weather.columns.time: is a column of times"),
+    "one header for date and time": (
+        "{column: time, zone: UTC}", "{column: [time, time], zone: UTC}",
+        "{column: [date, time], zone: UTC}", "weather.time.column: names 'time' twice"),
+    "five columns of time": (
+        "{column: time, zone: UTC}", "{column: [a, b, c, d, e], zone: UTC}",
+        "{column: [a, b, c, d], zone: UTC}",
+        "weather.time.column: got a list; write the header of the column of times"),
+    "epoch seconds in two columns": (
+        "column: time, zone: UTC}", "column: [s, ms], format: epoch_s, zone: UTC}",
+        "column: s, format: epoch_s, zone: UTC}",
+        "weather.time.column: got 2 columns; epoch_s is one column"),
+    "epoch seconds of a zone": (
+        "column: time, zone: UTC}", "column: time, format: epoch_s, zone: Europe/Lisbon}",
+        "column: time, format: epoch_s, zone: UTC}",
+        "weather.time.zone: got 'Europe/Lisbon'; epoch_s counts in UTC"),
+    "day of an unknown year": (
+        "column: time, zone: UTC}", "column: [day, hhmm], format: day_of_year, zone: UTC}",
+        "column: [day, hhmm], format: day_of_year, year: 2025, zone: UTC}",
+        "weather.time.year: missing; no column holds the year"),
+    "a year beside its column": (
+        "column: time, zone: UTC}",
+        "column: [year, day, hhmm], format: day_of_year, year: 2025, zone: UTC}",
+        "column: [year, day, hhmm], format: day_of_year, zone: UTC}",
+        "weather.time.year: got 2025 beside a column of years"),
+    "a year of whole dates": (
+        "column: time, zone: UTC}", "column: time, year: 2025, zone: UTC}",
+        "column: time, zone: UTC}", "weather.time.year: got 2025; only format day_of_year"),
+    "lines of units": ('decimal: "."', 'decimal: ".", unit_lines: -1',
+                       'decimal: ".", unit_lines: 2',
+                       "thermal.layout.unit_lines: got -1; write a whole number from 0 to 20"),
     "half a date": ('"%d/%m/%Y %H:%M:%S"', '"%d/%m %H:%M:%S"', '"%d/%m/%y %H:%M"',
                     "shortwave.time.format: got '%d/%m %H:%M:%S', which does not hold a whole"),
     "hours of twelve": ('"%d/%m/%Y %H:%M:%S"', '"%d/%m/%Y %I:%M:%S"', '"%d/%m/%Y %I:%M:%S %p"',

@@ -254,7 +254,7 @@ def test_schema_accepts_what_loads_and_refuses_what_editors_should_mark(project)
     campaign.validate(data | {"instruments": yaml.safe_load(project.kit.read_text())})
     for bad in ({"titel": "x"}, {"format": 2}, {"campaign": "Mill"}, {"date": 20250724},
                 {"site": data["site"] | {"latitude": "41"}}, {"surfaces": {"a b": {"label": "x"}}},
-                {"site": data["site"] | {"sky_view": 1.2}}, {"loggers": {}}, {"crew": ["ab"]},
+                {"site": data["site"] | {"sky_view": 1.2}}, {"loggers": {}}, {"crew": "ab"},
                 {"conditions": {"sky": "hazy"}}, {"settings": {"albedo": {"zenit": 3}}}):
         assert list(campaign.iter_errors(data | bad)), bad
     thermal = yaml.safe_load(project.kit.read_text())["thermal"]

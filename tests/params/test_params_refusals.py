@@ -89,8 +89,8 @@ CAMPAIGN_CASES = {
         "settings: {}", "settings: {albedo: 3}", "settings: {albedo: {}}",
         "settings.albedo: got 3; write keys of this section"),
     "reserved": (
-        "settings: {}", "settings: {}\ncrew: [ab]", "settings: {}",
-        "crew: reserved for later work"),
+        "settings: {}", "settings: {}\nderived: [sri]", "settings: {}",
+        "derived: reserved for later work"),
     "reserved in comparison": (
         "  control:", "  second_control: lawn\n  control:", "  control:",
         "comparison.second_control: reserved for later work"),

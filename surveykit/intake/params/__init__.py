@@ -16,7 +16,7 @@ from surveykit.intake.params.loading import (
 )
 from surveykit.intake.params.paths import find_root, inside
 from surveykit.intake.params.schema import campaign_schema, instruments_schema, write_schemas
-from surveykit.intake.params.sections import Clock, LoggerUse, Watch
+from surveykit.intake.params.sections import LoggerUse
 from surveykit.intake.params.settings import SettingRow, Settings
 
 __all__ = [

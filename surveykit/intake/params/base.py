@@ -96,6 +96,10 @@ def _plain_text(text: str) -> str:
     return text
 
 
+def _notes(text: str) -> str:
+    return "\n".join(_plain_text(line.rstrip()) for line in text.splitlines() if line.strip())
+
+
 def _date(text: str) -> str:
     try:
         if not re.fullmatch(r"\d{4}-\d\d-\d\d", text, re.ASCII):
@@ -109,6 +113,8 @@ def _date(text: str) -> str:
 
 
 Text = Annotated[str, Field(max_length=120), AfterValidator(_plain_text)]
+Initials = Annotated[str, Field(max_length=12), AfterValidator(_plain_text)]
+Notes = Annotated[str, Field(max_length=2000), AfterValidator(_notes)]
 Name = Annotated[str, Field(pattern=NAME_PATTERN)]
 DateText = Annotated[str, Field(json_schema_extra={"format": "date"}), AfterValidator(_date)]
 TEXT_WRITE = "plain text, up to 120 characters"

@@ -13,7 +13,9 @@ from surveykit.intake.params.base import (
     DATE_WRITE,
     TEXT_WRITE,
     DateText,
+    Initials,
     Name,
+    Notes,
     Strict,
     Text,
     key,
@@ -27,9 +29,9 @@ from surveykit.intake.params.sections import (
     RelevantChange,
     Site,
     Surface,
-    Watch,
 )
 from surveykit.intake.params.settings import Settings
+from surveykit.intake.params.timekeeping import Watch
 
 CAMPAIGN_PATTERN = r"^[a-z0-9][a-z0-9-]{0,63}$"
 LATER = "reserved for later work; leave it out"
@@ -45,7 +47,7 @@ Kit = Annotated[dict[Name, Instrument], Field(min_length=1)]
 class Campaign(Strict):
     """Parameters of one campaign: one survey day at a site."""
 
-    RESERVED = dict.fromkeys(("crew", "notes", "interventions", "derived", "caution"), LATER)
+    RESERVED = dict.fromkeys(("interventions", "derived", "caution"), LATER)
 
     format: Literal[1] = key("Format of this file.", default=1,
                              write="1, the format this surveykit reads")
@@ -78,6 +80,10 @@ class Campaign(Strict):
                                  write="{earlier, control, relevant_change}")
     watch: Watch = key("The clock of the field sheet.", default={}, validate_default=True,
                        write="{offset_s, u_s}")
+    crew: Annotated[tuple[Initials, ...], Field(strict=False, max_length=40)] = key(
+        "Initials of those who did the survey.", default=(), write="a list such as [AB, CD]")
+    notes: Notes = key("What else a reader should know of the day.", default="",
+                       write="plain text, up to 2000 characters")
 
     @property
     def relevant_change(self) -> RelevantChange:

@@ -13,6 +13,7 @@ from surveykit.intake.params.instruments import Instrument
 from surveykit.intake.params.paths import path_fault
 from surveykit.intake.params.sections import Comparison, LoggerUse, Surface
 from surveykit.intake.params.settings import Settings
+from surveykit.intake.params.timekeeping import clock_faults
 
 
 def cross_faults(
@@ -35,6 +36,9 @@ def cross_faults(
         yield ("campaign",), f"got {campaign!r} in the file {path.name}; write {path.stem}, " \
                              f"or name the file {campaign}.yml"
     yield from _paths(sections, root)
+    loggers: dict[str, LoggerUse] = sections.get("loggers", {})
+    yield from clock_faults({name: use.clock for name, use in loggers.items()},
+                            names.get("loggers", ()))
     comparison: Comparison | None = sections.get("comparison")
     if comparison is not None:
         yield from _comparison(comparison, names.get("surfaces", ()), path, root)

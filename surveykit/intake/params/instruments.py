@@ -7,13 +7,15 @@ from datetime import UTC, datetime
 from typing import Annotated, Any, Literal
 from zoneinfo import ZoneInfo
 
-from pydantic import Field, field_validator
+from pydantic import BeforeValidator, Field
 
-from surveykit.intake.params.base import TEXT_WRITE, Fault, Strict, Text, fault, key, number_words
+from surveykit.intake.params.base import TEXT_WRITE, Fault, Strict, Text, key, number_words
 from surveykit.intake.params.channels import Channel, channel
 from surveykit.intake.params.heads import Column, Head
 from surveykit.intake.params.quantities import MAIN
 from surveykit.intake.params.settings import Settings
+
+COUNTED = ("epoch_s", "day_of_year")
 
 
 def zone_fault(zone: str) -> str | None:
@@ -38,6 +40,9 @@ class Layout(Strict):
     missing: Annotated[tuple[str, ...], Field(strict=False)] = key(
         "Codes of a missing reading, compared as text and as numbers.",
         default=("", "NAN", "-9999"), write='texts in quotes, such as ["", "NAN", "-9999"]')
+    unit_lines: int = key(
+        "Lines between the header and the records, such as one of units.", default=0, ge=0, le=20,
+        write=number_words("", whole=True, ge=0, le=20))
 
     def faults(self) -> list[Fault]:
         """The delimiter separates, and is not the decimal mark."""
@@ -50,31 +55,50 @@ class Layout(Strict):
         return []
 
 
-class TimeColumn(Strict):
-    """The column of times."""
+def one_or_more(data: Any) -> Any:
+    """Return a list as it is, anything else as a list of one."""
+    return data if isinstance(data, list | tuple) else [data]
 
-    column: Text = key("Header of the column of times.", write=TEXT_WRITE)
-    format: Text = key("iso8601 or a strptime format.", default="iso8601",
-                       write='iso8601, or a format such as "%d/%m/%Y %H:%M:%S"')
+
+class TimeColumn(Strict):
+    """The column or columns of times."""
+
+    column: Annotated[
+        tuple[Text, ...], Field(strict=False, min_length=1, max_length=4),
+        BeforeValidator(one_or_more, json_schema_input_type=Text | list[Text])] = key(
+        "Header of the column of times; a list where date and time stand in columns of their own: "
+        "format then describes them joined by a blank.",
+        write="the header of the column of times, or a list such as [date, time]")
+    format: Text = key(
+        "iso8601, a strptime format, epoch_s (seconds since 1970 in UTC) or day_of_year (column: "
+        "day with its fraction; [day, hhmm]; [year, day, hhmm]; or [year, day, hhmm, seconds]).",
+        default="iso8601",
+        write='iso8601, epoch_s, day_of_year, or a format such as "%d/%m/%Y %H:%M:%S"')
     zone: str = key("Time zone the logger writes in: UTC or an IANA name.",
                     write="UTC or an IANA name such as Europe/Lisbon")
-
-    @field_validator("column", mode="before")
-    @classmethod
-    def _one_column(cls, data: Any) -> Any:
-        if isinstance(data, list):
-            raise fault("a date and a time column are reserved for later work; "
-                        "write the one column that holds both")
-        return data
+    year: int | None = key("Year of a day_of_year that stands without one.", default=None,
+                           ge=1950, le=2199, write="the year of the records, such as 2025")
 
     def faults(self) -> Iterator[Fault]:
         """The format must hold a whole date and time; the zone must exist."""
-        if self.format in ("epoch_s", "day_of_year"):
-            yield ("format",), f"{self.format} is reserved for later work; write iso8601 or " \
-                               'a format such as "%d/%m/%Y %H:%M:%S"'
+        count = len(self.column)
+        if len(set(self.column)) < count:
+            yield ("column",), f"names {self.column[0]!r} twice; write each header once"
+        if self.format == "epoch_s":
+            if count > 1:
+                yield ("column",), f"got {count} columns; epoch_s is one column: write its header"
+            if self.zone != "UTC":
+                yield ("zone",), f"got {self.zone[:40]!r}; epoch_s counts in UTC: write UTC"
+        elif self.format == "day_of_year":
+            if (self.year is None) == (count < 3):
+                yield ("year",), (
+                    "missing; no column holds the year: write it, such as year: 2025"
+                    if count < 3 else f"got {self.year} beside a column of years; leave it out")
         elif self.format != "iso8601" and not _holds_a_moment(self.format):
             yield ("format",), f"got {self.format!r}, which does not hold a whole date and time; " \
                                'write iso8601, or a format such as "%d/%m/%Y %H:%M:%S"'
+        if self.year is not None and self.format != "day_of_year":
+            yield ("year",), f"got {self.year}; only format day_of_year has a year: leave it out"
         wrong = zone_fault(self.zone)
         if wrong:
             yield ("zone",), wrong
@@ -118,8 +142,9 @@ class Instrument(Head):
                 yield ("columns", header), (
                     f"time_constant_s missing; a column of {column.quantity} needs it (or t95_s), "
                     "here or in the entry: the ends of a pass are trimmed by it")
-        if self.time.column in self.columns:
-            yield ("columns", self.time.column), "is the column of times; write another header"
+        for header in self.time.column:
+            if header in self.columns:
+                yield ("columns", header), "is a column of times; write another header"
 
     def channels(self, name: str, settings: Settings | None = None) -> tuple[Channel, ...]:
         """Return the channels of this entry, `name` in the kit, in the order of its columns."""

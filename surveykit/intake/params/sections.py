@@ -28,6 +28,7 @@ from surveykit.intake.params.base import (
     number_words,
 )
 from surveykit.intake.params.instruments import zone_fault
+from surveykit.intake.params.timekeeping import Clock
 
 MAX_ZONE_GAP_H = 3.5
 NOT_YET = "not available yet; "
@@ -91,85 +92,6 @@ def _standard_offset_h(zone: str) -> float:
     offsets = [datetime(2025, month, 1, tzinfo=UTC).astimezone(ZoneInfo(zone)).utcoffset()
                for month in (1, 7)]
     return min(offset.total_seconds() for offset in offsets if offset is not None) / 3600
-
-
-class Clock(Strict):
-    """A logger's clock against UTC, found out in the field."""
-
-    RESERVED = {
-        "align_with": NOT_YET + "write offset_s and u_s",
-        "search_s": NOT_YET + "it belongs to align_with; write offset_s and u_s",
-        "cover_events": NOT_YET + "write offset_s and u_s",
-    }
-
-    offset_s: Annotated[Amount, BareNumber(
-        None, -86400.0 * 366, 86400.0 * 366, number_words("s"))] = key(
-        "Seconds to ADD to the logger's time; positive: its clock was slow.",
-        default=0.0, validate_default=True, write="a number of seconds, or {value, u}")
-    u_s: float | None = u_field("s", "Standard uncertainty of offset_s.")
-    drift_ppm: float = key(
-        "Rate of the offset: microseconds to add for each second after drift_from.", default=0.0,
-        ge=-10000, le=10000, write=number_words("ppm", ge=-10000, le=10000))
-    drift_from: str | None = key(
-        "When offset_s held, ISO 8601 with its offset or Z.", default=None,
-        write='a time such as "2025-07-24T08:00:00Z", in quotes')
-
-    def faults(self) -> Iterator[Fault]:
-        """The u of the offset once; a drift needs its beginning."""
-        yield from given_once("offset_s", self.offset_s, "u_s", self.u_s)
-        if self.offset_s.u is None and self.u_s is None:
-            yield ("u_s",), "missing; write the standard uncertainty of offset_s in s"
-        if self.drift_ppm and self.drift_from is None:
-            yield ("drift_from",), "missing; drift_ppm needs the time when offset_s held, " \
-                                   'such as "2025-07-24T08:00:00Z"'
-        if self.drift_from is not None and self.drift_from_ns is None:
-            yield ("drift_from",), f"got {self.drift_from[:40]!r}; write a time with its offset, " \
-                                   'such as "2025-07-24T08:00:00Z", in quotes'
-
-    @property
-    def offset(self) -> Uncertain:
-        """offset_s with its u [s], whichever way that was written."""
-        u = self.offset_s.u if self.offset_s.u is not None else self.u_s
-        return Uncertain(value=self.offset_s.value, u=u or 0.0)
-
-    @property
-    def drift_from_ns(self) -> int | None:
-        """drift_from in ns since the epoch, UTC; None if it is absent or no time."""
-        try:
-            moment = datetime.fromisoformat(self.drift_from or "")
-        except ValueError:
-            return None
-        if moment.tzinfo is None or not 1950 <= moment.year <= 2199:
-            return None
-        step = moment - datetime(1970, 1, 1, tzinfo=UTC)
-        return ((step.days * 86400 + step.seconds) * 1_000_000 + step.microseconds) * 1000
-
-
-class Watch(Strict):
-    """The clock the field sheet was written by."""
-
-    offset_s: Annotated[Amount, BareNumber(None, -86400.0, 86400.0, number_words("s"))] = key(
-        "Seconds to ADD to the sheet's times to reach UTC.", default=0.0, validate_default=True,
-        write="a number of seconds, or {value, u}")
-    u_s: Annotated[float, FromSettings("clocks.unchecked_u_s")] = key(
-        "Standard uncertainty of offset_s; absent: settings.clocks.unchecked_u_s.",
-        default=None, validate_default=True, ge=0, write=number_words("s", ge=0))
-
-    def faults(self) -> Iterator[Fault]:
-        """The u of the offset once."""
-        if "u_s" in self.model_fields_set:
-            yield from given_once("offset_s", self.offset_s, "u_s", self.u_s)
-
-    @property
-    def checked(self) -> bool:
-        """Whether an uncertainty was stated."""
-        return self.offset_s.u is not None or "u_s" in self.model_fields_set
-
-    @property
-    def offset(self) -> Uncertain:
-        """offset_s with its u [s], whichever way that was written."""
-        u = self.u_s if self.offset_s.u is None else self.offset_s.u
-        return Uncertain(value=self.offset_s.value, u=u)
 
 
 def _one_or_more(data: Any) -> Any:

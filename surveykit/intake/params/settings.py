@@ -89,6 +89,38 @@ class ClockSettings(Strict):
 
     unchecked_u_s: float = setting(
         2.0, "s", "Standard uncertainty of a clock nobody checked.", ge=0)
+    cover_u_s: float = setting(
+        1.0, "s", "Standard uncertainty of a written time at which the heads were covered.", gt=0)
+    search_s: float = setting(
+        120.0, "s", "How far from its stated offset a clock is searched for.", gt=0, le=43200)
+    cover_contrast: float = setting(
+        5.0, "1", "Least change of level under a cover, in standard deviations of the readings.",
+        gt=0)
+    min_events: int = setting(
+        2, "1", "Covers needed for each stretch between two resets of a clock.", ge=2)
+    max_residual_u: float = setting(
+        3.0, "1", "Largest distance of an event from the line, in its own uncertainties.", gt=0)
+    max_residual_s: float = setting(
+        1.0, "s", "Largest distance from the line of an event that two loggers saw.", gt=0)
+    max_drift_ppm: float = setting(200.0, "ppm", "Largest credible drift of a clock.", gt=0)
+    max_offset_s: float = setting(
+        43200.0, "s", "Largest credible offset; more is a wrong date or zone.", gt=0)
+    extrapolate: float = setting(
+        0.10, "1", "Reach beyond the first and last event, as a share of their span, from which a "
+        "pass is flagged.", ge=0)
+    jump_s: float = setting(
+        3600.0, "s", "Gap between records after which a clock may have been set anew.", gt=0)
+    min_peak: float = setting(
+        0.3, "1", "Least correlation of two signals that aligns their clocks.", gt=0, lt=1)
+    max_second: float = setting(
+        0.5, "1", "Largest second peak of the correlation, as a share of the first.", gt=0, lt=1)
+    max_halves_s: float = setting(
+        1.0, "s", "Largest difference of the lags of the two halves of the records.", gt=0)
+    crosscheck_s: float = setting(
+        900.0, "s", "How far clocks of loggers under one sky are checked against each other.",
+        gt=0, le=43200)
+    sun_shift_min: float = setting(
+        25.0, "min", "Shift against the clear sky from which time or place is wrong.", gt=0)
 
 
 class PassSettings(Strict):
@@ -101,6 +133,15 @@ class PassSettings(Strict):
         30.0, "s", "Shortest pass after its ends are trimmed.", gt=0)
     settle_time_constants: float = setting(
         5.0, "1", "Time constants dropped after a head is placed.", ge=0)
+    edge_u: float = setting(
+        3.0, "1", "Distance of the readings' own edge from the written one, in its standard "
+        "uncertainties, that is flagged.", gt=0)
+    edge_contrast: float = setting(
+        5.0, "1", "Least change of level that counts as an edge, in standard deviations.", gt=0)
+    turn_s: float = setting(
+        1.0, "s", "Left out on each side of a turn, besides three time constants.", ge=0)
+    pace_u: float = setting(
+        0.05, "1", "Standard uncertainty of the pace along a lane, relative.", ge=0)
 
 
 class StatisticsSettings(Strict):

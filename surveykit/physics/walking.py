@@ -1,0 +1,144 @@
+"""How to cover a patch: height of a narrow head, lanes, and the speed a slow head allows."""
+
+from __future__ import annotations
+
+from math import ceil, floor, isfinite, radians, tan
+
+RADII_FOR_90 = 3.0  # a disc of three heights' radius fills 90 % of a cosine head's view
+
+
+def spot_height_m(patch_m: float, half_angle_deg: float, share: float) -> float:
+    """Return the greatest height at which a cone's circle is no more than a share of a patch.
+
+    Parameters
+    ----------
+    patch_m : float
+        The patch's smaller side or its diameter [m].
+    half_angle_deg : float
+        Half the full field of view [deg], below 90.
+    share : float
+        Largest diameter of the circle as a share of the patch [1].
+
+    Returns
+    -------
+    float
+        Height [m].
+
+    References
+    ----------
+    Geometry of a cone: diameter 2 h tan(half angle).
+
+    Examples
+    --------
+    >>> print(f"{spot_height_m(1.0, 22.0, 1 / 3):.3f}")
+    0.413
+    """
+    return share * patch_m / (2 * tan(radians(half_angle_deg)))
+
+
+def footprint_m(height_m: float, half_angle_deg: float) -> float:
+    """Return the diameter of the ground that matters to a head: its cone, or 90 % of a half-space.
+
+    Parameters
+    ----------
+    height_m : float
+        Height of the head [m].
+    half_angle_deg : float
+        Half the full field of view [deg]; a head that sees the whole half-space has 90.
+
+    Returns
+    -------
+    float
+        Diameter [m]: of the cone's circle, or of the disc that fills 90 % of the view, whichever
+        is smaller.
+
+    References
+    ----------
+    View factor of a centred disc, R^2 / (R^2 + h^2) = 0.9 at R = 3 h (Howell, factor B-12).
+
+    Examples
+    --------
+    >>> print(f"{footprint_m(0.4, 90.0):.2f}", f"{footprint_m(0.05, 62.5):.3f}")
+    2.40 0.192
+    """
+    whole = 2 * RADII_FOR_90 * height_m
+    return whole if half_angle_deg >= 89.9 else min(
+        whole, 2 * height_m * tan(radians(half_angle_deg)))
+
+
+def walking_speed_m_s(footprint: float, time_constant_s: float) -> float:
+    """Return the fastest walk at which a first-order head still follows the ground.
+
+    Parameters
+    ----------
+    footprint : float
+        Diameter of the footprint [m].
+    time_constant_s : float
+        Time constant of the head (63 %) [s].
+
+    Returns
+    -------
+    float
+        Speed [m/s]: one footprint in three time constants; infinite for a head without delay.
+
+    References
+    ----------
+    First-order response: 95 % after three time constants.
+
+    Examples
+    --------
+    >>> print(f"{walking_speed_m_s(0.5, 1.0):.2f}")
+    0.17
+    """
+    return footprint / (3 * time_constant_s) if time_constant_s > 0 else float("inf")
+
+
+def lanes(width_m: float, footprint: float) -> int:
+    """Return an even number of lanes no farther apart than a footprint.
+
+    Parameters
+    ----------
+    width_m : float
+        Width of the patch across the lanes [m].
+    footprint : float
+        Diameter of the footprint [m], above 0.
+
+    Returns
+    -------
+    int
+        Lanes, at least 2: out and back, so that a drift in time cancels.
+
+    Examples
+    --------
+    >>> lanes(4.0, 2.4), lanes(4.0, 0.9), lanes(0.5, 1.0)
+    (2, 6, 2)
+    """
+    if not (isfinite(width_m) and footprint > 0):
+        raise ValueError(f"lanes need a finite width and a footprint above 0, got {width_m!r} "
+                         f"and {footprint!r}")
+    return 2 * max(1, ceil(ceil(width_m / footprint) / 2))
+
+
+def edge_margin_m(patch_m: float, height_m: float, half_angle_deg: float) -> float:
+    """Return how far inside the edge a head must stay so that it sees the patch.
+
+    Parameters
+    ----------
+    patch_m : float
+        The patch's smaller side or its diameter [m].
+    height_m : float
+        Height of the head [m].
+    half_angle_deg : float
+        Half the full field of view [deg].
+
+    Returns
+    -------
+    float
+        Margin [m]: half the footprint, never beyond the patch's middle; in whole centimetres.
+
+    Examples
+    --------
+    >>> edge_margin_m(4.0, 0.4, 90.0), edge_margin_m(1.0, 0.4, 90.0)
+    (1.2, 0.5)
+    """
+    return floor(100 * min(footprint_m(height_m, half_angle_deg) / 2, patch_m / 2) + 0.5) / 100

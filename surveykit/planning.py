@@ -1,0 +1,199 @@
+"""The plan of a survey day: sun, heights, walking, passes and the order of visits.
+
+What a plan assumes where nothing better is known stands in `ASSUMED`, each an engineering default,
+and is printed with the plan.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import pandas as pd
+
+from surveykit import pipeline
+from surveykit.core import FloatArray
+from surveykit.intake.params import Channel
+from surveykit.opening import Survey, open_file
+from surveykit.physics import footprint, walking
+from surveykit.physics.sun import sun_track
+from surveykit.planning_patches import Patch, patches
+from surveykit.statistics.pooling import paule_mandel, passes_needed
+
+MINUTE_NS = 60_000_000_000
+ASSUMED = {  # between passes, within a pass: where no earlier campaign tells them
+    "temperature": (0.5, 0.3), "albedo": (0.01, 0.005), "ndvi": (0.01, 0.005)}
+CONTRAST, SPOT_SHARE, HOLD_BELOW_M_S = 0.5, 1 / 3, 0.3
+HEADS = {"contact": "brightness_temperature", "stand-off": "brightness_temperature",
+         "longwave": "longwave_up", "albedo": "shortwave_up", "ndvi": "red_up"}
+UNITS = {"temperature": "K", "albedo": "1", "ndvi": "1"}
+
+
+@dataclass(frozen=True)
+class Plan:
+    """A plan as tables: sun windows, course of the sun, heights, height curves, passes."""
+
+    patches: tuple[Patch, ...]
+    source: str
+    course: pd.DataFrame
+    windows: pd.DataFrame
+    heights: pd.DataFrame
+    curves: pd.DataFrame
+    passes: pd.DataFrame
+
+
+def make(survey: Survey) -> Plan:
+    """Return the plan of a campaign; its logs and its filled field sheet need not be there."""
+    found, source = patches(survey)
+    course = sun_course(survey)
+    windows = sun_windows(course, survey)
+    zenith = float(course["zenith_deg"].min())
+    heights, curves = _heights(survey, found, zenith)
+    return Plan(found, source, course, windows, heights, curves, passes(survey))
+
+
+def sun_course(survey: Survey) -> pd.DataFrame:
+    """Return the sun's zenith angle in each minute of the campaign's day at the site."""
+    site = survey.campaign.site
+    midnight = pd.Timestamp(survey.campaign.date).tz_localize(site.time_zone)
+    minutes = midnight.value + np.arange(24 * 60, dtype=np.int64) * MINUTE_NS
+    track = sun_track(minutes, site.latitude, site.longitude, site.elevation_m)
+    return pd.DataFrame({"time_utc": pd.to_datetime(minutes, utc=True),
+                         "zenith_deg": track.zenith_deg})
+
+
+def sun_windows(course: pd.DataFrame, survey: Survey) -> pd.DataFrame:
+    """Return for each limit of the zenith angle when the sun is inside it.
+
+    Columns: limit_deg, meaning, first, last (site time, "" where never), hours.
+    """
+    albedo, ndvi = survey.settings.albedo, survey.settings.ndvi
+    limits = {albedo.zenith_standard_deg: "albedo, standard",
+              albedo.zenith_qualified_deg: "albedo, qualified",
+              albedo.zenith_max_deg: "albedo, the last usable"}
+    limits[ndvi.zenith_max_deg] = "; ".join(filter(None, (
+        limits.get(ndvi.zenith_max_deg, ""), "NDVI, the last usable")))
+    rows = []
+    zone = survey.campaign.site.time_zone
+    for limit, meaning in sorted(limits.items()):
+        inside = course.loc[course["zenith_deg"] <= limit, "time_utc"]
+        ends = [f"{t.tz_convert(zone):%H:%M}" for t in inside.iloc[[0, -1]]] if len(inside) else []
+        rows.append({"limit_deg": limit, "meaning": meaning, "first": ends[0] if ends else "never",
+                     "last": ends[1] if ends else "", "hours": round(len(inside) / 60, 1)})
+    return pd.DataFrame(rows)
+
+
+def _heights(survey: Survey, found: tuple[Patch, ...],
+             zenith_deg: float) -> tuple[pd.DataFrame, pd.DataFrame]:
+    rows, curves = [], []
+    for patch in found:
+        for head in patch.heads:
+            channel = _channel(survey, HEADS[head])
+            if channel is None or head == "contact":
+                continue
+            row, curve = _height(survey, patch, head, channel, zenith_deg)
+            rows.append({"surface": patch.surface, "patch": patch.name, "reading": head} | row)
+            if curve is not None and all(c["across_m"].iloc[0] != patch.across_m for c in curves):
+                curves.append(curve.assign(patch=patch.name, across_m=patch.across_m))
+    frame = pd.DataFrame(rows)
+    return frame, pd.concat(curves, ignore_index=True) if curves else pd.DataFrame()
+
+
+def _height(survey: Survey, patch: Patch, head: str, channel: Channel,
+            zenith_deg: float) -> tuple[dict[str, object], pd.DataFrame | None]:
+    """Return the row of one patch and head, and for albedo the curve of errors over height."""
+    across, half_angle = patch.across_m, channel.half_angle_deg or 90.0
+    if not np.isfinite(across):
+        return {"height_m": np.nan, "note": "the patch's size is not known"}, None
+    curve, note = None, ""
+    if head == "albedo":
+        settings = survey.settings.albedo
+        radius = channel.head_radius_m or settings.head_radius_assumed_cm / 100
+        note = "" if channel.head_radius_m else "the head's radius is assumed"
+        optics = (radius, across / 2, _contrast(survey, patch), min(zenith_deg, 80.0),
+                  settings.beam_fraction)
+        height = footprint.best_height_m(*optics)
+        curve = _curve(*optics)
+    elif half_angle >= 89.9:
+        height = across / 2 / walking.RADII_FOR_90
+    else:
+        height = walking.spot_height_m(across, half_angle, SPOT_SHARE)
+    wide = walking.footprint_m(height, half_angle)
+    speed = walking.walking_speed_m_s(wide, channel.time_constant_s)
+    return {"height_m": height, "footprint_m": wide,
+            "margin_m": walking.edge_margin_m(across, height, half_angle),
+            "lanes": walking.lanes(patch.width_m if np.isfinite(patch.width_m) else across, wide),
+            "speed_m_s": min(speed, 1.0),
+            "note": "; ".join(filter(None, (note, "stop and hold instead of walking"
+                                            if speed < HOLD_BELOW_M_S else "")))}, curve
+
+
+def _contrast(survey: Survey, patch: Patch) -> float:
+    """Relative contrast of a patch with what surrounds it, from the last earlier campaign."""
+    around = survey.campaign.surfaces[patch.surface].around
+    for earlier in reversed(survey.parameters.earlier):
+        table = pipeline.surfaces(open_file(earlier)).tables["surfaces"]
+        known = table[(table["surface"] == patch.surface) & (table["quantity"] == "albedo")]
+        value = known["value"].dropna()
+        if around is not None and len(value) and value.iloc[0] > 0:
+            own = float(value.iloc[0])
+            return max(abs(around.amount.value - own) / own, 0.05)
+    return CONTRAST
+
+
+def _curve(radius: float, patch_radius: float, contrast: float, zenith_deg: float,
+           beam_fraction: float) -> pd.DataFrame:
+    height: FloatArray = np.geomspace(0.02, max(2 * patch_radius, 0.1), 80)
+    shade = footprint.self_shade(radius, height, zenith_deg, beam_fraction)
+    foreign = contrast * (1 - footprint.disc_share(patch_radius, height))
+    return pd.DataFrame({"height_m": height, "shade": shade, "foreign": foreign})
+
+
+def _channel(survey: Survey, quantity: str) -> Channel | None:
+    for logger in survey.campaign.loggers:
+        for channel in survey.parameters.channels(logger):
+            if channel.quantity == quantity:
+                return channel
+    return None
+
+
+def passes(survey: Survey) -> pd.DataFrame:
+    """Return how many passes of a surface make U no wider than the relevant change.
+
+    Columns: surface, quantity, kind, between, within (both standard deviations), wanted (U),
+    passes, unit, source. U here is that of repeating alone; calibrations and emissivities come on
+    top and do not shrink with passes.
+    """
+    wanted, rows = survey.campaign.relevant_change, []
+    told = _spreads(survey)
+    quantities = [q for q, name in (("temperature", "brightness_temperature"),
+                                    ("temperature", "longwave_up"), ("albedo", "shortwave_up"),
+                                    ("ndvi", "red_up")) if _channel(survey, name)]
+    for quantity in dict.fromkeys(quantities):
+        for surface in survey.campaign.surfaces:
+            known = {k: v for k, v in told.items() if k[:2] == (surface, quantity)}
+            for (_, _, kind), (between, within, source) in (known or {
+                    (surface, quantity, ""): (*ASSUMED[quantity], "engineering default")}).items():
+                need = passes_needed(between, within, wanted.of(quantity))
+                rows.append({"surface": surface, "quantity": quantity, "kind": kind,
+                             "between": between, "within": within, "wanted": wanted.of(quantity),
+                             "passes": need, "unit": UNITS[quantity], "source": source})
+    return pd.DataFrame(rows)
+
+
+def _spreads(survey: Survey) -> dict[tuple[str, str, str], tuple[float, float, str]]:
+    """Return the spread between and within passes that the last earlier campaign showed."""
+    for earlier in reversed(survey.parameters.earlier):
+        one = open_file(earlier)
+        table = pipeline.surfaces(one).tables["passes"]
+        table = table[table["value"].notna() & table["u_within"].notna()]
+        out = {}
+        for (surface, quantity, kind), rows in table.groupby(["surface", "quantity", "kind"]):
+            if len(rows) > 1:
+                within = float(np.median(rows["u_within"]))
+                tau2 = paule_mandel(rows["value"].to_numpy(), rows["u_within"].to_numpy())
+                out[str(surface), str(quantity), str(kind)] = (
+                    float(np.sqrt(tau2)), within, one.campaign.campaign)
+        if out:
+            return out
+    return {}

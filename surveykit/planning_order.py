@@ -1,0 +1,138 @@
+"""The order of visits with the control between them, and the field sheet that follows from it."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable
+
+import pandas as pd
+
+from surveykit.opening import Survey
+from surveykit.planning import Plan
+from surveykit.planning_patches import Patch
+from surveykit.starting import COLUMNS
+
+CONTROL_EVERY_MIN, WALK_MIN, LEAST_ROUNDS = 20.0, 1.0, 3
+LIGHT = ("shortwave_down", "shortwave_up", "red_down", "red_up")
+SAFETY = (
+    "Local rules and the site's own safety plan come first; this list replaces neither, and work "
+    "on roofs, roads and electrical plant belongs to people licensed for it.",
+    "Heat: water, shade and breaks planned before the start; nobody works alone; agree beforehand "
+    "who stops the survey and at what local heat warning.",
+    "Traffic: permission of the site, visible clothing, never a back turned to moving vehicles, no "
+    "survey in lanes that are open.",
+    "Heights: within 2 m of an edge or beside roof lights only under the plan of a competent "
+    "person; not in wind or storm.",
+    "Hot ground: pads to kneel on, closed shoes, no bare skin on sunlit paving.",
+    "Eyes and skin: sun protection; never look along the head towards the sun.",
+)
+
+
+def visit_minutes(survey: Survey, patch: Patch) -> float:
+    """Return the minutes a visit takes: one pass a way of reading, trims, and the walk to it.
+
+    Ways of reading that stand off share one walk over the patch; contact is a pass of its own.
+    """
+    settings = survey.settings.passes
+    slowest = max((c.time_constant_s for name in survey.campaign.loggers
+                   for c in survey.parameters.channels(name)
+                   if c.quantity.endswith(("_up", "brightness_temperature"))), default=0.0)
+    trim_s = settings.sheet_u_s + survey.settings.clocks.unchecked_u_s \
+        + settings.settle_time_constants * slowest
+    walks = ("contact" in patch.heads) + bool({*patch.heads} - {"contact"})
+    return WALK_MIN + walks * (2 * settings.min_duration_s + 2 * trim_s) / 60
+
+
+def rounds_needed(plan: Plan) -> int:
+    """Return the rounds after which every surface has the passes it needs, at least 3."""
+    need = [LEAST_ROUNDS]
+    for row in plan.passes.to_dict("records"):
+        places = sum(p.surface == row["surface"] for p in plan.patches)
+        if places:
+            need.append(math.ceil(row["passes"] / places))
+    return max(need)
+
+
+def order(survey: Survey, plan: Plan, rounds: int) -> pd.DataFrame:
+    """Return the visits in order: round, surface, patch, minutes from the start.
+
+    Every other round runs backwards, so that a drift over the day cancels. The control comes
+    first, last, and at least every 20 minutes.
+    """
+    control = survey.campaign.comparison.control
+    fixed = [p for p in plan.patches if p.surface == control]
+    others = [p for p in plan.patches if p.surface != control] or fixed
+    fixed = [] if others is fixed else fixed
+    rows: list[dict[str, object]] = []
+    clock, since, turn = 0.0, 0.0, 0
+
+    def visit(patch: Patch, number: int) -> None:
+        nonlocal clock, since
+        took = visit_minutes(survey, patch)
+        rows.append({"round": number, "surface": patch.surface, "patch": patch.name,
+                     "starts_min": round(clock, 1)})
+        clock += took
+        since = 0.0 if patch in fixed else since + took
+
+    for number in range(1, rounds + 1):
+        for place, patch in enumerate(others if number % 2 else others[::-1]):
+            due = since + visit_minutes(survey, patch) > CONTROL_EVERY_MIN
+            if fixed and (due or (place == 0 and number == 1)):
+                visit(fixed[turn % len(fixed)], number)
+                turn += 1
+            visit(patch, number)
+    if fixed:
+        visit(fixed[turn % len(fixed)], rounds)
+    return pd.DataFrame(rows)
+
+
+def duration_min(survey: Survey, plan: Plan, visits: pd.DataFrame) -> float:
+    """Return the minutes from the first visit's start to the last one's end."""
+    last = visits.iloc[-1]
+    patch = next(p for p in plan.patches if p.name == last["patch"]
+                 and p.surface == last["surface"])
+    return float(last["starts_min"]) + visit_minutes(survey, patch)
+
+
+def field_sheet(survey: Survey, plan: Plan, visits: pd.DataFrame) -> pd.DataFrame:
+    """Return the field sheet filled in but for the times: dark rows and passes in order."""
+    known = {(p.surface, p.name): p for p in plan.patches}
+    heights = {(r["surface"], r["patch"], r["reading"]): r
+               for r in plan.heights.to_dict("records")}
+    rows = [*_dark(survey, "start")]
+    seen: set[tuple[str, str]] = set()
+    middle = len(visits) // 2
+    for place, visit in enumerate(visits.to_dict("records")):
+        if place == middle:
+            rows += _dark(survey, "middle")
+        patch = known[visit["surface"], visit["patch"]]
+        for head in patch.heads:
+            advice = heights.get((patch.surface, patch.name, head), {})
+            first = (patch.surface, patch.name) not in seen
+            seen.add((patch.surface, patch.name))
+            rows.append({
+                "entry": "pass", "surface": patch.surface, "patch": patch.name,
+                "quantity": head if head in ("albedo", "ndvi") else "temperature",
+                "mode": head if head in ("contact", "stand-off") else "",
+                "height_cm": _whole(100 * float(advice.get("height_m", math.nan))),
+                "width_m": _short(patch.width_m) if first else "",
+                "length_m": _short(patch.length_m) if first else "",
+                "lanes": _whole(float(advice.get("lanes", math.nan)))})
+    rows += _dark(survey, "end")
+    day = {"campaign": survey.campaign.campaign, "date": survey.campaign.date}
+    return pd.DataFrame([dict.fromkeys(COLUMNS, "") | row | day for row in rows],
+                        columns=list(COLUMNS))
+
+
+def _dark(survey: Survey, when: str) -> Iterable[dict[str, str]]:
+    for name in survey.campaign.loggers:
+        if any(c.quantity in LIGHT for c in survey.parameters.channels(name)):
+            yield {"entry": "dark", "instrument": name, "note": f"caps on for a minute, {when}"}
+
+
+def _whole(value: float) -> str:
+    return f"{value:.0f}" if math.isfinite(value) else ""
+
+
+def _short(value: float) -> str:
+    return f"{value:g}" if math.isfinite(value) else ""
