@@ -57,6 +57,7 @@ class Log:
 
 CLOCKS = {"thermal": (12.0, 0.5), "shortwave": (-4.0, 0.5), "rednir-sky": (3.0, 0.3),
           "rednir-ground": (-6.5, 0.3), "weather": (0.0, 0.5)}  # seconds to add, u
+DRIFT_PPM = {"thermal": 38.0, "rednir-ground": -24.0}  # of the clocks that covers must find
 GAINS = {"sky_mV": (10.4, 0.015, 3.0), "ground_mV": (10.1, 0.015, 1.0),  # W m-2 per unit, u, W m-2
          "red_sky": (0.0042, 0.01, 0.02), "nir_sky": (0.0038, 0.01, 0.02),
          "red_ground": (0.0043, 0.01, 0.02), "nir_ground": (0.0039, 0.01, 0.02)}
@@ -68,13 +69,19 @@ BORE, BORE_U = 0.95, 0.06
 BANDS = {"red": (0.0735, 0.83), "nir": (0.0550, 0.89)}  # share of the irradiance, share of beam
 
 
+def clock(campaign: str, logger: str) -> tuple[float, float]:
+    """Return the seconds to add to a logger's time as the world begins, and their rate."""
+    offset, u = CLOCKS[logger]
+    return (offset + shared_error(f"{campaign}:{logger}:clock", u),
+            1e-6 * DRIFT_PPM.get(logger, 0.0))
+
+
 def record(world: World, logger: str, rate_hz: float, series: Series) -> Log:
     """Read the smooth series at the logger's own ticks."""
-    offset, u = CLOCKS[logger]
-    offset += shared_error(f"{world.day.campaign}:{logger}:clock", u)
+    offset, drift = clock(world.day.campaign, logger)
     first = np.ceil((world.time_s[0] - offset + 2) * rate_hz) / rate_hz
     logged = np.arange(first, world.time_s[-1] - offset - 2, 1 / rate_hz)
-    true = logged + offset
+    true = logged + offset + drift * (logged - world.time_s[0])
     return Log(logger, true, logged,
                {name: np.interp(true, world.time_s, values) for name, values in series.items()})
 
@@ -102,7 +109,7 @@ def shade_share(height_m: float, cos_zenith: np.ndarray) -> np.ndarray:
     return ratio * (BEAM * cos_zenith**4 + (1 - BEAM) / 3)
 
 
-def thermal(world: World, stays: list[Stay]) -> Log:
+def thermal(world: World, stays: list[Stay], covers: list[tuple[float, float]]) -> Log:
     """The infrared head: brightness in contact and stand-off, its body, its swings between."""
     day, date, n = world.day, world.day.date, world.time_s.size
     elapsed = world.time_s - world.time_s[0]
@@ -136,6 +143,9 @@ def thermal(world: World, stays: list[Stay]) -> Log:
         cavity = 1 - (1 - emissivity) * (1 - bore)
         seen[part] = swing + brightness_k(
             (emissivity * radiance(local + spot) + (1 - emissivity) * wall) / cavity)
+    for start, stop in covers:
+        part = world.between(start, stop)
+        seen[part] = world.air_k[part] + 2  # a board from the shade
     log = record(world, "thermal", 2.0, {"target": respond(seen, 0.3), "body": body})
     size = log.true_s.size
     log.columns["target"] += (noise(world, "target", size, 0.08) - ICE_K

@@ -14,7 +14,7 @@ from pathlib import Path
 import numpy as np
 from heads import Log, Stay, red_near_infrared, shortwave, thermal, weather
 from logs import ZONE, Faults, files, freeze, spoil, texts
-from truth import truth_file, truths
+from truth import clocks, truth_file, truths
 from yard import DAYS, Day, World, shared_error, solar_noon, stream
 
 HERE = Path(__file__).resolve().parent
@@ -64,7 +64,8 @@ def clock_text(second: float) -> str:
     return f"{moment.hour}:{moment:%M:%S}"
 
 
-def sheet(day: Day, stays: list[Stay], caps: list[tuple[float, float]]) -> bytes:
+def sheet(day: Day, stays: list[Stay], caps: list[tuple[float, float]],
+          covers: list[tuple[float, float]]) -> bytes:
     """Return the field sheet: written by hand, 2 s either way, by a watch of its own."""
     rng = stream(day.date, "sheet")
     watch = shared_error(f"{day.campaign}:watch", 1.0)
@@ -76,6 +77,10 @@ def sheet(day: Day, stays: list[Stay], caps: list[tuple[float, float]]) -> bytes
             rows.append((start, {"entry": "dark", "instrument": logger,
                                  "start": clock_text(start - watch),
                                  "stop": clock_text(stop - watch)}))
+    called = stream(day.date, "covers called")  # read off the watch as it happens, not from memory
+    for cover in covers:
+        start, stop = (clock_text(edge - watch + 0.3 * called.standard_normal()) for edge in cover)
+        rows.append((cover[0], {"entry": "cover", "start": start, "stop": stop}))
     for stay in stays:
         start = max(stay.start_s - watch + 2 * rng.standard_normal(), free + 2)
         stop = free = stay.stop_s - watch + 2 * rng.standard_normal()
@@ -94,7 +99,7 @@ def sheet(day: Day, stays: list[Stay], caps: list[tuple[float, float]]) -> bytes
             mode = {"mode": "stand-off"} if quantity == "temperature" else {}
             rows.append((stay.start_s, {**common, **mode, "quantity": quantity}))
     if day is DAYS[0]:
-        rows[8][1]["note"] = "hair-line cracks along one edge, kept off them"
+        rows[11][1]["note"] = "hair-line cracks along one edge, kept off them"
     semicolons = day is DAYS[1]  # as another spreadsheet saves it
     separator = ";" if semicolons else ","
     lines = [separator.join(HEADER)]
@@ -108,9 +113,20 @@ def _cell(text: str, separator: str) -> str:
     return f'"{text}"' if separator in text else text
 
 
-def cap_light(world: World, caps: list[tuple[float, float]]) -> np.ndarray:
-    """Return 1 where the heads are open and 0 under their caps, put on 8 s around each row."""
+def covered(day: Day, stays: list[Stay]) -> list[tuple[float, float]]:
+    """Return when all heads were covered at once: before the first pass, midway, after the last."""
+    rng = stream(day.date, "covers")
+    midway = [stay for stay in stays if stay.kind == "walk"][len(ROUND) + len(ROUND) // 2]
+    starts = stays[0].start_s - 60, midway.stop_s + 10, stays[-1].stop_s + 40
+    return [(start, start + rng.uniform(9.3, 12.6)) for start in starts]
+
+
+def cap_light(world: World, caps: list[tuple[float, float]],
+              covers: list[tuple[float, float]]) -> np.ndarray:
+    """Return 1 where the heads are open and 0 under covers and caps, put on 8 s around each row."""
     light = np.ones(world.time_s.size)
+    for start, stop in covers:
+        light[world.between(start, stop)] = 0.0
     for start, stop in caps:
         light[(world.time_s > start - 8) & (world.time_s < stop + 8)] = 0.0
     return light
@@ -122,18 +138,19 @@ def survey(day: Day) -> tuple[dict[str, bytes], World, list[Stay], Faults]:
     first, last = stays[0].start_s, stays[-1].stop_s
     world = World(day, first - LEAD_S, last + TAIL_S)
     caps = [(first - 240, first - 160), (last + 120, last + 200)]
-    light = cap_light(world, caps)
+    covers = covered(day, stays)
+    light = cap_light(world, caps, covers)
     faults = Faults(day, stays)
     forgotten = faults.stay()  # both shortwave caps left on at the start of one pass
     left_on = light.copy()
     left_on[world.between(forgotten.start_s - 20, forgotten.start_s + 36)] = 0.0
     faults.note("shortwave", "capped", 36, forgotten)
     pair = shortwave(world, stays, left_on)
-    infrared = thermal(world, stays)
+    infrared = thermal(world, stays, covers)
     freeze(pair, "ground_mV", 20, faults)
     freeze(infrared, "target", 15, faults)
     station = weather(world)
-    out = {"field_sheet.csv": sheet(day, stays, caps), **files(station, texts(station))}
+    out = {"field_sheet.csv": sheet(day, stays, caps, covers), **files(station, texts(station))}
     loggers: tuple[Log, ...] = (infrared, pair, *red_near_infrared(world, stays, light))
     for log in loggers:
         out |= files(log, spoil(log, texts(log), faults))
@@ -149,7 +166,7 @@ def build() -> dict[str, bytes]:
         out |= {f"{day.campaign}/{name}": content for name, content in written.items()}
         done.append((day, world, stays))
         wrong += faults.noted
-    out["truth.json"] = truth_file(truths(done), wrong)
+    out["truth.json"] = truth_file(truths(done), wrong, clocks(done))
     return out
 
 

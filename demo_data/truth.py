@@ -5,7 +5,7 @@ from __future__ import annotations
 import json
 
 import numpy as np
-from heads import CLOCKS, Stay
+from heads import CLOCKS, Stay, clock
 from yard import CONTROL, ERRORS, ICE_K, SEED, Day, Surface, World
 
 QUANTITIES = (("temperature", "contact", "contact", "degC"),
@@ -90,17 +90,26 @@ def _round(value: float) -> float:
     return round(value, 6) + 0.0
 
 
-def truth_file(tables: dict[str, Rows], faults: Rows) -> bytes:
+def clocks(done: list[Done]) -> Rows:
+    """Return the true clocks: seconds to add at `from_s` (seconds since 1970 UTC), and drift."""
+    rows: Rows = []
+    for day, world, _ in done:
+        for name in CLOCKS:
+            offset, drift = clock(day.campaign, name)
+            rows.append({"campaign": day.campaign, "logger": name, "offset_s": _round(offset),
+                         "drift_ppm": _round(1e6 * drift), "from_s": _round(world.time_s[0])})
+    return rows
+
+
+def truth_file(tables: dict[str, Rows], faults: Rows, clocks: Rows) -> bytes:
     """Return truth.json, one row a line."""
     about = ("temperature degC, its changes K. surfaces.value: the kind of ground (random part of "
              "patch and pass zero) over its own pass times; value_common_time: over the times of "
              "all passes of that kind. changes.change: against what the surface would have been at "
              "the later date with its earlier properties; raw_change: later value - earlier value. "
              "errors: what was drawn once per scope, in the unit of its u.")
-    parts = {**tables, "faults": faults,
-             "errors": [{"scope": scope, **ERRORS[scope]} for scope in sorted(ERRORS)],
-             "clocks": [{"logger": name, "declared_s": declared, "u_s": u}
-                        for name, (declared, u) in CLOCKS.items()]}
+    parts = {**tables, "faults": faults, "clocks": clocks,
+             "errors": [{"scope": scope, **ERRORS[scope]} for scope in sorted(ERRORS)]}
     lines = [f'{{"seed": {SEED}, "control": "{CONTROL}",', f' "about": {json.dumps(about)},']
     for name, rows in parts.items():
         body = ",\n".join("  " + json.dumps(row) for row in rows)

@@ -26,6 +26,8 @@ def main(arguments: list[str] | None = None) -> int:
                               description="write a parameter file and an empty field sheet")
     new.add_argument("name", metavar="ID",
                      help="name of the campaign: lower-case letters, digits and -")
+    new.add_argument("--log", nargs="+", type=Path, default=[], metavar="FILE", dest="logs",
+                     help="sample files of its loggers: write a first instruments file from them")
     verify = commands.add_parser(
         "verify", help="say whether a report still belongs to its inputs and tables",
         description="say whether a report still belongs to its inputs and tables")
@@ -39,7 +41,7 @@ def main(arguments: list[str] | None = None) -> int:
                          help="parameter file of a campaign, such as params/ID.yml")
     asked = parser.parse_args(arguments)
     if asked.command == "new":
-        return _told(lambda: _new(asked.name))
+        return _told(lambda: _new(asked.name, asked.logs))
     if asked.command == "verify":
         return _told(lambda: _verify(asked.folder, asked.rerun))
     if asked.command in ("pack", "plan"):
@@ -84,10 +86,10 @@ def _check(path: Path) -> None:
         print(line)  # noqa: T201
 
 
-def _new(name: str) -> None:
+def _new(name: str, logs: list[Path]) -> None:
     from surveykit.starting import start
 
-    for line in start(name, Path.cwd()):
+    for line in start(name, Path.cwd(), logs):
         print(line)  # noqa: T201
 
 
@@ -105,7 +107,7 @@ def _pack(path: Path) -> None:
 
 
 def _plan(path: Path) -> None:
-    from surveykit.runner import plan
+    from surveykit.planner import plan
 
     for written in plan(path):
         print(f"wrote {_near(written)}")  # noqa: T201

@@ -88,7 +88,8 @@ TABLES: dict[str, dict[str, str]] = {
         "value": "number", "u": "number", "lower": "number", "upper": "number",
         "coverage": "number", "k": "number", "dof": "number", "n_patches": "count",
         "n_passes": "count", "n_records": "count", "n_effective": "number",
-        "u_at_least": "number", "status": "text", "note": "text",
+        "u_at_least": "number", "spread": "number", "end_error": "number", "needed": "number",
+        "status": "text", "note": "text",
     },
     "passes": {
         "campaign": "text", "surface": "text", "patch": "text", "pass": "text",
@@ -105,7 +106,7 @@ TABLES: dict[str, dict[str, str]] = {
     "budget": {
         "campaign": "text", "surface": "text", "quantity": "text", "kind": "text",
         "scope": "text", "source": "text", "unit": "text", "u_input": "number",
-        "contribution": "number", "share": "number",
+        "contribution": "number", "share": "number", "narrower": "number",
     },
     "ledger": {
         "campaign": "text", "logger": "text", "file": "text", "surface": "text", "patch": "text",
@@ -123,7 +124,8 @@ TABLES: dict[str, dict[str, str]] = {
     "differences": {
         "campaign": "text", "quantity": "text", "kind": "text", "surface": "text",
         "other": "text", "unit": "text", "difference": "number", "u": "number",
-        "lower": "number", "upper": "number", "coverage": "number", "p_adjusted": "number",
+        "lower": "number", "upper": "number", "coverage": "number",
+        "lower_all": "number", "upper_all": "number", "p_adjusted": "number",
         "could_have_missed": "number", "verdict": "text", "note": "text",
     },
     "changes": {

@@ -1,10 +1,10 @@
-"""Kernels of a run: the next one starts, and imports, while a notebook still runs in its own."""
+"""Kernels of a run: started, and their imports begun, while something else still works."""
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from contextlib import contextmanager
+import threading
 from pathlib import Path
+from types import TracebackType
 from typing import Any
 
 from jupyter_client.asynchronous.client import AsyncKernelClient
@@ -31,6 +31,7 @@ class QuietKernelManager(KernelManager):
         super().__init__(client_class=f"{AsyncKernelClient.__module__}.AsyncKernelClient",
                          **kwargs)
         self._handed: list[KernelClient] = []
+        self._ending = threading.Lock()
 
     @default("transport_encryption")
     def _agree(self) -> str:
@@ -42,9 +43,12 @@ class QuietKernelManager(KernelManager):
         self._handed.append(made)
         return made
 
-    def begin(self, folder: Path) -> None:
-        """Start the kernel in `folder` and send it the imports of a notebook."""
-        self.start_kernel(cwd=str(folder))
+    def begin(self, folder: Path, inherited: tuple[int, ...] = ()) -> None:
+        """Start the kernel in `folder` and send it the imports of a notebook.
+
+        It inherits the descriptors `inherited`: a lock among them is held while it lives.
+        """
+        self.start_kernel(cwd=str(folder), pass_fds=inherited)
         warm = BlockingKernelClient()
         warm.load_connection_info(self.get_connection_info())
         warm.start_channels(shell=True, iopub=False, stdin=False, hb=False, control=False)
@@ -52,39 +56,56 @@ class QuietKernelManager(KernelManager):
         self._handed.append(warm)
 
     def end(self) -> None:
-        """Stop the kernel and every client handed out."""
-        for client in self._handed:
-            client.stop_channels()
-        self._handed.clear()
-        if self.has_kernel:
-            self.shutdown_kernel(now=True)
+        """Stop the kernel and every client handed out; again is no fault."""
+        with self._ending:
+            for client in self._handed:
+                client.stop_channels()
+            self._handed.clear()
+            if self.has_kernel:
+                self.shutdown_kernel(now=True)
 
 
-@contextmanager
-def kernels_ahead(folder: Path, count: int) -> Iterator[Iterator[QuietKernelManager]]:
-    """Hand out `count` fresh kernels one after the other, always one started ahead.
+class Kernels:
+    """Hands out fresh kernels, `ahead` of them started before they are asked for.
 
-    A kernel is stopped when the next is asked for, all that is left at the end.
+    A context: when it ends, every kernel ends. May be asked from several threads.
     """
-    started: list[QuietKernelManager] = []
 
-    def one() -> QuietKernelManager:
+    def __init__(self, folder: Path, *, ahead: int, inherited: tuple[int, ...] = ()) -> None:
+        self._folder, self._inherited = folder, inherited
+        self._guard = threading.Lock()
+        self._all: list[QuietKernelManager] = []
+        self._waiting: list[QuietKernelManager] = []
+        self._closed = False
+        try:
+            self._waiting = [self._start() for _ in range(ahead)]
+        except BaseException:
+            self.close()
+            raise
+
+    def take(self) -> QuietKernelManager:
+        """Return a kernel that nothing has run in but the imports; end it after use."""
+        with self._guard:
+            if self._closed:
+                raise RuntimeError("the run was stopped")
+            return self._waiting.pop(0) if self._waiting else self._start()
+
+    def close(self) -> None:
+        """End every kernel."""
+        with self._guard:
+            self._closed = True
+            for manager in self._all:
+                manager.end()
+
+    def _start(self) -> QuietKernelManager:
         manager = QuietKernelManager(kernel_name="python3")
-        started.append(manager)
-        manager.begin(folder)
+        self._all.append(manager)
+        manager.begin(self._folder, self._inherited)
         return manager
 
-    def each() -> Iterator[QuietKernelManager]:
-        coming = one()
-        for place in range(count):
-            mine = coming
-            if place + 1 < count:
-                coming = one()
-            yield mine
-            mine.end()
+    def __enter__(self) -> Kernels:
+        return self
 
-    try:
-        yield each()
-    finally:
-        for manager in started:
-            manager.end()
+    def __exit__(self, kind: type[BaseException] | None, error: BaseException | None,
+                 trace: TracebackType | None) -> None:
+        self.close()

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import hashlib
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import cached_property
 from importlib.metadata import version
 from pathlib import Path
@@ -27,11 +27,15 @@ SECTIONS = tuple(Campaign.model_fields)
 
 @dataclass(frozen=True)
 class Survey:
-    """One campaign opened: parameters, where results go, and the inputs with their hashes."""
+    """One campaign opened: parameters, where results go, and the inputs with their hashes.
+
+    `made` keeps what a stage made, so that nothing is read or computed twice in one process.
+    """
 
     parameters: Parameters
     run_folder: Path
     inputs: tuple[dict[str, Any], ...]
+    made: dict[str, Any] = field(default_factory=dict, compare=False, repr=False)
 
     @cached_property
     def key(self) -> str:
@@ -59,7 +63,7 @@ def open_survey(names: Mapping[str, Any]) -> Survey:
     ----------
     names : mapping
         The notebook's globals: either every section as papermill handed it over, or `params_file`;
-        `run_folder` may be None.
+        `run_folder` may be None. Where `planned` is true, files of the day need not be there yet.
 
     Raises
     ------
@@ -82,10 +86,12 @@ def open_survey(names: Mapping[str, Any]) -> Survey:
         path = Path(str(names["params_file"]))
         if not path.is_absolute() and not path.exists():
             path = find_root(here) / path
-    return open_file(path, run_folder=names.get("run_folder"))
+    return open_file(path, run_folder=names.get("run_folder"),
+                     planned=names.get("planned") is True)
 
 
-def open_file(path: Path, run_folder: str | Path | None = None) -> Survey:
+def open_file(path: Path, run_folder: str | Path | None = None, *,
+              planned: bool = False) -> Survey:
     """Open a campaign by its parameter file; see `open_survey`.
 
     Raises
@@ -105,8 +111,9 @@ def open_file(path: Path, run_folder: str | Path | None = None) -> Survey:
             files += expand_files(parameters.data_folder, use.files)
         except InputError as error:
             faults += [f"{_shown(path, root)}: loggers.{name}.files: {f}" for f in error.faults]
-    if faults:
+    if faults and not planned:
         raise InputError(*faults)
+    files = [file for file in files if file.is_file()]
     inputs = []
     for file in files:
         data = file.read_bytes()

@@ -8,9 +8,10 @@ from __future__ import annotations
 
 import hashlib
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, field
+from functools import cached_property, wraps
 from pathlib import Path
-from typing import Any
+from typing import Any, TypeVar
 
 import pandas as pd
 
@@ -24,6 +25,7 @@ from surveykit.evidence.conditions import Day
 from surveykit.evidence.estimates import PassEstimate, estimate_all
 from surveykit.handover import load_facts, load_table, save_facts, save_table
 from surveykit.intake.aligning import Ingested, align, read_logs
+from surveykit.intake.clocks.evidence import frames as clock_frames
 from surveykit.keeping import load_quality, load_records, save_quality, save_records
 from surveykit.opening import Survey, open_file
 from surveykit.opening import open_survey as open_survey
@@ -34,15 +36,35 @@ Tables = dict[str, pd.DataFrame]
 STAGES = ("ingest", "quality", "surfaces", "comparison")
 
 
+Stage = TypeVar("Stage")
+
+
 @dataclass(frozen=True)
 class Evidence:
     """Pass estimates, the groups they come to, and the tables made of them."""
 
     estimates: tuple[PassEstimate, ...]
-    groups: tuple[pooling.Group, ...]
     tables: Tables
+    pool: Callable[[], tuple[pooling.Group, ...]] = field(repr=False)
+
+    @cached_property
+    def groups(self) -> tuple[pooling.Group, ...]:
+        """The groups with all their draws, computed when first asked for."""
+        return self.pool()
 
 
+def _once(stage: Callable[[Survey], Stage]) -> Callable[[Survey], Stage]:
+    """Let a stage run once for a survey that was opened."""
+    @wraps(stage)
+    def kept(survey: Survey) -> Stage:
+        if stage.__name__ not in survey.made:
+            survey.made[stage.__name__] = stage(survey)
+        made: Stage = survey.made[stage.__name__]
+        return made
+    return kept
+
+
+@_once
 def ingest(survey: Survey) -> Ingested:
     """Return records, clocks, field sheet and passes, the records read from the files once.
 
@@ -72,6 +94,12 @@ def clock_table(survey: Survey, ingested: Ingested) -> pd.DataFrame:
         for clock in ingested.clocks])
 
 
+def clock_evidence(ingested: Ingested) -> Tables:
+    """Return what the clocks were found from: frames `events` and `lags`."""
+    return clock_frames(ingested.clocks)
+
+
+@_once
 def quality(survey: Survey) -> Quality:
     """Mark every reading, choose each pass's records, and account for all of them."""
     folder = survey.run_folder / "quality"
@@ -90,6 +118,7 @@ def quality(survey: Survey) -> Quality:
     return made
 
 
+@_once
 def day(survey: Survey) -> Day:
     """Return everything that estimates draw upon: records, field sheet, marks."""
     ingested = ingest(survey)
@@ -102,6 +131,7 @@ def day_course(survey: Survey) -> Tables:
     return overview.day_course(today, passes) | {"excluded": overview.excluded(today, passes)}
 
 
+@_once
 def surfaces(survey: Survey) -> Evidence:
     """Estimate every pass and pool the estimates to surfaces, with budgets."""
     folder = survey.run_folder / "surfaces"
@@ -113,8 +143,8 @@ def surfaces(survey: Survey) -> Evidence:
         estimates = handing.from_frames(frames, passes)
         tables = {key: load_table(folder / f"{key}.npz")
                   for key in ("surfaces", "budget", "passes", "dwells", "corrections")}
-        groups = pooling.groups(name, estimates, survey.draws(), coverage=coverage)
-        return Evidence(estimates, groups, tables)
+        return Evidence(estimates, tables, lambda: pooling.groups(
+            name, estimates, survey.draws(), coverage=coverage))
     estimates = estimate_all(day(survey), ingest(survey).passes)
     groups = pooling.groups(name, estimates, survey.draws(), coverage=coverage)
     tables = pooling.pass_tables(name, estimates) | {
@@ -123,9 +153,10 @@ def surfaces(survey: Survey) -> Evidence:
     for key, frame in (tables | handing.to_frames(estimates)).items():
         save_table(folder / f"{key}.npz", frame)
     _finish(folder, survey.key)
-    return Evidence(estimates, groups, tables)
+    return Evidence(estimates, tables, lambda: groups)
 
 
+@_once
 def comparison(survey: Survey) -> Tables:
     """Compare the surfaces of this date, and this date with each earlier one."""
     folder = survey.run_folder / "comparison"
@@ -191,11 +222,15 @@ def _intake_notes(survey: Survey, ingested: Ingested) -> list[dict[str, Any]]:
     name = survey.campaign.campaign
     notes = [("field sheet", "note", "", text) for text in ingested.sheet.notices]
     notes += [("parameters", "note", "", text) for text in survey.parameters.notes]
-    notes += [("clock", "note" if clock.status == "ok" else "flag", clock.logger, clock.note)
+    severity = {"ok": "note", "refused": "refuse"}
+    notes += [("clock", severity.get(clock.status, "flag"), clock.logger, clock.note)
               for clock in ingested.clocks if clock.note]
+    notes += [("repeated head", "note", log.logger, f"{file.path}: {file.head_lines} lines repeat "
+               "the file's head, as after a restart; they are no records")
+              for log in ingested.records.values() for file in log.files if file.head_lines]
     return [{"campaign": name, "check": check, "logger": logger, "column": "", "surface": "",
-             "pass": "", "severity": severity, "records": 0, "message": text,
-             "source": "field practice"} for check, severity, logger, text in notes]
+             "pass": "", "severity": weight, "records": 0, "message": text,
+             "source": "field practice"} for check, weight, logger, text in notes]
 
 
 def _fresh(folder: Path, key: str) -> bool:

@@ -1,23 +1,26 @@
-"""Runs the notebooks of one campaign and swaps the finished report folder in whole."""
+"""Runs one campaign from its raw files, and swaps the finished report folder in whole.
+
+Kernels start first and import while this process does; heavy imports therefore come late here.
+"""
 
 from __future__ import annotations
 
+import builtins
 import json
 import os
 import shutil
 import sys
 import time
 from collections.abc import Callable, Iterator
+from concurrent.futures import Future, ThreadPoolExecutor, as_completed
+from contextlib import contextmanager
 from pathlib import Path
-from typing import Any
 
-from surveykit import facts, overview, pipeline
 from surveykit.core import InputError
-from surveykit.kernels import QuietKernelManager, kernels_ahead
+from surveykit.kernels import Kernels
+from surveykit.locking import free, locked
 from surveykit.opening import Survey, open_file
-from surveykit.report import datapackage, page
 from surveykit.swap import heal, swap_in
-from surveykit.verifying import outputs
 
 # jupyterlab brings rfc3987_syntax, which compiles a grammar for 1.2 s at import, reached through
 # jsonschema's optional format checkers; without it jsonschema skips that one optional format.
@@ -27,11 +30,23 @@ NOTEBOOKS = ("01_ingest", "02_quality", "03_surfaces", "04_comparison")
 Say = Callable[[str], None]
 
 
-def run(path: Path, say: Say, *, done: tuple[Path, ...] = ()) -> Path:
+class KernelGoneError(OSError):
+    """The system stopped a notebook's kernel; no fault of the input."""
+
+
+def cores() -> int:
+    """Return the number of cores this process may use."""
+    if hasattr(os, "sched_getaffinity"):
+        return len(os.sched_getaffinity(0))
+    return os.cpu_count() or 1
+
+
+def run(path: Path, say: Say, *, lanes: int | None = None,
+        notebooks: tuple[str, ...] = NOTEBOOKS, done: tuple[Path, ...] = ()) -> Path:
     """Run a campaign from its raw files and return the path of its report.
 
     Earlier campaigns named by it are run first where their report is missing or their inputs
-    changed.
+    changed. A second run of a campaign waits for the first.
 
     Parameters
     ----------
@@ -39,6 +54,10 @@ def run(path: Path, say: Say, *, done: tuple[Path, ...] = ()) -> Path:
         The parameter file.
     say : callable
         Takes one line of progress.
+    lanes : int, optional
+        How many notebooks run at once; the number of cores where it is not given.
+    notebooks : tuple of str
+        Those that run; without any the page holds summary and appendix alone.
     done : tuple of Path
         Parameter files that are being run above this one, to find circles.
 
@@ -46,6 +65,8 @@ def run(path: Path, say: Say, *, done: tuple[Path, ...] = ()) -> Path:
     ------
     InputError
         If an input is at fault; nothing of an earlier report is touched.
+    OSError
+        If something cannot be written; nothing of an earlier report is touched.
     """
     survey = open_file(path)
     here = survey.parameters.path.resolve()
@@ -53,10 +74,9 @@ def run(path: Path, say: Say, *, done: tuple[Path, ...] = ()) -> Path:
         raise InputError(f"{survey.inputs[0]['path']}: comparison.earlier leads back to this "
                          "campaign; name earlier campaigns only")
     for earlier in survey.parameters.earlier:
-        one = open_file(earlier)
-        if not up_to_date(one):
-            run(earlier, say, done=(*done, here))
-    return _run_one(survey, say)
+        if not up_to_date(open_file(earlier)):
+            run(earlier, say, lanes=lanes, notebooks=notebooks, done=(*done, here))
+    return _run_one(survey, say, lanes or cores(), notebooks)
 
 
 def up_to_date(survey: Survey) -> bool:
@@ -69,55 +89,99 @@ def up_to_date(survey: Survey) -> bool:
     return bool(kept.get("key") == survey.key and (folder / "report.html").is_file())
 
 
-def _run_one(survey: Survey, say: Say) -> Path:
+def heal_all(root: Path) -> None:
+    """Put right what stopped swaps left in reports/, but for campaigns under way."""
+    for aside in (root / "reports").glob(".*.old"):
+        name = aside.name.removeprefix(".").removesuffix(".old")
+        if free(root, name):
+            heal(aside.parent, name)
+
+
+def _run_one(survey: Survey, say: Say, lanes: int, notebooks: tuple[str, ...]) -> Path:
     started = time.perf_counter()
-    name = survey.campaign.campaign
-    root = survey.parameters.root
-    with kernels_ahead(root, len(NOTEBOOKS)) as kernels:
-        for stage in pipeline.STAGES:
-            shutil.rmtree(survey.run_folder / stage, ignore_errors=True)
-        pipeline.ingest(survey)
-        reports = _reports(survey)
-        heal(reports, name)
-        new = reports / f".{name}.new"
-        shutil.rmtree(new, ignore_errors=True)
-        (new / "notebooks").mkdir(parents=True)
-        try:
+    name, root, reports = survey.campaign.campaign, survey.parameters.root, _reports(survey)
+    earlier = tuple(path.stem for path in survey.parameters.earlier)
+    with locked(root, name, earlier, say) as lock, _new_folder(reports, name) as new:
+        lanes = min(lanes, len(notebooks))
+        with Kernels(root, ahead=lanes, inherited=(lock,)) as kernels:
+            from surveykit import producing  # heavy: while the kernels import
+
             say(f"{name}: {survey.campaign.title}")
-            durations = _execute(survey, new / "notebooks", kernels, say)
-            _write(survey, new, durations, started)
-        except BaseException:
-            shutil.rmtree(new, ignore_errors=True)
-            raise
-    swap_in(reports, name)
+            producing.compute(survey)
+            durations = _execute(survey, new / "notebooks", kernels, say, notebooks, lanes)
+        producing.write(survey, new, notebooks, durations, started)
+        swap_in(reports, name)
     say(f"  report in {time.perf_counter() - started:.1f} s")
     return reports / name / "report.html"
 
 
-def _execute(survey: Survey, folder: Path, kernels: Iterator[QuietKernelManager],
-             say: Say) -> dict[str, float]:
-    """Run the notebooks in order, each in a kernel of its own; one line of progress each."""
-    import papermill
+@contextmanager
+def _new_folder(reports: Path, name: str) -> Iterator[Path]:
+    """Yield the folder beside the old report; it is gone after a failure, but for a failed swap."""
+    reports.mkdir(exist_ok=True)
+    heal(reports, name)
+    new = reports / f".{name}.new"
+    if new.exists():
+        shutil.rmtree(new)
+    (new / "notebooks").mkdir(parents=True)
+    try:
+        yield new
+    except BaseException as error:
+        if not getattr(error, "keeps_new", False):
+            shutil.rmtree(new, ignore_errors=True)
+        raise
 
-    root = survey.parameters.root
-    _check_parameters(root)
-    durations = {}
-    handed = {"params_file": survey.inputs[0]["path"], "run_folder": _from_root(survey)}
-    begun = time.perf_counter()
-    for name, kernel in zip(NOTEBOOKS, kernels, strict=True):
+
+def _execute(survey: Survey, folder: Path, kernels: Kernels, say: Say,
+             notebooks: tuple[str, ...], lanes: int) -> dict[str, float]:
+    """Run the notebooks, `lanes` at once, each in a kernel of its own; a line of progress each.
+
+    They need not wait for one another: what the stages made is in the run folder already.
+    """
+    if not notebooks:
+        return {}
+    _check_parameters(survey.parameters.root, notebooks)
+    durations: dict[str, float] = {}
+    with ThreadPoolExecutor(lanes) as pool:
+        asked: dict[Future[float], str] = {
+            pool.submit(_execute_one, survey, folder, kernels, name): name for name in notebooks}
         try:
-            papermill.execute_notebook(
-                _literal(root / "notebooks" / f"{name}.ipynb"), _literal(folder / f"{name}.ipynb"),
-                parameters=handed, kernel_name="python3", progress_bar=False, log_output=False,
-                cwd=str(root), km=kernel)
-        except papermill.PapermillExecutionError as error:
-            if error.ename == InputError.__name__:
-                raise InputError(*error.evalue.splitlines()) from None
+            for one in as_completed(asked):
+                durations[asked[one]] = one.result()
+                say(f"  {asked[one]:<14} {durations[asked[one]]:5.1f} s")
+        except BaseException:
+            pool.shutdown(wait=False, cancel_futures=True)
+            kernels.close()
             raise
-        durations[name] = time.perf_counter() - begun
-        begun += durations[name]
-        say(f"  {name:<14} {durations[name]:5.1f} s")
     return durations
+
+
+def _execute_one(survey: Survey, folder: Path, kernels: Kernels, name: str) -> float:
+    import papermill
+    from nbclient.exceptions import DeadKernelError
+
+    begun = time.perf_counter()
+    root = survey.parameters.root
+    handed = {"params_file": survey.inputs[0]["path"], "run_folder": _from_root(survey)}
+    kernel = kernels.take()
+    try:
+        papermill.execute_notebook(
+            _literal(root / "notebooks" / f"{name}.ipynb"), _literal(folder / f"{name}.ipynb"),
+            parameters=handed, kernel_name="python3", progress_bar=False, log_output=False,
+            request_save_on_cell_execute=False, autosave_cell_every=0, cwd=str(root), km=kernel)
+    except papermill.PapermillExecutionError as error:
+        if error.ename == InputError.__name__:
+            raise InputError(*error.evalue.splitlines()) from None
+        kind = getattr(builtins, error.ename, None)
+        if isinstance(kind, type) and issubclass(kind, OSError):
+            raise OSError(f"notebook {name}: {error.evalue}") from None
+        raise
+    except DeadKernelError:
+        raise KernelGoneError(f"notebook {name}: the system stopped its kernel, as when memory "
+                              "runs out") from None
+    finally:
+        kernel.end()
+    return time.perf_counter() - begun
 
 
 def _from_root(survey: Survey) -> str:
@@ -130,57 +194,20 @@ def _literal(path: Path) -> str:
     return str(path).replace("{", "{{").replace("}", "}}")
 
 
-def _check_parameters(root: Path) -> None:
+def _check_parameters(root: Path, notebooks: tuple[str, ...]) -> None:
     """Refuse notebooks whose parameters cell would not take what is handed over."""
     import papermill
 
-    for name in NOTEBOOKS:
+    for name in notebooks:
         path = root / "notebooks" / f"{name}.ipynb"
         if not path.is_file():
             raise InputError(f"notebooks/{name}.ipynb is missing; restore it from the project")
-        known = papermill.inspect_notebook(str(path))
+        known = papermill.inspect_notebook(_literal(path))
         for key in ("params_file", "run_folder"):
             if key not in known:
                 raise InputError(f"notebooks/{name}.ipynb: its parameters cell lacks {key}; "
                                  "restore the cell and its tag 'parameters'")
 
 
-def _write(survey: Survey, new: Path, durations: dict[str, float], started: float) -> None:
-    """Write tables, page and, last, run.json."""
-    import nbformat
-
-    tables = pipeline.all_tables(survey)
-    known = facts.collect(survey)
-    passes = pipeline.ingest(survey).passes
-    known["conditions"] += overview.conditions(pipeline.day_course(survey))
-    known["albedo_geometry"] = overview.geometry(passes)
-    datapackage.write_tables(tables, new / "tables", known)
-    notebooks = []
-    for name in NOTEBOOKS:
-        notebook = nbformat.read(new / "notebooks" / f"{name}.ipynb", as_version=4)
-        notebook.metadata.pop("papermill", None)  # it holds this machine's folders
-        nbformat.write(notebook, new / "notebooks" / f"{name}.ipynb")
-        notebooks.append(notebook)
-    (new / "report.html").write_text(page.build_page(notebooks, tables, known), encoding="utf-8",
-                                     newline="\n")
-    kept: dict[str, Any] = {
-        "key": survey.key, "command": known["rerun"], "campaign": known["campaign"],
-        "inputs": known["inputs"], "params_file": known["params_file"],
-        "earlier_inputs": [item for path in survey.parameters.earlier
-                           for item in open_file(path).inputs],
-        "outputs": outputs(new), "versions": known["versions"], "seed": known["seed"],
-        "draws": known["draws"],
-        "finished_utc": time.strftime("%Y-%m-%dT%H:%M:%SZ", time.gmtime()),
-        "durations_s": {k: round(v, 3) for k, v in durations.items()},
-        "total_s": round(time.perf_counter() - started, 3)}
-    with open(new / "run.json", "w", encoding="utf-8", newline="\n") as file:
-        json.dump(kept, file, indent=1, sort_keys=True)
-        file.write("\n")
-        file.flush()
-        os.fsync(file.fileno())
-
-
 def _reports(survey: Survey) -> Path:
-    folder = survey.parameters.root / "reports"
-    folder.mkdir(exist_ok=True)
-    return folder
+    return survey.parameters.root / "reports"

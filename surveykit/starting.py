@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import json
 import re
+from collections.abc import Sequence
 from pathlib import Path
 
 from surveykit.core import InputError
@@ -23,11 +25,11 @@ site:
   elevation_m: 0              # FILL IN
   time_zone: "..."            # FILL IN: zone of the field sheet, as Europe/Lisbon or UTC
   sky_view: 1.0               # share of the sky seen from the ground
-instruments: params/instruments.yml   # your kit: an entry a logger
+instruments: params/{kit}.yml   # your kit: an entry a logger
 data_folder: data/{name}
 field_sheet: field_sheet.csv
 loggers:                      # FILL IN: those of the kit that were used this day
-  thermal: {{files: "thermal*.csv"}}  # clock: {{offset_s: 0.0, u_s: 0.5}} once it was compared
+{loggers}
 surfaces:                     # FILL IN: each kind of ground on the field sheet
   first-surface:
     label: First surface
@@ -43,27 +45,52 @@ COLUMNS = ("campaign", "date", "entry", "surface", "patch", "quantity", "mode", 
            "note")
 
 
-def start(name: str, here: Path) -> list[str]:
+LOGGERS = ('  thermal: {files: "thermal*.csv"}  '
+           "# clock: {offset_s: 0.0, u_s: 0.5} once it was compared")
+
+
+def start(name: str, here: Path, logs: Sequence[Path] = ()) -> list[str]:
     """Write params/NAME.yml and data/NAME/field_sheet.csv; return what to do next.
+
+    From sample files of its loggers, `logs`, a first params/NAME-instruments.yml is written as
+    well; then a campaign that is there already stays as it is.
 
     Raises
     ------
     InputError
-        If the name is not one, or either file is there already.
+        If the name is not one, a file is there already, or a sample does not look like a log.
     """
     root = find_root(here)
     if not re.fullmatch(r"[a-z0-9][a-z0-9-]{0,63}", name):
         raise InputError(f"ID: got {name[:80]!r}; write lower-case letters, digits and -, "
                          "at most 64, such as mill-yard-2025-07-24")
-    parameters, sheet = root / "params" / f"{name}.yml", root / "data" / name / "field_sheet.csv"
+    kit, loggers, written = "instruments", LOGGERS, {}
+    if logs:
+        from surveykit.intake.sketching import sketch
+
+        kit = f"{name}-instruments"
+        text, files = sketch(name, logs)
+        written[root / "params" / f"{kit}.yml"] = text
+        loggers = "\n".join(f"  {entry}: {{files: {json.dumps(some, ensure_ascii=False)}}}"
+                            for entry, some in files.items())
+    campaign = {
+        root / "params" / f"{name}.yml": PARAMETERS.format(name=name, kit=kit, loggers=loggers),
+        root / "data" / name / "field_sheet.csv": ",".join(COLUMNS) + "\n"}
+    if not logs or not any(path.exists() for path in campaign):
+        written |= campaign
     faults = [f"{path.relative_to(root).as_posix()}: is there already; choose another ID, or "
-              "move it away" for path in (parameters, sheet) if path.exists()]
+              "move it away" for path in written if path.exists()]
     if faults:
         raise InputError(*faults)
-    sheet.parent.mkdir(parents=True, exist_ok=True)
-    sheet.write_text(",".join(COLUMNS) + "\n", encoding="utf-8", newline="\n")
-    parameters.write_text(PARAMETERS.format(name=name), encoding="utf-8", newline="\n")
-    shown = [path.relative_to(root).as_posix() for path in (parameters, sheet)]
-    return [f"wrote {shown[0]}", f"wrote {shown[1]}",
+    for path, text in written.items():
+        path.parent.mkdir(parents=True, exist_ok=True)
+        with path.open("x", encoding="utf-8", newline="\n") as file:
+            file.write(text)
+    shown = [path.relative_to(root).as_posix() for path in written]
+    if logs:
+        return [*(f"wrote {name}" for name in shown),
+                "compare each CONFIRM with the logger's program, fill in each FILL IN, then: "
+                f"surveykit check params/{kit}.yml"]
+    return [*(f"wrote {name}" for name in shown),
             f"put the logger files into data/{name}/, fill in both files, then: "
             f"surveykit check {shown[0]}"]

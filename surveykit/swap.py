@@ -15,6 +15,8 @@ RENAME_EXCHANGE = 2
 class SwapError(OSError):
     """The system would not rename a folder (a table open elsewhere); both folders are whole."""
 
+    keeps_new = True
+
 
 def heal(folder: Path, name: str) -> None:
     """Put right what a stopped swap left: an aside with nothing in its place goes back."""
@@ -27,8 +29,20 @@ def heal(folder: Path, name: str) -> None:
         os.rename(aside, place)
 
 
+def settle(folder: Path) -> None:
+    """Have the system write a folder and all in it to the disk before anything else happens."""
+    for path in (*folder.rglob("*"), folder):
+        if os.name == "nt" and path.is_dir():
+            continue  # folders cannot be opened there
+        descriptor = os.open(path, os.O_RDONLY if os.name != "nt" else os.O_RDWR)
+        try:
+            os.fsync(descriptor)
+        finally:
+            os.close(descriptor)
+
+
 def swap_in(folder: Path, name: str) -> None:
-    """Let `.name.new` take the place of `name`, the old one gone after.
+    """Let `.name.new` take the place of `name`, the old one gone after; on the disk before.
 
     Exchanges the two folders in one step where the system offers it; else the old one goes aside
     first, and `heal` puts it back should the process stop between the two steps.
@@ -39,6 +53,7 @@ def swap_in(folder: Path, name: str) -> None:
         If a rename is refused; the new folder then still stands as `.name.new`.
     """
     place, new, aside = folder / name, folder / f".{name}.new", folder / f".{name}.old"
+    settle(new)
     try:
         if not place.exists():
             os.rename(new, place)

@@ -1,4 +1,4 @@
-"""`surveykit verify`: does a report still belong to its inputs, its tables and its page?"""
+"""`surveykit verify`: whether a report still belongs to its inputs, its tables and its page."""
 
 from __future__ import annotations
 
@@ -129,7 +129,7 @@ def _again(survey: Survey, folder: Path, kept: dict[str, Any], shown: str) -> li
 
 
 def moved_cells(then: str, now: str, table: str) -> Iterator[str]:
-    """Yield a line for each cell of two CSV texts of one table that moved.
+    r"""Yield a line for each cell of two CSV texts of one table that moved.
 
     Numbers may move by 1e-6 relative; everything else must be equal. Rows are numbered as a
     spreadsheet does (header = 1).

@@ -15,9 +15,12 @@ from typing import Any
 import numpy as np
 
 from surveykit.core import FloatArray, Input
+from surveykit.physics.shortwave import patch_albedo, zenith_factor
 from surveykit.physics.thermal import (
+    Band,
     background_radiance,
     band,
+    brightness_without_setting,
     contact_temperature_k,
     longwave_temperature_k,
     sky_radiance,
@@ -28,60 +31,100 @@ from surveykit.statistics.draws import Draws
 
 Values = Mapping[str, Any]
 
+# Effects that a pass may or may not have, at the value at which they do nothing.
+NEUTRAL: dict[str, float] = {
+    "emissivity_setting": 1.0, "reflected_k": 300.0, "cloud_fraction": 0.0, "cloud_base_k": 0.0,
+    "background_factor": 1.0, "check_error": 0.0, "rim_gap": 0.0, "rim_gap_error": 0.0,
+    "head_cooling_k": 0.0, "head_cooling_error": 0.0,
+    "gain_ratio": 1.0, "surroundings_corrected": 0.0, "shade_corrected": 0.0,
+    "footprint_error": 0.0, "shade_error": 0.0, "contamination_error": 0.0,
+    "up_class_error": 0.0, "down_class_error": 0.0, "spectral_error": 0.0,
+    "zenith_deg": 60.0, "reference_zenith_deg": 60.0, "zenith_dependence": 0.0,
+    "red_ratio": 1.0, "nir_ratio": 1.0, "panel_error": 0.0,
+}
+
 
 def stand_off(x: Values) -> FloatArray:
     """Surface temperature [K] from above: the balance of emitted and reflected band radiance."""
+    x = NEUTRAL | dict(x)
     window = band(float(x["band_low_um"]), float(x["band_high_um"]))
-    sky = x["sky_factor"] * sky_radiance(window, x["air_k"], x["relative_humidity"])
-    around = background_radiance(window, sky, x["sky_view"], x["walls_k"], x["walls_emissivity"])
-    return standoff_temperature_k(window, _brightness(x), x["emissivity"], around)
+    around = background(x, window)
+    brightness = _brightness(x, window)
+    return standoff_temperature_k(window, brightness, x["emissivity"], around) + _left(x)
+
+
+def background(x: Values, window: Band) -> FloatArray:
+    """Radiance [W m-2 sr-1] that sky and walls throw on the ground, as modelled or measured."""
+    x = NEUTRAL | dict(x)
+    return np.asarray(x["background_factor"] * background_radiance(
+        window, _sky(x, window), x["sky_view"], x["walls_k"], x["walls_emissivity"]))
 
 
 def contact(x: Values) -> FloatArray:
     """Surface temperature [K] under the head: the bore's cavity, rim gap and head cooling.
 
-    The rim is taken as closed. A gap lies between 0 and its largest and is never negative; what it
-    does to the temperature is allowed on either side of the closed value.
+    `rim_gap` is the gap that is corrected. Where none is, the rim is taken as closed, and
+    `rim_gap_error` allows what a gap does on either side of the closed value.
     """
+    x = NEUTRAL | dict(x)
     window = band(float(x["band_low_um"]), float(x["band_high_um"]))
-    sky = x["sky_factor"] * sky_radiance(window, x["air_k"], x["relative_humidity"])
-    rest = _brightness(x), x["emissivity"], x["body_k"], x["bore_emissivity"]
-    closed = contact_temperature_k(window, *rest, 0.0, sky)
+    sky = _sky(x, window)
+    rest = _brightness(x, window), x["emissivity"], x["body_k"], x["bore_emissivity"]
+    closed = contact_temperature_k(window, *rest, np.clip(x["rim_gap"], 0.0, 1.0), sky)
     leaking = contact_temperature_k(window, *rest, np.abs(x["rim_gap_error"]), sky)
-    return closed + np.sign(x["rim_gap_error"]) * (leaking - closed) + x["head_cooling_error"]
+    return np.asarray(closed + np.sign(x["rim_gap_error"]) * (leaking - closed)
+                      + x["head_cooling_k"] + x["head_cooling_error"] + _left(x))
 
 
 def longwave(x: Values) -> FloatArray:
     """Surface temperature [K] from broadband up- and downwelling longwave irradiance."""
     up = x["up"] * (1 + x["up_gain_error"]) + x["up_offset_error"]
     down = x["down"] * (1 + x["down_gain_error"]) + x["down_offset_error"]
-    return longwave_temperature_k(up, down, x["emissivity_broadband"])
+    return longwave_temperature_k(up, down, x["emissivity_broadband"]) + _left(x)
 
 
 def albedo(x: Values) -> FloatArray:
-    """Albedo [1]: ratio of sums, with what is budgeted and not removed around it.
+    """Albedo [1]: ratio of sums over the heads' gain ratio, less surroundings and own shade.
 
-    Shade and foreign ground are not removed: `..._per_m` say how their shares move with the
-    height of the head, so that passes held at other heights than written scatter.
+    What is not corrected is budgeted around the value: its whole size on either side. `..._per_m`
+    say how the shares move with the height of the head, so that passes held at other heights than
+    written scatter.
     """
-    up = x["up"] * (1 + x["up_gain_error"]) + x["up_zero_error"]
-    down = x["down"] * (1 + x["down_gain_error"]) + x["down_zero_error"]
-    ratio = up / down * (1 + x["directional_error"] + x["levelling_error"])
-    return (ratio * (1 + x["shade_error"] * x["shade_share"]
-                     + x["height_error"] * x["shade_per_m"])
-            + _foreign(x, x["around_albedo"] - ratio))
+    x = NEUTRAL | dict(x)
+    up = x["up"] * (1 + x["up_gain_error"] + x["up_class_error"]) + x["up_zero_error"]
+    down = x["down"] * (1 + x["down_gain_error"] + x["down_class_error"]) + x["down_zero_error"]
+    ratio = up / down / x["gain_ratio"] * (
+        1 + x["directional_error"] + x["levelling_error"] + x["spectral_error"])
+    seen, lit = x["surroundings_corrected"], x["shade_corrected"]
+    higher = x["height_error"]
+    share = 1 - seen * (1 - x["footprint_share"] - x["footprint_error"]
+                        - higher * x["footprint_per_m"])
+    shade = lit * (x["shade_share"] * (1 + x["shade_error"]) + higher * x["shade_per_m"])
+    patch = patch_albedo(ratio, x["around_albedo"] + x["around_error"], share, shade)
+    budgeted = (1 - lit) * ratio * (x["shade_error"] * x["shade_share"] + higher * x["shade_per_m"])
+    budgeted = budgeted + (1 - seen) * _foreign(x, x["around_albedo"] - ratio)
+    turn = (zenith_factor(x["reference_zenith_deg"], x["zenith_dependence"])
+            / zenith_factor(x["zenith_deg"], x["zenith_dependence"]))
+    return np.asarray((patch + budgeted) * turn + _left(x))
 
 
 def vegetation_index(x: Values) -> FloatArray:
     """NDVI [1] of the patch: index of the ratios of sums of both bands."""
-    factor = {}
+    x = NEUTRAL | dict(x)
+    index = ndvi(*reflectances(x))
+    return index + _foreign(x, x["around_ndvi"] - index) + _left(x)
+
+
+def reflectances(x: Values) -> tuple[FloatArray, FloatArray]:
+    """Reflectance factors [1] of red and near infrared, over the heads' gain ratios."""
+    x = NEUTRAL | dict(x)
+    factor = []
     for name in ("red", "nir"):
         up = x[f"{name}_up"] * (1 + x[f"{name}_up_gain_error"]) + x[f"{name}_up_zero_error"]
         down = (x[f"{name}_down"] * (1 + x[f"{name}_down_gain_error"])
                 + x[f"{name}_down_zero_error"])
-        factor[name] = up / down
-    index = ndvi(factor["red"], factor["nir"])
-    return index + _foreign(x, x["around_ndvi"] - index)
+        factor.append(np.asarray(up / down / x[f"{name}_ratio"] * (1 + x["panel_error"])))
+    return factor[0], factor[1]
 
 
 MODELS: dict[str, Callable[[Values], FloatArray]] = {
@@ -128,6 +171,23 @@ def _foreign(x: Values, contrast: Any) -> Any:
             + x["height_error"] * x["footprint_per_m"] * contrast)
 
 
-def _brightness(x: Values) -> Any:
-    return (x["brightness_k"] + x["gain_error"] * x["gain_reading"] + x["offset_error"]
-            + x["body_rate_error"] * x["body_rate_k_min"])
+def _brightness(x: Values, window: Band) -> Any:
+    logged = (x["brightness_k"] + x["gain_error"] * x["gain_reading"] + x["offset_error"]
+              + x["check_error"] + x["body_rate_error"] * x["body_rate_k_min"])
+    if np.all(x["emissivity_setting"] == 1.0):
+        return logged
+    return brightness_without_setting(window, logged, x["emissivity_setting"], x["reflected_k"])
+
+
+def _sky(x: Values, window: Band) -> Any:
+    """Sky radiance: the clear model, the base of the clouds where there are some, as measured."""
+    clear = sky_radiance(window, x["air_k"], x["relative_humidity"])
+    cloud = x["cloud_fraction"]
+    if np.any(cloud != 0.0):
+        clear = (1 - cloud) * clear + cloud * window.radiance(x["air_k"] - x["cloud_base_k"])
+    return x["sky_factor"] * clear
+
+
+def _left(x: Values) -> Any:
+    """Return the sum of what is left uncorrected because a correction is switched off."""
+    return sum(value for name, value in x.items() if name.endswith("_left"))

@@ -3,21 +3,23 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Sequence
-from dataclasses import dataclass
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
 import pandas as pd
 from scipy.special import ndtri
 
-from surveykit.core import FloatArray, Input, table
-from surveykit.evidence import models
+from surveykit.core import FloatArray, table
+from surveykit.evidence.budget import budget_rows, units_needed
 from surveykit.evidence.estimates import UNITS, PassEstimate, display
+from surveykit.evidence.moving import Moves
+from surveykit.evidence.spreads import Spreads, rows_by_patch
 from surveykit.statistics.draws import Draws, Result, Sampling, Summary, observed, summarise
-from surveykit.statistics.pooling import Pooled, pool
+from surveykit.statistics.pooling import Common, Pooled, pool
+from surveykit.statistics.simultaneous import end_error
 
-SAMPLING = "scatter between passes and patches"
 MEASURED = re.compile(r"\d+(?=%| s of| W m-2| degrees)")  # numbers in a reason that passes share
 
 
@@ -43,6 +45,9 @@ class Group:
     status: str
     notes: tuple[str, ...]
     budget: tuple[dict[str, Any], ...] = ()
+    pooled: Pooled | None = None
+    units_u: FloatArray | None = None
+    spreads: Spreads | None = None
 
     @property
     def key(self) -> tuple[str, str, str]:
@@ -55,9 +60,12 @@ class Group:
         return float(values @ self.weights) if values.size else float("nan")
 
 
-def groups(campaign: str, estimates: Sequence[PassEstimate], draws: Draws, *,
-           coverage: float) -> tuple[Group, ...]:
+def groups(campaign: str, estimates: Sequence[PassEstimate], draws: Draws, *, coverage: float,
+           between_passes: str = "own") -> tuple[Group, ...]:
     """Pool the estimates by surface, quantity and kind, in the order of the passes.
+
+    `between_passes` is "own" (each surface's scatter between passes) or "common" (one for all
+    surfaces of a quantity and kind, its degrees of freedom summed).
 
     Raises
     ------
@@ -72,102 +80,76 @@ def groups(campaign: str, estimates: Sequence[PassEstimate], draws: Draws, *,
         homes = [k for k in found if k[:2] == key[:2] and k[2]]
         if homes:
             found[homes[0]] += found.pop(key)
-    return tuple(_group(campaign, key, tuple(some), draws, coverage)
+    spreads = Spreads(campaign, found) if between_passes == "common" else None
+    return tuple(pool_passes(campaign, key, some, draws, coverage, spreads)
                  for key, some in found.items())
 
 
-def _group(campaign: str, key: tuple[str, str, str], passes: tuple[PassEstimate, ...],
-           draws: Draws, coverage: float) -> Group:
-    surface, quantity, kind = key
+def pool_passes(campaign: str, key: tuple[str, str, str], passes: Sequence[PassEstimate],
+                draws: Draws, coverage: float, spreads: Spreads | None = None) -> Group:
+    """Return what the passes of one surface, quantity and kind come to."""
     used = tuple(p for p in passes if p.evaluated)
+    nothing = Group(campaign, *key, tuple(passes), (), np.zeros(0), np.nan, np.nan, 0, None,
+                    "not evaluated", ())
     if not used:
-        return Group(campaign, surface, quantity, kind, passes, used, np.zeros(0), np.nan, np.nan,
-                     0, None, "not evaluated", _why_not(passes))
-    own = np.array([_own_u(campaign, p) for p in used])
-    value, weights, pooled = _pool(used, own)
-    systematic = np.zeros(draws.size)
-    for weight, p in zip(weights, used, strict=True):
-        systematic += weight * models.deviations(p.model, p.inputs, draws,
-                                                 f"{campaign}:pass:{p.this.name}")
+        return replace(nothing, notes=_why_not(tuple(passes)))
+    moves = Moves(campaign, used)
+    common = spreads.common(key) if spreads else None
+    over = _pool(used, moves.own_u, common)
+    weights, pooled = over.weights, over.pooled
+    systematic = moves.systematic(weights, draws)
     if not np.isfinite(systematic).all():
-        return Group(campaign, surface, quantity, kind, passes, (), np.zeros(0), np.nan, np.nan,
-                     0, None, "not evaluated", ("the stated uncertainties of its inputs reach "
-                                                "beyond the range of the model",))
-    at_least = float(np.sqrt(systematic.var() + (weights**2) @ (own**2)))
-    notes = _notes(passes, used)
-    rows = _budget(campaign, used, weights, pooled, float(np.sqrt((weights**2) @ (own**2))))
-    if len(used) == 1:
-        return Group(campaign, surface, quantity, kind, passes, used, weights, value, at_least, 0,
-                     None, "value only", ("one pass", *notes), rows)
-    scope = f"{campaign}:{surface}:{quantity}:{kind}:sampling"
-    result = observed(value, value + systematic - systematic.mean(),
+        return replace(nothing, notes=("the stated uncertainties of its inputs reach beyond the "
+                                       "range of the model",))
+    rows = budget_rows(campaign, moves, weights, pooled, coverage)
+    made = replace(
+        nothing, used=used, weights=weights, value=over.value, dof=pooled.dof, budget=rows,
+        u_at_least=float(np.sqrt(systematic.var() + (weights**2) @ (moves.own_u**2))),
+        pooled=pooled, units_u=over.units_u, status="value only", spreads=spreads,
+        notes=("one pass", *_notes(tuple(passes), used)))
+    if pooled.dof == 0:
+        return made
+    scope = f"{campaign}:{':'.join(key)}:sampling"
+    result = observed(over.value, over.value + systematic,
                       (Sampling(scope, pooled.u, pooled.dof),), draws)
-    n_patches = len({p.this.patch for p in used})
-    if n_patches == 1:
-        notes = ("one patch: holds for this patch", *notes)
-    if len(used) == 2:
-        notes = ("two passes only", *notes)
-    group = Group(campaign, surface, quantity, kind, passes, used, weights, value, at_least,
-                  pooled.dof, result, "qualified" if notes else "ok", notes, rows)
-    _assert_floor(group, summarise(result, coverage), coverage)
-    return group
+    notes = list(_notes(tuple(passes), used))
+    if len({p.this.patch for p in used}) == 1:
+        notes = ["one patch: holds for this patch", *notes]
+        if spreads and common:
+            notes = [spreads.words(key), *notes]
+    if len(used) <= 2:
+        notes = ["two passes only" if len(used) == 2 else "one pass", *notes]
+    made = replace(made, result=result, notes=tuple(notes),
+                   status="qualified" if notes else "ok")
+    _assert_floor(made, summarise(result, coverage), coverage)
+    return made
 
 
-def _pool(used: tuple[PassEstimate, ...],
-          own: FloatArray) -> tuple[float, FloatArray, Pooled]:
-    """Pool passes to patches, and patches (if several) to the surface; weights per pass."""
+@dataclass(frozen=True)
+class _Over:
+    """Value and weights per pass, the last pooling step, and the u of the units that went in."""
+
+    value: float
+    weights: FloatArray
+    pooled: Pooled
+    units_u: FloatArray
+
+
+def _pool(used: tuple[PassEstimate, ...], own: FloatArray, common: Common | None) -> _Over:
+    """Pool passes to patches, and patches (if several) to the surface."""
     values = np.array([p.value for p in used])
-    patches: dict[str, list[int]] = {}
-    for i, p in enumerate(used):
-        patches.setdefault(p.this.patch, []).append(i)
-    within = {name: pool(values[rows], own[rows]) for name, rows in patches.items()}
+    patches = rows_by_patch(used)
+    within = {name: pool(values[rows], own[rows], common) for name, rows in patches.items()}
     if len(patches) == 1:
         (only,) = within.values()
-        return only.value, only.weights, only
-    u = [own[rows[0]] if len(rows) == 1 else within[name].u for name, rows in patches.items()]
+        return _Over(only.value, only.weights, only, own)
+    u = np.array([own[rows[0]] if within[name].dof == 0 else within[name].u
+                  for name, rows in patches.items()])
     over = pool([w.value for w in within.values()], u)
     weights = np.zeros(len(used))
     for share, (name, rows) in zip(over.weights, patches.items(), strict=True):
         weights[rows] = share * within[name].weights
-    return over.value, weights, over
-
-
-def _own_u(campaign: str, p: PassEstimate) -> float:
-    """Return what a pass does not share: scatter within it and inputs of its own scope."""
-    moves = models.sensitivities(p.model, p.inputs)
-    alone = [moves[i.name] for i in p.inputs
-             if i.u > 0 and i.scope == f"{campaign}:pass:{p.this.name}"]
-    return float(np.sqrt(p.u_within**2 + np.sum(np.square(alone))))
-
-
-def _budget(campaign: str, used: tuple[PassEstimate, ...], weights: FloatArray, pooled: Pooled,
-            own: float) -> tuple[dict[str, Any], ...]:
-    """Return one row a scope: its input u and its contribution, signs kept until they add up."""
-    sums: dict[str, float] = {}
-    inputs: dict[str, Input] = {}
-    for weight, p in zip(weights, used, strict=True):
-        moves = models.sensitivities(p.model, p.inputs)
-        for i in p.inputs:
-            if i.u > 0 and i.scope != f"{campaign}:pass:{p.this.name}":
-                sums[i.scope] = sums.get(i.scope, 0.0) + weight * moves[i.name]
-                if i.u > inputs.get(i.scope, i).u or i.scope not in inputs:
-                    inputs[i.scope] = i
-    quantity = used[0].this.quantity
-    unit = {"temperature": "K"}.get(quantity, "1")
-    base = {"campaign": campaign, "surface": used[0].this.surface, "quantity": quantity,
-            "kind": used[0].kind, "unit": unit}
-    rows: list[dict[str, Any]] = [
-        base | {"scope": scope, "source": inputs[scope].source, "u_input": inputs[scope].u,
-                "contribution": abs(total)} for scope, total in sums.items()]
-    scatter = pooled.u if pooled.dof > 0 else own
-    rows.append(base | {
-        "scope": f"{campaign}:{used[0].this.surface}:sampling",
-        "source": SAMPLING if pooled.dof > 0 else "scatter within the one pass",
-        "u_input": scatter, "contribution": scatter})
-    variance = sum(row["contribution"] ** 2 for row in rows)
-    for row in rows:
-        row["share"] = row["contribution"] ** 2 / variance if variance > 0 else 0.0
-    return tuple(sorted(rows, key=lambda row: (-row["contribution"], row["scope"])))
+    return _Over(over.value, weights, over, u)
 
 
 def _notes(passes: tuple[PassEstimate, ...], used: tuple[PassEstimate, ...]) -> tuple[str, ...]:
@@ -202,8 +184,13 @@ def _assert_floor(group: Group, summary: Summary, coverage: float) -> None:
         f"{group.key}: half-width {half:g} is below its calibration's {least:g}")
 
 
-def surface_table(found: Sequence[Group], coverage: float) -> pd.DataFrame:
-    """Return the table `surfaces`; temperatures in degC, their u in K."""
+def surface_table(found: Sequence[Group], coverage: float,
+                  wanted: Mapping[str, float] | None = None) -> pd.DataFrame:
+    """Return the table `surfaces`; temperatures in degC, their u in K.
+
+    `wanted` is the half-width asked for by quantity; `needed` says how many passes (patches where
+    there are several) would give it.
+    """
     rows = []
     for g in found:
         row: dict[str, Any] = {
@@ -213,11 +200,17 @@ def surface_table(found: Sequence[Group], coverage: float) -> pd.DataFrame:
             "n_patches": len({p.this.patch for p in g.used}), "n_passes": len(g.used),
             "n_records": sum(p.n_records for p in g.used),
             "n_effective": float(sum(p.n_effective for p in g.used)),
-            "u_at_least": g.u_at_least, "status": g.status, "note": "; ".join(g.notes)}
+            "u_at_least": g.u_at_least, "spread": g.pooled.tau if g.pooled else np.nan,
+            "end_error": np.nan, "needed": np.nan, "status": g.status,
+            "note": "; ".join(g.notes)}
         if g.result is not None:
             s = summarise(g.result, coverage)
             row |= {"u": s.u, "lower": display(s.lower, g.quantity),
-                    "upper": display(s.upper, g.quantity), "k": s.k, "dof": s.dof}
+                    "upper": display(s.upper, g.quantity), "k": s.k, "dof": s.dof,
+                    "end_error": end_error(g.result.total, coverage)}
+            if wanted and g.pooled and g.units_u is not None:
+                row["needed"] = units_needed(g.budget, g.pooled, g.units_u, wanted[g.quantity],
+                                             coverage)
         rows.append(row)
     return table("surfaces", rows)
 

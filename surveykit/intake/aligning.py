@@ -7,7 +7,8 @@ from dataclasses import dataclass
 from typing import TypeVar
 
 from surveykit.core import InputError
-from surveykit.intake.clocks import Clock, check_days, set_clock
+from surveykit.intake.clocks import Clock, check_days, set_clocks
+from surveykit.intake.edges import look
 from surveykit.intake.fieldsheet import Sheet, read_sheet
 from surveykit.intake.loggers import expand_files, read_logger
 from surveykit.intake.params import Parameters
@@ -67,22 +68,20 @@ def align(parameters: Parameters, logs: dict[str, Records], faults: list[str],
     InputError
         With all faults.
     """
-    campaign = parameters.campaign
-    records: dict[str, Records] = {}
-    clocks: list[Clock] = []
-    for name, log in logs.items():
-        records[name], clock = set_clock(log, campaign.loggers[name], campaign.settings)
-        clocks.append(clock)
     sheet = None
     if "field_sheet" not in doubtful:
         sheet = gather(faults, lambda: _sheet(parameters, doubtful))
-    if not doubtful & {"date", "site"}:
+    placed = not doubtful & {"date", "site"}
+    records, clocks = set_clocks(logs, parameters, sheet, placed=placed)
+    if placed:
         gather(faults, lambda: check_days(records, parameters))
     if faults or sheet is None:
         raise InputError(*dict.fromkeys(faults))
-    passes = match_passes(sheet, parameters, {c.logger: c for c in clocks})
+    known = {clock.logger: clock for clock in clocks}
+    passes = match_passes(sheet, parameters, known)
     check_coverage(passes, records, sheet.path)
-    return Ingested(records, tuple(clocks), sheet, passes)
+    passes = look(passes, records, sheet.entries, parameters, known, sheet.path)
+    return Ingested(records, clocks, sheet, passes)
 
 
 def _sheet(parameters: Parameters, doubtful: frozenset[str]) -> Sheet:

@@ -53,6 +53,9 @@ def read_rows(data: bytes, where: str) -> Rows:
                           + (f"put cells that hold {mark!r} in quotes" if mark else
                              "give each column its name in the first row"))
         elif any(cells):
+            if mark and len(cells) < len(header):
+                notices.append(f"{where} row {number}: has {len(cells)} cells where the first row "
+                               f"has {len(header)}; was the file cut off? the rest counts as empty")
             named = dict(zip(header, cells, strict=False))
             rows.append((number, {name: named.get(name, "") for name in COLUMNS}))
     return Rows(tuple(rows), tuple(notices), tuple(faults))

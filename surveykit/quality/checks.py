@@ -1,15 +1,17 @@
-"""The checks: arrays in, one boolean a record out; a reading is never changed, only judged."""
+"""The checks of one channel: arrays in, one boolean a record out; a reading is never changed."""
 
 from __future__ import annotations
 
 import numpy as np
+from scipy.ndimage import median_filter
 
-from surveykit.accounting import NS, Mask
+from surveykit.accounting import NS
 from surveykit.core import BoolArray, FloatArray, IntArray
 from surveykit.physics.shortwave import shortwave_limits
 from surveykit.physics.sun import Sun
 
-MOST_REPEATS = 0.98
+TO_SD = 1.4826  # of the median absolute deviation of normal readings
+PILE = 5  # times as many readings at a channel's end as at the next value show a limit
 
 
 def out_of_range(values: FloatArray, low: float, high: float) -> BoolArray:
@@ -29,62 +31,131 @@ def physically_impossible(values: FloatArray, quantity: str, sun: Sun) -> BoolAr
     Long, C. N. and Shi, Y. (2008), The Open Atmospheric Science Journal 2, 23-37 (down);
     BSRN limits for the upward flux (from memory).
     """
-    if quantity not in ("shortwave_down", "shortwave_up"):
-        return np.zeros(values.shape, dtype=bool)
     limits = shortwave_limits(sun.cos_zenith, sun.extraterrestrial_w_m2)
-    high = limits.down_possible if quantity == "shortwave_down" else limits.up_possible
+    return _above(values, quantity, limits.down_possible, limits.up_possible)
+
+
+def extremely_rare(values: FloatArray, quantity: str, sun: Sun) -> BoolArray:
+    """Shortwave irradiance [W m-2] above the extremely rare limits; others never.
+
+    References
+    ----------
+    As `physically_impossible`; made for one-minute means.
+    """
+    limits = shortwave_limits(sun.cos_zenith, sun.extraterrestrial_w_m2)
+    return _above(values, quantity, limits.down_rare, limits.up_rare)
+
+
+def end_of_range(values: FloatArray, low: float, high: float, share: float, *,
+                 lower: bool) -> BoolArray:
+    """Readings in the last `share` of [low, high] at its top, and with `lower` at its bottom."""
+    reach = share * (high - low)
     with np.errstate(invalid="ignore"):
-        return values > high
+        near = (values > high - reach) & (values <= high)
+        return near | ((values < low + reach) & (values >= low)) if lower else near
 
 
-def stuck(values: FloatArray, time_ns: IntArray, *, min_s: float,
-          false_alarms: float) -> BoolArray:
+def saturated(values: FloatArray, repeats: int, *, lower: bool) -> BoolArray:
+    """Readings piled up at the channel's own largest value, and with `lower` at its smallest.
+
+    A head or logger at its limit gives one value again and again; a living channel reaches its
+    largest value about as often as the value next to it, at most 2.4 times as often (the top of a
+    parabola, in whole steps). A pile is at least `repeats` readings and more than five times as
+    many as at the next value. A channel of one value is stuck, not saturated.
+    """
+    out = np.zeros(values.shape, dtype=bool)
+    known = values[np.isfinite(values)]
+    for sign in (1, -1) if lower else (1,):
+        if known.size == 0:
+            break
+        end = (sign * known).max() * sign
+        rest = known[known != end]
+        pile = known.size - rest.size
+        if pile >= repeats and rest.size and pile > PILE * np.count_nonzero(
+                rest == (sign * rest).max() * sign):
+            out |= values == end
+    return out
+
+
+def stuck(values: FloatArray, time_ns: IntArray, *, min_s: float, false_alarms: float,
+          max_repeat: float) -> BoolArray:
     """Runs of identical readings longer than the channel's own scatter makes credible.
 
     With p the share of steps that repeat the reading, a run of m repeats is expected
     n * p**m times by chance; runs are marked from the m that makes this `false_alarms`, and
     never under `min_s` [s]. So a coarse but living channel (whole numbers once a minute) passes.
-    p is held at `MOST_REPEATS` or below: what repeats more often than that is stuck, not coarse.
+    p is held at `max_repeat` or below: what repeats more often than that is stuck, not coarse.
     Times must ascend.
     """
     out = np.zeros(values.shape, dtype=bool)
     if values.size < 3:
         return out
     same = values[1:] == values[:-1]
-    p = float(np.clip(same.mean(), 1e-3, MOST_REPEATS))
+    p = float(np.clip(same.mean(), 1e-3, max_repeat))
     repeats = max(2, int(np.ceil(np.log(false_alarms / values.size) / np.log(p))))
-    edges = np.flatnonzero(np.diff(np.concatenate(([0], same.view(np.int8), [0]))))
-    for start, stop in edges.reshape(-1, 2):
-        long_enough = (time_ns[stop] - time_ns[start]) >= min_s * NS
-        if stop - start >= repeats and long_enough:
-            out[start:stop + 1] = True
+    edges = np.flatnonzero(np.diff(np.concatenate(([0], same.view(np.int8), [0])))).reshape(-1, 2)
+    start, stop = edges[edges[:, 1] - edges[:, 0] >= repeats].T
+    for first, last in zip(start, stop, strict=True):
+        if time_ns[last] - time_ns[first] >= min_s * NS:
+            out[first:last + 1] = True
     return out
 
 
-def inside(time_ns: IntArray, spans: list[tuple[int, int]]) -> BoolArray:
-    """Return which times lie within any of the (start, stop) spans; stop is outside."""
-    out = np.zeros(time_ns.shape, dtype=bool)
-    for start, stop in spans:
-        out |= (time_ns >= start) & (time_ns < stop)
-    return out
+def noise_sd(values: FloatArray, resolution: float) -> float:
+    """Return the standard deviation of a channel's noise, from second differences.
 
-
-def nearest(time_ns: IntArray, other_ns: IntArray, within_s: float) -> IntArray:
-    """Return for each time the index of the nearest other time, or -1 if none is `within_s`.
-
-    The other times must ascend: leave out records without a time.
+    Slow change drops out of them; the median keeps spikes and steps from counting. Never below
+    that of rounding to `resolution` (NaN: none known).
     """
-    if other_ns.size == 0:
-        return np.full(time_ns.shape, -1, dtype=np.int64)
-    right = np.clip(np.searchsorted(other_ns, time_ns), 1, max(other_ns.size - 1, 1))
-    right = np.minimum(right, other_ns.size - 1)
-    left = np.maximum(right - 1, 0)
-    pick = np.where(np.abs(other_ns[left] - time_ns) <= np.abs(other_ns[right] - time_ns),
-                    left, right)
-    return np.where(np.abs(other_ns[pick] - time_ns) <= within_s * NS, pick, -1)
+    rounding = resolution / np.sqrt(12) if np.isfinite(resolution) else 0.0
+    if values.size < 3:
+        return float(rounding)
+    second = np.diff(values, n=2)
+    return float(max(TO_SD * np.median(np.abs(second)) / np.sqrt(6), rounding))
 
 
-def primary(mask: Mask) -> IntArray:
-    """Return the index of the first reason set in each mask; -1 where none is."""
-    lowest = mask & (~mask + np.uint32(1))
-    return np.where(mask == 0, -1, np.log2(np.maximum(lowest, 1)).astype(np.int64))
+def spikes(values: FloatArray, *, window: int, mad: float, noise: float,
+           resolution: float) -> BoolArray:
+    """Readings far off the median of the `window` records around them; no NaN among the values.
+
+    Far is more than `mad` scaled median absolute deviations of these records, and more than
+    `noise` standard deviations of the channel's own noise.
+
+    References
+    ----------
+    Hampel, F. R. (1974), J. Am. Stat. Assoc. 69, 383-393 (from memory); its scale 1.4826.
+    """
+    out = np.zeros(values.shape, dtype=bool)
+    if values.size < window:
+        return out
+    off = np.abs(values - median_filter(values, size=window, mode="nearest"))
+    rows = np.flatnonzero(off > noise * noise_sd(values, resolution))
+    if rows.size:
+        half = window // 2
+        first = np.clip(rows - half, 0, values.size - window)
+        around = values[first[:, None] + np.arange(window)]
+        middle = np.median(around, axis=1)
+        spread = TO_SD * np.median(np.abs(around - middle[:, None]), axis=1)
+        out[rows] = off[rows] > mad * spread
+    return out
+
+
+def steps(time_ns: IntArray, values: FloatArray, max_per_s: float, interval_s: float) -> BoolArray:
+    """Readings that differ by more than `max_per_s` [unit s-1] from the one about 1 s before.
+
+    The one before is as many records back as make a second, at least one; so noise at many
+    records a second does not look like a step.
+    """
+    out = np.zeros(values.shape, dtype=bool)
+    back = max(1, round(1 / interval_s)) if interval_s > 0 else 1
+    if values.size > back:
+        lapse_s = np.maximum((time_ns[back:] - time_ns[:-back]) / NS, 1e-9)
+        out[back:] = np.abs(values[back:] - values[:-back]) > max_per_s * np.maximum(lapse_s, 1.0)
+    return out
+
+
+def _above(values: FloatArray, quantity: str, down: FloatArray, up: FloatArray) -> BoolArray:
+    if quantity not in ("shortwave_down", "shortwave_up"):
+        return np.zeros(values.shape, dtype=bool)
+    with np.errstate(invalid="ignore"):
+        return values > (down if quantity == "shortwave_down" else up)

@@ -96,6 +96,8 @@ def _faulty(mask: Mask) -> tuple[BoolArray, BoolArray]:
 def _refusal(study: Study, this: Pass, window: IntArray, mask: Mask) -> str:
     """Return why the pass cannot be evaluated, or an empty text."""
     settings = study.parameters.campaign.settings
+    if this.refusal:
+        return this.refusal
     if window.size == 0:
         return "no record of its logger falls into the pass"
     left_s = max((this.to_ns - this.from_ns) / NS, 0.0)

@@ -27,7 +27,7 @@ def correction_plots(corrections: pd.DataFrame, labels: Labels = None) -> tuple[
 
 @styled
 def _correction_plot(corrections: pd.DataFrame, quantity: str, labels: Labels) -> Drawing:
-    """Draw by surface how far each correction step takes the mean of its passes from the raw one."""
+    """Draw by surface how far each correction step takes the mean of its passes from raw."""
     families = [(kind, block.dropna(subset=["value"])) for (name, kind), block
                 in w.families(corrections) if name == quantity]
     families = [(kind, block) for kind, block in families if len(block)]
@@ -39,7 +39,7 @@ def _correction_plot(corrections: pd.DataFrame, quantity: str, labels: Labels) -
     figure, axes = panels(len(families), [0.7 + 0.34 * b["surface"].nunique() for _, b in families])
     findings, drawn = [], set()
     for axis, (kind, block) in zip(axes, families, strict=True):
-        means = block.groupby(["surface", "step"], sort=False)["value"].mean().unstack(sort=False)
+        means = block.pivot_table(index="surface", columns="step", values="value", sort=False)
         rows = means.iloc[::-1]
         _rows(axis, [w.label(name, labels) for name in rows.index])
         axis.axvline(0, color=MUTED, linewidth=0.9)
@@ -144,7 +144,8 @@ def _series_plot(series: pd.DataFrame, quantity: str, labels: Labels) -> Drawing
             axis.plot(x, rows["value"], marker=marker, color=colour, linewidth=0.8, markersize=5,
                       label=shorten(w.label(name, labels), 26) if axis is axes[0] else None)
             axis.vlines(x, rows["lower"], rows["upper"], color=colour, linewidth=1.3)
-            told.append(f"{w.quantity_text(quantity, kind)} of {w.label(name, labels)} " + ", ".join(
+            what = f"{w.quantity_text(quantity, kind)} of {w.label(name, labels)} "
+            told.append(what + ", ".join(
                 f"{w.interval(r['value'], r['lower'], r['upper'], w.places(quantity))} "
                 f"on {w.date_text(r['date'])}" for r in rows.to_dict("records")))
         axis.set_title(w.quantity_text(quantity, kind))

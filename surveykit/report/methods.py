@@ -28,8 +28,8 @@ METHODS: dict[tuple[str, str], str] = {
     ("temperature", "stand-off"):
         "Temperature, stand-off: the band radiance of the reading, less what the surface reflects "
         "of sky and surroundings, over its emissivity. The sky's radiance in 8 to 14 µm follows "
-        "Idso (1981) in the hemispheric form of Kimball, Idso and Aase (1982), from air temperature "
-        "and humidity. Radiances are integrals of Planck's law over the stated band.",
+        "Idso (1981) in the hemispheric form of Kimball, Idso and Aase (1982), from air "
+        "temperature and humidity. Radiances are integrals of Planck's law over the stated band.",
     ("temperature", "longwave"):
         "Temperature, longwave: the Stefan and Boltzmann law with the broadband emissivity, less "
         "the reflected part of the downward longwave irradiance.",

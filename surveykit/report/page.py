@@ -57,13 +57,24 @@ def build_page(notebooks: Sequence[NotebookNode], tables: Mapping[str, pd.DataFr
         If a notebook holds a failed cell, or something on the page would leave it (a script, a
         remote image or link).
     """
+    return render("page.html.j2", facts, notebooks, title_block=_title_block(tables, facts),
+                  summary=_summary(tables, facts), appendix=_appendix(tables, facts))
+
+
+def render(template: str, facts: Mapping[str, Any], notebooks: Sequence[NotebookNode],
+           **fields: Any) -> str:
+    """Return a page of the house style: executed notebooks and finished fields in a template.
+
+    Raises
+    ------
+    ValueError
+        As `build_page`.
+    """
     parts = [_part(notebook, place) for place, notebook in enumerate(notebooks, start=1)]
     environment = Environment(loader=FileSystemLoader(TEMPLATES), autoescape=True,
                               undefined=StrictUndefined, trim_blocks=True, lstrip_blocks=True)
-    page = environment.get_template("page.html.j2").render(
-        facts=facts, css=Html((TEMPLATES / "page.css").read_text("utf-8")), parts=parts,
-        title_block=_title_block(tables, facts), summary=_summary(tables, facts),
-        appendix=_appendix(tables, facts))
+    page: str = environment.get_template(template).render(
+        facts=facts, css=Html((TEMPLATES / "page.css").read_text("utf-8")), parts=parts, **fields)
     watch = _Watch()
     watch.feed(page)
     if watch.found:

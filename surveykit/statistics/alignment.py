@@ -109,12 +109,10 @@ def find_covers(time_s: FloatArray, values: FloatArray, width_s: float, *, dark:
     while clear.max() >= enough and len(found) < 20:
         k = int(np.argmax(clear))
         middle = time_s[k] + width_s / 2
-        edges = [_crossing(time_s, values, middle, under[k] + step / 2, way, width_s)
-                 for step, way in ((before[k], -1), (after[k], 1))]
-        if edges[0] is not None and edges[1] is not None and all(
-                width <= MAX_GAP * step_s for _, width in edges if width):
-            found.append(Cover(edges[0][0], edges[1][0], edges[0][1], edges[1][1],
-                               float(clear[k] / noise)))
+        start, stop = (_crossing(time_s, values, middle, float(under[k] + step / 2), way, width_s)
+                       for step, way in ((before[k], -1), (after[k], 1)))
+        if start is not None and stop is not None and max(start[1], stop[1]) <= MAX_GAP * step_s:
+            found.append(Cover(start[0], stop[0], start[1], stop[1], float(clear[k] / noise)))
         clear[np.abs(time_s - time_s[k]) < width_s] = 0.0
     return found
 

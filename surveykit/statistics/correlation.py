@@ -12,7 +12,8 @@ from surveykit.core import FloatArray
 MAX_GAP = 2.5  # steps: what lies further apart is not joined
 CLIP = 10.0  # robust standard deviations of a difference; beyond, a cap or a spike
 ASIDE = 3  # samples on either side of a peak that belong to it
-FLAT = 1e-12
+FLAT = 1e-9
+LEAST_OVERLAP = 0.5  # of the shorter signal: a lag with less is not looked at
 
 
 class Lag(NamedTuple):
@@ -53,8 +54,8 @@ def correlate(time_s: FloatArray, values: FloatArray, other_time_s: FloatArray,
     """Return the correlation of two differenced signals over lags of `centre_s` +- `search_s`.
 
     Both are put on one grid, differenced, freed of jumps beyond 10 robust standard deviations
-    (caps, spikes), and correlated; the lag is refined by a parabola through the peak. Correlations
-    are relative to the whole records' energy, so that a lag with little overlap cannot win.
+    (caps, spikes), and correlated; the lag is refined by a parabola through the peak. Lags at which
+    less than half of the shorter record overlaps are left out.
 
     Parameters
     ----------
@@ -82,7 +83,7 @@ def correlate(time_s: FloatArray, values: FloatArray, other_time_s: FloatArray,
     if found is None:
         return nothing
     r, place = found
-    lags = step_s * np.arange(-reach, reach + 1)
+    lags = step_s * np.arange(-reach, reach + 1, dtype=np.float64)
     away = np.abs(np.arange(r.size) - place) > ASIDE
     both = np.flatnonzero((one != 0) | (two != 0))
     middle = int((both[0] + both[-1]) / 2)
@@ -90,7 +91,7 @@ def correlate(time_s: FloatArray, values: FloatArray, other_time_s: FloatArray,
               for part in (slice(None, middle), slice(middle, None))]
     at = tuple(float(lags[half[1]]) + centre_s if half else np.nan for half in halves)
     fine = float(lags[place]) + step_s * _parabola(r, place)
-    return Lag(lags + centre_s, r, fine + centre_s, float(r[place]),
+    return Lag(np.asarray(lags + centre_s, np.float64), r, fine + centre_s, float(r[place]),
                float(max(r[away].max(initial=0.0), 0.0)), (at[0], at[1]), step_s)
 
 
@@ -116,15 +117,26 @@ def _changes(grid: FloatArray, time_s: FloatArray, values: FloatArray,
 
 
 def _peak(one: FloatArray, two: FloatArray, reach: int) -> tuple[FloatArray, int] | None:
-    energy = float(np.sqrt((one @ one) * (two @ two)))
-    if energy <= FLAT:
+    """Return the correlation over lags, each relative to the energy where both overlap."""
+    held, other = (one != 0).astype(np.float64), (two != 0).astype(np.float64)
+    product, energy, facing, overlap = (
+        _lags(a, b, reach) for a, b in ((one, two), (one**2, other), (held, two**2),
+                                        (held, other)))
+    enough = overlap > LEAST_OVERLAP * min(held.sum(), other.sum())
+    known = enough & (energy > FLAT) & (facing > FLAT)
+    if not known.any():
         return None
-    full = _correlate(one, two, mode="full", method="fft") / energy
-    r = np.zeros(2 * reach + 1)
-    zero = two.size - 1
-    low, high = max(zero - reach, 0), min(zero + reach + 1, full.size)
-    r[low - zero + reach:high - zero + reach] = full[low:high]
+    r = np.zeros(product.size)
+    r[known] = product[known] / np.sqrt(energy[known] * facing[known])
     return r, int(np.argmax(r))
+
+
+def _lags(one: FloatArray, two: FloatArray, reach: int) -> FloatArray:
+    full = _correlate(one, two, mode="full", method="fft")
+    out, zero = np.zeros(2 * reach + 1), two.size - 1
+    low, high = max(zero - reach, 0), min(zero + reach + 1, full.size)
+    out[low - zero + reach:high - zero + reach] = full[low:high]
+    return out
 
 
 def _parabola(r: FloatArray, place: int) -> float:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -14,6 +15,7 @@ from surveykit.core import FloatArray
 # A within-unit u of 0 is taken as this share of the largest u or spread at hand, so that weights
 # stay finite; the pooled value then follows the units that claim to be exact.
 _SMALLEST_SHARE = 1e-6
+MANY = 10_000  # passes: more are no plan
 
 
 @dataclass(frozen=True)
@@ -86,7 +88,64 @@ def paule_mandel(values: ArrayLike, within_u: ArrayLike) -> float:
     return float(brentq(excess, 0.0, largest, xtol=largest * 1e-14, maxiter=500))
 
 
-def pool(values: ArrayLike, within_u: ArrayLike) -> Pooled:
+@dataclass(frozen=True)
+class Common:
+    """One scatter between units for several groups: tau^2, Hartung-Knapp scale q, summed dof."""
+
+    tau2: float
+    q: float
+    dof: int
+
+
+def common_scatter(some: Sequence[tuple[ArrayLike, ArrayLike]]) -> Common | None:
+    """Return one variance between units for several groups, each with a mean of its own.
+
+    Parameters
+    ----------
+    some : sequence of (values, within_u)
+        The units of each group, as for `pool`, all in one unit of measure.
+
+    Returns
+    -------
+    Common or None
+        tau^2 is the root of the sum over groups of w (y - mu_group)^2 = sum (k - 1); None where no
+        group has two units.
+
+    References
+    ----------
+    The equation of `paule_mandel` summed over groups, as the residual variance of a one-way
+    analysis of variance is: JCGM 100:2008, H.5.
+
+    Examples
+    --------
+    >>> common_scatter([([1.0, 2.0], [0.0, 0.0]), ([5.0, 8.0], [0.0, 0.0])])
+    Common(tau2=2.5, q=1.0, dof=2)
+    """
+    groups = [_units(values, u) for values, u in some if np.size(values) > 1]
+    dof = sum(y.size - 1 for y, _ in groups)
+    if not dof:
+        return None
+
+    def squares(tau2: float) -> float:
+        total = 0.0
+        for y, variance in groups:
+            weights = 1 / (variance + tau2)
+            total += float(weights @ (y - weights @ y / weights.sum()) ** 2)
+        return total
+
+    spread = sum(float(((y - y.mean()) ** 2).sum()) for y, _ in groups) / dof
+    if spread == 0:
+        return Common(0.0, 0.0, dof)
+    if squares(1e-12 * spread) <= dof:
+        return Common(0.0, squares(1e-12 * spread) / dof, dof)
+    largest = spread
+    if squares(largest) >= dof:
+        return Common(largest, 1.0, dof)
+    tau2 = brentq(lambda t: squares(t) - dof, 1e-12 * spread, largest, xtol=spread * 1e-14)
+    return Common(float(tau2), 1.0, dof)
+
+
+def pool(values: ArrayLike, within_u: ArrayLike, common: Common | None = None) -> Pooled:
     """Pool passes to a patch, or patches to a surface.
 
     Paule-Mandel weights with the modified Hartung-Knapp uncertainty: u^2 = max(1, q) / sum w,
@@ -99,11 +158,13 @@ def pool(values: ArrayLike, within_u: ArrayLike) -> Pooled:
         One value a pass (or patch), any unit.
     within_u : array_like, shape (k,)
         Standard uncertainty of each within its pass, in the same unit.
+    common : Common, optional
+        Scatter between units borrowed from several groups; not given, the units' own.
 
     Returns
     -------
     Pooled
-        With one unit: its value, u NaN, dof 0.
+        With one unit and no common scatter: its value, u NaN, dof 0.
 
     Raises
     ------
@@ -124,6 +185,11 @@ def pool(values: ArrayLike, within_u: ArrayLike) -> Pooled:
     (10.017, 0.1732, 2, 0.0)
     """
     y, variance = _units(values, within_u)
+    if common is not None:
+        weights = 1 / np.maximum(variance + common.tau2, np.finfo(np.float64).tiny)
+        total = float(weights.sum())
+        return Pooled(float(weights @ y / total), float(np.sqrt(max(1.0, common.q) / total)),
+                      common.dof, float(np.sqrt(common.tau2)), weights / total, common.q)
     if y.size == 1:
         return Pooled(float(y[0]), np.nan, 0, np.nan, np.ones(1), np.nan)
     if not variance.any():  # all equal, and all said to be exact
@@ -137,7 +203,8 @@ def pool(values: ArrayLike, within_u: ArrayLike) -> Pooled:
     return Pooled(value, u, y.size - 1, float(np.sqrt(tau2)), weights / total, q)
 
 
-def passes_needed(tau: float, within_u: float, half_width: float, coverage: float = 0.95) -> int:
+def passes_needed(tau: float, within_u: float, half_width: float, coverage: float = 0.95, *,
+                  shared_u: float = 0.0) -> float:
     """Return the least number of passes whose interval is as narrow as wished.
 
     Parameters
@@ -150,11 +217,14 @@ def passes_needed(tau: float, within_u: float, half_width: float, coverage: floa
         Half-width of the interval wished for, same unit.
     coverage : float, optional
         Coverage probability of the interval [1].
+    shared_u : float, optional
+        What all passes share and more of them do not reduce, same unit.
 
     Returns
     -------
-    int
-        The least k >= 2 with t(k - 1) sqrt((tau^2 + within_u^2) / k) <= half_width.
+    float
+        The least whole k >= 2 with t sqrt(shared_u^2 + (tau^2 + within_u^2) / k) <= half_width,
+        t with the effective degrees of freedom of k - 1 passes; infinity where none does.
 
     Raises
     ------
@@ -163,20 +233,35 @@ def passes_needed(tau: float, within_u: float, half_width: float, coverage: floa
 
     References
     ----------
-    Student's interval for a mean: JCGM 100:2008, annex G.3.
+    Student's interval for a mean and effective degrees of freedom: JCGM 100:2008, G.3 and G.4.
 
     Examples
     --------
     >>> passes_needed(0.5, 0.3, 1.0)
     4
+    >>> passes_needed(0.5, 0.3, 1.0, shared_u=0.6)
+    inf
     """
-    if not (half_width > 0 and tau >= 0 and within_u >= 0):
-        raise ValueError(f"passes_needed needs half_width > 0, tau >= 0 and within_u >= 0, "
-                         f"got {half_width!r}, {tau!r}, {within_u!r}")
-    upper, spread = (1 + coverage) / 2, float(np.hypot(tau, within_u))
+    if not (half_width > 0 and tau >= 0 and within_u >= 0 and shared_u >= 0):
+        raise ValueError(f"passes_needed needs half_width > 0, tau, within_u and shared_u >= 0, "
+                         f"got {half_width!r}, {tau!r}, {within_u!r}, {shared_u!r}")
+    upper, spread2 = (1 + coverage) / 2, tau**2 + within_u**2
     # The normal quantile is below every t quantile: no smaller number can do.
-    passes = max(2, int((ndtri(upper) * spread / half_width) ** 2))
-    while stdtrit(passes - 1, upper) * spread / np.sqrt(passes) > half_width:
+    least = float(ndtri(upper)) ** 2
+    room = half_width**2 / least - shared_u**2
+    if room <= 0:
+        return np.inf
+
+    def wide(passes: int) -> bool:
+        own2 = spread2 / passes
+        both2 = shared_u**2 + own2
+        dof = (passes - 1) * (both2 / own2) ** 2 if own2 > 0 else np.inf
+        return bool(stdtrit(dof, upper) * np.sqrt(both2) > half_width)
+
+    passes = max(2, int(spread2 / room))
+    if passes > MANY:
+        return np.inf
+    while wide(passes):
         passes += 1
     return passes
 

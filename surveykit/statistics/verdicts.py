@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy.special import stdtrit
+from scipy.special import stdtr, stdtrit
 
 from surveykit.core import FloatArray
 
@@ -12,6 +12,7 @@ HIGHER = "higher"
 LOWER = "lower"
 HIGHER_SMALL = "higher, small"
 LOWER_SMALL = "lower, small"
+EQUIVALENT = "equivalent"
 NO_DIFFERENCE_SHOWN = "no difference shown"
 NOT_COMPARABLE = "not comparable"
 NOT_EVALUATED = "not evaluated"
@@ -88,7 +89,42 @@ def could_have_missed(u: float, dof: float, *, coverage: float = 0.95,
     return float((stdtrit(dof, (1 + coverage) / 2) + stdtrit(dof, power)) * u)
 
 
-def verdict(value: float, p_adjusted: float, relevant: float, *, coverage: float = 0.95) -> str:
+def equivalence_p(value: float, u: float, dof: float, relevant: float) -> float:
+    """Return the p value of two one-sided tests that a difference is smaller than what matters.
+
+    Below .05 exactly where the 90 % interval of Student's t lies within +-`relevant`.
+
+    Parameters
+    ----------
+    value, u : float
+        The difference and its standard uncertainty, same unit.
+    dof : float
+        Its effective degrees of freedom, above 0; may be infinite.
+    relevant : float
+        The smallest difference that matters, same unit, above 0.
+
+    Returns
+    -------
+    float
+        The larger of the two one-sided p values [1]; NaN where value, u or dof is NaN.
+
+    References
+    ----------
+    Schuirmann, Journal of Pharmacokinetics and Biopharmaceutics 15 (1987) 657-680 (from memory).
+
+    Examples
+    --------
+    >>> round(equivalence_p(0.3, 0.35, 6, 1.0), 3)
+    0.046
+    """
+    inside = relevant - abs(value)
+    if u == 0:
+        return 0.0 if inside > 0 else 1.0
+    return float(stdtr(dof, -inside / u))
+
+
+def verdict(value: float, p_adjusted: float, relevant: float, *, coverage: float = 0.95,
+            p_equivalent: float = 1.0) -> str:
     """Return the word for a difference that was judged.
 
     Parameters
@@ -101,13 +137,16 @@ def verdict(value: float, p_adjusted: float, relevant: float, *, coverage: float
         The smallest difference that matters to the user, same unit as value, 0 or more.
     coverage : float, optional
         A difference is shown where p_adjusted is below 1 - coverage [1].
+    p_equivalent : float, optional
+        p value [1] of `equivalence_p`, adjusted likewise; not given, nothing is equivalent.
 
     Returns
     -------
     str
         higher or lower where it is shown and at least as large as `relevant`; higher, small or
-        lower, small where it is shown and smaller; no difference shown; not evaluated where value
-        or p_adjusted is NaN.
+        lower, small where it is shown and smaller; equivalent where none is shown and
+        p_equivalent is below 1 - coverage; no difference shown; not evaluated where value or
+        p_adjusted is NaN.
 
     Raises
     ------
@@ -124,7 +163,7 @@ def verdict(value: float, p_adjusted: float, relevant: float, *, coverage: float
     if np.isnan(value) or np.isnan(p_adjusted):
         return NOT_EVALUATED
     if not p_adjusted < 1 - coverage:
-        return NO_DIFFERENCE_SHOWN
+        return EQUIVALENT if p_equivalent < 1 - coverage else NO_DIFFERENCE_SHOWN
     if abs(value) >= relevant:
         return HIGHER if value > 0 else LOWER
     return HIGHER_SMALL if value > 0 else LOWER_SMALL

@@ -85,8 +85,7 @@ class Clock:
     refusal: str = ""
 
     def piece(self, time_ns: float) -> Piece | None:
-        """Return the stretch that holds a time of the campaign, or the nearest; None if declared.
-        """
+        """Return the stretch that holds a time of the campaign, or the nearest; None: declared."""
         return min(self.pieces, default=None,
                    key=lambda p: max(p.first_ns - time_ns, time_ns - p.last_ns, 0))
 

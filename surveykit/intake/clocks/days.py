@@ -12,6 +12,7 @@ from surveykit.core import InputError
 from surveykit.intake.params import Parameters
 from surveykit.intake.records import Records
 
+
 def check_days(records: Mapping[str, Records], parameters: Parameters) -> None:
     """Refuse loggers none of whose records falls on the campaign's date at the site.
 

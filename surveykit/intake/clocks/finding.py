@@ -8,13 +8,13 @@ from math import hypot
 
 import numpy as np
 
-from surveykit.core import IntArray
+from surveykit.core import FloatArray, IntArray
 from surveykit.intake.clocks.clock import NS, REFUSED, Clock, Event, Piece
 from surveykit.intake.clocks.covers import Fit, Seen, fit, see, too_far, written_u_s
 from surveykit.intake.clocks.signals import in_common, readings
 from surveykit.intake.clocks.stretches import stretches
 from surveykit.intake.params import Channel, Parameters
-from surveykit.intake.params import Clock as Stated
+from surveykit.intake.params.timekeeping import Clock as Stated
 from surveykit.intake.records import NO_TIME_NS, Records, in_order
 from surveykit.intake.sheet_words import Entry
 from surveykit.statistics.alignment import Line, edge_u_s
@@ -126,7 +126,8 @@ class _Search:
         edges = self._edges(mine)
         seen = len(edges[0]) // 2
         if seen >= limits.min_events:
-            fitted = fit(*edges[1:], limits, two_loggers=self.reference is not None)
+            fitted = fit(edges[1], edges[2], edges[3], limits,
+                         two_loggers=self.reference is not None)
             return _Found(fitted.line, (float(edges[1].min()), float(edges[1].max())),
                           fitted.refusal, fitted, tuple(edges[0]),
                           against_sheet=self.reference is None)
@@ -142,7 +143,7 @@ class _Search:
                     f"{self.reference.clock.logger}")
         return f"{seen} of {len(self.rows)} covers show in its records, and {need} are needed"
 
-    def _edges(self, mine: Seen) -> tuple[list[int], IntArray, IntArray, IntArray]:
+    def _edges(self, mine: Seen) -> tuple[list[int], FloatArray, FloatArray, FloatArray]:
         """Return numbers, times [s], offsets [s] and u [s] of the edges, two a cover."""
         theirs = self._references()
         numbers, out = [], []

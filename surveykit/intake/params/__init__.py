@@ -18,6 +18,7 @@ from surveykit.intake.params.paths import find_root, inside
 from surveykit.intake.params.schema import campaign_schema, instruments_schema, write_schemas
 from surveykit.intake.params.sections import LoggerUse
 from surveykit.intake.params.settings import SettingRow, Settings
+from surveykit.intake.params.timekeeping import Clock, Watch
 
 __all__ = [
     "Amount", "Calibration", "Campaign", "Channel", "Clock", "Instrument", "LoggerUse",

@@ -18,8 +18,8 @@ from surveykit.intake.params.base import (
     key,
     number_words,
 )
+from surveykit.intake.params.quality import Pair
 from surveykit.intake.params.quantities import MAIN, PHYSICAL_UNITS, RAW_UNITS, Quantity, Unit
-from surveykit.intake.params.settings import Pair
 
 
 class Calibration(Strict):

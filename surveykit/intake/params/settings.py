@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
-from typing import Annotated, Any, TypedDict
+from typing import Any, TypedDict
 
-from pydantic import BaseModel, Field
+from pydantic import BaseModel
 
 from surveykit.intake.params.base import Fault, Strict, key
 from surveykit.intake.params.defaults import (
@@ -16,72 +16,10 @@ from surveykit.intake.params.defaults import (
     rising,
     setting,
 )
+from surveykit.intake.params.quality import Pair as Pair
+from surveykit.intake.params.quality import QualitySettings
 
 GUM = "JCGM 100:2008 (GUM)"
-BSRN = "BSRN recommended limits, Long & Shi 2008"
-
-Pair = Annotated[tuple[float, float], Field(strict=False)]
-
-
-class Ranges(Strict):
-    """Readings outside [low, high] are excluded; SI units."""
-
-    brightness_temperature: Pair = setting((233.15, 373.15), "K", "Infrared readings.")
-    housing_temperature: Pair = setting((263.15, 333.15), "K", "Housing temperature.")
-    shortwave_down: Pair = setting((-20.0, 2200.0), "W m-2", "Downwelling shortwave.")
-    shortwave_up: Pair = setting((-20.0, 1800.0), "W m-2", "Upwelling shortwave.")
-    longwave_down: Pair = setting((40.0, 700.0), "W m-2", "Downwelling longwave.", MEMORY, BSRN)
-    longwave_up: Pair = setting((40.0, 900.0), "W m-2", "Upwelling longwave.", MEMORY, BSRN)
-    red_down: Pair = setting((-20.0, 2200.0), "W m-2", "Downwelling red.")
-    red_up: Pair = setting((-20.0, 2200.0), "W m-2", "Upwelling red.")
-    nir_down: Pair = setting((-20.0, 2200.0), "W m-2", "Downwelling near-infrared.")
-    nir_up: Pair = setting((-20.0, 2200.0), "W m-2", "Upwelling near-infrared.")
-    air_temperature: Pair = setting((223.15, 333.15), "K", "Air temperature.")
-    relative_humidity: Pair = setting((0.0, 1.05), "1", "Relative humidity.")
-    wind_speed: Pair = setting((0.0, 75.0), "m s-1", "Wind speed.")
-    air_pressure: Pair = setting((30000.0, 110000.0), "Pa", "Air pressure.")
-
-    def faults(self) -> list[Fault]:
-        """A range needs low below high."""
-        return [((name,), f"got {list(pair)}; write [low, high], two numbers, low below high")
-                for name, pair in self if not pair[0] < pair[1]]
-
-
-class QualitySettings(Strict):
-    """Checks of the records."""
-
-    ranges: Ranges = key("Plausible range of each quantity, SI units.", default_factory=Ranges,
-                         write="keys that are quantities, each with [low, high]")
-    rare_limit_warning: bool = setting(
-        True, "1", "Note irradiance beyond the extremely rare limit.", STANDARD, BSRN)
-    flatline_min_s: float = setting(
-        10.0, "s", "Shortest stretch of equal readings that can be a flatline.", gt=0)
-    flatline_false_alarms: float = setting(
-        0.001, "1", "Accepted probability of calling chance a flatline.", gt=0, lt=1)
-    gap_intervals: float = setting(
-        2.5, "1", "Distance of two records, in logging intervals, that makes a gap.", gt=1)
-    missing_flag: float = setting(
-        0.10, "1", "Share of missing records in a pass that is flagged.", ge=0, le=1)
-    excluded_flag: float = setting(
-        0.30, "1", "Share of excluded records in a pass that is flagged.", ge=0, le=1)
-    excluded_refuse: float = setting(
-        0.60, "1", "Share of excluded records above which a pass is refused.", ge=0, le=1)
-    clear_index_min: float = setting(
-        0.80, "1", "Irradiance over clear-sky irradiance from which the sky is clear.", ge=0)
-    overcast_index_max: float = setting(
-        0.55, "1", "Irradiance over clear-sky irradiance up to which it is overcast.", ge=0)
-    steady_max: float = setting(
-        0.05, "1", "Largest relative standard deviation of a steady irradiance.", gt=0)
-
-    def range_of(self, quantity: str) -> tuple[float, float]:
-        """Return the plausible range of a quantity, SI."""
-        low, high = getattr(self.ranges, quantity)
-        return float(low), float(high)
-
-    def faults(self) -> list[Fault]:
-        """Limits of the sky and of exclusion rise."""
-        return [*rising(self, "excluded_flag", "excluded_refuse"),
-                *rising(self, "overcast_index_max", "clear_index_min")]
 
 
 class ClockSettings(Strict):

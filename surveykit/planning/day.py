@@ -17,13 +17,14 @@ from surveykit.intake.params import Channel
 from surveykit.opening import Survey, open_file
 from surveykit.physics import footprint, walking
 from surveykit.physics.sun import sun_track
-from surveykit.planning_patches import Patch, patches
-from surveykit.statistics.pooling import paule_mandel, passes_needed
+from surveykit.planning.patches import Patch, patches
+from surveykit.statistics.pooling import passes_needed, paule_mandel
 
 MINUTE_NS = 60_000_000_000
 ASSUMED = {  # between passes, within a pass: where no earlier campaign tells them
     "temperature": (0.5, 0.3), "albedo": (0.01, 0.005), "ndvi": (0.01, 0.005)}
-CONTRAST, SPOT_SHARE, HOLD_BELOW_M_S = 0.5, 1 / 3, 0.3
+REACH_M = 1.0  # that a hand-held pole carries a head level
+CONTRAST, LEAST_CONTRAST, SPOT_SHARE, HOLD_BELOW_M_S = 0.5, 0.05, 1 / 3, 0.3
 HEADS = {"contact": "brightness_temperature", "stand-off": "brightness_temperature",
          "longwave": "longwave_up", "albedo": "shortwave_up", "ndvi": "red_up"}
 UNITS = {"temperature": "K", "albedo": "1", "ndvi": "1"}
@@ -48,8 +49,17 @@ def make(survey: Survey) -> Plan:
     course = sun_course(survey)
     windows = sun_windows(course, survey)
     zenith = float(course["zenith_deg"].min())
-    heights, curves = _heights(survey, found, zenith)
-    return Plan(found, source, course, windows, heights, curves, passes(survey))
+    before = earlier(survey)
+    heights, curves = _heights(survey, found, zenith, before)
+    return Plan(found, source, course, windows, heights, curves, passes(survey, before))
+
+
+def earlier(survey: Survey) -> tuple[str, pipeline.Tables]:
+    """Return name and tables of the last earlier campaign; "" and none where there is none."""
+    for path in survey.parameters.earlier[-1:]:
+        one = open_file(path)
+        return one.campaign.campaign, pipeline.surfaces(one).tables
+    return "", {}
 
 
 def sun_course(survey: Survey) -> pd.DataFrame:
@@ -67,7 +77,7 @@ def sun_windows(course: pd.DataFrame, survey: Survey) -> pd.DataFrame:
 
     Columns: limit_deg, meaning, first, last (site time, "" where never), hours.
     """
-    albedo, ndvi = survey.settings.albedo, survey.settings.ndvi
+    albedo, ndvi = survey.campaign.settings.albedo, survey.campaign.settings.ndvi
     limits = {albedo.zenith_standard_deg: "albedo, standard",
               albedo.zenith_qualified_deg: "albedo, qualified",
               albedo.zenith_max_deg: "albedo, the last usable"}
@@ -83,15 +93,17 @@ def sun_windows(course: pd.DataFrame, survey: Survey) -> pd.DataFrame:
     return pd.DataFrame(rows)
 
 
-def _heights(survey: Survey, found: tuple[Patch, ...],
-             zenith_deg: float) -> tuple[pd.DataFrame, pd.DataFrame]:
-    rows, curves = [], []
+def _heights(survey: Survey, found: tuple[Patch, ...], zenith_deg: float,
+             before: tuple[str, pipeline.Tables]) -> tuple[pd.DataFrame, pd.DataFrame]:
+    rows: list[dict[str, object]] = []
+    curves: list[pd.DataFrame] = []
     for patch in found:
         for head in patch.heads:
             channel = _channel(survey, HEADS[head])
             if channel is None or head == "contact":
                 continue
-            row, curve = _height(survey, patch, head, channel, zenith_deg)
+            contrast = _contrast(survey, patch, before[1].get("surfaces"))
+            row, curve = _height(survey, patch, head, channel, zenith_deg, contrast)
             rows.append({"surface": patch.surface, "patch": patch.name, "reading": head} | row)
             if curve is not None and all(c["across_m"].iloc[0] != patch.across_m for c in curves):
                 curves.append(curve.assign(patch=patch.name, across_m=patch.across_m))
@@ -99,25 +111,25 @@ def _heights(survey: Survey, found: tuple[Patch, ...],
     return frame, pd.concat(curves, ignore_index=True) if curves else pd.DataFrame()
 
 
-def _height(survey: Survey, patch: Patch, head: str, channel: Channel,
-            zenith_deg: float) -> tuple[dict[str, object], pd.DataFrame | None]:
+def _height(survey: Survey, patch: Patch, head: str, channel: Channel, zenith_deg: float,
+            contrast: float) -> tuple[dict[str, object], pd.DataFrame | None]:
     """Return the row of one patch and head, and for albedo the curve of errors over height."""
     across, half_angle = patch.across_m, channel.half_angle_deg or 90.0
     if not np.isfinite(across):
         return {"height_m": np.nan, "note": "the patch's size is not known"}, None
     curve, note = None, ""
     if head == "albedo":
-        settings = survey.settings.albedo
+        settings = survey.campaign.settings.albedo
         radius = channel.head_radius_m or settings.head_radius_assumed_cm / 100
         note = "" if channel.head_radius_m else "the head's radius is assumed"
-        optics = (radius, across / 2, _contrast(survey, patch), min(zenith_deg, 80.0),
-                  settings.beam_fraction)
+        optics = (radius, across / 2, contrast, min(zenith_deg, 80.0), settings.beam_fraction)
         height = footprint.best_height_m(*optics)
         curve = _curve(*optics)
     elif half_angle >= 89.9:
         height = across / 2 / walking.RADII_FOR_90
     else:
         height = walking.spot_height_m(across, half_angle, SPOT_SHARE)
+    height = min(height, REACH_M)
     wide = walking.footprint_m(height, half_angle)
     speed = walking.walking_speed_m_s(wide, channel.time_constant_s)
     return {"height_m": height, "footprint_m": wide,
@@ -128,17 +140,15 @@ def _height(survey: Survey, patch: Patch, head: str, channel: Channel,
                                             if speed < HOLD_BELOW_M_S else "")))}, curve
 
 
-def _contrast(survey: Survey, patch: Patch) -> float:
+def _contrast(survey: Survey, patch: Patch, known: pd.DataFrame | None) -> float:
     """Relative contrast of a patch with what surrounds it, from the last earlier campaign."""
     around = survey.campaign.surfaces[patch.surface].around
-    for earlier in reversed(survey.parameters.earlier):
-        table = pipeline.surfaces(open_file(earlier)).tables["surfaces"]
-        known = table[(table["surface"] == patch.surface) & (table["quantity"] == "albedo")]
-        value = known["value"].dropna()
-        if around is not None and len(value) and value.iloc[0] > 0:
-            own = float(value.iloc[0])
-            return max(abs(around.amount.value - own) / own, 0.05)
-    return CONTRAST
+    if around is None or known is None:
+        return CONTRAST
+    own = known.loc[(known["surface"] == patch.surface) & (known["quantity"] == "albedo")
+                    & (known["value"] > 0), "value"]
+    return max(float(abs(around.amount.value / own.iloc[0] - 1)), LEAST_CONTRAST) if len(own) \
+        else CONTRAST
 
 
 def _curve(radius: float, patch_radius: float, contrast: float, zenith_deg: float,
@@ -157,7 +167,7 @@ def _channel(survey: Survey, quantity: str) -> Channel | None:
     return None
 
 
-def passes(survey: Survey) -> pd.DataFrame:
+def passes(survey: Survey, before: tuple[str, pipeline.Tables]) -> pd.DataFrame:
     """Return how many passes of a surface make U no wider than the relevant change.
 
     Columns: surface, quantity, kind, between, within (both standard deviations), wanted (U),
@@ -165,7 +175,7 @@ def passes(survey: Survey) -> pd.DataFrame:
     top and do not shrink with passes.
     """
     wanted, rows = survey.campaign.relevant_change, []
-    told = _spreads(survey)
+    told = _spreads(*before)
     quantities = [q for q, name in (("temperature", "brightness_temperature"),
                                     ("temperature", "longwave_up"), ("albedo", "shortwave_up"),
                                     ("ndvi", "red_up")) if _channel(survey, name)]
@@ -181,19 +191,15 @@ def passes(survey: Survey) -> pd.DataFrame:
     return pd.DataFrame(rows)
 
 
-def _spreads(survey: Survey) -> dict[tuple[str, str, str], tuple[float, float, str]]:
-    """Return the spread between and within passes that the last earlier campaign showed."""
-    for earlier in reversed(survey.parameters.earlier):
-        one = open_file(earlier)
-        table = pipeline.surfaces(one).tables["passes"]
-        table = table[table["value"].notna() & table["u_within"].notna()]
-        out = {}
+def _spreads(name: str, before: pipeline.Tables
+             ) -> dict[tuple[str, str, str], tuple[float, float, str]]:
+    """Return the spread between and within passes that an earlier campaign showed."""
+    out = {}
+    if before:
+        table = before["passes"].dropna(subset=["value", "u_within"])
         for (surface, quantity, kind), rows in table.groupby(["surface", "quantity", "kind"]):
             if len(rows) > 1:
                 within = float(np.median(rows["u_within"]))
                 tau2 = paule_mandel(rows["value"].to_numpy(), rows["u_within"].to_numpy())
-                out[str(surface), str(quantity), str(kind)] = (
-                    float(np.sqrt(tau2)), within, one.campaign.campaign)
-        if out:
-            return out
-    return {}
+                out[str(surface), str(quantity), str(kind)] = float(np.sqrt(tau2)), within, name
+    return out

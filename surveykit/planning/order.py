@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
 
 import pandas as pd
 
 from surveykit.opening import Survey
-from surveykit.planning import Plan
-from surveykit.planning_patches import Patch
+from surveykit.planning.day import Plan
+from surveykit.planning.patches import Patch
 from surveykit.starting import COLUMNS
 
 CONTROL_EVERY_MIN, WALK_MIN, LEAST_ROUNDS = 20.0, 1.0, 3
@@ -33,31 +33,32 @@ def visit_minutes(survey: Survey, patch: Patch) -> float:
 
     Ways of reading that stand off share one walk over the patch; contact is a pass of its own.
     """
-    settings = survey.settings.passes
+    settings = survey.campaign.settings.passes
     slowest = max((c.time_constant_s for name in survey.campaign.loggers
                    for c in survey.parameters.channels(name)
                    if c.quantity.endswith(("_up", "brightness_temperature"))), default=0.0)
-    trim_s = settings.sheet_u_s + survey.settings.clocks.unchecked_u_s \
+    trim_s = settings.sheet_u_s + survey.campaign.settings.clocks.unchecked_u_s \
         + settings.settle_time_constants * slowest
     walks = ("contact" in patch.heads) + bool({*patch.heads} - {"contact"})
     return WALK_MIN + walks * (2 * settings.min_duration_s + 2 * trim_s) / 60
 
 
-def rounds_needed(plan: Plan) -> int:
-    """Return the rounds after which every surface has the passes it needs, at least 3."""
-    need = [LEAST_ROUNDS]
+def rounds_needed(plan: Plan) -> dict[str, int]:
+    """Return for each surface the rounds after which it has the passes it needs, at least 3."""
+    need = {p.surface: LEAST_ROUNDS for p in plan.patches}
     for row in plan.passes.to_dict("records"):
         places = sum(p.surface == row["surface"] for p in plan.patches)
         if places:
-            need.append(math.ceil(row["passes"] / places))
-    return max(need)
+            need[row["surface"]] = max(need[row["surface"]], math.ceil(row["passes"] / places))
+    return need
 
 
-def order(survey: Survey, plan: Plan, rounds: int) -> pd.DataFrame:
+def order(survey: Survey, plan: Plan, rounds: Mapping[str, int]) -> pd.DataFrame:
     """Return the visits in order: round, surface, patch, minutes from the start.
 
-    Every other round runs backwards, so that a drift over the day cancels. The control comes
-    first, last, and at least every 20 minutes.
+    A patch is visited in as many rounds as its surface needs. Every other round runs backwards,
+    so that a drift over the day cancels. The control comes first, last, and at least every 20
+    minutes.
     """
     control = survey.campaign.comparison.control
     fixed = [p for p in plan.patches if p.surface == control]
@@ -74,15 +75,17 @@ def order(survey: Survey, plan: Plan, rounds: int) -> pd.DataFrame:
         clock += took
         since = 0.0 if patch in fixed else since + took
 
-    for number in range(1, rounds + 1):
-        for place, patch in enumerate(others if number % 2 else others[::-1]):
+    last = max(rounds.values(), default=0)
+    for number in range(1, last + 1):
+        due_now = [p for p in others if rounds[p.surface] >= number]
+        for place, patch in enumerate(due_now if number % 2 else due_now[::-1]):
             due = since + visit_minutes(survey, patch) > CONTROL_EVERY_MIN
             if fixed and (due or (place == 0 and number == 1)):
                 visit(fixed[turn % len(fixed)], number)
                 turn += 1
             visit(patch, number)
     if fixed:
-        visit(fixed[turn % len(fixed)], rounds)
+        visit(fixed[turn % len(fixed)], last)
     return pd.DataFrame(rows)
 
 
@@ -92,6 +95,17 @@ def duration_min(survey: Survey, plan: Plan, visits: pd.DataFrame) -> float:
     patch = next(p for p in plan.patches if p.name == last["patch"]
                  and p.surface == last["surface"])
     return float(last["starts_min"]) + visit_minutes(survey, patch)
+
+
+def fits(survey: Survey, plan: Plan, visits: pd.DataFrame) -> str:
+    """Say how long the visits take and whether the widest sun window holds them."""
+    minutes = duration_min(survey, plan, visits)
+    window = plan.windows.iloc[0]
+    room = 60 * float(window["hours"])
+    word = "fits" if minutes <= room else "does not fit"
+    return (f"{len(visits)} visits to {len(plan.patches)} patches take about {minutes:.0f} min; "
+            f"that {word} the {room:.0f} min in which the sun stands within "
+            f"{window['limit_deg']:.0f} degrees of the zenith ({window['meaning']}).")
 
 
 def field_sheet(survey: Survey, plan: Plan, visits: pd.DataFrame) -> pd.DataFrame:

@@ -1,0 +1,130 @@
+"""What the readings say of a pass's edges and placements; nothing is moved, only flagged."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import replace
+from math import hypot
+
+import numpy as np
+
+from surveykit.core import BoolArray, IntArray
+from surveykit.intake.clocks import Clock
+from surveykit.intake.clocks.signals import readings
+from surveykit.intake.params import Channel, Parameters
+from surveykit.intake.passes import Pass
+from surveykit.intake.placements import find_dwells
+from surveykit.intake.records import Records
+from surveykit.intake.sheet_words import Entry
+from surveykit.statistics.alignment import change_point
+
+NS = 1_000_000_000
+LOOK_S = 60.0  # outside an edge and inside, at most
+LEAST_SIDE_S = 3.0
+GROUND = ("brightness_temperature", "shortwave_up", "nir_up", "longwave_up")
+
+
+def look(passes: Sequence[Pass], records: Mapping[str, Records], entries: Sequence[Entry],
+         parameters: Parameters, clocks: Mapping[str, Clock], sheet_path: str) -> tuple[Pass, ...]:
+    """Return the passes with what their records say of them.
+
+    A pass in which one of its loggers holds no record is refused with the gap. "edge disagrees"
+    flags an edge of the readings (the split into two levels that fits best) further from the
+    written one than `passes.edge_u` standard uncertainties; the number of placements found in a
+    contact pass is held against the sheet's reading.
+    """
+    out = []
+    for this in passes:
+        gap = "" if this.refusal else _gap(this, records, sheet_path)
+        if gap or this.refusal:
+            out.append(replace(this, refusal=this.refusal or gap))
+            continue
+        channel = next((this.channels[q] for q in GROUND if q in this.channels), None)
+        if channel is None:
+            out.append(this)
+            continue
+        if this.kind == "contact":
+            notes = _placements(this, channel, records, parameters)
+        else:
+            notes = _edges(this, channel, passes, records, entries, parameters, clocks)
+        out.append(replace(this, notes=this.notes + notes))
+    return tuple(out)
+
+
+def _gap(this: Pass, records: Mapping[str, Records], sheet_path: str) -> str:
+    for name in this.loggers:
+        log = records[name]
+        time_ns = log.time_ns[:log.n_timed]
+        first, last = np.searchsorted(time_ns, [this.start_ns, this.stop_ns])
+        if first == last:
+            around = [f"{_clock(time_ns[k])} UTC" if 0 <= k < time_ns.size else "" for k in
+                      (int(first) - 1, int(first))]
+            where = " and ".join(
+                text for text, known in ((f"the last before it at {around[0]}", around[0]),
+                                         (f"the next at {around[1]}", around[1])) if known)
+            return (f"{sheet_path} row {this.row}: {name} holds no record during the pass"
+                    + (f"; {where}" if where else ""))
+    return ""
+
+
+def _edges(this: Pass, channel: Channel, passes: Sequence[Pass], records: Mapping[str, Records],
+           entries: Sequence[Entry], parameters: Parameters,
+           clocks: Mapping[str, Clock]) -> tuple[str, ...]:
+    settings, log = parameters.settings, records[channel.logger]
+    half_ns = (this.stop_ns - this.start_ns) // 2
+    look_ns, watch_u_s = round(LOOK_S * NS), parameters.campaign.watch.offset.u
+    others = [p for p in passes if channel.logger in p.loggers]
+    before = max((p.stop_ns for p in others if p.stop_ns <= this.start_ns), default=0)
+    after = min((p.start_ns for p in others if p.start_ns >= this.stop_ns), default=2**62)
+    notes = []
+    for word, edge, low, high in (
+            ("start", this.start_ns, max(before, this.start_ns - look_ns),
+             this.start_ns + min(half_ns, look_ns)),
+            ("stop", this.stop_ns, this.stop_ns - min(half_ns, look_ns),
+             min(after, this.stop_ns + look_ns))):
+        part = np.arange(*np.searchsorted(log.time_ns[:log.n_timed], [low, high]))
+        part = part[~_under_cover(log.time_ns[part], entries)]
+        time_s, values = readings(log, channel, settings, part, edge)
+        side = max(3, int(np.ceil(LEAST_SIDE_S / log.interval_s))) if log.interval_s > 0 else 3
+        found = change_point(values, min_side=side, min_contrast=settings.passes.edge_contrast)
+        if found is None:
+            continue
+        away_s = float(time_s[found - 1] + time_s[found]) / 2
+        u_s = hypot(_written_u_s(this, entries),
+                    clocks[channel.logger].u_against_watch(edge, watch_u_s))
+        if abs(away_s) > settings.passes.edge_u * u_s:
+            notes.append(f"edge disagrees ({word} {away_s:+.0f} s)")
+    return tuple(notes)
+
+
+def _written_u_s(this: Pass, entries: Sequence[Entry]) -> float:
+    return next(entry.edge_u_s for entry in entries if entry.row == this.row)
+
+
+def _under_cover(time_ns: IntArray, entries: Sequence[Entry]) -> BoolArray:
+    out = np.zeros(time_ns.size, dtype=np.bool_)
+    for entry in entries:
+        if entry.entry in ("cover", "dark"):
+            u_ns = round(2 * entry.edge_u_s * NS)
+            out |= (time_ns >= entry.start_ns - u_ns) & (time_ns <= entry.stop_ns + u_ns)
+    return out
+
+
+def _placements(this: Pass, channel: Channel, records: Mapping[str, Records],
+                parameters: Parameters) -> tuple[str, ...]:
+    if not this.reading >= 1:
+        return ()
+    log, settings = records[channel.logger], parameters.settings
+    part = np.arange(*np.searchsorted(log.time_ns[:log.n_timed], [this.start_ns, this.stop_ns]))
+    time_s, values = readings(log, channel, settings, part, this.start_ns)
+    counts = [len(find_dwells(time_s, values, settle_s=0.0, min_s=min_s,
+                              max_rate_k_s=settings.temperature.dwell_max_rate_k_s))
+              for min_s in (settings.temperature.dwell_min_s,
+                            settings.temperature.dwell_min_s / 2)]
+    if min(counts) <= round(this.reading) <= max(counts):  # an uncertain end may cut one short
+        return ()
+    return (f"{counts[0]} placements found, {this.reading:.0f} on the sheet",)
+
+
+def _clock(time_ns: int) -> str:
+    return str(np.datetime64(int(time_ns), "ns").astype("datetime64[s]")).replace("T", " ")

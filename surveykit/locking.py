@@ -1,0 +1,105 @@
+"""One run of a campaign at a time: locks that the system itself lets go.
+
+A lock is held by an open file, not by a file that exists: when its process is gone, however it
+went, and every kernel that inherited it, the lock is free. So a stale one cannot be.
+"""
+
+from __future__ import annotations
+
+import errno
+import os
+import socket
+import sys
+import time
+from collections.abc import Callable, Iterator
+from contextlib import ExitStack, contextmanager
+from pathlib import Path
+
+if sys.platform == "win32":
+    import msvcrt
+else:
+    import fcntl
+
+BUSY = {errno.EAGAIN, errno.EACCES, errno.EWOULDBLOCK, errno.EDEADLK}
+PAUSE_S = 0.1
+
+
+@contextmanager
+def locked(root: Path, name: str, earlier: tuple[str, ...] = (),
+           say: Callable[[str], None] | None = None) -> Iterator[int]:
+    """Hold the campaign `name` alone, and keep the `earlier` ones from being run meanwhile.
+
+    Own lock first, then the earlier ones': who waits, waits along the order of the campaigns, which
+    has no circle. Waits as long as another run holds one, and says so once.
+
+    Parameters
+    ----------
+    root : Path
+        The project folder; the locks lie in its .surveykit/.
+    name : str
+        The campaign that is run.
+    earlier : tuple of str
+        The campaigns it reads; many runs may read them at once.
+    say : callable, optional
+        Takes the line that tells who is waited for.
+
+    Yields
+    ------
+    int
+        The descriptor of the own lock: a kernel that inherits it keeps the lock while it lives.
+    """
+    with ExitStack() as stack:
+        own = stack.enter_context(_taken(root, name, False, say))
+        for one in earlier:
+            stack.enter_context(_taken(root, one, True, say))
+        yield own
+
+
+def free(root: Path, name: str) -> bool:
+    """Return whether no run of the campaign `name` is under way."""
+    path = _path(root, name)
+    if not path.exists():
+        return True
+    with path.open("r+b") as file:
+        return _take(file.fileno(), False)
+
+
+@contextmanager
+def _taken(root: Path, name: str, shared: bool,
+           say: Callable[[str], None] | None) -> Iterator[int]:
+    path = _path(root, name)
+    path.parent.mkdir(exist_ok=True)
+    with path.open("a+b") as file:
+        told = say is None
+        while not _take(file.fileno(), shared):
+            if not told and say is not None:
+                file.seek(0)
+                holder = file.read(200).decode("utf-8", "replace").strip()
+                say(f"{name}: waits for another run of it ({holder or 'starting'})")
+                told = True
+            time.sleep(PAUSE_S)
+        if not shared:
+            file.truncate(0)
+            file.write(f"process {os.getpid()} on {socket.gethostname()}\n".encode())
+            file.flush()
+        yield file.fileno()
+
+
+def _path(root: Path, name: str) -> Path:
+    return root / ".surveykit" / f"{name}.lock"
+
+
+def _take(descriptor: int, shared: bool) -> bool:
+    """Try once; True also where the storage knows no locks, as there is nothing to wait for."""
+    try:
+        if sys.platform == "win32":
+            msvcrt.locking(descriptor, msvcrt.LK_NBLCK, 1)
+        else:
+            kind = fcntl.LOCK_SH if shared else fcntl.LOCK_EX
+            fcntl.flock(descriptor, kind | fcntl.LOCK_NB)
+    except OSError as error:
+        if error.errno in BUSY:
+            return False
+        if error.errno not in (errno.ENOLCK, errno.ENOTSUP, errno.ENOSYS):
+            raise
+    return True

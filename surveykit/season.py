@@ -1,0 +1,278 @@
+"""Many campaigns: in the order they need one another, several at once, none stopping the rest."""
+
+from __future__ import annotations
+
+import multiprocessing
+import os
+import threading
+import time
+import traceback
+from collections.abc import Callable, Iterable, Sequence
+from concurrent.futures import (
+    FIRST_COMPLETED,
+    BrokenExecutor,
+    Executor,
+    Future,
+    ProcessPoolExecutor,
+    wait,
+)
+from dataclasses import dataclass, replace
+from functools import partial
+from graphlib import CycleError, TopologicalSorter
+from multiprocessing.connection import wait as wait_for
+from pathlib import Path
+
+from surveykit import runner
+from surveykit.core import InputError
+from surveykit.intake.params import is_kit_file, read_plain
+from surveykit.opening import open_file
+
+DONE, BUG, USER = 0, 1, 2
+TRIES = 2  # of a campaign whose worker died
+UNTOUCHED = "nothing of an earlier report was touched"
+Say = Callable[[str], None]
+Work = Callable[[Path, bool], "Outcome"]
+
+
+@dataclass(frozen=True)
+class Outcome:
+    """What became of one campaign: its exit code, its report or why there is none."""
+
+    path: Path
+    code: int
+    word: str
+    seconds: float = 0.0
+    lines: tuple[str, ...] = ()
+    report: Path | None = None
+
+
+def work(path: Path, only_if_needed: bool, *, lanes: int | None = None,
+         notebooks: tuple[str, ...] = runner.NOTEBOOKS, say: Say | None = None) -> Outcome:
+    """Run one campaign; whatever goes wrong becomes its outcome.
+
+    `only_if_needed` leaves a report alone that belongs to its inputs.
+    """
+    begun = time.perf_counter()
+    made = partial(Outcome, path)
+    try:
+        if only_if_needed and runner.up_to_date(open_file(path)):
+            return made(DONE, "stands")
+        report = runner.run(path, say or (lambda line: None), lanes=lanes, notebooks=notebooks)
+        return made(DONE, "done", time.perf_counter() - begun, (), report)
+    except InputError as error:
+        return made(USER, "input at fault", time.perf_counter() - begun, tuple(error.faults))
+    except OSError as error:
+        return made(BUG, "not written", time.perf_counter() - begun, (storage(error),))
+    except Exception:
+        return made(BUG, "bug", time.perf_counter() - begun,
+                    (f"{path}: a bug; please report it:", traceback.format_exc()))
+
+
+def storage(error: OSError) -> str:
+    """Return a sentence on something that could not be read or written."""
+    if error.filename is None:
+        return f"{error}; {UNTOUCHED}"
+    return f"{error.filename}: {error.strerror}; make room or give access, and run again; " \
+           f"{UNTOUCHED}"
+
+
+def run_all(paths: Sequence[Path], say: Say, *, jobs: int = 1, cluster: str | None = None,
+            notebooks: tuple[str, ...] = runner.NOTEBOOKS) -> list[Outcome]:
+    """Run campaigns, each after the earlier ones it names; return what became of each.
+
+    Kits among the files are passed over. An earlier campaign that is not among them is run where
+    its report is missing or its inputs changed. What needs one that failed is not run.
+
+    Parameters
+    ----------
+    paths : sequence of Path
+        Parameter files.
+    say : callable
+        Takes lines of progress.
+    jobs : int
+        How many campaigns at once, each in a process of its own.
+    cluster : str, optional
+        Address of a dask scheduler whose workers run them instead.
+    notebooks : tuple of str
+        Those that run in each.
+    """
+    campaigns = []
+    for path in dict.fromkeys(path.absolute() for path in paths):
+        if is_kit_file(path):
+            say(f"{path.name}: a kit of instruments, nothing to run; passed over")
+        else:
+            campaigns.append(path)
+    needs = _needs(campaigns)
+    asked = {_same(path) for path in campaigns}
+    if cluster is None and (jobs == 1 or len(needs) < 2):
+        one = partial(work, notebooks=notebooks, say=say)
+        return _ordered(needs, asked, lambda path, spare: _now(one, path, spare), say, jobs=1)
+    lanes = max(1, runner.cores() // jobs)
+    pool = _Cluster(cluster) if cluster is not None else _Processes(jobs)
+    try:
+        one = partial(work, notebooks=notebooks, lanes=1 if cluster is not None else lanes)
+        width = len(needs) if cluster is not None else jobs
+        return _ordered(needs, asked, lambda path, spare: pool.submit(one, path, spare),
+                        say, jobs=width, renew=pool.renew)
+    finally:
+        pool.close()
+
+
+def summary(outcomes: Iterable[Outcome]) -> list[str]:
+    """Return the final table: a line a campaign, and of what failed every reason."""
+    lines = []
+    for one in outcomes:
+        lines.append(f"  {one.path.stem:<40} {one.word:<15} {one.seconds:6.1f} s")
+        lines += [f"    {line}" for text in one.lines for line in text.splitlines()]
+    return lines
+
+
+def _same(path: Path) -> Path:
+    return Path(os.path.realpath(path))
+
+
+def _needs(campaigns: list[Path]) -> dict[Path, set[Path]]:
+    """Return for each campaign those it needs; edges that form a circle are left to its run."""
+    needs: dict[Path, set[Path]] = {}
+    waiting = list(campaigns)
+    while waiting:
+        path = _same(waiting.pop())
+        if path not in needs:
+            needs[path] = {_same(earlier) for earlier in _earlier(path)} - {path}
+            waiting += needs[path]
+    while True:
+        try:
+            TopologicalSorter(needs).prepare()
+        except CycleError as circle:
+            for path in circle.args[1]:
+                needs[path] = set()
+        else:
+            return needs
+
+
+def _earlier(path: Path) -> list[Path]:
+    """Return the earlier campaigns a file names; none where it is at fault: its run says so."""
+    try:
+        stated = read_plain(path).get("comparison")
+    except InputError:
+        return []
+    named = stated.get("earlier") if isinstance(stated, dict) else None
+    root = path.parent.parent
+    found = [root / text for text in named if isinstance(text, str) and "\0" not in text] \
+        if isinstance(named, list) else []
+    return [one for one in found if one.parent == path.parent and one.is_file()]
+
+
+def _ordered(needs: dict[Path, set[Path]], asked: set[Path],
+             submit: Callable[[Path, bool], Future[Outcome]], say: Say, *, jobs: int,
+             renew: Callable[[], None] = lambda: None) -> list[Outcome]:
+    sorter = TopologicalSorter(needs)
+    sorter.prepare()
+    ready: list[Path] = []
+    tries: dict[Path, int] = {}
+    running: dict[Future[Outcome], Path] = {}
+    outcomes: dict[Path, Outcome] = {}
+
+    def settle(outcome: Outcome) -> None:
+        outcomes[outcome.path] = outcome
+        if jobs > 1:
+            say(summary([outcome])[0])
+        sorter.done(outcome.path)
+
+    while sorter.is_active():
+        ready += sorted(sorter.get_ready())
+        while ready and len(running) < jobs:
+            path = ready.pop(0)
+            failed = sorted(p.stem for p in needs[path] if outcomes[p].code != DONE)
+            if failed:
+                code = max(outcomes[p].code for p in needs[path])
+                settle(Outcome(path, code, "not run", 0.0, (
+                    f"{path.name}: needs {', '.join(failed)}, which failed",)))
+                ready += sorted(sorter.get_ready())
+                continue
+            tries[path] = tries.get(path, 0) + 1
+            running[submit(path, path not in asked)] = path
+        for one in wait(running, return_when=FIRST_COMPLETED).done:
+            path = running.pop(one)
+            try:
+                settle(replace(one.result(), path=path))
+            except Exception as error:  # the worker died, not the campaign
+                renew()
+                if tries[path] < TRIES:
+                    ready.insert(0, path)
+                else:
+                    settle(Outcome(path, BUG, "worker died", 0.0, (
+                        f"{path.name}: its worker died twice ({type(error).__name__}), as when "
+                        f"memory runs out; {UNTOUCHED}",)))
+    return [outcomes[path] for path in TopologicalSorter(needs).static_order()]
+
+
+def _now(one: Work, path: Path, only_if_needed: bool) -> Future[Outcome]:
+    done: Future[Outcome] = Future()
+    done.set_result(one(path, only_if_needed))
+    return done
+
+
+class _Processes:
+    """Processes of this machine, started anew; a broken pool is replaced."""
+
+    def __init__(self, jobs: int) -> None:
+        self.jobs = jobs
+        self.executor: Executor = self._new()
+
+    def _new(self) -> Executor:
+        return ProcessPoolExecutor(self.jobs, multiprocessing.get_context("spawn"), _end_with_parent)
+
+    def submit(self, one: Work, path: Path, only_if_needed: bool) -> Future[Outcome]:
+        self.renew()
+        return self.executor.submit(one, path, only_if_needed)
+
+    def renew(self) -> None:
+        """Replace the pool if it is broken."""
+        try:
+            self.executor.submit(os.getpid)
+        except BrokenExecutor:
+            self.executor.shutdown(wait=False, cancel_futures=True)
+            self.executor = self._new()
+
+    def close(self) -> None:
+        self.executor.shutdown(wait=True, cancel_futures=True)
+
+
+class _Cluster:
+    """Workers of a dask cluster that see the project folder under the same path."""
+
+    def __init__(self, address: str) -> None:
+        try:
+            from distributed import Client
+        except ImportError:
+            raise InputError("--cluster: dask.distributed is not installed; write: pip install "
+                             "'surveykit[cluster]'") from None
+        try:
+            self.client = Client(address, timeout=10)
+        except (OSError, ValueError) as error:
+            raise InputError(f"--cluster: got {address!r}: {error}; write the address of a "
+                             "scheduler, such as tcp://host:8786") from None
+        self.executor: Executor = self.client.get_executor(pure=False)
+
+    def submit(self, one: Work, path: Path, only_if_needed: bool) -> Future[Outcome]:
+        return self.executor.submit(one, path, only_if_needed)
+
+    def renew(self) -> None:
+        """Nothing: the scheduler itself replaces a worker."""
+
+    def close(self) -> None:
+        self.client.close()
+
+
+def _end_with_parent() -> None:
+    """End this worker when its parent is gone, so that none outlives a killed run."""
+    parent = multiprocessing.parent_process()
+    if parent is not None:
+        sentinel = parent.sentinel
+
+        def watch() -> None:
+            wait_for([sentinel])
+            os._exit(1)
+
+        threading.Thread(target=watch, daemon=True).start()

@@ -1,0 +1,183 @@
+"""The plan of a survey day: sun windows, heights, speeds, passes, order, and the sheet to print."""
+
+from __future__ import annotations
+
+import dataclasses
+import re
+import shutil
+
+import html5lib
+import numpy as np
+import pandas as pd
+import pvlib
+import pytest
+from conftest import DEMO, copy_project, surveykit
+
+from surveykit import planning
+from surveykit.intake.fieldsheet import read_sheet
+from surveykit.opening import open_file
+from surveykit.physics.footprint import best_height_m, disc_share
+from surveykit.physics.walking import footprint_m, lanes, spot_height_m, walking_speed_m_s
+from surveykit.statistics.pooling import passes_needed
+
+
+@pytest.fixture(scope="module")
+def project(tmp_path_factory):
+    return copy_project(tmp_path_factory.mktemp("plan") / "project")
+
+
+@pytest.fixture(scope="module")
+def survey(project):
+    return open_file(project / "params" / f"{DEMO[1]}.yml")
+
+
+@pytest.fixture(scope="module")
+def plan(survey):
+    return planning.make(survey)
+
+
+@pytest.fixture(scope="module")
+def visits(survey, plan):
+    return planning.order(survey, plan, planning.rounds_needed(plan))
+
+
+def test_sun_windows_agree_with_pvlib(survey, plan):
+    """Independent library: pvlib's own solar position, its default method, minute by minute."""
+    site = survey.campaign.site
+    times = pd.date_range(survey.campaign.date, periods=24 * 60, freq="min", tz=site.time_zone)
+    with np.errstate(all="ignore"):
+        sun = pvlib.solarposition.get_solarposition(
+            times, site.latitude, site.longitude, altitude=site.elevation_m)
+    for row in plan.windows.to_dict("records"):
+        inside = times[(sun["apparent_zenith"] <= row["limit_deg"]).to_numpy()]
+        for mine, theirs in ((row["first"], inside[0]), (row["last"], inside[-1])):
+            hour, minute = map(int, mine.split(":"))
+            assert abs(hour * 60 + minute - (theirs.hour * 60 + theirs.minute)) <= 1
+        assert row["hours"] == pytest.approx(len(inside) / 60, abs=0.06)
+
+
+def test_hours_of_sun_at_40_north(survey):
+    """Computed (two independent scripts): zenith below 45 degrees at 40 N for 6.7 h on 21 June,
+    3.0 h on 20 March and not at all in December."""
+    for day, hours in (("2025-06-21", 6.7), ("2025-03-20", 3.0), ("2025-12-21", 0.0)):
+        campaign = survey.campaign.model_copy(update={
+            "date": day, "site": survey.campaign.site.model_copy(update={"latitude": 40.0})})
+        other = dataclasses.replace(survey, parameters=dataclasses.replace(
+            survey.parameters, campaign=campaign))
+        windows = planning.sun_windows(planning.sun_course(other), other)
+        assert windows["hours"].iloc[0] == pytest.approx(hours, abs=0.15), day
+        if not hours:
+            assert windows["first"].iloc[0] == "never"
+
+
+@pytest.mark.parametrize(("radius", "zenith", "contrast", "height_cm"), [
+    (0.25, 30, 0.5, 9.2), (0.25, 30, 1.0, 7.6), (0.25, 45, 0.5, 7.8), (0.25, 60, 0.5, 6.0),
+    (0.5, 30, 0.5, 12.7), (0.5, 30, 1.0, 10.6), (0.5, 45, 0.5, 10.7), (0.5, 60, 0.5, 8.4),
+    (1.0, 30, 0.5, 17.8), (1.0, 30, 1.0, 14.9), (1.0, 45, 0.5, 14.9), (1.0, 60, 0.5, 11.8),
+    (2.0, 30, 0.5, 25.0), (2.0, 30, 1.0, 21.0), (2.0, 45, 0.5, 21.0), (2.0, 60, 0.5, 16.6)])
+def test_best_heights(radius, zenith, contrast, height_cm):
+    """Computed, by a second script's numeric optimum; head of 3 cm radius, beam fraction .85."""
+    height = best_height_m(0.03, radius, contrast, zenith, 0.85)
+    assert 100 * height == pytest.approx(height_cm, abs=0.06)
+
+
+def test_the_plan_puts_the_albedo_head_at_the_best_height(survey, plan):
+    albedo = plan.heights[plan.heights["reading"] == "albedo"]
+    assert len(albedo) == len(plan.patches)
+    head = next(c for c in survey.parameters.channels("shortwave")
+                if c.quantity == "shortwave_up").head_radius_m
+    zenith = plan.course["zenith_deg"].min()
+    for row in albedo.to_dict("records"):
+        patch = next(p for p in plan.patches if p.name == row["patch"])
+        # by brute force on the two errors themselves, not by the optimiser
+        curve = plan.curves[plan.curves["across_m"] == patch.across_m]
+        assert len(curve)
+        grid = np.geomspace(0.02, 1.0, 4000)
+        around = survey.campaign.surfaces[patch.surface].around.amount.value
+        assert 0 < zenith < 45
+        assert 0 < around < 1
+        assert grid[0] < row["height_m"] < grid[-1]
+        assert row["height_m"] > head
+        assert row["footprint_m"] == pytest.approx(6 * row["height_m"])
+        assert disc_share(row["footprint_m"] / 2, row["height_m"]) == pytest.approx(0.9)
+
+
+@pytest.mark.parametrize(("between", "within", "wanted", "passes"), [
+    (0.5, 0.3, 1.0, 4), (0.5, 0.3, 0.5, 8), (1.0, 0.3, 1.0, 7), (1.0, 0.3, 0.5, 20),
+    (0.01, 0.005, 0.01, 8), (0.02, 0.005, 0.01, 19)])
+def test_passes_for_a_wanted_interval(between, within, wanted, passes):
+    """Computed, by a second script: least k with t(.975, k - 1) sqrt((b^2 + w^2) / k) <= U."""
+    assert passes_needed(between, within, wanted) == passes
+
+
+def test_passes_take_the_spread_of_the_earlier_campaign(plan, survey):
+    assert set(plan.passes["source"]) == {DEMO[0]}
+    for row in plan.passes.to_dict("records"):
+        assert row["passes"] == passes_needed(row["between"], row["within"], row["wanted"])
+    first = open_file(survey.parameters.root / "params" / f"{DEMO[0]}.yml")
+    defaults = planning.make(first).passes
+    assert set(defaults["source"]) == {"engineering default"}
+    row = defaults[defaults["quantity"] == "temperature"].iloc[0]
+    assert (row["between"], row["within"], row["wanted"], row["passes"]) == (0.5, 0.3, 1.0, 4)
+
+
+def test_walking_by_hand():
+    """Hand arithmetic: 0.5 m in three time constants of 1 s; a cone of 22 degrees fills a third of
+    a patch of 1 m from 1 / (6 tan 22 deg) = 0.4125 m; a full view of 125 degrees held at 5 cm sees
+    19.2 cm (common practice, no source)."""
+    assert walking_speed_m_s(0.5, 1.0) == pytest.approx(1 / 6)
+    assert spot_height_m(1.0, 22.0, 1 / 3) == pytest.approx(0.41252, abs=1e-5)
+    assert footprint_m(0.05, 62.5) == pytest.approx(0.192, abs=5e-4)
+    assert lanes(4.0, 0.7) == 6
+    with pytest.raises(ValueError, match="finite width"):
+        lanes(float("nan"), 0.7)
+
+
+def test_order_keeps_the_control_close_and_gives_each_surface_its_passes(survey, plan, visits):
+    control = survey.campaign.comparison.control
+    own = visits.loc[visits["surface"] == control, "starts_min"].to_numpy()
+    assert own[0] == 0
+    assert visits["surface"].iloc[-1] == control
+    longest = max(planning.visit_minutes(survey, p) for p in plan.patches)
+    assert np.diff(own).max() <= 20 + longest
+    for row in plan.passes.to_dict("records"):
+        if row["surface"] != control:
+            assert (visits["surface"] == row["surface"]).sum() >= row["passes"]
+    forward, back = ([*block.loc[block["surface"] != control, "patch"]]
+                     for number, block in visits.groupby("round") if number < 3)
+    assert forward == back[::-1]
+
+
+def test_the_field_sheet_is_read_once_times_are_filled_in(survey, plan, visits, tmp_path):
+    sheet = planning.field_sheet(survey, plan, visits)
+    minute = pd.Timestamp(f"{survey.campaign.date} 10:00:00")
+    ends = [minute + pd.Timedelta(seconds=70 * n) for n in range(len(sheet) + 1)]
+    sheet["start"] = [f"{t:%H:%M:%S}" for t in ends[:-1]]
+    sheet["stop"] = [f"{t - pd.Timedelta(seconds=5):%H:%M:%S}" for t in ends[1:]]
+    path = tmp_path / "field_sheet.csv"
+    sheet.to_csv(path, index=False)
+    read = read_sheet(path, survey.parameters)
+    assert len(read.entries) == len(sheet)
+    assert {e.entry for e in read.entries} == {"pass", "dark"}
+
+
+def test_a_campaign_without_files_is_planned_on_the_command_line(project):
+    """Before the day there is no log and no field sheet; sizes are asked for, not guessed."""
+    name = "pellowick-yard-2025-10-01"
+    text = (project / "params" / f"{DEMO[0]}.yml").read_text(encoding="utf-8")
+    text = text.replace(DEMO[0], name).replace("2025-06-11", "2025-10-01")
+    (project / "params" / f"{name}.yml").write_text(text, encoding="utf-8")
+    done = surveykit(project, "plan", f"params/{name}.yml")
+    assert done.returncode == 0, done.stderr
+    folder = project / "reports" / f"{name}.plan"
+    assert sorted(p.name for p in folder.iterdir()) == [
+        "field_sheet.csv", "field_sheet.html", "plan.html"]
+    for page in ("plan.html", "field_sheet.html"):
+        html = (folder / page).read_text(encoding="utf-8")
+        html5lib.HTMLParser(strict=True).parse(html)
+        assert "Local rules" in html
+        assert not re.search(r"\b(nan|NaN|None)\b", re.sub(r"base64,[^\"]+", "", html))
+    html = (folder / "plan.html").read_text(encoding="utf-8")
+    assert "the patch’s size is not known" in html
+    assert "No field sheet names patches yet" in html
+    shutil.rmtree(folder)
