@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import argparse
+import os
 import sys
 from collections.abc import Callable
 from functools import partial
@@ -22,6 +23,13 @@ def main(arguments: list[str] | None = None) -> int:
         one = commands.add_parser(name, help=words, description=words)
         one.add_argument("files", nargs="+", type=Path, metavar="FILE",
                          help="parameter file of a campaign, such as params/ID.yml")
+        one.add_argument("--allow-outside", action="store_true",
+                         help="let parameter files name files outside the project folder")
+        if name == "run":
+            one.add_argument("--jobs", type=_positive, default=1, metavar="N",
+                             help="campaigns run at once, each in a process of its own")
+            one.add_argument("--cluster", metavar="ADDRESS",
+                             help="run them on the workers of this dask scheduler instead")
     new = commands.add_parser("new", help="write a parameter file and an empty field sheet",
                               description="write a parameter file and an empty field sheet")
     new.add_argument("name", metavar="ID",
@@ -34,6 +42,10 @@ def main(arguments: list[str] | None = None) -> int:
     verify.add_argument("folder", type=Path, metavar="FOLDER", help="a report, reports/ID")
     verify.add_argument("--rerun", action="store_true",
                         help="compute the tables again and list every cell that moved")
+    netcdf = commands.add_parser(
+        "netcdf", help="write a report's passes and surfaces as one NetCDF file",
+        description="write a report's passes and surfaces as one NetCDF file (extra netcdf)")
+    netcdf.add_argument("folder", type=Path, metavar="FOLDER", help="a report, reports/ID")
     for name, words in (("pack", "write one zip from which the report is made again elsewhere"),
                         ("plan", "plan a survey day and write a field sheet to print")):
         one = commands.add_parser(name, help=words, description=words)
@@ -44,39 +56,56 @@ def main(arguments: list[str] | None = None) -> int:
         return _told(lambda: _new(asked.name, asked.logs))
     if asked.command == "verify":
         return _told(lambda: _verify(asked.folder, asked.rerun))
+    if asked.command == "netcdf":
+        return _told(lambda: _netcdf(asked.folder))
     if asked.command in ("pack", "plan"):
         return _told(partial(_pack if asked.command == "pack" else _plan, asked.file))
-    each = _run if asked.command == "run" else _check
-    return max(_told(partial(each, file)) for file in asked.files)
+    if asked.allow_outside:
+        os.environ["SURVEYKIT_ALLOW_OUTSIDE"] = "1"  # kernels and workers inherit it
+    if asked.command == "run":
+        return _told(lambda: _run(asked.files, asked.jobs, asked.cluster))
+    return max(_told(partial(_check, file)) for file in asked.files)
 
 
-def _told(work: Callable[[], None]) -> int:
+def _positive(text: str) -> int:
+    number = int(text)
+    if number < 1:
+        raise ValueError(text)
+    return number
+
+
+def _told(work: Callable[[], int | None]) -> int:
     """Call `work`; print the user's faults, one line each, and return the exit code."""
     from surveykit.core import InputError
-    from surveykit.swap import SwapError
 
     try:
-        work()
+        return work() or DONE
     except InputError as error:
         for fault in error.faults:
             print(fault, file=sys.stderr)  # noqa: T201
         return USER
-    except SwapError as error:
+    except OSError as error:
         print(error, file=sys.stderr)  # noqa: T201
         return BUG
-    return DONE
+    except KeyboardInterrupt:
+        print("stopped; no report was touched", file=sys.stderr)  # noqa: T201
+        return BUG
 
 
-def _run(path: Path) -> None:
-    from surveykit.intake.params import is_kit_file
+def _run(files: list[Path], jobs: int, cluster: str | None) -> int:
+    from surveykit.season import run_campaigns, summary
 
-    if is_kit_file(path):
-        print(f"{path}: a kit of instruments, nothing to run; passed over")  # noqa: T201
-        return
-    from surveykit.runner import run
-
-    report = run(path, lambda line: print(line, flush=True))  # noqa: T201
-    print(f"report: {_near(report)}")  # noqa: T201
+    outcomes = run_campaigns(files, lambda line: print(line, flush=True),  # noqa: T201
+                             jobs=jobs, cluster=cluster)
+    for one in outcomes:
+        if one.code != DONE:
+            print("\n".join(one.lines), file=sys.stderr)  # noqa: T201
+    if len(outcomes) > 1:
+        print("\n".join(["campaigns:", *summary(outcomes)]))  # noqa: T201
+    for one in outcomes:
+        if one.report is not None:
+            print(f"report: {_near(one.report)}")  # noqa: T201
+    return max((one.code for one in outcomes), default=DONE)
 
 
 def _check(path: Path) -> None:
@@ -98,6 +127,12 @@ def _verify(folder: Path, rerun: bool) -> None:
 
     for line in verify(folder.resolve(), rerun=rerun):
         print(line)  # noqa: T201
+
+
+def _netcdf(folder: Path) -> None:
+    from surveykit.exporting import export
+
+    print(f"wrote {_near(export(folder.resolve()))}")  # noqa: T201
 
 
 def _pack(path: Path) -> None:

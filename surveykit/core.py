@@ -112,6 +112,11 @@ TABLES: dict[str, dict[str, str]] = {
         "campaign": "text", "logger": "text", "file": "text", "surface": "text", "patch": "text",
         "pass": "text", "disposition": "text", "reason": "text", "records": "count",
     },
+    "waterfall": {
+        "campaign": "text", "logger": "text", "file": "text", "column": "text",
+        "surface": "text", "patch": "text", "pass": "text", "disposition": "text",
+        "reason": "text", "records": "count", "remaining": "count",
+    },
     "checks": {
         "campaign": "text", "check": "text", "logger": "text", "column": "text",
         "surface": "text", "pass": "text", "severity": "text", "records": "count",
@@ -128,12 +133,22 @@ TABLES: dict[str, dict[str, str]] = {
         "lower_all": "number", "upper_all": "number", "p_adjusted": "number",
         "could_have_missed": "number", "verdict": "text", "note": "text",
     },
+    "ranks": {
+        "campaign": "text", "quantity": "text", "kind": "text", "surface": "text",
+        "place": "count", "probability": "number",
+    },
     "changes": {
         "campaign": "text", "earlier": "text", "quantity": "text", "kind": "text",
         "surface": "text", "control": "text", "method": "text", "unit": "text",
         "change": "number", "u": "number", "lower": "number", "upper": "number",
         "coverage": "number", "comparability": "text", "could_have_missed": "number",
         "verdict": "text", "note": "text",
+    },
+    "trends": {
+        "campaign": "text", "quantity": "text", "kind": "text", "surface": "text",
+        "control": "text", "method": "text", "unit": "text", "dates": "count", "first": "text",
+        "last": "text", "slope": "number", "u": "number", "lower": "number", "upper": "number",
+        "coverage": "number", "p": "number", "verdict": "text", "note": "text",
     },
     "corrections": {
         "campaign": "text", "surface": "text", "pass": "text", "quantity": "text",

@@ -10,31 +10,13 @@ from surveykit.opening import Survey
 
 PACKAGES = ("surveykit", "numpy", "scipy", "pandas", "pvlib", "pydantic", "PyYAML", "matplotlib",
             "seaborn", "papermill", "nbconvert", "ipykernel")
-
-NOT_CORRECTED = {
-    "temperature": (
-        "Cooling of sunlit ground under a contact head, and gaps under its rim: both stand in the "
-        "uncertainty of contact temperatures. Ground that stores little heat (bark, dry fibre) can "
-        "cool more than that: prefer stand-off there.",
-        "The sky's infrared radiance is modelled from air temperature and humidity, not measured.",
-        "The day's course between passes: half of what the control shows stands in the differences "
-        "of temperature; surfaces are means at their own passes' times."),
-    "albedo": (
-        "The head's own shade and the surroundings in its view: their sizes stand in the "
-        "uncertainty of each albedo.",),
-    "ndvi": (
-        "The surroundings in the view of the red and near-infrared heads: their size stands in "
-        "the uncertainty of each NDVI.",),
-}
-GAINS = {"albedo": "of the shortwave heads", "ndvi": "of the red and near-infrared heads"}
-
+KELVIN = 273.15  # offsets are shown in the unit that is logged
 
 def collect(survey: Survey) -> dict[str, Any]:
     """Return the facts of a run; nothing in it depends on the machine's folders or on the clock."""
     campaign, parameters = survey.campaign, survey.parameters
     statistics, site = campaign.settings.statistics, campaign.site
     path = survey.inputs[0]["path"]
-    quantities = _quantities(survey)
     return {
         "campaign": campaign.campaign, "title": campaign.title, "date": campaign.date,
         "site": {"name": site.name, "latitude": site.latitude, "longitude": site.longitude,
@@ -49,7 +31,7 @@ def collect(survey: Survey) -> dict[str, Any]:
         "control": campaign.comparison.control or "",
         "relevant_change": campaign.relevant_change.model_dump(),
         "earlier": [p.stem for p in parameters.earlier], "notes": list(parameters.notes),
-        "not_corrected": _not_corrected(quantities), "crew": list(campaign.crew),
+        "crew": list(campaign.crew),
         "remarks": campaign.notes.splitlines(),
         "rerun": f"surveykit run {path}",
     }
@@ -58,23 +40,6 @@ def collect(survey: Survey) -> dict[str, Any]:
 def versions() -> dict[str, str]:
     """Return the versions of Python and of the packages that shape the numbers and the page."""
     return {"Python": platform.python_version()} | {name: version(name) for name in PACKAGES}
-
-
-def _not_corrected(quantities: set[str]) -> list[str]:
-    lines = [line for q, some in NOT_CORRECTED.items() if q in quantities for line in some]
-    heads = [words for q, words in GAINS.items() if q in quantities]
-    if heads:
-        lines.append(f"The ratios of the gains {' and '.join(heads)} were not checked by swapping "
-                     "heads or with a panel: the calibrations' own uncertainties stand for them.")
-    return lines
-
-
-def _quantities(survey: Survey) -> set[str]:
-    held = {c.quantity for name in survey.campaign.loggers
-            for c in survey.parameters.channels(name)}
-    words = {"brightness_temperature": "temperature", "longwave_up": "temperature",
-             "shortwave_up": "albedo", "red_up": "ndvi"}
-    return {words[q] for q in held if q in words}
 
 
 def _conditions(survey: Survey) -> list[str]:
@@ -103,6 +68,7 @@ def _instruments(survey: Survey) -> list[dict[str, Any]]:
                 "quantity": c.quantity, "unit": c.unit,
                 "calibration": calibration.id if calibration else "",
                 "calibration_date": calibration.date if calibration else "",
-                "gain": c.gain.value, "u_gain": c.u_gain, "offset": c.offset.value,
+                "gain": c.gain.value, "u_gain": c.u_gain,
+                "offset": round(c.offset.value - (KELVIN if c.unit == "degC" else 0.0), 9),
                 "u_offset": c.u_offset, "status": status})
     return rows

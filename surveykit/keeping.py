@@ -62,11 +62,12 @@ def save_quality(folder: Path, quality: Quality) -> None:
                        "reasons": chosen.reasons, "refusal": chosen.refusal,
                        "dwells": [list(d) for d in chosen.dwells],
                        "partners": list(chosen.partners),
-                       "zenith_deg": _plain(chosen.zenith_deg)}
+                       "zenith_deg": _plain(chosen.zenith_deg), "flags": list(chosen.flags)}
     save_arrays(folder / "marks.npz", arrays)
     save_facts(folder / "passes.json", about)
     save_table(folder / "checks.npz", quality.checks)
     save_table(folder / "ledger.npz", quality.ledger)
+    save_table(folder / "waterfall.npz", quality.waterfall)
 
 
 def load_quality(folder: Path, columns: dict[str, tuple[str, ...]]) -> Quality:
@@ -81,9 +82,9 @@ def load_quality(folder: Path, columns: dict[str, tuple[str, ...]]) -> Quality:
             {logger: arrays[f"partner:{name}:{logger}"] for logger in about["partners"]},
             about["n_window"], about["reasons"], about["refusal"],
             tuple((first, last) for first, last in about["dwells"]),
-            _number(about["zenith_deg"]))
-    return Quality(masks, passes, load_table(folder / "checks.npz"),
-                   load_table(folder / "ledger.npz"))
+            _number(about["zenith_deg"]), tuple(about["flags"]))
+    return Quality(masks, passes, *(load_table(folder / f"{name}.npz")
+                                    for name in ("checks", "ledger", "waterfall")))
 
 
 def _part(arrays: dict[str, NDArray[Any]], part: str) -> dict[str, NDArray[Any]]:

@@ -143,7 +143,8 @@ def conditions(course: Mapping[str, pd.DataFrame]) -> list[str]:
         known = course[frame][column].dropna() if column in course[frame] else pd.Series()
         if len(known):
             digits = 0 if unit in ("%", "W m-2") else 1
-            spans.append(f"{word} {known.min():.{digits}f} to {known.max():.{digits}f} {unit}")
+            ends = dict.fromkeys(f"{end:.{digits}f}" for end in (known.min(), known.max()))
+            spans.append(f"{word} {' to '.join(ends)} {unit}")
     line = f"Measured, means of a minute: {', '.join(spans)}." if spans else ""
     if "air_temperature_degc" not in course["weather"]:
         line = f"{line} Air temperature was not logged.".strip()

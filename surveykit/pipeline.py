@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import hashlib
 from collections.abc import Callable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from functools import cached_property, wraps
 from pathlib import Path
 from typing import Any, TypeVar
@@ -23,6 +23,7 @@ from surveykit.evidence import surfaces as pooling
 from surveykit.evidence.comparability import Date
 from surveykit.evidence.conditions import Day
 from surveykit.evidence.estimates import PassEstimate, estimate_all
+from surveykit.evidence.series import trends
 from surveykit.handover import load_facts, load_table, save_facts, save_table
 from surveykit.intake.aligning import Ingested, align, read_logs
 from surveykit.intake.clocks.evidence import frames as clock_frames
@@ -33,6 +34,7 @@ from surveykit.quality import examine
 from surveykit.statistics.draws import Draws
 
 Tables = dict[str, pd.DataFrame]
+COMPARED = ("differences", "ranks", "changes", "trends")
 STAGES = ("ingest", "quality", "surfaces", "comparison")
 
 
@@ -110,9 +112,8 @@ def quality(survey: Survey) -> Quality:
     ingested = ingest(survey)
     made = examine(survey.parameters, ingested.records, ingested.sheet, ingested.passes)
     notes = _intake_notes(survey, ingested)
-    made = Quality(made.masks, made.passes,
-                   pd.concat([table("checks", notes), made.checks], ignore_index=True),
-                   made.ledger)
+    made = replace(made, checks=pd.concat([table("checks", notes), made.checks],
+                                          ignore_index=True))
     save_quality(folder, made)
     _finish(folder, survey.key)
     return made
@@ -143,12 +144,11 @@ def surfaces(survey: Survey) -> Evidence:
         estimates = handing.from_frames(frames, passes)
         tables = {key: load_table(folder / f"{key}.npz")
                   for key in ("surfaces", "budget", "passes", "dwells", "corrections")}
-        return Evidence(estimates, tables, lambda: pooling.groups(
-            name, estimates, survey.draws(), coverage=coverage))
+        return Evidence(estimates, tables, lambda: _groups(survey, estimates, survey.draws()))
     estimates = estimate_all(day(survey), ingest(survey).passes)
-    groups = pooling.groups(name, estimates, survey.draws(), coverage=coverage)
+    groups = _groups(survey, estimates, survey.draws())
     tables = pooling.pass_tables(name, estimates) | {
-        "surfaces": pooling.surface_table(groups, coverage),
+        "surfaces": pooling.surface_table(groups, coverage, survey.campaign.relevant_change),
         "budget": pooling.budget_table(groups)}
     for key, frame in (tables | handing.to_frames(estimates)).items():
         save_table(folder / f"{key}.npz", frame)
@@ -163,13 +163,13 @@ def comparison(survey: Survey) -> Tables:
     earlier = [open_file(path) for path in survey.parameters.earlier]
     key = hashlib.sha256("".join(s.key for s in (survey, *earlier)).encode()).hexdigest()
     if _fresh(folder, key):
-        return {name: load_table(folder / f"{name}.npz") for name in ("differences", "changes")}
+        return {name: load_table(folder / f"{name}.npz") for name in COMPARED}
     draws = survey.draws()
     now = _date(survey, draws)
     then = tuple(_date(one, draws) for one in earlier)
     _refuse_later(now, then)
-    made = {"differences": compare.differences(now, draws),
-            "changes": compare.changes(now, then, draws)}
+    made = {"differences": compare.differences(now, draws), "ranks": compare.ranks(now, draws),
+            "changes": compare.changes(now, then, draws), "trends": trends(now, then, draws)}
     for name, frame in made.items():
         save_table(folder / f"{name}.npz", frame)
     _finish(folder, key)
@@ -186,7 +186,7 @@ def series(survey: Survey) -> pd.DataFrame:
 def all_tables(survey: Survey) -> Tables:
     """Return every published table of a survey whose stages have run."""
     marked = quality(survey)
-    tables = {"checks": marked.checks, "ledger": marked.ledger,
+    tables = {"checks": marked.checks, "ledger": marked.ledger, "waterfall": marked.waterfall,
               "clocks": load_table(survey.run_folder / "ingest" / "clocks.npz"),
               **surfaces(survey).tables, **comparison(survey)}
     return {name: require(frame, name) for name, frame in tables.items()}
@@ -196,9 +196,16 @@ def _date(survey: Survey, draws: Draws) -> Date:
     evidence, own = surfaces(survey), survey.draws()
     found = evidence.groups
     if (own.seed, own.size) != (draws.seed, draws.size):
-        found = pooling.groups(survey.campaign.campaign, evidence.estimates, draws,
-                               coverage=survey.campaign.settings.statistics.coverage)
+        found = _groups(survey, evidence.estimates, draws)
     return Date(survey.parameters, {group.key: group for group in found})
+
+
+def _groups(survey: Survey, estimates: tuple[PassEstimate, ...],
+            draws: Draws) -> tuple[pooling.Group, ...]:
+    statistics = survey.campaign.settings.statistics
+    return pooling.groups(survey.campaign.campaign, estimates, draws,
+                          coverage=statistics.coverage,
+                          between_passes=statistics.between_passes)
 
 
 def _refuse_later(now: Date, earlier: tuple[Date, ...]) -> None:

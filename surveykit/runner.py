@@ -176,9 +176,11 @@ def _execute_one(survey: Survey, folder: Path, kernels: Kernels, name: str) -> f
         if isinstance(kind, type) and issubclass(kind, OSError):
             raise OSError(f"notebook {name}: {error.evalue}") from None
         raise
-    except DeadKernelError:
-        raise KernelGoneError(f"notebook {name}: the system stopped its kernel, as when memory "
-                              "runs out") from None
+    except RuntimeError as error:
+        if isinstance(error, DeadKernelError) or "Kernel died" in str(error):
+            raise KernelGoneError(f"notebook {name}: the system stopped its kernel, as when memory "
+                                  "runs out") from None
+        raise
     finally:
         kernel.end()
     return time.perf_counter() - begun

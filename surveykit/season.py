@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import errno
 import multiprocessing
 import os
 import threading
@@ -29,6 +30,7 @@ from surveykit.opening import open_file
 
 DONE, BUG, USER = 0, 1, 2
 TRIES = 2  # of a campaign whose worker died
+STORAGE = {errno.ENOSPC, errno.EDQUOT, errno.EROFS, errno.EACCES, errno.EPERM, errno.EFBIG}
 UNTOUCHED = "nothing of an earlier report was touched"
 Say = Callable[[str], None]
 Work = Callable[[Path, bool], "Outcome"]
@@ -62,7 +64,7 @@ def work(path: Path, only_if_needed: bool, *, lanes: int | None = None,
     except InputError as error:
         return made(USER, "input at fault", time.perf_counter() - begun, tuple(error.faults))
     except OSError as error:
-        return made(BUG, "not written", time.perf_counter() - begun, (storage(error),))
+        return made(BUG, "not written", time.perf_counter() - begun, (f"{path.name}: {storage(error)}",))
     except Exception:
         return made(BUG, "bug", time.perf_counter() - begun,
                     (f"{path}: a bug; please report it:", traceback.format_exc()))
@@ -70,10 +72,9 @@ def work(path: Path, only_if_needed: bool, *, lanes: int | None = None,
 
 def storage(error: OSError) -> str:
     """Return a sentence on something that could not be read or written."""
-    if error.filename is None:
-        return f"{error}; {UNTOUCHED}"
-    return f"{error.filename}: {error.strerror}; make room or give access, and run again; " \
-           f"{UNTOUCHED}"
+    where = f"{error.filename}: " if error.filename else ""
+    cure = "; make room or give access, then run again" if error.errno in STORAGE else ""
+    return f"{where}{error.strerror or error}{cure}; {UNTOUCHED}"
 
 
 def run_all(paths: Sequence[Path], say: Say, *, jobs: int = 1, cluster: str | None = None,
@@ -116,6 +117,24 @@ def run_all(paths: Sequence[Path], say: Say, *, jobs: int = 1, cluster: str | No
                         say, jobs=width, renew=pool.renew)
     finally:
         pool.close()
+
+
+def run_campaigns(paths: Sequence[Path], say: Say, *, jobs: int = 1, cluster: str | None = None,
+                  notebooks: tuple[str, ...] = runner.NOTEBOOKS) -> list[Outcome]:
+    """As `run_all`, and write reports/index.html last.
+
+    Raises
+    ------
+    InputError
+        If the cluster cannot be reached.
+    """
+    outcomes = run_all(paths, say, jobs=jobs, cluster=cluster, notebooks=notebooks)
+    if any(one.report is not None for one in outcomes):
+        from surveykit.index import write_index
+
+        for root in {one.report.parents[2] for one in outcomes if one.report is not None}:
+            write_index(root)
+    return outcomes
 
 
 def summary(outcomes: Iterable[Outcome]) -> list[str]:
@@ -221,7 +240,8 @@ class _Processes:
         self.executor: Executor = self._new()
 
     def _new(self) -> Executor:
-        return ProcessPoolExecutor(self.jobs, multiprocessing.get_context("spawn"), _end_with_parent)
+        return ProcessPoolExecutor(self.jobs, multiprocessing.get_context("spawn"),
+                                   _end_with_parent)
 
     def submit(self, one: Work, path: Path, only_if_needed: bool) -> Future[Outcome]:
         self.renew()

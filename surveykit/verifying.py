@@ -62,6 +62,11 @@ def verify(folder: Path, *, rerun: bool = False) -> list[str]:
     return [*lines, *_again(survey, folder, kept, shown)] if rerun else lines
 
 
+def params_file(folder: Path) -> str:
+    """Return the parameter file that a report was made from, from the project folder."""
+    return str(_read(folder, folder.name)["params_file"])
+
+
 def _read(folder: Path, shown: str) -> dict[str, Any]:
     try:
         kept: dict[str, Any] = json.loads((folder / "run.json").read_text(encoding="utf-8"))

@@ -1,11 +1,14 @@
-"""Albedo of a pass: ratio of sums of an up- and a down-looking head."""
+"""Albedo of a pass: ratio of sums of an up- and a down-looking head, corrected step by step."""
 
 from __future__ import annotations
 
 import numpy as np
 
-from surveykit.core import Input
-from surveykit.evidence.conditions import Day, Sky
+from surveykit.core import FloatArray, Input
+from surveykit.evidence.conditions import NS, Day, Sky
+from surveykit.evidence.corrections import Correction, correct
+from surveykit.evidence.heads import class_inputs, directional_limit, hidden_zero_u
+from surveykit.evidence.intercalibration import ratio_input, swapped
 from surveykit.evidence.parts import (
     NotEvaluated,
     PassValue,
@@ -17,67 +20,137 @@ from surveykit.evidence.parts import (
     series,
     zero,
 )
-from surveykit.evidence.views import albedo_around, foreign_ground, own_shade
-from surveykit.intake.params.defaults import AlbedoSettings
+from surveykit.evidence.views import albedo_around, foreign_ground, lane_effect, own_shade, treat
 from surveykit.intake.passes import Pass
 from surveykit.physics.shortwave import directional_u, ratio_of_sums
 from surveykit.statistics.series import mean_of_series
 
 GROUND_SHARE = 1 / 3  # of the sky head's hidden zero, for the head that looks at the ground
+LOWEST = 0.02  # albedo below which something is wrong, as no ground is so dark
 
 
 def albedo(day: Day, this: Pass, sky: Sky) -> PassValue:
-    """Return an albedo pass with its zero, direction, level, shade and footprint budgeted."""
+    """Return an albedo pass: darks, gain ratio, surroundings and shade corrected, the rest kept."""
     _, up = series(day, this, "shortwave_up")
     _, down = series(day, this, "shortwave_down")
+    raw = [raw_series(day, this, q)[1] for q in ("shortwave_up", "shortwave_down")]
     settings = day.parameters.campaign.settings.albedo
     head_up, head_down = this.channels["shortwave_up"], this.channels["shortwave_down"]
-    value = float(ratio_of_sums(up, down))
-    if not np.isfinite(value):
-        raise NotEvaluated("the irradiance of the pass does not sum to more than zero")
-    if not 0 <= value <= 1:
-        raise NotEvaluated(f"a share of {value:.2f} of the light comes back, which cannot be: "
-                           "check which head looks up, and their gains and darks")
+    zenith = day.quality.passes[this.name].zenith_deg
+    inputs, flags = _inputs(day, this, sky, up, down)
+    ratio = ratio_of_sums(up, down) / inputs["gain_ratio"].value
+    _refuse_impossible(ratio)
+    stated = day.parameters.campaign.surfaces[this.surface].around is not None
+    inputs, more = treat(inputs, ratio, settings, stated)
+    scope = f"{day.name}:{this.surface}"
+    steps = [Correction("dark readings", {"up": float(raw[0].mean()), "down": float(raw[1].mean())},
+                        settings.correct_darks, "albedo.correct_darks", f"{scope}:darks"),
+             Correction("gain ratio", {"gain_ratio": 1.0}, True, "albedo.correct_gain_ratio",
+                        f"{scope}:gain ratio"),
+             Correction("surroundings", {"surroundings_corrected": 0.0}, True,
+                        "albedo.correct_surroundings", f"{scope}:surroundings"),
+             Correction("own shade", {"shade_corrected": 0.0}, True, "albedo.correct_self_shade",
+                        f"{scope}:shade")]
+    if settings.normalise_zenith:
+        inputs |= _normalised(day, this, zenith)
+        steps.append(Correction(f"sun at {settings.normalise_zenith_deg:g} degrees zenith",
+                                {"reference_zenith_deg": zenith}, True, "albedo.normalise_zenith",
+                                f"{scope}:zenith"))
+    done = [s for s in steps if not s.on or any(
+        inputs[name].value != value for name, value in s.without.items())]
+    made = correct("albedo", inputs, done)
+    value = made.steps[-1][1]
+    if value < LOWEST:
+        more += ("darker than any ground",)
+    residual = (up - up.mean() / down.mean() * down) / down.mean()
+    within = mean_of_series(residual, unit="1", method="ratio of sums")
+    return PassValue(float(ratio_of_sums(*raw)), value, within.u, within.n_eff,
+                     tuple(made.inputs.values()),
+                     calibration_flags(day, [head_up, head_down]) + flags + more + made.flags,
+                     made.steps)
+
+
+def _inputs(day: Day, this: Pass, sky: Sky, up: FloatArray,
+            down: FloatArray) -> tuple[dict[str, Input], tuple[str, ...]]:
+    settings = day.parameters.campaign.settings.albedo
+    head_up, head_down = this.channels["shortwave_up"], this.channels["shortwave_down"]
     zenith = day.quality.passes[this.name].zenith_deg
     around, flags = albedo_around(day, this)
     foreign, more = foreign_ground(day, this, head_up, around)
-    shade, most = own_shade(day, this, head_up, zenith)
+    shade, most = own_shade(day, this, head_up, sky, zenith)
+    gains, last = _gains(day, this)
+    hidden = hidden_zero_u(head_down, settings)
     inputs = [
-        fixed("up", float(up.mean())), fixed("down", float(down.mean())), *foreign, *shade,
-        gain(head_up, "up_gain_error"), gain(head_down, "down_gain_error"),
-        zero(day, head_up, "up_zero_error", settings.zero_offset_u_w_m2 * GROUND_SHARE),
-        zero(day, head_down, "down_zero_error", settings.zero_offset_u_w_m2),
+        fixed("up", float(up.mean())), fixed("down", float(down.mean())), *foreign, *shade, *gains,
+        zero(day, head_up, "up_zero_error", hidden * GROUND_SHARE),
+        zero(day, head_down, "down_zero_error", hidden),
         Input("directional_error", 0.0, settings.beam_fraction * float(
-            directional_u(zenith, settings.directional_limit_w_m2)),
+            directional_u(zenith, directional_limit(head_down, settings))),
               f"{head_down.gain_scope}:direction", "directional response of the upper head",
               "rectangular"),
         Input("levelling_error", 0.0, settings.beam_fraction * float(
             np.tan(np.radians(zenith)) * np.radians(settings.levelling_u_deg) / np.sqrt(2)),
               pass_scope(day, this), "levelling of the upper head in the hand"),
+        *class_inputs(day, this, head_up, head_down),
     ]
-    flags += more + most + _share_flags(inputs, settings)
-    if all(day.darks[c.logger, c.column] is None for c in (head_up, head_down)):
+    flags += more + most + last + _circumstances(day, this, down, zenith)
+    return {i.name: i for i in inputs}, flags
+
+
+def _gains(day: Day, this: Pass) -> tuple[list[Input], tuple[str, ...]]:
+    """Return the gain ratio found by swapping the heads, or the errors of both gains."""
+    settings = day.parameters.campaign.settings.albedo
+    up, down = this.channels["shortwave_up"], this.channels["shortwave_down"]
+    own = [fixed("gain_ratio", 1.0), gain(up, "up_gain_error"), gain(down, "down_gain_error")]
+    found = swapped(day, up, down, "albedo")
+    if found is None:
+        return own, ("gain ratio not checked by swapping",)
+    if not settings.correct_gain_ratio:
+        return own, ("not corrected, settings.albedo.correct_gain_ratio is off: gain ratio",)
+    if found.sd > settings.swap_max_sd:
+        return own, (f"swaps not used: their ratios scatter by more than "
+                     f"{settings.swap_max_sd:.0%}",)
+    flags = ("fewer swaps than recommended",) if found.n < settings.swap_min_pairs else ()
+    return [ratio_input(day, "gain_ratio", found, up, "gain ratio by swapping the heads"),
+            fixed("up_gain_error", 0.0), fixed("down_gain_error", 0.0)], flags
+
+
+def _circumstances(day: Day, this: Pass, down: FloatArray, zenith: float) -> tuple[str, ...]:
+    """Return flags about darks, the sun's height, the lanes' direction and slow heads."""
+    settings = day.parameters.campaign.settings.albedo
+    heads = this.channels["shortwave_up"], this.channels["shortwave_down"]
+    flags: tuple[str, ...] = ()
+    if all(day.darks[c.logger, c.column] is None for c in heads):
         flags += ("no dark reading",)
     if zenith > settings.zenith_qualified_deg:
         flags += (f"sun lower than {90 - settings.zenith_qualified_deg:.0f} degrees: "
                   "indicative only",)
     elif zenith > settings.zenith_standard_deg:
         flags += (f"sun lower than {90 - settings.zenith_standard_deg:.0f} degrees",)
-    flags += ("gain ratio not checked by swapping", "surroundings and shade not corrected")
-    residual = (up - value * down) / down.mean()
-    within = mean_of_series(residual, unit="1", method="ratio of sums")
-    raw = ratio_of_sums(*(raw_series(day, this, q)[1] for q in ("shortwave_up", "shortwave_down")))
-    return PassValue(raw, value, within.u, within.n_eff, tuple(inputs),
-                     calibration_flags(day, [head_up, head_down]) + flags,
-                     (("raw", raw), ("dark readings", value)))
+    if abs(lane_effect(day, this, down)) > settings.lane_effect_max:
+        flags += ("the upper head leans with the lanes' direction",)
+    if this.lanes and np.isfinite(this.length_m):
+        speed = this.length_m * this.lanes / ((this.stop_ns - this.start_ns) / NS)
+        if speed * max(c.time_constant_s for c in heads) > this.length_m / 4:
+            flags += ("heads too slow for the walk",)
+    if this.operator_side in ("sun", "across"):
+        flags += ("the operator stood beside or towards the sun",)
+    return flags
 
 
-def _share_flags(inputs: list[Input], settings: AlbedoSettings) -> tuple[str, ...]:
-    """Return flags about footprint and shade; refuse a pass that sees too little of its patch."""
-    known = {i.name: i.value for i in inputs}
-    share, shade = known["footprint_share"], known["shade_share"]
-    if 1 - share + shade > settings.max_shade_contamination:
-        raise NotEvaluated(
-            f"the head sees {1 - share:.0%} foreign ground and {shade:.0%} of its own shade, "
-            f"more than {settings.max_shade_contamination:.0%} together: change height_cm or patch")
-    return ("small footprint share",) if share < settings.min_footprint else ()
+def _normalised(day: Day, this: Pass, zenith: float) -> dict[str, Input]:
+    settings = day.parameters.campaign.settings.albedo
+    return {
+        "zenith_deg": fixed("zenith_deg", zenith),
+        "reference_zenith_deg": fixed("reference_zenith_deg", settings.normalise_zenith_deg),
+        "zenith_dependence": Input(
+            "zenith_dependence", settings.zenith_dependence, settings.zenith_dependence_u,
+            f"{this.surface}:zenith dependence", "dependence of albedo on the sun's height")}
+
+
+def _refuse_impossible(ratio: float) -> None:
+    if not np.isfinite(ratio):
+        raise NotEvaluated("the irradiance of the pass does not sum to more than zero")
+    if not 0 <= ratio <= 1:
+        raise NotEvaluated(f"a share of {ratio:.2f} of the light comes back, which cannot be: "
+                           "check which head looks up, and their gains and darks")

@@ -74,7 +74,7 @@ def _rows(now: Date, then: Date, key: tuple[str, str, str], control: str,
         return rows
     grade = comparability(now, then, new, old, controls)
     lead_row = base | {"method": lead, "judged": True, "comparability": grade.word,
-                       "note": "; ".join(grade.reasons)}
+                       "note": "; ".join([*interventions(now, then, surface), *grade.reasons])}
     if grade.letter == "C":
         lead_row["verdict"] = NOT_COMPARABLE
     if controls and quantity == "temperature":
@@ -88,7 +88,7 @@ def _rows(now: Date, then: Date, key: tuple[str, str, str], control: str,
                  zenith_term(now, *controls, draws, -1.0)]
         lead_row |= _summary(now, _double(new, old, controls, terms))
     else:
-        terms = [zenith_term(now, new, old, draws, 1.0), _drift(now, then, new, old, draws)]
+        terms = [zenith_term(now, new, old, draws, 1.0), drift_term(now, then, new, old, draws)]
         made = combine(lambda a, b, *t: a - b + sum(t), new.result, old.result, *terms)
         lead_row |= _summary(now, made)
     return [lead_row, *rows]
@@ -116,7 +116,7 @@ def _absent(now: Date, then: Date, key: tuple[str, str, str]) -> dict[str, Any]:
 def _summary(now: Date, made: Result) -> dict[str, Any]:
     s = summarise(made, now.parameters.campaign.settings.statistics.coverage)
     return {"change": s.value, "u": s.u, "lower": s.lower, "upper": s.upper, "p": s.p_two_sided,
-            "dof": s.dof}
+            "dof": s.dof, "result": made}
 
 
 def _known(value: float, deviation: FloatArray) -> Result:
@@ -132,28 +132,42 @@ def _double(new: Group, old: Group, controls: tuple[Group, Group],
                    controls[0].result, controls[1].result, *terms)
 
 
-def _air(group: Group, draws: Draws) -> Result:
+def air_of(group: Group, draws: Draws) -> Result:
     """Return the air temperature at a group's passes as a result, its error shared by scope."""
     inputs: list[Input] = [p.air for p in group.used if p.air is not None]
     one = inputs[0]
     return _known(group.mean("air_k"), one.u * draws.standard(one.scope, one.distribution))
 
 
+def model_share(now: Date, surface: str, letter: str) -> float:
+    """Return the model-form uncertainty of the ratio to the control, as a share of its excess."""
+    limits = now.parameters.campaign.settings.comparison
+    share = limits.model_u_matched if letter == "A" else limits.model_u_partly
+    green = now.groups.get((surface, "ndvi", ""))
+    twice = green is not None and green.value > limits.vegetated_ndvi
+    return share * 2 if twice else share
+
+
+def interventions(now: Date, then: Date, surface: str) -> list[str]:
+    """Return what was done to a surface after one date and up to another, as stated."""
+    days = [date.parameters.campaign.date for date in (then, now)]
+    stated = {(i.date, i.text) for date in (then, now)
+              for i in date.parameters.campaign.interventions
+              if i.surface == surface and days[0] < i.date <= days[1]}
+    return [f"{day}: {text}" for day, text in sorted(stated)]
+
+
 def _ratio(now: Date, then: Date, new: Group, old: Group, controls: tuple[Group, Group],
            grade: Class, draws: Draws) -> Result:
-    limits = now.parameters.campaign.settings.comparison
-    share = limits.model_u_matched if grade.letter == "A" else limits.model_u_partly
-    green = now.groups.get((new.surface, "ndvi", ""))
-    if green is not None and green.value > limits.vegetated_ndvi:
-        share *= 2
+    share = model_share(now, new.surface, grade.letter)
     excess = abs(controls[0].value - controls[0].mean("air_k"))
     form = _known(0.0, share * excess * draws.standard(
         f"{now.name}:{then.name}:{new.surface}:ratio to control"))
     assert new.result and old.result and controls[0].result and controls[1].result  # noqa: PT018
     return combine(
-        lambda *x: ratio_to_control(*x[:8]) + x[8], new.result, _air(new, draws),
-        controls[0].result, _air(controls[0], draws), old.result, _air(old, draws),
-        controls[1].result, _air(controls[1], draws), form)
+        lambda *x: ratio_to_control(*x[:8]) + x[8], new.result, air_of(new, draws),
+        controls[0].result, air_of(controls[0], draws), old.result, air_of(old, draws),
+        controls[1].result, air_of(controls[1], draws), form)
 
 
 def zenith_term(date: Date, new: Group, old: Group, draws: Draws, sign: float) -> Result:
@@ -170,7 +184,7 @@ def zenith_term(date: Date, new: Group, old: Group, draws: Draws, sign: float) -
     return _known(0.0, size * draws.standard(f"zenith dependence:{new.surface}"))
 
 
-def _drift(now: Date, then: Date, new: Group, old: Group, draws: Draws) -> Result:
+def drift_term(now: Date, then: Date, new: Group, old: Group, draws: Draws) -> Result:
     """Return what the instrument can have drifted between the dates where no control shows it."""
     rate = now.parameters.campaign.settings.comparison.drift_per_year
     years = abs(np.datetime64(now.parameters.campaign.date)

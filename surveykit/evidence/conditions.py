@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cached_property
+from typing import Protocol
 
 import numpy as np
 
@@ -16,6 +17,18 @@ from surveykit.intake.params import Channel, Parameters
 from surveykit.intake.passes import Pass
 from surveykit.physics.sun import Sun, sun_track
 from surveykit.statistics.series import mean_of_series
+
+
+class Span(Protocol):
+    """A stretch of time [ns UTC]: a pass, or a row of the field sheet."""
+
+    @property
+    def start_ns(self) -> int:
+        """Where it begins."""
+
+    @property
+    def stop_ns(self) -> int:
+        """Where it ends."""
 
 
 @dataclass(frozen=True)
@@ -47,6 +60,7 @@ class Day:
     records: dict[str, Records]
     sheet: Sheet
     quality: Quality
+    passes: tuple[Pass, ...] = ()
 
     @property
     def name(self) -> str:
@@ -76,7 +90,7 @@ class Day:
         good = mask == 0
         return log.time_ns[first:last][good], log.channels[channel.column][first:last][good]
 
-    def weather(self, quantity: str, this: Pass) -> Input | None:
+    def weather(self, quantity: str, this: Span) -> Input | None:
         """Return a weather quantity [SI] during a pass, or None where nothing tells it.
 
         Logged readings inside the pass are averaged; otherwise the neighbours are interpolated,

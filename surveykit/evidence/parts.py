@@ -13,6 +13,7 @@ from surveykit.evidence.conditions import Day
 from surveykit.intake.params import Channel
 from surveykit.intake.passes import Pass
 
+BANDS = ("red_up", "red_down", "nir_up", "nir_down")
 HALF_WIDTH = 1 / np.sqrt(3.0)  # standard uncertainty of a rectangular distribution of half-width 1
 
 

@@ -7,6 +7,7 @@ from collections.abc import Mapping, Sequence
 import numpy as np
 from scipy.special import fdtrc
 
+from surveykit.core import FloatArray
 from surveykit.evidence.estimates import PassEstimate
 from surveykit.evidence.moving import Moves
 from surveykit.statistics.pooling import Common, common_scatter
@@ -20,7 +21,7 @@ class Spreads:
 
     def __init__(self, campaign: str, found: Mapping[Key, Sequence[PassEstimate]]) -> None:
         self._own: dict[Key, tuple[float, int]] = {}
-        units: dict[tuple[str, str], list[tuple[object, object]]] = {}
+        units: dict[tuple[str, str], list[tuple[FloatArray, FloatArray]]] = {}
         for key, passes in found.items():
             used = tuple(p for p in passes if p.evaluated)
             own_u, square, dof = Moves(campaign, used).own_u, 0.0, 0
@@ -45,10 +46,9 @@ class Spreads:
         square, dof = self._own[key]
         others = [v for k, v in self._own.items() if k[1:] == key[1:] and k != key]
         rest, rest_dof = sum(s for s, _ in others), sum(d for _, d in others)
-        every = square + rest
+        every = float(np.sqrt((square + rest) / (dof + rest_dof)))
         unit = " K" if key[1] == "temperature" else ""
-        text = (f"interval borrows the common spread of passes, {np.sqrt(every / (dof + rest_dof)):.2g}"
-                f"{unit}")
+        text = (f"interval borrows the common spread of passes, {every:.2g}{unit}")
         if not dof:
             return f"{text} (its own is not known)"
         text += f" (its own {np.sqrt(square / dof):.2g}{unit})"

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from typing import Any
 
@@ -16,6 +16,7 @@ from surveykit.evidence.budget import budget_rows, units_needed
 from surveykit.evidence.estimates import UNITS, PassEstimate, display
 from surveykit.evidence.moving import Moves
 from surveykit.evidence.spreads import Spreads, rows_by_patch
+from surveykit.intake.params.sections import RelevantChange
 from surveykit.statistics.draws import Draws, Result, Sampling, Summary, observed, summarise
 from surveykit.statistics.pooling import Common, Pooled, pool
 from surveykit.statistics.simultaneous import end_error
@@ -185,7 +186,7 @@ def _assert_floor(group: Group, summary: Summary, coverage: float) -> None:
 
 
 def surface_table(found: Sequence[Group], coverage: float,
-                  wanted: Mapping[str, float] | None = None) -> pd.DataFrame:
+                  wanted: RelevantChange | None = None) -> pd.DataFrame:
     """Return the table `surfaces`; temperatures in degC, their u in K.
 
     `wanted` is the half-width asked for by quantity; `needed` says how many passes (patches where
@@ -209,7 +210,7 @@ def surface_table(found: Sequence[Group], coverage: float,
                     "upper": display(s.upper, g.quantity), "k": s.k, "dof": s.dof,
                     "end_error": end_error(g.result.total, coverage)}
             if wanted and g.pooled and g.units_u is not None:
-                row["needed"] = units_needed(g.budget, g.pooled, g.units_u, wanted[g.quantity],
+                row["needed"] = units_needed(g.budget, g.pooled, g.units_u, wanted.of(g.quantity),
                                              coverage)
         rows.append(row)
     return table("surfaces", rows)

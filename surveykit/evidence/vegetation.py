@@ -6,7 +6,10 @@ import numpy as np
 
 from surveykit.core import Input
 from surveykit.evidence.conditions import Day, Sky
+from surveykit.evidence.corrections import Correction, correct
+from surveykit.evidence.intercalibration import over_panel, panel_u, ratio_input, swapped
 from surveykit.evidence.parts import (
+    BANDS,
     NotEvaluated,
     PassValue,
     calibration_flags,
@@ -18,10 +21,10 @@ from surveykit.evidence.parts import (
 )
 from surveykit.evidence.views import foreign_ground
 from surveykit.intake.passes import Pass
-from surveykit.physics.vegetation import ndvi_of_sums
+from surveykit.physics.vegetation import ndvi, ndvi_of_sums
 from surveykit.statistics.series import mean_of_series
 
-BANDS = ("red_up", "red_down", "nir_up", "nir_down")
+OTHER_QUESTION = 0.02  # by which the records' mean index may differ before it is said
 
 
 def vegetation_index(day: Day, this: Pass, sky: Sky) -> PassValue:
@@ -31,33 +34,93 @@ def vegetation_index(day: Day, this: Pass, sky: Sky) -> PassValue:
     """
     read = {name: series(day, this, name)[1] for name in BANDS}
     settings = day.parameters.campaign.settings.ndvi
-    value = ndvi_of_sums(*(read[name] for name in BANDS))
-    if not np.isfinite(value):
+    if not np.isfinite(ndvi_of_sums(*(read[name] for name in BANDS))):
         raise NotEvaluated("red and near-infrared of the pass do not sum to more than zero")
     around = Input("around_ndvi", settings.around_ndvi, settings.around_ndvi_u,
                    f"{day.name}:{this.surface}:around ndvi", "NDVI around the patch, assumed")
     inputs, flags = foreign_ground(day, this, this.channels["red_up"], around)
+    inputs = [i for i in inputs if i.name != "footprint_error"]
     for name in BANDS:
         channel = this.channels[name]
         place = channel.logger, channel.column
         mean = float(read[name].mean())
         known = zero(day, channel, f"{name}_zero_error", settings.dark_u * day.largest[place])
-        inputs += [fixed(name, mean), gain(channel, f"{name}_gain_error"), known]
+        inputs += [fixed(name, mean), known]
         if day.darks[place] is None:
             flags += ("no dark reading",)
         if name.endswith("_up") and known.u > mean / settings.min_dark_ratio:
             raise NotEvaluated(
                 f"{channel.column} reads {mean:.3g}, less than {settings.min_dark_ratio:g} times "
                 "the uncertainty of its zero: too little light for an index")
-    flags += ("gain ratio not checked by panel or swap", "surroundings not corrected")
+    gains, more = _gains(day, this)
+    raw = {name: raw_series(day, this, name)[1] for name in BANDS}
+    made = correct("ndvi", {i.name: i for i in (*inputs, *gains)}, [
+        Correction("dark readings", {name: float(raw[name].mean()) for name in BANDS},
+                   settings.correct_darks, "ndvi.correct_darks",
+                   f"{day.name}:{this.surface}:ndvi darks"),
+        *([Correction("gain ratio", {"red_ratio": 1.0, "nir_ratio": 1.0}, True,
+                      "ndvi.correct_gain_ratio", "")] if _has_ratio(gains) else [])])
+    flags += (*more, *made.flags, "surroundings not corrected", *_mean_of_ratios(read))
     red, nir = (read[f"{band}_up"] / read[f"{band}_down"].mean() for band in ("red", "nir"))
     r, n = float(red.mean()), float(nir.mean())
     lean = 2 / (r + n) ** 2
     steady = lean * (r * (nir - n * read["nir_down"] / read["nir_down"].mean())
                      - n * (red - r * read["red_down"] / read["red_down"].mean()))
     within = mean_of_series(steady, unit="1", method="ratio of sums")
-    raw = ndvi_of_sums(*(raw_series(day, this, name)[1] for name in BANDS))
-    return PassValue(raw, value, within.u, within.n_eff, tuple(inputs),
+    return PassValue(float(ndvi_of_sums(*raw.values())), made.steps[-1][1], within.u, within.n_eff,
+                     tuple(made.inputs.values()),
                      calibration_flags(day, [this.channels[b] for b in BANDS])
-                     + tuple(dict.fromkeys(flags)),
-                     (("raw", raw), ("dark readings", value)))
+                     + tuple(dict.fromkeys(flags)), made.steps)
+
+
+def _has_ratio(gains: list[Input]) -> bool:
+    return any(i.name in ("red_ratio", "nir_ratio") for i in gains)
+
+
+def _gains(day: Day, this: Pass) -> tuple[list[Input], tuple[str, ...]]:
+    """Return the heads' gain ratios by panel, swap or certificate, or the errors of the gains."""
+    settings = day.parameters.campaign.settings
+    own = [gain(this.channels[name], f"{name}_gain_error") for name in BANDS]
+    none = [fixed(f"{name}_gain_error", 0.0) for name in BANDS]
+    pairs = {band: (this.channels[f"{band}_up"], this.channels[f"{band}_down"])
+             for band in ("red", "nir")}
+    found = {band: over_panel(day, *pair) for band, pair in pairs.items()}
+    source = "gain ratio over a panel"
+    if None in found.values():
+        found = {band: swapped(day, *pair, "ndvi") for band, pair in pairs.items()}
+        source = "gain ratio by swapping the heads"
+        if None not in found.values() and any(
+                up.half_angle_deg != down.half_angle_deg for up, down in pairs.values()):
+            return own, ("swaps not used: the heads have different views",)
+    ratios = {band: one for band, one in found.items() if one is not None}
+    certificate = pairs["nir"][0].band_ratio
+    if len(ratios) < 2 and certificate is None:
+        return own, ("gain ratio not checked by panel or swap",)
+    if not settings.ndvi.correct_gain_ratio:
+        return own, ("not corrected, settings.ndvi.correct_gain_ratio is off: gain ratio",)
+    if len(ratios) < 2 and certificate is not None:
+        return [*none, fixed("red_ratio", 1.0),
+                Input("nir_ratio", certificate.value, certificate.u,
+                      f"{pairs['nir'][0].gain_scope}:band ratio",
+                      f"ratio of the bands' gains ({certificate.source})")], ()
+    if any(one.sd > settings.albedo.swap_max_sd for one in ratios.values()):
+        return own, (f"{source.split()[-2]} not used: its ratios scatter by more than "
+                     f"{settings.albedo.swap_max_sd:.0%}",)
+    made = [ratio_input(day, f"{band}_ratio", one, pairs[band][0], source)
+            for band, one in ratios.items()]
+    if "panel" in source:
+        made.append(Input("panel_error", 0.0, panel_u(day, *pairs["red"]), f"{day.name}:panel",
+                          "reflectance of the panel"))
+    few = min(one.n for one in ratios.values()) < settings.albedo.swap_min_pairs
+    return [*none, *made], ("fewer swaps than recommended",) if few and "swap" in source else ()
+
+
+def _mean_of_ratios(read: dict[str, np.ndarray]) -> tuple[str, ...]:
+    """Return a flag where the records' mean index answers another question than the patch's."""
+    with np.errstate(divide="ignore", invalid="ignore"):
+        each = ndvi(read["red_up"] / read["red_down"], read["nir_up"] / read["nir_down"])
+    mean = float(np.nanmean(each)) if np.isfinite(each).any() else float("nan")
+    whole = ndvi_of_sums(*(read[name] for name in BANDS))
+    if abs(mean - whole) > OTHER_QUESTION:
+        return (f"mean of the records' indices {mean:.3f}: bright and green parts mix",)
+    return ()

@@ -1,23 +1,28 @@
-"""What a head that looks down sees of its patch and of its own shade, and what height does to it.
-
-Neither is corrected yet: both stand in the budget as inputs that are zero by expectation.
-"""
+"""What a head that looks down sees of its patch and its own shade, and what height does to it."""
 
 from __future__ import annotations
 
 from collections.abc import Callable
-from functools import partial
 
 import numpy as np
 
-from surveykit.core import Input
-from surveykit.evidence.conditions import Day
+from surveykit.core import FloatArray, Input
+from surveykit.evidence.conditions import Day, Sky
 from surveykit.evidence.parts import HALF_WIDTH, NotEvaluated, fixed, pass_scope, surface_scope
 from surveykit.intake.params import Channel
+from surveykit.intake.params.defaults import AlbedoSettings
 from surveykit.intake.passes import Pass
-from surveykit.physics.footprint import disc_share, limited_share, rectangle_share, self_shade
+from surveykit.intake.paths import Path, walk
+from surveykit.physics.footprint import (
+    disc_share,
+    limited_share,
+    rectangle_share,
+    self_shade,
+)
+from surveykit.physics.instrument import rod_shade
 
 HEMISPHERE_DEG = 90.0  # half-angle of a head that states none: it sees most of what is around
+ROD_TO_SUN_DEG = {"sun": 0.0, "across": 90.0, "away": 180.0}
 
 
 def footprint_share(this: Pass, head: Channel, height_m: float) -> float:
@@ -42,42 +47,154 @@ def footprint_share(this: Pass, head: Channel, height_m: float) -> float:
     return float(rectangle_share(-half_length, half_length, -half_width, half_width, height_m))
 
 
+def path_shares(day: Day, this: Pass, head: Channel, height_m: float) -> FloatArray | None:
+    """Return the share of each record of a walked pass, NaN in turns; None where no path is known.
+
+    Only for heads that see the whole half-space: a cone stays inside the patch or is centred.
+    """
+    where = _path(day, this)
+    if where is None or (head.half_angle_deg or HEMISPHERE_DEG) < HEMISPHERE_DEG:
+        return None
+    share = rectangle_share(-where.x_m, this.length_m - where.x_m, -where.y_m,
+                            this.width_m - where.y_m, height_m)
+    return np.asarray(np.where(where.turning, np.nan, share))
+
+
+def lane_effect(day: Day, this: Pass, down: FloatArray) -> float:
+    """Return half the relative difference of the upper head between the lanes' two directions.
+
+    NaN where no path is known or the lanes are not balanced. A slow change of the sun drops out.
+    """
+    where = _path(day, this)
+    if where is None or this.lanes % 2 or down.size != where.x_m.size:
+        return float("nan")
+    lane = np.floor(where.y_m / this.width_m * this.lanes)
+    good = ~where.turning & np.isfinite(lane)
+    if good.sum() < 10:
+        return float("nan")
+    steps = np.arange(down.size, dtype=np.float64)
+    way = np.where(lane % 2 == 0, 1.0, -1.0)[good]
+    design = np.column_stack([np.ones(way.size), steps[good] - steps[good].mean(), way])
+    mean, _, half = np.linalg.lstsq(design, down[good], rcond=None)[0]
+    return float(half / mean)
+
+
 def foreign_ground(day: Day, this: Pass, head: Channel,
                    around: Input) -> tuple[list[Input], tuple[str, ...]]:
     """Return the inputs of foreign ground in view, and flags; `around` is what it is taken for."""
-    share = partial(footprint_share, this, head)
+    settings = day.parameters.campaign.settings.albedo
+
+    def share(height_m: float) -> float:
+        along = path_shares(day, this, head, height_m)
+        if along is None or not np.isfinite(along).any():
+            return footprint_share(this, head, height_m)
+        return float(np.nanmean(along))
+
     flags: tuple[str, ...] = ()
     if head.half_angle_deg is None:
         flags = (f"field of view of {head.logger} not stated: a hemisphere taken",)
+    footprint_share(this, head, this.height_m)
     return [
         fixed("footprint_share", share(this.height_m)),
         fixed("footprint_per_m", _per_m(day, this, share)), fixed(around.name, around.value),
+        Input("footprint_error", 0.0, settings.footprint_u, f"{day.name}:{this.surface}:footprint",
+              "share of the view that the patch fills"),
         Input("around_error", 0.0, around.u, around.scope, around.source, around.distribution),
         Input("contamination_error", 0.0, HALF_WIDTH, f"{day.name}:{this.surface}:contamination",
               "foreign ground in the head's view, not corrected", "rectangular"),
-        Input("height_error", 0.0, day.parameters.campaign.settings.albedo.height_u_cm / 100,
-              pass_scope(day, this), "height of the head above the ground"),
+        Input("height_error", 0.0, settings.height_u_cm / 100, pass_scope(day, this),
+              "height of the head above the ground"),
     ], flags
 
 
-def own_shade(day: Day, this: Pass, head: Channel,
+def shade_share(day: Day, this: Pass, head: Channel, sky: Sky, zenith_deg: float,
+                radius_m: float, height_m: float) -> float:
+    """Return the share of the reflected signal that head and rod take by their shade."""
+    settings = day.parameters.campaign.settings.albedo
+    beam = settings.beam_fraction * {"diffuse": 0.0, "mixed": 0.5}.get(sky.kind, 1.0)
+    lost = float(self_shade(radius_m, height_m, zenith_deg, beam))
+    side = ROD_TO_SUN_DEG.get(this.rod_side)
+    if head.rod_width_m is not None and side is not None:
+        lost += beam * float(rod_shade(head.rod_width_m, settings.rod_length_m, height_m,
+                                       zenith_deg, side))
+    return lost
+
+
+def own_shade(day: Day, this: Pass, head: Channel, sky: Sky,
               zenith_deg: float) -> tuple[list[Input], tuple[str, ...]]:
-    """Return the inputs of the head's shade on the ground it sees, and flags."""
+    """Return the inputs of the shade of head and rod on the ground it sees, and flags.
+
+    A head of unstated radius may be anything up to the assumed one: half of its shade is taken,
+    and as much again either side.
+    """
     settings = day.parameters.campaign.settings.albedo
     flags: tuple[str, ...] = ()
-    radius_m = head.head_radius_m
+    radius_m, known = head.head_radius_m, 1.0
     if radius_m is None:
-        radius_m, flags = settings.head_radius_assumed_cm / 100, ("head radius not stated",)
+        radius_m, known = settings.head_radius_assumed_cm / 100, 0.5
+        flags = ("head radius not stated",)
+    if head.rod_width_m is not None and not this.rod_side:
+        flags += ("side of the rod not written: its shade is left out",)
 
     def share(height_m: float) -> float:
-        return float(self_shade(radius_m, height_m, zenith_deg, settings.beam_fraction))
+        return known * shade_share(day, this, head, sky, zenith_deg, radius_m, height_m)
 
+    corrected = settings.correct_self_shade
+    u = HALF_WIDTH if known < 1 or not corrected else settings.self_shade_u
     return [
         fixed("shade_share", share(this.height_m)),
         fixed("shade_per_m", _per_m(day, this, share)),
-        Input("shade_error", 0.0, HALF_WIDTH, f"{head.logger}:shade",
-              "shade of the head on the ground, not corrected", "rectangular"),
+        Input("shade_error", 0.0, u, f"{head.logger}:shade",
+              "shade of the head on the ground" + ("" if corrected else ", not corrected"),
+              "rectangular" if u == HALF_WIDTH else "normal"),
     ], flags
+
+
+def treat(inputs: dict[str, Input], ratio: float, settings: AlbedoSettings,
+          stated: bool) -> tuple[dict[str, Input], tuple[str, ...]]:
+    """Decide what of shade and surroundings is corrected; refuse a pass that sees too little.
+
+    Corrected up to `max_corrected` together (surroundings only where their albedo is stated);
+    beyond that both stay in the uncertainty, whole, up to `max_shade_contamination`.
+
+    Raises
+    ------
+    NotEvaluated
+        If they exceed that, or too little of the view is lit patch.
+    """
+    share, shade = inputs["footprint_share"].value, inputs["shade_share"].value
+    around = inputs["around_albedo"].value
+    lit = share - shade
+    if lit < settings.min_lit:
+        raise NotEvaluated(
+            f"the head sees {1 - share:.0%} foreign ground and {shade:.0%} of its own shade: less "
+            f"than {settings.min_lit:.0%} of its view is lit patch; change height_cm or patch")
+    patch = (ratio - (1 - share) * around) / lit
+    contrast = abs(around - patch) / patch if patch > 0 else np.inf
+    effect = shade + contrast * (1 - share)
+    if effect > settings.max_shade_contamination:
+        raise NotEvaluated(
+            f"foreign ground and the head's own shade change the albedo by {effect:.0%}, more than "
+            f"{settings.max_shade_contamination:.0%}: change height_cm or patch")
+    flags: tuple[str, ...] = ("small footprint share",) if share < settings.min_footprint else ()
+    small = effect <= settings.max_corrected
+    if not small:
+        flags += (f"shade and surroundings above {settings.max_corrected:.0%}: not corrected",)
+    seen = small and stated and settings.correct_surroundings
+    shaded = small and settings.correct_self_shade
+    if not seen and small:
+        flags += ("surroundings not corrected",)
+    if not shaded and small:
+        flags += ("own shade not corrected",)
+    held = {"surroundings_corrected": fixed("surroundings_corrected", float(seen)),
+            "shade_corrected": fixed("shade_corrected", float(shaded))}
+    if not shaded:
+        error = inputs["shade_error"]
+        held["shade_error"] = Input(error.name, 0.0, HALF_WIDTH, error.scope,
+                                    "shade of the head on the ground, not corrected", "rectangular")
+    if seen:
+        held["contamination_error"] = fixed("contamination_error", 0.0)
+    return inputs | held, flags
 
 
 def albedo_around(day: Day, this: Pass) -> tuple[Input, tuple[str, ...]]:
@@ -91,6 +208,11 @@ def albedo_around(day: Day, this: Pass) -> tuple[Input, tuple[str, ...]]:
     return Input("around_albedo", entry.amount.value, entry.amount.u,
                  surface_scope("around", this.surface, entry),
                  "albedo around the patch, as stated"), ()
+
+
+def _path(day: Day, this: Pass) -> Path | None:
+    records = day.quality.passes[this.name]
+    return walk(this, day.records[records.logger].time_ns[records.index], day.parameters)
 
 
 def _per_m(day: Day, this: Pass, share: Callable[[float], float]) -> float:

@@ -12,10 +12,17 @@ from typing import Any
 from surveykit.core import InputError
 from surveykit.intake.params import Parameters
 from surveykit.intake.serving import MODES, QUANTITIES, Offers, Service, offers, serve
-from surveykit.intake.sheet_checks import day_faults, overlap_faults, patch_faults
+from surveykit.intake.sheet_checks import day_faults, overlap_faults, patch_faults, swap_faults
 from surveykit.intake.sheet_csv import read_rows
 from surveykit.intake.sheet_times import SheetTime, read_time
-from surveykit.intake.sheet_words import NAN, Entry, number, weather_reading
+from surveykit.intake.sheet_words import (
+    NAN,
+    SIDES,
+    Entry,
+    number,
+    row_reading,
+    weather_reading,
+)
 
 __all__ = ["Entry", "Sheet", "read_sheet"]
 
@@ -25,8 +32,14 @@ NEEDED = {
     "cover": ("start", "stop"),
     "dark": ("start", "stop"),
     "weather": ("quantity", "start", "reading"),
+    "sky": ("instrument", "start", "stop"),
+    "foil": ("instrument", "start", "stop"),
+    "swap": ("instrument", "surface", "patch", "start", "stop", "reading"),
+    "reference": ("surface", "patch", "instrument", "start", "stop", "reading", "reading_u"),
+    "panel": ("instrument", "start", "stop", "reading"),
+    "check": ("instrument", "start", "stop", "reading"),
+    "lid": ("surface", "patch", "instrument", "start", "stop", "reading"),
 }
-LATER = ("swap", "sky", "foil", "reference", "panel", "check", "lid")
 MAX_LABEL, MAX_NOTE = 120, 2000
 
 
@@ -94,7 +107,8 @@ def read_sheet(path: Path, parameters: Parameters,
     faults += [f"{where} {fault}" for fault in day]
     if not faults and not any(entry.entry == "pass" for entry in entries):
         faults.append(f"{where}: the field sheet holds no pass; write one row for each")
-    found = [*patch_faults(entries), *overlap_faults(entries, services, times)]
+    found = [*patch_faults(entries), *swap_faults(entries),
+             *overlap_faults(entries, services, times)]
     faults += [f"{where} row {row}: {fault}" for row, fault in found]
     if faults:
         raise InputError(*faults)
@@ -116,9 +130,7 @@ class _Row:
 
     def entry(self) -> Entry | None:
         kind = self.cells["entry"].lower()
-        if kind in LATER:
-            self.faults.append(f"entry {kind!r} is reserved for later work; take the row out")
-        elif kind not in NEEDED:
+        if kind not in NEEDED:
             self.faults.append(f"entry {self.cells['entry']!r} is not known; write one of "
                                f"{', '.join(NEEDED)}")
         if self.faults:
@@ -211,8 +223,15 @@ class _Row:
         if lanes % 1 > 0:
             self.faults.append(f"lanes {self.cells['lanes']!r} is no whole number")
         values["lanes"] = int(lanes) if lanes == lanes else 0
-        values["reading"] = self._number("reading", -1e12)
+        values["reading"] = NAN
+        if self.cells["reading"]:
+            self._collect(lambda: values.update(reading=row_reading(kind, self.cells["reading"])))
         values["reading_u"] = self._number("reading_u", 0.0)
+        for name in ("rod_side", "operator_side"):
+            values[name] = self.cells[name].lower()
+            if values[name] not in ("", *SIDES):
+                self.faults.append(f"{name} {self.cells[name]!r} is not known; write where it was, "
+                                   f"seen from the head: {', '.join(SIDES)} (towards or from it)")
         if kind == "weather" and texts["quantity"] and self.cells["reading"]:
             self._collect(lambda: values.update(weather_reading(
                 texts["quantity"], values["reading"], values["reading_u"],

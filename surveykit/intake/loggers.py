@@ -18,7 +18,8 @@ from surveykit.intake import cells, dialect
 from surveykit.intake.counted import counted_times
 from surveykit.intake.params.instruments import COUNTED, Channel, Instrument, Layout
 from surveykit.intake.records import MARKS, NO_TIME_NS, FileFacts, Records, in_order
-from surveykit.intake.times import read_times, to_utc
+from surveykit.intake.shapes import odd_times, usual_shape
+from surveykit.intake.times import NO_OFFSET, read_times, to_utc
 
 __all__ = ["MARKS", "NO_TIME_NS", "FileFacts", "Records", "expand_files", "read_logger"]
 
@@ -122,14 +123,20 @@ def _read_file(path: Path, root: Path, instrument: Instrument,
     times_at, numbers_at = _places(header, form.column, [c.column for c in channels], layout, where)
     texts_at, counts_at = ([], times_at) if form.format in COUNTED else (times_at, [])
     fields = len(header.columns)
+    sample = dialect.sample_rows(data, header, layout, SAMPLE_LINES)
+    iso = form.format == "iso8601"
+    shape = usual_shape([" ".join(row[at] for at in times_at) for row in sample]) if iso else ""
 
     def read(ends: tuple[int, int]) -> tuple[int, int, dict[str, NDArray]]:
         lines = dialect.whole_lines(data[ends[0]:ends[1]], fields, layout, header.head)
         texts, numbers = cells.read_table(
-            lines.text, fields, texts_at, [*counts_at, *numbers_at], form.format == "iso8601",
-            layout)
+            lines.text, fields, texts_at, [*counts_at, *numbers_at], iso, layout)
         wall_ns, offset_s = read_times(texts, form.format) if texts_at else \
             counted_times([numbers[at].values for at in counts_at], form.format, form.year)
+        if iso:
+            odd = odd_times(texts, lines.text, fields, times_at, layout.delimiter, shape)
+            wall_ns = np.where(odd, NO_TIME_NS, wall_ns)
+            offset_s = np.where(odd, NO_OFFSET, offset_s)
         part: dict[str, NDArray] = {
             "line": lines.at, "bad": lines.bad, "wall_ns": wall_ns, "offset_s": offset_s}
         for channel, at in zip(channels, numbers_at, strict=True):
@@ -158,7 +165,6 @@ def _read_file(path: Path, root: Path, instrument: Instrument,
 
     _refuse_unlike(data, header, instrument, where, line, bad_line, wall_ns, times_at)
     time_ns = to_utc(wall_ns, whole["offset_s"], instrument.time.zone, locate)
-    sample = dialect.sample_rows(data, header, layout, SAMPLE_LINES)
     steps = {channel.column: abs(channel.gain.value) * cells.printed_step(sample, at, layout)
              for channel, at in zip(channels, numbers_at, strict=True)}
     facts = FileFacts(where, sha256.result(), path.stat().st_size, len(line),

@@ -54,6 +54,8 @@ class Pass:
         What a reader of the pass should know.
     refusal : str
         Why its records cannot be placed in time, or "".
+    rod_side, operator_side : str
+        Where rod and operator were, seen from the head: sun, across, away, or "" if not written.
     """
 
     name: str
@@ -76,6 +78,8 @@ class Pass:
     reading: float
     notes: tuple[str, ...] = ()
     refusal: str = ""
+    rod_side: str = ""
+    operator_side: str = ""
 
     @property
     def loggers(self) -> tuple[str, ...]:
@@ -124,7 +128,7 @@ def match_passes(sheet: Sheet, parameters: Parameters,
             from_ns=entry.start_ns + round(trim_s * NS), to_ns=entry.stop_ns - round(trim_s * NS),
             channels=service.channels, height_m=entry.height_m, width_m=width_m,
             length_m=length_m, lanes=entry.lanes, reading=entry.reading, notes=notes,
-            refusal=refusal))
+            refusal=refusal, rod_side=entry.rod_side, operator_side=entry.operator_side))
     if faults:
         raise InputError(*faults)
     return tuple(passes)

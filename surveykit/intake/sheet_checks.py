@@ -73,6 +73,23 @@ def _size(entry: Entry) -> str:
     return f"{entry.width_m:g} m by {entry.length_m:g} m"
 
 
+def swap_faults(entries: Iterable[Entry]) -> Iterator[tuple[int, str]]:
+    """Yield (row, fault): the swaps of an instrument go in pairs, normal then inverted."""
+    waiting: dict[str, Entry] = {}
+    for entry in sorted(entries, key=lambda entry: (entry.start_ns, entry.row)):
+        if entry.entry != "swap":
+            continue
+        first = waiting.pop(entry.instrument, None)
+        if (entry.reading > 0) != (first is None):
+            yield entry.row, (f"swap of {entry.instrument}: the rows go in pairs, normal then "
+                              "inverted; correct the reading, or add the row that is missing")
+        elif first is None:
+            waiting[entry.instrument] = entry
+    for entry in waiting.values():
+        yield entry.row, (f"swap of {entry.instrument}: the inverted row of this pair is missing; "
+                          "add it, or take this one out")
+
+
 def overlap_faults(entries: Iterable[Entry], services: Mapping[int, Service],
                    times: Times) -> Iterator[tuple[int, str]]:
     """Yield (row, fault): passes of one logger and quantity must not overlap."""

@@ -11,8 +11,7 @@ from surveykit.intake.sheet_xlsx import read_cells
 
 COLUMNS = ("entry", "surface", "patch", "quantity", "mode", "instrument", "start", "stop",
            "height_cm", "width_m", "length_m", "lanes", "reading", "reading_u", "note",
-           "date", "campaign")
-RESERVED_COLUMNS = ("rod_side", "operator_side")
+           "date", "campaign", "rod_side", "operator_side")
 
 
 @dataclass(frozen=True)
@@ -40,10 +39,8 @@ def read_rows(data: bytes, where: str) -> Rows:
                          f"{', '.join(COLUMNS[:15])}; got {', '.join(header)[:200]}")
     faults = [f"{where} row 1: the column {name} stands twice; keep one" for name in COLUMNS
               if header.count(name) > 1]
-    faults += [f"{where} row 1: the column {name} is reserved for later work; take it out"
-               for name in RESERVED_COLUMNS if name in header]
     notices = [f"{where}: the column {name!r} is not known and is left out" for name in header
-               if name and name not in COLUMNS + RESERVED_COLUMNS]
+               if name and name not in COLUMNS]
     rows = []
     for number, cells in enumerate(table[1:], start=2):
         cells = [cell.replace("\N{NO-BREAK SPACE}", " ").strip() for cell in cells]
@@ -56,7 +53,7 @@ def read_rows(data: bytes, where: str) -> Rows:
             if mark and len(cells) < len(header):
                 notices.append(f"{where} row {number}: has {len(cells)} cells where the first row "
                                f"has {len(header)}; was the file cut off? the rest counts as empty")
-            named = dict(zip(header, cells, strict=False))
+            named = dict(reversed([*zip(header, cells, strict=False)]))  # the first of a name
             rows.append((number, {name: named.get(name, "") for name in COLUMNS}))
     return Rows(tuple(rows), tuple(notices), tuple(faults))
 

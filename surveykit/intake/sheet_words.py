@@ -27,7 +27,7 @@ class Entry:
     row : int
         The spreadsheet's row (header = 1).
     entry : str
-        pass, dark, cover or weather.
+        pass, dark, cover, weather, sky, foil, swap, reference, panel, check or lid.
     start_ns, stop_ns : int
         UTC in ns, the watch's offset included; equal in a weather row without stop.
     edge_u_s : float
@@ -38,7 +38,9 @@ class Entry:
         0 where the cell is empty.
     reading, reading_u : float
         As written; in weather rows in SI (K, 1, m s-1; cloud fraction 1), an empty reading_u taken
-        from the settings. NaN where there is none.
+        from the settings; of a swap +1 for normal, -1 for inverted. NaN where there is none.
+    rod_side, operator_side : str
+        Where rod and operator were, seen from the head: sun, across, away, or "".
     """
 
     row: int
@@ -58,6 +60,17 @@ class Entry:
     reading: float
     reading_u: float
     note: str
+    rod_side: str = ""
+    operator_side: str = ""
+
+
+SIDES = ("sun", "across", "away")
+SWAPS = {"normal": 1.0, "inverted": -1.0}
+# entry: lowest and highest reading, its unit
+READINGS: dict[str, tuple[float, float, str]] = {
+    "reference": (-60.0, 100.0, "degC"), "check": (-60.0, 100.0, "degC"),
+    "lid": (-60.0, 150.0, "degC"), "foil": (-60.0, 100.0, "degC"), "panel": (0.02, 1.0, "1"),
+}
 
 
 def number(text: str) -> float:
@@ -77,6 +90,34 @@ def number(text: str) -> float:
         raise ValueError(f"{text!r} is no number; write digits alone, the unit stands in the "
                          "column's name")
     return float(text.replace(",", "."))
+
+
+def row_reading(kind: str, text: str) -> float:
+    """Return the reading of a row that has one of its own kind: a swap's word, a bounded number.
+
+    Raises
+    ------
+    ValueError
+        If the cell holds anything else.
+
+    Examples
+    --------
+    >>> row_reading("swap", "inverted"), row_reading("panel", "0,98")
+    (-1.0, 0.98)
+    """
+    if kind == "swap":
+        if text.lower() not in SWAPS:
+            raise ValueError(f"reading {text!r} of a swap; write normal or inverted")
+        return SWAPS[text.lower()]
+    try:
+        value = number(text)
+    except ValueError as error:
+        raise ValueError(f"reading {error}") from None
+    low, high, unit = READINGS.get(kind, (-1e12, 1e12, ""))
+    if not low <= value <= high:
+        raise ValueError(f"reading {value:g} of a {kind} row; write a number from {low:g} to "
+                         f"{high:g}" + ("" if unit in ("", "1") else f", in {unit}"))
+    return value
 
 
 def weather_reading(quantity: str, reading: float, reading_u: float,

@@ -21,8 +21,8 @@ from surveykit.intake.times import read_times
 SAMPLE_BYTES, SAMPLE_LINES, LEAST_SHARE = 256 * 1024, 400, 0.8
 DELIMITERS = ("\t", ";", "|", ",")
 _NUMBER = re.compile(r"[+-]?(\d+([.,]\d*)?|[.,]\d+)([eE][+-]?\d+)?")
-_MISSING = re.compile(r"|-?9{3,}(\.9*|,9*)?|-?6999|[\"']?(nan|na|n/a|null|none|inf|-inf|-+|\*+)[\"']?|#.*",
-                      re.IGNORECASE)
+_MISSING = re.compile(r"|-?9{3,}(\.9*|,9*)?|-?6999|[\"']?(nan|na|n/a|null|none|-?inf|-+|\*+)[\"']?"
+                      r"|#.*", re.IGNORECASE)
 _DATES = ("%Y-%m-%d", "%d.%m.%Y", "%d/%m/%Y", "%m/%d/%Y", "%Y/%m/%d", "%d-%m-%Y", "%d.%m.%y",
           "%d/%m/%y", "%m/%d/%y")
 _CLOCKS = ("%H:%M:%S", "%H:%M", "%H:%M:%S.%f", "%H:%M:%S,%f", "%I:%M:%S %p", "%I:%M %p")
@@ -75,7 +75,8 @@ def look_at(path: Path) -> Guess:
     layout = Layout(delimiter=delimiter, decimal="," if delimiter == "\t" else ".",
                     encoding=encoding)  # type: ignore[arg-type]
     rows = [dialect.cells_of(line, layout) for line in lines]
-    first = next((at for at, row in enumerate(rows) if len(row) == fields and _is_record(row)), None)
+    first = next((at for at, row in enumerate(rows) if len(row) == fields and _is_record(row)),
+                 None)
     if first is None:
         raise InputError(f"{path}: no line looks like a record of numbers; name a log with records")
     head = first
@@ -134,7 +135,8 @@ def _delimiter(lines: list[str], path: Path) -> tuple[str, int, float]:
 def _is_record(row: list[str]) -> bool:
     numbers = sum(bool(_NUMBER.fullmatch(cell)) for cell in row)
     readings = sum(bool(re.match(r"[+-]?\d", cell)) for cell in row)
-    return numbers >= 1 and 2 * (readings + sum(bool(_MISSING.fullmatch(c)) for c in row)) > len(row)
+    missing = sum(bool(_MISSING.fullmatch(cell)) for cell in row)
+    return numbers >= 1 and 2 * (readings + missing) > len(row)
 
 
 def _fits(cells: list[str], form: str) -> bool:
@@ -180,8 +182,8 @@ def _counted(table: dict[str, list[str]]) -> TimeGuess | None:
     for at in range(len(names) - 1):
         day, clock = numbers[names[at]], numbers[names[at + 1]]
         whole = (day % 1 == 0) & (clock % 1 == 0)
-        if (whole & day.between(1, 366) & clock.between(0, 2400) & (clock % 100 < 60)).mean() \
-                < LEAST_SHARE or not re.search(r"day|doy|jul|tag|jour|dia", names[at], re.IGNORECASE):
+        fits = whole & day.between(1, 366) & clock.between(0, 2400) & (clock % 100 < 60)
+        if fits.mean() < LEAST_SHARE or not re.search("day|doy|jul", names[at], re.IGNORECASE):
             continue
         year = numbers[names[at - 1]] if at else day
         has_year = bool(at and year.between(1990, 2100).mean() >= LEAST_SHARE)

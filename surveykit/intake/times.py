@@ -140,18 +140,18 @@ def _sliced(texts: NDArray[np.object_], form: str) -> IntArray:
     width = table.dtype.itemsize
     if places is None or not len(texts) or width < places["end"]:
         return wall
-    cells = table.view(np.uint8).reshape(len(texts), width)
+    cells = np.ascontiguousarray(table.view(np.uint8).reshape(len(texts), width).T)
     good = np.ones(len(texts), dtype=np.bool_)
     for at, character in enumerate(places["literals"]):
         if character:
-            good &= cells[:, at] == character
+            good &= cells[at] == character
 
-    def number(at: int, digits: int) -> IntArray:
-        value = np.zeros(len(texts), dtype=np.int64)
-        for column in range(at, at + digits):
-            digit = cells[:, column] - np.uint8(48)
+    def number(at: int, digits: int) -> NDArray[np.int32]:
+        value = np.zeros(len(texts), dtype=np.int32)
+        for digit in cells[at: at + digits] - np.uint8(48):
             np.logical_and(good, digit < 10, out=good)
-            value = value * 10 + digit
+            value *= np.int32(10)
+            value += digit
         return value
 
     part = {name: number(places[name], digits) for name, digits in _WIDTHS.items()}
@@ -159,23 +159,31 @@ def _sliced(texts: NDArray[np.object_], form: str) -> IntArray:
     scale = 100_000_000
     ended = np.zeros(len(texts), dtype=np.bool_)
     for column in range(places["end"], width):
-        digit = cells[:, column].astype(np.int64) - 48
-        ended |= cells[:, column] == 0
+        digit = cells[column].astype(np.int64) - 48
+        ended |= cells[column] == 0
         good &= ended | ((digit >= 0) & (digit < 10) & places["fraction"] & (scale > 0))
         fraction += np.where(ended, 0, digit) * scale
         scale //= 10
     if places["fraction"]:
-        good &= cells[:, places["end"]] != 0 if width > places["end"] else False
+        good &= cells[places["end"]] != 0 if width > places["end"] else False
     good &= (part["m"] >= 1) & (part["m"] <= 12) & (part["H"] < 24) & (part["M"] < 60)
     good &= part["S"] < 60
-    months = ((part["Y"] - 1970) * 12 + np.clip(part["m"], 1, 12) - 1).astype("datetime64[M]")
-    first = months.astype("datetime64[D]").astype(np.int64)
-    following = (months + 1).astype("datetime64[D]").astype(np.int64)
-    good &= (part["d"] >= 1) & (part["d"] <= following - first)
-    seconds = (first + part["d"] - 1) * 86400 + part["H"] * 3600 + part["M"] * 60 + part["S"]
+    day, good = _days(part["Y"], part["m"], part["d"], good)
+    seconds = day * 86400 + (part["H"] * 3600 + part["M"] * 60 + part["S"])
     good &= (seconds >= FIRST_NS // NS) & (seconds < END_NS // NS)
     wall[good] = (seconds * NS + fraction)[good]
     return wall
+
+
+def _days(year: NDArray[np.int32], month: NDArray[np.int32], day: NDArray[np.int32],
+          good: BoolArray) -> tuple[IntArray, BoolArray]:
+    """Return days since 1970, each different month looked up once, and which are days."""
+    code = np.where(good, year * 12 + month - 1, 1970 * 12)
+    first, last = int(code.min()), int(code.max())
+    months = (np.arange(first, last + 2) - 1970 * 12).astype("datetime64[M]")
+    begin = months.astype("datetime64[D]").astype(np.int64)
+    within = (day >= 1) & (day <= np.diff(begin)[code - first])
+    return begin[code - first] + day - 1, good & within
 
 
 def _places(form: str) -> dict | None:

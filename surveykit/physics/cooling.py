@@ -143,5 +143,5 @@ def _design(times: Sequence[FloatArray], tau: float, lagged: bool) -> FloatArray
 def _solve(times: Sequence[FloatArray], values: FloatArray, tau: float,
            lagged: bool) -> tuple[FloatArray, FloatArray, FloatArray]:
     design = _design(times, tau, lagged)
-    solution = np.linalg.lstsq(design, values, rcond=None)[0]
+    solution = np.asarray(np.linalg.lstsq(design, values, rcond=None)[0], dtype=np.float64)
     return solution, values - design @ solution, design

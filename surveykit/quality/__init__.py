@@ -13,9 +13,11 @@ from surveykit.intake.loggers import Records
 from surveykit.intake.params import Parameters
 from surveykit.intake.passes import Pass
 from surveykit.physics.sun import sun_track
-from surveykit.quality.ledger import ledger
-from surveykit.quality.marks import Study, mark
+from surveykit.quality.consistency import compare
+from surveykit.quality.ledger import ledger, waterfall
+from surveykit.quality.marks import mark
 from surveykit.quality.selection import choose
+from surveykit.quality.study import Study
 
 __all__ = ["examine"]
 
@@ -35,6 +37,7 @@ def examine(parameters: Parameters, records: dict[str, Records], sheet: Sheet,
         study.channels[name] = {c.column: c for c in parameters.channels(name)}
         study.sun[name] = sun_track(log.time_ns, site.latitude, site.longitude, site.elevation_m)
     masks = {name: mark(study, name) for name in records}
+    compare(study, masks)
     chosen = {p.name: choose(study, p, masks) for p in passes}
-    account = ledger(study, masks, chosen)
-    return Quality(masks, chosen, table("checks", study.checks), account)
+    return Quality(masks, chosen, table("checks", study.checks), ledger(study, masks, chosen),
+                   waterfall(study, masks, chosen))

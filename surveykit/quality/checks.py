@@ -60,20 +60,18 @@ def saturated(values: FloatArray, repeats: int, *, lower: bool) -> BoolArray:
 
     A head or logger at its limit gives one value again and again; a living channel reaches its
     largest value about as often as the value next to it, at most 2.4 times as often (the top of a
-    parabola, in whole steps). A pile is at least `repeats` readings and more than five times as
-    many as at the next value. A channel of one value is stuck, not saturated.
+    parabola, in whole steps). A pile is at least `repeats` readings, and more than five times as
+    many as at the next value and as at half of all values. A channel of one value is stuck, not
+    saturated. NaN is left out.
     """
     out = np.zeros(values.shape, dtype=bool)
-    known = values[np.isfinite(values)]
-    for sign in (1, -1) if lower else (1,):
-        if known.size == 0:
-            break
-        end = (sign * known).max() * sign
-        rest = known[known != end]
-        pile = known.size - rest.size
-        if pile >= repeats and rest.size and pile > PILE * np.count_nonzero(
-                rest == (sign * rest).max() * sign):
-            out |= values == end
+    found, count = np.unique(values[np.isfinite(values)], return_counts=True)
+    if found.size < 2:
+        return out
+    for end, beside in ((-1, -2), (0, 1)) if lower else ((-1, -2),):
+        usual = max(count[beside], np.median(count))
+        if count[end] >= repeats and count[end] > PILE * usual:
+            out |= values == found[end]
     return out
 
 
@@ -115,11 +113,13 @@ def noise_sd(values: FloatArray, resolution: float) -> float:
 
 
 def spikes(values: FloatArray, *, window: int, mad: float, noise: float,
-           resolution: float) -> BoolArray:
+           resolution: float, floor: FloatArray) -> BoolArray:
     """Readings far off the median of the `window` records around them; no NaN among the values.
 
     Far is more than `mad` scaled median absolute deviations of these records, and more than
-    `noise` standard deviations of the channel's own noise.
+    `noise` standard deviations of the noise: of second differences or, where larger, of what the
+    running median leaves over, so that the texture of walked ground makes no spikes; and more than
+    `floor`, the size of a deviation that is no matter, one a reading.
 
     References
     ----------
@@ -129,7 +129,8 @@ def spikes(values: FloatArray, *, window: int, mad: float, noise: float,
     if values.size < window:
         return out
     off = np.abs(values - median_filter(values, size=window, mode="nearest"))
-    rows = np.flatnonzero(off > noise * noise_sd(values, resolution))
+    usual = max(noise_sd(values, resolution), float(TO_SD * np.median(off)))
+    rows = np.flatnonzero(off > np.maximum(noise * usual, floor))
     if rows.size:
         half = window // 2
         first = np.clip(rows - half, 0, values.size - window)

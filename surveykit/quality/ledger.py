@@ -1,7 +1,13 @@
-"""The ledger: every record of every file used, excluded by one reason, or outside passes."""
+"""The ledger: every record of every file used, excluded by one reason, or outside passes.
+
+The waterfall says the same of every channel, file by file and pass by pass, in the order in which
+reasons count, with what is left after each.
+"""
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -10,65 +16,103 @@ import pandas as pd
 from surveykit.accounting import BIT, LAST_FAULT, NS, REASONS, Mask, PassRecords
 from surveykit.core import BoolArray, IntArray, table
 from surveykit.intake.loggers import Records
-from surveykit.quality.checks import primary
-from surveykit.quality.marks import Study
+from surveykit.intake.passes import Pass
+from surveykit.quality.series import primary
+from surveykit.quality.study import Masks, Study
+
+Chosen = dict[str, PassRecords]
+WORDS = (*(r.name for r in REASONS), "pass not evaluated", "")
+EXCLUDED, OUTSIDE, USED = range(3)
+DISPOSITION = ("excluded", "outside passes", "used")
 
 
-def ledger(study: Study, masks: dict[str, dict[str, Mask]],
-            chosen: dict[str, PassRecords]) -> pd.DataFrame:
+@dataclass(frozen=True)
+class Account:
+    """What became of each record: which passes hold it, its disposition, its primary reason.
+
+    `label` points into `held`, names of passes; `reason` into `WORDS`.
+    """
+
+    held: list[tuple[str, ...]]
+    label: IntArray
+    state: IntArray
+    reason: IntArray
+
+
+def ledger(study: Study, masks: Masks, chosen: Chosen) -> pd.DataFrame:
     """Account for every record: used, excluded by one primary reason, or outside passes."""
     rows: list[dict[str, Any]] = []
+    shown = (USED, EXCLUDED, OUTSIDE)
     for logger, log in study.records.items():
-        n = log.time_ns.size
-        label = np.zeros(n, dtype=np.int64)
-        labels: dict[tuple[str, ...], int] = {(): 0}
-        used = np.zeros(n, dtype=bool)
-        for this in study.passes:
-            mine = [c for c in this.channels.values() if c.logger == logger]
-            if not mine:
-                continue
-            inside = (log.time_ns >= this.start_ns) & (log.time_ns < this.stop_ns)
-            known = list(labels)
-            for code in np.unique(label[inside]):
-                key = (*known[code], this.name)
-                label[inside & (label == code)] = labels.setdefault(key, len(labels))
-            records = chosen[this.name]
-            index = records.index if records.logger == logger else records.partners[logger]
-            used[index] = True
-        reason = _ledger_reasons(study, logger, masks[logger], chosen, used)
-        if not any(c.logger == logger for p in study.passes for c in p.channels.values()):
-            used = _weather_used(study, logger, masks[logger])
-            reason[used] = -1
-            label[:] = 0
-        rows += _ledger_rows(study, log, list(labels), label, used, reason)
-        _assert_complete(log, rows)
+        found = _account(study, log, masks[logger], chosen)
+        mine = [row for _, row in sorted(_rows(study, log, found, shown), key=lambda r: r[0])]
+        _assert_complete(log, mine)
+        rows += mine
     return table("ledger", rows)
 
 
-def _ledger_reasons(study: Study, logger: str, masks: dict[str, Mask],
-                    chosen: dict[str, PassRecords], used: BoolArray) -> IntArray:
-    log = study.records[logger]
-    reason = np.full(log.time_ns.size, -1, dtype=np.int64)
-    every = np.bitwise_and.reduce(list(masks.values())) if masks else np.zeros(0, dtype=np.uint32)
-    reason[:] = primary(every)
-    for this in study.passes:
-        mine = [c for c in this.channels.values() if c.logger == logger]
-        if not mine:
-            continue
-        inside = (log.time_ns >= this.start_ns) & (log.time_ns < this.stop_ns) & ~used
-        mask = np.bitwise_or.reduce([masks[c.column] for c in mine])
-        edge = (log.time_ns < this.from_ns) | (log.time_ns >= this.to_ns)
+def waterfall(study: Study, masks: Masks, chosen: Chosen) -> pd.DataFrame:
+    """Account for every reading of every channel; `remaining` counts what each reason leaves."""
+    rows: list[dict[str, Any]] = []
+    for logger, log in study.records.items():
+        for column in study.channels[logger]:
+            found = _account(study, log, {column: masks[logger][column]}, chosen)
+            mine = sorted(_rows(study, log, found, (EXCLUDED, OUTSIDE, USED)), key=lambda r: r[0])
+            left: dict[tuple[int, ...], int] = {}
+            for key, row in mine:
+                left[key[:2]] = left.get(key[:2], 0) + row["records"]
+            for key, row in mine:
+                left[key[:2]] -= 0 if row["disposition"] == "used" else row["records"]
+                rows.append({name: row[name] for name in ("campaign", "logger", "file")}
+                            | {"column": column}
+                            | {name: row[name] for name in (
+                                "surface", "patch", "pass", "disposition", "reason", "records")}
+                            | {"remaining": left[key[:2]]})
+            _assert_complete(log, [row for _, row in mine])
+    return table("waterfall", rows)
+
+
+def _account(study: Study, log: Records, masks: dict[str, Mask], chosen: Chosen) -> Account:
+    """Account for the records of a logger as far as the columns in `masks` are concerned."""
+    n, timed = log.time_ns.size, log.time_ns[:log.n_timed]
+    label = np.zeros(n, dtype=np.int64)
+    held: dict[tuple[str, ...], int] = {(): 0}
+    used = np.zeros(n, dtype=bool)
+    every = np.bitwise_and.reduce(list(masks.values())) if masks else np.zeros(n, dtype=np.uint32)
+    reason = primary(every)
+    served = [p for p in study.passes if _columns(p, log.logger, masks)]
+    for this in served:
+        window = slice(*np.searchsorted(timed, [this.start_ns, this.stop_ns]))
+        known = list(held)
+        for code in np.unique(label[window]):
+            part = label[window] == code
+            label[window][part] = held.setdefault((*known[code], this.name), len(held))
+        records = chosen[this.name]
+        used[records.index if records.logger == log.logger else records.partners[log.logger]] = True
+    for this in served:
+        window = slice(*np.searchsorted(timed, [this.start_ns, this.stop_ns]))
+        mask = np.bitwise_or.reduce([masks[c][window] for c in _columns(this, log.logger, masks)])
+        edge = (timed[window] < this.from_ns) | (timed[window] >= this.to_ns)
         mask = mask | np.where(edge, BIT["pass edge"], np.uint32(0))
         rest = BIT["between placements"] if this.kind == "contact" else BIT["no partner"]
-        mask = np.where(mask == 0, rest, mask).astype(np.uint32)
-        reason[inside] = primary(mask)[inside]
+        why = primary(np.where(mask == 0, rest, mask).astype(np.uint32))
         if chosen[this.name].refusal:
-            reason[inside & (mask == rest)] = len(REASONS)
-    return reason
+            why[mask == 0] = len(REASONS)
+        reason[window] = np.where(used[window], reason[window], why)
+    if not served:
+        used = _weather_used(study, log, masks)
+    reason[used] = -1
+    faulty = (reason >= 0) & (reason <= LAST_FAULT)
+    state = np.where(used, USED, np.where((label > 0) | faulty, EXCLUDED, OUTSIDE))
+    return Account(list(held), label, state, np.where(state == EXCLUDED, reason, len(WORDS) - 1))
 
 
-def _weather_used(study: Study, logger: str, masks: dict[str, Mask]) -> BoolArray:
-    log = study.records[logger]
+def _columns(this: Pass, logger: str, masks: dict[str, Mask]) -> list[str]:
+    return [c.column for c in this.channels.values() if c.logger == logger and c.column in masks]
+
+
+def _weather_used(study: Study, log: Records, masks: dict[str, Mask]) -> BoolArray:
+    """Return good records about the passes, of columns that serve none of them by themselves."""
     good = np.zeros(log.time_ns.size, dtype=bool)
     for mask in masks.values():
         good |= mask == 0
@@ -80,31 +124,29 @@ def _weather_used(study: Study, logger: str, masks: dict[str, Mask]) -> BoolArra
     return good & (log.time_ns >= first) & (log.time_ns <= last)
 
 
-def _ledger_rows(study: Study, log: Records, labels: list[tuple[str, ...]], label: IntArray,
-                 used: BoolArray, reason: IntArray) -> list[dict[str, Any]]:
+def _rows(study: Study, log: Records, found: Account,
+          order: tuple[int, ...]) -> Iterator[tuple[tuple[int, ...], dict[str, Any]]]:
+    """Yield rows of the ledger, each with file, passes, place of its disposition, and reason."""
     by_name = {p.name: p for p in study.passes}
-    words = [r.name for r in REASONS] + ["pass not evaluated", ""]
-    faulty = (reason >= 0) & (reason <= LAST_FAULT)
-    state = np.where(used, 0, np.where((label > 0) | faulty, 1, 2))
-    code = np.where(state == 1, reason, len(words) - 1)
-    keys = np.stack([log.file.astype(np.int64), label, state, code], axis=1)
-    rows = []
-    for (file, lab, st, why), count in zip(*np.unique(keys, axis=0, return_counts=True),
-                                           strict=True):
-        named = labels[lab]
+    place = np.array([order.index(state) for state in range(3)])
+    sizes = (len(log.files), len(found.held), len(order), len(WORDS))
+    keys = np.ravel_multi_index(
+        (log.file.astype(np.int64), found.label, place[found.state], found.reason), sizes)
+    kinds, counts = np.unique(keys, return_counts=True)
+    for key, count in zip(kinds, counts, strict=True):
+        file, label, state, why = (int(i) for i in np.unravel_index(key, sizes))
+        named = found.held[label]
         one = by_name[named[0]] if named else None
-        rows.append({
+        yield (file, label, state, why), {
             "campaign": study.parameters.campaign.campaign, "logger": log.logger,
             "file": log.files[file].path, "surface": one.surface if one else "",
             "patch": one.patch if one else "", "pass": " + ".join(named),
-            "disposition": ("used", "excluded", "outside passes")[st], "reason": words[why],
-            "records": int(count)})
-    return rows
+            "disposition": DISPOSITION[order[state]], "reason": WORDS[why],
+            "records": int(count)}
 
 
 def _assert_complete(log: Records, rows: list[dict[str, Any]]) -> None:
     for facts in log.files:
-        counted = sum(r["records"] for r in rows
-                      if r["logger"] == log.logger and r["file"] == facts.path)
+        counted = sum(r["records"] for r in rows if r["file"] == facts.path)
         assert counted == facts.records, (
             f"{facts.path}: {facts.records} records read, {counted} accounted for")

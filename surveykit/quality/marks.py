@@ -2,92 +2,111 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
-from typing import Any
-
 import numpy as np
 
-from surveykit.accounting import BIT, NS, REASONS, Mask
+from surveykit.accounting import BIT, NS, Mask, counted
 from surveykit.core import BoolArray, FloatArray
 from surveykit.intake.capped import windows
-from surveykit.intake.fieldsheet import Sheet
-from surveykit.intake.loggers import Records
-from surveykit.intake.params import Channel, Parameters
-from surveykit.intake.passes import Pass
-from surveykit.physics.shortwave import shortwave_limits
-from surveykit.physics.sun import Sun
-from surveykit.quality.checks import inside, out_of_range, physically_impossible, stuck
-
-LIGHT = ("shortwave_down", "shortwave_up", "red_down", "red_up", "nir_down", "nir_up")
-MAIN = (*LIGHT, "brightness_temperature", "longwave_down", "longwave_up")
-CLEAR_MAXIMUM = 0.99  # quantile of a head's readings that stands for its clear maximum
-
-
-@dataclass
-class Study:
-    """What the quality stage looks at, and the checks it has noted."""
-
-    parameters: Parameters
-    records: dict[str, Records]
-    sheet: Sheet
-    passes: tuple[Pass, ...]
-    channels: dict[str, dict[str, Channel]] = field(default_factory=dict)
-    sun: dict[str, Sun] = field(default_factory=dict)
-    checks: list[dict[str, Any]] = field(default_factory=list)
-
-    def note(self, check: str, severity: str, message: str, source: str, *, logger: str = "",
-             column: str = "", surface: str = "", pass_: str = "", records: int = 0) -> None:
-        """Add a row to the table of checks."""
-        self.checks.append({
-            "campaign": self.parameters.campaign.campaign, "check": check, "logger": logger,
-            "column": column, "surface": surface, "pass": pass_, "severity": severity,
-            "records": records, "message": message, "source": source})
+from surveykit.intake.params import Channel
+from surveykit.quality.checks import (
+    end_of_range,
+    extremely_rare,
+    out_of_range,
+    physically_impossible,
+    saturated,
+    spikes,
+    steps,
+    stuck,
+)
+from surveykit.quality.series import inside
+from surveykit.quality.study import CLEAR_MAXIMUM, HEAT, LIGHT, MAIN, Study
 
 
 def mark(study: Study, logger: str) -> dict[str, Mask]:
-    """Return one mask a column: bit i set where REASONS[i] applies."""
-    log, sun = study.records[logger], study.sun[logger]
-    settings = study.parameters.campaign.settings
-    ranges = settings.quality.ranges
+    """Return one mask a column: bit i set where REASONS[i] applies to the reading by itself."""
+    log = study.records[logger]
     line = np.zeros(log.time_ns.size, dtype=np.uint32)
     for name, marked in log.marks.items():
-        line |= np.where(marked, BIT[name], np.uint32(0))
-        _count(study, name, logger, "", int(marked.sum()))
+        study.found(name, marked, line, logger=logger)
     masks = {}
-    in_passes = inside(log.time_ns, [(p.start_ns, p.stop_ns) for p in study.passes])
     for column, channel in study.channels[logger].items():
-        values, mask = log.channels[column], line.copy()
-        faults = {
-            "no reading": np.isnan(values) & ~log.unreadable[column],
-            "unreadable value": log.unreadable[column],
-            "out of range": out_of_range(values, *getattr(ranges, channel.quantity)),
-            "physically impossible": physically_impossible(values, channel.quantity, sun),
-        }
-        if channel.quantity in MAIN:
-            n = log.n_timed
-            faults["stuck reading"] = np.zeros(values.size, dtype=bool)
-            faults["stuck reading"][:n] = stuck(
-                values[:n], log.time_ns[:n], min_s=settings.quality.flatline_min_s,
-                false_alarms=settings.quality.flatline_false_alarms)
-        if channel.quantity in LIGHT:
-            capped = inside(log.time_ns, windows(study.sheet, "dark", logger, channel.quantity))
-            faults["stuck reading"] &= ~capped & (sun.zenith_deg < 90)
-            faults["physically impossible"] &= ~capped
-            limits = settings.albedo if channel.quantity[:5] == "short" else settings.ndvi
-            faults["capped"] = capped
-            faults["sun too low"] = (sun.zenith_deg > limits.zenith_max_deg) & in_passes
-            faults["too little light"] = in_passes & ~capped & _dim(values, channel, study, capped)
-            _short_darks(study, channel)
-        for name, marked in faults.items():
-            marked = marked & ((line & BIT["unreadable line"]) == 0)
-            mask |= np.where(marked, BIT[name], np.uint32(0))
-            if name != "capped":
-                _count(study, name, logger, column, int(marked.sum()))
-        if channel.quantity == "shortwave_down" and settings.quality.rare_limit_warning:
-            _rare(study, logger, column, values, mask, sun)
-        masks[column] = mask
-    _gaps(study, logger)
+        masks[column] = _mark(study, channel, line)
+    timekeeping(study, logger)
     return masks
+
+
+def _mark(study: Study, channel: Channel, line: Mask) -> Mask:
+    log, sun, quality = study.records[channel.logger], study.sun[channel.logger], study.quality
+    values, mask = log.channels[channel.column], line.copy()
+    low, high = quality.range_of(channel.quantity)
+    n, twofold = log.n_timed, channel.quantity in HEAT
+    capped = inside(log.time_ns, [span for kind in ("dark", "cover") for span in windows(
+        study.sheet, kind, channel.logger, channel.quantity)]) & (channel.quantity in MAIN)
+    dull = capped | ~(sun.zenith_deg < 90) if channel.quantity in LIGHT else capped
+    beyond = ("housing " * (channel.quantity == "housing_temperature")) + "out of range"
+    faults = {
+        "no reading": np.isnan(values) & ~log.unreadable[channel.column],
+        "unreadable value": log.unreadable[channel.column],
+        beyond: out_of_range(values, low, high),
+        "physically impossible": physically_impossible(values, channel.quantity, sun) & ~capped,
+    }
+    if channel.quantity in MAIN:
+        whole = np.where((mask == 0) & ~faults[beyond] & ~dull, values, np.nan)
+        faults["saturated"] = saturated(whole, quality.saturation_repeats, lower=twofold)
+        faults["stuck reading"] = np.zeros(values.size, dtype=bool)
+        faults["stuck reading"][:n] = stuck(
+            values[:n], log.time_ns[:n], min_s=quality.flatline_min_s,
+            false_alarms=quality.flatline_false_alarms,
+            max_repeat=quality.flatline_max_repeat) & ~dull[:n]
+        faults["capped"] = capped
+    if channel.quantity in LIGHT:
+        settings = study.parameters.campaign.settings
+        limits = settings.albedo if channel.quantity[:5] == "short" else settings.ndvi
+        served = inside(log.time_ns, [(p.start_ns, p.stop_ns) for p in study.passes])
+        faults["sun too low"] = (sun.zenith_deg > limits.zenith_max_deg) & served
+        faults["too little light"] = served & ~capped & _dim(values, channel, study, capped)
+        _short_darks(study, channel)
+    legible = (line & BIT["unreadable line"]) == 0
+    for name, marked in faults.items():
+        study.found(name, marked & legible, mask, logger=channel.logger, column=channel.column,
+                    told=name != "capped")
+    if channel.quantity in MAIN:
+        _walked(study, channel, mask)
+        study.found("end of range", end_of_range(
+            values, low, high, quality.saturation_share, lower=twofold) & (mask == 0), mask,
+            logger=channel.logger, column=channel.column)
+    if quality.rare_limit_warning:
+        study.found("extremely rare irradiance",
+                    extremely_rare(values, channel.quantity, sun) & (mask == 0), mask,
+                    logger=channel.logger, column=channel.column)
+    return mask
+
+
+def _walked(study: Study, channel: Channel, mask: Mask) -> None:
+    """Mark spikes, and flag steps of stand-off readings; a contact pass is full of both.
+
+    A spike within the channel's own stated uncertainty is no matter.
+    """
+    log, quality = study.records[channel.logger], study.quality
+    values = log.channels[channel.column]
+    floor = np.hypot(channel.u_offset, channel.u_gain * (values - channel.offset.value))
+    place = channel.logger, channel.column
+    spiked, stepped = np.zeros(values.size, dtype=bool), np.zeros(values.size, dtype=bool)
+    for this in study.passes:
+        if this.kind == "contact" or this.to_ns <= this.from_ns or not any(
+                (c.logger, c.column) == place for c in this.channels.values()):
+            continue
+        first, last = np.searchsorted(log.time_ns[:log.n_timed], [this.from_ns, this.to_ns])
+        rows = first + np.flatnonzero(mask[first:last] == 0)
+        spiked[rows] = spikes(values[rows], window=quality.spike_window, mad=quality.spike_mad,
+                              noise=quality.spike_noise, floor=floor[rows],
+                              resolution=log.resolution[channel.column])
+        rows = rows[~spiked[rows]]
+        if this.kind == "stand-off":
+            stepped[rows] = steps(log.time_ns[rows], values[rows], quality.step_max_k_s,
+                                  log.interval_s)
+    for name, hit in (("spike", spiked), ("step", stepped)):
+        study.found(name, hit, mask, logger=channel.logger, column=channel.column)
 
 
 def _dim(values: FloatArray, channel: Channel, study: Study, capped: BoolArray) -> BoolArray:
@@ -104,18 +123,6 @@ def _dim(values: FloatArray, channel: Channel, study: Study, capped: BoolArray) 
         return values < floor
 
 
-def _rare(study: Study, logger: str, column: str, values: FloatArray, mask: Mask,
-          sun: Sun) -> None:
-    limits = shortwave_limits(sun.cos_zenith, sun.extraterrestrial_w_m2)
-    with np.errstate(invalid="ignore"):
-        count = int(((values > limits.down_rare) & (mask == 0)).sum())
-    if count:
-        study.note("extremely rare irradiance", "flag", f"{count} readings are above the extremely "
-                   "rare limit; at several records a second the edge of a cloud can do this",
-                   "Long & Shi 2008, extremely rare limits (made for one-minute means)",
-                   logger=logger, column=column, records=count)
-
-
 def _short_darks(study: Study, channel: Channel) -> None:
     """Note dark rows of which nothing is left between their uncertain ends."""
     log = study.records[channel.logger]
@@ -127,19 +134,25 @@ def _short_darks(study: Study, channel: Channel) -> None:
                        "field practice", logger=channel.logger, column=channel.column)
 
 
-def _gaps(study: Study, logger: str) -> None:
-    log, quality = study.records[logger], study.parameters.campaign.settings.quality
+def timekeeping(study: Study, logger: str) -> None:
+    """Note gaps, an interval that is not the stated one, and uneven intervals."""
+    log, quality = study.records[logger], study.quality
     steps_s = np.diff(log.time_ns[:log.n_timed]) / NS
-    wide = steps_s > quality.gap_intervals * log.interval_s
-    if wide.any():
-        study.note("gap", "flag", f"{int(wide.sum())} gaps of more than "
+    steps_s = steps_s[steps_s > 0]
+    if steps_s.size == 0:
+        return
+    source, middle_s = "engineering default", float(np.median(steps_s))
+    wide = int((steps_s > quality.gap_intervals * log.interval_s).sum())
+    if wide:
+        study.note("gap", "flag", f"{counted(wide, 'gap')} of more than "
                    f"{quality.gap_intervals:g} intervals, the longest {steps_s.max():.1f} s; "
-                   "nothing is interpolated across them", "engineering default", logger=logger,
-                   records=int(wide.sum()))
-
-
-def _count(study: Study, name: str, logger: str, column: str, count: int) -> None:
-    if count:
-        reason = next(r for r in REASONS if r.name == name)
-        study.note(name, "exclude", f"{count} records: {reason.sentence}", reason.source,
-                   logger=logger, column=column, records=count)
+                   "nothing is interpolated across", source, logger=logger, records=wide)
+    off = middle_s / log.interval_s - 1
+    if abs(off) > quality.rate_tolerance:
+        study.note("rate", "flag", f"a record every {middle_s:.4g} s, {100 * abs(off):.2g} % "
+                   f"{'more' if off > 0 else 'less'} than the stated interval_s of "
+                   f"{log.interval_s:g} s", source, logger=logger, records=log.n_timed)
+    low, high = np.quantile(steps_s, [0.16, 0.84])
+    if high - low > 2 * quality.rate_tolerance * middle_s:
+        study.note("jitter", "note", f"two in three intervals lie between {low:.4g} s and "
+                   f"{high:.4g} s", source, logger=logger)

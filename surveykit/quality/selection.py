@@ -6,18 +6,28 @@ from collections import Counter
 
 import numpy as np
 
-from surveykit.accounting import BIT, NOT_A_FAULT, NS, REASONS, Mask, PassRecords
+from surveykit.accounting import (
+    BIT,
+    CHECKS,
+    NOT_A_FAULT,
+    NS,
+    REASONS,
+    Mask,
+    PassRecords,
+    counted,
+    percent,
+)
 from surveykit.core import BoolArray, IntArray
 from surveykit.intake.passes import Pass, find_dwells
 from surveykit.intake.records import Records
-from surveykit.quality.checks import nearest, primary
-from surveykit.quality.marks import Study
+from surveykit.quality.consistency import ROUNDING_S, placed_far_from_air
+from surveykit.quality.series import nearest, primary
+from surveykit.quality.study import Masks, Study
 
-ROUNDING_S = 1e-3  # of printed times, beyond half an interval between partners
 FEWEST = 2  # records that have a spread
 
 
-def choose(study: Study, this: Pass, masks: dict[str, dict[str, Mask]]) -> PassRecords:
+def choose(study: Study, this: Pass, masks: Masks) -> PassRecords:
     """Return the records of a pass that may be used, and count the rest of its window."""
     main = next(iter(this.channels.values())).logger
     log, sun = study.records[main], study.sun[main]
@@ -38,6 +48,9 @@ def choose(study: Study, this: Pass, masks: dict[str, dict[str, Mask]]) -> PassR
     dwells: list[tuple[int, int]] = []
     if this.kind == "contact":
         mask, dwells = _place(study, this, window, mask)
+        settled = np.flatnonzero(mask == 0)
+        far = placed_far_from_air(study, masks, this, window[settled])
+        mask[settled[far]] |= BIT["far from the air"]
     used = mask == 0
     refusal = _refusal(study, this, window, mask)
     _note(study, this, main, mask, refusal)
@@ -51,7 +64,8 @@ def choose(study: Study, this: Pass, masks: dict[str, dict[str, Mask]]) -> PassR
     return PassRecords(
         main, window[used], {name: at[used] for name, at in partners.items()}, int(window.size),
         dict(Counter(REASONS[i].name for i in primary(mask) if i >= 0)), refusal,
-        tuple((int(where[a]), int(where[b - 1]) + 1) for a, b in dwells), zenith)
+        tuple((int(where[a]), int(where[b - 1]) + 1) for a, b in dwells), zenith,
+        _flags(study, this, main, window[used], {n: at[used] for n, at in partners.items()}))
 
 
 def _partners(log: Records, window: IntArray, other: Records) -> IntArray:
@@ -106,6 +120,11 @@ def _refusal(study: Study, this: Pass, window: IntArray, mask: Mask) -> str:
                 f"{settings.passes.min_duration_s:g} s")
     inside, faults = _faulty(mask)
     share = float(faults.sum() / max(inside.sum(), 1))
+    swapped = inside & ((mask & BIT["more light up than down"]) != 0)
+    if swapped.sum() > settings.quality.swapped_share * inside.sum():
+        return ("the head said to look down reads more than the one said to look up in "
+                f"{percent(swapped.sum() / inside.sum())} of the records: check which column is "
+                "shortwave_up and which shortwave_down")
     if share <= settings.quality.excluded_refuse and (mask == 0).sum() >= FEWEST:
         return ""
     dark = inside & ((mask & BIT["sun too low"]) != 0)
@@ -114,7 +133,7 @@ def _refusal(study: Study, this: Pass, window: IntArray, mask: Mask) -> str:
     if share > settings.quality.excluded_refuse:
         reasons = Counter(REASONS[i].name for i in primary(mask & ~NOT_A_FAULT)[faults])
         worst = min(reasons, key=lambda name: (-reasons[name], name))
-        return f"{share:.0%} of the records are excluded, most as: {worst}"
+        return f"{percent(share)} of the records are excluded, most as: {worst}"
     if this.kind == "contact" and (mask & BIT["between placements"]).any():
         return "no settled placement of the head was found"
     return f"fewer than {FEWEST} records are left of the pass"
@@ -144,9 +163,26 @@ def _note(study: Study, this: Pass, logger: str, mask: Mask, refusal: str) -> No
     share = float(faults.sum() / max(inside.sum(), 1))
     if refusal or share > study.parameters.campaign.settings.quality.excluded_flag:
         study.note("records of a pass", "refuse" if refusal else "flag",
-                   refusal or f"{share:.0%} of the pass's records are excluded",
+                   refusal or f"{percent(share)} of the pass's records are excluded",
                    "engineering default", logger=logger, surface=this.surface, pass_=this.name,
                    records=int(faults.sum()))
+
+
+def _flags(study: Study, this: Pass, main: str, index: IntArray,
+           partners: dict[str, IntArray]) -> tuple[str, ...]:
+    """Note what was flagged among the records a pass uses; return the flags' names."""
+    names = []
+    for channel in this.channels.values():
+        rows = index if channel.logger == main else partners[channel.logger]
+        for name, hit in study.flagged.get((channel.logger, channel.column), {}).items():
+            count = int(np.count_nonzero(hit[rows]))
+            if count:
+                names.append(name)
+                study.note(name, CHECKS[name].action, f"{counted(count, 'record')} of {rows.size}: "
+                           f"{CHECKS[name].sentence}", CHECKS[name].source, logger=channel.logger,
+                           column=channel.column, surface=this.surface, pass_=this.name,
+                           records=count)
+    return tuple(dict.fromkeys(names))
 
 
 def _missing(study: Study, this: Pass) -> None:
@@ -160,7 +196,7 @@ def _missing(study: Study, this: Pass) -> None:
         got = int((inside & ~log.marks["repeated record"]).sum())
         due = int((this.stop_ns - this.start_ns) / NS / log.interval_s)
         if due and 1 - got / due > limit:
-            study.note("missing records", "flag", f"{1 - got / due:.0%} of the records expected "
-                       f"in the pass, one every {log.interval_s:g} s, are missing",
+            study.note("missing records", "flag", f"{percent(1 - got / due)} of the records "
+                       f"expected in the pass, one every {log.interval_s:g} s, are missing",
                        "engineering default", logger=name, surface=this.surface,
                        pass_=this.name, records=due - got)

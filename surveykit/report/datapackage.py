@@ -30,9 +30,12 @@ TITLES = {
     "dwells": "One row a single placement of the contact head",
     "budget": "One row a source of uncertainty of a surface",
     "ledger": "What became of each record",
+    "waterfall": "What became of each reading of a channel, reason by reason",
     "checks": "Findings of the quality checks",
     "clocks": "How each logger's clock was set",
     "differences": "Differences between surfaces of this campaign",
+    "ranks": "Probability of each surface to stand at each place, the highest first",
+    "trends": "Lines through the dates of each surface, three dates or more",
     "changes": "Changes since earlier campaigns",
     "corrections": "From the raw to the final value of each pass, step by step",
 }
@@ -41,7 +44,7 @@ CF_NAMES = {"temperature": "surface_temperature", "albedo": "surface_albedo",
 COLUMN_CF = {"zenith_deg": "solar_zenith_angle", "start_utc": "time", "stop_utc": "time"}
 # Numbers without a unit of their own: plain ratios and counts. Other numbers take the unit that
 # stands in the row's column `unit`; a suffix of the name states the unit otherwise.
-RATIOS = {"coverage", "k", "dof", "n_effective", "share", "p_adjusted"}
+RATIOS = {"probability", "p", "needed", "coverage", "k", "dof", "n_effective", "share", "p_adjusted"}
 SUFFIXES = {"_s": "s", "_ppm": "1e-6", "_deg": "degree"}
 DWELL_UNITS = {"value": "degC", "u": "K"}
 NOTES = {
@@ -53,6 +56,14 @@ NOTES = {
     "n_effective": "number of records, reduced for their correlation",
     "could_have_missed": "difference found with 80 % power at the 5 % level",
     "p_adjusted": "two-sided, after Holm within a quantity and kind",
+    "spread": "standard deviation between passes (patches where there are several)",
+    "end_error": "standard error of the interval's ends by Monte Carlo",
+    "needed": "passes (patches where there are several) for a half-width of the relevant change; "
+              "INF where shared errors alone are wider",
+    "narrower": "by how much the half-width shrinks where this source is halved",
+    "lower_all": "lower end of the interval that holds together with the whole family's",
+    "upper_all": "upper end of the interval that holds together with the whole family's",
+    "place": "1 is the highest", "p": "two-sided, of the slope alone",
     "share": "of the variance of the surface's value",
 }
 

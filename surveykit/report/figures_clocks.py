@@ -58,8 +58,8 @@ def _covers(name: str, edges: pd.DataFrame, time_zone: str) -> Drawing:
     after.axhline(0, color=MUTED, linewidth=1)
     before.set_title(f"Before: {reference} minus {name}, s", fontweight="normal", fontsize=9)
     after.set_title("After: what is left, with u of each edge, s", fontweight="normal", fontsize=9)
-    before.legend(loc="lower left", bbox_to_anchor=(0, 1.12), ncols=2, borderaxespad=0,
-                  handlelength=1.0)
+    figure.legend(*before.get_legend_handles_labels(), loc="outside upper left", ncols=2,
+                  handlelength=1.0, borderaxespad=0)
     for axis in (before, after):
         axis.grid(axis="y")
         axis.margins(x=0.06)

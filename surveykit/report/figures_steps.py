@@ -114,10 +114,11 @@ def placement_plot(dwells: pd.DataFrame, labels: Labels = None,
 def series_plots(series: pd.DataFrame, labels: Labels = None) -> tuple[Drawing, ...]:
     """Return for each quantity one plot of its values over the dates of several campaigns.
 
-    `series` is the table `surfaces` of all of them with a column `date` (ISO text).
+    `series` is the table `surfaces` of all of them with a column `date` (ISO text). One date
+    gives none: there is no course to draw.
     """
     if series.empty or series["date"].nunique() < 2:
-        return (Drawing(None, "There is one date only, so there is no course over dates to draw."),)
+        return ()
     quantities = dict.fromkeys(quantity for (quantity, _), _ in w.families(series))
     return tuple(_series_plot(series, quantity, labels) for quantity in quantities)
 

@@ -61,9 +61,11 @@ def build_page(notebooks: Sequence[NotebookNode], tables: Mapping[str, pd.DataFr
                   summary=_summary(tables, facts), appendix=_appendix(tables, facts))
 
 
-def render(template: str, facts: Mapping[str, Any], notebooks: Sequence[NotebookNode],
-           **fields: Any) -> str:
+def render(template: str, facts: Mapping[str, Any], notebooks: Sequence[NotebookNode], *,
+           links: frozenset[str] = frozenset(), **fields: Any) -> str:
     """Return a page of the house style: executed notebooks and finished fields in a template.
+
+    `links` are the addresses of other pages that it may lead to.
 
     Raises
     ------
@@ -75,7 +77,7 @@ def render(template: str, facts: Mapping[str, Any], notebooks: Sequence[Notebook
                               undefined=StrictUndefined, trim_blocks=True, lstrip_blocks=True)
     page: str = environment.get_template(template).render(
         facts=facts, css=Html((TEMPLATES / "page.css").read_text("utf-8")), parts=parts, **fields)
-    watch = _Watch()
+    watch = _Watch(links)
     watch.feed(page)
     if watch.found:
         raise ValueError("the page would not stand alone; write sources in words, show figures by "
@@ -86,15 +88,16 @@ def render(template: str, facts: Mapping[str, Any], notebooks: Sequence[Notebook
 class _Watch(HTMLParser):
     """Finds what would run on the page or ask the network for something."""
 
-    def __init__(self) -> None:
+    def __init__(self, links: frozenset[str]) -> None:
         super().__init__()
-        self.found: list[str] = []
+        self.links, self.found = links, list[str]()
 
     def handle_starttag(self, tag: str, attrs: list[tuple[str, str | None]]) -> None:
         if tag in ACTIVE:
             self.found.append(f"<{tag}>")
         for name, value in attrs:
-            remote = name in ADDRESSES and not (value or "").startswith(("#", "data:image/"))
+            remote = (name in ADDRESSES and not (value or "").startswith(("#", "data:image/"))
+                      and not (name == "href" and value in self.links))
             if remote or name.startswith("on") or (name == "style" and "url(" in (value or "")):
                 self.found.append(f'<{tag} {name}="{(value or "")[:60]}">')
 
@@ -162,8 +165,8 @@ def _title_block(tables: Mapping[str, pd.DataFrame],
     conditions = [*facts.get("conditions", [])] or ["Not stated."]
     height = 90 - tables["passes"]["zenith_deg"].dropna()
     if len(height):
-        conditions.append(f"Sun {height.min():.0f}° to {height.max():.0f}° above the horizon "
-                          "during the passes.")
+        ends = dict.fromkeys(f"{end:.0f}°" for end in (height.min(), height.max()))
+        conditions.append(f"Sun {' to '.join(ends)} above the horizon during the passes.")
     rows = [("Date", [w.date_text(facts["date"])]), ("Site", [where]),
             ("Crew", [", ".join(facts.get("crew") or []) or "Not stated."]),
             ("Conditions", conditions)]
@@ -172,7 +175,8 @@ def _title_block(tables: Mapping[str, pd.DataFrame],
     if facts.get("earlier"):
         rows.append(("Compared with", [*facts["earlier"]]))
         rows.append(("Control", [w.label(facts.get("control") or "", labels) or "None named."]))
-    rows.append(("Times", [f"{facts.get('time_zone') or site['time_zone']} unless UTC is stated."]))
+    zone = facts.get("time_zone") or site["time_zone"]
+    rows.append(("Times", [zone if zone == "UTC" else f"{zone} unless UTC is stated."]))
     return [(term, [typeset(line) for line in lines]) for term, lines in rows]
 
 
@@ -195,9 +199,8 @@ def _summary(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> li
             sentences.narrowing(tables["budget"], labels),
             empty="No uncertainty budget could be drawn up.")]),
         ("cautions", "Cautions", [bullets(standing.cautions(surfaces, labels))]),
-        ("not-corrected", "What is not corrected yet", [bullets(
-            [*facts.get("not_corrected", [])],
-            empty="This run names no correction as missing.")]),
+        ("flags", "What was not corrected or not checked", [bullets(
+            sentences.flagged(tables["passes"]), empty="No pass carries a flag.")]),
     ]
     if facts.get("notes"):
         sections.append(("notes", "Notes on this run", [bullets([*facts["notes"]])]))

@@ -197,6 +197,20 @@ def value_only(surfaces: pd.DataFrame, labels: Labels = None) -> list[str]:
             "passes differ, so no verdict uses it."]
 
 
+def flagged(passes: pd.DataFrame) -> list[str]:
+    """Say, for each quantity and kind, what its passes are flagged with, the commonest first."""
+    lines = []
+    for (quantity, kind), block in w.families(passes):
+        told = block["flags"].str.split("; ").explode()
+        counts = told[told != ""].value_counts(sort=False).sort_values(ascending=False,
+                                                                       kind="stable")
+        parts = [f"{flag} ({'every pass' if n == len(block) else f'{n} of {len(block)} passes'})"
+                 for flag, n in counts.items()]
+        if parts:
+            lines.append(f"{w.quantity_text(quantity, kind)}: {'; '.join(parts)}.")
+    return lines
+
+
 def narrowing(budget: pd.DataFrame, labels: Labels = None) -> list[str]:
     """Say, for each quantity and kind, which source holds the largest part of the variance."""
     lines = []

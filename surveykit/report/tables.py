@@ -86,7 +86,7 @@ def _heading(name: str) -> str:
 
 def _any_text(value: Any) -> str:
     if isinstance(value, float):
-        return w.figures(value, 4)
+        return "" if pd.isna(value) else w.plain(float(f"{value:.4g}"))
     if isinstance(value, pd.Timestamp):
         return f"{value:%Y-%m-%d %H:%M:%S}" + (" UTC" if str(value.tz) == "UTC" else "")
     if value is None or value is pd.NaT:

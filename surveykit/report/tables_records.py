@@ -27,7 +27,8 @@ def check_table(checks: pd.DataFrame, labels: Mapping[str, str] | None = None) -
         where = [row["logger"], row["column"], w.label(row["surface"], labels), row["pass"]]
         rows.append([row["check"], row["severity"], ", ".join(filter(None, where)) or "campaign",
                      w.count(row["records"]) if row["records"] else "",
-                     w.sentence_case(row["message"].removeprefix(f"{row['records']} records: ")),
+                     w.sentence_case(row["message"].removeprefix(f"{row['records']} records: ")
+                                     .removeprefix("1 record: ")),
                      row["source"]])
     heads = [Column("Check"), Column("Severity"), Column("Where"), Column("Records", "number"),
              Column("Finding", "long"), Column("Source of the limit")]

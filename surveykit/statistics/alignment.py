@@ -8,7 +8,6 @@ from __future__ import annotations
 from typing import NamedTuple
 
 import numpy as np
-from scipy.stats import theilslopes
 
 from surveykit.core import FloatArray
 
@@ -176,6 +175,8 @@ def robust_line(time_s: FloatArray, offset_s: FloatArray, slope: float | None) -
     P. K. Sen, J. Am. Stat. Assoc. 63 (1968) 1379-1389 (from memory); scipy.stats.theilslopes.
     """
     if slope is None:
+        from scipy.stats import theilslopes  # late: half a second that most runs do not need
+
         slope = float(theilslopes(offset_s, time_s).slope)
     return np.median(offset_s - slope * time_s) + slope * time_s
 

@@ -175,7 +175,8 @@ def summarise(result: Result, coverage: float) -> Summary:
     Summary
         u = sqrt(var(systematic) + sum se^2), which stays finite at any dof; lower and upper are
         the draws' quantiles with equal tails; k = (upper - lower) / (2 u), NaN where u is 0; dof
-        by Welch-Satterthwaite, infinite without sampling; p of the value against 0, two-sided.
+        by Welch-Satterthwaite, infinite without sampling; p of the value against 0, two-sided:
+        of Student's t with these dof or of the draws, whichever is larger.
 
     Raises
     ------
@@ -198,7 +199,9 @@ def summarise(result: Result, coverage: float) -> Summary:
     dof = variance**2 / uncertain_dof if uncertain_dof > 0 else np.inf
     if u == 0:
         return Summary(result.value, u, lower, upper, np.nan, dof, float(result.value == 0))
-    p = float(2 * stdtr(dof, -abs(result.value) / u))
+    beyond = min(np.count_nonzero(result.total <= 0), np.count_nonzero(result.total >= 0))
+    p = max(float(2 * stdtr(dof, -abs(result.value) / u)),
+            min(1.0, 2.0 * float(beyond) / result.total.size))
     return Summary(result.value, u, lower, upper, (upper - lower) / (2 * u), dof, p)
 
 

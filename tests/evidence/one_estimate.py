@@ -15,6 +15,9 @@ HEADS = ("rednir-sky", "rednir-ground")
 WEATHER = {"weather": lines("weather", n=5, step_s=60)}
 
 
+UNTOUCHED = {"albedo": {"correct_surroundings": False, "correct_self_shade": False}}
+
+
 def changed(logger: str, **entry: Any) -> dict[str, Any]:
     return KIT | {logger: {k: v for k, v in (KIT[logger] | entry).items() if v is not None}}
 

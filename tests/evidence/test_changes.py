@@ -75,7 +75,7 @@ def test_an_unchanged_surface_on_a_milder_day():
     assert rows.change[RAW] == pytest.approx(-9.3, abs=0.06)
     assert rows.change[DOUBLE] == pytest.approx(-2.8, abs=0.06)
     assert rows.change[RATIO] == pytest.approx(0.2, abs=0.06)
-    assert rows.verdict.to_dict() == {RATIO: "no difference shown", DOUBLE: "", RAW: ""}
+    assert rows.verdict.to_dict() == {RATIO: "equivalent", DOUBLE: "", RAW: ""}
     assert rows.could_have_missed[RATIO] > 0
     assert rows.comparability[RATIO] == "partly matched"
     assert "irradiance differs by 11%" in rows.note[RATIO]

@@ -51,8 +51,8 @@ def test_a_head_higher_than_its_path_limit_is_flagged(tmp_path):
 
 @pytest.mark.parametrize(("kit", "missing"), [
     (changed("thermal", band_um=None), "band_um of thermal, target is missing"),
-    (changed_column("thermal", "target", emissivity_setting=0.98),
-     "thermal, target was logged with emissivity setting 0.98; undoing it is not available yet")])
+    (changed_column("thermal", "target", emissivity_setting=None),
+     "emissivity_setting of thermal, target is missing")])
 def test_what_an_infrared_head_must_state(tmp_path, kit, missing):
     assert stand_off(tmp_path, kit=kit).note == missing
 

@@ -50,7 +50,9 @@ def test_each_pass_is_what_plain_sums_give(valley, number):
     held = minutes(*SPANS[number])
     made = valley().by_name()
     albedo = made[f"V1-albedo-{number + 1}"]
-    assert albedo.value == pytest.approx(sum(held["uw_solar"]) / sum(held["ghi"]), abs=1e-9)
+    plain = sum(held["uw_solar"]) / sum(held["ghi"])
+    assert albedo.steps[0] == ("raw", pytest.approx(plain, abs=1e-9))
+    assert albedo.value == pytest.approx(plain, abs=2e-5)  # the mast's head hardly shades its field
     warm = made[f"V1-longwave-{number + 1}"]
     kelvins = [((up - 0.03 * down) / (0.97 * SIGMA)) ** 0.25
                for up, down in zip(held["uw_ir"], held["dw_ir"], strict=True)]

@@ -87,10 +87,9 @@ def test_spoilt_files_are_accounted_for_or_refused_where_they_are(tmp_path, clea
 
 def test_the_oracle_sees_a_silently_different_number(tmp_path, clean):
     name = f"{yard.FOLDER}/pair.csv"
-    rows = CLEAN[name].decode().splitlines()
-    at = len(rows) // 2
-    cells = rows[at].split(",")
-    rows[at] = ",".join([*cells[:2], f"{float(cells[2]) * 1.1:.3f}"])
-    data = ("\n".join(rows) + "\n").encode()
+    head, *rows = CLEAN[name].decode().splitlines()
+    cells = [row.split(",") for row in rows]
+    rows = [f"{time},{sky},{float(ground) * 1.01:.3f}" for time, sky, ground in cells]
+    data = ("\n".join([head, *rows]) + "\n").encode()
     yard.write_files(tmp_path, CLEAN | {name: data})
     assert "unaccounted" in verdict(yard.outcome(tmp_path), clean, name, data)

@@ -131,7 +131,8 @@ def test_weather_that_cannot_be_meant(tmp_path, changed, sentence):
 
 @pytest.mark.parametrize(("changed", "sentence"), [
     ({"entry": "walk"}, "entry 'walk' is not known; write one of pass, cover, dark, weather"),
-    ({"entry": "swap"}, "entry 'swap' is reserved for later work; take the row out"),
+    ({"entry": "swap", "instrument": "pair", "reading": "up"},
+     "reading 'up' of a swap; write normal or inverted"),
     ({"surface": "Asphalt"}, "surface 'Asphalt' is not known; write one of asphalt, lawn"),
     ({"surface": ""}, "a pass row needs surface; the cell is empty"),
     ({"patch": ""}, "a pass row needs patch"),
@@ -246,11 +247,11 @@ def test_date_and_campaign_columns(tmp_path):
 
 # ---- the file
 
-def test_unknown_columns_are_noticed_reserved_ones_refused(tmp_path):
+def test_unknown_columns_are_noticed_and_double_ones_refused(tmp_path):
     sheet = read(tmp_path, {**PASS, "crew": "x"}, columns=[*COLUMNS, "crew", "date"])
     assert sheet.notices[0] == "sheet.csv: the column 'crew' is not known and is left out"
-    assert "row 1: the column rod_side is reserved for later work" in faults(
-        tmp_path, PASS, columns=[*COLUMNS, "rod_side"])
+    assert "rod_side 'left' is not known; write where it was, seen from the head" in faults(
+        tmp_path, {**PASS, "rod_side": "left"}, columns=[*COLUMNS, "rod_side"])
     assert "row 1: the column mode stands twice" in faults(
         tmp_path, PASS, columns=[*COLUMNS, "mode"])
 

@@ -52,7 +52,8 @@ HEADER, *ROWS = CLEAN.splitlines()
       "s,degC,degC", *ROWS[1:]], {"skip_lines": 1, "unit_lines": 2}, 3),
 ])
 @pytest.mark.parametrize("block", [30, 1 << 21])
-def test_a_restarted_logger_writes_its_head_again(tmp_path, monkeypatch, lines, layout, again, block):
+def test_a_restarted_logger_writes_its_head_again(
+        tmp_path, monkeypatch, lines, layout, again, block):
     monkeypatch.setattr(dialect, "BLOCK_BYTES", block)
     records = read(tmp_path, "\n".join(lines) + "\n", layout=layout)
     plain = read(tmp_path, CLEAN)

@@ -113,7 +113,8 @@ def test_how_a_file_is_written_is_found_and_the_reader_agrees(tmp_path, form):
 
 
 @pytest.mark.parametrize(("text", "sentence"), [
-    ("", "is empty"), ("\0\1\2" * 50, "is no text"), ("a story\nof two lines\n", "no regular number"),
+    ("", "is empty"), ("\0\1\2" * 50, "is no text"),
+    ("a story\nof two lines\n", "no regular number"),
     ("1,2\n3,4\n5,6\n", "no header stands above the records"),
     ("a,b\nx,y\nz,w\n", "no line looks like a record"),
     ("a,b\n1,2\n2,3\n3,4\n", "no column looks like times")])

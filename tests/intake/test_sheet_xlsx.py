@@ -65,6 +65,10 @@ def test_workbook_and_csv_give_the_same_entries(tmp_path, first_sheet):
         == [repr(e) for e in plain]
 
 
+def at(day, hour=0):
+    return datetime(2025, 7, day, hour)  # noqa: DTZ001 - a spreadsheet's wall time
+
+
 def change(place, value, form=None):
     def spoil(sheet):
         sheet[place].value = value
@@ -80,7 +84,7 @@ START = f"{chr(65 + COLUMNS.index('start'))}2"  # the start of row 2
     (time(12, 0), "h:mm", 60.0, 0), (time(12, 0), "h:mm:ss", 5.0, 0),
     (time(12, 0, 7), "h:mm", 5.0, 7), (time(12, 0, 0, 500_000), "h:mm:ss.000", 5.0, 0.5),
     (timedelta(hours=12), "[h]:mm:ss", 5.0, 0),
-    (datetime(2025, 7, 24, 12, 0), "yyyy-mm-dd h:mm:ss", 5.0, 0),
+    (at(24, 12), "yyyy-mm-dd h:mm:ss", 5.0, 0),
     ("12:00:00 PM", None, 5.0, 0), ("2025-07-24T11:00:00Z", None, 5.0, 0)])
 def test_a_time_is_read_as_its_cell_shows_it(tmp_path, value, form, u_s, start):
     plain = entries(tmp_path, "sheet.csv", text_of(PASS))[0]
@@ -95,7 +99,7 @@ def test_a_time_is_read_as_its_cell_shows_it(tmp_path, value, form, u_s, start):
     (0.5, "General", "row 2: start '0.5' is a fraction of a day"),
     ("#REF!", None, "row 2: start '#REF!' is no time"),
     ("=A1+1", None, f"row 2: cell {START} holds a formula without its value"),
-    (datetime(2025, 7, 23, 12, 0), "yyyy-mm-dd h:mm:ss", "row 2: "),
+    (at(23, 12), "yyyy-mm-dd h:mm:ss", "row 2: "),
     (True, None, "row 2: start 'True' is no time")])
 def test_a_cell_that_is_no_time_is_refused_by_its_row(tmp_path, value, form, sentence):
     assert f"sheet.xlsx {sentence}" in refusal(
@@ -105,7 +109,7 @@ def test_a_cell_that_is_no_time_is_refused_by_its_row(tmp_path, value, form, sen
 def test_date_column_of_a_workbook(tmp_path):
     columns = [*COLUMNS, "date"]
     cell = f"{chr(65 + len(COLUMNS))}2"
-    for day, form in ((date(2025, 7, 24), "dd.mm.yyyy"), (datetime(2025, 7, 24), "yyyy-mm-dd")):
+    for day, form in ((date(2025, 7, 24), "dd.mm.yyyy"), (at(24), "yyyy-mm-dd")):
         data = book([PASS], columns, change(cell, day, form))
         assert read_sheet(write(tmp_path, "sheet.xlsx", data), parameters(tmp_path)).notices == ()
     wrong = book([PASS], columns, change(cell, date(2025, 7, 23), "dd.mm.yyyy"))

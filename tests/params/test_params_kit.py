@@ -109,9 +109,9 @@ KIT_CASES = {
         "thermal.layout.missing[1]: got -9999; write a text, in quotes: \"-9999\""),
     "unknown encoding": ("skip_lines: 0", "encoding: utf8", "encoding: latin-1",
                          "thermal.layout.encoding: got 'utf8'; write utf-8, windows-1252"),
-    "reserved in the kit": (
-        "head_radius_cm: 1.2", "rod_width_cm: 1.5", "head_radius_cm: 1.2",
-        "shortwave.rod_width_cm: reserved for later work"),
+    "class that does not exist": (
+        "head_radius_cm: 1.2", "class_terms: D", "class_terms: B",
+        "shortwave.class_terms: got 'D'; write A, B or C"),
     "serial a number": ("serial: T-07", "serial: 1234", 'serial: "1234"',
                         'thermal.serial: got 1234; write plain text', '"1234"'),
     "unknown key in the kit": (

@@ -92,28 +92,40 @@ CAMPAIGN_CASES = {
         "settings: {}", "settings: {}\nderived: [sri]", "settings: {}",
         "derived: reserved for later work"),
     "reserved in comparison": (
-        "  control:", "  second_control: lawn\n  control:", "  control:",
-        "comparison.second_control: reserved for later work"),
+        "  control:", "  second_control: lawm\n  control:", "  control:",
+        "comparison.second_control: got 'lawm', no surface of this file; did you mean lawn?"),
     "reserved setting": (
-        "settings: {}", "settings: {statistics: {between_passes: common}}", "settings: {}",
-        "settings.statistics.between_passes: reserved for later work"),
-    "clock by another logger": (
-        "clock: {offset_s: 12.0, u_s: 0.5}", "clock: {align_with: shortwave}",
+        "settings: {}", "settings: {statistics: {between_passes: mine}}", "settings: {}",
+        "settings.statistics.between_passes: got 'mine'; write own or common"),
+    "clock by a logger that is not there": (
+        "clock: {offset_s: 12.0, u_s: 0.5}", "clock: {align_with: shortwaves}",
         "clock: {offset_s: 12.0, u_s: 0.5}",
-        "loggers.thermal.clock.align_with: not available yet; write offset_s and u_s"),
-    "clock by cover events": (
-        "clock: {offset_s: 12.0, u_s: 0.5}", "clock: {cover_events: true}",
-        "clock: {offset_s: 12.0, u_s: 0.5}",
-        "loggers.thermal.clock.cover_events: not available yet"),
+        "loggers.thermal.clock.align_with: got 'shortwaves', no logger of this file"),
+    "clock by itself": (
+        "clock: {offset_s: 12.0, u_s: 0.5}", "clock: {align_with: thermal}",
+        "clock: {cover_events: true}",
+        "loggers.thermal.clock.align_with: got 'thermal', whose clock hangs on this one"),
+    "clock in two ways": (
+        "clock: {offset_s: 12.0, u_s: 0.5}", "clock: {align_with: shortwave, cover_events: true}",
+        "clock: {align_with: shortwave}",
+        "loggers.thermal.clock.align_with: got it beside cover_events"),
+    "drift of a clock to be found": (
+        "clock: {offset_s: 12.0, u_s: 0.5}", "clock: {cover_events: true, drift_ppm: 20}",
+        "clock: {cover_events: true, offset_s: 12}",
+        "loggers.thermal.clock.drift_ppm: the clock is found from the records"),
+    "search of a stated clock": (
+        "clock: {offset_s: 12.0, u_s: 0.5}", "clock: {offset_s: 12.0, u_s: 0.5, search_s: 60}",
+        "clock: {align_with: shortwave, search_s: 60}",
+        "loggers.thermal.clock.search_s: belongs to align_with or cover_events"),
     "emissivity from elsewhere": (
-        "{value: 0.95, u: 0.01, source: handbook}", "{from: reference_pairs}",
-        "{value: 0.95, u: 0.01, source: handbook}",
-        "surfaces.worn-asphalt.emissivity.from: not available yet; write {value, u, source}"),
+        "{value: 0.95, u: 0.01, source: handbook}", "{from: reference_pairs, u: 0.01}",
+        "{from: reference_pairs}",
+        "surfaces.worn-asphalt.emissivity.u: does not go with from: reference_pairs; leave it"),
     "emissivity from ndvi": (
         "{value: 0.95, u: 0.01, source: handbook}",
+        "{from: ndvi, vegetation: 0.985, u: 0.01}",
         "{from: ndvi, vegetation: 0.985, soil: 0.96, u: 0.01}",
-        "{value: 0.95, u: 0.01, source: handbook}",
-        "line 24: surfaces.worn-asphalt.emissivity.from: not available yet"),
+        "surfaces.worn-asphalt.emissivity.soil: missing; write a number above 0, at most 1"),
     "emissivity without source": (
         ", source: handbook", "", ", source: handbook",
         "surfaces.worn-asphalt.emissivity.source: missing; write where the value comes from"),

@@ -126,7 +126,7 @@ def test_a_refused_pass_uses_no_record_and_says_so(tmp_path):
     survey = small(tmp_path, [row(**ALBEDO)], {"pair": log})
     quality = survey.quality()
     chosen = quality.passes["C1-albedo-1"]
-    assert chosen.refusal == "67% of the records are excluded, most as: out of range"
+    assert chosen.refusal == "67 % of the records are excluded, most as: out of range"
     assert chosen.index.size == 0
     rows = quality.ledger.set_index("reason").records
     assert rows["out of range"] == 80

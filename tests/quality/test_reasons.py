@@ -117,13 +117,16 @@ CASES = {
 }
 
 
+ELSEWHERE: set[str] = set()
+
+
 def reasons(root, sheet, logs, more=()):
     quality = small(root, sheet, logs, **dict(more)).quality()
     return set(quality.ledger.reason) - {""}, quality
 
 
 def test_every_reason_has_a_case():
-    assert set(CASES) == {reason.name for reason in REASONS}
+    assert set(CASES) == {reason.name for reason in REASONS} - ELSEWHERE
 
 
 @pytest.mark.parametrize("name", CASES)

@@ -15,7 +15,8 @@ from small_survey import (
     small,
 )
 
-from surveykit.quality.checks import nearest, primary, stuck
+from surveykit.quality.checks import stuck
+from surveykit.quality.series import nearest, primary
 
 NS = 1_000_000_000
 PASS = [row(**ALBEDO)]
@@ -101,24 +102,24 @@ def test_a_coarse_living_channel_is_not_stuck():
     """Whole numbers once a minute, equal to their neighbour two times in three."""
     rng = np.random.default_rng(5)
     values = np.round(20 + np.cumsum(rng.normal(0, 0.25, 600)))
-    assert not stuck(values, np.arange(600) * 60 * NS, min_s=10, false_alarms=1e-3).any()
+    assert not stuck(values, np.arange(600) * 60 * NS, min_s=10, false_alarms=1e-3, max_repeat=0.98).any()
 
 
 def test_a_fine_channel_that_stops_is_stuck_from_its_first_repeat():
     values = np.random.default_rng(5).normal(20, 1, 600)
     values[300:330] = values[300]
-    marked = stuck(values, np.arange(600) * NS, min_s=10, false_alarms=1e-3)
+    marked = stuck(values, np.arange(600) * NS, min_s=10, false_alarms=1e-3, max_repeat=0.98)
     assert np.flatnonzero(marked).tolist() == list(range(300, 330))
 
 
 def test_a_channel_that_never_moves_is_stuck():
-    assert stuck(np.ones(2000), np.arange(2000) * NS, min_s=10, false_alarms=1e-3).all()
+    assert stuck(np.ones(2000), np.arange(2000) * NS, min_s=10, false_alarms=1e-3, max_repeat=0.98).all()
 
 
 def test_a_short_repeat_is_not_stuck():
     values = np.random.default_rng(5).normal(20, 1, 600)
     values[300:309] = values[300]  # 8 s, below flatline_min_s
-    assert not stuck(values, np.arange(600) * NS, min_s=10, false_alarms=1e-3).any()
+    assert not stuck(values, np.arange(600) * NS, min_s=10, false_alarms=1e-3, max_repeat=0.98).any()
 
 
 def test_records_without_a_time_are_not_stuck(tmp_path):
@@ -145,7 +146,7 @@ def test_missing_records_are_flagged_from_a_tenth_on(tmp_path):
     rows = told(albedo(tmp_path / "a", gone(13)).quality(), "missing records")
     assert rows["pass"].tolist() == ["C1-albedo-1"]
     assert rows.records.tolist() == [13]
-    assert "11% of the records expected" in rows.message.iloc[0]
+    assert "11 % of the records expected" in rows.message.iloc[0]
     assert told(albedo(tmp_path / "b", gone(12)).quality(), "missing records").empty
 
 

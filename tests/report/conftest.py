@@ -78,7 +78,7 @@ def sparse_page(request: pytest.FixtureRequest) -> str:
     """Return the page of a campaign with nothing, or with one surface that was refused."""
     tables = sample.empty_tables() if request.param == "empty" else sample.bare_tables()
     facts = sample.facts()
-    for key in ("conditions", "earlier", "notes", "not_corrected", "instruments", "settings",
+    for key in ("conditions", "earlier", "notes", "instruments", "settings",
                 "inputs", "versions"):
         del facts[key]
     facts["control"] = None

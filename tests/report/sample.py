@@ -57,19 +57,32 @@ SOURCES = {
 }
 
 
+FILL: dict[str, dict[str, Any]] = {
+    "surfaces": {"spread": 0.4, "end_error": 0.002, "needed": 12.0}, "budget": {"narrower": 0.01},
+    "differences": {"lower_all": float("nan"), "upper_all": float("nan")},
+}
+
+
 def tables(*, hostile: bool = False) -> dict[str, pd.DataFrame]:
     """Return all tables of `core.TABLES`, filled."""
     surfaces = [_surface(*row) for row in VALUES]
     rows: dict[str, list[dict[str, Any]]] = {
         "surfaces": surfaces, "passes": _passes(), "dwells": _dwells(), "budget": _budget(),
-        "ledger": _ledger(), "checks": _checks(), "clocks": _clocks(),
+        "ledger": _ledger(), "waterfall": _waterfall(), "checks": _checks(), "clocks": _clocks(),
+        "ranks": _ranks(), "trends": _trends(),
         "differences": _differences(surfaces), "changes": _changes(), "corrections": _steps(),
     }
     if hostile:
         rows["surfaces"][3]["note"] = "=HYPERLINK(\"http://example.org\") <i>x</i>"
         rows["checks"][0]["message"] = "</td><script>alert(2)</script> & {{ config }}"
         rows["passes"][0]["note"] = "@sum <b>note</b>"
-    return {name: table(name, rows[name]) for name in TABLES}
+    return {name: table(name, [_whole(name, row) for row in rows.get(name, [])]) for name in TABLES}
+
+
+def _whole(name: str, row: dict[str, Any]) -> dict[str, Any]:
+    """Return the row with the columns that the page does not show empty."""
+    blank = {"text": "", "number": NAN, "count": 0, "time": pd.NaT}
+    return {column: row.get(column, blank[kind]) for column, kind in TABLES[name].items()}
 
 
 def empty_tables() -> dict[str, pd.DataFrame]:
@@ -80,7 +93,7 @@ def empty_tables() -> dict[str, pd.DataFrame]:
 def bare_tables() -> dict[str, pd.DataFrame]:
     """Return the tables of a refused date: one surface, not evaluated, nothing else."""
     row = _surface("lawn", "albedo", "", NAN, NAN, "not evaluated", "sun below the limit", 0, 0)
-    return {**empty_tables(), "surfaces": table("surfaces", [row])}
+    return {**empty_tables(), "surfaces": table("surfaces", [_whole("surfaces", row)])}
 
 
 def sky() -> pd.DataFrame:
@@ -173,6 +186,14 @@ def _ledger() -> list[dict[str, Any]]:
             for logger, what, why, n in spec]
 
 
+def _waterfall() -> list[dict[str, Any]]:
+    spec = [("excluded", "unreadable line", 3, 2_157), ("outside passes", "", 1_227, 930),
+            ("used", "", 930, 930)]
+    return [{"campaign": CAMPAIGN, "logger": "rednir", "file": "rednir.csv", "column": "nir_up",
+             "surface": "", "patch": "", "pass": "", "disposition": what, "reason": why,
+             "records": n, "remaining": left} for what, why, n, left in spec]
+
+
 def _checks() -> list[dict[str, Any]]:
     spec = [("range", "thermal", "target", "", "", "exclude", 12,
              "12 records lie above 120 °C", "engineering default"),
@@ -196,6 +217,22 @@ def _clocks() -> list[dict[str, Any]]:
                 ("thermal", "declared", 12.0, 0.5, 3.0, "ok", ""),
                 ("shortwave", "declared", -3.5, 0.5, 0.0, "ok", ""),
                 ("rednir", "not checked", 0.0, 2.0, 0.0, "not checked", "no clock was stated")]]
+
+
+def _ranks() -> list[dict[str, Any]]:
+    return [{"campaign": CAMPAIGN, "quantity": "albedo", "kind": "clear", "surface": surface,
+             "place": place, "probability": share}
+            for surface, shares in (("worn-asphalt", (0.05, 0.95)), ("coated-court", (0.95, 0.05)))
+            for place, share in enumerate(shares, start=1)]
+
+
+def _trends() -> list[dict[str, Any]]:
+    return [{"campaign": CAMPAIGN, "quantity": "albedo", "kind": "clear",
+             "surface": "coated-court", "control": "worn-asphalt", "method": method,
+             "unit": "a-1", "dates": 3, "first": "2025-06-12", "last": "2025-07-24",
+             "slope": 0.31, "u": 0.1, "lower": 0.1, "upper": 0.52, "coverage": 0.95, "p": 0.01,
+             "verdict": verdict, "note": ""}
+            for method, verdict in (("weighted line", "higher"), ("ordinary line", ""))]
 
 
 def _differences(surfaces: list[dict[str, Any]]) -> list[dict[str, Any]]:

@@ -59,7 +59,5 @@ def facts(*, hostile: bool = False) -> dict[str, Any]:
         "surfaces": labels, "control": "worn-asphalt", "earlier": [EARLIER],
         "relevant_change": {"temperature": 1.0, "albedo": 0.02, "ndvi": 0.03},
         "notes": ["The calibration of rednir (rednir-2022) expired on 2024-03-01."],
-        "not_corrected": ["The rod and the operator shade part of the sky that the patch sees.",
-                          "The two heads of the red and near-infrared pair keep their own clocks."],
         "rerun": f"surveykit run params/{CAMPAIGN}.yml",
     }

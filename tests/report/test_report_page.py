@@ -91,7 +91,7 @@ def test_summary_comes_first_and_in_order(page: str) -> None:
     assert heads == ["Summary", "What differs", "What changed",
                      "What could not be evaluated, and why",
                      "What would narrow the uncertainty most", "Cautions",
-                     "What is not corrected yet", "Notes on this run"]
+                     "What was not corrected or not checked", "Notes on this run"]
     header = soup.header.get_text(" ")
     for said in ("mill-yard-2025-07-24", "24 July 2025", "41.3000° N", "7.7500° W",
                  "No rain in the 48 hours before.", "Worn asphalt"):

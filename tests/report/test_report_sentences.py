@@ -90,9 +90,9 @@ def test_a_missing_relevant_change_leaves_a_whole_sentence() -> None:
 def test_what_was_measured_spans_lowest_to_highest() -> None:
     lines = [plain(line) for line in sentences.measured(sample.tables(), FACTS)]
     assert lines[0] == "5 surfaces at Mill Yard were surveyed in 44 passes on 24 July 2025."
-    assert lines[1] == ("Temperature, contact: from 47.9 ± 2.2 °C (Pale concrete slabs) to "
-                        "58.3 ± 1.2 °C (Worn asphalt).")
-    assert lines[4] == "NDVI: from 0.031 ± 0.010 (Worn asphalt) to 0.781 ± 0.021 (Lawn)."
+    assert lines[1] == ("Temperature, contact: from 47.9 ± 2.2 °C for Pale concrete slabs to "
+                        "58.3 ± 1.2 °C for Worn asphalt.")
+    assert lines[4] == "NDVI: from 0.031 ± 0.010 for Worn asphalt to 0.781 ± 0.021 for Lawn."
 
 
 def test_what_differs_counts_judged_pairs_and_names_the_largest() -> None:

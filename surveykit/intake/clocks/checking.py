@@ -109,7 +109,7 @@ def against_the_sun(loggers: Mapping[str, Set], parameters: Parameters) -> dict[
         time_s, values = readings(one.records, channel, parameters.settings,
                                   np.arange(one.records.n_timed), 0)
         found = sun_shift((time_s * NS).astype(np.int64), values, site.latitude, site.longitude,
-                          site.elevation_m, small_min=limit)
+                          site.elevation_m, small_min=limit / 2)
         if found is not None and abs(found.shift_min) > limit and found.telling:
             wrong[name] = (
                 f"its light follows the clear sky {abs(found.shift_min):.0f} min "

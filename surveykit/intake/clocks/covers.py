@@ -17,6 +17,7 @@ from surveykit.intake.sheet_words import Entry
 from surveykit.statistics.alignment import Cover, Line, find_covers, fit_line, robust_line
 
 NS = 1_000_000_000
+Candidate = tuple[int, float, float, Cover]  # number of the row, offset and u [s], what was found
 NEAR_TIE = 0.5  # of the clearness of the best offset: another as clear makes it ambiguous
 
 
@@ -55,7 +56,7 @@ def see(records: Records, channels: Sequence[Channel], part: IntArray, rows: Seq
         return Seen({}, "it has no channel that a cover changes")
     time_s, values = readings(records, channel, settings, part, origin_ns)
     limits = settings.clocks
-    candidates: list[tuple[int, float, float, Cover]] = []
+    candidates: list[Candidate] = []
     for number, row in enumerate(rows):
         start, stop = ((edge - origin_ns) / NS - offset_s for edge in (row.start_ns, row.stop_ns))
         width = stop - start
@@ -73,21 +74,40 @@ def see(records: Records, channels: Sequence[Channel], part: IntArray, rows: Seq
     if rival is not None and len(chosen) > 1:
         return Seen({}, f"the covers fit two offsets, {chosen[0][1] + offset_s:+.1f} and "
                         f"{rival + offset_s:+.1f} s; write offset_s nearer, or a shorter search_s")
+    off = _left_out(candidates, chosen, rows, time_s, origin_ns, offset_s)
+    if off:
+        return Seen({}, off)
     delay_s = (channel.time_constant_s or 0.0) * log(2.0)
     return Seen({number: cover._replace(start_s=cover.start_s - delay_s,
                                         stop_s=cover.stop_s - delay_s)
                  for number, _, _, cover in chosen})
 
 
-def _agreed(candidates: list[tuple[int, float, float, Cover]], limits: ClockSettings,
-            rows: Sequence[Entry]) -> tuple[list[tuple[int, float, float, Cover]], float | None]:
+def _left_out(candidates: list[Candidate], chosen: list[Candidate], rows: Sequence[Entry],
+              time_s: FloatArray, origin_ns: int, offset_s: float) -> str:
+    """Return a sentence on a cover that shows, but away from where the others put it."""
+    if len(chosen) < 2:
+        return ""
+    kept = {one[0] for one in chosen}
+    away = float(np.median([one[1] for one in chosen]))
+    clear = NEAR_TIE * min(one[3].contrast for one in chosen)
+    for number, found, _, cover in candidates:
+        due_s = (rows[number].start_ns - origin_ns) / NS - offset_s - away
+        if number not in kept and cover.contrast >= clear and time_s[0] <= due_s <= time_s[-1]:
+            return (f"a cover lies {abs(found - away):.1f} s off the line through the others: a "
+                    "cover was missed or mistaken, or the clock was set anew")
+    return ""
+
+
+def _agreed(candidates: list[Candidate], limits: ClockSettings,
+            rows: Sequence[Entry]) -> tuple[list[Candidate], float | None]:
     """Return the largest set of covers that agree on an offset, and a rival offset if as good."""
     span_s = (max((r.stop_ns for r in rows), default=0)
               - min((r.start_ns for r in rows), default=0)) / NS
     sets = []
     for _, centre, u_s, _ in candidates:
         reach = limits.max_residual_u * 1.5 * u_s + limits.max_drift_ppm * 1e-6 * span_s
-        nearest: dict[int, tuple[int, float, float, Cover]] = {}
+        nearest: dict[int, Candidate] = {}
         for one in candidates:
             if abs(one[1] - centre) <= reach and (
                     one[0] not in nearest or abs(one[1] - centre) < abs(

@@ -138,6 +138,8 @@ class _Search:
 
     def _few(self, mine: Seen, seen: int) -> str:
         need = self.parameters.settings.clocks.min_events
+        if not self.rows:
+            return f"the field sheet has no cover row, and {need} are needed"
         if self.reference is not None and len(mine.covers) >= need > seen:
             return (f"the covers show in {self.log.logger} only, not in "
                     f"{self.reference.clock.logger}")

@@ -25,6 +25,7 @@ from surveykit.intake.params.instruments import Instrument
 from surveykit.intake.params.sections import (
     Comparison,
     Conditions,
+    Intervention,
     LoggerUse,
     RelevantChange,
     Site,
@@ -47,7 +48,7 @@ Kit = Annotated[dict[Name, Instrument], Field(min_length=1)]
 class Campaign(Strict):
     """Parameters of one campaign: one survey day at a site."""
 
-    RESERVED = dict.fromkeys(("interventions", "derived", "caution"), LATER)
+    RESERVED = dict.fromkeys(("derived", "caution"), LATER)
 
     format: Literal[1] = key("Format of this file.", default=1,
                              write="1, the format this surveykit reads")
@@ -78,6 +79,8 @@ class Campaign(Strict):
     comparison: Comparison = key("Comparison with earlier campaigns.",
                                  default_factory=Comparison,
                                  write="{earlier, control, relevant_change}")
+    interventions: Annotated[tuple[Intervention, ...], Field(strict=False)] = key(
+        "What was done to surfaces, and when.", default=(), write="a list of {date, surface, text}")
     watch: Watch = key("The clock of the field sheet.", default={}, validate_default=True,
                        write="{offset_s, u_s}")
     crew: Annotated[tuple[Initials, ...], Field(strict=False, max_length=40)] = key(

@@ -10,7 +10,14 @@ from numpy.typing import ArrayLike
 
 from surveykit.core import FloatArray
 from surveykit.intake.params.amounts import Amount, Uncertain
-from surveykit.intake.params.heads import Bands, Calibration, Column, Head
+from surveykit.intake.params.heads import (
+    BandRatio,
+    Bands,
+    Calibration,
+    ClassTermsStated,
+    Column,
+    Head,
+)
 from surveykit.intake.params.quantities import DEFAULT_U, PHYSICAL_UNITS
 from surveykit.intake.params.settings import Settings
 
@@ -44,6 +51,11 @@ class Channel:
     emissivity_setting: float | None
     band_centres_nm: Bands | None
     band_widths_nm: Bands | None
+    reflected_setting_k: float | None = None
+    class_terms: str | ClassTermsStated | None = None
+    spectrally_flat: bool | None = None
+    rod_width_m: float | None = None
+    band_ratio: BandRatio | None = None
 
     def to_si(self, reading: ArrayLike) -> FloatArray:
         """Return the readings in SI, NaN where they are."""
@@ -74,7 +86,7 @@ def channel(name: str, header: str, column: Column, entry: Head, owner: str,
     gain_si = gain.value * scale
     calibration = stated("calibration")
     owner = calibration.id if calibration else owner
-    radius = stated("head_radius_cm")
+    radius, rod = stated("head_radius_cm"), stated("rod_width_cm")
     bore = stated("bore_emissivity") or Uncertain(
         value=settings.temperature.bore_emissivity, u=settings.temperature.bore_emissivity_u)
     return Channel(
@@ -87,4 +99,8 @@ def channel(name: str, header: str, column: Column, entry: Head, owner: str,
         half_angle_deg=stated("half_angle_deg"), time_constant_s=stated("tau_s") or 0.0,
         head_radius_m=None if radius is None else radius / 100, bore_emissivity=bore,
         emissivity_setting=column.emissivity_setting,
-        band_centres_nm=stated("band_centres_nm"), band_widths_nm=stated("band_widths_nm"))
+        band_centres_nm=stated("band_centres_nm"), band_widths_nm=stated("band_widths_nm"),
+        reflected_setting_k=None if column.reflected_setting_degC is None
+        else column.reflected_setting_degC + 273.15, class_terms=stated("class_terms"),
+        spectrally_flat=stated("spectrally_flat"),
+        rod_width_m=None if rod is None else rod / 100, band_ratio=stated("band_ratio"))

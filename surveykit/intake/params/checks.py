@@ -42,6 +42,12 @@ def cross_faults(
     comparison: Comparison | None = sections.get("comparison")
     if comparison is not None:
         yield from _comparison(comparison, names.get("surfaces", ()), path, root)
+    known = names.get("surfaces", ())
+    for index, done in enumerate(sections.get("interventions", ())):
+        if known and done.surface not in known:
+            yield ("interventions", index, "surface"), (
+                f"got {done.surface!r}, no surface of this file; "
+                + _known("write one of", done.surface, known))
     if "kit" in names:
         for name in names.get("loggers", ()):
             if name not in names["kit"]:
@@ -51,7 +57,7 @@ def cross_faults(
     surfaces: dict[str, Surface] = sections.get("surfaces", {})
     for name, surface in surfaces.items():
         limit = (settings or Settings()).temperature.min_emissivity
-        if surface.emissivity is not None and surface.emissivity.value < limit:
+        if surface.emissivity is not None and (surface.emissivity.value or 1.0) < limit:
             yield ("surfaces", name, "emissivity", "value"), (
                 f"got {surface.emissivity.value:g}; below {limit:g} "
                 "(settings.temperature.min_emissivity) no temperature can be given: "
@@ -88,6 +94,16 @@ def _comparison(
     if comparison.control is not None and surfaces and comparison.control not in surfaces:
         yield ("comparison", "control"), f"got {comparison.control!r}, no surface of this file; " \
             + _known("write one of", comparison.control, surfaces)
+    named: list[tuple[Loc, str | None]] = [(("second_control",), comparison.second_control)] + [
+        (("families", family, index), name) for family, names in comparison.families.items()
+        for index, name in enumerate(names)]
+    for where, name in named:
+        if name is not None and surfaces and name not in surfaces:
+            yield ("comparison", *where), f"got {name!r}, no surface of this file; " \
+                + _known("write one of", name, surfaces)
+    if comparison.second_control and comparison.second_control == comparison.control:
+        yield ("comparison", "second_control"), f"got {comparison.control!r}, which is control " \
+            "already; write another surface"
     seen: set[Path] = set()
     for index, text in enumerate(comparison.earlier):
         here: Loc = ("comparison", "earlier", index)

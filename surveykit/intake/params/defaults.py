@@ -73,6 +73,59 @@ class TemperatureSettings(Strict):
         0.6, "1", "Emissivity below which no temperature is given (bare metal).", gt=0, le=1)
     path_limit_m: float = setting(
         3.0, "m", "Height up to which the air in between is neglected.", gt=0)
+    correct_surroundings: bool = setting(
+        True, "1", "Whether emissivity and what the ground reflects are corrected.")
+    correct_rim_gap: bool = setting(
+        True, "1", "Whether half of rim_gap_max is taken as the gap under the rim.")
+    correct_head_cooling: bool = setting(
+        True, "1", "Whether contact readings are led back to the touch by a fit.")
+    correct_emissivity_setting: bool = setting(
+        True, "1", "Whether an emissivity set in the instrument is undone.")
+    sky_radiance_cloud_u: float = setting(
+        0.30, "1", "The same as sky_radiance_u with cloud in the sky.", ge=0)
+    cloud_base_k: float = setting(
+        10.0, "K", "How far below the air's temperature the base of clouds is taken.", ge=0)
+    vapour_pressure_max_hpa: float = setting(
+        35.0, "hPa", "Vapour pressure from which the sky model runs past its range.", gt=0)
+    sky_measured_u: float = setting(
+        0.05, "1", "Relative standard uncertainty of a sky radiance measured at the zenith and "
+        "made hemispheric.", ge=0)
+    foil_reflectance: float = setting(
+        0.96, "1", "Reflectance of a crumpled aluminium foil.", MEMORY,
+        "ISO 18434-1 and ASTM E1862, reflector method", gt=0.5, le=1)
+    foil_reflectance_u: float = setting(0.01, "1", "Its standard uncertainty.", ge=0)
+    foil_temperature_u_k: float = setting(
+        10.0, "K", "Standard uncertainty of the foil's temperature where none was read.", ge=0)
+    head_cooling_u_k: float = setting(
+        0.3, "K", "Standard uncertainty of the form of the law by which ground cools under a "
+        "head.", ge=0)
+    head_cooling_fit_max_u_k: float = setting(
+        0.5, "K", "Standard error of the fitted temperature above which a pass is refused.", gt=0)
+    head_cooling_max_k: float = setting(
+        2.0, "K", "Cooling under the head above which a pass without fit is refused.", gt=0)
+    head_cooling_sun_w_m2: float = setting(
+        50.0, "W m-2", "Irradiance below which no cooling under the head is expected.", ge=0)
+    body_rate_flag_k_min: float = setting(
+        0.5, "K/min", "Housing's rate of change that is flagged.", gt=0)
+    body_rate_max_k_min: float = setting(
+        2.0, "K/min", "Housing's rate of change from which a pass is refused.", gt=0)
+    history_s: float = setting(
+        120.0, "s", "How long before a pass the irradiance is looked at.", ge=0)
+    history_max_w_m2: float = setting(
+        150.0, "W m-2", "Change of irradiance within that time that is flagged.", gt=0)
+    check_max_k: float = setting(
+        0.5, "K", "Difference of a check reading from the known temperature that is flagged.",
+        gt=0)
+    pair_min_contrast_k: float = setting(
+        20.0, "K", "Least difference of ground and background for a measured emissivity.", gt=0)
+    pair_max_half_width: float = setting(
+        0.03, "1", "Largest half-width (95 %) of a measured emissivity.", gt=0)
+    lid_u_k: float = setting(
+        2.0, "K", "Standard uncertainty of a lid's temperature where none is written.", ge=0)
+
+    def faults(self) -> list[Fault]:
+        """Limits of the housing's rate rise."""
+        return rising(self, "body_rate_flag_k_min", "body_rate_max_k_min")
 
 
 class AlbedoSettings(Strict):
@@ -90,7 +143,7 @@ class AlbedoSettings(Strict):
     min_footprint: float = setting(
         0.90, "1", "Least share of the view that the patch must fill.", gt=0, le=1)
     max_shade_contamination: float = setting(
-        0.20, "1", "Largest self-shade and contamination that is still corrected.", gt=0, lt=1)
+        0.20, "1", "Self-shade and contamination above which no albedo is given.", gt=0, lt=1)
     around_albedo: float = setting(
         0.20, "1", "Albedo of the surroundings where a surface states none.", ge=0, le=1)
     around_albedo_u: float = setting(
@@ -106,11 +159,47 @@ class AlbedoSettings(Strict):
         0.85, "1", "Share of the beam in clear-sky irradiance.", ge=0, le=1)
     height_u_cm: float = setting(1.0, "cm", "Standard uncertainty of heights.", ge=0)
     head_radius_assumed_cm: float = setting(
-        4.0, "cm", "Radius assumed for the shade of a head of unstated radius.", gt=0)
+        4.0, "cm", "Largest radius of a head that states none, for its shade.", gt=0)
+    correct_darks: bool = setting(True, "1", "Whether dark readings are taken off.")
+    correct_gain_ratio: bool = setting(
+        True, "1", "Whether the heads' gain ratio found by swapping them is used.")
+    correct_surroundings: bool = setting(
+        True, "1", "Whether foreign ground in the head's view is taken off.")
+    correct_self_shade: bool = setting(
+        True, "1", "Whether the shade of head and rod is made up for.")
+    max_corrected: float = setting(
+        0.10, "1", "Self-shade and contamination up to which they are corrected.", gt=0, lt=1)
+    min_lit: float = setting(
+        0.75, "1", "Least share of the view that is lit patch.", gt=0, le=1)
+    footprint_u: float = setting(
+        0.01, "1", "Standard uncertainty of the share of the view that the patch fills.", ge=0)
+    self_shade_u: float = setting(
+        0.20, "1", "Relative standard uncertainty of the computed self-shade.", ge=0)
+    swap_min_pairs: int = setting(
+        3, "1", "Swaps of the heads below which their gain ratio is flagged.", ge=1)
+    swap_max_sd: float = setting(
+        0.01, "1", "Relative standard deviation of the swaps' gain ratios above which none is "
+        "used.", gt=0)
+    rod_length_m: float = setting(1.5, "m", "Length of the rod behind the head.", gt=0)
+    spectral_u: float = setting(
+        0.05, "1", "Relative standard uncertainty from a response that is not flat.", MEMORY,
+        "ISO 9060:2018, spectral error of class C", ge=0)
+    lane_effect_max: float = setting(
+        0.01, "1", "Relative effect of the lanes' direction on the upper head that is flagged.",
+        gt=0)
+    normalise_zenith: bool = setting(
+        False, "1", "Whether albedos are converted to normalise_zenith_deg.")
+    normalise_zenith_deg: float = setting(
+        45.0, "deg", "Zenith angle to which they are then converted.", ge=0, lt=90)
+    zenith_dependence: float = setting(
+        0.1, "1", "Zenith dependence d for that conversion and for daily albedo.", MEMORY,
+        "Briegleb et al. 1986, weak dependence", ge=0, le=1)
+    zenith_dependence_u: float = setting(0.1, "1", "Its standard uncertainty.", ge=0)
 
     def faults(self) -> list[Fault]:
-        """Limits of the sun's height rise."""
-        return rising(self, "zenith_standard_deg", "zenith_qualified_deg", "zenith_max_deg")
+        """Limits of the sun's height rise, and so do those of shade and contamination."""
+        return [*rising(self, "zenith_standard_deg", "zenith_qualified_deg", "zenith_max_deg"),
+                *rising(self, "max_corrected", "max_shade_contamination")]
 
 
 class NdviSettings(Strict):
@@ -131,3 +220,18 @@ class NdviSettings(Strict):
         0.4, "1", "NDVI assumed of what surrounds a patch.", ge=-1, le=1)
     around_ndvi_u: float = setting(
         0.25, "1", "Its standard uncertainty (paving to dense green, rectangular).", ge=0)
+    correct_darks: bool = setting(True, "1", "Whether dark readings are taken off.")
+    correct_gain_ratio: bool = setting(
+        True, "1", "Whether a gain ratio by panel, swap or certificate is used.")
+    soil_factor: float = setting(
+        0.5, "1", "L of the soil-adjusted index.", MEMORY, "Huete 1988", ge=0, le=1)
+    bare_ndvi: float = setting(
+        0.2, "1", "NDVI of bare ground, for the vegetation fraction.", ge=-1, le=1)
+    full_ndvi: float = setting(
+        0.86, "1", "NDVI of full cover.", ge=-1, le=1)
+    cover_ndvi_u: float = setting(
+        0.03, "1", "Standard uncertainty of bare_ndvi and of full_ndvi.", ge=0)
+
+    def faults(self) -> list[Fault]:
+        """Full cover is greener than bare ground."""
+        return rising(self, "bare_ndvi", "full_ndvi")

@@ -5,7 +5,9 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 from datetime import date, timedelta
-from typing import Annotated
+from typing import Annotated, Literal
+
+from pydantic import Discriminator, Tag
 
 from surveykit.intake.params.amounts import Amount, BareNumber, Uncertain, given_once, u_field
 from surveykit.intake.params.base import (
@@ -46,12 +48,31 @@ class Bands(Strict):
                      write=number_words("nm", gt=0, le=5000))
 
 
+class ClassTermsStated(Strict):
+    """Limits of a pyranometer, as a certificate or a leaflet states them (bounds)."""
+
+    directional_w_m2: float = key("Directional error at 1000 W m-2 of beam.", ge=0,
+                                  write=number_words("W m-2", ge=0))
+    zero_offset_w_m2: float = key("Zero offset under a clear sky.", ge=0,
+                                  write=number_words("W m-2", ge=0))
+    gain: float = key("Non-linearity, temperature, tilt and ageing together, relative.", ge=0,
+                      lt=1, write=number_words("", ge=0, lt=1))
+
+
+class BandRatio(Strict):
+    """Ratio of the gains of near infrared to red, ground head over sky head, of a certificate."""
+
+    value: float = key("The ratio.", gt=0, write=number_words("", gt=0))
+    u: float = key("Its standard uncertainty (k = 1).", ge=0, write=number_words("", ge=0))
+    source: Text = key("Where it comes from.", write="where the value comes from, plain text")
+
+
+def _shape(data: object) -> str:
+    return "<explicit>" if isinstance(data, dict | ClassTermsStated) else "<class>"
+
+
 class Head(Strict):
     """What may stand in the entry, for all its columns, or in one column, for that one."""
-
-    RESERVED = dict.fromkeys(
-        ("class_terms", "spectrally_flat", "rod_width_cm", "band_ratio"),
-        "reserved for later work; leave it out")
 
     calibration: Calibration | None = key(
         "Calibration of the channel.", default=None, write="{id, date, valid_days}")
@@ -71,6 +92,19 @@ class Head(Strict):
         "temperature.bore_emissivity_u", 0.01, 1.0, number_words("", ge=0.01, le=1))] | None = key(
         "Emissivity of the bore of an infrared head.", default=None,
         write="a number from 0.01 to 1, or {value, u}")
+    class_terms: Annotated[
+        Annotated[Literal["A", "B", "C"], Tag("<class>")]
+        | Annotated[ClassTermsStated, Tag("<explicit>")], Discriminator(_shape)] | None = key(
+        "Class of a shortwave head by ISO 9060, or its limits.", default=None,
+        write="A, B or C, or {directional_w_m2, zero_offset_w_m2, gain}")
+    spectrally_flat: bool | None = key(
+        "Whether a shortwave head responds alike to all wavelengths of sunlight.", default=None,
+        write="true or false")
+    rod_width_cm: float | None = key("Width of the rod that holds the head.", default=None, gt=0,
+                                     le=50, write=number_words("cm", gt=0, le=50))
+    band_ratio: BandRatio | None = key(
+        "Certificate of the gains of near infrared to red, at the ground heads.", default=None,
+        write="{value, u, source}")
     band_centres_nm: Bands | None = key("Centres of the red and near-infrared bands [nm].",
                                         default=None, write="{red, nir} in nm")
     band_widths_nm: Bands | None = key("Widths of the red and near-infrared bands [nm].",
@@ -106,6 +140,9 @@ class Column(Head):
     emissivity_setting: float | None = key(
         "Emissivity set in the infrared logger.", default=None, gt=0, le=1,
         write=number_words("", gt=0, le=1))
+    reflected_setting_degC: float | None = key(  # noqa: N815 - the unit is written so
+        "Reflected temperature set beside an emissivity other than 1; absent: the housing's.",
+        default=None, ge=-90, le=100, write=number_words("degC", ge=-90, le=100))
 
     def faults(self) -> Iterator[Fault]:
         """Unit, gain, offset and u must fit the quantity."""

@@ -16,7 +16,7 @@ from surveykit.intake.params.reading import Document
 
 NUMBER = re.compile(r"\s*[-+]?[0-9.]+\s*", re.ASCII)
 # what pydantic adds to a location: the choice in `instruments`, and "this is about the key"
-_NOT_KEYS = ("<path>", "<inline>", "[key]")
+_NOT_KEYS = ("<path>", "<inline>", "<class>", "<explicit>", "[key]")
 
 
 def located(document: Document, faults: Iterable[Fault]) -> list[str]:
@@ -130,7 +130,8 @@ def _sentence(
     if item["loc"][-1:] == ("[key]",):
         return "name", f"got the name {shown(path[-1])}; write {_fallback(kind, item)}"
     parent = model_at(model, path[:-1])
-    known = parent.model_fields if parent is not None else {}
+    known = {} if parent is None else {
+        field.alias or name: field for name, field in parent.model_fields.items()}
     if kind == "extra_forbidden" and parent is not None:
         name = str(path[-1])
         if name in parent.RESERVED:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import re
 import unicodedata
 from pathlib import Path, PurePosixPath
@@ -28,11 +29,14 @@ def find_root(start: Path) -> Path:
 def path_fault(root: Path, text: str, base: Path | None = None) -> str | None:
     """Return what is wrong with a path the user wrote, None if it stays inside `root`.
 
-    `base` is the folder it is relative to, `root` itself where absent.
+    `base` is the folder it is relative to, `root` itself where absent. Where the environment holds
+    SURVEYKIT_ALLOW_OUTSIDE=1 (the option --allow-outside sets it) any path is right.
     """
     shown = repr(text[:80])
     if not text.strip() or any(unicodedata.category(c) == "Cc" for c in text):
         return f"got {shown}; write a path inside the project folder"
+    if os.environ.get("SURVEYKIT_ALLOW_OUTSIDE") == "1":
+        return None
     if "\\" in text:
         return f"got {shown}; write the path with forward slashes"
     path = PurePosixPath(text)

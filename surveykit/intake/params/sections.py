@@ -18,7 +18,9 @@ from surveykit.intake.params.amounts import (
     u_field,
 )
 from surveykit.intake.params.base import (
+    DATE_WRITE,
     TEXT_WRITE,
+    DateText,
     Fault,
     Name,
     Strict,
@@ -31,7 +33,6 @@ from surveykit.intake.params.instruments import zone_fault
 from surveykit.intake.params.timekeeping import Clock
 
 MAX_ZONE_GAP_H = 3.5
-NOT_YET = "not available yet; "
 
 
 def _zone(zone: str) -> str:
@@ -111,14 +112,40 @@ class LoggerUse(Strict):
 
 
 class Emissivity(Strict):
-    """A stated emissivity."""
+    """An emissivity: stated with its u and source, or to be found on the day."""
 
-    RESERVED = {"from": NOT_YET + "write {value, u, source}"}
+    value: float | None = key("The emissivity.", default=None, gt=0, le=1,
+                              write=number_words("", gt=0, le=1))
+    u: float | None = key("Its standard uncertainty (k = 1).", default=None, ge=0, le=1,
+                          write=number_words("", ge=0, le=1))
+    source: Text | None = key("Where it comes from.", default=None,
+                              write="where the value comes from, plain text")
+    from_: Literal["reference_pairs", "two_backgrounds", "ndvi"] | None = key(
+        "How it is found on the day, in place of value: reference or lid rows of the sheet, or "
+        "the surface's NDVI.", default=None, alias="from",
+        write="reference_pairs, two_backgrounds or ndvi")
+    vegetation: float | None = key("Emissivity of full vegetation, from: ndvi.", default=None,
+                                   gt=0, le=1, write=number_words("", gt=0, le=1))
+    soil: float | None = key("Emissivity of bare ground, from: ndvi.", default=None, gt=0, le=1,
+                             write=number_words("", gt=0, le=1))
+    form: Literal["linear", "squared"] | None = key(
+        "Form of the vegetation fraction, from: ndvi; absent: linear.", default=None,
+        write="linear or squared")
 
-    value: float = key("The emissivity.", gt=0, le=1, write=number_words("", gt=0, le=1))
-    u: float = key("Its standard uncertainty (k = 1).", ge=0, le=1,
-                   write=number_words("", ge=0, le=1))
-    source: Text = key("Where it comes from.", write="where the value comes from, plain text")
+    def faults(self) -> Iterator[Fault]:
+        """Each way needs its own keys and takes no others."""
+        ways = {None: ("value", "u", "source"), "ndvi": ("vegetation", "soil", "u")}
+        needed = ways.get(self.from_, ())
+        allowed = (*needed, "form") if self.from_ == "ndvi" else needed
+        fields = type(self).model_fields
+        for name in ("value", "u", "source", "vegetation", "soil", "form"):
+            given = getattr(self, name) is not None
+            extra: Any = fields[name].json_schema_extra
+            if name in needed and not given:
+                yield (name,), f"missing; write {extra['write']}"
+            if given and name not in allowed:
+                yield (name,), (f"does not go with from: {self.from_}; leave it out" if self.from_
+                                else "goes with from: ndvi only; leave it out")
 
 
 class Around(Strict):
@@ -148,9 +175,15 @@ class Surface(Strict):
     emissivity: Emissivity | None = key("Emissivity in the band of the infrared head.",
                                         default=None, write="{value, u, source}")
     emissivity_broadband: Emissivity | None = key(
-        "Emissivity over all wavelengths, for longwave pairs.", default=None,
-        write="{value, u, source}")
+        "Emissivity over all wavelengths, for longwave pairs, net radiation and the solar "
+        "reflectance index.", default=None, write="{value, u, source}")
     around: Around | None = key("What surrounds its patches.", default=None, write="{albedo, u}")
+
+    def faults(self) -> Iterator[Fault]:
+        """A broadband emissivity is stated."""
+        broad = self.emissivity_broadband
+        if broad is not None and broad.from_ is not None:
+            yield ("emissivity_broadband", "from"), "does not go here; write value, u and source"
 
 
 class Conditions(Strict):
@@ -161,6 +194,14 @@ class Conditions(Strict):
     rain_48h_mm: float | None = key(
         "Rain in the 48 h before.", default=None, ge=0, le=2000,
         write=number_words("mm", ge=0, le=2000))
+
+
+class Intervention(Strict):
+    """Something done to a surface, marked in every comparison across that day."""
+
+    date: DateText = key("Day at the site.", write=DATE_WRITE)
+    surface: Name = key("The surface it was done to.", write="the name of one of surfaces")
+    text: Text = key("What was done.", write=TEXT_WRITE)
 
 
 class RelevantChange(Strict):
@@ -179,14 +220,17 @@ class RelevantChange(Strict):
 class Comparison(Strict):
     """Comparison with earlier campaigns."""
 
-    RESERVED = dict.fromkeys(("second_control", "families"),
-                             "reserved for later work; leave it out")
-
     earlier: Annotated[tuple[Text, ...], Field(strict=False)] = key(
         "Parameter files of earlier campaigns, from the project folder.", default=(),
         write="a list such as [params/mill-yard-2025-06-12.yml]")
     control: Name | None = key("The surface left unchanged.", default=None,
                                write="the name of one of surfaces")
+    second_control: Name | None = key(
+        "Another surface left unchanged: the two are held against each other.", default=None,
+        write="the name of one of surfaces, not that of control")
+    families: dict[Name, Annotated[tuple[Name, ...], Field(strict=False, min_length=2)]] = key(
+        "Surfaces to be compared with each other, fixed before looking; absent: all of them.",
+        default_factory=dict, write="{name: [surface, surface, ...]}")
     relevant_change: RelevantChange = key(
         "The smallest difference that matters.", default_factory=RelevantChange,
         write="{temperature, albedo, ndvi}")

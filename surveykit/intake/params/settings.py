@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import Any, TypedDict
+from typing import Any, Literal, TypedDict
 
 from pydantic import BaseModel
 
@@ -85,11 +85,14 @@ class PassSettings(Strict):
 class StatisticsSettings(Strict):
     """Draws and intervals."""
 
-    RESERVED = {"between_passes": "reserved for later work; leave it out"}
-
+    between_passes: Literal["own", "common"] = key(
+        "Scatter between passes: each surface's own, or one common to all surfaces of a quantity; "
+        "declare it before the run.", default="own", write="own or common",
+        extra={"unit": "1", "origin": "engineering default", "source": "engineering default"})
     seed: int = setting(20251, "1", "Seed of the draws.", ge=0, le=10**9)
     draws: int = setting(
-        20000, "1", "Monte Carlo draws of each shared error.", ge=1000, le=1_000_000)
+        20000, "1", "Monte Carlo draws of each shared error; 200000 for a final report.",
+        ge=1000, le=1_000_000)
     coverage: float = setting(
         0.95, "1", "Coverage probability of the intervals.", STANDARD, GUM, gt=0.5, lt=1)
     few_effective: float = setting(
@@ -117,6 +120,9 @@ class ComparisonSettings(Strict):
     vegetated_ndvi: float = setting(
         0.3, "1", "NDVI above which the model-form uncertainty is doubled: plants evaporate.",
         ge=-1, le=1)
+    course_form_u: float = setting(
+        0.3, "1", "Standard uncertainty of a correction for the day's course, relative: another "
+        "ground need not follow the control.", ge=0, le=1)
     drift_per_year: float = setting(
         0.015, "1", "Relative change of an instrument in a year.", ge=0)
     zenith_dependence: float = setting(

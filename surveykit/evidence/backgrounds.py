@@ -1,0 +1,166 @@
+"""What the ground reflects during a pass: sky and walls, as modelled or as measured."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+
+from surveykit.core import Input
+from surveykit.evidence.conditions import NS, Day, Sky, Span
+from surveykit.evidence.models import background
+from surveykit.evidence.parts import NotEvaluated, fixed, need
+from surveykit.intake.params import Channel
+from surveykit.intake.sheet_words import Entry
+from surveykit.physics.emissivity import foil_background
+from surveykit.physics.surroundings import (
+    hemispheric_emissivity,
+    sky_emissivity_window,
+    sky_radiance,
+    vapour_pressure_hpa,
+)
+from surveykit.physics.thermal import Band, band
+
+CLOUDY = ("mixed", "diffuse")
+Found = tuple[dict[str, Input], tuple[str, ...]]
+
+
+def window_of(channel: Channel) -> Band:
+    """Return the band of an infrared channel, or refuse the pass that needs it."""
+    if channel.band_um is None:
+        raise NotEvaluated(f"band_um of {channel.logger}, {channel.column} is missing")
+    return band(*channel.band_um)
+
+
+def sky_inputs(day: Day, this: Span, sky: Sky, channel: Channel) -> Found:
+    """Return the inputs of the sky's radiance in the band, and flags."""
+    settings = day.parameters.campaign.settings.temperature
+    air = need(day.weather("air_temperature", this), "air temperature during the pass")
+    humidity = need(day.weather("relative_humidity", this), "relative humidity during the pass")
+    flags: tuple[str, ...] = ()
+    cloud = day.weather("cloud_fraction", this)
+    clouded = sky.kind in CLOUDY or (cloud is not None and cloud.value > 0)
+    if clouded and cloud is None:
+        flags += ("cloud in the sky model",)
+    if vapour_pressure_hpa(air.value, humidity.value) > settings.vapour_pressure_max_hpa:
+        flags += ("sky model at its edge: very humid air",)
+    inputs = {
+        "air_k": replace(air, name="air_k"),
+        "relative_humidity": replace(humidity, name="relative_humidity"),
+        "sky_factor": Input(
+            "sky_factor", 1.0,
+            settings.sky_radiance_cloud_u if clouded else settings.sky_radiance_u,
+            f"{day.name}:sky", "modelled sky radiance in the band, cloud in it" if clouded else
+            "modelled clear-sky radiance in the band"),
+    }
+    if cloud is not None and cloud.value > 0:
+        inputs |= {"cloud_fraction": replace(cloud, name="cloud_fraction"),
+                   "cloud_base_k": fixed("cloud_base_k", settings.cloud_base_k)}
+    return _with_measured_sky(day, this, channel, inputs, flags)
+
+
+def surroundings(day: Day, this: Span, sky: Sky, channel: Channel) -> Found:
+    """Return the inputs of all that a stand-off reading reflects: sky, walls, a foil's reading."""
+    inputs, flags = sky_inputs(day, this, sky, channel)
+    site, settings = day.parameters.campaign.site, day.parameters.campaign.settings.temperature
+    inputs["sky_view"] = Input("sky_view", site.sky_view.value, site.sky_view.u,
+                               f"{day.name}:sky view", "share of sky over the site")
+    if site.walls is None:
+        walls = Input("walls_k", inputs["air_k"].value, settings.walls_u_k, f"{day.name}:walls",
+                      "temperature of what hides the sky, taken as the air's")
+        emissivity = settings.walls_emissivity
+        if site.sky_view.value < 1:
+            flags += ("walls not measured",)
+    else:
+        given = site.walls.temperature_degC
+        walls = Input("walls_k", given.value + 273.15, given.u, f"{day.name}:walls",
+                      "temperature of what hides the sky, as stated")
+        emissivity = site.walls.emissivity
+    inputs |= {"walls_k": walls, "walls_emissivity": fixed("walls_emissivity", emissivity)}
+    return _with_foil(day, this, channel, inputs, flags)
+
+
+def _with_measured_sky(day: Day, this: Span, channel: Channel, inputs: dict[str, Input],
+                       flags: tuple[str, ...]) -> Found:
+    """Replace the model's factor by measured over modelled sky, interpolated between the rows.
+
+    A sky row is read at the zenith; the model's own ratio makes it hemispheric.
+    """
+    settings = day.parameters.campaign.settings.temperature
+    window = window_of(channel)
+    at, ratios, below = [], [], False
+    for entry, seen in _rows(day, "sky", channel):
+        if seen is None:
+            below = True
+            continue
+        air, humidity = (day.weather(q, entry) for q in ("air_temperature", "relative_humidity"))
+        if air is None or humidity is None:
+            continue
+        zenith = np.minimum(sky_emissivity_window(
+            air.value, vapour_pressure_hpa(air.value, humidity.value)), 1.0)
+        model = sky_radiance(window, air.value, humidity.value)
+        whole = window.radiance(seen) * hemispheric_emissivity(zenith) / zenith
+        at.append((entry.start_ns + entry.stop_ns) / 2)
+        ratios.append(float(whole / model))
+    if below:
+        flags += ("sky reading below the instrument's range",)
+    if not ratios:
+        return inputs, flags
+    factor = float(np.interp((this.start_ns + this.stop_ns) / 2, at, ratios))
+    spread = float(np.ptp(ratios)) / np.sqrt(12.0)
+    held = {name: i for name, i in inputs.items() if not name.startswith("cloud")}
+    held |= {name: fixed(name, held[name].value) for name in ("air_k", "relative_humidity")}
+    held["sky_factor"] = Input(
+        "sky_factor", factor, factor * float(np.hypot(settings.sky_measured_u, spread / factor)),
+        f"{day.name}:sky", "sky radiance measured at the zenith")
+    return held, tuple(f for f in flags if not f.startswith(("cloud in", "sky model")))
+
+
+def _with_foil(day: Day, this: Span, channel: Channel, inputs: dict[str, Input],
+               flags: tuple[str, ...]) -> Found:
+    """Replace the modelled background by what a diffuse foil showed, interpolated between rows."""
+    settings = day.parameters.campaign.settings.temperature
+    window = window_of(channel)
+    values = {name: i.value for name, i in inputs.items()}
+    at, ratios, errors = [], [], []
+    for entry, seen in _rows(day, "foil", channel):
+        air = day.weather("air_temperature", entry)
+        if seen is None or (air is None and np.isnan(entry.reading)):
+            flags += ("foil reading outside the instrument's range",) if seen is None else ()
+            continue
+        own_k = entry.reading + 273.15 if np.isfinite(entry.reading) else need(air, "air").value
+        own_u = settings.foil_temperature_u_k if np.isnan(entry.reading) else (
+            entry.reading_u if np.isfinite(entry.reading_u) else settings.body_temperature_u_k)
+        humidity = day.weather("relative_humidity", entry)
+        then = values | ({} if air is None or humidity is None else {
+            "air_k": air.value, "relative_humidity": humidity.value})
+        model = float(background(then, window))
+        rho = settings.foil_reflectance
+        measured = float(foil_background(window, seen, own_k, rho))
+        moved = [float(foil_background(window, seen + channel.u_offset, own_k, rho)) - measured,
+                 float(foil_background(window, seen, own_k + own_u, rho)) - measured,
+                 float(foil_background(window, seen, own_k, rho - settings.foil_reflectance_u))
+                 - measured]
+        at.append((entry.start_ns + entry.stop_ns) / 2)
+        ratios.append(measured / model)
+        errors.append(float(np.linalg.norm(moved)) / model)
+    if not ratios:
+        return inputs, flags
+    factor = float(np.interp((this.start_ns + this.stop_ns) / 2, at, ratios))
+    u = float(np.hypot(np.mean(errors), np.ptp(ratios) / np.sqrt(12.0)))
+    held = {name: fixed(name, i.value) for name, i in inputs.items()}
+    held["background_factor"] = Input("background_factor", factor, u, f"{day.name}:foil",
+                                      "background measured with a diffuse foil")
+    return held, tuple(f for f in flags if not f.startswith(
+        ("cloud in", "sky model", "walls not", "sky reading")))
+
+
+def _rows(day: Day, kind: str, channel: Channel) -> list[tuple[Entry, float | None]]:
+    """Return the sheet's rows of a kind for this head, each with its mean good reading [K]."""
+    found = []
+    for entry in day.sheet.entries:
+        if entry.entry == kind and entry.instrument in ("", channel.logger):
+            edge = round(entry.edge_u_s * NS) + round(5 * channel.time_constant_s * NS)
+            _, value = day.readings(channel, entry.start_ns + edge, entry.stop_ns - edge)
+            found.append((entry, float(value.mean()) if value.size else None))
+    return found

@@ -1,0 +1,218 @@
+"""Surface temperature of a contact pass: the bore's cavity, the rim, and the cooling under it."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from typing import Any, NamedTuple
+
+import numpy as np
+
+from surveykit.accounting import BIT
+from surveykit.core import FloatArray, Input
+from surveykit.evidence.backgrounds import sky_inputs
+from surveykit.evidence.conditions import NS, Day, Sky
+from surveykit.evidence.corrections import Correction, correct
+from surveykit.evidence.infrared import head_inputs, housing, per_record, setting_correction
+from surveykit.evidence.parts import (
+    HALF_WIDTH,
+    NotEvaluated,
+    PassValue,
+    fixed,
+    pass_scope,
+    series,
+)
+from surveykit.intake.passes import Pass
+from surveykit.physics.cooling import CoolingFit, fit_placements
+from surveykit.physics.thermal import head_cooling_k
+from surveykit.statistics.series import mean_of_series
+
+FEW_PLACEMENTS = 3
+FEWEST_RECORDS = 5  # of a placement, from two time constants on
+GROWTH = 0.5  # of a settling reading's deviation, backward in time, against exp(step / tau)
+Spans = tuple[tuple[int, int], ...]
+
+
+class Placed(NamedTuple):
+    """Placements as fitted: their values before the touch, and the fit itself."""
+
+    values: FloatArray
+    fit: CoolingFit
+
+
+def contact(day: Day, this: Pass, sky: Sky) -> PassValue:
+    """Return a contact pass: the mean over its placements of the cavity's balance."""
+    time, brightness = series(day, this, "brightness_temperature")
+    spans = day.quality.passes[this.name].dwells
+    if not spans:
+        raise NotEvaluated("no settled placement of the head was found in the contact pass")
+    inputs, flags = _inputs(day, this, sky, brightness)
+    settings = day.parameters.campaign.settings.temperature
+    cooled = _expected_cooling_k(day, this, sky, time, spans)
+    placed = _before_touch(day, this, inputs, cooled) if settings.correct_head_cooling else None
+    per = per_record("contact", inputs, brightness)
+    found = [mean_of_series(per[a:b], unit="K", method="contact") for a, b in spans]
+    means = np.array([one.value for one in found])
+    if placed is not None:
+        inputs["head_cooling_k"] = fixed(
+            "head_cooling_k", float(placed.values.mean() - means.mean()))
+    inputs |= _cooling_inputs(day, this, cooled, placed)
+    flags += _cooling_flags(day, cooled, placed)
+    raw = float(np.mean([brightness[a:b].mean() for a, b in spans]))
+    inputs["brightness_k"] = fixed("brightness_k", raw)
+    values = means if placed is None else placed.values
+    n = values.size
+    u = float(values.std(ddof=1) / np.sqrt(n)) if n > 1 else float(per.std(ddof=1))
+    if n < FEW_PLACEMENTS:
+        flags += ("few placements",)
+
+    def over_placements(some: FloatArray) -> float:
+        return float(np.mean([np.broadcast_to(some, per.shape)[a:b].mean() for a, b in spans]))
+
+    made = correct("contact", inputs, _corrections(day, this, inputs, placed),
+                   series={"brightness_k": brightness}, reduce=over_placements)
+    rows = [(int(time[a]), int(time[b - 1]), value, one.u, one.n)
+            for (a, b), one, value in zip(spans, found, values, strict=False)]
+    return PassValue(raw, made.steps[-1][1], u, float(n), tuple(made.inputs.values()),
+                     flags + made.flags, made.steps, tuple(rows))
+
+
+def _inputs(day: Day, this: Pass, sky: Sky,
+            brightness: FloatArray) -> tuple[dict[str, Input], tuple[str, ...]]:
+    inputs, flags = head_inputs(day, this, sky, brightness)
+    channel = this.channels["brightness_temperature"]
+    settings = day.parameters.campaign.settings.temperature
+    body = housing(day, this, channel)
+    if body is None:
+        raise NotEvaluated("the housing temperature of the contact head is missing")
+    bore, scope = channel.bore_emissivity, f"{day.name}:{this.surface}:rim gap"
+    overhead, more = sky_inputs(day, this, sky, channel)
+    inputs |= overhead | {
+        "body_k": replace(body, name="body_k"),
+        "bore_emissivity": Input("bore_emissivity", bore.value, bore.u,
+                                 f"{channel.gain_scope}:bore", "emissivity of the bore")}
+    half = settings.rim_gap_max / 2
+    inputs["rim_gap"] = Input("rim_gap", half, half * HALF_WIDTH, scope,
+                              "gap under the rim", "rectangular")
+    if not settings.correct_rim_gap:
+        inputs |= {"rim_gap": fixed("rim_gap", 0.0), "rim_gap_error": Input(
+            "rim_gap_error", 0.0, settings.rim_gap_max * HALF_WIDTH, scope,
+            "gap under the rim, not corrected", "rectangular")}
+        more += ("rim gap not corrected",)
+    return inputs, flags + more
+
+
+def _corrections(day: Day, this: Pass, inputs: dict[str, Input],
+                 placed: Placed | None) -> list[Correction]:
+    settings = day.parameters.campaign.settings.temperature
+    scope = f"{day.name}:{this.surface}"
+    steps = [*setting_correction(day, this, inputs),
+             Correction("emissivity and bore", {"emissivity": 1.0}, settings.correct_surroundings,
+                        "temperature.correct_surroundings", f"{scope}:emissivity and bore")]
+    if settings.correct_rim_gap:
+        steps.append(Correction("rim gap", {"rim_gap": 0.0}, True, "temperature.correct_rim_gap",
+                                f"{scope}:rim gap"))
+    if placed is not None:
+        steps.append(Correction("cooling under the head", {"head_cooling_k": 0.0}, True,
+                                "temperature.correct_head_cooling", f"{scope}:head cooling"))
+    return steps
+
+
+def _expected_cooling_k(day: Day, this: Pass, sky: Sky, time: Any, spans: Spans) -> float:
+    """Return what a typical ground cools until the middle of the longest placement; 0 in shade."""
+    settings = day.parameters.campaign.settings
+    settle = settings.passes.settle_time_constants
+    tau = this.channels["brightness_temperature"].time_constant_s or 0.0
+    longest = max(float(time[b - 1] - time[a]) / NS for a, b in spans)
+    sun = sky.irradiance_w_m2
+    if not np.isfinite(sun):
+        sun = float(day.sun(time).clear_sky_w_m2.mean())
+    if sun < settings.temperature.head_cooling_sun_w_m2:
+        return 0.0
+    return float(head_cooling_k(sun, longest / 2 + settle * tau, settings.temperature.effusivity))
+
+
+def _before_touch(day: Day, this: Pass, inputs: dict[str, Input],
+                  cooled: float) -> Placed | None:
+    """Fit the placements' course and return what stood before the touch, or None without sun.
+
+    Raises
+    ------
+    NotEvaluated
+        If no placement is long enough, or the fit is too uncertain.
+    """
+    if cooled == 0.0:
+        return None
+    settings = day.parameters.campaign.settings.temperature
+    tau = this.channels["brightness_temperature"].time_constant_s or 0.0
+    courses = [c for c in _courses(day, this, tau)
+               if (c[0] >= 2 * tau).sum() >= FEWEST_RECORDS and c[0][-1] >= 5 * tau]
+    if not courses:
+        raise NotEvaluated(f"no placement has {FEWEST_RECORDS} records and five time constants: "
+                           "the cooling under the head cannot be fitted; hold it longer")
+    fit = fit_placements([c[0] for c in courses],
+                         [per_record("contact", inputs, c[1]) for c in courses],
+                         time_constant_s=tau, fit_time_constant=False, lagged=True)
+    if not fit.u_mean_k <= settings.head_cooling_fit_max_u_k:
+        raise NotEvaluated(
+            f"the fit of the cooling under the head leaves {fit.u_mean_k:.1f} K, more than "
+            f"{settings.head_cooling_fit_max_u_k:g}: hold the head longer, or measure from above")
+    return Placed(fit.before_k, fit)
+
+
+def _courses(day: Day, this: Pass, tau: float) -> list[tuple[FloatArray, FloatArray]]:
+    """Return for each placement the seconds since its touch, and its readings [K].
+
+    Backward from the settled records, the deviation of a settling reading grows by
+    exp(step / tau); where it stops doing so lies the touch.
+    """
+    channel, records = this.channels["brightness_temperature"], day.quality.passes[this.name]
+    log = day.records[channel.logger]
+    mask = day.quality.masks[channel.logger][channel.column]
+    out, floor = [], int(np.searchsorted(log.time_ns[:log.n_timed], this.start_ns))
+    for first, stop in records.dwells:
+        at, end = int(records.index[first]), int(records.index[stop - 1])
+        level = float(log.channels[channel.column][at])
+        begin = at
+        while begin > floor and (mask[begin - 1] & ~BIT["pass edge"]) == 0:
+            step = float(log.time_ns[begin] - log.time_ns[begin - 1]) / NS
+            back = abs(float(log.channels[channel.column][begin - 1]) - level)
+            here = abs(float(log.channels[channel.column][begin]) - level)
+            settled = float(log.time_ns[at] - log.time_ns[begin - 1]) / NS <= 5 * tau
+            if not settled and (tau == 0 or back < here * np.exp(GROWTH * step / tau)):
+                break
+            if tau == 0 and back > here + 1.0:
+                break
+            begin -= 1
+        rows = np.arange(begin, end + 1)
+        rows = rows[mask[rows] == 0]
+        seconds = (log.time_ns[rows] - log.time_ns[begin]) / NS
+        out.append((seconds.astype(np.float64), log.channels[channel.column][rows]))
+        floor = end + 1
+    return out
+
+
+def _cooling_inputs(day: Day, this: Pass, cooled: float,
+                    placed: Placed | None) -> dict[str, Input]:
+    settings, scope = day.parameters.campaign.settings.temperature, f"{day.name}:{this.surface}"
+    if placed is None:
+        return {"head_cooling_error": Input(
+            "head_cooling_error", 0.0, cooled * HALF_WIDTH, f"{scope}:head cooling",
+            "cooling of the ground under the head, not corrected", "rectangular")}
+    return {
+        "head_cooling_error": Input(
+            "head_cooling_error", 0.0, settings.head_cooling_u_k, f"{scope}:head cooling",
+            "form of the law of cooling under the head"),
+        "fit_left": Input("fit_left", 0.0, placed.fit.u_mean_k, pass_scope(day, this),
+                          "fit of the cooling under the head")}
+
+
+def _cooling_flags(day: Day, cooled: float, placed: Placed | None) -> tuple[str, ...]:
+    settings = day.parameters.campaign.settings.temperature
+    if placed is None:
+        if cooled > settings.head_cooling_max_k:
+            raise NotEvaluated(f"the ground cools by about {cooled:.1f} K under the head, more "
+                               f"than {settings.head_cooling_max_k:g} without the fit")
+        return ("head cooling not corrected",) if cooled > 0 else ()
+    if placed.fit.rate < -3 * placed.fit.u_rate:
+        return ("the ground warms under the head: the law of cooling does not hold",)
+    return ()

@@ -1,0 +1,82 @@
+"""What the quality stage looks at, and what it found so far."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from typing import Any
+
+import numpy as np
+
+from surveykit.accounting import BIT, CHECKS, Mask, counted
+from surveykit.core import BoolArray
+from surveykit.intake.fieldsheet import Sheet
+from surveykit.intake.loggers import Records
+from surveykit.intake.params import Channel, Parameters
+from surveykit.intake.params.quality import QualitySettings
+from surveykit.intake.passes import Pass
+from surveykit.physics.sun import Sun
+
+Masks = dict[str, dict[str, Mask]]
+LIGHT = ("shortwave_down", "shortwave_up", "red_down", "red_up", "nir_down", "nir_up")
+HEAT = ("brightness_temperature", "longwave_down", "longwave_up")
+MAIN = (*LIGHT, *HEAT)
+CLEAR_MAXIMUM = 0.99  # quantile of a head's readings that stands for its clear maximum
+
+
+@dataclass
+class Study:
+    """Records, field sheet and passes; the checks noted; what was flagged, record by record.
+
+    `flagged` holds, per logger and column, by flag, which records it concerns.
+    """
+
+    parameters: Parameters
+    records: dict[str, Records]
+    sheet: Sheet
+    passes: tuple[Pass, ...]
+    channels: dict[str, dict[str, Channel]] = field(default_factory=dict)
+    sun: dict[str, Sun] = field(default_factory=dict)
+    checks: list[dict[str, Any]] = field(default_factory=list)
+    flagged: dict[tuple[str, str], dict[str, BoolArray]] = field(default_factory=dict)
+
+    @property
+    def quality(self) -> QualitySettings:
+        """Return the settings of the checks."""
+        return self.parameters.campaign.settings.quality
+
+    def note(self, check: str, severity: str, message: str, source: str, *, logger: str = "",
+             column: str = "", surface: str = "", pass_: str = "", records: int = 0) -> None:
+        """Add a row to the table of checks."""
+        self.checks.append({
+            "campaign": self.parameters.campaign.campaign, "check": check, "logger": logger,
+            "column": column, "surface": surface, "pass": pass_, "severity": severity,
+            "records": records, "message": message, "source": source})
+
+    def found(self, check: str, hit: BoolArray, mask: Mask, *, logger: str, column: str = "",
+              told: bool = True) -> None:
+        """Do what `accounting` decides where a check hits: set its bit in `mask`, or flag.
+
+        Flagged records are told of pass by pass; excluded ones here, once a channel.
+        """
+        count = int(np.count_nonzero(hit))
+        if not count:
+            return
+        reason = CHECKS[check]
+        if reason.action == "flag":
+            held = self.flagged.setdefault((logger, column), {})
+            held[check] = held[check] | hit if check in held else hit
+            return
+        mask |= np.where(hit, BIT[check], np.uint32(0))
+        if told:
+            self.note(check, reason.action, f"{counted(count, 'record')}: {reason.sentence}",
+                      reason.source, logger=logger, column=column, records=count)
+
+    def spans(self, channel: Channel, *kinds: str) -> list[tuple[int, int]]:
+        """Return the written windows [ns] of the passes that a channel serves.
+
+        `kinds` keeps those of these kinds or, where a pass has none, quantities.
+        """
+        return [(p.start_ns, p.stop_ns) for p in self.passes
+                if (not kinds or (p.kind or p.quantity) in kinds)
+                and any((c.logger, c.column) == (channel.logger, channel.column)
+                        for c in p.channels.values())]

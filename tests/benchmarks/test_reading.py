@@ -1,0 +1,145 @@
+"""Reading logs costs little beside what pandas does for the same values: ratios, never seconds.
+
+The asks are ratios to a plain way of doing the same work, measured in turns (median of five) in one
+process, since machines are noisy; each benchmark compares the values as well. HEADROOM is for
+machines that others share, where the two threads of the reader do not get two cores.
+"""
+
+from __future__ import annotations
+
+import statistics
+import subprocess
+import sys
+import time
+from collections.abc import Callable
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pandas as pd
+import pytest
+from numpy.testing import assert_allclose, assert_array_equal
+
+from surveykit.intake.loggers import read_logger
+from surveykit.intake.params import Instrument
+from surveykit.intake.times import read_times
+
+pytestmark = pytest.mark.slow
+HEADROOM, TURNS = 1.6, 5
+ISO_ASK, DAY_FIRST_ASK, COMMA_ASK, BYTES_ASK = 1.3, 0.3, 0.35, 120
+
+
+def entry(layout: dict[str, Any] | None = None) -> Instrument:
+    return Instrument.model_validate({
+        "time": {"column": "time", "format": "iso8601", "zone": "UTC"}, "layout": layout or {},
+        "columns": {"target": {"quantity": "brightness_temperature", "unit": "degC",
+                               "u_offset": 0.2},
+                    "body": {"quantity": "housing_temperature", "unit": "degC"}},
+        "time_constant_s": 0.3})
+
+
+def table(rows: int) -> pd.DataFrame:
+    rng = np.random.default_rng(1)
+    times = pd.date_range("2025-07-24T08:00", periods=rows, freq="200ms")
+    frame = pd.DataFrame({"time": times})
+    for name, level in (("target", 40), ("body", 30), ("battery", 12)):
+        frame[name] = np.round(level + rng.normal(size=rows), 2)
+    return frame
+
+
+def in_turns(ours: Callable[[], Any], plain: Callable[[], Any]) -> tuple[float, Any, Any]:
+    """Return the ratio of the medians, and what both gave."""
+    durations: tuple[list[float], list[float]] = ([], [])
+    for _ in range(TURNS):
+        for work, taken in zip((ours, plain), durations, strict=True):
+            start = time.perf_counter()
+            got = work()
+            taken.append(time.perf_counter() - start)
+            if work is ours:
+                one = got
+            else:
+                other = got
+    return statistics.median(durations[0]) / statistics.median(durations[1]), one, other
+
+
+def held(ratio: float, ask: float) -> None:
+    print(f"ratio {ratio:.3f}, asked {ask:g}")  # noqa: T201
+    assert ratio <= HEADROOM * ask, f"{ratio:.3f} of the plain way, asked {ask:g}"
+
+
+def test_an_iso_log_costs_little_more_than_bare_pandas(tmp_path):
+    frame = table(400_000)
+    path = tmp_path / "log.csv"
+    frame["time"] = frame["time"].dt.strftime("%Y-%m-%dT%H:%M:%S.%f").str[:-3]
+    frame.to_csv(path, index=False)
+    known = entry()
+    ratio, records, plain = in_turns(
+        lambda: read_logger("thermal", known, [path], tmp_path),
+        lambda: pd.read_csv(path, parse_dates=["time"]))
+    assert_allclose(records.channels["target"], plain["target"] + 273.15, rtol=1e-12)
+    assert_array_equal(records.time_ns, plain["time"].dt.as_unit("ns").astype("int64"))
+    held(ratio, ISO_ASK)
+
+
+def test_day_first_times_cost_a_fraction_of_an_explicit_format():
+    form = "%d.%m.%Y %H:%M:%S"
+    texts = pd.Series(table(200_000)["time"].dt.strftime(form).to_numpy(dtype=object))
+    ratio, (wall, _), plain = in_turns(
+        lambda: read_times(texts, form), lambda: pd.to_datetime(texts, format=form))
+    assert_array_equal(wall, plain.dt.as_unit("ns").astype("int64"))
+    held(ratio, DAY_FIRST_ASK)
+
+
+def test_decimal_commas_cost_a_fraction_of_reading_texts(tmp_path):
+    frame = table(200_000)
+    frame["time"] = frame["time"].dt.strftime("%Y-%m-%d %H:%M:%S.%f").str[:-3]
+    path = tmp_path / "log.csv"
+    text = frame.to_csv(index=False, sep=";").replace(".", ",")
+    path.write_text("station 4\nserial 7, in use\n" + text)
+    known = entry({"delimiter": ";", "decimal": ",", "skip_lines": 2})
+
+    def all_texts() -> pd.DataFrame:
+        read = pd.read_csv(path, sep=";", skiprows=2, dtype=str)
+        for name in ("target", "body", "battery"):
+            read[name] = read[name].str.replace(",", ".").astype(float)
+        read["time"] = pd.to_datetime(read["time"].str.replace(",", "."),
+                                      format="%Y-%m-%d %H:%M:%S.%f")
+        return read
+
+    ratio, records, plain = in_turns(
+        lambda: read_logger("thermal", known, [path], tmp_path), all_texts)
+    assert_allclose(records.channels["body"], plain["body"] + 273.15, rtol=1e-12)
+    assert_array_equal(records.time_ns, plain["time"].dt.as_unit("ns").astype("int64"))
+    held(ratio, COMMA_ASK)
+
+
+MEMORY = """
+import resource, sys
+from pathlib import Path
+sys.path.insert(0, {here!r})
+from test_reading import entry, read_logger
+folder = Path({folder!r})
+known = entry()
+read_logger("thermal", known, [folder / "few.csv"], folder)
+base = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss
+records = read_logger("thermal", known, [folder / "many.csv"], folder)
+peak = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss
+print((peak - base) * 1024 / len(records))
+"""
+
+
+@pytest.mark.skipif(sys.platform != "linux", reason="ru_maxrss is in KiB on Linux")
+def test_memory_of_a_long_log(tmp_path):
+    # 2 million rows stand for 10 million: what a row takes is the same, the file is smaller
+    frame = table(200_000)
+    frame["time"] = frame["time"].dt.strftime("%Y-%m-%dT%H:%M:%S.%f").str[:-3]
+    head, body = frame.to_csv(index=False).split("\n", 1)
+    (tmp_path / "few.csv").write_text(head + "\n" + body[: body.find("\n", 10_000) + 1])
+    with (tmp_path / "many.csv").open("w") as file:
+        file.write(head + "\n")
+        for day in range(10, 20):  # each part on another day, so that times ascend
+            file.write(body.replace("2025-07-24", f"2025-07-{day}"))
+    code = MEMORY.format(here=str(Path(__file__).parent), folder=str(tmp_path))
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
+    print(f"{float(done.stdout):.0f} bytes a row, asked {BYTES_ASK}")  # noqa: T201
+    assert float(done.stdout) <= BYTES_ASK
