@@ -46,6 +46,18 @@ class Stay:
 
 
 @dataclass(frozen=True)
+class Swap:
+    """The shortwave pair over one spot as it is used, then turned over, on a stand."""
+
+    number: int
+    surface: str
+    patch: str
+    height_m: float
+    normal: tuple[float, float]
+    inverted: tuple[float, float]
+
+
+@dataclass(frozen=True)
 class Log:
     """What one logger holds: the true time of each record, its own time, its readings."""
 
@@ -65,6 +77,7 @@ CALIBRATIONS = {"sky_mV": "shortwave-2025-01", "ground_mV": "shortwave-2025-01",
                 "red_sky": "rednir-sky-2025-01", "nir_sky": "rednir-sky-2025-01",
                 "red_ground": "rednir-ground-2025-01", "nir_ground": "rednir-ground-2025-01"}
 HEAD_RADIUS_M = 0.012
+HELD_S = 6.0  # that a position lasts beyond its written times
 BORE, BORE_U = 0.95, 0.06
 BANDS = {"red": (0.0735, 0.83), "nir": (0.0550, 0.89)}  # share of the irradiance, share of beam
 
@@ -131,12 +144,16 @@ def thermal(world: World, stays: list[Stay], covers: list[tuple[float, float]]) 
         rng = stream(date, stay.patch, stay.turn, "dwells")
         since = world.time_s[part] - stay.start_s
         swing, spot = np.zeros(local.size), np.zeros(local.size)
+        absorbed = (1 - world.albedo(surface)[part]) * world.irradiance[part]
         last = 0.0
         for start, stop in stay.dwells:
             lifted = (since >= last) & (since < start)
             phase = (since[lifted] - last) / max(start - last, STEP_S)
             swing[lifted] = -rng.uniform(10, 24) * np.sin(np.pi * phase)
             spot[since >= last] = surface.spread_k * rng.standard_normal()
+            under = (since >= start) & (since < stop)  # Carslaw & Jaeger: a step of flux
+            spot[under] -= (2 * absorbed[under] / surface.effusivity
+                            * np.sqrt((since[under] - start) / np.pi))
             last = stop
         wall = ((1 - surface.rim_gap) * bore * radiance(body[part])
                 + surface.rim_gap * world.sky[part])
@@ -155,7 +172,8 @@ def thermal(world: World, stays: list[Stay], covers: list[tuple[float, float]]) 
     return log
 
 
-def level(world: World, stays: list[Stay], pole: str, beam: float) -> np.ndarray:
+def level(world: World, stays: list[Stay], pole: str, beam: float,
+          swaps: list[Swap] | None = None) -> np.ndarray:
     """Return the relative error of an up head that is carried, not fixed: 1 deg on a pass."""
     tilt = 2.0 * wander(stream(world.day.date, pole, "sway"), world.time_s.size, 8.0)
     jitter = 0.3 * wander(stream(world.day.date, pole, "jitter"), world.time_s.size, 1.0)
@@ -164,12 +182,17 @@ def level(world: World, stays: list[Stay], pole: str, beam: float) -> np.ndarray
             rng = stream(world.day.date, pole, stay.patch, stay.turn, "tilt")
             tilt[world.between(stay.start_s - 4, stay.stop_s + 4)] = (
                 rng.standard_normal() * np.sqrt(0.5))
+    for swap in swaps or ():  # on a stand, levelled each time
+        for number, (start, stop) in enumerate((swap.normal, swap.inverted)):
+            part = world.between(start - HELD_S, stop + HELD_S)
+            rng = stream(world.day.date, pole, "swap", swap.number, number)
+            tilt[part], jitter[part] = 0.15 * rng.standard_normal(), 0.0
     angle = np.radians(tilt + jitter)
     tangent = np.sqrt(1 / world.cos_zenith**2 - 1)
     return beam * (np.cos(angle) + np.sin(angle) * tangent - 1)
 
 
-def ground(world: World, stays: list[Stay]) -> Series:
+def ground(world: World, stays: list[Stay], swaps: list[Swap] | None = None) -> Series:
     """Return the albedo and the red and near-infrared reflectance that the down heads see."""
     date, n = world.day.date, world.time_s.size
     blur = wander(stream(date, "brightness"), n, 3.0)
@@ -192,32 +215,51 @@ def ground(world: World, stays: list[Stay]) -> Series:
         zenith = world.albedo(surface)[part] / surface.albedo
         seen["red"][part] = surface.red * zenith * bright * (1 - greener)
         seen["nir"][part] = surface.nir * zenith * bright * (1 + greener)
+    for swap in swaps or ():
+        surface = world.day.surfaces[swap.surface]
+        share = square_share(surface.size_m, swap.height_m)
+        around = surface.around + shared_error(f"around:{swap.surface}", surface.around_u)
+        for start, stop in (swap.normal, swap.inverted):
+            part = world.between(start - HELD_S, stop + HELD_S)
+            seen["albedo"][part] = (1 - share) * around + world.albedo(surface)[part] * (
+                share - shade_share(swap.height_m, world.cos_zenith[part]))
     return seen
 
 
 def counted(world: World, column: str, truth: np.ndarray, light: np.ndarray,
-            time_constant_s: float, dark: float) -> np.ndarray:
+            time_constant_s: float, dark: float,
+            zero_factor: np.ndarray | float = 1.0) -> np.ndarray:
     """Return the reading of one head: its zero error, gain error, dark reading and lag.
 
     `light` is 1 where the head is open and 0 under its cap; a cap shows the dark reading only.
+    `zero_factor` is what turning the head does to its zero, which comes of a cold sky above it.
     """
     gain, gain_u, offset_u = GAINS[column]
     calibration = CALIBRATIONS[column]
     zero = shared_error(f"{calibration}:{column}:offset", offset_u)
     gain *= 1 + shared_error(f"{calibration}:{column}:gain", gain_u)
     drift = 1 + 0.2 * np.linspace(-1, 1, light.size)
-    return respond((truth + zero) * light, time_constant_s) / gain + dark * drift
+    return respond((truth + zero * zero_factor) * light, time_constant_s) / gain + dark * drift
 
 
-def shortwave(world: World, stays: list[Stay], light: np.ndarray) -> Log:
-    """The up/down pair; the up head's directional error stays within 2 % of the beam."""
-    facing = shared_error("shortwave-2025-01:sky_mV:directional", 0.5, 1.0)
-    directional = BEAM * np.clip(0.02 * facing / world.cos_zenith, -0.02, 0.02)
-    sky = world.irradiance * (1 + directional + level(world, stays, "shortwave", BEAM))
-    below = world.irradiance * ground(world, stays)["albedo"]
-    log = record(world, "shortwave", 1.0, {
-        "sky_mV": counted(world, "sky_mV", sky, light, 1.0, -0.42),
-        "ground_mV": counted(world, "ground_mV", below, light, 1.0, 0.21)})
+def shortwave(world: World, stays: list[Stay], light: np.ndarray, swaps: list[Swap]) -> Log:
+    """The up/down pair; a head's directional error stays within 2 % of the beam.
+
+    In a swap's second half each head looks where the other did.
+    """
+    turned = np.zeros(light.size, dtype=bool)
+    for swap in swaps:
+        turned[world.between(swap.inverted[0] - HELD_S, swap.inverted[1] + HELD_S)] = True
+    tilted = level(world, stays, "shortwave", BEAM, swaps)
+    below = world.irradiance * ground(world, stays, swaps)["albedo"]
+    columns = {}
+    for column, dark, up in (("sky_mV", -0.42, ~turned), ("ground_mV", 0.21, turned)):
+        facing = shared_error(f"shortwave-2025-01:{column}:directional", 0.5, 1.0)
+        directional = BEAM * np.clip(0.02 * facing / world.cos_zenith, -0.02, 0.02)
+        truth = np.where(up, world.irradiance * (1 + directional + tilted), below)
+        factor = np.where(turned, 1 / 3 if column == "sky_mV" else 3.0, 1.0)
+        columns[column] = counted(world, column, truth, light, 1.0, dark, factor)
+    log = record(world, "shortwave", 1.0, columns)
     for column, sd in (("sky_mV", 0.02), ("ground_mV", 0.008)):
         log.columns[column] += noise(world, column, log.true_s.size, sd)
     return log

@@ -12,7 +12,7 @@ from datetime import datetime
 from pathlib import Path
 
 import numpy as np
-from heads import Log, Stay, red_near_infrared, shortwave, thermal, weather
+from heads import Log, Stay, Swap, red_near_infrared, shortwave, thermal, weather
 from logs import ZONE, Faults, files, freeze, spoil, texts
 from truth import clocks, truth_file, truths
 from yard import DAYS, Day, World, shared_error, solar_noon, stream
@@ -20,7 +20,8 @@ from yard import DAYS, Day, World, shared_error, solar_noon, stream
 HERE = Path(__file__).resolve().parent
 ROUND = ("A1", "C1", "L1", "C2", "L2", "A2", "B1", "K1", "A3", "L3", "C3", "L4", "C4", "A4")
 HEIGHTS_M = {"A": 0.40, "C": 0.40, "L": 0.45, "B": 0.35, "K": 0.40}
-BEFORE_NOON_S, LEAD_S, TAIL_S = 55 * 60.0, 480.0, 420.0
+BEFORE_NOON_S, LEAD_S, TAIL_S = 55 * 60.0, 480.0, 800.0
+SWAPS, SWAP_S, TURN_S = 3, 70.0, 15.0
 HEADER = ("entry,surface,patch,quantity,mode,instrument,start,stop,height_cm,width_m,length_m,"
           "lanes,reading,reading_u,note,date,campaign").split(",")
 PATCH_SHARE, PASS_SHARE = 0.6, 0.3  # of the spread within a patch
@@ -65,7 +66,7 @@ def clock_text(second: float) -> str:
 
 
 def sheet(day: Day, stays: list[Stay], caps: list[tuple[float, float]],
-          covers: list[tuple[float, float]]) -> bytes:
+          covers: list[tuple[float, float]], swaps: list[Swap]) -> bytes:
     """Return the field sheet: written by hand, 2 s either way, by a watch of its own."""
     rng = stream(day.date, "sheet")
     watch = shared_error(f"{day.campaign}:watch", 1.0)
@@ -81,6 +82,12 @@ def sheet(day: Day, stays: list[Stay], caps: list[tuple[float, float]],
     for cover in covers:
         start, stop = (clock_text(edge - watch + 0.3 * called.standard_normal()) for edge in cover)
         rows.append((cover[0], {"entry": "cover", "start": start, "stop": stop}))
+    for swap in swaps:
+        for word, (start, stop) in (("normal", swap.normal), ("inverted", swap.inverted)):
+            rows.append((start, {"entry": "swap", "surface": swap.surface, "patch": swap.patch,
+                                 "instrument": "shortwave", "start": clock_text(start - watch),
+                                 "stop": clock_text(stop - watch), "reading": word,
+                                 "height_cm": f"{100 * swap.height_m:.0f}"}))
     for stay in stays:
         start = max(stay.start_s - watch + 2 * rng.standard_normal(), free + 2)
         stop = free = stay.stop_s - watch + 2 * rng.standard_normal()
@@ -99,7 +106,9 @@ def sheet(day: Day, stays: list[Stay], caps: list[tuple[float, float]],
             mode = {"mode": "stand-off"} if quantity == "temperature" else {}
             rows.append((stay.start_s, {**common, **mode, "quantity": quantity}))
     if day is DAYS[0]:
-        rows[11][1]["note"] = "hair-line cracks along one edge, kept off them"
+        first = next(row for at, row in rows if at == stays[1].start_s
+                     and row["quantity"] == "albedo")
+        first["note"] = "hair-line cracks along one edge, kept off them"
     semicolons = day is DAYS[1]  # as another spreadsheet saves it
     separator = ";" if semicolons else ","
     lines = [separator.join(HEADER)]
@@ -119,6 +128,17 @@ def covered(day: Day, stays: list[Stay]) -> list[tuple[float, float]]:
     midway = [stay for stay in stays if stay.kind == "walk"][len(ROUND) + len(ROUND) // 2]
     starts = stays[0].start_s - 60, midway.stop_s + 10, stays[-1].stop_s + 40
     return [(start, start + rng.uniform(9.3, 12.6)) for start in starts]
+
+
+def swapping(stays: list[Stay]) -> list[Swap]:
+    """Return the swaps of the shortwave pair, after the day's last caps, over the last patch."""
+    last, swaps = stays[-1], []
+    for number in range(SWAPS):
+        start = last.stop_s + 240 + number * 2 * (SWAP_S + TURN_S)
+        again = start + SWAP_S + TURN_S
+        swaps.append(Swap(number, last.surface, last.patch, HEIGHTS_M[last.patch[0]],
+                          (start, start + SWAP_S), (again, again + SWAP_S)))
+    return swaps
 
 
 def cap_light(world: World, caps: list[tuple[float, float]],
@@ -145,12 +165,14 @@ def survey(day: Day) -> tuple[dict[str, bytes], World, list[Stay], Faults]:
     left_on = light.copy()
     left_on[world.between(forgotten.start_s - 20, forgotten.start_s + 36)] = 0.0
     faults.note("shortwave", "capped", 36, forgotten)
-    pair = shortwave(world, stays, left_on)
+    swaps = swapping(stays)
+    pair = shortwave(world, stays, left_on, swaps)
     infrared = thermal(world, stays, covers)
     freeze(pair, "ground_mV", 20, faults)
     freeze(infrared, "target", 15, faults)
     station = weather(world)
-    out = {"field_sheet.csv": sheet(day, stays, caps, covers), **files(station, texts(station))}
+    out = {"field_sheet.csv": sheet(day, stays, caps, covers, swaps),
+           **files(station, texts(station))}
     loggers: tuple[Log, ...] = (infrared, pair, *red_near_infrared(world, stays, light))
     for log in loggers:
         out |= files(log, spoil(log, texts(log), faults))

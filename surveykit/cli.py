@@ -76,12 +76,12 @@ def _positive(text: str) -> int:
 
 def _told(work: Callable[[], int | None]) -> int:
     """Call `work`; print the user's faults, one line each, and return the exit code."""
-    from surveykit.core import InputError
+    from surveykit.core import InputError, shown_faults
 
     try:
         return work() or DONE
     except InputError as error:
-        for fault in error.faults:
+        for fault in shown_faults(error.faults):
             print(fault, file=sys.stderr)  # noqa: T201
         return USER
     except OSError as error:

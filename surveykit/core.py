@@ -30,6 +30,18 @@ class InputError(Exception):
         super().__init__("\n".join(faults))
 
 
+def shown_faults(faults: Sequence[str], most: int = 200) -> list[str]:
+    """Return the faults to show, at most so many, and a line that counts the rest.
+
+    Examples
+    --------
+    >>> shown_faults(["one", "two", "three"], most=2)
+    ['one', 'two', '... and 1 more; mend these first']
+    """
+    rest = len(faults) - most
+    return [*faults[:most], *([f"... and {rest:,} more; mend these first"] if rest > 0 else [])]
+
+
 @dataclass(frozen=True)
 class Sourced:
     """A constant with its standard uncertainty, unit and source together."""

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+import os
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from functools import cached_property
@@ -20,6 +21,7 @@ from surveykit.intake.params import (
     read_plain,
     refuse_other_sections,
 )
+from surveykit.intake.params.paths import outside_allowed
 from surveykit.statistics.draws import Draws
 
 SECTIONS = tuple(Campaign.model_fields)
@@ -111,20 +113,21 @@ def open_file(path: Path, run_folder: str | Path | None = None, *,
             files += expand_files(parameters.data_folder, use.files)
         except InputError as error:
             faults += [f"{_shown(path, root)}: loggers.{name}.files: {f}" for f in error.faults]
-    if faults and not planned:
-        raise InputError(*faults)
     files = [file for file in files if file.is_file()]
+    faults = [] if planned else faults
+    faults += [f"{_shown(path, root)}: {file.name} is a link that leads out of the project folder; "
+               "copy the file" for file in files[1:] if not outside_allowed()
+               and not file.resolve().is_relative_to(root.resolve())]
+    if faults:
+        raise InputError(*faults)
     inputs = []
     for file in files:
-        data = file.read_bytes()
-        inputs.append({"path": _shown(file, root), "sha256": hashlib.sha256(data).hexdigest(),
-                       "bytes": len(data)})
+        with file.open("rb") as data:
+            inputs.append({"path": _shown(file, root), "bytes": file.stat().st_size,
+                           "sha256": hashlib.file_digest(data, "sha256").hexdigest()})
     folder = Path(run_folder) if run_folder else root / ".surveykit" / campaign.campaign
     return Survey(parameters, folder, tuple(inputs))
 
 
 def _shown(path: Path, root: Path) -> str:
-    try:
-        return path.resolve().relative_to(root.resolve()).as_posix()
-    except ValueError:
-        return path.name
+    return Path(os.path.relpath(path.resolve(), root.resolve())).as_posix()

@@ -24,7 +24,7 @@ from multiprocessing.connection import wait as wait_for
 from pathlib import Path
 
 from surveykit import runner
-from surveykit.core import InputError
+from surveykit.core import InputError, shown_faults
 from surveykit.intake.params import is_kit_file, read_plain
 from surveykit.opening import open_file
 
@@ -62,9 +62,11 @@ def work(path: Path, only_if_needed: bool, *, lanes: int | None = None,
         report = runner.run(path, say or (lambda line: None), lanes=lanes, notebooks=notebooks)
         return made(DONE, "done", time.perf_counter() - begun, (), report)
     except InputError as error:
-        return made(USER, "input at fault", time.perf_counter() - begun, tuple(error.faults))
+        return made(USER, "input at fault", time.perf_counter() - begun,
+                    tuple(shown_faults(error.faults)))
     except OSError as error:
-        return made(BUG, "not written", time.perf_counter() - begun, (f"{path.name}: {storage(error)}",))
+        return made(BUG, "not written", time.perf_counter() - begun,
+                    (f"{path.name}: {storage(error)}",))
     except Exception:
         return made(BUG, "bug", time.perf_counter() - begun,
                     (f"{path}: a bug; please report it:", traceback.format_exc()))

@@ -143,7 +143,7 @@ def moved_cells(then: str, now: str, table: str) -> Iterator[str]:
     --------
     >>> head = ",".join(TABLES["dwells"])
     >>> row = "c,lawn,L1,p,1,2025-06-11T12:00:00Z,2025-06-11T12:00:03Z,{},0.1,7"
-    >>> old, new = (f"{head}\\n{row.format(v)}\\n" for v in (30.0, 30.1))
+    >>> old, new = (f"{head}\n{row.format(v)}\n" for v in (30.0, 30.1))
     >>> list(moved_cells(old, new, "dwells"))
     ['row 2, value: 30.0 then, 30.1 now']
     """

@@ -68,7 +68,7 @@ def test_the_coated_court_changed_and_the_lawn_did_not(demo):
     for later in DEMO[1:]:
         now = albedo[albedo["campaign"] == later].set_index("surface")["verdict"]
         assert now["coated-court"] == "higher"
-        assert now["lawn"] == "no difference shown"
+        assert now["lawn"] in ("no difference shown", "equivalent")
 
 
 def test_a_wrong_method_would_have_called_the_lawn_changed(demo):

@@ -12,7 +12,7 @@ import shutil
 import numpy as np
 import pandas as pd
 import pytest
-from conftest import DEMO, surveykit
+from projects import DEMO, surveykit
 
 xr = pytest.importorskip("xarray")
 pytest.importorskip("h5netcdf")

@@ -5,7 +5,7 @@ from __future__ import annotations
 import shutil
 import zipfile
 
-from conftest import DEMO, ROOT, copy_project, surveykit
+from projects import DEMO, ROOT, copy_project, surveykit
 
 NAME = DEMO[1]
 

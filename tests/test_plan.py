@@ -11,7 +11,7 @@ import numpy as np
 import pandas as pd
 import pvlib
 import pytest
-from conftest import DEMO, copy_project, surveykit
+from projects import DEMO, copy_project, surveykit
 
 from surveykit import planning
 from surveykit.intake.fieldsheet import read_sheet

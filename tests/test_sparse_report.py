@@ -8,7 +8,7 @@ import shutil
 import html5lib
 import pytest
 from bs4 import BeautifulSoup
-from conftest import ROOT, surveykit
+from projects import ROOT, surveykit
 from small_survey import ALBEDO, DAY, STAND_OFF, lines, row, small
 
 NAME = f"yard-{DAY}"

@@ -8,8 +8,8 @@ from pathlib import Path
 import nbformat
 import numpy as np
 import pytest
-from conftest import DEMO
 from nbclient import NotebookClient
+from projects import DEMO
 
 from surveykit import trying
 from surveykit.core import InputError

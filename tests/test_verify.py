@@ -6,7 +6,7 @@ import json
 import shutil
 
 import pytest
-from conftest import DEMO, surveykit
+from projects import DEMO, surveykit
 
 from surveykit import facts
 from surveykit.core import PUBLISHED, InputError

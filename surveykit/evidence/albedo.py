@@ -102,7 +102,7 @@ def _gains(day: Day, this: Pass) -> tuple[list[Input], tuple[str, ...]]:
     settings = day.parameters.campaign.settings.albedo
     up, down = this.channels["shortwave_up"], this.channels["shortwave_down"]
     own = [fixed("gain_ratio", 1.0), gain(up, "up_gain_error"), gain(down, "down_gain_error")]
-    found = swapped(day, up, down, "albedo")
+    found = swapped(day, up, down, "albedo", GROUND_SHARE)
     if found is None:
         return own, ("gain ratio not checked by swapping",)
     if not settings.correct_gain_ratio:
@@ -112,6 +112,8 @@ def _gains(day: Day, this: Pass) -> tuple[list[Input], tuple[str, ...]]:
                      f"{settings.swap_max_sd:.0%}",)
     flags = ("fewer swaps than recommended",) if found.n < settings.swap_min_pairs else ()
     return [ratio_input(day, "gain_ratio", found, up, "gain ratio by swapping the heads"),
+            fixed("ratio_per_up_zero", found.per_up_zero),
+            fixed("ratio_per_down_zero", found.per_down_zero),
             fixed("up_gain_error", 0.0), fixed("down_gain_error", 0.0)], flags
 
 

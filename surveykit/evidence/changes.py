@@ -12,6 +12,7 @@ import numpy as np
 
 from surveykit.core import FloatArray, Input
 from surveykit.evidence.comparability import Class, Date, comparability
+from surveykit.evidence.drift import carried
 from surveykit.evidence.surfaces import Group
 from surveykit.physics.shortwave import zenith_factor
 from surveykit.statistics.draws import Draws, Result, combine, summarise
@@ -82,7 +83,8 @@ def _rows(now: Date, then: Date, key: tuple[str, str, str], control: str,
         rows.insert(0, base | {"method": DOUBLE, **_summary(now, additive)})
     if quantity == "temperature":
         if controls and grade.letter != "C":
-            lead_row |= _summary(now, _ratio(now, then, new, old, controls, grade, draws))
+            at_once = [carried(date, k, draws) for k in (key, control_key) for date in (now, then)]
+            lead_row |= _summary(now, _ratio(now, then, at_once, grade, draws))
     elif controls:
         terms = [zenith_term(now, new, old, draws, 1.0),
                  zenith_term(now, *controls, draws, -1.0)]
@@ -157,8 +159,10 @@ def interventions(now: Date, then: Date, surface: str) -> list[str]:
     return [f"{day}: {text}" for day, text in sorted(stated)]
 
 
-def _ratio(now: Date, then: Date, new: Group, old: Group, controls: tuple[Group, Group],
-           grade: Class, draws: Draws) -> Result:
+def _ratio(now: Date, then: Date, at_once: list[Group | None], grade: Class,
+           draws: Draws) -> Result:
+    """Return the change by ratio to the control, surfaces and control at one time of each date."""
+    new, old, *controls = (g for g in at_once if g is not None)
     share = model_share(now, new.surface, grade.letter)
     excess = abs(controls[0].value - controls[0].mean("air_k"))
     form = _known(0.0, share * excess * draws.standard(

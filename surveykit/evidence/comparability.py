@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 
@@ -16,10 +16,14 @@ SKY_WORDS = {"clear": "clear", "diffuse": "overcast", "mixed": "broken"}
 
 @dataclass(frozen=True)
 class Date:
-    """One campaign as the comparison sees it: its parameters and its groups by key."""
+    """One campaign as the comparison sees it: its parameters and its groups by key.
+
+    `carried` keeps the groups at one common time once they were made (drift.py).
+    """
 
     parameters: Parameters
     groups: dict[tuple[str, str, str], Group]
+    carried: dict[tuple[str, str], tuple[dict[str, Group], str]] = field(default_factory=dict)
 
     @property
     def name(self) -> str:

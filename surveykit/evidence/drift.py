@@ -72,6 +72,8 @@ def at_common_time(date: Date, family: Sequence[Group],
     Where the control is far enough above the air, a surface follows it by the ratio of their
     excesses over the air; else by the same kelvins. Without a control the groups stay.
     """
+    if family and family[0].key[1:] in date.carried:
+        return date.carried[family[0].key[1:]]
     as_they_are = {g.surface: g for g in family}
     if not family or family[0].quantity != "temperature":
         return as_they_are, ""
@@ -83,8 +85,19 @@ def at_common_time(date: Date, family: Sequence[Group],
     middle = float(np.mean([_hour(g, i) for g in family for i in range(len(g.used))
                             if g.result is not None]))
     common_h = float(np.clip(middle, course.time_h[0], course.time_h[-1]))
-    return {g.surface: _carried(date, g, course, common_h, draws) if g.result is not None else g
-            for g in family}, CORRECTED
+    made = {g.surface: _carried(date, g, course, common_h, draws) if g.result is not None else g
+            for g in family}
+    date.carried[family[0].key[1:]] = made, CORRECTED
+    return made, CORRECTED
+
+
+def carried(date: Date, key: tuple[str, str, str], draws: Draws) -> Group | None:
+    """Return the group of this key at the common time, or as it is; None without an interval."""
+    found = date.find(*key)
+    if found is None or key[1] != "temperature":
+        return found
+    family = [g for g in date.groups.values() if g.key[1:] == key[1:]]
+    return at_common_time(date, family, draws)[0][key[0]]
 
 
 def _carried(date: Date, group: Group, course: Course, common_h: float, draws: Draws) -> Group:
@@ -92,16 +105,19 @@ def _carried(date: Date, group: Group, course: Course, common_h: float, draws: D
     limits = settings.comparison
     at = np.array([_hour(group, i) for i in range(len(group.used))])
     apart = hat_weights(course.time_h, at) - hat_weights(course.time_h, [common_h])
-    follow = 1.0
+    follow, air_moved = 1.0, np.zeros(at.size)
     if (course.excess_k >= limits.min_control_excess_k).all():
         there = hat_weights(course.time_h, at)
         above = np.array([p.value for p in group.used]) - there @ course.air_k
         follow = float(group.weights @ above / (group.weights @ (there @ course.excess_k)))
-        moved = apart @ course.air_k + follow * (apart @ course.excess_k)
+        air_moved = apart @ course.air_k
+        moved = air_moved + follow * (apart @ course.excess_k)
     else:
         moved = apart @ course.value_k
-    held = iter([replace(p, value=p.value - float(by))
-                 for p, by in zip(group.used, moved, strict=True)])
+    held = iter([
+        replace(p, value=p.value - float(by),
+                air=replace(p.air, value=p.air.value - float(air_by)) if p.air else None)
+        for p, by, air_by in zip(group.used, moved, air_moved, strict=True)])
     passes = [next(held) if p.evaluated else p for p in group.passes]
     made = pool_passes(group.campaign, group.key, passes, draws, settings.statistics.coverage,
                        group.spreads)

@@ -98,7 +98,7 @@ def estimate(day: Day, this: Pass) -> PassEstimate:
         return replace(base, note=str(refusal))
     if not np.isfinite(made.value):
         return replace(base, note="the readings lie outside the range of the model")
-    flags = made.flags + this.notes
+    flags = made.flags + records.flags + this.notes
     if made.n_effective < day.parameters.campaign.settings.statistics.few_effective and \
             model != "contact":  # which counts placements, with a flag of its own
         flags += ("few effective records",)

@@ -15,23 +15,32 @@ from surveykit.statistics.series import mean_of_series
 
 
 class Ratios(NamedTuple):
-    """Response of the ground head over that of the sky head: one value a swap or a panel row."""
+    """Response of the ground head over that of the sky head: one value a swap or a panel row.
+
+    `per_up_zero` and `per_down_zero` say how the ratio moves, relative, with the zero errors of
+    the ground head and the sky head in their usual places [1 / unit].
+    """
 
     value: float
     u: float
     n: int
     sd: float
+    per_up_zero: float = 0.0
+    per_down_zero: float = 0.0
 
 
-def swapped(day: Day, up: Channel, down: Channel, product: str) -> Ratios | None:
+def swapped(day: Day, up: Channel, down: Channel, product: str,
+            ground_share: float = 1.0) -> Ratios | None:
     """Return the gain ratio of a pair of heads from the sheet's swap rows, or None without any.
 
     Rows go in pairs, normal then inverted; `up` is the channel of the head that normally looks
-    down. The scatter between pairs and that within them both count.
+    down. The scatter between pairs and that within them both count. A zero that comes of the sky
+    above a head is `ground_share` as large over the ground: it does not drop out.
     """
     rows = [e for e in day.sheet.entries if e.entry == "swap" and e.quantity in ("", product)
             and e.instrument in ("", up.logger, down.logger)]
     found: list[HeadRatio] = []
+    per_zero: list[tuple[float, float]] = []
     for first, second in zip(rows[::2], rows[1::2], strict=False):
         if (first.reading > 0) == (second.reading > 0):
             continue  # not a pair: the sheet's check has said so
@@ -39,8 +48,14 @@ def swapped(day: Day, up: Channel, down: Channel, product: str) -> Ratios | None
         a = _over(day, normal, up, down)
         b = _over(day, inverted, down, up)
         if a is not None and b is not None:
-            found.append(head_ratio_by_swap(a[0], b[0], a[1], b[1]))
-    return _together([float(f.ratio) for f in found], [float(f.u) for f in found])
+            found.append(head_ratio_by_swap(a.ratio, b.ratio, a.u, b.u))
+            per_zero.append(((1 / a.reflected + 1 / ground_share / b.incoming) / 2,
+                             -(1 / a.incoming + ground_share / b.reflected) / 2))
+    made = _together([float(f.ratio) for f in found], [float(f.u) for f in found])
+    if made is None:
+        return None
+    moves = np.mean(per_zero, axis=0)
+    return made._replace(per_up_zero=float(moves[0]), per_down_zero=float(moves[1]))
 
 
 def over_panel(day: Day, up: Channel, down: Channel) -> Ratios | None:
@@ -50,8 +65,8 @@ def over_panel(day: Day, up: Channel, down: Channel) -> Ratios | None:
         if entry.entry == "panel" and entry.instrument in ("", up.logger, down.logger):
             found = _over(day, entry, up, down)
             if found is not None:
-                values.append(found[0] / entry.reading)
-                errors.append(found[1] / entry.reading)
+                values.append(found.ratio / entry.reading)
+                errors.append(found.u / entry.reading)
     return _together(values, errors)
 
 
@@ -68,7 +83,14 @@ def ratio_input(day: Day, name: str, ratios: Ratios, up: Channel, source: str) -
                  f"{source} ({ratios.n})")
 
 
-def _over(day: Day, entry: Entry, up: Channel, down: Channel) -> tuple[float, float] | None:
+class _Over(NamedTuple):
+    ratio: float
+    u: float
+    reflected: float
+    incoming: float
+
+
+def _over(day: Day, entry: Entry, up: Channel, down: Channel) -> _Over | None:
     """Return reflected over incoming and its standard uncertainty within one row."""
     parts = []
     for channel in (up, down):
@@ -86,7 +108,7 @@ def _over(day: Day, entry: Entry, up: Channel, down: Channel) -> tuple[float, fl
     relative = float(np.hypot(u_a / a, u_b / b))
     if reflected.size == incoming.size:  # one logger: what the sun does drops out
         relative = mean_of_series(reflected / a - incoming / b, unit="1", method="swap").u
-    return a / b, relative * a / b
+    return _Over(a / b, relative * a / b, a, b)
 
 
 def _together(values: list[float], errors: list[float]) -> Ratios | None:

@@ -36,7 +36,8 @@ NEUTRAL: dict[str, float] = {
     "emissivity_setting": 1.0, "reflected_k": 300.0, "cloud_fraction": 0.0, "cloud_base_k": 0.0,
     "background_factor": 1.0, "check_error": 0.0, "rim_gap": 0.0, "rim_gap_error": 0.0,
     "head_cooling_k": 0.0, "head_cooling_error": 0.0,
-    "gain_ratio": 1.0, "surroundings_corrected": 0.0, "shade_corrected": 0.0,
+    "gain_ratio": 1.0, "ratio_per_up_zero": 0.0, "ratio_per_down_zero": 0.0,
+    "surroundings_corrected": 0.0, "shade_corrected": 0.0,
     "footprint_error": 0.0, "shade_error": 0.0, "contamination_error": 0.0,
     "up_class_error": 0.0, "down_class_error": 0.0, "spectral_error": 0.0,
     "zenith_deg": 60.0, "reference_zenith_deg": 60.0, "zenith_dependence": 0.0,
@@ -93,7 +94,9 @@ def albedo(x: Values) -> FloatArray:
     x = NEUTRAL | dict(x)
     up = x["up"] * (1 + x["up_gain_error"] + x["up_class_error"]) + x["up_zero_error"]
     down = x["down"] * (1 + x["down_gain_error"] + x["down_class_error"]) + x["down_zero_error"]
-    ratio = up / down / x["gain_ratio"] * (
+    gains = x["gain_ratio"] * (1 + x["ratio_per_up_zero"] * x["up_zero_error"]
+                               + x["ratio_per_down_zero"] * x["down_zero_error"])
+    ratio = up / down / gains * (
         1 + x["directional_error"] + x["levelling_error"] + x["spectral_error"])
     seen, lit = x["surroundings_corrected"], x["shade_corrected"]
     higher = x["height_error"]

@@ -37,16 +37,7 @@ class Batch:
     @cached_property
     def slopes(self) -> dict[str, FloatArray]:
         """Per input the signed contribution to each pass: half from value - u to value + u."""
-        nominal: dict[str, Any] = {
-            name: float(v[0]) if np.ptp(v) == 0 else v for name, v in self.values.items()}
-        out = {}
-        for i in self.inputs:
-            if self.u[i.name].any():
-                high, low = (models.MODELS[self.model](
-                    {**nominal, i.name: self.values[i.name] + side * self.u[i.name]})
-                    for side in (1, -1))
-                out[i.name] = np.broadcast_to((high - low) / 2, len(self.rows)).astype(np.float64)
-        return out
+        return _slopes(self.model, self.values, self.u)
 
     def at_mean(self, weights: FloatArray) -> tuple[Input, ...]:
         """Return the inputs at their weighted means over the passes."""
@@ -95,12 +86,30 @@ class Moves:
             moved += share.sum() * models.deviations(batch.model, mean, draws, OWN)
             if len(batch.rows) == 1:
                 continue
-            slopes = models.sensitivities(batch.model, mean)
+            slopes = _slopes(batch.model, {i.name: np.array([i.value]) for i in mean},
+                             {i.name: np.array([i.u]) for i in mean})
             for i in mean:
                 if i.scope != OWN and i.name in batch.slopes:
-                    rest = float(share @ batch.slopes[i.name]) - share.sum() * slopes[i.name]
+                    rest = float(share @ batch.slopes[i.name]) - share.sum() * slopes[i.name][0]
                     moved += rest * draws.standard(i.scope, i.distribution)
         return moved - moved.mean()
+
+
+def _slopes(model: str, values: dict[str, FloatArray],
+            u: dict[str, FloatArray]) -> dict[str, FloatArray]:
+    """Return half of what each uncertain input moves the model from value - u to value + u."""
+    moved = [name for name, size in u.items() if size.any()]
+    if not moved:
+        return {}
+    x: dict[str, Any] = {name: float(v[0]) if name in EXACT or np.ptp(v) == 0 else v
+                         for name, v in values.items()}
+    for row, name in enumerate(moved):
+        sides = np.repeat(values[name][None, :], 2 * len(moved), axis=0)
+        sides[2 * row] += u[name]
+        sides[2 * row + 1] -= u[name]
+        x[name] = sides
+    made = np.broadcast_to(models.MODELS[model](x), (2 * len(moved), values[moved[0]].size))
+    return dict(zip(moved, (made[0::2] - made[1::2]) / 2, strict=True))
 
 
 def _batches(campaign: str, passes: tuple[PassEstimate, ...]) -> list[Batch]:

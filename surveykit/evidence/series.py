@@ -23,6 +23,7 @@ from surveykit.evidence.changes import (
     zenith_term,
 )
 from surveykit.evidence.comparability import Date, comparability
+from surveykit.evidence.drift import carried
 from surveykit.evidence.surfaces import Group
 from surveykit.statistics.draws import Draws, Result, combine, summarise
 from surveykit.statistics.trends import ordinary, slope_weights, theil_sen
@@ -127,15 +128,18 @@ def _lines(base: dict[str, Any], years: FloatArray, points: list[Result]) -> lis
 def _point(now: Date, date: Date, new: Group, old: Group, controls: tuple[Group, Group] | None,
            letter: str, draws: Draws) -> Result:
     """Return one date's value with the weather, or the control's own change, taken off."""
-    assert old.result is not None
     if new.quantity == "temperature":
-        assert controls and controls[1].result is not None  # noqa: PT018 - class C without
+        assert controls  # class C without
+        at_once = [carried(date, g.key, draws) for g in (old, controls[1])]
+        old, control = (g for g in at_once if g is not None)
+        assert old.result and control.result  # noqa: PT018
         excess = controls[0].value - controls[0].mean("air_k")
         form = model_share(now, new.surface, letter) * abs(excess)
         size = form * draws.standard(f"{date.name}:{new.surface}:trend by ratio to control")
         return combine(
             lambda s, a, c, b, f: (s - a) / (c - b) * excess + f, old.result, air_of(old, draws),
-            controls[1].result, air_of(controls[1], draws), Result(0.0, size, size))
+            control.result, air_of(control, draws), Result(0.0, size, size))
+    assert old.result is not None
     terms = [zenith_term(now, new, old, draws, -1.0)]
     if controls is None:
         terms.append(drift_term(now, date, new, old, draws))

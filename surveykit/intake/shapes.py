@@ -74,8 +74,8 @@ def _odd(text: bytes, fields: int, at: int, delimiter: bytes, usual: Shape) -> B
                             skip_blank_lines=False)[at]
         return np.array([shape_of(cell.encode()) != usual for cell in cells], dtype=np.bool_)
     if at:
-        ends = np.flatnonzero((data == delimiter[0]) | (data == 10)).reshape(-1, fields)
-        starts = ends[:, at - 1] + 1
+        marks = np.flatnonzero((data == delimiter[0]) | (data == 10)).reshape(-1, fields)
+        starts = marks[:, at - 1] + 1
     else:
         ends = np.flatnonzero(data == 10)
         starts = np.concatenate([[0], ends[:-1] + 1])

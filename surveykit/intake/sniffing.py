@@ -96,7 +96,8 @@ def look_at(path: Path) -> Guess:
     missing = {"", "NAN", "-9999"} | {
         cell for name, cells in table.items() if name not in time.columns
         for cell in cells if not _NUMBER.fullmatch(cell) and _MISSING.fullmatch(cell)}
-    layout = Layout(delimiter=delimiter, decimal=decimal, encoding=layout.encoding,
+    layout = Layout(delimiter=delimiter, decimal=decimal,  # type: ignore[arg-type]
+                    encoding=layout.encoding,
                     skip_lines=head, unit_lines=first - head - 1, missing=tuple(sorted(missing)))
     columns = [_column(name, units[at], table[name], decimal) for at, name in enumerate(header)
                if name and name not in time.columns]

@@ -128,7 +128,7 @@ def spikes(values: FloatArray, *, window: int, mad: float, noise: float,
     out = np.zeros(values.shape, dtype=bool)
     if values.size < window:
         return out
-    off = np.abs(values - median_filter(values, size=window, mode="nearest"))
+    off = np.abs(values - median_filter(values, size=window, mode="reflect"))
     usual = max(noise_sd(values, resolution), float(TO_SD * np.median(off)))
     rows = np.flatnonzero(off > np.maximum(noise * usual, floor))
     if rows.size:

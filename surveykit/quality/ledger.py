@@ -17,7 +17,7 @@ from surveykit.accounting import BIT, LAST_FAULT, NS, REASONS, Mask, PassRecords
 from surveykit.core import BoolArray, IntArray, table
 from surveykit.intake.loggers import Records
 from surveykit.intake.passes import Pass
-from surveykit.quality.series import primary
+from surveykit.quality.series import primary, within
 from surveykit.quality.study import Masks, Study
 
 Chosen = dict[str, PassRecords]
@@ -74,7 +74,7 @@ def waterfall(study: Study, masks: Masks, chosen: Chosen) -> pd.DataFrame:
 
 def _account(study: Study, log: Records, masks: dict[str, Mask], chosen: Chosen) -> Account:
     """Account for the records of a logger as far as the columns in `masks` are concerned."""
-    n, timed = log.time_ns.size, log.time_ns[:log.n_timed]
+    n = log.time_ns.size
     label = np.zeros(n, dtype=np.int64)
     held: dict[tuple[str, ...], int] = {(): 0}
     used = np.zeros(n, dtype=bool)
@@ -82,7 +82,7 @@ def _account(study: Study, log: Records, masks: dict[str, Mask], chosen: Chosen)
     reason = primary(every)
     served = [p for p in study.passes if _columns(p, log.logger, masks)]
     for this in served:
-        window = slice(*np.searchsorted(timed, [this.start_ns, this.stop_ns]))
+        window = slice(*within(log.time_ns, this.start_ns, this.stop_ns))
         known = list(held)
         for code in np.unique(label[window]):
             part = label[window] == code
@@ -90,9 +90,9 @@ def _account(study: Study, log: Records, masks: dict[str, Mask], chosen: Chosen)
         records = chosen[this.name]
         used[records.index if records.logger == log.logger else records.partners[log.logger]] = True
     for this in served:
-        window = slice(*np.searchsorted(timed, [this.start_ns, this.stop_ns]))
+        window = slice(*within(log.time_ns, this.start_ns, this.stop_ns))
         mask = np.bitwise_or.reduce([masks[c][window] for c in _columns(this, log.logger, masks)])
-        edge = (timed[window] < this.from_ns) | (timed[window] >= this.to_ns)
+        edge = (log.time_ns[window] < this.from_ns) | (log.time_ns[window] >= this.to_ns)
         mask = mask | np.where(edge, BIT["pass edge"], np.uint32(0))
         rest = BIT["between placements"] if this.kind == "contact" else BIT["no partner"]
         why = primary(np.where(mask == 0, rest, mask).astype(np.uint32))

@@ -18,7 +18,7 @@ from surveykit.quality.checks import (
     steps,
     stuck,
 )
-from surveykit.quality.series import inside
+from surveykit.quality.series import inside, within
 from surveykit.quality.study import CLEAR_MAXIMUM, HEAT, LIGHT, MAIN, Study
 
 
@@ -96,7 +96,7 @@ def _walked(study: Study, channel: Channel, mask: Mask) -> None:
         if this.kind == "contact" or this.to_ns <= this.from_ns or not any(
                 (c.logger, c.column) == place for c in this.channels.values()):
             continue
-        first, last = np.searchsorted(log.time_ns[:log.n_timed], [this.from_ns, this.to_ns])
+        first, last = within(log.time_ns, this.from_ns, this.to_ns)
         rows = first + np.flatnonzero(mask[first:last] == 0)
         spiked[rows] = spikes(values[rows], window=quality.spike_window, mad=quality.spike_mad,
                               noise=quality.spike_noise, floor=floor[rows],

@@ -21,7 +21,7 @@ from surveykit.core import BoolArray, IntArray
 from surveykit.intake.passes import Pass, find_dwells
 from surveykit.intake.records import Records
 from surveykit.quality.consistency import ROUNDING_S, placed_far_from_air
-from surveykit.quality.series import nearest, primary
+from surveykit.quality.series import nearest, primary, within
 from surveykit.quality.study import Masks, Study
 
 FEWEST = 2  # records that have a spread
@@ -31,7 +31,7 @@ def choose(study: Study, this: Pass, masks: Masks) -> PassRecords:
     """Return the records of a pass that may be used, and count the rest of its window."""
     main = next(iter(this.channels.values())).logger
     log, sun = study.records[main], study.sun[main]
-    window = np.flatnonzero((log.time_ns >= this.start_ns) & (log.time_ns < this.stop_ns))
+    window = np.arange(*within(log.time_ns, this.start_ns, this.stop_ns))
     mask = np.zeros(window.size, dtype=np.uint32)
     partners: dict[str, IntArray] = {}
     for channel in this.channels.values():
@@ -192,8 +192,8 @@ def _missing(study: Study, this: Pass) -> None:
         log = study.records[name]
         if not log.interval_s > 0:
             continue
-        inside = (log.time_ns >= this.start_ns) & (log.time_ns < this.stop_ns)
-        got = int((inside & ~log.marks["repeated record"]).sum())
+        window = slice(*within(log.time_ns, this.start_ns, this.stop_ns))
+        got = int(np.count_nonzero(~log.marks["repeated record"][window]))
         due = int((this.stop_ns - this.start_ns) / NS / log.interval_s)
         if due and 1 - got / due > limit:
             study.note("missing records", "flag", f"{percent(1 - got / due)} of the records "

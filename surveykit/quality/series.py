@@ -9,16 +9,26 @@ from surveykit.core import BoolArray, FloatArray, IntArray
 from surveykit.intake.records import NO_TIME_NS
 
 
+def within(time_ns: IntArray, start_ns: int, stop_ns: int) -> tuple[int, int]:
+    """Return first index and one past the last of the times from start to before stop.
+
+    Times ascend; records without a time stand last and lie nowhere.
+    """
+    n = time_ns.size
+    while n and time_ns[n - 1] == NO_TIME_NS:
+        n -= 1
+    first, last = np.searchsorted(time_ns[:n], [start_ns, stop_ns])
+    return int(first), max(int(first), int(last))
+
+
 def inside(time_ns: IntArray, spans: list[tuple[int, int]]) -> BoolArray:
     """Return which times lie within any of the (start, stop) spans; stop is outside.
 
-    Times ascend; records without a time stand last and lie in none.
+    Times as in `within`.
     """
     out = np.zeros(time_ns.shape, dtype=bool)
-    timed = time_ns[:time_ns.size - int(np.count_nonzero(time_ns == NO_TIME_NS))]
     for start, stop in spans:
-        first, last = np.searchsorted(timed, [start, stop])
-        out[first:last] = True
+        out[slice(*within(time_ns, start, stop))] = True
     return out
 
 

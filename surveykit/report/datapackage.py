@@ -44,7 +44,8 @@ CF_NAMES = {"temperature": "surface_temperature", "albedo": "surface_albedo",
 COLUMN_CF = {"zenith_deg": "solar_zenith_angle", "start_utc": "time", "stop_utc": "time"}
 # Numbers without a unit of their own: plain ratios and counts. Other numbers take the unit that
 # stands in the row's column `unit`; a suffix of the name states the unit otherwise.
-RATIOS = {"probability", "p", "needed", "coverage", "k", "dof", "n_effective", "share", "p_adjusted"}
+RATIOS = {"probability", "p", "needed", "coverage", "k", "dof", "n_effective", "share",
+          "p_adjusted"}
 SUFFIXES = {"_s": "s", "_ppm": "1e-6", "_deg": "degree"}
 DWELL_UNITS = {"value": "degC", "u": "K"}
 NOTES = {

@@ -131,7 +131,8 @@ def _series_plot(series: pd.DataFrame, quantity: str, labels: Labels) -> Drawing
     families = [(kind, block) for (_, kind), block in w.families(known)]
     names = list(dict.fromkeys(known["surface"]))
     dates = sorted({*series["date"]})
-    figure, axes = panels(len(families), [1.9] * len(families), sharex=True)
+    figure, axes = panels(len(families), [1.7 + 0.45 * (len(names) + 1) // 2 / len(families)]
+                          * len(families), sharex=True)
     days = {date: float(mdates.datestr2num(date)) for date in dates}
     step = (max(days.values()) - min(days.values())) / 60  # surfaces stand side by side
     told = []

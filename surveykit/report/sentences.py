@@ -19,8 +19,8 @@ Tables = Mapping[str, pd.DataFrame]
 Facts = Mapping[str, Any]
 Labels = Mapping[str, str] | None
 NEXT = {  # a word of the largest source: what to do about it next time
-    "cooling of the ground": " Next: read stand-off on sunlit ground, or press for a few seconds "
-                             "only.",
+    "cooling": " Next: read stand-off on sunlit ground, or press for a few seconds "
+               "only.",
     "emissivity": " Next: a surer emissivity for these surfaces, from a sample or a reference "
                   "thermometer on the spot.",
     "calibration": " Next: a fresh calibration of these heads; it holds for every surface at once.",

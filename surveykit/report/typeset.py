@@ -13,7 +13,7 @@ _RULES = (
     (re.compile(r"\bdegC\b"), "°C"),
     (re.compile(r"(?<![\w.,)\]\-/])-(?=\d)"), MINUS),                # -20, never 2025-06-11
 )
-_UNIT = re.compile(r"(?<=[A-Za-z] )(m|s|K|sr|kg)(-[1-4])(?![\w-])")  # W m-2, m s-1
+_UNIT = re.compile(r"(?<=\S )(m|s|K|sr|kg|min)(-[1-4])(?![\w-])")  # W m-2, m s-1
 
 
 def typeset(text: str) -> str:

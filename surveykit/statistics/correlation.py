@@ -5,7 +5,6 @@ from __future__ import annotations
 from typing import NamedTuple
 
 import numpy as np
-from scipy.signal import correlate as _correlate
 
 from surveykit.core import FloatArray
 
@@ -132,6 +131,8 @@ def _peak(one: FloatArray, two: FloatArray, reach: int) -> tuple[FloatArray, int
 
 
 def _lags(one: FloatArray, two: FloatArray, reach: int) -> FloatArray:
+    from scipy.signal import correlate as _correlate  # late: it brings scipy.stats, half a second
+
     full = _correlate(one, two, mode="full", method="fft")
     out, zero = np.zeros(2 * reach + 1), two.size - 1
     low, high = max(zero - reach, 0), min(zero + reach + 1, full.size)

@@ -114,21 +114,23 @@ def test_decimal_commas_cost_a_fraction_of_reading_texts(tmp_path):
 
 
 MEMORY = """
-import resource, sys
+import sys
 from pathlib import Path
 sys.path.insert(0, {here!r})
 from test_reading import entry, read_logger
 folder = Path({folder!r})
 known = entry()
 read_logger("thermal", known, [folder / "few.csv"], folder)
-base = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss
+def peak_kib():  # of this process alone; ru_maxrss would bring the parent's through exec
+    status = Path("/proc/self/status").read_text()
+    return int(status.split("VmHWM:")[1].split()[0])
+base = peak_kib()
 records = read_logger("thermal", known, [folder / "many.csv"], folder)
-peak = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss
-print((peak - base) * 1024 / len(records))
+print((peak_kib() - base) * 1024 / len(records))
 """
 
 
-@pytest.mark.skipif(sys.platform != "linux", reason="ru_maxrss is in KiB on Linux")
+@pytest.mark.skipif(sys.platform != "linux", reason="reads /proc")
 def test_memory_of_a_long_log(tmp_path):
     # 2 million rows stand for 10 million: what a row takes is the same, the file is smaller
     frame = table(200_000)
@@ -142,4 +144,4 @@ def test_memory_of_a_long_log(tmp_path):
     code = MEMORY.format(here=str(Path(__file__).parent), folder=str(tmp_path))
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
     print(f"{float(done.stdout):.0f} bytes a row, asked {BYTES_ASK}")  # noqa: T201
-    assert float(done.stdout) <= BYTES_ASK
+    assert 16 < float(done.stdout) <= BYTES_ASK  # time and two channels alone take 24

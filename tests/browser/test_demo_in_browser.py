@@ -7,8 +7,8 @@ from pathlib import Path
 
 import pytest
 from browsing import chromium, look, needs_browser, print_it
-from conftest import DEMO, surveykit
 from playwright.sync_api import Browser
+from projects import DEMO, surveykit
 
 pytestmark = needs_browser
 

@@ -81,26 +81,26 @@ def simulate(seed: int, k: int, sky: str) -> Simulated:
                                   else rng.uniform(-np.sqrt(3), np.sqrt(3)))
         return errors[scope]
 
-    hours = np.array([[11.0 + 0.5 * r + 0.07 * (j if r % 2 == 0 else 5 - j) for r in range(k)]
+    hours = np.array([[11.0 + 0.25 * r + 0.035 * (j if r % 2 == 0 else 5 - j) for r in range(k)]
                       for j in range(6)])
     theta = np.concatenate([[1.0], rng.uniform(0.5, 1.2, 5)])
     albedo = rng.uniform(0.08, 0.4, 6)
     red = rng.uniform(0.05, 0.25, 6)
     index = rng.uniform(0.05, 0.7, 6)
-    turn = 1.0
+    zeniths = rng.uniform(25.0, 50.0, 2)
     for number, date in enumerate(DATES):
         moved = np.array([CHANGED.get(s, 0.0) * number for s in SURFACES])
         light, wind = rng.uniform(500, 950), rng.uniform(0.5, 4.0)
         air, humidity = rng.uniform(293.0, 305.0), rng.uniform(0.25, 0.6)
         excess = rng.uniform(14.0, 30.0)
-        zenith = rng.uniform(25.0, 50.0)
+        zenith = zeniths[number]
         weather = Sky(light, 1.0 if sky == "clear" else 0.7, sky)
 
         # temperature
         tau, s = SCATTER[sky]["temperature"]
         form = np.where(np.arange(6) > 0, FORM * excess * rng.standard_normal(6) * number, 0.0)
         mean = air + theta * excess + form + moved * RELEVANT["temperature"]
-        slope = rng.normal(0.0, 1.5) * theta * (
+        slope = rng.normal(0.0, 0.7) * theta * (
             1 + np.where(np.arange(6) > 0, FOLLOWS * rng.standard_normal(6), 0.0))
         course = slope[:, None] * (hours - hours.mean())
         truth = mean[:, None] + course + tau * rng.standard_normal((6, k))
@@ -135,9 +135,7 @@ def simulate(seed: int, k: int, sky: str) -> Simulated:
 
         # albedo, at this date's sun
         tau, s = SCATTER[sky]["albedo"]
-        if number:
-            turn = _turn(zenith, first_zenith, DEPENDENCE)
-        first_zenith = zenith
+        turn = _turn(zenith, zeniths[0], DEPENDENCE)
         lean = np.array([error(f"zenith dependence:{n}") for n in SURFACES]) * number
         level = albedo * (1 + (turn - 1) * lean) + moved * RELEVANT["albedo"]
         patch = level[:, None] + tau * rng.standard_normal((6, k))
@@ -183,7 +181,7 @@ def simulate(seed: int, k: int, sky: str) -> Simulated:
             made.value[date, name, "ndvi"] = made.at_common[date, name, "ndvi"] = float(level[j])
             r, n = read["red_up"][j] / read["red_down"][j], read["nir_up"][j] / read["nir_down"][j]
             made.plain[date, name, "ndvi"] = _spread((n - r) / (n + r))
-    for j, name in enumerate(SURFACES):
+    for name in SURFACES:
         for quantity in QUANTITIES:
             made.change[name, quantity] = float(CHANGED.get(name, 0.0) * RELEVANT[quantity])
             # the sun's height stands in the interval of an albedo's change: it is no change

@@ -9,13 +9,18 @@ import itertools
 import os
 import shutil
 import signal
+import socket
 import subprocess
 import sys
 import time
+from concurrent.futures import ThreadPoolExecutor
 from contextlib import contextmanager
 
 import pytest
 from small_campaigns import LIGHT, left_behind, processes, project, run_here, start, whole
+
+from surveykit import season
+from surveykit.locking import free, locked
 
 NAME = "yard-storage"
 ROOT_USER = hasattr(os, "geteuid") and os.geteuid() == 0
@@ -148,10 +153,30 @@ def test_a_clock_set_back_does_no_harm(old, monkeypatch):
 
 
 def test_the_second_of_two_runs_waits_for_the_first(old):
-    first, second = (start(old, [NAME]) for _ in range(2))
-    texts = [one.communicate(timeout=120)[0] for one in (first, second)]
-    assert [first.returncode, second.returncode] == [0, 0], texts
-    assert sum("waits for another run of it (process " in text for text in texts) == 1
+    said: list[str] = []
+    path = old / "params" / f"{NAME}.yml"
+    with ThreadPoolExecutor(1) as pool:
+        with locked(old, NAME):  # as the first run holds it, through whole its life
+            second = pool.submit(season.run_all, [path], said.append, notebooks=())
+            limit = time.monotonic() + 30
+            while not said and time.monotonic() < limit:
+                time.sleep(0.02)
+            assert said == [f"{NAME}: waits for another run of it (process {os.getpid()} on "
+                            f"{socket.gethostname()})"]
+            assert not free(old, NAME)
+            assert not second.done()
+        assert [one.word for one in second.result(timeout=60)] == ["done"]
+    assert free(old, NAME)
+    whole(old, NAME)
+    assert left_behind(old) == []
+
+
+@pytest.mark.skipif("SURVEYKIT_KILLS" not in os.environ and
+                    os.environ.get("SURVEYKIT_FULL") != "all", reason="the longer share")
+def test_three_runs_at_once_end_with_one_whole_report(old):
+    running = [start(old, [NAME], notebooks=LIGHT) for _ in range(3)]
+    texts = [one.communicate(timeout=300)[0] for one in running]
+    assert [one.returncode for one in running] == [0, 0, 0], texts
     whole(old, NAME)
     assert left_behind(old) == []
 

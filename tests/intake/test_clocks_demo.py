@@ -3,14 +3,16 @@
 from __future__ import annotations
 
 import json
+from pathlib import Path
 
 import pytest
-from conftest import DEMO, ROOT
 
 from surveykit.intake.aligning import align, read_logs
 from surveykit.intake.params import load
 
 NS = 10**9
+ROOT = Path(__file__).parent.parent.parent
+DEMO = [f"pellowick-yard-2025-{day}" for day in ("06-11", "07-16", "09-17")]
 
 
 @pytest.fixture(scope="module")

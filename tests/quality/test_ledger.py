@@ -100,6 +100,7 @@ def test_all_records_are_accounted_for(tmp_path_factory, faults):
         for number, file in enumerate(text if isinstance(text[0], list) else [text]):
             mine = ledger[ledger.file == f"data/{name}_{number}.csv"]
             assert mine.records.sum() == len(file) - 1
+    falls_as_it_should(quality.waterfall, survey.parameters.kit)
     assert set(ledger.disposition) <= {"used", "excluded", "outside passes"}
     assert (ledger.reason[ledger.disposition == "excluded"] != "").all()
     assert (ledger.reason[ledger.disposition != "excluded"] == "").all()
@@ -109,6 +110,41 @@ def test_all_records_are_accounted_for(tmp_path_factory, faults):
             serves = any(column == c.column for p in survey.passes if p.name == name
                          for c in p.channels.values())
             assert not (serves and mask[chosen.index].any())  # a marked record is never used
+
+
+def falls_as_it_should(waterfall, kit):
+    """Raw = used + all that reasons took, per file and channel; each step leaves what it says."""
+    records = waterfall.groupby(["logger", "column", "file"]).records.sum()
+    for logger, instrument in kit.items():
+        assert set(records[logger].index.get_level_values("column")) == set(instrument.columns)
+        assert (records[logger].groupby("file").nunique() == 1).all()
+    for _, fall in waterfall.groupby(["logger", "column", "file", "pass"], sort=False):
+        taken = fall.records.where(fall.disposition != "used", 0)
+        assert np.array_equal(fall.remaining, fall.records.sum() - taken.cumsum())
+        used = fall[fall.disposition == "used"]
+        assert fall.remaining.iloc[-1] == used.records.sum()
+        assert len(used) <= 1
+
+
+def test_the_waterfall_of_each_channel_by_hand(tmp_path):
+    """Of 120 records in the pass: 1 blank sky and its ground, 1 unreadable ground and its sky.
+
+    The edges (5 s each) take 10; the blank comes first in order, so 119 are left after it.
+    """
+    log = lines("pair")
+    for i, column, text in ((60, 1, ""), (70, 2, "?")):
+        cells = log[i].split(",")
+        cells[column] = text
+        log[i] = ",".join(cells)
+    edges = {"passes": {"sheet_u_s": 5.0}}
+    fall = small(tmp_path, [row(**ALBEDO)], {"pair": log}, settings=edges).quality().waterfall
+    fall = fall[fall["pass"] == "C1-albedo-1"]
+    steps = {column: list(zip(some.reason, some.records, some.remaining, strict=True))
+             for column, some in fall.groupby("column")}
+    assert steps["sky"] == [("no reading", 1, 119), ("no partner", 1, 118), ("pass edge", 10, 108),
+                            ("", 108, 108)]
+    assert steps["ground"] == [("unreadable value", 1, 119), ("no partner", 1, 118),
+                               ("pass edge", 10, 108), ("", 108, 108)]
 
 
 def test_a_record_of_two_passes_is_counted_once(tmp_path):

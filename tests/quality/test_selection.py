@@ -20,6 +20,7 @@ from surveykit.quality.series import nearest, primary
 
 NS = 1_000_000_000
 PASS = [row(**ALBEDO)]
+LIMITS = {"min_s": 10, "false_alarms": 1e-3, "max_repeat": 0.98}
 
 
 def albedo(root, log=None, sheet=PASS, **more):
@@ -102,24 +103,24 @@ def test_a_coarse_living_channel_is_not_stuck():
     """Whole numbers once a minute, equal to their neighbour two times in three."""
     rng = np.random.default_rng(5)
     values = np.round(20 + np.cumsum(rng.normal(0, 0.25, 600)))
-    assert not stuck(values, np.arange(600) * 60 * NS, min_s=10, false_alarms=1e-3, max_repeat=0.98).any()
+    assert not stuck(values, np.arange(600) * 60 * NS, **LIMITS).any()
 
 
 def test_a_fine_channel_that_stops_is_stuck_from_its_first_repeat():
     values = np.random.default_rng(5).normal(20, 1, 600)
     values[300:330] = values[300]
-    marked = stuck(values, np.arange(600) * NS, min_s=10, false_alarms=1e-3, max_repeat=0.98)
+    marked = stuck(values, np.arange(600) * NS, **LIMITS)
     assert np.flatnonzero(marked).tolist() == list(range(300, 330))
 
 
 def test_a_channel_that_never_moves_is_stuck():
-    assert stuck(np.ones(2000), np.arange(2000) * NS, min_s=10, false_alarms=1e-3, max_repeat=0.98).all()
+    assert stuck(np.ones(2000), np.arange(2000) * NS, **LIMITS).all()
 
 
 def test_a_short_repeat_is_not_stuck():
     values = np.random.default_rng(5).normal(20, 1, 600)
     values[300:309] = values[300]  # 8 s, below flatline_min_s
-    assert not stuck(values, np.arange(600) * NS, min_s=10, false_alarms=1e-3, max_repeat=0.98).any()
+    assert not stuck(values, np.arange(600) * NS, **LIMITS).any()
 
 
 def test_records_without_a_time_are_not_stuck(tmp_path):
@@ -169,14 +170,13 @@ def test_few_records_a_pass_are_not_called_missing(tmp_path):
 
 def test_the_extremely_rare_limit_is_noted_and_can_be_switched_off(tmp_path):
     """Zenith 18 deg: 1.2 * 1318 * .951**1.2 + 50 = 1539 W m-2 (Long & Shi 2008)."""
-    log = lines("pair")
-    log[60] = log[60].split(",")[0] + ",1600,180"
-    survey = albedo(tmp_path, log)
-    assert told(survey.quality(), "extremely rare irradiance").records.tolist() == [1]
+    level = readings("sky", 160, 1) / 900
+    survey = albedo(tmp_path / "a", lines("pair", sky=1600 * level))
+    assert told(survey.quality(), "extremely rare irradiance").records.tolist() == [120]
     quiet = survey.with_settings(quality={"rare_limit_warning": False})
     assert told(quiet.quality(), "extremely rare irradiance").empty
-    log[60] = log[60].replace("1600", "1500")
-    assert told(albedo(tmp_path, log).quality(), "extremely rare irradiance").empty
+    fewer = albedo(tmp_path / "b", lines("pair", sky=1500 * level))
+    assert told(fewer.quality(), "extremely rare irradiance").empty
 
 
 def test_gaps_are_noted_with_the_longest(tmp_path):

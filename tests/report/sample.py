@@ -1,5 +1,4 @@
 """A whole set of tables for the report's tests: every number is invented, nothing was measured.
-
 Five surfaces; temperature by contact and stand-off, albedo, NDVI; every status and verdict word.
 `hostile=True` gives labels and notes that would break out of markup, CSV or figure text.
 """
@@ -80,8 +79,7 @@ def tables(*, hostile: bool = False) -> dict[str, pd.DataFrame]:
 
 
 def _whole(name: str, row: dict[str, Any]) -> dict[str, Any]:
-    """Return the row with the columns that the page does not show empty."""
-    blank = {"text": "", "number": NAN, "count": 0, "time": pd.NaT}
+    blank = {"text": "", "number": NAN, "count": 0, "time": pd.NaT}  # columns not on the page
     return {column: row.get(column, blank[kind]) for column, kind in TABLES[name].items()}
 
 
@@ -124,8 +122,7 @@ def _surface(surface: str, quantity: str, kind: str, value: float, expanded: flo
         "dof": NAN if math.isnan(expanded) else (math.inf if quantity == "ndvi" else 3.4 * passes),
         "n_patches": patches, "n_passes": passes, "n_records": 612 * passes,
         "n_effective": 21.4 * passes,
-        "u_at_least": 0.44 if status == "value only" else NAN, "status": status, "note": note,
-    }
+        "u_at_least": 0.44 if status == "value only" else NAN, "status": status, "note": note}
 
 
 def _passes() -> list[dict[str, Any]]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from collections.abc import Hashable
 from dataclasses import dataclass
 from pathlib import Path
@@ -117,7 +118,7 @@ class Parameters:
 
     def relative(self, path: Path) -> str:
         """Return how a file of the project is called on the page: from the project folder."""
-        return path.resolve().relative_to(self.root.resolve()).as_posix()
+        return Path(os.path.relpath(path.resolve(), self.root.resolve())).as_posix()
 
     @property
     def settings(self) -> Settings:

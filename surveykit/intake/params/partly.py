@@ -54,6 +54,7 @@ def load_partly(path: Path | str) -> Partly:
     except InputError:
         return Partly(None, faults, frozenset())
     doubtful: set[str] = set()
+    written = set(data["loggers"]) if isinstance(data.get("loggers"), Mapping) else set()
     campaign = _mended(lambda: Campaign.model_validate(_filled(data, path, doubtful)), data)
     if campaign is None or path_fault(root, campaign.data_folder):
         return Partly(None, faults, frozenset())
@@ -67,19 +68,13 @@ def load_partly(path: Path | str) -> Partly:
               and not any(path_fault(root, pattern, base) for pattern in use.files)}
     if any(entry.columns.keys() != kit[name]["columns"].keys() for name, entry in entries.items()):
         doubtful.add("loggers")
-    if not isinstance(data.get("loggers"), Mapping) or usable.keys() != _names(data, path):
+    if usable.keys() != written:
         doubtful.add("loggers")
     if path_fault(root, campaign.field_sheet, base):
         doubtful.add("field_sheet")
     campaign = campaign.model_copy(update={"loggers": usable})
     return Partly(Parameters(path, root, campaign, entries, None, (path,)), faults,
                   frozenset(doubtful))
-
-
-def _names(data: Mapping[str, Any], path: Path) -> set[str]:
-    """Return the names under `loggers` as the file writes them."""
-    written = read_document(path, path.name).data.get("loggers")
-    return set(written) if isinstance(written, Mapping) else set()
 
 
 def _kit_data(stated: Any, root: Path) -> dict[str, Any]:
@@ -153,14 +148,14 @@ def _mended(read: Callable[[], Model], data: dict[str, Any]) -> Model | None:
     return None
 
 
-def _there(data: Any, place: Loc) -> Loc:
+def _there(held: Any, place: Loc) -> Loc:
     """Return the part of `place` that the data hold."""
     found: list[str | int] = []
     for part in place:
-        if (isinstance(data, dict) and part in data) or (
-                isinstance(data, list) and isinstance(part, int) and part < len(data)):
+        if (isinstance(held, dict) and part in held) or (
+                isinstance(held, list) and isinstance(part, int) and part < len(held)):
             found.append(part)
-            data = data[part]
+            held = held[part]  # type: ignore[index]
         elif part not in ("<path>", "<inline>", "[key]"):
             break
     return tuple(found)

@@ -26,16 +26,24 @@ def find_root(start: Path) -> Path:
                      "holds params/ and notebooks/; work from a clone of the project")
 
 
+def outside_allowed() -> bool:
+    """Return whether parameter files may name files outside the project folder.
+
+    The option --allow-outside says so, by SURVEYKIT_ALLOW_OUTSIDE=1 in the environment, which
+    kernels and workers inherit and which no parameter file can set.
+    """
+    return os.environ.get("SURVEYKIT_ALLOW_OUTSIDE") == "1"
+
+
 def path_fault(root: Path, text: str, base: Path | None = None) -> str | None:
     """Return what is wrong with a path the user wrote, None if it stays inside `root`.
 
-    `base` is the folder it is relative to, `root` itself where absent. Where the environment holds
-    SURVEYKIT_ALLOW_OUTSIDE=1 (the option --allow-outside sets it) any path is right.
+    `base` is the folder it is relative to, `root` itself where absent.
     """
     shown = repr(text[:80])
     if not text.strip() or any(unicodedata.category(c) == "Cc" for c in text):
         return f"got {shown}; write a path inside the project folder"
-    if os.environ.get("SURVEYKIT_ALLOW_OUTSIDE") == "1":
+    if outside_allowed():
         return None
     if "\\" in text:
         return f"got {shown}; write the path with forward slashes"
