@@ -95,6 +95,7 @@ def _told(work: Callable[[], int | None]) -> int:
 def _run(files: list[Path], jobs: int, cluster: str | None) -> int:
     from surveykit.season import run_campaigns, summary
 
+    _heal(files[0])
     outcomes = run_campaigns(files, lambda line: print(line, flush=True),  # noqa: T201
                              jobs=jobs, cluster=cluster)
     for one in outcomes:
@@ -125,6 +126,7 @@ def _new(name: str, logs: list[Path]) -> None:
 def _verify(folder: Path, rerun: bool) -> None:
     from surveykit.verifying import verify
 
+    _heal(folder)
     for line in verify(folder.resolve(), rerun=rerun):
         print(line)  # noqa: T201
 
@@ -138,6 +140,7 @@ def _netcdf(folder: Path) -> None:
 def _pack(path: Path) -> None:
     from surveykit.packing import pack
 
+    _heal(path)
     print(f"packed: {_near(pack(path))}")  # noqa: T201
 
 
@@ -146,6 +149,18 @@ def _plan(path: Path) -> None:
 
     for written in plan(path):
         print(f"wrote {_near(written)}")  # noqa: T201
+
+
+def _heal(path: Path) -> None:
+    """Put right what a stopped run left in the project that a file or folder belongs to."""
+    from surveykit.core import InputError
+    from surveykit.intake.params import find_root
+    from surveykit.locking import heal_all
+
+    try:
+        heal_all(find_root(path.absolute().parent))
+    except InputError:
+        return  # no project: the command itself says so
 
 
 def _near(path: Path) -> Path:

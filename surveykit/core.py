@@ -166,6 +166,16 @@ TABLES: dict[str, dict[str, str]] = {
         "campaign": "text", "surface": "text", "pass": "text", "quantity": "text",
         "kind": "text", "unit": "text", "step": "text", "value": "number",
     },
+    "derived": {
+        "campaign": "text", "surface": "text", "product": "text", "form": "text", "unit": "text",
+        "value": "number", "u": "number", "lower": "number", "upper": "number",
+        "coverage": "number", "status": "text", "note": "text",
+    },
+    "geometry": {
+        "campaign": "text", "surface": "text", "patch": "text", "pass": "text",
+        "height_m": "number", "role": "text", "foreign": "number", "contamination": "number",
+        "shade": "number", "effect": "number", "note": "text",
+    },
 }
 
 PUBLISHED = tuple(TABLES)

@@ -37,7 +37,7 @@ class QuietKernelManager(KernelManager):
     def _agree(self) -> str:
         return "auto"
 
-    def client(self, **kwargs: Any) -> KernelClient:
+    def client(self, **kwargs: Any) -> KernelClient:  # type: ignore[override]
         """Return a client, remembered so that `end` can stop its channels."""
         made = super().client(**kwargs)
         self._handed.append(made)

@@ -15,6 +15,8 @@ from collections.abc import Callable, Iterator
 from contextlib import ExitStack, contextmanager
 from pathlib import Path
 
+from surveykit.swap import heal
+
 if sys.platform == "win32":
     import msvcrt
 else:
@@ -62,6 +64,14 @@ def free(root: Path, name: str) -> bool:
         return True
     with path.open("r+b") as file:
         return _take(file.fileno(), False)
+
+
+def heal_all(root: Path) -> None:
+    """Put right what stopped swaps left in reports/, but for campaigns under way."""
+    for aside in (root / "reports").glob(".*.old"):
+        name = aside.name.removeprefix(".").removesuffix(".old")
+        if free(root, name):
+            heal(aside.parent, name)
 
 
 @contextmanager

@@ -22,7 +22,9 @@ from surveykit.evidence import compare, handing
 from surveykit.evidence import surfaces as pooling
 from surveykit.evidence.comparability import Date
 from surveykit.evidence.conditions import Day
+from surveykit.evidence.derived import derived
 from surveykit.evidence.estimates import PassEstimate, estimate_all
+from surveykit.evidence.geometry import geometry
 from surveykit.evidence.series import trends
 from surveykit.handover import load_facts, load_table, save_facts, save_table
 from surveykit.intake.aligning import Ingested, align, read_logs
@@ -143,13 +145,16 @@ def surfaces(survey: Survey) -> Evidence:
         frames = {key: load_table(folder / f"{key}.npz") for key in ("estimates", "inputs")}
         estimates = handing.from_frames(frames, passes)
         tables = {key: load_table(folder / f"{key}.npz")
-                  for key in ("surfaces", "budget", "passes", "dwells", "corrections")}
+                  for key in ("surfaces", "budget", "passes", "dwells", "corrections",
+                              "derived", "geometry")}
         return Evidence(estimates, tables, lambda: _groups(survey, estimates, survey.draws()))
     estimates = estimate_all(day(survey), ingest(survey).passes)
     groups = _groups(survey, estimates, survey.draws())
     tables = pooling.pass_tables(name, estimates) | {
         "surfaces": pooling.surface_table(groups, coverage, survey.campaign.relevant_change),
-        "budget": pooling.budget_table(groups)}
+        "budget": pooling.budget_table(groups),
+        "derived": derived(day(survey), groups, survey.draws(), coverage),
+        "geometry": geometry(day(survey), estimates)}
     for key, frame in (tables | handing.to_frames(estimates)).items():
         save_table(folder / f"{key}.npz", frame)
     _finish(folder, survey.key)

@@ -18,7 +18,7 @@ from pathlib import Path
 
 from surveykit.core import InputError
 from surveykit.kernels import Kernels
-from surveykit.locking import free, locked
+from surveykit.locking import locked
 from surveykit.opening import Survey, open_file
 from surveykit.swap import heal, swap_in
 
@@ -87,14 +87,6 @@ def up_to_date(survey: Survey) -> bool:
     except (OSError, ValueError):
         return False
     return bool(kept.get("key") == survey.key and (folder / "report.html").is_file())
-
-
-def heal_all(root: Path) -> None:
-    """Put right what stopped swaps left in reports/, but for campaigns under way."""
-    for aside in (root / "reports").glob(".*.old"):
-        name = aside.name.removeprefix(".").removesuffix(".old")
-        if free(root, name):
-            heal(aside.parent, name)
 
 
 def _run_one(survey: Survey, say: Say, lanes: int, notebooks: tuple[str, ...]) -> Path:

@@ -48,7 +48,8 @@ def surface(survey: Survey, name: str, changes: Changes) -> pd.DataFrame:
     _known(survey, name)
     before = pipeline.surfaces(survey).tables["surfaces"]
     parameters, groups = _groups(survey, (name,), changes)
-    after = pooling.surface_table(groups, parameters.settings.statistics.coverage)
+    after = pooling.surface_table([g for g in groups if g.surface == name],
+                                  parameters.settings.statistics.coverage)
     return _beside(before[before["surface"] == name], after, SHOWN)
 
 
@@ -64,12 +65,13 @@ def difference(survey: Survey, one: str, other: str, changes: Changes) -> pd.Dat
     """
     for name in (one, other):
         _known(survey, name)
-    table = pipeline.comparison(survey)["differences"]
-    pair = {one, other}
-    before = table[[{a, b} == pair for a, b in zip(table["surface"], table["other"], strict=True)]]
-    parameters, groups = _groups(survey, (one, other), changes)
+    # Every surface takes part: the common time of a date is that of all of them.
+    parameters, groups = _groups(survey, tuple(survey.campaign.surfaces), changes)
     after = compare.differences(Date(parameters, {g.key: g for g in groups}), survey.draws())
-    return _beside(before, after, COMPARED)
+    before = pipeline.comparison(survey)["differences"]
+    then, now = (table[[{*ends} == {one, other} for ends in zip(
+        table["surface"], table["other"], strict=True)]] for table in (before, after))
+    return _beside(then, now, COMPARED)
 
 
 def _known(survey: Survey, name: str) -> None:
@@ -91,7 +93,7 @@ def _groups(survey: Survey, names: tuple[str, ...],
     wanted = tuple(p for p in made.passes if p.surface in (*names, control))
     found = pooling.groups(parameters.name, estimate_all(day, wanted), survey.draws(),
                            coverage=parameters.settings.statistics.coverage)
-    return parameters, tuple(g for g in found if g.key[0] in names)
+    return parameters, found
 
 
 def _changed(survey: Survey, changes: Changes) -> Parameters:

@@ -67,7 +67,7 @@ LEVELS = {"sky": 900.0, "ground": 180.0, "down": 380.0, "up": 600.0, "target": 4
 SITE = {"name": "Invented yard", "latitude": 41.3, "longitude": -7.75, "elevation_m": 120,
         "time_zone": "UTC"}
 SHEET = ("entry surface patch quantity mode instrument start stop height_cm width_m length_m lanes "
-         "reading reading_u note date").split()
+         "reading reading_u note date rod_side operator_side").split()
 SIZE = {"height_cm": "40", "width_m": "4", "length_m": "4"}
 ALBEDO = {"quantity": "albedo", **SIZE}
 NDVI = {"quantity": "ndvi", **SIZE}

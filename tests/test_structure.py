@@ -23,7 +23,7 @@ FLOORS = {
     "report": 4, "facts": 4, "overview": 4,
     "pipeline": 5,
     "checking": 6, "verifying": 6, "planning": 6, "trying": 6, "starting": 5, "swap": 1,
-    "kernels": 1, "locking": 1,
+    "kernels": 1, "locking": 2,
     "producing": 7, "planner": 7, "packing": 7, "exporting": 7, "index": 7,
     "runner": 8, "season": 9,
     "cli": 10,

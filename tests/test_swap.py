@@ -5,6 +5,8 @@ import os
 import pytest
 
 from surveykit import swap
+from surveykit.cli import main
+from surveykit.locking import locked
 
 
 @pytest.fixture
@@ -85,3 +87,28 @@ def test_a_refused_rename_keeps_both_folders_and_says_where(reports, monkeypatch
     monkeypatch.undo()
     assert content(reports) == "old"
     assert (reports / ".yard.new" / "report.html").read_text() == "new"
+
+
+def test_every_command_heals_what_a_stopped_swap_left(project):
+    """Old aside and none in place is put back before `verify` looks; a campaign under way waits."""
+    aside = project / "reports" / ".yard.old"
+    aside.mkdir(parents=True)
+    (aside / "report.html").write_text("old", encoding="utf-8")
+    (project / ".surveykit").mkdir(exist_ok=True)
+    with locked(project, "yard"):
+        assert main(["verify", str(project / "reports" / "yard")]) == 2
+        assert aside.exists()
+    assert main(["verify", str(project / "reports" / "yard")]) == 2  # no run.json: incomplete
+    assert not aside.exists()
+    assert (project / "reports" / "yard" / "report.html").read_text(encoding="utf-8") == "old"
+
+
+def test_all_is_on_the_disk_before_the_folders_change_places(reports, monkeypatch):
+    order = []
+    real_sync, real_rename = os.fsync, os.rename
+    monkeypatch.setattr(os, "fsync", lambda d: (order.append("sync"), real_sync(d))[1])
+    monkeypatch.setattr(swap, "exchange", lambda a, b: False)
+    monkeypatch.setattr(os, "rename", lambda a, b: (order.append("rename"), real_rename(a, b))[1])
+    files = sum(1 for _ in (reports / ".yard.new").rglob("*"))
+    swap.swap_in(reports, "yard")
+    assert order == ["sync"] * (files + 1) + ["rename", "rename"]

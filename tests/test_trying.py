@@ -59,7 +59,7 @@ def test_the_same_settings_give_the_same_numbers_and_others_move_them(project):
                   for word in ("as run", "tried"))
     np.testing.assert_allclose(run["value"], tried["value"], rtol=1e-12)
     np.testing.assert_allclose(run["u"], tried["u"], rtol=1e-12)
-    other = trying.surface(survey, "lawn", {"albedo": {"levelling_u_deg": 4.0}})
+    other = trying.surface(survey, "lawn", {"albedo": {"directional_limit_w_m2": 80.0}})
     u = other[other["quantity"] == "albedo"].set_index("settings")["u"]
     assert u["tried"] > 1.05 * u["as run"]
     pair = trying.difference(survey, "lawn", "coated-court", {})

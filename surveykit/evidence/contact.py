@@ -3,12 +3,11 @@
 from __future__ import annotations
 
 from dataclasses import replace
-from typing import Any, NamedTuple
+from typing import NamedTuple
 
 import numpy as np
 
-from surveykit.accounting import BIT
-from surveykit.core import FloatArray, Input
+from surveykit.core import FloatArray, Input, IntArray
 from surveykit.evidence.backgrounds import sky_inputs
 from surveykit.evidence.conditions import NS, Day, Sky
 from surveykit.evidence.corrections import Correction, correct
@@ -22,13 +21,13 @@ from surveykit.evidence.parts import (
     series,
 )
 from surveykit.intake.passes import Pass
-from surveykit.physics.cooling import CoolingFit, fit_placements
+from surveykit.physics.cooling import CoolingFit, first_described, fit_placements
 from surveykit.physics.thermal import head_cooling_k
 from surveykit.statistics.series import mean_of_series
 
 FEW_PLACEMENTS = 3
 FEWEST_RECORDS = 5  # of a placement, from two time constants on
-GROWTH = 0.5  # of a settling reading's deviation, backward in time, against exp(step / tau)
+TOUCH_TOLERANCE_K = 0.2  # of the readings about the law of cooling, back to the touch
 Spans = tuple[tuple[int, int], ...]
 
 
@@ -47,7 +46,7 @@ def contact(day: Day, this: Pass, sky: Sky) -> PassValue:
         raise NotEvaluated("no settled placement of the head was found in the contact pass")
     inputs, flags = _inputs(day, this, sky, brightness)
     settings = day.parameters.campaign.settings.temperature
-    cooled = _expected_cooling_k(day, this, sky, time, spans)
+    cooled = _expected_cooling_k(day, this, time, spans)
     placed = _before_touch(day, this, inputs, cooled) if settings.correct_head_cooling else None
     per = per_record("contact", inputs, brightness)
     found = [mean_of_series(per[a:b], unit="K", method="contact") for a, b in spans]
@@ -117,18 +116,27 @@ def _corrections(day: Day, this: Pass, inputs: dict[str, Input],
     return steps
 
 
-def _expected_cooling_k(day: Day, this: Pass, sky: Sky, time: Any, spans: Spans) -> float:
+def _expected_cooling_k(day: Day, this: Pass, time: IntArray, spans: Spans) -> float:
     """Return what a typical ground cools until the middle of the longest placement; 0 in shade."""
     settings = day.parameters.campaign.settings
     settle = settings.passes.settle_time_constants
     tau = this.channels["brightness_temperature"].time_constant_s or 0.0
     longest = max(float(time[b - 1] - time[a]) / NS for a, b in spans)
-    sun = sky.irradiance_w_m2
-    if not np.isfinite(sun):
-        sun = float(day.sun(time).clear_sky_w_m2.mean())
+    sun = _sun_w_m2(day, this)
     if sun < settings.temperature.head_cooling_sun_w_m2:
         return 0.0
     return float(head_cooling_k(sun, longest / 2 + settle * tau, settings.temperature.effusivity))
+
+
+def _sun_w_m2(day: Day, this: Pass) -> float:
+    """Return the irradiance during a pass, however weak; that of a clear sky if not watched."""
+    for channel in day.channels.get("shortwave_down", []):
+        time, value = day.readings(channel, this.start_ns, this.stop_ns,
+                                   through=("sun too low", "too little light"))
+        if value.size > 2:
+            return float(day.without_dark(channel, time, value).mean())
+    ends = np.array([this.start_ns, this.stop_ns], dtype=np.int64)
+    return float(day.sun(ends).clear_sky_w_m2.mean())
 
 
 def _before_touch(day: Day, this: Pass, inputs: dict[str, Input],
@@ -162,8 +170,7 @@ def _before_touch(day: Day, this: Pass, inputs: dict[str, Input],
 def _courses(day: Day, this: Pass, tau: float) -> list[tuple[FloatArray, FloatArray]]:
     """Return for each placement the seconds since its touch, and its readings [K].
 
-    Backward from the settled records, the deviation of a settling reading grows by
-    exp(step / tau); where it stops doing so lies the touch.
+    The touch is taken half a step before the first record that the law of cooling describes.
     """
     channel, records = this.channels["brightness_temperature"], day.quality.passes[this.name]
     log = day.records[channel.logger]
@@ -171,22 +178,15 @@ def _courses(day: Day, this: Pass, tau: float) -> list[tuple[FloatArray, FloatAr
     out, floor = [], int(np.searchsorted(log.time_ns[:log.n_timed], this.start_ns))
     for first, stop in records.dwells:
         at, end = int(records.index[first]), int(records.index[stop - 1])
-        level = float(log.channels[channel.column][at])
-        begin = at
-        while begin > floor and (mask[begin - 1] & ~BIT["pass edge"]) == 0:
-            step = float(log.time_ns[begin] - log.time_ns[begin - 1]) / NS
-            back = abs(float(log.channels[channel.column][begin - 1]) - level)
-            here = abs(float(log.channels[channel.column][begin]) - level)
-            settled = float(log.time_ns[at] - log.time_ns[begin - 1]) / NS <= 5 * tau
-            if not settled and (tau == 0 or back < here * np.exp(GROWTH * step / tau)):
-                break
-            if tau == 0 and back > here + 1.0:
-                break
-            begin -= 1
-        rows = np.arange(begin, end + 1)
-        rows = rows[mask[rows] == 0]
-        seconds = (log.time_ns[rows] - log.time_ns[begin]) / NS
-        out.append((seconds.astype(np.float64), log.channels[channel.column][rows]))
+        rows = np.arange(floor, end + 1)
+        bad = rows[(mask[rows] != 0) & (rows < at)]
+        rows = rows[(rows > bad.max(initial=-1)) & (mask[rows] == 0)]
+        time_s = (log.time_ns[rows] - log.time_ns[at]) / NS
+        read = log.channels[channel.column][rows]
+        begin = first_described(time_s, read, int(np.searchsorted(rows, at)),
+                                time_constant_s=tau, tolerance_k=TOUCH_TOLERANCE_K)
+        half = (time_s[begin] - time_s[begin - 1]) / 2 if begin else 0.0
+        out.append((time_s[begin:] - time_s[begin] + half, read[begin:]))
         floor = end + 1
     return out
 

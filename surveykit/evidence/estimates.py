@@ -14,7 +14,8 @@ import numpy as np
 from surveykit.core import FloatArray, Input
 from surveykit.evidence.albedo import albedo
 from surveykit.evidence.conditions import Day, Sky
-from surveykit.evidence.parts import NotEvaluated, PassValue
+from surveykit.evidence.hills import two_kinds
+from surveykit.evidence.parts import NotEvaluated, PassValue, raw_series
 from surveykit.evidence.temperature import contact, longwave, stand_off
 from surveykit.evidence.vegetation import vegetation_index
 from surveykit.intake.passes import Pass
@@ -102,6 +103,9 @@ def estimate(day: Day, this: Pass) -> PassEstimate:
     if made.n_effective < day.parameters.campaign.settings.statistics.few_effective and \
             model != "contact":  # which counts placements, with a flag of its own
         flags += ("few effective records",)
+    main = {"stand-off": "brightness_temperature", "longwave": "longwave_up"}.get(model)
+    if main in this.channels:
+        flags += two_kinds(raw_series(day, this, main)[1], made.u_within, made.n_effective)
     return replace(
         base, value_raw=made.value_raw, value=made.value, u_within=made.u_within,
         n_effective=made.n_effective, status="ok", note="", flags=flags, inputs=made.inputs,
@@ -110,6 +114,7 @@ def estimate(day: Day, this: Pass) -> PassEstimate:
 
 def estimate_all(day: Day, passes: tuple[Pass, ...]) -> tuple[PassEstimate, ...]:
     """Return the estimates of all passes, in the order of the passes."""
+    day = replace(day, passes=passes)
     return tuple(estimate(day, this) for this in passes)
 
 

@@ -33,7 +33,7 @@ def head_inputs(day: Day, this: Pass, sky: Sky, brightness: FloatArray) -> Found
     Raises
     ------
     NotEvaluated
-        If the kit or the surface lacks what a temperature needs, or the housing changed too fast.
+        If the kit or the surface lacks what a temperature needs.
     """
     channel = this.channels["brightness_temperature"]
     if channel.emissivity_setting is None:
@@ -44,14 +44,6 @@ def head_inputs(day: Day, this: Pass, sky: Sky, brightness: FloatArray) -> Found
     mean = float(brightness.mean())
     settings = day.parameters.campaign.settings.temperature
     rate = _body_rate_k_min(day, this, channel)
-    if abs(rate) > settings.body_rate_max_k_min:
-        raise NotEvaluated(f"the housing of {channel.logger} changed by {rate:.1f} K a minute, "
-                           f"more than {settings.body_rate_max_k_min:g}: leave it outdoors, in the "
-                           "shade, before use")
-    if abs(rate) > settings.body_rate_flag_k_min:
-        flags += (f"housing changed by more than {settings.body_rate_flag_k_min:g} K a minute",)
-    if _swing_w_m2(day, this) > settings.history_max_w_m2:
-        flags += ("the sun changed shortly before",)
     check, more = _check(day, channel)
     inputs = [
         fixed("brightness_k", mean), fixed("gain_reading", mean - channel.offset.value),
@@ -116,17 +108,6 @@ def _body_rate_k_min(day: Day, this: Pass, channel: Channel) -> float:
             time, value = day.readings(body, this.start_ns, this.stop_ns)
             if value.size > 2:
                 return float(np.polyfit((time - time[0]) / NS / 60.0, value, 1)[0])
-    return 0.0
-
-
-def _swing_w_m2(day: Day, this: Pass) -> float:
-    """Return the range of the irradiance shortly before and during a pass; 0 if not watched."""
-    back = round(day.parameters.campaign.settings.temperature.history_s * NS)
-    for channel in day.channels.get("shortwave_down", []):
-        time, value = day.readings(channel, this.start_ns - back, this.stop_ns)
-        if value.size > 2:
-            low, high = np.quantile(day.without_dark(channel, time, value), [0.05, 0.95])
-            return float(high - low)
     return 0.0
 
 

@@ -60,7 +60,9 @@ def vegetation_index(day: Day, this: Pass, sky: Sky) -> PassValue:
                    f"{day.name}:{this.surface}:ndvi darks"),
         *([Correction("gain ratio", {"red_ratio": 1.0, "nir_ratio": 1.0}, True,
                       "ndvi.correct_gain_ratio", "")] if _has_ratio(gains) else [])])
-    flags += (*more, *made.flags, "surroundings not corrected", *_mean_of_ratios(read))
+    if made.inputs["footprint_share"].value < 1:
+        flags += ("surroundings not corrected",)
+    flags += (*more, *made.flags, *_mean_of_ratios(read))
     red, nir = (read[f"{band}_up"] / read[f"{band}_down"].mean() for band in ("red", "nir"))
     r, n = float(red.mean()), float(nir.mean())
     lean = 2 / (r + n) ** 2

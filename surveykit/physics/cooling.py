@@ -111,6 +111,55 @@ def fit_placements(time_s: Sequence[FloatArray], temperature_k: Sequence[FloatAr
         float(np.sqrt(cover[0, 0])), float(np.sqrt(variance)), tau)
 
 
+def first_described(time_s: FloatArray, temperature_k: FloatArray, settled: int, *,
+                    time_constant_s: float, tolerance_k: float) -> int:
+    """Return the first record from which on the law of `fit_placements` describes a placement.
+
+    Backward from the settled records, one more is taken as long as the law, begun there, passes
+    all of them within `tolerance_k` (or four standard deviations of the settled ones about it):
+    the touch lies between the record found and the one before.
+
+    Parameters
+    ----------
+    time_s, temperature_k : ndarray, shape (n,)
+        Times [s], ascending, and readings [K]; the last records are settled ones.
+    settled : int
+        Index of the first settled record.
+    time_constant_s : float
+        Time constant of the head [s].
+    tolerance_k : float
+        Distance from the law [K] that is allowed whatever the noise.
+
+    Returns
+    -------
+    int
+        Index, at most `settled`.
+
+    References
+    ----------
+    See `fit_placements`.
+
+    Examples
+    --------
+    >>> t = np.arange(0.0, 10.0, 0.5)
+    >>> on = np.where(t < 3, 300.0, 320 - np.exp(-(t - 3) / 0.3) * 15 - 0.4 * np.sqrt(abs(t - 3)))
+    >>> first_described(t, on, 12, time_constant_s=0.3, tolerance_k=0.2)
+    6
+    """
+    def distance(first: int, least: int) -> FloatArray:
+        times = time_s[first:] - time_s[first]
+        if times.size <= least:
+            return np.zeros(0)
+        return _solve([times], temperature_k[first:], time_constant_s, time_constant_s > 0)[1]
+
+    own = distance(settled, 4)
+    limit = max(tolerance_k, 4 * float(own.std())) if own.size else tolerance_k
+    first = settled
+    while first > 0 and (np.abs(distance(first - 1, 3)) <= limit).all():
+        first -= 1
+    return first
+
+
 def root_time(time_s: FloatArray, time_constant_s: float, lagged: bool) -> FloatArray:
     """Return sqrt(t) [s1/2], or what a first-order head makes of it.
 

@@ -126,6 +126,41 @@ def zenith_factor(zenith_deg: ArrayLike, d: ArrayLike) -> FloatArray:
                       / (1 + 2 * strength * np.cos(np.radians(np.asarray(zenith_deg, np.float64)))))
 
 
+def daily_factor(zenith_deg: ArrayLike, irradiance_w_m2: ArrayLike, at_zenith_deg: float,
+                 d: ArrayLike) -> FloatArray:
+    """Return the energy-weighted albedo of a day over the albedo at one zenith angle.
+
+    Parameters
+    ----------
+    zenith_deg, irradiance_w_m2 : array_like, shape (n,)
+        The day's course at even steps; times with the sun below the horizon do not count.
+    at_zenith_deg : float
+        Zenith angle of the known albedo [deg].
+    d : array_like, shape (m,) or ()
+        Strength of the dependence [1], see `zenith_factor`.
+
+    Returns
+    -------
+    ndarray, shape (m,) or ()
+        Ratio [1].
+
+    References
+    ----------
+    See `zenith_factor`; weights: irradiance on the horizontal.
+
+    Examples
+    --------
+    >>> print(f"{daily_factor([60.0, 30.0, 60.0], [400.0, 900.0, 400.0], 30.0, 0.4):.3f}")
+    1.098
+    """
+    zenith = np.asarray(zenith_deg, dtype=np.float64)
+    weight = np.where(zenith < 90, np.asarray(irradiance_w_m2, dtype=np.float64), 0.0)
+    strength = np.asarray(d, dtype=np.float64)
+    course = zenith_factor(np.minimum(zenith, 90.0), strength[..., None])
+    mean = (course * weight).sum(axis=-1) / weight.sum()
+    return np.asarray(mean / zenith_factor(at_zenith_deg, strength))
+
+
 def levelling_error(zenith_deg: ArrayLike, tilt_deg: ArrayLike,
                     azimuth_difference_deg: ArrayLike, beam_fraction: ArrayLike) -> FloatArray:
     """Return the relative error of incoming irradiance measured by a tilted head.

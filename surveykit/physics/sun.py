@@ -9,7 +9,6 @@ from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import ArrayLike
-from pvlib import atmosphere, clearsky, spa
 
 from surveykit.core import FloatArray, IntArray, Sourced
 
@@ -82,6 +81,8 @@ def sun_position(time_ns: ArrayLike, latitude: float, longitude: float, elevatio
     if not (-90 <= latitude <= 90 and -180 <= longitude <= 180):
         raise ValueError(f"a site needs latitude within +-90 and longitude within +-180 degrees, "
                          f"got {latitude!r} and {longitude!r}")
+    from pvlib import spa  # late here and below: it brings half of scipy, which few commands need
+
     apparent, zenith, _, _, azimuth, _ = spa.solar_position(
         times / 1e9, latitude, longitude, elevation_m, pressure_pa / 100, temperature_c,
         _delta_t(times) if delta_t is None else delta_t, _REFRACTION_AT_HORIZON_DEG)
@@ -152,6 +153,8 @@ def sun_track(time_ns: ArrayLike, latitude: float, longitude: float,
 def _columns(times: IntArray, latitude: float, longitude: float,
              elevation_m: float) -> list[FloatArray]:
     """Return direction (east, north, up) and the two irradiances: all smooth in time."""
+    from pvlib import atmosphere, clearsky, spa
+
     pressure_pa = float(atmosphere.alt2pres(elevation_m))
     position = sun_position(times, latitude, longitude, elevation_m, pressure_pa, _USUAL_AIR_DEGC)
     zenith, azimuth = np.radians(position.apparent_zenith_deg), np.radians(position.azimuth_deg)
@@ -165,6 +168,8 @@ def _columns(times: IntArray, latitude: float, longitude: float,
 
 def _delta_t(times: IntArray) -> FloatArray:
     months = times.astype("datetime64[ns]").astype("datetime64[M]").astype(np.int64)
+    from pvlib import spa
+
     return np.asarray(spa.calculate_deltat(1970 + months // 12, 1 + months % 12))
 
 

@@ -70,12 +70,14 @@ def _values(entries: Sequence[Entry]) -> Html:
     kinds: dict[tuple[str, str], None] = {}
     for place, entry in enumerate(entries):
         labels |= {str(k): str(v) for k, v in entry.facts["surfaces"].items()}
-        for row in entry.surfaces.itertuples():
-            text = w.interval(row.value, row.lower, row.upper, w.places(row.quantity))
+        for row in entry.surfaces.to_dict("records"):
+            quantity, kind = str(row["quantity"]), str(row["kind"])
+            text = w.interval(float(row["value"]), float(row["lower"]), float(row["upper"]),
+                              w.places(quantity))
             if text:
-                kinds[(row.quantity, row.kind)] = None
-                head = w.quantity_text(row.quantity, row.kind)
-                dates.setdefault(row.surface, {}).setdefault(place, {})[head] = text
+                kinds[(quantity, kind)] = None
+                by_place = dates.setdefault(str(row["surface"]), {})
+                by_place.setdefault(place, {})[w.quantity_text(quantity, kind)] = text
     order = [*w.PLACES]
     heads = [w.quantity_text(*pair) for pair in sorted(
         kinds, key=lambda pair: (order.index(pair[0]) if pair[0] in order else 9, pair[1]))]
@@ -83,7 +85,7 @@ def _values(entries: Sequence[Entry]) -> Html:
              for q, k in kinds}
     columns = [Column("Campaign", "long"), Column("Date", "short"), *(
         Column(f"{head}, {units[head]}" if units[head] else head, "number") for head in heads)]
-    groups = [(w.label(surface, labels), [
+    groups: list[tuple[str, list[Row]]] = [(w.label(surface, labels), [
         (_Linked(str(entries[place].facts["title"]), address=entries[place].address),
          w.date_text(str(entries[place].facts["date"])),
          *(texts.get(head, "") for head in heads))

@@ -38,6 +38,8 @@ TITLES = {
     "trends": "Lines through the dates of each surface, three dates or more",
     "changes": "Changes since earlier campaigns",
     "corrections": "From the raw to the final value of each pass, step by step",
+    "derived": "What was asked for beside the measured quantities",
+    "geometry": "Shade and foreign ground of each albedo pass against height, used and best",
 }
 CF_NAMES = {"temperature": "surface_temperature", "albedo": "surface_albedo",
             "ndvi": "normalized_difference_vegetation_index"}
@@ -45,8 +47,8 @@ COLUMN_CF = {"zenith_deg": "solar_zenith_angle", "start_utc": "time", "stop_utc"
 # Numbers without a unit of their own: plain ratios and counts. Other numbers take the unit that
 # stands in the row's column `unit`; a suffix of the name states the unit otherwise.
 RATIOS = {"probability", "p", "needed", "coverage", "k", "dof", "n_effective", "share",
-          "p_adjusted"}
-SUFFIXES = {"_s": "s", "_ppm": "1e-6", "_deg": "degree"}
+          "p_adjusted", "foreign", "contamination", "shade", "effect"}
+SUFFIXES = {"_s": "s", "_ppm": "1e-6", "_deg": "degree", "_m": "m"}
 DWELL_UNITS = {"value": "degC", "u": "K"}
 NOTES = {
     "u": "standard uncertainty", "lower": "lower end of the interval at `coverage`",

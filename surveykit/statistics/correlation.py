@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import NamedTuple
 
 import numpy as np
+from scipy.fft import irfft, next_fast_len, rfft
 
 from surveykit.core import FloatArray
 
@@ -131,9 +132,10 @@ def _peak(one: FloatArray, two: FloatArray, reach: int) -> tuple[FloatArray, int
 
 
 def _lags(one: FloatArray, two: FloatArray, reach: int) -> FloatArray:
-    from scipy.signal import correlate as _correlate  # late: it brings scipy.stats, half a second
-
-    full = _correlate(one, two, mode="full", method="fft")
+    # As scipy.signal.correlate by FFT, whose import takes longer than all the rest of `check`.
+    n = len(one) + len(two) - 1
+    size = next_fast_len(n, real=True)
+    full = irfft(rfft(one, size) * rfft(two[::-1], size), size)[:n]
     out, zero = np.zeros(2 * reach + 1), two.size - 1
     low, high = max(zero - reach, 0), min(zero + reach + 1, full.size)
     out[low - zero + reach:high - zero + reach] = full[low:high]

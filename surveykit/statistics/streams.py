@@ -9,6 +9,8 @@ from scipy.special import ndtri, stdtrit
 
 from surveykit.core import Distribution, FloatArray
 
+HELD_BYTES = 256_000_000  # of vectors kept; a vector let go comes back the same
+
 
 class Draws:
     """One vector of draws a scope, the same in every pass, surface and campaign.
@@ -126,5 +128,7 @@ class Draws:
         return np.clip(share, 2.0**-53, 1 - 2.0**-53)
 
     def _keep(self, key: tuple[str, str, float], vector: FloatArray) -> None:
+        while self._held and (len(self._held) + 1) * vector.nbytes > HELD_BYTES:
+            self._held.pop(next(iter(self._held)))  # the oldest; made anew when asked for again
         vector.flags.writeable = False
         self._held[key] = vector

@@ -138,26 +138,52 @@ def test_longwave_pair():
 
 # ---- albedo: sky head 812, ground head 172, darks -4 and 1.5 W m-2, gain ratio 1.012 (computed)
 
-CORRECTED = 1 / (0.9455 - 0.0215)  # footprint less shade, by which the case also divides
-
-
-def measured(*uncertain):
+def measured(*uncertain, **more):
+    """Darks taken off by the reading; gain ratio, surroundings and shade by the model."""
+    held = {"up": 172 - 1.5, "down": 812 + 4.0, "gain_ratio": 1.012, "footprint_share": 0.9455,
+            "shade_share": 0.0215, "around_albedo": 0.10, "surroundings_corrected": 1.0,
+            "shade_corrected": 1.0} | more
+    for one in uncertain:
+        held.pop(one.name, None)
     return inputs(" ".join(f"{i.name}={i.value}" for i in albedo(0.2)
-                           if i.name not in ("up", "down")),
-                  *uncertain, up=172 - 1.5, down=(812 + 4) * 1.012, footprint_share=0.9455,
-                  around_albedo=0.10)
+                           if i.name not in (*held, *(u.name for u in uncertain))),
+                  *uncertain, **held)
 
 
-def test_albedo_worked_case_before_shade_and_footprint():
-    assert evaluate("albedo", measured()) == pytest.approx(0.206468, abs=1e-6)
+ALBEDO_CONTRIBUTIONS = (
+    ("down_zero_error", 2.0, 0.00055), ("up_zero_error", 1.0, 0.0013),
+    ("around_error", 0.02, 0.0012), ("footprint_error", 0.01, 0.0013), ("shade_error", 0.005 / 0.0215, 0.0012))
 
 
-@pytest.mark.parametrize(("name", "u", "contribution"), [
-    ("down_zero_error", 2 * 1.012, 0.00055), ("up_zero_error", 1.0, 0.0013),
-    ("down_gain_error", 0.006 / 1.012, 0.0013), ("around_error", 0.02, 0.0012)])
+def test_albedo_worked_case():
+    assert evaluate("albedo", measured(surroundings_corrected=0.0, shade_corrected=0.0)) == \
+        pytest.approx(0.206468, abs=1e-6)
+    assert evaluate("albedo", measured()) == pytest.approx(0.217552, abs=1e-6)
+
+
+@pytest.mark.parametrize(("name", "u", "contribution"), ALBEDO_CONTRIBUTIONS)
 def test_albedo_worked_case_contributions(name, u, contribution):
-    moved = sensitivities("albedo", measured(error(name, u, "a")))[name]
-    assert abs(moved) * CORRECTED == pytest.approx(contribution, rel=0.05)
+    """One at a time, to 5 %; the printed digits allow half a unit of the last."""
+    moved = abs(sensitivities("albedo", measured(error(name, u, "a")))[name])
+    assert moved == pytest.approx(contribution, rel=0.05)
+
+
+def test_albedo_worked_case_of_the_gain_ratio():
+    ratio = Input("gain_ratio", 1.012, 0.006, "swap", "")
+    assert abs(sensitivities("albedo", measured(ratio))["gain_ratio"]) == pytest.approx(
+        0.0013, rel=0.05)
+
+
+def test_albedo_worked_case_combined():
+    """G 2, D 1, darks 2 and 1 W m-2, ratio .006, F .01, S .005, surroundings .02: u_c .0032 by
+    Monte Carlo (computed).
+    """
+    these = measured(Input("gain_ratio", 1.012, 0.006, "swap", ""),
+                     error("down_zero_error", 2 * np.sqrt(2), "down"),
+                     error("up_zero_error", np.sqrt(2), "up"),
+                     *(error(name, u, name) for name, u, _ in ALBEDO_CONTRIBUTIONS[2:]))
+    moved = deviations("albedo", these, DRAWS, "no pass")
+    assert moved.std() == pytest.approx(0.0032, abs=5e-5)
 
 
 def test_albedo_of_a_head_held_one_centimetre_higher():
@@ -165,11 +191,10 @@ def test_albedo_of_a_head_held_one_centimetre_higher():
     its slope is -2 h R^2 / (R^2 + h^2)^2.
     """
     slope = -2 * 0.12 * 0.25 / (0.25 + 0.0144) ** 2
-    these = inputs(" ".join(f"{i.name}={i.value}" for i in albedo(0.28265)),
-                   error("height_error", 0.01, "pass"), footprint_share=0.9455,
-                   footprint_per_m=slope, around_albedo=0.10)
-    assert sensitivities("albedo", these)["height_error"] * CORRECTED == pytest.approx(
-        0.002, abs=0.0005)
+    these = measured(error("height_error", 0.01, "pass"), up=0.28265, down=1.0, gain_ratio=1.0,
+                     footprint_per_m=slope)
+    assert evaluate("albedo", these) == pytest.approx(0.3000, abs=5e-5)
+    assert sensitivities("albedo", these)["height_error"] == pytest.approx(0.002, abs=0.0005)
 
 
 def test_albedo_budgets_its_shade_whole():

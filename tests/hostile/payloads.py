@@ -39,6 +39,7 @@ def full_campaign() -> dict[str, Any]:
             "around": {"albedo": 0.16, "u": 0.03}} for name in ("court", "lawn")},
         "conditions": {"sky": "clear", "rain_48h_mm": 0}, "settings": {},
         "comparison": {"control": "court"}, "crew": ["AB"], "notes": "A day.",
+        "interventions": [{"date": "2025-06-01", "surface": "court", "text": "Swept."}],
     }
 
 

@@ -82,10 +82,10 @@ def valley(tmp_path, **changed):
 
 FAULTS = {
     "an hour of zone": {"instruments": ("zone: UTC", "zone: Etc/GMT-1")},
-    "the longitude's sign": {"valley-winter-day": (
-        "longitude: -105.92, elevation_m: 2317, time_zone: America/Denver",
-        "longitude: 105.92, elevation_m: 2317, time_zone: UTC")},
 }
+FLIPPED = {"valley-winter-day": (
+    "longitude: -105.92, elevation_m: 2317, time_zone: America/Denver",
+    "longitude: 105.92, elevation_m: 2317, time_zone: UTC")}
 
 
 @pytest.mark.parametrize("name", FAULTS)
@@ -96,6 +96,12 @@ def test_a_blunder_on_the_measured_day_is_refused(tmp_path, name):
     assert "follows the clear sky" in one.refusal
     assert "site.longitude" in one.refusal
     assert all(this.refusal for this in found.passes)
+
+
+def test_light_at_night_is_left_to_the_passes(tmp_path):
+    """The longitude's sign: each albedo pass says what its pair read (tests/test_valley_...)."""
+    found = valley(tmp_path, **FLIPPED)
+    assert [one.status for one in found.clocks] == ["ok"]
 
 
 def test_the_measured_day_is_taken(tmp_path):

@@ -88,9 +88,6 @@ CAMPAIGN_CASES = {
     "section not a mapping": (
         "settings: {}", "settings: {albedo: 3}", "settings: {albedo: {}}",
         "settings.albedo: got 3; write keys of this section"),
-    "reserved": (
-        "settings: {}", "settings: {}\nderived: [sri]", "settings: {}",
-        "derived: reserved for later work"),
     "reserved in comparison": (
         "  control:", "  second_control: lawm\n  control:", "  control:",
         "comparison.second_control: got 'lawm', no surface of this file; did you mean lawn?"),

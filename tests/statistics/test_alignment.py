@@ -14,6 +14,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 from numpy.testing import assert_allclose
 from scipy.signal import lfilter
+from scipy.stats import theilslopes
 
 from surveykit.statistics.alignment import (
     change_point,
@@ -59,6 +60,17 @@ def test_the_line_is_that_of_weighted_least_squares():
     (slope, constant), cov = np.polyfit(time_s, offset_s, 1, w=1 / u_s, cov="unscaled")
     assert_allclose([line.slope, line.at(0.0)], [slope, constant], rtol=1e-9)
     assert_allclose(line.u(0.0), np.sqrt(cov[1, 1]), rtol=1e-9)
+
+
+def test_the_robust_slope_is_that_of_an_independent_library():
+    """scipy.stats.theilslopes, not imported by the package itself because that takes so long."""
+    rng = np.random.default_rng(3)
+    for n in (2, 3, 7, 40):
+        time_s = np.sort(rng.uniform(0, 4e4, n))
+        offset_s = 3.0 + 2e-5 * time_s + rng.standard_t(2, n)
+        line = robust_line(time_s, offset_s, None)
+        assert_allclose((line[-1] - line[0]) / (time_s[-1] - time_s[0]),
+                        theilslopes(offset_s, time_s).slope, rtol=1e-9)
 
 
 def test_the_robust_line_ignores_one_bad_event():

@@ -61,6 +61,16 @@ def test_student_quantiles(dof):
     assert ours == pytest.approx(stats.t.ppf(shares, dof), rel=0.02, abs=1e-3)
 
 
+def test_vectors_let_go_come_back_the_same(monkeypatch):
+    monkeypatch.setattr("surveykit.statistics.streams.HELD_BYTES", 3 * 8 * 100)
+    draws = Draws(1, 100)
+    first = draws.standard("a").copy()
+    for name in "bcdefg":
+        draws.standard(name)
+    assert len(draws._held) <= 3
+    assert np.array_equal(draws.standard("a"), first)
+
+
 def test_vectors_cannot_be_changed_by_who_borrows_them():
     with pytest.raises(ValueError, match="read-only"):
         DRAWS.standard("sky")[0] = 0

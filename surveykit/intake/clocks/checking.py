@@ -108,7 +108,10 @@ def against_the_sun(loggers: Mapping[str, Set], parameters: Parameters) -> dict[
             continue
         time_s, values = readings(one.records, channel, parameters.settings,
                                   np.arange(one.records.n_timed), 0)
-        found = sun_shift((time_s * NS).astype(np.int64), values, site.latitude, site.longitude,
+        time_ns = (time_s * NS).astype(np.int64)
+        if _lit_at_night(time_ns, values, parameters):
+            continue  # the passes say so, each with what its pair read: longitude, zone or clock
+        found = sun_shift(time_ns, values, site.latitude, site.longitude,
                           site.elevation_m, small_min=limit / 2)
         if found is not None and abs(found.shift_min) > limit and found.telling:
             wrong[name] = (
@@ -116,6 +119,16 @@ def against_the_sun(loggers: Mapping[str, Set], parameters: Parameters) -> dict[
                 f"{'too late' if found.shift_min > 0 else 'too early'}: check time.zone, the "
                 "clock, and site.longitude (west is negative)")
     return wrong
+
+
+def _lit_at_night(time_ns: IntArray, values: FloatArray, parameters: Parameters) -> bool:
+    """Return whether most of the light falls while the computed sun is below the horizon."""
+    if values.size == 0:
+        return False
+    bright = time_ns[values > 0.05 * float(np.quantile(values, 0.98))]
+    site = parameters.campaign.site
+    zenith = sun_track(bright, site.latitude, site.longitude, site.elevation_m).zenith_deg
+    return bool(np.mean(zenith > 90.0) > 0.5) if bright.size else False
 
 
 def against_each_other(loggers: Mapping[str, Set], parameters: Parameters) -> dict[str, str]:

@@ -6,7 +6,7 @@ import os
 from collections.abc import Hashable
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Annotated, Any, Literal
+from typing import Annotated, Any, Literal, get_args
 
 from pydantic import Discriminator, Field, Tag
 
@@ -36,7 +36,19 @@ from surveykit.intake.params.settings import Settings
 from surveykit.intake.params.timekeeping import Watch
 
 CAMPAIGN_PATTERN = r"^[a-z0-9][a-z0-9-]{0,63}$"
-LATER = "reserved for later work; leave it out"
+
+
+Product = Literal["sri", "net_radiation", "longwave_up", "surface_minus_air",
+                  "vegetation_fraction", "savi", "daily_albedo"]
+
+
+class Caution(Strict):
+    """A limit that the user enters with its source; the report never calls anything safe."""
+
+    temperature_degC: float = key(  # noqa: N815 - the unit is written so
+        "The temperature.", ge=30, le=120, write="a number from 30 to 120, in degC")
+    source: Text = key("Where it comes from, with its edition.",
+                       write="the standard or rule it comes from, plain text")
 
 
 def _spelling(data: Any) -> Hashable:
@@ -48,8 +60,6 @@ Kit = Annotated[dict[Name, Instrument], Field(min_length=1)]
 
 class Campaign(Strict):
     """Parameters of one campaign: one survey day at a site."""
-
-    RESERVED = dict.fromkeys(("derived", "caution"), LATER)
 
     format: Literal[1] = key("Format of this file.", default=1,
                              write="1, the format this surveykit reads")
@@ -88,6 +98,13 @@ class Campaign(Strict):
         "Initials of those who did the survey.", default=(), write="a list such as [AB, CD]")
     notes: Notes = key("What else a reader should know of the day.", default="",
                        write="plain text, up to 2000 characters")
+
+    derived: Annotated[tuple[Product, ...], Field(strict=False)] = key(
+        "What is to be derived from the measured quantities.", default=(),
+        write="a list of some of " + ", ".join(get_args(Product)))
+    caution: Caution | None = key(
+        "A surface temperature from which the report cautions.", default=None,
+        write="{temperature_degC, source}")
 
     @property
     def relevant_change(self) -> RelevantChange:

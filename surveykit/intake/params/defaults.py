@@ -105,14 +105,6 @@ class TemperatureSettings(Strict):
         2.0, "K", "Cooling under the head above which a pass without fit is refused.", gt=0)
     head_cooling_sun_w_m2: float = setting(
         50.0, "W m-2", "Irradiance below which no cooling under the head is expected.", ge=0)
-    body_rate_flag_k_min: float = setting(
-        0.5, "K/min", "Housing's rate of change that is flagged.", gt=0)
-    body_rate_max_k_min: float = setting(
-        2.0, "K/min", "Housing's rate of change from which a pass is refused.", gt=0)
-    history_s: float = setting(
-        120.0, "s", "How long before a pass the irradiance is looked at.", ge=0)
-    history_max_w_m2: float = setting(
-        150.0, "W m-2", "Change of irradiance within that time that is flagged.", gt=0)
     check_max_k: float = setting(
         0.5, "K", "Difference of a check reading from the known temperature that is flagged.",
         gt=0)
@@ -120,12 +112,11 @@ class TemperatureSettings(Strict):
         20.0, "K", "Least difference of ground and background for a measured emissivity.", gt=0)
     pair_max_half_width: float = setting(
         0.03, "1", "Largest half-width (95 %) of a measured emissivity.", gt=0)
+    longwave_down_u_w_m2: float = setting(
+        30.0, "W m-2", "Standard uncertainty of the modelled longwave irradiance of the sky.",
+        ge=0)
     lid_u_k: float = setting(
         2.0, "K", "Standard uncertainty of a lid's temperature where none is written.", ge=0)
-
-    def faults(self) -> list[Fault]:
-        """Limits of the housing's rate rise."""
-        return rising(self, "body_rate_flag_k_min", "body_rate_max_k_min")
 
 
 class AlbedoSettings(Strict):
