@@ -156,8 +156,13 @@ def _with_foil(day: Day, this: Span, channel: Channel, inputs: dict[str, Input],
 
 
 def _rows(day: Day, kind: str, channel: Channel) -> list[tuple[Entry, float | None]]:
-    """Return the sheet's rows of a kind for this head, each with its mean good reading [K]."""
-    found = []
+    """Return the sheet's rows of a kind for this head, each with its mean good reading [K].
+
+    None of a head that was logged with an emissivity other than 1: its readings are no brightness.
+    """
+    found: list[tuple[Entry, float | None]] = []
+    if channel.emissivity_setting != 1.0:
+        return found
     for entry in day.sheet.entries:
         if entry.entry == kind and entry.instrument in ("", channel.logger):
             edge = round(entry.edge_u_s * NS) + round(5 * channel.time_constant_s * NS)

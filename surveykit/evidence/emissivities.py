@@ -143,6 +143,8 @@ def _lid(day: Day, entry: Entry, channel: Channel, sky: Sky) -> Pair | None:
 
 def _seen(day: Day, channel: Channel, start_ns: int, stop_ns: int,
           edge_u_s: float) -> float | None:
+    if channel.emissivity_setting != 1.0:
+        return None  # no brightness: the instrument has corrected it in its own way
     edge = round((min(edge_u_s, (stop_ns - start_ns) / NS / 4) + 5 * channel.time_constant_s) * NS)
     _, value = day.readings(channel, start_ns + edge, stop_ns - edge)
     return float(value.mean()) if value.size else None

@@ -9,13 +9,19 @@ as an uncertainty is what the errors are drawn with, no more and no less.
 emissivity by the fourth root without the sky, the mean of the passes' ratios.
 """
 
+# ruff: noqa: E402
 from __future__ import annotations
 
+import sys
 from dataclasses import dataclass, field
 from functools import cache
+from pathlib import Path
 from typing import Any
 
 import numpy as np
+
+sys.path[:0] = [str(Path(__file__).parents[1]), str(Path(__file__).parents[1] / "evidence")]
+
 from pass_values import ALBEDO_REST, LOGGERS, NDVI_REST, NS, THERMAL_REST, channel_of
 
 from surveykit.core import Input

@@ -6,15 +6,15 @@ Each seed is a survey of six surfaces on two dates with other weather (simulator
 estimates go straight to the evidence stage, with 2,000 draws.
 """
 
+# ruff: noqa: E402
 from __future__ import annotations
 
 import sys
 from concurrent.futures import ProcessPoolExecutor
 from pathlib import Path
 
-if __name__ == "__main__":
-    sys.path[:0] = [str(Path(__file__).parents[1]), str(Path(__file__).parents[1] / "evidence"),
-                    str(Path(__file__).parent)]
+sys.path[:0] = [str(Path(__file__).parents[1]), str(Path(__file__).parents[1] / "evidence"),
+                str(Path(__file__).parent)]
 
 from collections.abc import Iterable
 from itertools import combinations

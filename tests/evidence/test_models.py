@@ -152,7 +152,8 @@ def measured(*uncertain, **more):
 
 ALBEDO_CONTRIBUTIONS = (
     ("down_zero_error", 2.0, 0.00055), ("up_zero_error", 1.0, 0.0013),
-    ("around_error", 0.02, 0.0012), ("footprint_error", 0.01, 0.0013), ("shade_error", 0.005 / 0.0215, 0.0012))
+    ("around_error", 0.02, 0.0012), ("footprint_error", 0.01, 0.0013),
+    ("shade_error", 0.005 / 0.0215, 0.0012))
 
 
 def test_albedo_worked_case():
