@@ -7,9 +7,7 @@ import pytest
 
 sys.path.insert(0, str(Path(__file__).parent))
 
-from projects import DATES, DEMO, ROOT, copy_project, surveykit
-
-__all__ = ["DATES", "DEMO", "ROOT", "copy_project", "surveykit"]
+from projects import DEMO, copy_project, surveykit
 
 
 @pytest.fixture

@@ -7,7 +7,7 @@ import json
 
 import pandas as pd
 import pytest
-from conftest import DEMO, ROOT
+from projects import DEMO, ROOT
 
 KEY = ["campaign", "surface", "quantity", "kind"]
 SHOWN = ("higher", "lower", "higher, small", "lower, small")

@@ -1,7 +1,7 @@
 """The user's mistakes: exit 2, one located sentence each, nothing written."""
 
 import pytest
-from conftest import DEMO, surveykit
+from projects import DEMO, surveykit
 
 JUNE = DEMO[0]
 FILE = f"params/{JUNE}.yml"

@@ -13,7 +13,7 @@ import shutil
 
 import pandas as pd
 import pytest
-from conftest import ROOT, surveykit
+from projects import ROOT, surveykit
 
 pytestmark = pytest.mark.skipif(
     "SURVEYKIT_OPEN_DATA" not in os.environ,

@@ -10,7 +10,7 @@ import numpy as np
 import pandas as pd
 import pytest
 from bs4 import BeautifulSoup
-from conftest import DEMO, ROOT, copy_project, surveykit
+from projects import DEMO, ROOT, copy_project, surveykit
 
 from surveykit.core import PUBLISHED
 from surveykit.handover import load_table

@@ -8,7 +8,7 @@ from the published minutes by plain sums, apart from this package).
 
 import pandas as pd
 import pytest
-from conftest import surveykit
+from projects import surveykit
 
 from surveykit import pipeline
 from surveykit.opening import open_file
