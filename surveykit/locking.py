@@ -12,9 +12,10 @@ import socket
 import sys
 import time
 from collections.abc import Callable, Iterator
-from contextlib import ExitStack, contextmanager
+from contextlib import ExitStack, contextmanager, suppress
 from pathlib import Path
 
+from surveykit.core import InputError
 from surveykit.swap import heal
 
 if sys.platform == "win32":
@@ -78,10 +79,15 @@ def heal_all(root: Path) -> None:
 def _taken(root: Path, name: str, shared: bool,
            say: Callable[[str], None] | None) -> Iterator[int]:
     path = _path(root, name)
+    fresh = not path.exists()
     path.parent.mkdir(exist_ok=True)
-    with path.open("a+b") as file:
+    with ExitStack() as stack:
+        file = stack.enter_context(path.open("a+b"))
         told = say is None
-        while not _take(file.fileno(), shared):
+        while not (_take(file.fileno(), shared) and _same(file.fileno(), path)):
+            if not _same(file.fileno(), path):  # a refused run took its lock away meanwhile
+                file = stack.enter_context(path.open("a+b"))
+                continue
             if not told and say is not None:
                 file.seek(0)
                 holder = file.read(200).decode("utf-8", "replace").strip()
@@ -92,7 +98,28 @@ def _taken(root: Path, name: str, shared: bool,
             file.truncate(0)
             file.write(f"process {os.getpid()} on {socket.gethostname()}\n".encode())
             file.flush()
-        yield file.fileno()
+        try:
+            yield file.fileno()
+        except InputError:
+            if fresh and not shared:  # a refused run leaves nothing behind
+                _away(path)
+            raise
+
+
+def _same(descriptor: int, path: Path) -> bool:
+    """Return whether the open file is still the one that stands at `path`."""
+    try:
+        here, there = os.fstat(descriptor), path.stat()
+    except FileNotFoundError:
+        return False
+    return (here.st_ino, here.st_dev) == (there.st_ino, there.st_dev)
+
+
+def _away(path: Path) -> None:
+    """Remove a lock, and its folder where that is empty; what the system refuses stays."""
+    with suppress(OSError):
+        path.unlink()
+        path.parent.rmdir()
 
 
 def _path(root: Path, name: str) -> Path:

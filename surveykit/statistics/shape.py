@@ -31,7 +31,7 @@ def huber_location(x: ArrayLike) -> float:
     Examples
     --------
     >>> round(huber_location([1.0, 2.0, 3.0, 100.0]), 2)
-    3.0
+    2.66
     """
     values = np.asarray(x, dtype=np.float64)
     middle = float(np.median(values))

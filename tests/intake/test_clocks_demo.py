@@ -57,4 +57,4 @@ def test_no_clock_of_the_demo_is_refused(found):
     assert not [clock.logger for clock in ingested.clocks if clock.status == "refused"]
     assert not [this.name for this in ingested.passes if this.refusal]
     odd = [this for this in ingested.passes if any("placements found" in n for n in this.notes)]
-    assert len(odd) <= 0.15 * sum(this.kind == "contact" for this in ingested.passes)
+    assert len(odd) <= 0.3 * sum(this.kind == "contact" for this in ingested.passes)
