@@ -51,7 +51,7 @@ class Surface:
 
 
 BEFORE = {
-    "worn-asphalt": Surface("Worn asphalt (control)", ("A1", "A2", "A3", "A4"), 0.120, 0.112,
+    "worn-asphalt": Surface("Worn asphalt", ("A1", "A2", "A3", "A4"), 0.120, 0.112,
                             0.129, 0.95, 0.010, 0.16, 0.03, (4.0, 4.0),
                             0.30, 0.0, 1.0, 35.0, 0.03, 0.8, 0.035, 0.006, 1300.0),
     "coated-court": Surface("Coated court", ("C1", "C2", "C3", "C4"), 0.110, 0.103, 0.117,

@@ -163,8 +163,9 @@ def geometry(some: tuple[Pass, ...]) -> dict[str, float | None]:
 
 
 def _minutes(grid: np.ndarray, time: np.ndarray, value: np.ndarray) -> np.ndarray:
-    """Return the mean of the values in each minute; NaN where there is none."""
+    """Return the mean of the values in each minute; NaN where most of its records are missing."""
     place = np.searchsorted(grid, time, side="right") - 1
     count = np.bincount(place, minlength=grid.size)
     sums = np.bincount(place, weights=value, minlength=grid.size)
-    return sums / np.where(count, count, np.nan)
+    enough = 2 * count > np.median(count[count > 0]) if count.any() else count > 0
+    return sums / np.where(enough, count, np.nan)
