@@ -146,7 +146,8 @@ def thermal(world: World, stays: list[Stay], covers: list[tuple[float, float]]) 
         swing, spot = np.zeros(local.size), np.zeros(local.size)
         absorbed = (1 - world.albedo(surface)[part]) * world.irradiance[part]
         last = 0.0
-        for start, stop in stay.dwells:
+        gone = stay.stop_s - stay.start_s + STEP_S  # lifted for good after the last placement
+        for start, stop in (*stay.dwells, (gone, gone)):
             lifted = (since >= last) & (since < start)
             phase = (since[lifted] - last) / max(start - last, STEP_S)
             swing[lifted] = -rng.uniform(10, 24) * np.sin(np.pi * phase)

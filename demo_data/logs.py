@@ -11,12 +11,15 @@ from heads import Log, Stay
 from yard import SITE, Day, stream
 
 ZONE = ZoneInfo(str(SITE["zone"]))
-PREAMBLE = "Pellowick Yard, station on the mast, 2 m\nair in °C, rh in %, wind in m/s\n"
+PREAMBLE = "Pellowick Yard, station on the mast\nheight 2 m; means of a minute\n"
 
 
 @dataclass(frozen=True)
 class Dialect:
-    """How one logger writes: header, separator, decimal sign, decimals, time format, zone."""
+    """How one logger writes: header, separator, decimal sign, decimals, time format, zone.
+
+    A separator within the time format puts date and time into columns of their own.
+    """
 
     files: tuple[str, ...]
     names: tuple[str, ...]
@@ -28,6 +31,7 @@ class Dialect:
     preamble: str = ""
     encoding: str = "utf-8"
     missing: str = "-9999"
+    units: tuple[str, ...] = ()  # in a line of their own, under the header
 
 
 DIALECTS = {
@@ -39,8 +43,9 @@ DIALECTS = {
                           "%Y-%m-%d %H:%M:%S"),
     "rednir-ground": Dialect(("rednir_ground.csv",), ("time", "red_ground", "nir_ground"), (0, 0),
                              "%Y-%m-%dT%H:%M:%S{offset}", ZONE, "\t"),
-    "weather": Dialect(("weather.csv",), ("time", "air", "humidity", "wind"), (2, 1, 2),
-                       "%d.%m.%Y %H:%M", None, ";", True, PREAMBLE, "windows-1252"),
+    "weather": Dialect(("weather.csv",), ("date", "time", "air", "humidity", "wind"), (2, 1, 2),
+                       "%d.%m.%Y;%H:%M", None, ";", True, PREAMBLE, "windows-1252",
+                       units=("", "UTC", "°C", "%", "m/s")),
 }
 
 
@@ -143,7 +148,8 @@ def spoil(log: Log, lines: list[str], faults: Faults) -> list[str]:
 def files(log: Log, lines: list[str]) -> dict[str, bytes]:
     """Return the file or files of one logger, name to content."""
     dialect = DIALECTS[log.logger]
-    header = dialect.preamble + dialect.separator.join(dialect.names)
+    header = dialect.preamble + "\n".join(
+        dialect.separator.join(line) for line in (dialect.names, dialect.units) if line)
     share = -(-len(lines) // len(dialect.files))
     return {name: "\n".join([header, *lines[i * share:(i + 1) * share], ""]).encode(
         dialect.encoding) for i, name in enumerate(dialect.files)}

@@ -68,6 +68,9 @@ REASONS = (
     Reason("too little light", "the irradiance is below the floor", "engineering default"),
     Reason("no partner", "what the reading is paired with has no usable record at this time",
            "field practice"),
+    Reason("foreign ground in view", "the patch filled too little of the view there",
+           "engineering default"),
+    Reason("turn", "the walk turned from one lane to the next", "engineering default"),
     Reason("pass edge", "within the uncertainty of the pass's start or stop",
            "engineering default"),
     Reason("between placements", "the head was not settled on the surface",
@@ -78,7 +81,8 @@ FLAGS = (
     Reason("extremely rare irradiance", "the irradiance is above the extremely rare limit; at "
            "several records a second the edge of a cloud can do this",
            "Long & Shi 2008, extremely rare limits (made for one-minute means)", "flag"),
-    Reason("end of range", "the reading stands at the end of its quantity's range",
+    Reason("end of range", "the reading stands at the end of its column's range, or of its "
+           "quantity's",
            "engineering default", "flag"),
     Reason("step", "the reading jumps from one second to the next, away from the pass's edges",
            "engineering default", "flag"),
@@ -90,10 +94,14 @@ FLAGS = (
            "readings", "engineering default", "flag"),
     Reason("brighter than the sky", "more red or near-infrared light comes up than down: check "
            "the gains, and which head looks up", "engineering default", "flag"),
+    Reason("negative reflectance", "less red or near-infrared light comes up than under the cap; "
+           "kept, or the mean of what is left would be too large", "engineering default", "flag"),
 )
 CHECKS = {reason.name: reason for reason in (*REASONS, *FLAGS)}
 BIT = {reason.name: np.uint32(1 << i) for i, reason in enumerate(REASONS)}
-NOT_A_FAULT = BIT["pass edge"] | BIT["between placements"]
+# not over the pass's patch: no part of its whole either
+OFF_PATCH = BIT["pass edge"] | BIT["turn"] | BIT["foreign ground in view"]
+NOT_A_FAULT = OFF_PATCH | BIT["between placements"]
 LAST_FAULT = [r.name for r in REASONS].index("spike")  # of the reading alone, in or out of a pass
 
 

@@ -33,7 +33,7 @@ def check(path: Path) -> list[str]:
     logs, found = read_logs(parameters)
     ingested = align(parameters, logs, [*faults, *found], known.doubtful)
     return [f"{parameters.name}: {parameters.campaign.title}",
-            *_loggers(parameters, ingested), *_sheet(ingested),
+            *_loggers(parameters, ingested), *_clocks(ingested), *_sheet(ingested),
             *(f"  {notice}" for notice in (*ingested.sheet.notices, *parameters.notes)),
             "  no fault found"]
 
@@ -65,6 +65,20 @@ def _loggers(parameters: Parameters, ingested: Ingested) -> list[str]:
         counts["repeated head, no record"] = sum(file.head_lines for file in log.files)
         told = ", ".join(f"{n} {reason}" for reason, n in counts.items() if n)
         lines += [f"    lines not as declared: {told}"] if told else []
+    return lines
+
+
+def _clocks(ingested: Ingested) -> list[str]:
+    """Return for each clock how it was set and how well, or why it was refused."""
+    lines = []
+    for clock in ingested.clocks:
+        if clock.status == "refused":
+            told = f"refused: {clock.refusal}"
+        else:
+            drift = f", {clock.drift_ppm:+.0f} ppm" if clock.drift_ppm else ""
+            told = f"{clock.method}: {clock.offset_s:+.2f} s{drift}, u {clock.u_s:.2g} s" + (
+                f"; {clock.note}" if clock.status != "ok" and clock.note else "")
+        lines.append(f"  clock of {clock.logger}: {told}")
     return lines
 
 

@@ -127,8 +127,9 @@ def _verify(folder: Path, rerun: bool) -> None:
     from surveykit.verifying import verify
 
     _heal(folder)
-    for line in verify(folder.resolve(), rerun=rerun):
-        print(line)  # noqa: T201
+    say = partial(print, flush=True)
+    for line in verify(folder.resolve(), rerun=rerun, say=say):
+        say(line)
 
 
 def _netcdf(folder: Path) -> None:

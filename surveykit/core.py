@@ -166,6 +166,11 @@ TABLES: dict[str, dict[str, str]] = {
         "campaign": "text", "surface": "text", "pass": "text", "quantity": "text",
         "kind": "text", "unit": "text", "step": "text", "value": "number",
     },
+    "histograms": {
+        "campaign": "text", "surface": "text", "patch": "text", "pass": "text",
+        "quantity": "text", "kind": "text", "unit": "text", "lower": "number", "upper": "number",
+        "n_records": "count",
+    },
     "derived": {
         "campaign": "text", "surface": "text", "product": "text", "form": "text", "unit": "text",
         "value": "number", "u": "number", "lower": "number", "upper": "number",

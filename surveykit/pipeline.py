@@ -49,6 +49,7 @@ class Evidence:
 
     estimates: tuple[PassEstimate, ...]
     tables: Tables
+    draws: Draws
     pool: Callable[[], tuple[pooling.Group, ...]] = field(repr=False)
 
     @cached_property
@@ -146,19 +147,22 @@ def surfaces(survey: Survey) -> Evidence:
         estimates = handing.from_frames(frames, passes)
         tables = {key: load_table(folder / f"{key}.npz")
                   for key in ("surfaces", "budget", "passes", "dwells", "corrections",
-                              "derived", "geometry")}
-        return Evidence(estimates, tables, lambda: _groups(survey, estimates, survey.draws()))
+                              "histograms", "derived", "geometry")}
+        draws = Draws(survey.draws().seed, load_facts(folder / "draws.json")["draws"])
+        return Evidence(estimates, tables, draws, lambda: _groups(survey, estimates, draws))
     estimates = estimate_all(day(survey), ingest(survey).passes)
-    groups = _groups(survey, estimates, survey.draws())
+    groups, draws = pooling.settled(lambda some: _groups(survey, estimates, some), survey.draws(),
+                                    coverage, survey.campaign.settings.statistics.stable_digits)
     tables = pooling.pass_tables(name, estimates) | {
         "surfaces": pooling.surface_table(groups, coverage, survey.campaign.relevant_change),
         "budget": pooling.budget_table(groups),
-        "derived": derived(day(survey), groups, survey.draws(), coverage),
+        "derived": derived(day(survey), groups, draws, coverage),
         "geometry": geometry(day(survey), estimates)}
     for key, frame in (tables | handing.to_frames(estimates)).items():
         save_table(folder / f"{key}.npz", frame)
+    save_facts(folder / "draws.json", {"draws": draws.size})
     _finish(folder, survey.key)
-    return Evidence(estimates, tables, lambda: groups)
+    return Evidence(estimates, tables, draws, lambda: groups)
 
 
 @_once
@@ -169,7 +173,8 @@ def comparison(survey: Survey) -> Tables:
     key = hashlib.sha256("".join(s.key for s in (survey, *earlier)).encode()).hexdigest()
     if _fresh(folder, key):
         return {name: load_table(folder / f"{name}.npz") for name in COMPARED}
-    draws = survey.draws()
+    size = max(surfaces(one).draws.size for one in (survey, *earlier))
+    draws = Draws(survey.draws().seed, size)
     now = _date(survey, draws)
     then = tuple(_date(one, draws) for one in earlier)
     _refuse_later(now, then)
@@ -198,10 +203,9 @@ def all_tables(survey: Survey) -> Tables:
 
 
 def _date(survey: Survey, draws: Draws) -> Date:
-    evidence, own = surfaces(survey), survey.draws()
-    found = evidence.groups
-    if (own.seed, own.size) != (draws.seed, draws.size):
-        found = _groups(survey, evidence.estimates, draws)
+    evidence = surfaces(survey)
+    alike = (evidence.draws.seed, evidence.draws.size) == (draws.seed, draws.size)
+    found = evidence.groups if alike else _groups(survey, evidence.estimates, draws)
     return Date(survey.parameters, {group.key: group for group in found})
 
 

@@ -7,13 +7,15 @@ import hashlib
 import io
 import json
 import shutil
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
+from contextlib import ExitStack
 from pathlib import Path
 from typing import Any
 
 from surveykit import facts, pipeline
 from surveykit.core import PUBLISHED, TABLES, InputError
 from surveykit.intake.params import find_root
+from surveykit.locking import locked
 from surveykit.opening import Survey, open_file
 from surveykit.report.datapackage import csv_text
 
@@ -28,7 +30,8 @@ def outputs(folder: Path) -> dict[str, str]:
     return {path.relative_to(folder).as_posix(): _sha256(path) for path in files}
 
 
-def verify(folder: Path, *, rerun: bool = False) -> list[str]:
+def verify(folder: Path, *, rerun: bool = False,
+           say: Callable[[str], None] | None = None) -> list[str]:
     """Return what was found in order, one line each.
 
     Parameters
@@ -36,7 +39,9 @@ def verify(folder: Path, *, rerun: bool = False) -> list[str]:
     folder : Path
         A report folder, reports/ID.
     rerun : bool
-        Whether to compute the tables again and compare every cell.
+        Whether to compute the tables again and compare every cell; waits for a run under way.
+    say : callable, optional
+        Takes the line that tells which run is waited for.
 
     Raises
     ------
@@ -59,7 +64,7 @@ def verify(folder: Path, *, rerun: bool = False) -> list[str]:
         raise InputError(*faults)
     files = len(kept["inputs"]) + len(kept["earlier_inputs"])
     lines = [f"{shown}: {files} input files, {len(PUBLISHED)} tables and the page belong together"]
-    return [*lines, *_again(survey, folder, kept, shown)] if rerun else lines
+    return [*lines, *_again(survey, folder, kept, shown, say)] if rerun else lines
 
 
 def params_file(folder: Path) -> str:
@@ -113,12 +118,15 @@ def _other_inputs(survey: Survey, kept: dict[str, Any], shown: str) -> Iterator[
                f"run again: surveykit run {kept['params_file']}")
 
 
-def _again(survey: Survey, folder: Path, kept: dict[str, Any], shown: str) -> list[str]:
+def _again(survey: Survey, folder: Path, kept: dict[str, Any], shown: str,
+           say: Callable[[str], None] | None) -> list[str]:
     """Compute every stage again from the raw files and compare each cell of the tables."""
-    for one in (survey, *(open_file(path) for path in survey.parameters.earlier)):
-        for stage in pipeline.STAGES:
-            shutil.rmtree(one.run_folder / stage, ignore_errors=True)
-    tables = pipeline.all_tables(survey)
+    with ExitStack() as locks:
+        for one in (survey, *(open_file(path) for path in survey.parameters.earlier)):
+            locks.enter_context(locked(one.parameters.root, one.campaign.campaign, say=say))
+            for stage in pipeline.STAGES:
+                shutil.rmtree(one.run_folder / stage, ignore_errors=True)
+        tables = pipeline.all_tables(survey)
     moved = [f"{shown}/tables/{name}.csv: {line}" for name, frame in tables.items()
              for line in moved_cells((folder / "tables" / f"{name}.csv").read_text("utf-8"),
                                      csv_text(frame, name), name)]

@@ -4,12 +4,15 @@ from __future__ import annotations
 
 import json
 import shutil
+import time
+from concurrent.futures import ThreadPoolExecutor
 
 import pytest
 from projects import DEMO, surveykit
 
 from surveykit import facts
 from surveykit.core import PUBLISHED, InputError
+from surveykit.locking import locked
 from surveykit.verifying import moved_cells, verify
 
 NAME = DEMO[0]
@@ -111,6 +114,19 @@ def test_rerun_computes_the_same_tables(project, report):
     assert marker.stat().st_mtime_ns > then  # computed, not taken from the last run
     assert "no cell of the tables moved" in lines[1]
     assert "the same then and now" in lines[2]
+
+
+def test_rerun_waits_for_a_run_under_way(project, report):
+    said: list[str] = []
+    with ThreadPoolExecutor(1) as pool:
+        with locked(project, NAME):
+            again = pool.submit(verify, report, rerun=True, say=said.append)
+            limit = time.monotonic() + 30
+            while not said and time.monotonic() < limit:
+                time.sleep(0.02)
+            assert said[0].startswith(f"{NAME}: waits for another run of it")
+            assert not again.done()
+        assert "no cell of the tables moved" in again.result(timeout=60)[1]
 
 
 def test_rerun_lists_cells_that_moved_with_versions(report, monkeypatch):

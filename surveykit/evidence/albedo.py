@@ -7,7 +7,7 @@ import numpy as np
 from surveykit.core import FloatArray, Input
 from surveykit.evidence.conditions import NS, Day, Sky
 from surveykit.evidence.corrections import Correction, correct
-from surveykit.evidence.heads import class_inputs, directional_limit, hidden_zero_u
+from surveykit.evidence.heads import class_inputs, directional_inputs, limits
 from surveykit.evidence.intercalibration import ratio_input, swapped
 from surveykit.evidence.parts import (
     NotEvaluated,
@@ -18,14 +18,23 @@ from surveykit.evidence.parts import (
     pass_scope,
     raw_series,
     series,
+    skew,
     zero,
 )
-from surveykit.evidence.views import albedo_around, foreign_ground, lane_effect, own_shade, treat
+from surveykit.evidence.views import (
+    albedo_around,
+    foreign_ground,
+    lane_effect,
+    lean_deg,
+    own_shade,
+    treat,
+)
 from surveykit.intake.passes import Pass
-from surveykit.physics.shortwave import directional_u, ratio_of_sums
+from surveykit.physics.shortwave import levelling_error, ratio_of_sums
 from surveykit.statistics.series import mean_of_series
 
 GROUND_SHARE = 1 / 3  # of the sky head's hidden zero, for the head that looks at the ground
+EVERY_WAY_DEG = np.arange(0.0, 360.0, 45.0)  # a hand may lean any way
 LOWEST = 0.02  # albedo below which something is wrong, as no ground is so dark
 
 
@@ -42,23 +51,19 @@ def albedo(day: Day, this: Pass, sky: Sky) -> PassValue:
     _refuse_impossible(ratio)
     stated = day.parameters.campaign.surfaces[this.surface].around is not None
     inputs, more = treat(inputs, ratio, settings, stated)
-    scope = f"{day.name}:{this.surface}"
     steps = [Correction("dark readings", {"up": float(raw[0].mean()), "down": float(raw[1].mean())},
-                        settings.correct_darks, "albedo.correct_darks", f"{scope}:darks"),
-             Correction("gain ratio", {"gain_ratio": 1.0}, True, "albedo.correct_gain_ratio",
-                        f"{scope}:gain ratio"),
-             Correction("surroundings", {"surroundings_corrected": 0.0}, True,
-                        "albedo.correct_surroundings", f"{scope}:surroundings"),
-             Correction("own shade", {"shade_corrected": 0.0}, True, "albedo.correct_self_shade",
-                        f"{scope}:shade")]
+                        "albedo.correct_darks", settings.correct_darks),
+             Correction("gain ratio", {"gain_ratio": 1.0}, "albedo.correct_gain_ratio"),
+             Correction("surroundings", {"surroundings_corrected": 0.0},
+                        "albedo.correct_surroundings"),
+             Correction("own shade", {"shade_corrected": 0.0}, "albedo.correct_self_shade")]
     if settings.normalise_zenith:
         inputs |= _normalised(day, this, zenith)
         steps.append(Correction(f"sun at {settings.normalise_zenith_deg:g} degrees zenith",
-                                {"reference_zenith_deg": zenith}, True, "albedo.normalise_zenith",
-                                f"{scope}:zenith"))
+                                {"reference_zenith_deg": zenith}, "albedo.normalise_zenith"))
     done = [s for s in steps if not s.on or any(
         inputs[name].value != value for name, value in s.without.items())]
-    made = correct("albedo", inputs, done)
+    made = correct("albedo", inputs, done, f"{day.name}:{this.surface}:albedo")
     value = made.steps[-1][1]
     if value < LOWEST:
         more += ("darker than any ground",)
@@ -67,7 +72,7 @@ def albedo(day: Day, this: Pass, sky: Sky) -> PassValue:
     return PassValue(float(ratio_of_sums(*raw)), value, within.u, within.n_eff,
                      tuple(made.inputs.values()),
                      calibration_flags(day, [head_up, head_down]) + flags + more + made.flags,
-                     made.steps)
+                     made.steps, records=residual)
 
 
 def _inputs(day: Day, this: Pass, sky: Sky, up: FloatArray,
@@ -79,19 +84,16 @@ def _inputs(day: Day, this: Pass, sky: Sky, up: FloatArray,
     foreign, more = foreign_ground(day, this, head_up, around)
     shade, most = own_shade(day, this, head_up, sky, zenith)
     gains, last = _gains(day, this)
-    hidden = hidden_zero_u(head_down, settings)
+    hidden = limits(day, head_down).hidden_zero_u
     inputs = [
         fixed("up", float(up.mean())), fixed("down", float(down.mean())), *foreign, *shade, *gains,
         zero(day, head_up, "up_zero_error", hidden * GROUND_SHARE),
         zero(day, head_down, "down_zero_error", hidden),
-        Input("directional_error", 0.0, settings.beam_fraction * float(
-            directional_u(zenith, directional_limit(head_down, settings))),
-              f"{head_down.gain_scope}:direction", "directional response of the upper head",
-              "rectangular"),
-        Input("levelling_error", 0.0, settings.beam_fraction * float(
-            np.tan(np.radians(zenith)) * np.radians(settings.levelling_u_deg) / np.sqrt(2)),
+        *directional_inputs(day, head_down, zenith),
+        Input("levelling_error", 0.0, float(np.sqrt(np.mean(levelling_error(
+            zenith, settings.levelling_u_deg, EVERY_WAY_DEG, settings.beam_fraction) ** 2))),
               pass_scope(day, this), "levelling of the upper head in the hand"),
-        *class_inputs(day, this, head_up, head_down),
+        *skew(day, this, "shortwave", "down_per_s"), *class_inputs(day, this, head_up, head_down),
     ]
     flags += more + most + last + _circumstances(day, this, down, zenith)
     return {i.name: i for i in inputs}, flags
@@ -129,8 +131,14 @@ def _circumstances(day: Day, this: Pass, down: FloatArray, zenith: float) -> tup
                   "indicative only",)
     elif zenith > settings.zenith_standard_deg:
         flags += (f"sun lower than {90 - settings.zenith_standard_deg:.0f} degrees",)
-    if abs(lane_effect(day, this, down)) > settings.lane_effect_max:
-        flags += ("the upper head leans with the lanes' direction",)
+    lean = lane_effect(day, this, down)
+    if abs(lean) > settings.lane_effect_max:
+        flags += (f"the upper head leans with the lanes' direction, by "
+                  f"{lean_deg(lean, zenith, settings.beam_fraction):.1f} degrees or more",)
+    elif this.lanes % 2 and this.lanes > 1:
+        flags += ("odd number of lanes: a lean of the upper head does not cancel",)
+    if not all(c.spectrally_flat is not False for c in heads):
+        flags += ("response of the heads is not flat: do not compare green with grey ground",)
     if this.lanes and np.isfinite(this.length_m):
         speed = this.length_m * this.lanes / ((this.stop_ns - this.start_ns) / NS)
         if speed * max(c.time_constant_s for c in heads) > this.length_m / 4:

@@ -3,33 +3,28 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from functools import partial
 
 import numpy as np
 
 from surveykit.core import Input
-from surveykit.evidence.conditions import NS, Day, Sky, Span
+from surveykit.evidence.brightness import seen_in_rows, window_of
+from surveykit.evidence.conditions import Day, Sky, Span
 from surveykit.evidence.models import background
-from surveykit.evidence.parts import NotEvaluated, fixed, need
+from surveykit.evidence.parts import fixed, need
 from surveykit.intake.params import Channel
 from surveykit.intake.sheet_words import Entry
 from surveykit.physics.emissivity import foil_background
+from surveykit.physics.propagation import combined_u
 from surveykit.physics.surroundings import (
     hemispheric_emissivity,
     sky_emissivity_window,
     sky_radiance,
     vapour_pressure_hpa,
 )
-from surveykit.physics.thermal import Band, band
 
 CLOUDY = ("mixed", "diffuse")
 Found = tuple[dict[str, Input], tuple[str, ...]]
-
-
-def window_of(channel: Channel) -> Band:
-    """Return the band of an infrared channel, or refuse the pass that needs it."""
-    if channel.band_um is None:
-        raise NotEvaluated(f"band_um of {channel.logger}, {channel.column} is missing")
-    return band(*channel.band_um)
 
 
 def sky_inputs(day: Day, this: Span, sky: Sky, channel: Channel) -> Found:
@@ -76,7 +71,8 @@ def surroundings(day: Day, this: Span, sky: Sky, channel: Channel) -> Found:
         walls = Input("walls_k", given.value + 273.15, given.u, f"{day.name}:walls",
                       "temperature of what hides the sky, as stated")
         emissivity = site.walls.emissivity
-    inputs |= {"walls_k": walls, "walls_emissivity": fixed("walls_emissivity", emissivity)}
+    inputs |= {"walls_k": walls, "walls_emissivity": fixed("walls_emissivity", emissivity),
+               "background_factor": fixed("background_factor", 1.0)}
     return _with_foil(day, this, channel, inputs, flags)
 
 
@@ -86,33 +82,28 @@ def _with_measured_sky(day: Day, this: Span, channel: Channel, inputs: dict[str,
 
     A sky row is read at the zenith; the model's own ratio makes it hemispheric.
     """
-    settings = day.parameters.campaign.settings.temperature
+    u_own = day.parameters.campaign.settings.temperature.sky_measured_u
     window = window_of(channel)
-    at, ratios, below = [], [], False
-    for entry, seen in _rows(day, "sky", channel):
-        if seen is None:
-            below = True
-            continue
+    ratios, below = {}, False
+    for entry, seen in seen_in_rows(day, "sky", channel):
         air, humidity = (day.weather(q, entry) for q in ("air_temperature", "relative_humidity"))
-        if air is None or humidity is None:
+        below |= seen is None
+        if seen is None or air is None or humidity is None:
             continue
         zenith = np.minimum(sky_emissivity_window(
             air.value, vapour_pressure_hpa(air.value, humidity.value)), 1.0)
         model = sky_radiance(window, air.value, humidity.value)
-        whole = window.radiance(seen) * hemispheric_emissivity(zenith) / zenith
-        at.append((entry.start_ns + entry.stop_ns) / 2)
-        ratios.append(float(whole / model))
+        ratios[entry] = float(
+            window.radiance(seen) * hemispheric_emissivity(zenith) / zenith / model)
     if below:
         flags += ("sky reading below the instrument's range",)
     if not ratios:
         return inputs, flags
-    factor = float(np.interp((this.start_ns + this.stop_ns) / 2, at, ratios))
-    spread = float(np.ptp(ratios)) / np.sqrt(12.0)
+    factor, spread = _between(ratios, this)
     held = {name: i for name, i in inputs.items() if not name.startswith("cloud")}
     held |= {name: fixed(name, held[name].value) for name in ("air_k", "relative_humidity")}
-    held["sky_factor"] = Input(
-        "sky_factor", factor, factor * float(np.hypot(settings.sky_measured_u, spread / factor)),
-        f"{day.name}:sky", "sky radiance measured at the zenith")
+    held["sky_factor"] = Input("sky_factor", factor, float(np.hypot(u_own * factor, spread)),
+                               f"{day.name}:sky", "sky radiance measured at the zenith")
     return held, tuple(f for f in flags if not f.startswith(("cloud in", "sky model")))
 
 
@@ -122,8 +113,8 @@ def _with_foil(day: Day, this: Span, channel: Channel, inputs: dict[str, Input],
     settings = day.parameters.campaign.settings.temperature
     window = window_of(channel)
     values = {name: i.value for name, i in inputs.items()}
-    at, ratios, errors = [], [], []
-    for entry, seen in _rows(day, "foil", channel):
+    ratios, errors = {}, []
+    for entry, seen in seen_in_rows(day, "foil", channel):
         air = day.weather("air_temperature", entry)
         if seen is None or (air is None and np.isnan(entry.reading)):
             flags += ("foil reading outside the instrument's range",) if seen is None else ()
@@ -135,37 +126,24 @@ def _with_foil(day: Day, this: Span, channel: Channel, inputs: dict[str, Input],
         then = values | ({} if air is None or humidity is None else {
             "air_k": air.value, "relative_humidity": humidity.value})
         model = float(background(then, window))
-        rho = settings.foil_reflectance
-        measured = float(foil_background(window, seen, own_k, rho))
-        moved = [float(foil_background(window, seen + channel.u_offset, own_k, rho)) - measured,
-                 float(foil_background(window, seen, own_k + own_u, rho)) - measured,
-                 float(foil_background(window, seen, own_k, rho - settings.foil_reflectance_u))
-                 - measured]
-        at.append((entry.start_ns + entry.stop_ns) / 2)
-        ratios.append(measured / model)
-        errors.append(float(np.linalg.norm(moved)) / model)
+        known = seen, own_k, settings.foil_reflectance
+        ratios[entry] = float(foil_background(window, *known)) / model
+        errors.append(combined_u(partial(foil_background, window), known, (
+            channel.u_offset, own_u, settings.foil_reflectance_u)) / model)
     if not ratios:
         return inputs, flags
-    factor = float(np.interp((this.start_ns + this.stop_ns) / 2, at, ratios))
-    u = float(np.hypot(np.mean(errors), np.ptp(ratios) / np.sqrt(12.0)))
+    factor, spread = _between(ratios, this)
     held = {name: fixed(name, i.value) for name, i in inputs.items()}
-    held["background_factor"] = Input("background_factor", factor, u, f"{day.name}:foil",
-                                      "background measured with a diffuse foil")
+    held["background_factor"] = Input(
+        "background_factor", factor, float(np.hypot(np.mean(errors), spread)),
+        f"{day.name}:foil", "background measured with a diffuse foil")
     return held, tuple(f for f in flags if not f.startswith(
         ("cloud in", "sky model", "walls not", "sky reading")))
 
 
-def _rows(day: Day, kind: str, channel: Channel) -> list[tuple[Entry, float | None]]:
-    """Return the sheet's rows of a kind for this head, each with its mean good reading [K].
-
-    None of a head that was logged with an emissivity other than 1: its readings are no brightness.
-    """
-    found: list[tuple[Entry, float | None]] = []
-    if channel.emissivity_setting != 1.0:
-        return found
-    for entry in day.sheet.entries:
-        if entry.entry == kind and entry.instrument in ("", channel.logger):
-            edge = round(entry.edge_u_s * NS) + round(5 * channel.time_constant_s * NS)
-            _, value = day.readings(channel, entry.start_ns + edge, entry.stop_ns - edge)
-            found.append((entry, float(value.mean()) if value.size else None))
-    return found
+def _between(ratios: dict[Entry, float], this: Span) -> tuple[float, float]:
+    """Return rows' ratios interpolated to a pass, and the u of their whole course, rectangular."""
+    at = [(row.start_ns + row.stop_ns) / 2 for row in ratios]
+    values = list(ratios.values())
+    return (float(np.interp((this.start_ns + this.stop_ns) / 2, at, values)),
+            float(np.ptp(values)) / np.sqrt(12.0))

@@ -33,7 +33,8 @@ def changes_between(now: Date, then: Date, draws: Draws) -> list[dict[str, Any]]
         if quantity == "albedo" and key not in now.groups and any(
                 k[:2] == key[:2] for k in now.groups):
             continue  # said once, from the side of this date
-        rows += _rows(now, then, key, control or "", draws)
+        rows += [row if row["judged"] else row | {"result": None}  # whose draws nobody needs
+                 for row in _rows(now, then, key, control or "", draws)]
     return rows
 
 

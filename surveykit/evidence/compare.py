@@ -48,11 +48,9 @@ def differences(date: Date, draws: Draws) -> pd.DataFrame:
             judged = [row for row in part if row["verdict"] != NOT_EVALUATED]
             for row, (lower, upper) in zip(judged, ends, strict=True):
                 row |= {"lower_all": float(lower), "upper_all": float(upper)}
-        rows += some
+        rows += _without(some, "result", "dof", "p")
     for row in rows:
         row["coverage"] = settings.statistics.coverage
-        for extra in ("dof", "p", "result"):
-            row.pop(extra, None)
     return table("differences", rows)
 
 
@@ -95,12 +93,9 @@ def changes(now: Date, earlier: tuple[Date, ...], draws: Draws) -> pd.DataFrame:
             for part in _families(now, others, lambda row: (row["surface"],)):
                 judge(part, "change", now, quantity)
             _null_test(checked, others, now.parameters.campaign.comparison.control or "")
-        rows += some
-    coverage = now.parameters.campaign.settings.statistics.coverage
+        rows += _without(some, "result", "dof", "p", "p_adjusted", "judged")
     for row in rows:
-        row["coverage"] = coverage
-        for extra in ("dof", "p", "p_adjusted", "judged", "result"):
-            row.pop(extra, None)
+        row["coverage"] = now.parameters.campaign.settings.statistics.coverage
     return table("changes", rows)
 
 
@@ -112,13 +107,18 @@ def judge(rows: list[dict[str, Any]], name: str, date: Date, quantity: str) -> N
     open_rows = [row for row in rows if row["verdict"] == ""]
     apart = holm([row["p"] for row in open_rows])
     alike = holm([max(equivalence_p(row[name], row["u"], row["dof"], relevant),
-                      float(np.mean(row["result"].total >= relevant)),
-                      float(np.mean(row["result"].total <= -relevant))) for row in open_rows])
+                      float(np.mean(row["result"].judged >= relevant)),
+                      float(np.mean(row["result"].judged <= -relevant))) for row in open_rows])
     for row, p, same in zip(open_rows, apart, alike, strict=True):
         row["p_adjusted"] = float(p)
         row["verdict"] = verdict(row[name], float(p), relevant, coverage=coverage,
                                  p_equivalent=float(same))
         row["could_have_missed"] = could_have_missed(row["u"], row["dof"], coverage=coverage)
+
+
+def _without(rows: list[dict[str, Any]], *keys: str) -> list[dict[str, Any]]:
+    """Return the rows without what only their verdicts needed; their draws are let go."""
+    return [{name: x for name, x in row.items() if name not in keys} for row in rows]
 
 
 def _families(date: Date, rows: list[dict[str, Any]], who: Any) -> list[list[dict[str, Any]]]:

@@ -33,11 +33,12 @@ class Span(Protocol):
 
 @dataclass(frozen=True)
 class Dark:
-    """Dark readings of one channel: times, means and the uncertainty of what is subtracted."""
+    """Dark readings of one channel: times, means, the u of what is subtracted, their scatter."""
 
     time_ns: FloatArray
     value: FloatArray
     u: float
+    sd: float
 
 
 @dataclass(frozen=True)
@@ -125,7 +126,7 @@ class Day:
         Their uncertainty holds the scatter within the rows and, as a rectangular distribution,
         the whole course between them.
         """
-        times, means, errors = [], [], []
+        times, means, errors, scatter = [], [], [], []
         for start, stop in windows(self.sheet, "dark", channel.logger, channel.quantity,
                                    certain=True):
             time, value = self.readings(
@@ -135,12 +136,13 @@ class Day:
                 times.append(float(time.mean()))
                 means.append(float(np.median(value)))
                 errors.append(mean_of_series(value, unit=channel.unit, method="dark").u)
+                scatter.append(float(value.std()))
         if not times:
             return None
         order = np.argsort(times)
         spread = float(np.ptp(means)) / np.sqrt(12.0)
         return Dark(np.array(times)[order], np.array(means)[order],
-                    float(np.hypot(np.mean(errors), spread)))
+                    float(np.hypot(np.mean(errors), spread)), float(np.mean(scatter)))
 
     def without_dark(self, channel: Channel, time_ns: IntArray,
                      values: FloatArray) -> FloatArray:

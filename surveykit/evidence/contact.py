@@ -3,15 +3,20 @@
 from __future__ import annotations
 
 from dataclasses import replace
-from typing import NamedTuple
 
 import numpy as np
 
 from surveykit.core import FloatArray, Input, IntArray
 from surveykit.evidence.backgrounds import sky_inputs
+from surveykit.evidence.brightness import housing
 from surveykit.evidence.conditions import NS, Day, Sky
 from surveykit.evidence.corrections import Correction, correct
-from surveykit.evidence.infrared import head_inputs, housing, per_record, setting_correction
+from surveykit.evidence.infrared import (
+    emissivity_corrections,
+    head_inputs,
+    per_record,
+    setting_correction,
+)
 from surveykit.evidence.parts import (
     HALF_WIDTH,
     NotEvaluated,
@@ -27,19 +32,17 @@ from surveykit.statistics.series import mean_of_series
 
 FEW_PLACEMENTS = 3
 FEWEST_RECORDS = 5  # of a placement, from two time constants on
+SENDS_NOTHING_K = 1.0  # of a body whose radiance is none to speak of
 TOUCH_TOLERANCE_K = 0.2  # of the readings about the law of cooling, back to the touch
 Spans = tuple[tuple[int, int], ...]
 
 
-class Placed(NamedTuple):
-    """Placements as fitted: their values before the touch, and the fit itself."""
-
-    values: FloatArray
-    fit: CoolingFit
-
-
 def contact(day: Day, this: Pass, sky: Sky) -> PassValue:
-    """Return a contact pass: the mean over its placements of the cavity's balance."""
+    """Return a contact pass: the mean over its placements of the cavity's balance.
+
+    Where the housing's temperature was not logged the reading is kept as it is, and all that
+    emissivity and a bore as warm as the air would do is allowed on either side.
+    """
     time, brightness = series(day, this, "brightness_temperature")
     spans = day.quality.passes[this.name].dwells
     if not spans:
@@ -52,13 +55,12 @@ def contact(day: Day, this: Pass, sky: Sky) -> PassValue:
     found = [mean_of_series(per[a:b], unit="K", method="contact") for a, b in spans]
     means = np.array([one.value for one in found])
     if placed is not None:
-        inputs["head_cooling_k"] = fixed(
-            "head_cooling_k", float(placed.values.mean() - means.mean()))
+        inputs["head_cooling_k"] = fixed("head_cooling_k", placed.mean_k - float(means.mean()))
     inputs |= _cooling_inputs(day, this, cooled, placed)
     flags += _cooling_flags(day, cooled, placed)
     raw = float(np.mean([brightness[a:b].mean() for a, b in spans]))
     inputs["brightness_k"] = fixed("brightness_k", raw)
-    values = means if placed is None else placed.values
+    values = means if placed is None else placed.before_k
     n = values.size
     u = float(values.std(ddof=1) / np.sqrt(n)) if n > 1 else float(per.std(ddof=1))
     if n < FEW_PLACEMENTS:
@@ -67,11 +69,12 @@ def contact(day: Day, this: Pass, sky: Sky) -> PassValue:
     def over_placements(some: FloatArray) -> float:
         return float(np.mean([np.broadcast_to(some, per.shape)[a:b].mean() for a, b in spans]))
 
-    made = correct("contact", inputs, _corrections(day, this, inputs, placed),
-                   series={"brightness_k": brightness}, reduce=over_placements)
-    rows = [(int(time[a]), int(time[b - 1]), value, one.u, one.n)
-            for (a, b), one, value in zip(spans, found, values, strict=False)]
-    return PassValue(raw, made.steps[-1][1], u, float(n), tuple(made.inputs.values()),
+    made = correct("contact", inputs, _corrections(day, inputs, placed is not None),
+                   f"{day.name}:{this.surface}:contact", series={"brightness_k": brightness}, reduce=over_placements)
+    final = made.steps[-1][1]
+    rows = [(int(time[a]), int(time[b - 1]), value, one.u, one.n) for (a, b), one, value in zip(
+        spans, found, values + (final - values.mean()), strict=False)]
+    return PassValue(raw, final, u, float(n), tuple(made.inputs.values()),
                      flags + made.flags, made.steps, tuple(rows))
 
 
@@ -80,11 +83,10 @@ def _inputs(day: Day, this: Pass, sky: Sky,
     inputs, flags = head_inputs(day, this, sky, brightness)
     channel = this.channels["brightness_temperature"]
     settings = day.parameters.campaign.settings.temperature
-    body = housing(day, this, channel)
-    if body is None:
-        raise NotEvaluated("the housing temperature of the contact head is missing")
-    bore, scope = channel.bore_emissivity, f"{day.name}:{this.surface}:rim gap"
     overhead, more = sky_inputs(day, this, sky, channel)
+    body = housing(day, channel, this.from_ns, this.to_ns) or fixed(
+        "body_k", overhead["air_k"].value)
+    bore, scope = channel.bore_emissivity, f"{day.name}:{this.surface}:rim gap"
     inputs |= overhead | {
         "body_k": replace(body, name="body_k"),
         "bore_emissivity": Input("bore_emissivity", bore.value, bore.u,
@@ -100,20 +102,18 @@ def _inputs(day: Day, this: Pass, sky: Sky,
     return inputs, flags + more
 
 
-def _corrections(day: Day, this: Pass, inputs: dict[str, Input],
-                 placed: Placed | None) -> list[Correction]:
-    settings = day.parameters.campaign.settings.temperature
-    scope = f"{day.name}:{this.surface}"
-    steps = [*setting_correction(day, this, inputs),
-             Correction("emissivity and bore", {"emissivity": 1.0}, settings.correct_surroundings,
-                        "temperature.correct_surroundings", f"{scope}:emissivity and bore")]
-    if settings.correct_rim_gap:
-        steps.append(Correction("rim gap", {"rim_gap": 0.0}, True, "temperature.correct_rim_gap",
-                                f"{scope}:rim gap"))
-    if placed is not None:
-        steps.append(Correction("cooling under the head", {"head_cooling_k": 0.0}, True,
-                                "temperature.correct_head_cooling", f"{scope}:head cooling"))
-    return steps
+def _corrections(day: Day, inputs: dict[str, Input], cooled: bool) -> list[Correction]:
+    gap = day.parameters.campaign.settings.temperature.correct_rim_gap
+    if inputs["body_k"].scope:
+        steps = emissivity_corrections(day, "emissivity", "bore", {"body_k": SENDS_NOTHING_K})
+    else:
+        gap, steps = False, [Correction(
+            "emissivity and bore", {"emissivity": 1.0}, "temperature.correct_bore", False,
+            "housing temperature not logged: emissivity and bore not corrected")]
+    return [*setting_correction(day, inputs), *steps,
+            *[Correction("rim gap", {"rim_gap": 0.0}, "temperature.correct_rim_gap")] * gap,
+            *[Correction("cooling under the head", {"head_cooling_k": 0.0},
+                         "temperature.correct_head_cooling")] * cooled]
 
 
 def _expected_cooling_k(day: Day, this: Pass, time: IntArray, spans: Spans) -> float:
@@ -140,7 +140,7 @@ def _sun_w_m2(day: Day, this: Pass) -> float:
 
 
 def _before_touch(day: Day, this: Pass, inputs: dict[str, Input],
-                  cooled: float) -> Placed | None:
+                  cooled: float) -> CoolingFit | None:
     """Fit the placements' course and return what stood before the touch, or None without sun.
 
     Raises
@@ -164,7 +164,7 @@ def _before_touch(day: Day, this: Pass, inputs: dict[str, Input],
         raise NotEvaluated(
             f"the fit of the cooling under the head leaves {fit.u_mean_k:.1f} K, more than "
             f"{settings.head_cooling_fit_max_u_k:g}: hold the head longer, or measure from above")
-    return Placed(fit.before_k, fit)
+    return fit
 
 
 def _courses(day: Day, this: Pass, tau: float) -> list[tuple[FloatArray, FloatArray]]:
@@ -192,7 +192,7 @@ def _courses(day: Day, this: Pass, tau: float) -> list[tuple[FloatArray, FloatAr
 
 
 def _cooling_inputs(day: Day, this: Pass, cooled: float,
-                    placed: Placed | None) -> dict[str, Input]:
+                    placed: CoolingFit | None) -> dict[str, Input]:
     settings, scope = day.parameters.campaign.settings.temperature, f"{day.name}:{this.surface}"
     if placed is None:
         return {"head_cooling_error": Input(
@@ -202,17 +202,17 @@ def _cooling_inputs(day: Day, this: Pass, cooled: float,
         "head_cooling_error": Input(
             "head_cooling_error", 0.0, settings.head_cooling_u_k, f"{scope}:head cooling",
             "form of the law of cooling under the head"),
-        "fit_left": Input("fit_left", 0.0, placed.fit.u_mean_k, pass_scope(day, this),
+        "fit_left": Input("fit_left", 0.0, placed.u_mean_k, pass_scope(day, this),
                           "fit of the cooling under the head")}
 
 
-def _cooling_flags(day: Day, cooled: float, placed: Placed | None) -> tuple[str, ...]:
+def _cooling_flags(day: Day, cooled: float, placed: CoolingFit | None) -> tuple[str, ...]:
     settings = day.parameters.campaign.settings.temperature
     if placed is None:
         if cooled > settings.head_cooling_max_k:
             raise NotEvaluated(f"the ground cools by about {cooled:.1f} K under the head, more "
                                f"than {settings.head_cooling_max_k:g} without the fit")
         return ("head cooling not corrected",) if cooled > 0 else ()
-    if placed.fit.rate < -3 * placed.fit.u_rate:
+    if placed.rate < -3 * placed.u_rate:
         return ("the ground warms under the head: the law of cooling does not hold",)
     return ()

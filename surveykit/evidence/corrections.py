@@ -19,15 +19,16 @@ Inputs = dict[str, Input]
 class Correction:
     """One correction of a model.
 
-    `without` holds the inputs that the correction changes, at the values that leave it out. `on`
-    is its switch in the settings, called `switch`; `scope` whom the effect belongs to.
+    `without` holds the inputs that the correction changes, at the values that leave it out;
+    `switch` is its key in the settings and `on` whether it is made; `why` says what else than its
+    switch keeps it from being made.
     """
 
     name: str
     without: Mapping[str, float]
-    on: bool
     switch: str
-    scope: str
+    on: bool = True
+    why: str = ""
 
 
 class Corrected(NamedTuple):
@@ -42,7 +43,7 @@ def _mean(values: FloatArray) -> float:
     return float(np.mean(values))
 
 
-def correct(model: str, inputs: Inputs, corrections: Sequence[Correction], *,
+def correct(model: str, inputs: Inputs, corrections: Sequence[Correction], owner: str, *,
             series: Mapping[str, Any] | None = None,
             reduce: Callable[[FloatArray], float] = _mean) -> Corrected:
     """Apply corrections in their order, the first step being the raw value.
@@ -55,6 +56,8 @@ def correct(model: str, inputs: Inputs, corrections: Sequence[Correction], *,
         By name, all corrections applied.
     corrections : sequence of Correction
         In the order of the table.
+    owner : str
+        Whom the effects belong to: the beginning of their scopes.
     series : mapping, optional
         Arrays that stand in for inputs of the same names, shape (n,): the records of the pass.
     reduce : callable
@@ -87,7 +90,7 @@ def correct(model: str, inputs: Inputs, corrections: Sequence[Correction], *,
         size = value(x | {name: full[name] for name in one.without}) - final
         held |= {name: fixed(name, number) for name, number in one.without.items()}
         key = f"{one.switch.rpartition('.')[2]}_left"
-        held[key] = Input(key, 0.0, abs(size) * HALF_WIDTH, one.scope,
-                          f"{one.name}: switched off", "rectangular")
-        flags.append(f"not corrected, settings.{one.switch} is off: {one.name}")
+        held[key] = Input(key, 0.0, abs(size) * HALF_WIDTH, f"{owner}:{one.name}",
+                          f"{one.name}: not corrected", "rectangular")
+        flags.append(one.why or f"not corrected, settings.{one.switch} is off: {one.name}")
     return Corrected(held, tuple(steps), tuple(flags))

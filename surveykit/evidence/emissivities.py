@@ -2,28 +2,35 @@
 
 from __future__ import annotations
 
+from functools import partial
 from typing import NamedTuple
 
 import numpy as np
 
-from surveykit.core import Input
-from surveykit.evidence.backgrounds import surroundings, window_of
-from surveykit.evidence.conditions import NS, Day, Sky
+from surveykit.core import FloatArray, Input
+from surveykit.evidence.backgrounds import surroundings
+from surveykit.evidence.brightness import seen_in, window_of
+from surveykit.evidence.conditions import Day, Sky
 from surveykit.evidence.models import background
 from surveykit.evidence.parts import BANDS, NotEvaluated, series, surface_scope
 from surveykit.intake.params import Channel
 from surveykit.intake.params.sections import Emissivity
 from surveykit.intake.sheet_words import Entry
-from surveykit.physics.emissivity import (
-    emissivity_of_pair,
-    emissivity_of_pair_u,
-    emissivity_of_two_backgrounds,
+from surveykit.physics.bands import Band
+from surveykit.physics.emissivity import emissivity_of_pair, emissivity_of_two_backgrounds
+from surveykit.physics.propagation import combined_u
+from surveykit.physics.vegetation import (
+    emissivity_logarithmic,
+    emissivity_mixed,
+    ndvi_of_sums,
+    vegetation_fraction,
 )
-from surveykit.physics.vegetation import emissivity_mixed, ndvi_of_sums, vegetation_fraction
 
+MOST = 1.03  # of a measured emissivity that is credible
 WIDE = 1.96  # half-width of 95 % of a normal distribution
 NOT_FOR = "never for synthetic turf, paint, metal, water or wet ground"
 LID_REACH_S = 30.0  # between the readings below a lid and below the sky
+LID_U_K = 0.1  # of both readings, against each other
 Found = tuple[Input, tuple[str, ...]]
 
 
@@ -80,7 +87,7 @@ def _measured(day: Day, surface: str, channel: Channel, sky: Sky, how: str) -> F
             f"emissivity is known to {u * WIDE:.2f} only from {len(far)} readings at "
             f"{np.mean([p.contrast_k for p in far]):.0f} K contrast, more than "
             f"{settings.pair_max_half_width:g}")
-    if not settings_allow(day, value):
+    if not settings.min_emissivity <= value <= MOST:
         raise NotEvaluated(f"the measured emissivity is {value:.2f}, outside what is supported")
     return Input("emissivity", min(value, 1.0), u, f"{day.name}:emissivity:{surface}:{how}",
                  f"emissivity measured on the day ({how.replace('_', ' ')}, {len(far)} readings, "
@@ -88,66 +95,48 @@ def _measured(day: Day, surface: str, channel: Channel, sky: Sky, how: str) -> F
                      f"emissivity measured: {value:.3f}, half-width {u * WIDE:.3f}",)
 
 
-def settings_allow(day: Day, emissivity: float) -> bool:
-    """Return whether an emissivity is credible and not that of bare metal."""
-    return day.parameters.campaign.settings.temperature.min_emissivity <= emissivity <= 1.03
+def _around(day: Day, row: Entry, sky: Sky, channel: Channel) -> tuple[Band, float, float]:
+    """Return the head's band, and what falls on the ground in it [W m-2 sr-1] with its u."""
+    window = window_of(channel)
+    inputs = surroundings(day, row, sky, channel)[0].values()
+    values, us = [i.value for i in inputs], [i.u for i in inputs]
+
+    def falls(*some: float) -> FloatArray:
+        return background(dict(zip((i.name for i in inputs), some, strict=True)), window)
+
+    return window, float(falls(*values)), combined_u(falls, values, us)
 
 
 def _pair(day: Day, entry: Entry, channel: Channel, sky: Sky) -> Pair | None:
     """Compare the reading of a spot with a reference thermometer's."""
-    seen = _seen(day, channel, entry.start_ns, entry.stop_ns, entry.edge_u_s)
+    seen = seen_in(day, channel, entry)
     if seen is None:
         return None
-    window = window_of(channel)
-    inputs, _ = surroundings(day, entry, sky, channel)
-    values = {name: i.value for name, i in inputs.items()}
-    around = float(background(values, window))
-    moved = [float(background(values | {i.name: i.value + i.u}, window)) - around
-             for i in inputs.values() if i.u > 0]
-    known = entry.reading + 273.15
-    u = emissivity_of_pair_u(
-        window, seen, known, around, u_brightness_k=channel.u_offset,
-        u_surface_k=entry.reading_u, u_background=float(np.linalg.norm(moved)))
-    return Pair(float(emissivity_of_pair(window, seen, known, around)), u,
-                known - float(window.temperature_k(around)))
+    window, around, u_around = _around(day, entry, sky, channel)
+    known = seen, entry.reading + 273.15, around
+    u = combined_u(partial(emissivity_of_pair, window), known,
+                   (channel.u_offset, entry.reading_u, u_around))
+    return Pair(float(emissivity_of_pair(window, *known)), u,
+                known[1] - float(window.temperature_k(around)))
 
 
 def _lid(day: Day, entry: Entry, channel: Channel, sky: Sky) -> Pair | None:
     """Compare the reading below a lid with that below the sky just before."""
-    settings = day.parameters.campaign.settings.temperature
-    below = _seen(day, channel, entry.start_ns, entry.stop_ns, entry.edge_u_s)
-    open_sky = _seen(day, channel, entry.start_ns - round(LID_REACH_S * NS), entry.start_ns,
-                     entry.edge_u_s)
+    below, open_sky = seen_in(day, channel, entry), seen_in(day, channel, entry,
+                                                            before_s=LID_REACH_S)
     if below is None or open_sky is None:
         return None
-    window = window_of(channel)
-    inputs, _ = surroundings(day, entry, sky, channel)
-    values = {name: i.value for name, i in inputs.items()}
-    around = float(background(values, window))
-    lid_k = entry.reading + 273.15
-    u_lid = entry.reading_u if np.isfinite(entry.reading_u) else settings.lid_u_k
-    known = [float(window.radiance(open_sky)), float(window.radiance(below)), around,
-             float(window.radiance(lid_k))]
-    errors = [float(window.radiance(open_sky + 0.1)) - known[0],
-              float(window.radiance(below + 0.1)) - known[1],
-              float(np.linalg.norm([float(background(values | {i.name: i.value + i.u}, window))
-                                    - around for i in inputs.values() if i.u > 0])),
-              float(window.radiance(lid_k + u_lid)) - known[3]]
-    value = float(emissivity_of_two_backgrounds(*known))
-    moves = [float(emissivity_of_two_backgrounds(*(
-        k + e * (n == place) for n, k in enumerate(known)))) - value
-        for place, e in enumerate(errors)]
-    return Pair(value, float(np.linalg.norm(moves)),
-                lid_k - float(window.temperature_k(around)))
+    window, around, u_around = _around(day, entry, sky, channel)
 
+    def found(open_k: float, below_k: float, around: float, lid_k: float) -> FloatArray:
+        first, second, lid = (window.radiance(t) for t in (open_k, below_k, lid_k))
+        return emissivity_of_two_backgrounds(first, second, around, lid)
 
-def _seen(day: Day, channel: Channel, start_ns: int, stop_ns: int,
-          edge_u_s: float) -> float | None:
-    if channel.emissivity_setting != 1.0:
-        return None  # no brightness: the instrument has corrected it in its own way
-    edge = round((min(edge_u_s, (stop_ns - start_ns) / NS / 4) + 5 * channel.time_constant_s) * NS)
-    _, value = day.readings(channel, start_ns + edge, stop_ns - edge)
-    return float(value.mean()) if value.size else None
+    u_lid = entry.reading_u if np.isfinite(entry.reading_u) else \
+        day.parameters.campaign.settings.temperature.lid_u_k
+    known = open_sky, below, around, entry.reading + 273.15
+    return Pair(float(found(*known)), combined_u(found, known, (LID_U_K, LID_U_K, u_around, u_lid)),
+                known[3] - float(window.temperature_k(around)))
 
 
 def _from_ndvi(day: Day, surface: str, entry: Emissivity) -> Found:
@@ -163,14 +152,21 @@ def _from_ndvi(day: Day, surface: str, entry: Emissivity) -> Found:
         raise NotEvaluated(f"surfaces.{surface}.emissivity is to come from NDVI, and no pass of "
                            "ndvi on it can be used")
     index = float(np.mean(found))
-    form = entry.form or "linear"
+    form, u = entry.form or "linear", float(entry.u or 0.0)
+    if form == "logarithmic":
+        value = float(emissivity_logarithmic(index))
+        if np.isnan(value):
+            raise NotEvaluated(f"NDVI {index:.2f} lies outside .157 to .727, where the emissivity "
+                               "logarithmic in NDVI was measured")
+        return Input("emissivity", value, u, f"{day.name}:emissivity:{surface}:ndvi",
+                     f"emissivity from NDVI {index:.2f} (logarithmic)"), (
+                         f"emissivity from NDVI (logarithmic): {NOT_FOR}",)
     ends = limits.bare_ndvi, limits.full_ndvi
     share = float(vegetation_fraction(index, *ends, form))
     steps = [float(vegetation_fraction(index, ends[0] + limits.cover_ndvi_u, ends[1], form)),
              float(vegetation_fraction(index, ends[0], ends[1] + limits.cover_ndvi_u, form))]
     vegetation, soil = float(entry.vegetation or 0.0), float(entry.soil or 0.0)
-    u = float(np.linalg.norm([float(entry.u or 0.0),
-                              *((step - share) * (vegetation - soil) for step in steps)]))
+    u = float(np.linalg.norm([u, *((step - share) * (vegetation - soil) for step in steps)]))
     flags: tuple[str, ...] = (f"emissivity from NDVI ({form} vegetation fraction): {NOT_FOR}",)
     if not ends[0] <= index <= ends[1]:
         flags += ("NDVI outside the range of the vegetation fraction",)

@@ -7,15 +7,16 @@ The value is made from the pass's records; the inputs, their uncertainties and w
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, field, replace
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from surveykit.core import FloatArray, Input
 from surveykit.evidence.albedo import albedo
 from surveykit.evidence.conditions import Day, Sky
-from surveykit.evidence.hills import two_kinds
-from surveykit.evidence.parts import NotEvaluated, PassValue, raw_series
+from surveykit.evidence.hills import TWO_KINDS, histogram, two_kinds
+from surveykit.evidence.mapping import patch_mean
+from surveykit.evidence.parts import NotEvaluated, PassValue
 from surveykit.evidence.temperature import contact, longwave, stand_off
 from surveykit.evidence.vegetation import vegetation_index
 from surveykit.intake.passes import Pass
@@ -32,7 +33,9 @@ class PassEstimate:
     """A pass's value with everything that later stages need of it.
 
     Temperatures are in K here. A pass that could not be evaluated has NaN values, no inputs, and
-    `note` says why. Weather and irradiance are NaN where nothing told them.
+    `note` says why. Weather and irradiance are NaN where nothing told them. `u_within` is that of
+    the patch's mean where the walk was mapped, else that of a series in time; `bars` (lower, upper,
+    records) are the histogram of a pass whose readings fall into two groups.
     """
 
     this: Pass
@@ -52,7 +55,8 @@ class PassEstimate:
     flags: tuple[str, ...]
     inputs: tuple[Input, ...] = ()
     steps: tuple[tuple[str, float], ...] = ()
-    dwells: tuple[tuple[int, int, float, float, int], ...] = field(default=())
+    dwells: tuple[tuple[int, int, float, float, int], ...] = ()
+    bars: tuple[tuple[float, float, int], ...] = ()
 
     @property
     def air_k(self) -> float:
@@ -103,13 +107,18 @@ def estimate(day: Day, this: Pass) -> PassEstimate:
     if made.n_effective < day.parameters.campaign.settings.statistics.few_effective and \
             model != "contact":  # which counts placements, with a flag of its own
         flags += ("few effective records",)
-    main = {"stand-off": "brightness_temperature", "longwave": "longwave_up"}.get(model)
-    if main in this.channels:
-        flags += two_kinds(raw_series(day, this, main)[1], made.u_within, made.n_effective)
+    u_within = made.u_within
+    bars: tuple[tuple[float, float, int], ...] = ()
+    if made.records is not None:
+        of_patch, more = patch_mean(day, this, made.records)
+        u_within, flags = u_within if np.isnan(of_patch) else of_patch, flags + more
+        if two_kinds(made.records, made.u_within, made.n_effective):
+            flags += (TWO_KINDS,)
+            bars = histogram(made.records - made.records.mean() + made.value)
     return replace(
-        base, value_raw=made.value_raw, value=made.value, u_within=made.u_within,
+        base, value_raw=made.value_raw, value=made.value, u_within=u_within,
         n_effective=made.n_effective, status="ok", note="", flags=flags, inputs=made.inputs,
-        steps=made.steps, dwells=made.dwells)
+        steps=made.steps, dwells=made.dwells, bars=bars)
 
 
 def estimate_all(day: Day, passes: tuple[Pass, ...]) -> tuple[PassEstimate, ...]:

@@ -9,8 +9,8 @@ import numpy as np
 import pandas as pd
 
 from surveykit.core import table
+from surveykit.evidence import e1918
 from surveykit.evidence.conditions import Day
-from surveykit.evidence.derived import e1918_deviations
 from surveykit.evidence.estimates import PassEstimate
 from surveykit.evidence.parts import NotEvaluated
 from surveykit.evidence.views import albedo_around, footprint_share, shade_share
@@ -25,13 +25,14 @@ def geometry(day: Day, estimates: Sequence[PassEstimate]) -> pd.DataFrame:
     for e in estimates:
         if e.this.quantity == "albedo" and e.evaluated:
             try:
-                rows += _of_pass(day, e)
+                rows += _of_pass(day, e, estimates)
             except NotEvaluated:
                 continue
     return table("geometry", rows)
 
 
-def _of_pass(day: Day, e: PassEstimate) -> list[dict[str, Any]]:
+def _of_pass(day: Day, e: PassEstimate,
+             estimates: Sequence[PassEstimate]) -> list[dict[str, Any]]:
     head, settings = e.this.channels["shortwave_up"], day.parameters.campaign.settings.albedo
     around, _ = albedo_around(day, e.this)
     contrast = abs(around.value - e.value) / e.value
@@ -46,7 +47,7 @@ def _of_pass(day: Day, e: PassEstimate) -> list[dict[str, Any]]:
         return contrast * foreign + shade
 
     best = float(SEARCH_M[int(np.argmin([effect(h) for h in SEARCH_M]))])
-    away = e1918_deviations(day, e)
+    met = e1918.told(e1918.conditions(day, e, estimates), name="ASTM E1918", like="E1918-like")
     plan = sorted([*((h, "") for h in HEIGHTS_M if h not in (e.this.height_m, best)),
                    (e.this.height_m, "used"), (best, "best")])
     rows = []
@@ -57,6 +58,5 @@ def _of_pass(day: Day, e: PassEstimate) -> list[dict[str, Any]]:
             "pass": e.this.name, "height_m": height, "role": role, "foreign": foreign,
             "contamination": contrast * foreign, "shade": shade,
             "effect": contrast * foreign + shade,
-            "note": (("conditions of E1918 met" if not away else
-                      f"E1918-like, deviations: {'; '.join(away)}") if role == "used" else "")})
+            "note": met if role == "used" else ""})
     return rows

@@ -9,18 +9,23 @@ from surveykit.statistics.shape import huber_location, two_hills
 
 TWO_KINDS = "readings in two groups: two kinds of ground?"
 STRONG = 10.0  # difference of the Bayesian information criterion
+BARS = 20
 
 
-def two_kinds(values: FloatArray, u: float, n_effective: float) -> tuple[str, ...]:
-    """Return the flag where the mean is not the middle of one hill of readings.
+def two_kinds(values: FloatArray, u: float, n_effective: float) -> bool:
+    """Return whether the mean is not the middle of one hill of readings.
 
     The mean must lie further than half its u from Huber's location, and two normal components
     must describe the readings, thinned to as many as are independent, strongly better than one.
     """
-    good = values[np.isfinite(values)]
-    if good.size < 8 or not n_effective >= 8:
-        return ()
-    if abs(float(good.mean()) - huber_location(good)) <= 0.5 * u:
-        return ()
-    thinned = good[:: max(1, round(good.size / n_effective))]
-    return (TWO_KINDS,) if two_hills(thinned) > STRONG else ()
+    if values.size < 8 or not n_effective >= 8:
+        return False
+    if abs(float(values.mean()) - huber_location(values)) <= 0.5 * u:
+        return False
+    return two_hills(values[:: max(1, round(values.size / n_effective))]) > STRONG
+
+
+def histogram(values: FloatArray) -> tuple[tuple[float, float, int], ...]:
+    """Return lower edge, upper edge and count of each bar, from the least value to the largest."""
+    counts, edges = np.histogram(values, BARS)
+    return tuple(zip(edges[:-1].tolist(), edges[1:].tolist(), counts.tolist(), strict=True))

@@ -15,21 +15,20 @@ from typing import Any
 import numpy as np
 
 from surveykit.core import FloatArray, Input
+from surveykit.physics.bands import Band, band
 from surveykit.physics.shortwave import patch_albedo, zenith_factor
+from surveykit.physics.surroundings import background_radiance, sky_radiance
 from surveykit.physics.thermal import (
-    Band,
-    background_radiance,
-    band,
     brightness_without_setting,
     contact_temperature_k,
     longwave_temperature_k,
-    sky_radiance,
     standoff_temperature_k,
 )
-from surveykit.physics.vegetation import ndvi
+from surveykit.physics.vegetation import ndvi, reflectance_factor, savi
 from surveykit.statistics.draws import Draws
 
 Values = Mapping[str, Any]
+RESPONSE = "response at um "  # and the wavelength: an input of a head's tabulated response
 
 # Effects that a pass may or may not have, at the value at which they do nothing.
 NEUTRAL: dict[str, float] = {
@@ -40,6 +39,8 @@ NEUTRAL: dict[str, float] = {
     "surroundings_corrected": 0.0, "shade_corrected": 0.0,
     "footprint_error": 0.0, "shade_error": 0.0, "contamination_error": 0.0,
     "up_class_error": 0.0, "down_class_error": 0.0, "spectral_error": 0.0,
+    "directional_error_next": 0.0, "clock_skew_s": 0.0,
+    "down_per_s": 0.0, "red_down_per_s": 0.0, "nir_down_per_s": 0.0,
     "zenith_deg": 60.0, "reference_zenith_deg": 60.0, "zenith_dependence": 0.0,
     "red_ratio": 1.0, "nir_ratio": 1.0, "panel_error": 0.0,
 }
@@ -48,10 +49,16 @@ NEUTRAL: dict[str, float] = {
 def stand_off(x: Values) -> FloatArray:
     """Surface temperature [K] from above: the balance of emitted and reflected band radiance."""
     x = NEUTRAL | dict(x)
-    window = band(float(x["band_low_um"]), float(x["band_high_um"]))
-    around = background(x, window)
-    brightness = _brightness(x, window)
-    return standoff_temperature_k(window, brightness, x["emissivity"], around) + _left(x)
+    window = window_of(x)
+    return _left(x) + standoff_temperature_k(
+        window, _brightness(x, window), x["emissivity"], background(x, window))
+
+
+def window_of(x: Values) -> Band:
+    """Return the band of the infrared head: flat, or of the response its inputs hold."""
+    response = tuple((float(name.removeprefix(RESPONSE)), round(float(value), 12))
+                     for name, value in x.items() if name.startswith(RESPONSE))
+    return band(float(x["band_low_um"]), float(x["band_high_um"]), response)
 
 
 def background(x: Values, window: Band) -> FloatArray:
@@ -68,7 +75,7 @@ def contact(x: Values) -> FloatArray:
     `rim_gap_error` allows what a gap does on either side of the closed value.
     """
     x = NEUTRAL | dict(x)
-    window = band(float(x["band_low_um"]), float(x["band_high_um"]))
+    window = window_of(x)
     sky = _sky(x, window)
     rest = _brightness(x, window), x["emissivity"], x["body_k"], x["bore_emissivity"]
     closed = contact_temperature_k(window, *rest, np.clip(x["rim_gap"], 0.0, 1.0), sky)
@@ -89,15 +96,18 @@ def albedo(x: Values) -> FloatArray:
 
     What is not corrected is budgeted around the value: its whole size on either side. `..._per_m`
     say how the shares move with the height of the head, so that passes held at other heights than
-    written scatter.
+    written scatter; `..._per_s` how the light changed, relative, while two loggers' clocks differ
+    by `clock_skew_s`.
     """
     x = NEUTRAL | dict(x)
     up = x["up"] * (1 + x["up_gain_error"] + x["up_class_error"]) + x["up_zero_error"]
-    down = x["down"] * (1 + x["down_gain_error"] + x["down_class_error"]) + x["down_zero_error"]
+    down = x["down"] * (1 + x["down_gain_error"] + x["down_class_error"]
+                        + x["clock_skew_s"] * x["down_per_s"]) + x["down_zero_error"]
     gains = x["gain_ratio"] * (1 + x["ratio_per_up_zero"] * x["up_zero_error"]
                                + x["ratio_per_down_zero"] * x["down_zero_error"])
     ratio = up / down / gains * (
-        1 + x["directional_error"] + x["levelling_error"] + x["spectral_error"])
+        1 + x["directional_error"] + x["directional_error_next"] + x["levelling_error"]
+        + x["spectral_error"])
     seen, lit = x["surroundings_corrected"], x["shade_corrected"]
     higher = x["height_error"]
     share = 1 - seen * (1 - x["footprint_share"] - x["footprint_error"]
@@ -121,36 +131,24 @@ def vegetation_index(x: Values) -> FloatArray:
 def reflectances(x: Values) -> tuple[FloatArray, FloatArray]:
     """Reflectance factors [1] of red and near infrared, over the heads' gain ratios."""
     x = NEUTRAL | dict(x)
-    factor = []
-    for name in ("red", "nir"):
-        up = x[f"{name}_up"] * (1 + x[f"{name}_up_gain_error"]) + x[f"{name}_up_zero_error"]
-        down = (x[f"{name}_down"] * (1 + x[f"{name}_down_gain_error"])
-                + x[f"{name}_down_zero_error"])
-        factor.append(np.asarray(up / down / x[f"{name}_ratio"] * (1 + x["panel_error"])))
-    return factor[0], factor[1]
+    red, nir = (reflectance_factor(
+        x[f"{name}_up"] * (1 + x[f"{name}_up_gain_error"]) + x[f"{name}_up_zero_error"],
+        x[f"{name}_down"] * (1 + x[f"{name}_down_gain_error"]
+                             + x["clock_skew_s"] * x[f"{name}_down_per_s"])
+        + x[f"{name}_down_zero_error"], x[f"{name}_ratio"]) * (1 + x["panel_error"])
+        for name in ("red", "nir"))
+    return red, nir
+
+
+def soil_adjusted(x: Values) -> FloatArray:
+    """Soil-adjusted vegetation index [1] of the patch; foreign ground in view is left out."""
+    return savi(*reflectances(x), x["soil_factor"])
 
 
 MODELS: dict[str, Callable[[Values], FloatArray]] = {
     "stand-off": stand_off, "contact": contact, "longwave": longwave, "albedo": albedo,
-    "ndvi": vegetation_index,
+    "ndvi": vegetation_index, "savi": soil_adjusted,
 }
-
-
-def evaluate(model: str, inputs: Sequence[Input]) -> float:
-    """Return the model's value at the inputs' own values."""
-    return float(MODELS[model]({i.name: i.value for i in inputs}))
-
-
-def sensitivities(model: str, inputs: Sequence[Input]) -> dict[str, float]:
-    """Return per input its signed contribution: half the change from value - u to value + u."""
-    nominal = {i.name: i.value for i in inputs}
-    out = {}
-    for i in inputs:
-        if i.u > 0:
-            high = MODELS[model]({**nominal, i.name: i.value + i.u})
-            low = MODELS[model]({**nominal, i.name: i.value - i.u})
-            out[i.name] = float(high - low) / 2
-    return out
 
 
 def deviations(model: str, inputs: Sequence[Input], draws: Draws, pass_scope: str) -> FloatArray:

@@ -9,7 +9,7 @@ from typing import Any
 import numpy as np
 
 from surveykit.core import FloatArray, Input, IntArray
-from surveykit.evidence.conditions import Day
+from surveykit.evidence.conditions import NS, Day
 from surveykit.intake.params import Channel
 from surveykit.intake.passes import Pass
 
@@ -25,7 +25,8 @@ class NotEvaluated(Exception):  # noqa: N818 - a refusal with a reason, not an e
 class PassValue:
     """What a maker returns: raw and final value, scatter within the pass, inputs, flags.
 
-    `dwells` are (start, stop [ns], value, u, records) of each placement of a contact pass.
+    `dwells` are (start, stop [ns], value, u, records) of each placement of a contact pass;
+    `records` the value of each record [as value], its mean of no account; None for placements.
     """
 
     value_raw: float
@@ -36,6 +37,7 @@ class PassValue:
     flags: tuple[str, ...]
     steps: tuple[tuple[str, float], ...]
     dwells: tuple[tuple[int, int, float, float, int], ...] = ()
+    records: FloatArray | None = None
 
 
 def raw_series(day: Day, this: Pass, quantity: str) -> tuple[IntArray, FloatArray]:
@@ -85,6 +87,23 @@ def zero(day: Day, channel: Channel, name: str, hidden_u: float) -> Input:
     return Input(name, 0.0, float(np.hypot(dark.u, hidden_u)),
                  f"{day.name}:{channel.logger}:{channel.column}:zero",
                  f"zero of {channel.logger}, {channel.column} (dark readings)")
+
+
+def skew(day: Day, this: Pass, word: str, per_s: str) -> list[Input]:
+    """Return what the clocks of two loggers do to a ratio: their difference, and the light's rate.
+
+    Sums over a pass begin and end at other moments where the clocks differ, so that the ratio
+    moves by the relative rate [s-1] of the light times the difference [s].
+    """
+    up, down = (this.channels[f"{word}_{way}"] for way in ("up", "down"))
+    if up.logger == down.logger:
+        return []
+    time, light = series(day, this, f"{word}_down")
+    rate = float(np.polyfit((time - time[0]) / NS, light, 1)[0] / light.mean())
+    return [fixed(per_s, rate),
+            Input("clock_skew_s", 0.0, this.skew_u_s,
+                  f"{day.name}:{up.logger}:{down.logger}:clocks",
+                  f"clocks of {up.logger} and {down.logger} against each other")]
 
 
 def pass_scope(day: Day, this: Pass) -> str:

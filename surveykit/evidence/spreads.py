@@ -37,9 +37,10 @@ class Spreads:
         """Return the scatter a surface borrows; None where no patch has two passes."""
         return self._common.get(key[1:])
 
-    def words(self, key: Key) -> str:
+    def words(self, key: Key, single: bool) -> str:
         """Return the sentence that names the loan, and warns where the own spread is larger.
 
+        It says what is borrowed: the interval of a single patch, or the scatter within patches.
         The own variance is held against that of the other surfaces (F, 5 %, one-sided); the
         interval is not switched by it, for that would not keep its coverage.
         """
@@ -48,7 +49,8 @@ class Spreads:
         rest, rest_dof = sum(s for s, _ in others), sum(d for _, d in others)
         every = float(np.sqrt((square + rest) / (dof + rest_dof)))
         unit = " K" if key[1] == "temperature" else ""
-        text = (f"interval borrows the common spread of passes, {every:.2g}{unit}")
+        what = "interval borrows" if single else "passes within its patches borrow"
+        text = f"{what} the common spread of passes, {every:.2g}{unit}"
         if not dof:
             return f"{text} (its own is not known)"
         text += f" (its own {np.sqrt(square / dof):.2g}{unit})"

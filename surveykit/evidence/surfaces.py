@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 from typing import Any
 
@@ -19,8 +19,9 @@ from surveykit.evidence.spreads import Spreads, rows_by_patch
 from surveykit.intake.params.sections import RelevantChange
 from surveykit.statistics.draws import Draws, Result, Sampling, Summary, observed, summarise
 from surveykit.statistics.pooling import Common, Pooled, pool
-from surveykit.statistics.simultaneous import end_error
+from surveykit.statistics.simultaneous import end_error, tolerance
 
+MOST_DRAWS = 400_000
 MEASURED = re.compile(r"\d+(?=%| s of| W m-2| degrees)")  # numbers in a reason that passes share
 
 
@@ -86,6 +87,27 @@ def groups(campaign: str, estimates: Sequence[PassEstimate], draws: Draws, *, co
                  for key, some in found.items())
 
 
+def settled(make: Callable[[Draws], tuple[Group, ...]], draws: Draws, coverage: float,
+            digits: int) -> tuple[tuple[Group, ...], Draws]:
+    """Return the groups with as many draws as hold the ends of their intervals, and these draws.
+
+    Draws are doubled, up to 400,000, until twice the standard error of every end is within half
+    a unit of the last of so many significant digits of u; 0 digits: the draws as they are.
+
+    References
+    ----------
+    JCGM 101:2008, 7.9.2 (numerical tolerance) and 7.9.4 (the comparison).
+    """
+    while True:
+        found = make(draws)
+        open_ends = (
+            2 * end_error(g.result.judged, coverage) > tolerance(s.u, digits)
+            for g in found if g.result is not None and (s := summarise(g.result, coverage)).u > 0)
+        if not digits or draws.size >= MOST_DRAWS or not any(open_ends):
+            return found, draws
+        draws = Draws(draws.seed, min(2 * draws.size, MOST_DRAWS))
+
+
 def pool_passes(campaign: str, key: tuple[str, str, str], passes: Sequence[PassEstimate],
                 draws: Draws, coverage: float, spreads: Spreads | None = None) -> Group:
     """Return what the passes of one surface, quantity and kind come to."""
@@ -114,10 +136,11 @@ def pool_passes(campaign: str, key: tuple[str, str, str], passes: Sequence[PassE
     result = observed(over.value, over.value + systematic,
                       (Sampling(scope, pooled.u, pooled.dof),), draws)
     notes = list(_notes(tuple(passes), used))
-    if len({p.this.patch for p in used}) == 1:
+    single = len({p.this.patch for p in used}) == 1
+    if single:
         notes = ["one patch: holds for this patch", *notes]
-        if spreads and common:
-            notes = [spreads.words(key), *notes]
+    if spreads and common:
+        notes = [spreads.words(key, single), *notes]
     if len(used) <= 2:
         notes = ["two passes only" if len(used) == 2 else "one pass", *notes]
     made = replace(made, result=result, notes=tuple(notes),
@@ -208,7 +231,7 @@ def surface_table(found: Sequence[Group], coverage: float,
             s = summarise(g.result, coverage)
             row |= {"u": s.u, "lower": display(s.lower, g.quantity),
                     "upper": display(s.upper, g.quantity), "k": s.k, "dof": s.dof,
-                    "end_error": end_error(g.result.total, coverage)}
+                    "end_error": end_error(g.result.judged, coverage)}
             if wanted and g.pooled and g.units_u is not None:
                 row["needed"] = units_needed(g.budget, g.pooled, g.units_u, wanted.of(g.quantity),
                                              coverage)
@@ -222,8 +245,8 @@ def budget_table(found: Sequence[Group]) -> pd.DataFrame:
 
 
 def pass_tables(campaign: str, estimates: Sequence[PassEstimate]) -> dict[str, pd.DataFrame]:
-    """Return the tables `passes`, `dwells` and `corrections`."""
-    passes, dwells, steps = [], [], []
+    """Return the tables `passes`, `dwells`, `corrections` and `histograms`."""
+    passes, dwells, steps, bars = [], [], [], []
     for e in estimates:
         this, quantity = e.this, e.this.quantity
         where = {"campaign": campaign, "surface": this.surface, "pass": this.name}
@@ -244,7 +267,11 @@ def pass_tables(campaign: str, estimates: Sequence[PassEstimate]) -> dict[str, p
             steps.append(where | {
                 "quantity": quantity, "kind": e.kind, "unit": UNITS[quantity], "step": step,
                 "value": display(value, quantity)})
+        bars += [where | {"patch": this.patch, "quantity": quantity, "kind": e.kind,
+                          "unit": UNITS[quantity], "lower": display(lower, quantity),
+                          "upper": display(upper, quantity), "n_records": n}
+                 for lower, upper, n in e.bars]
     return {"passes": table("passes", passes), "dwells": table("dwells", dwells),
-            "corrections": table("corrections", steps)}
+            "corrections": table("corrections", steps), "histograms": table("histograms", bars)}
 
 

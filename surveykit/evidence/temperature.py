@@ -9,8 +9,13 @@ from surveykit.evidence import models
 from surveykit.evidence.backgrounds import surroundings
 from surveykit.evidence.conditions import Day, Sky
 from surveykit.evidence.contact import contact as contact
-from surveykit.evidence.corrections import Correction, correct
-from surveykit.evidence.infrared import head_inputs, per_record, setting_correction
+from surveykit.evidence.corrections import correct
+from surveykit.evidence.infrared import (
+    emissivity_corrections,
+    head_inputs,
+    per_record,
+    setting_correction,
+)
 from surveykit.evidence.parts import (
     NotEvaluated,
     PassValue,
@@ -23,9 +28,8 @@ from surveykit.evidence.parts import (
     surface_scope,
 )
 from surveykit.intake.passes import Pass
+from surveykit.physics.walking import footprint_m
 from surveykit.statistics.series import mean_of_series
-
-SURROUNDINGS = "emissivity and surroundings"
 
 
 def stand_off(day: Day, this: Pass, sky: Sky) -> PassValue:
@@ -37,15 +41,19 @@ def stand_off(day: Day, this: Pass, sky: Sky) -> PassValue:
     settings = day.parameters.campaign.settings.temperature
     if this.height_m > settings.path_limit_m:
         more += (f"higher than {settings.path_limit_m:g} m: the air in between is not corrected",)
+    cone = this.channels["brightness_temperature"].half_angle_deg
+    if cone is not None and footprint_m(this.height_m, cone) > np.nanmin(
+            [this.length_m, this.width_m, np.inf]):
+        more += ("the spot is wider than the patch",)
     made = correct("stand-off", inputs, [
-        *setting_correction(day, this, inputs),
-        Correction(SURROUNDINGS, {"emissivity": 1.0}, settings.correct_surroundings,
-                   "temperature.correct_surroundings", f"{day.name}:{this.surface}:surroundings")],
-        series={"brightness_k": brightness})
-    mean = mean_of_series(per_record("stand-off", made.inputs, brightness), unit="K",
-                          method="stand-off")
+        *setting_correction(day, inputs),
+        *emissivity_corrections(day, "emissivity", "surroundings", {"background_factor": 0.0})],
+        f"{day.name}:{this.surface}:stand-off", series={"brightness_k": brightness})
+    values = per_record("stand-off", made.inputs, brightness)
+    mean = mean_of_series(values, unit="K", method="stand-off")
     return PassValue(float(brightness.mean()), mean.value, mean.u, mean.n_eff,
-                     tuple(made.inputs.values()), flags + more + made.flags, made.steps)
+                     tuple(made.inputs.values()), flags + more + made.flags, made.steps,
+                     records=values)
 
 
 def longwave(day: Day, this: Pass, sky: Sky) -> PassValue:
@@ -67,15 +75,13 @@ def longwave(day: Day, this: Pass, sky: Sky) -> PassValue:
             surface_scope("emissivity broadband", this.surface, entry),
             f"broadband emissivity of the surface ({entry.source})"),
     }
-    settings = day.parameters.campaign.settings.temperature
-    made = correct("longwave", inputs, [
-        Correction("emissivity and sky", {"emissivity_broadband": 1.0},
-                   settings.correct_surroundings, "temperature.correct_surroundings",
-                   f"{day.name}:{this.surface}:surroundings")],
-        series={"up": up, "down": down})
+    made = correct("longwave", inputs, emissivity_corrections(
+        day, "emissivity_broadband", "surroundings", {"down": 0.0}),
+        f"{day.name}:{this.surface}:longwave", series={"up": up, "down": down})
     nominal = {name: i.value for name, i in made.inputs.items()}
-    values = in_range(np.asarray(models.longwave({**nominal, "up": up, "down": down})))
+    values = in_range(np.asarray(models.longwave(
+        nominal | {"up": up} | ({"down": down} if nominal["down"] else {}))))
     mean = mean_of_series(values, unit="K", method="longwave")
     return PassValue(made.steps[0][1], mean.value, mean.u, mean.n_eff,
                      tuple(made.inputs.values()), calibration_flags(day, list(pair)) + made.flags,
-                     made.steps)
+                     made.steps, records=values)

@@ -17,6 +17,7 @@ from surveykit.evidence.parts import (
     gain,
     raw_series,
     series,
+    skew,
     zero,
 )
 from surveykit.evidence.views import foreign_ground
@@ -43,23 +44,27 @@ def vegetation_index(day: Day, this: Pass, sky: Sky) -> PassValue:
     for name in BANDS:
         channel = this.channels[name]
         place = channel.logger, channel.column
+        dark = day.darks[place]
         mean = float(read[name].mean())
         known = zero(day, channel, f"{name}_zero_error", settings.dark_u * day.largest[place])
         inputs += [fixed(name, mean), known]
-        if day.darks[place] is None:
+        if dark is None:
             flags += ("no dark reading",)
-        if name.endswith("_up") and known.u > mean / settings.min_dark_ratio:
+        if name.endswith("_up") and (known.u > mean * settings.max_dark_u or (
+                dark is not None and dark.sd > mean / settings.min_dark_ratio)):
             raise NotEvaluated(
-                f"{channel.column} reads {mean:.3g}, less than {settings.min_dark_ratio:g} times "
-                "the uncertainty of its zero: too little light for an index")
+                f"{channel.column} reads {mean:.3g}, less than {1 / settings.max_dark_u:g} times "
+                f"the uncertainty of its zero or {settings.min_dark_ratio:g} times the scatter of "
+                "its dark reading: too little light for an index")
+    skews = [i for band in ("red", "nir") for i in skew(day, this, band, f"{band}_down_per_s")]
     gains, more = _gains(day, this)
     raw = {name: raw_series(day, this, name)[1] for name in BANDS}
-    made = correct("ndvi", {i.name: i for i in (*inputs, *gains)}, [
+    made = correct("ndvi", {i.name: i for i in (*inputs, *skews, *gains)}, [
         Correction("dark readings", {name: float(raw[name].mean()) for name in BANDS},
-                   settings.correct_darks, "ndvi.correct_darks",
-                   f"{day.name}:{this.surface}:ndvi darks"),
-        *([Correction("gain ratio", {"red_ratio": 1.0, "nir_ratio": 1.0}, True,
-                      "ndvi.correct_gain_ratio", "")] if _has_ratio(gains) else [])])
+                   "ndvi.correct_darks", settings.correct_darks),
+        *[Correction("gain ratio", {"red_ratio": 1.0, "nir_ratio": 1.0},
+                     "ndvi.correct_gain_ratio")] * any(i.name == "nir_ratio" for i in gains)],
+        f"{day.name}:{this.surface}:ndvi")
     if made.inputs["footprint_share"].value < 1:
         flags += ("surroundings not corrected",)
     flags += (*more, *made.flags, *_mean_of_ratios(read))
@@ -72,11 +77,7 @@ def vegetation_index(day: Day, this: Pass, sky: Sky) -> PassValue:
     return PassValue(float(ndvi_of_sums(*raw.values())), made.steps[-1][1], within.u, within.n_eff,
                      tuple(made.inputs.values()),
                      calibration_flags(day, [this.channels[b] for b in BANDS])
-                     + tuple(dict.fromkeys(flags)), made.steps)
-
-
-def _has_ratio(gains: list[Input]) -> bool:
-    return any(i.name in ("red_ratio", "nir_ratio") for i in gains)
+                     + tuple(dict.fromkeys(flags)), made.steps, records=steady)
 
 
 def _gains(day: Day, this: Pass) -> tuple[list[Input], tuple[str, ...]]:

@@ -6,13 +6,14 @@ from collections.abc import Callable
 
 import numpy as np
 
-from surveykit.core import FloatArray, Input
+from surveykit.core import FloatArray, Input, IntArray
 from surveykit.evidence.conditions import Day, Sky
 from surveykit.evidence.parts import HALF_WIDTH, NotEvaluated, fixed, pass_scope, surface_scope
+from surveykit.intake.footprints import HEMISPHERE_DEG, shares_along
 from surveykit.intake.params import Channel
 from surveykit.intake.params.defaults import AlbedoSettings
 from surveykit.intake.passes import Pass
-from surveykit.intake.paths import Path, walk
+from surveykit.intake.paths import walk
 from surveykit.physics.footprint import (
     disc_share,
     limited_share,
@@ -20,8 +21,8 @@ from surveykit.physics.footprint import (
     self_shade,
 )
 from surveykit.physics.instrument import rod_shade
+from surveykit.physics.shortwave import levelling_error
 
-HEMISPHERE_DEG = 90.0  # half-angle of a head that states none: it sees most of what is around
 ROD_TO_SUN_DEG = {"sun": 0.0, "across": 90.0, "away": 180.0}
 
 
@@ -47,25 +48,12 @@ def footprint_share(this: Pass, head: Channel, height_m: float) -> float:
     return float(rectangle_share(-half_length, half_length, -half_width, half_width, height_m))
 
 
-def path_shares(day: Day, this: Pass, head: Channel, height_m: float) -> FloatArray | None:
-    """Return the share of each record of a walked pass, NaN in turns; None where no path is known.
-
-    Only for heads that see the whole half-space: a cone stays inside the patch or is centred.
-    """
-    where = _path(day, this)
-    if where is None or (head.half_angle_deg or HEMISPHERE_DEG) < HEMISPHERE_DEG:
-        return None
-    share = rectangle_share(-where.x_m, this.length_m - where.x_m, -where.y_m,
-                            this.width_m - where.y_m, height_m)
-    return np.asarray(np.where(where.turning, np.nan, share))
-
-
 def lane_effect(day: Day, this: Pass, down: FloatArray) -> float:
     """Return half the relative difference of the upper head between the lanes' two directions.
 
     NaN where no path is known or the lanes are not balanced. A slow change of the sun drops out.
     """
-    where = _path(day, this)
+    where = walk(this, _times(day, this), day.parameters)
     if where is None or this.lanes % 2 or down.size != where.x_m.size:
         return float("nan")
     lane = np.floor(where.y_m / this.width_m * this.lanes)
@@ -79,13 +67,22 @@ def lane_effect(day: Day, this: Pass, down: FloatArray) -> float:
     return float(half / mean)
 
 
+def lean_deg(effect: float, zenith_deg: float, beam_fraction: float) -> float:
+    """Return the tilt along the lanes [deg] whose levelling error is the lanes' effect.
+
+    The sun is taken to stand along the lanes; where it stands across them the tilt is larger.
+    """
+    one = levelling_error(zenith_deg, 1.0, np.array([0.0, 180.0]), beam_fraction)
+    return abs(effect) / float(np.ptp(one) / 2)
+
+
 def foreign_ground(day: Day, this: Pass, head: Channel,
                    around: Input) -> tuple[list[Input], tuple[str, ...]]:
     """Return the inputs of foreign ground in view, and flags; `around` is what it is taken for."""
     settings = day.parameters.campaign.settings.albedo
 
     def share(height_m: float) -> float:
-        along = path_shares(day, this, head, height_m)
+        along = shares_along(this, head, height_m, _times(day, this), day.parameters)
         if along is None or not np.isfinite(along).any():
             return footprint_share(this, head, height_m)
         return float(np.nanmean(along))
@@ -210,9 +207,9 @@ def albedo_around(day: Day, this: Pass) -> tuple[Input, tuple[str, ...]]:
                  "albedo around the patch, as stated"), ()
 
 
-def _path(day: Day, this: Pass) -> Path | None:
+def _times(day: Day, this: Pass) -> IntArray:
     records = day.quality.passes[this.name]
-    return walk(this, day.records[records.logger].time_ns[records.index], day.parameters)
+    return day.records[records.logger].time_ns[records.index]
 
 
 def _per_m(day: Day, this: Pass, share: Callable[[float], float]) -> float:

@@ -6,7 +6,6 @@ import io
 import re
 from collections.abc import Sequence
 from dataclasses import dataclass
-from decimal import Decimal, InvalidOperation
 from typing import Any
 
 import numpy as np
@@ -16,6 +15,7 @@ from surveykit.core import BoolArray, FloatArray
 from surveykit.intake.params.instruments import Layout
 
 _NUMBER = r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?"
+_PRINTED = re.compile(r"[+-]?(?=\.?\d)\d*(?:\.(\d*))?(?:[eE]([+-]?\d{1,3}))?")
 
 
 @dataclass(frozen=True)
@@ -109,14 +109,10 @@ def _from_text(column: pd.Series, texts: list[str], layout: Layout) -> Numbers:
 
 def printed_step(sample: list[list[str]], at: int, layout: Layout) -> float:
     """Return the step of the last digit printed in a column; NaN if no number is."""
-    codes = missing_codes(layout)[1]
-    places = []
+    codes, places = set(missing_codes(layout)[1].tolist()), []
     for row in sample:
-        try:
-            value = Decimal(row[at].strip().replace(layout.decimal, "."))
-        except InvalidOperation:
-            continue
-        exponent = value.as_tuple().exponent
-        if isinstance(exponent, int) and float(value) not in codes:
-            places.append(exponent)
-    return float(Decimal(1).scaleb(min(min(places), 0))) if places else float("nan")
+        text = row[at].strip().replace(layout.decimal, ".")
+        found = _PRINTED.fullmatch(text)
+        if found and float(text) not in codes:
+            places.append(int(found[2] or 0) - len(found[1] or ""))
+    return float(f"1e{min(*places, 0)}") if places else float("nan")

@@ -8,7 +8,7 @@ from math import hypot
 
 import numpy as np
 
-from surveykit.core import BoolArray, IntArray
+from surveykit.core import IntArray
 from surveykit.intake.clocks import Clock
 from surveykit.intake.clocks.signals import readings
 from surveykit.intake.params import Channel, Parameters
@@ -34,6 +34,14 @@ def look(passes: Sequence[Pass], records: Mapping[str, Records], entries: Sequen
     contact pass is held against the sheet's reading.
     """
     out = []
+    written_u_s = {entry.row: entry.edge_u_s for entry in entries}
+    covers = np.array([(entry.start_ns - reach, entry.stop_ns + reach) for entry in entries
+                       for reach in (round(2 * entry.edge_u_s * NS),)
+                       if entry.entry in ("cover", "dark")], dtype=np.int64).reshape(-1, 2)
+    served: dict[str, list[Pass]] = {}
+    for this in passes:
+        for name in this.loggers:
+            served.setdefault(name, []).append(this)
     for this in passes:
         gap = "" if this.refusal else _gap(this, records, sheet_path)
         if gap or this.refusal:
@@ -44,9 +52,10 @@ def look(passes: Sequence[Pass], records: Mapping[str, Records], entries: Sequen
             out.append(this)
             continue
         if this.kind == "contact":
-            notes = _placements(this, channel, records, parameters)
+            notes = _placements(this, channel, records[channel.logger], parameters)
         else:
-            notes = _edges(this, channel, passes, records, entries, parameters, clocks)
+            notes = _edges(this, channel, served[channel.logger], records[channel.logger], covers,
+                           written_u_s[this.row], parameters, clocks[channel.logger])
         out.append(replace(this, notes=this.notes + notes))
     return tuple(out)
 
@@ -67,13 +76,11 @@ def _gap(this: Pass, records: Mapping[str, Records], sheet_path: str) -> str:
     return ""
 
 
-def _edges(this: Pass, channel: Channel, passes: Sequence[Pass], records: Mapping[str, Records],
-           entries: Sequence[Entry], parameters: Parameters,
-           clocks: Mapping[str, Clock]) -> tuple[str, ...]:
-    settings, log = parameters.settings, records[channel.logger]
+def _edges(this: Pass, channel: Channel, others: Sequence[Pass], log: Records, covers: IntArray,
+           written_u_s: float, parameters: Parameters, clock: Clock) -> tuple[str, ...]:
+    settings = parameters.settings
     half_ns = (this.stop_ns - this.start_ns) // 2
     look_ns, watch_u_s = round(LOOK_S * NS), parameters.campaign.watch.offset.u
-    others = [p for p in passes if channel.logger in p.loggers]
     before = max((p.stop_ns for p in others if p.stop_ns <= this.start_ns), default=0)
     after = min((p.start_ns for p in others if p.start_ns >= this.stop_ns), default=2**62)
     notes = []
@@ -83,47 +90,44 @@ def _edges(this: Pass, channel: Channel, passes: Sequence[Pass], records: Mappin
             ("stop", this.stop_ns, this.stop_ns - min(half_ns, look_ns),
              min(after, this.stop_ns + look_ns))):
         part = np.arange(*np.searchsorted(log.time_ns[:log.n_timed], [low, high]))
-        part = part[~_under_cover(log.time_ns[part], entries)]
+        time_ns = log.time_ns[part][:, None]
+        part = part[~((time_ns >= covers[:, 0]) & (time_ns <= covers[:, 1])).any(axis=1)]
         time_s, values = readings(log, channel, settings, part, edge)
         side = max(3, int(np.ceil(LEAST_SIDE_S / log.interval_s))) if log.interval_s > 0 else 3
         found = change_point(values, min_side=side, min_contrast=settings.passes.edge_contrast)
         if found is None:
             continue
         away_s = float(time_s[found - 1] + time_s[found]) / 2
-        u_s = hypot(_written_u_s(this, entries),
-                    clocks[channel.logger].u_against_watch(edge, watch_u_s))
+        u_s = hypot(written_u_s, clock.u_against_watch(edge, watch_u_s))
         if abs(away_s) > settings.passes.edge_u * u_s:
             notes.append(f"edge disagrees ({word} {away_s:+.0f} s)")
     return tuple(notes)
 
 
-def _written_u_s(this: Pass, entries: Sequence[Entry]) -> float:
-    return next(entry.edge_u_s for entry in entries if entry.row == this.row)
-
-
-def _under_cover(time_ns: IntArray, entries: Sequence[Entry]) -> BoolArray:
-    out = np.zeros(time_ns.size, dtype=np.bool_)
-    for entry in entries:
-        if entry.entry in ("cover", "dark"):
-            u_ns = round(2 * entry.edge_u_s * NS)
-            out |= (time_ns >= entry.start_ns - u_ns) & (time_ns <= entry.stop_ns + u_ns)
-    return out
-
-
-def _placements(this: Pass, channel: Channel, records: Mapping[str, Records],
+def _placements(this: Pass, channel: Channel, log: Records,
                 parameters: Parameters) -> tuple[str, ...]:
+    """Hold the placements found against the sheet's; an uncertain edge may hide or add some.
+
+    Certain are those of full length between the trimmed edges; possible is half of one as far as
+    the written edges are uncertain.
+    """
     if not this.reading >= 1:
         return ()
-    log, settings = records[channel.logger], parameters.settings
-    part = np.arange(*np.searchsorted(log.time_ns[:log.n_timed], [this.start_ns, this.stop_ns]))
-    time_s, values = readings(log, channel, settings, part, this.start_ns)
-    counts = [len(find_dwells(time_s, values, settle_s=0.0, min_s=min_s,
-                              max_rate_k_s=settings.temperature.dwell_max_rate_k_s))
-              for min_s in (settings.temperature.dwell_min_s,
-                            settings.temperature.dwell_min_s / 2)]
-    if min(counts) <= round(this.reading) <= max(counts):  # an uncertain end may cut one short
+    settings, trim_ns = parameters.settings, round(this.trim_s * NS)
+
+    def count(start_ns: int, stop_ns: int, share: float) -> int:
+        part = np.arange(*np.searchsorted(log.time_ns[:log.n_timed], [start_ns, stop_ns]))
+        time_s, values = readings(log, channel, settings, part, this.start_ns)
+        return len(find_dwells(time_s, values, settle_s=0.0,
+                               min_s=share * settings.temperature.dwell_min_s,
+                               max_rate_k_s=settings.temperature.dwell_max_rate_k_s))
+
+    certain = count(this.from_ns, this.to_ns, 1.0)
+    possible = count(this.start_ns - trim_ns, this.stop_ns + trim_ns, 0.5)
+    if certain <= round(this.reading) <= possible:
         return ()
-    return (f"{counts[0]} placements found, {this.reading:.0f} on the sheet",)
+    found = count(this.start_ns, this.stop_ns, 1.0)
+    return (f"{found} placements found, {this.reading:.0f} on the sheet",)
 
 
 def _clock(time_ns: int) -> str:

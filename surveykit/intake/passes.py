@@ -56,6 +56,8 @@ class Pass:
         Why its records cannot be placed in time, or "".
     rod_side, operator_side : str
         Where rod and operator were, seen from the head: sun, across, away, or "" if not written.
+    skew_u_s : float
+        Standard uncertainty [s] of its two loggers' times against each other; 0 with one logger.
     """
 
     name: str
@@ -80,6 +82,7 @@ class Pass:
     refusal: str = ""
     rod_side: str = ""
     operator_side: str = ""
+    skew_u_s: float = 0.0
 
     @property
     def loggers(self) -> tuple[str, ...]:
@@ -128,7 +131,10 @@ def match_passes(sheet: Sheet, parameters: Parameters,
             from_ns=entry.start_ns + round(trim_s * NS), to_ns=entry.stop_ns - round(trim_s * NS),
             channels=service.channels, height_m=entry.height_m, width_m=width_m,
             length_m=length_m, lanes=entry.lanes, reading=entry.reading, notes=notes,
-            refusal=refusal, rod_side=entry.rod_side, operator_side=entry.operator_side))
+            refusal=refusal, rod_side=entry.rod_side, operator_side=entry.operator_side,
+            skew_u_s=used[0].u_between(used[1], (entry.start_ns + entry.stop_ns) / 2,
+                                       parameters.campaign.watch.offset.u)
+            if len(used) == 2 and not refusal else 0.0))
     if faults:
         raise InputError(*faults)
     return tuple(passes)

@@ -46,7 +46,7 @@ def serpentine(time_s: FloatArray, *, duration_s: float, length_m: float, width_
     lag_s : float
         Time constant of the head.
     turn_s : float
-        Left out on either side of each turn and at both ends.
+        That a turn from lane to lane lasts on either side of its middle.
     u_time_s, pace_u : float
         Standard uncertainty of the written times [s] and of the pace [1].
 
@@ -82,8 +82,29 @@ def serpentine(time_s: FloatArray, *, duration_s: float, length_m: float, width_
     y_m = np.where(outside, np.nan, (lane + 0.5) * width_m / lanes)
     speed = length_m / lane_s
     u_x_m = np.sqrt((u_time_s * speed) ** 2 + (pace_u * x_m) ** 2)
-    from_turn = np.abs(time_s - lane_s * np.round(time_s / lane_s))
-    return Path(x_m, y_m, u_x_m, outside | (from_turn <= turn_s))
+    return Path(x_m, y_m, u_x_m, outside | in_turn(time_s, lane_s, lanes, turn_s))
+
+
+def in_turn(time_s: FloatArray, lane_s: float, lanes: int, turn_s: float) -> BoolArray:
+    """Return which times [s since the walk began] lie within `turn_s` of a turn between lanes.
+
+    Beginning and end of the walk are no turns: they are the pass's edges.
+    """
+    if lanes < 2:
+        return np.zeros(np.shape(time_s), dtype=bool)
+    turn = lane_s * np.clip(np.round(time_s / lane_s), 1, lanes - 1)
+    return np.asarray(np.abs(time_s - turn) <= turn_s)
+
+
+def turns(this: Pass, time_ns: IntArray, parameters: Parameters) -> BoolArray:
+    """Return which times [ns UTC] lie in a turn of a walked pass; none where no lanes are written.
+
+    A turn is as far from its computed time as the written times are from the true ones.
+    """
+    if this.kind == "contact":
+        return np.zeros(time_ns.shape, dtype=bool)
+    lane_s = (this.stop_ns - this.start_ns) / NS / max(this.lanes, 1)
+    return in_turn((time_ns - this.start_ns) / NS, lane_s, this.lanes, _turn_s(this, parameters))
 
 
 def walk(this: Pass, time_ns: IntArray, parameters: Parameters) -> Path | None:
@@ -95,9 +116,16 @@ def walk(this: Pass, time_ns: IntArray, parameters: Parameters) -> Path | None:
     if this.kind == "contact" or this.lanes < 1 or not known:
         return None
     settings = parameters.settings.passes
-    slowest = max(channel.time_constant_s or 0.0 for channel in this.channels.values())
     return serpentine(
         (np.asarray(time_ns) - this.start_ns) / NS, duration_s=(this.stop_ns - this.start_ns) / NS,
-        length_m=this.length_m, width_m=this.width_m, lanes=this.lanes, lag_s=slowest,
-        turn_s=settings.turn_s + 3 * slowest, u_time_s=this.trim_s
-        - settings.settle_time_constants * slowest, pace_u=settings.pace_u)
+        length_m=this.length_m, width_m=this.width_m, lanes=this.lanes,
+        lag_s=_slowest_s(this), turn_s=_turn_s(this, parameters), u_time_s=this.trim_s
+        - settings.settle_time_constants * _slowest_s(this), pace_u=settings.pace_u)
+
+
+def _slowest_s(this: Pass) -> float:
+    return max(channel.time_constant_s or 0.0 for channel in this.channels.values())
+
+
+def _turn_s(this: Pass, parameters: Parameters) -> float:
+    return parameters.settings.passes.turn_s + 3 * _slowest_s(this)

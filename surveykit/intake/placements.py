@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.lib.stride_tricks import sliding_window_view
 
-from surveykit.core import FloatArray
+from surveykit.core import BoolArray, FloatArray
 
 MAX_WINDOW = 15
 
@@ -16,8 +16,11 @@ def find_dwells(time_s: FloatArray, temperature_k: FloatArray, *, settle_s: floa
 
     A record is settled where the local rate of change is at most `max_rate_k_s`: the median of the
     slopes between all pairs (Theil-Sen) of the records around it, as many as cover a third of
-    `min_s`, at least 3. Runs of settled records, without a gap longer than that stretch, lose
-    their first `settle_s`; what is left counts if it lasts `min_s`.
+    `min_s`, at least 3. As noise over so short a stretch may look like change, up to as many
+    unsettled records between settled ones count as well where they rise or fall at twice that rate
+    at most and none lies further from the line across them than that rate leads. Runs of settled
+    records, without a gap longer than that stretch, lose their first `settle_s`; what is left
+    counts if it lasts `min_s`.
 
     Parameters
     ----------
@@ -61,6 +64,7 @@ def find_dwells(time_s: FloatArray, temperature_k: FloatArray, *, settle_s: floa
     rate = _local_rate(time_s, temperature_k, width)
     rate = np.pad(rate, half, mode="edge")
     settled = (np.abs(rate) <= max_rate_k_s) & np.isfinite(temperature_k)
+    _bridge(settled, time_s, temperature_k, width, max_rate_k_s)
     breaks = np.flatnonzero((settled[1:] != settled[:-1]) | (steps > width * step_s)) + 1
     dwells = []
     for first, last in zip([0, *breaks], [*breaks, time_s.size], strict=True):
@@ -71,6 +75,20 @@ def find_dwells(time_s: FloatArray, temperature_k: FloatArray, *, settle_s: floa
         if begin < last and time_s[last - 1] - time_s[begin] >= min_s:
             dwells.append(slice(begin, last))
     return dwells
+
+
+def _bridge(settled: BoolArray, time_s: FloatArray, temperature_k: FloatArray, width: int,
+            max_rate_k_s: float) -> None:
+    """Settle up to `width` records between settled ones that lie about on the line across them."""
+    known = np.flatnonzero(settled)
+    for first, last in zip(known[:-1], known[1:], strict=True):
+        if 1 < last - first <= width + 1:
+            ends = [first, last]
+            part = slice(first, last + 1)
+            across = np.interp(time_s[part], time_s[ends], temperature_k[ends])
+            away = np.abs(temperature_k[part] - across).max()
+            rise, lapse_s = abs(temperature_k[last] - temperature_k[first]), np.ptp(time_s[ends])
+            settled[part] |= max(away, rise / 2) <= max_rate_k_s * lapse_s
 
 
 def _local_rate(time_s: FloatArray, temperature_k: FloatArray, width: int) -> FloatArray:

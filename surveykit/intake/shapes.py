@@ -102,12 +102,16 @@ def _cell(text: bytes, start: int, delimiter: bytes) -> bytes:
 
 def _fits(data: NDArray[np.uint8], starts: NDArray[np.int64], cell: bytes,
           delimiter: bytes) -> BoolArray:
-    """Return which cells have the same length and the same signs between their digits."""
-    last = data.size - 1
+    """Return which cells have the same length and the same signs between their digits.
+
+    They were read as times: digits stand between the signs, and only those after the last sign
+    must be looked at, where a shorter cell would have ended.
+    """
+    signs = [place for place, sign in enumerate(cell) if not 48 <= sign < 58]
     fit = np.ones(len(starts), dtype=np.bool_)
-    for place, sign in enumerate(cell):
-        there = data[np.minimum(starts + place, last)]
-        fit &= (there - np.uint8(48) < 10) if 48 <= sign < 58 else there == sign
-    end = data[np.minimum(starts + len(cell), last)]
+    for place in (*signs, *range(signs[-1] + 1 if signs else 0, len(cell))):
+        there = data.take(starts + place, mode="clip")
+        fit &= there == cell[place] if place in signs else there - np.uint8(48) < 10
+    end = data.take(starts + len(cell), mode="clip")
     fit &= (end == delimiter[0]) | (end == 10)
     return fit

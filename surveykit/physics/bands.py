@@ -28,6 +28,7 @@ _LOWEST_K, _HIGHEST_K, _STEP_K = 150.0, 500.0, 2.5
 _DEGREE, _BLOCK = 12, 16384  # of the polynomials, and how many values are worked at a time
 _NODES = 24  # of each stretch between two points of a tabulated response
 _FRACTION_TERMS = 40  # e^-40 is below the rounding of a double
+Response = tuple[tuple[float, float], ...]
 
 
 def planck_radiance(wavelength_um: ArrayLike, t_k: ArrayLike) -> FloatArray:
@@ -156,7 +157,7 @@ class _Curve:
 
 @dataclass(frozen=True)
 class Band:
-    """A wavelength band of flat response and its two conversions.
+    """A wavelength band and its two conversions: flat, or of any tabulated response.
 
     Radiance and temperature are read from Chebyshev polynomials of ln L against 1/T and of 1/T
     against ln L, fitted to the exact integral at every 2.5 K between 150 and 500 K: within 1e-7 of
@@ -166,30 +167,45 @@ class Band:
     ----------
     low_um, high_um : float
         Edges of the band [um].
+    response : tuple of (float, float)
+        Wavelength [um] and relative response [1], ascending from `low_um` to `high_um`, straight
+        between the points and 0 outside them; empty where the response is 1 between the edges.
 
     Raises
     ------
     ValueError
-        If the edges are not 0 < low_um < high_um.
+        If the edges are not 0 < low_um < high_um, or the response does not ascend from one to the
+        other or is nowhere positive.
 
     References
     ----------
-    See `blackbody_fraction` for the band integral; numpy.polynomial.chebyshev for the fit.
+    See `blackbody_fraction` for the flat band's integral; Gauss-Legendre quadrature of Planck's
+    law between the points of a response; numpy.polynomial.chebyshev for the fit.
 
     Examples
     --------
     >>> b = Band(8.0, 14.0)
     >>> print(f"{b.radiance(300.0):.4f}", f"{b.temperature_k(54.933461):.3f}")
     54.9335 300.000
+    >>> print(f"{Band(8.0, 14.0, ((8.0, 1.0), (14.0, 1.0))).radiance(300.0):.4f}")
+    54.9335
     """
 
     low_um: float
     high_um: float
+    response: Response = ()
 
     def __post_init__(self) -> None:
         if not 0 < self.low_um < self.high_um:
             raise ValueError(f"a band needs 0 < low_um < high_um, "
                              f"got {self.low_um!r} and {self.high_um!r}")
+        if self.response:
+            points, values = np.array(self.response).T
+            if points.size < 2 or not (np.diff(points) > 0).all() or values.min() < 0 \
+                    or not values.max() > 0 or (points[0], points[-1]) != (
+                        self.low_um, self.high_um):
+                raise ValueError("a response needs ascending wavelengths from low_um to high_um, "
+                                 "no value below 0 and one above")
 
     @cached_property
     def _table(self) -> tuple[FloatArray, FloatArray]:
@@ -197,8 +213,16 @@ class Band:
         return 1 / t, np.log(self.exact_radiance(t))
 
     def exact_radiance(self, t_k: ArrayLike) -> FloatArray:
-        """Return the band integral [W m-2 sr-1] itself, without the spline."""
-        return band_radiance(self.low_um, self.high_um, t_k)
+        """Return the band integral [W m-2 sr-1] itself, without the polynomials."""
+        if not self.response:
+            return band_radiance(self.low_um, self.high_um, t_k)
+        nodes, weights = np.polynomial.legendre.leggauss(_NODES)
+        points, values = np.array(self.response).T
+        half = np.diff(points) / 2
+        at = (points[:-1] + half)[:, None] + half[:, None] * nodes
+        weight = half[:, None] * weights * np.interp(at, points, values)
+        spectral = planck_radiance(at.ravel(), np.asarray(t_k, dtype=np.float64)[..., None])
+        return np.asarray((spectral * weight.ravel()).sum(axis=-1))
 
     @cached_property
     def _log_radiance(self) -> _Curve:
@@ -232,58 +256,7 @@ class Band:
             return np.asarray(1 / self._inverse_t(np.log(np.asarray(radiance, dtype=np.float64))))
 
 
-@dataclass(frozen=True)
-class TabulatedBand(Band):
-    """A band of any tabulated response, straight between its points and 0 outside them.
-
-    Parameters
-    ----------
-    wavelength_um : tuple of float
-        Ascending, from `low_um` to `high_um`.
-    response : tuple of float
-        Relative response [1] at these wavelengths.
-
-    Raises
-    ------
-    ValueError
-        If the table does not ascend from low_um to high_um, or is nowhere positive.
-
-    References
-    ----------
-    Planck's law, see `planck_radiance`; Gauss-Legendre quadrature between the points.
-
-    Examples
-    --------
-    >>> flat = TabulatedBand(8.0, 14.0, (8.0, 14.0), (1.0, 1.0))
-    >>> print(f"{flat.radiance(300.0):.4f}")
-    54.9335
-    """
-
-    wavelength_um: tuple[float, ...] = ()
-    response: tuple[float, ...] = ()
-
-    def __post_init__(self) -> None:
-        super().__post_init__()
-        points = np.asarray(self.wavelength_um)
-        if points.size < 2 or points.size != len(self.response) or not (np.diff(points) > 0).all() \
-                or (points[0], points[-1]) != (self.low_um, self.high_um) \
-                or min(self.response) < 0 or max(self.response) <= 0:
-            raise ValueError("a response needs ascending wavelengths from low_um to high_um and as "
-                             "many values, none below 0, one above")
-
-    def exact_radiance(self, t_k: ArrayLike) -> FloatArray:
-        """Return the band integral [W m-2 sr-1] itself, without the spline."""
-        nodes, weights = np.polynomial.legendre.leggauss(_NODES)
-        points = np.asarray(self.wavelength_um)
-        half = np.diff(points) / 2
-        at = (points[:-1] + half)[:, None] + half[:, None] * nodes
-        weight = half[:, None] * weights * np.interp(at, points, self.response)
-        t = np.asarray(t_k, dtype=np.float64)
-        spectral = planck_radiance(at.ravel(), t[..., None])
-        return np.asarray((spectral * weight.ravel()).sum(axis=-1))
-
-
 @cache
-def band(low_um: float, high_um: float) -> Band:
-    """Return the one shared `Band` of these edges [um], so that its tables are made once."""
-    return Band(low_um, high_um)
+def band(low_um: float, high_um: float, response: Response = ()) -> Band:
+    """Return the one shared `Band` of these edges [um] and response; its tables are made once."""
+    return Band(low_um, high_um, response)

@@ -19,7 +19,7 @@ class CoolingFit(NamedTuple):
 
     `before_k` and `u_k`, shape (placements,): temperature at the touch and its standard error;
     `mean_k`, `u_mean_k`: their mean, with what the placements share; `rate`, `u_rate`: b and its
-    standard error [K s-1/2]; `residual_k`: standard deviation about the fit; `time_constant_s`.
+    standard error [K s-1/2].
     """
 
     before_k: FloatArray
@@ -28,8 +28,6 @@ class CoolingFit(NamedTuple):
     u_mean_k: float
     rate: float
     u_rate: float
-    residual_k: float
-    time_constant_s: float
 
 
 def fit_placements(time_s: Sequence[FloatArray], temperature_k: Sequence[FloatArray], *,
@@ -108,7 +106,7 @@ def fit_placements(time_s: Sequence[FloatArray], temperature_k: Sequence[FloatAr
     return CoolingFit(
         before, np.sqrt(np.diag(cover)[1:1 + n]), float(before.mean()),
         float(np.sqrt(ones @ cover[1:1 + n, 1:1 + n] @ ones)), float(-solution[0]),
-        float(np.sqrt(cover[0, 0])), float(np.sqrt(variance)), tau)
+        float(np.sqrt(cover[0, 0])))
 
 
 def first_described(time_s: FloatArray, temperature_k: FloatArray, settled: int, *,

@@ -16,8 +16,7 @@ def emissivity_of_pair(band: Band, brightness_k: ArrayLike, surface_k: ArrayLike
                        background_radiance: ArrayLike) -> FloatArray:
     """Return the emissivity that makes an infrared reading agree with a reference temperature.
 
-    (L(T_b) - L_bg) / (L(T_s) - L_bg). Near T_s = T_bg it cannot be measured; see
-    `emissivity_of_pair_u`.
+    (L(T_b) - L_bg) / (L(T_s) - L_bg). Near T_s = T_bg it cannot be measured.
 
     Parameters
     ----------
@@ -49,50 +48,6 @@ def emissivity_of_pair(band: Band, brightness_k: ArrayLike, surface_k: ArrayLike
     with np.errstate(divide="ignore", invalid="ignore"):
         return np.asarray((band.radiance(brightness_k) - background)
                           / (band.radiance(surface_k) - background))
-
-
-def emissivity_of_pair_u(band: Band, brightness_k: float, surface_k: float,
-                         background_radiance: float, *, u_brightness_k: float,
-                         u_surface_k: float, u_background: float) -> float:
-    """Return the standard uncertainty of `emissivity_of_pair`.
-
-    Parameters
-    ----------
-    band : Band
-        Band of the instrument.
-    brightness_k, surface_k : float
-        Brightness and reference temperature [K].
-    background_radiance : float
-        Mean radiance that falls on the surface [W m-2 sr-1].
-    u_brightness_k, u_surface_k : float
-        Standard uncertainties [K].
-    u_background : float
-        Standard uncertainty of the background [W m-2 sr-1].
-
-    Returns
-    -------
-    float
-        Standard uncertainty [1].
-
-    References
-    ----------
-    JCGM 100:2008, 5.1.2: law of propagation, sensitivities by central difference.
-
-    Examples
-    --------
-    >>> b = Band(8.0, 14.0)
-    >>> u = emissivity_of_pair_u(b, 331.4, 333.15, float(b.radiance(303.15)), u_brightness_k=0.2,
-    ...                          u_surface_k=0.3, u_background=0.95)
-    >>> print(f"{1.96 * u:.3f}")
-    0.026
-    """
-    nominal = (brightness_k, surface_k, background_radiance)
-    moves = []
-    for place, u in enumerate((u_brightness_k, u_surface_k, u_background)):
-        high, low = ([v + sign * u * (n == place) for n, v in enumerate(nominal)]
-                     for sign in (1, -1))
-        moves.append(float(emissivity_of_pair(band, *high) - emissivity_of_pair(band, *low)) / 2)
-    return float(np.sqrt(np.sum(np.square(moves))))
 
 
 def emissivity_of_two_backgrounds(reading_1: ArrayLike, reading_2: ArrayLike,

@@ -129,34 +129,6 @@ def limited_share(radius_m: ArrayLike, height_m: ArrayLike,
     return np.asarray(np.minimum(1.0, disc_share(radius_m, height_m) / cone))
 
 
-def circle_seen_m(height_m: ArrayLike, half_angle_deg: ArrayLike) -> FloatArray:
-    """Return the diameter of the circle that a cone of view cuts from the ground.
-
-    Parameters
-    ----------
-    height_m : array_like
-        Height of the head [m].
-    half_angle_deg : array_like
-        Half the full field of view [deg], below 90.
-
-    Returns
-    -------
-    ndarray
-        Diameter [m].
-
-    References
-    ----------
-    Geometry of a cone: 2 h tan(half angle).
-
-    Examples
-    --------
-    >>> print(f"{circle_seen_m(0.05, 62.5):.3f}")
-    0.192
-    """
-    return np.asarray(2 * np.asarray(height_m, dtype=np.float64)
-                      * np.tan(np.radians(np.asarray(half_angle_deg, dtype=np.float64))))
-
-
 def beam_shade(head_radius_m: ArrayLike, height_m: ArrayLike,
                zenith_deg: ArrayLike) -> FloatArray:
     """Return the share of the view that the head's own shadow of the beam fills.

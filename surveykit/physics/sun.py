@@ -5,7 +5,12 @@ pvlib does the astronomy. Times are int64 ns since the epoch, UTC; `MISSING_NS` 
 
 from __future__ import annotations
 
-from typing import NamedTuple
+import sys
+from functools import cache
+from importlib import import_module
+from importlib.machinery import PathFinder
+from importlib.util import find_spec, module_from_spec
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -81,9 +86,7 @@ def sun_position(time_ns: ArrayLike, latitude: float, longitude: float, elevatio
     if not (-90 <= latitude <= 90 and -180 <= longitude <= 180):
         raise ValueError(f"a site needs latitude within +-90 and longitude within +-180 degrees, "
                          f"got {latitude!r} and {longitude!r}")
-    from pvlib import spa  # late here and below: it brings half of scipy, which few commands need
-
-    apparent, zenith, _, _, azimuth, _ = spa.solar_position(
+    apparent, zenith, _, _, azimuth, _ = _spa().solar_position(
         times / 1e9, latitude, longitude, elevation_m, pressure_pa / 100, temperature_c,
         _delta_t(times) if delta_t is None else delta_t, _REFRACTION_AT_HORIZON_DEG)
     return SunPosition(zenith, apparent, azimuth)
@@ -153,12 +156,12 @@ def sun_track(time_ns: ArrayLike, latitude: float, longitude: float,
 def _columns(times: IntArray, latitude: float, longitude: float,
              elevation_m: float) -> list[FloatArray]:
     """Return direction (east, north, up) and the two irradiances: all smooth in time."""
-    from pvlib import atmosphere, clearsky, spa
+    from pvlib import atmosphere, clearsky  # late: they bring half of scipy
 
     pressure_pa = float(atmosphere.alt2pres(elevation_m))
     position = sun_position(times, latitude, longitude, elevation_m, pressure_pa, _USUAL_AIR_DEGC)
     zenith, azimuth = np.radians(position.apparent_zenith_deg), np.radians(position.azimuth_deg)
-    distance_au = spa.earthsun_distance(times / 1e9, _delta_t(times), 1)
+    distance_au = _spa().earthsun_distance(times / 1e9, _delta_t(times), 1)
     extraterrestrial = SOLAR_CONSTANT.value / distance_au**2
     clear = clearsky.simplified_solis(90 - position.apparent_zenith_deg, pressure=pressure_pa,
                                       dni_extra=extraterrestrial)
@@ -166,11 +169,35 @@ def _columns(times: IntArray, latitude: float, longitude: float,
             extraterrestrial, clear["ghi"]]
 
 
+def clear_sky_shape(cos_zenith: ArrayLike) -> FloatArray:
+    """Return the irradiance of a clear sky [W m-2] from the sun's height alone; 0 at night.
+
+    For the shape of a day, not its level: see `sun_track` for a reference.
+
+    References
+    ----------
+    Haurwitz, B. (1945), J. Meteorol. 2, 154-166, as in pvlib.
+    """
+    height = np.asarray(cos_zenith, dtype=np.float64)
+    up = np.maximum(height, 1e-3)
+    return np.where(height > 0, 1098.0 * up * np.exp(-0.059 / up), 0.0)
+
+
+@cache
+def _spa() -> Any:
+    """Return pvlib's solar position algorithm without its package, half a second of imports."""
+    package = find_spec("pvlib")
+    found = package and PathFinder.find_spec("spa", package.submodule_search_locations)
+    if not found or found.loader is None or "pvlib" in sys.modules:
+        return import_module("pvlib.spa")
+    module = module_from_spec(found)
+    found.loader.exec_module(module)
+    return module
+
+
 def _delta_t(times: IntArray) -> FloatArray:
     months = times.astype("datetime64[ns]").astype("datetime64[M]").astype(np.int64)
-    from pvlib import spa
-
-    return np.asarray(spa.calculate_deltat(1970 + months // 12, 1 + months % 12))
+    return np.asarray(_spa().calculate_deltat(1970 + months // 12, 1 + months % 12))
 
 
 def _times(time_ns: ArrayLike) -> IntArray:

@@ -1,7 +1,6 @@
 """Surface temperature from infrared readings: stand-off, contact and longwave.
 
 Every function broadcasts over arrays; NaN in gives NaN out; emissivities are fractions [1].
-The bands and the surroundings that the balances need are offered here too.
 """
 
 from __future__ import annotations
@@ -12,32 +11,7 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from surveykit.core import FloatArray
-from surveykit.physics.bands import (
-    C1L,
-    C2,
-    SIGMA,
-    Band,
-    band,
-    band_radiance,
-    blackbody_fraction,
-    planck_radiance,
-)
-from surveykit.physics.surroundings import (
-    background_radiance,
-    hemispheric_emissivity,
-    sky_emissivity_full,
-    sky_emissivity_window,
-    sky_radiance,
-    vapour_pressure_hpa,
-)
-
-__all__ = [
-    "C1L", "C2", "SIGMA", "Band", "background_radiance", "band", "band_radiance",
-    "blackbody_fraction", "brightness_without_setting", "contact_temperature_k",
-    "head_cooling_k", "hemispheric_emissivity", "longwave_temperature_k", "planck_radiance",
-    "sky_emissivity_full", "sky_emissivity_window", "sky_radiance", "standoff_temperature_k",
-    "vapour_pressure_hpa",
-]
+from surveykit.physics.bands import SIGMA, Band
 
 
 def brightness_without_setting(band: Band, logged_k: ArrayLike, emissivity_setting: ArrayLike,
@@ -101,7 +75,7 @@ def standoff_temperature_k(band: Band, brightness_k: ArrayLike, emissivity: Arra
 
     Examples
     --------
-    >>> print(f"{standoff_temperature_k(band(8.0, 14.0), 320.15, 0.95, 24.4704) - 273.15:.2f}")
+    >>> print(f"{standoff_temperature_k(Band(8.0, 14.0), 320.15, 0.95, 24.4704) - 273.15:.2f}")
     49.57
     """
     eps = np.asarray(emissivity, dtype=np.float64)
@@ -147,7 +121,7 @@ def contact_temperature_k(band: Band, brightness_k: ArrayLike, emissivity: Array
 
     Examples
     --------
-    >>> ts = contact_temperature_k(band(8.0, 14.0), 331.87, 0.95, 303.15, 0.95, 0.0, 0.0)
+    >>> ts = contact_temperature_k(Band(8.0, 14.0), 331.87, 0.95, 303.15, 0.95, 0.0, 0.0)
     >>> print(f"{ts - 273.15:.1f}")
     60.0
     """

@@ -109,37 +109,6 @@ def ndvi_of_sums(red_up: ArrayLike, red_down: ArrayLike, nir_up: ArrayLike,
     return float(ndvi(ratio_of_sums(red_u, red_d), ratio_of_sums(nir_u, nir_d)))
 
 
-def ndvi_u(red: ArrayLike, nir: ArrayLike, u_red: ArrayLike, u_nir: ArrayLike) -> FloatArray:
-    """Return the standard uncertainty of NDVI from independent reflectance factors.
-
-    Parameters
-    ----------
-    red, nir : array_like
-        Reflectance factors [1].
-    u_red, u_nir : array_like
-        Their standard uncertainties [1].
-
-    Returns
-    -------
-    ndarray
-        Standard uncertainty [1]: 2 sqrt((nir u_red)^2 + (red u_nir)^2) / (red + nir)^2; NaN where
-        red + nir is not positive.
-
-    References
-    ----------
-    JCGM 100:2008, 5.1.2: law of propagation of uncertainty.
-
-    Examples
-    --------
-    >>> print(f"{ndvi_u(0.25, 0.75, 0.02 * 0.25, 0.02 * 0.75):.4f}")
-    0.0106
-    """
-    r, n = np.asarray(red, dtype=np.float64), np.asarray(nir, dtype=np.float64)
-    total = np.where(r + n > 0, r + n, np.nan)
-    return np.asarray(2 / total**2 * np.hypot(n * np.asarray(u_red, dtype=np.float64),
-                                              r * np.asarray(u_nir, dtype=np.float64)))
-
-
 def savi(red: ArrayLike, nir: ArrayLike, soil_factor: ArrayLike) -> FloatArray:
     """Return the soil-adjusted vegetation index.
 

@@ -18,6 +18,7 @@ from surveykit.quality.ledger import ledger, waterfall
 from surveykit.quality.marks import mark
 from surveykit.quality.selection import choose
 from surveykit.quality.study import Study
+from surveykit.quality.supports import support
 
 __all__ = ["examine"]
 
@@ -38,6 +39,7 @@ def examine(parameters: Parameters, records: dict[str, Records], sheet: Sheet,
         study.sun[name] = sun_track(log.time_ns, site.latitude, site.longitude, site.elevation_m)
     masks = {name: mark(study, name) for name in records}
     compare(study, masks)
+    support(study)
     chosen = {p.name: choose(study, p, masks) for p in passes}
     return Quality(masks, chosen, table("checks", study.checks), ledger(study, masks, chosen),
                    waterfall(study, masks, chosen))

@@ -48,11 +48,10 @@ def extremely_rare(values: FloatArray, quantity: str, sun: Sun) -> BoolArray:
 
 def end_of_range(values: FloatArray, low: float, high: float, share: float, *,
                  lower: bool) -> BoolArray:
-    """Readings in the last `share` of [low, high] at its top, and with `lower` at its bottom."""
+    """Readings from the last `share` of [low, high] on at its top, with `lower` at its bottom."""
     reach = share * (high - low)
     with np.errstate(invalid="ignore"):
-        near = (values > high - reach) & (values <= high)
-        return near | ((values < low + reach) & (values >= low)) if lower else near
+        return (values > high - reach) | ((values < low + reach) & lower)
 
 
 def saturated(values: FloatArray, repeats: int, *, lower: bool) -> BoolArray:

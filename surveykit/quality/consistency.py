@@ -9,11 +9,12 @@ from surveykit.core import BoolArray, FloatArray, IntArray
 from surveykit.intake.capped import windows
 from surveykit.intake.params import Channel
 from surveykit.intake.passes import Pass
-from surveykit.physics.thermal import SIGMA
+from surveykit.physics.bands import SIGMA
 from surveykit.quality.checks import out_of_range
 from surveykit.quality.series import inside, nearest, slopes
 from surveykit.quality.sky import Watch, changed, unsteady, watch
 from surveykit.quality.study import Masks, Study
+from surveykit.quality.supports import dark_levels
 
 ZERO_U = 3.0  # standard uncertainties of a head's zero that an improbable albedo must exceed
 PAIRS = (("shortwave_up", "shortwave_down"), ("red_up", "red_down"), ("nir_up", "nir_down"))
@@ -138,9 +139,13 @@ def _up_and_down(study: Study, masks: Masks, up: Channel, down: Channel) -> None
     back, light = log.channels[up.column][rows], other.channels[down.column][at]
     dim = both & ~(BIT["too little light"] | BIT["sun too low"]) == 0
     if up.quantity != "shortwave_up":
-        hit = np.zeros(log.time_ns.size, dtype=bool)
-        hit[rows] = dim & more_up_than_down(back, light, 0.0)
-        study.found("brighter than the sky", hit, sent, logger=up.logger, column=up.column)
+        dark = dark_levels(study, up)
+        level = np.interp(log.time_ns[rows], *dark) if dark[0].size else 0.0
+        for name, odd in (("brighter than the sky", more_up_than_down(back, light, 0.0)),
+                          ("negative reflectance", back < level)):
+            hit = np.zeros(log.time_ns.size, dtype=bool)
+            hit[rows] = dim & odd
+            study.found(name, hit, sent, logger=up.logger, column=up.column)
         return
     more = dim & more_up_than_down(back, light, quality.up_down_min_w_m2)
     odd = (both == 0) & ~more & improbable_albedo(

@@ -92,8 +92,7 @@ def _account(study: Study, log: Records, masks: dict[str, Mask], chosen: Chosen)
     for this in served:
         window = slice(*within(log.time_ns, this.start_ns, this.stop_ns))
         mask = np.bitwise_or.reduce([masks[c][window] for c in _columns(this, log.logger, masks)])
-        edge = (log.time_ns[window] < this.from_ns) | (log.time_ns[window] >= this.to_ns)
-        mask = mask | np.where(edge, BIT["pass edge"], np.uint32(0))
+        mask = mask | study.off_patch(this, log.time_ns[window])
         rest = BIT["between placements"] if this.kind == "contact" else BIT["no partner"]
         why = primary(np.where(mask == 0, rest, mask).astype(np.uint32))
         if chosen[this.name].refusal:

@@ -72,9 +72,10 @@ def _mark(study: Study, channel: Channel, line: Mask) -> Mask:
                     told=name != "capped")
     if channel.quantity in MAIN:
         _walked(study, channel, mask)
+        ends = channel.range or (low, high)
         study.found("end of range", end_of_range(
-            values, low, high, quality.saturation_share, lower=twofold) & (mask == 0), mask,
-            logger=channel.logger, column=channel.column)
+            values, *ends, quality.saturation_share, lower=twofold or channel.range is not None)
+            & (mask == 0), mask, logger=channel.logger, column=channel.column)
     if quality.rare_limit_warning:
         study.found("extremely rare irradiance",
                     extremely_rare(values, channel.quantity, sun) & (mask == 0), mask,

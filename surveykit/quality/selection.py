@@ -11,6 +11,7 @@ from surveykit.accounting import (
     CHECKS,
     NOT_A_FAULT,
     NS,
+    OFF_PATCH,
     REASONS,
     Mask,
     PassRecords,
@@ -42,9 +43,7 @@ def choose(study: Study, this: Pass, masks: Masks) -> PassRecords:
             partners[channel.logger] = _partners(log, window, study.records[channel.logger])
         at = partners[channel.logger]
         mask |= np.where(at < 0, BIT["no partner"], masks[channel.logger][channel.column][at])
-    times = log.time_ns[window]
-    mask |= np.where((times < this.from_ns) | (times >= this.to_ns), BIT["pass edge"],
-                     np.uint32(0)).astype(np.uint32)
+    mask |= study.off_patch(this, log.time_ns[window])
     dwells: list[tuple[int, int]] = []
     if this.kind == "contact":
         mask, dwells = _place(study, this, window, mask)
@@ -102,8 +101,12 @@ def _place(study: Study, this: Pass, window: IntArray,
 
 
 def _faulty(mask: Mask) -> tuple[BoolArray, BoolArray]:
-    """Return which records lie between the pass's edges, and which of these are at fault."""
-    inside = (mask & BIT["pass edge"]) == 0
+    """Return which records lie on the pass's way, and which of these are at fault.
+
+    Edges and turns are no part of it: however many a pass has, they neither are faults nor hide
+    any, so that many short lanes refuse no pass and faults count among the records on the lanes.
+    """
+    inside = (mask & OFF_PATCH) == 0
     return inside, inside & ((mask & ~NOT_A_FAULT) != 0)
 
 
@@ -136,6 +139,12 @@ def _refusal(study: Study, this: Pass, window: IntArray, mask: Mask) -> str:
         return f"{percent(share)} of the records are excluded, most as: {worst}"
     if this.kind == "contact" and (mask & BIT["between placements"]).any():
         return "no settled placement of the head was found"
+    if not inside.any() and (mask & BIT["foreign ground in view"]).any():
+        return ("nowhere on its lanes does the patch fill enough of the view: hold the head lower, "
+                "or survey a larger patch")
+    if not inside.any() and (mask & BIT["turn"]).any():
+        return (f"its {this.lanes} lanes of {(this.stop_ns - this.start_ns) / NS / this.lanes:.0f} "
+                "s are shorter than their turns: walk longer or fewer lanes, or check lanes")
     return f"fewer than {FEWEST} records are left of the pass"
 
 
@@ -158,9 +167,18 @@ def _dark_refusal(study: Study, this: Pass, rows: IntArray) -> str:
 
 
 def _note(study: Study, this: Pass, logger: str, mask: Mask, refusal: str) -> None:
-    """Note a pass that is refused, or of which much is excluded."""
+    """Note a pass that is refused, or of which much is excluded or lies in turns."""
     inside, faults = _faulty(mask)
     share = float(faults.sum() / max(inside.sum(), 1))
+    for name, check, where in (
+            ("turn", "turns", "lies in its turns and is left out: walk longer or fewer lanes"),
+            ("foreign ground in view", "foreign ground in view", "sees too much foreign ground "
+             "and is left out: hold the head lower or keep further inside the patch")):
+        off = int(np.count_nonzero((mask & OFF_PATCH) == BIT[name]))
+        if off > study.quality.excluded_flag * (off + inside.sum()) and not refusal:
+            study.note(check, "flag", f"{percent(off / (off + inside.sum()))} of the walk {where}",
+                       CHECKS[name].source, logger=logger, surface=this.surface, pass_=this.name,
+                       records=off)
     if refusal or share > study.parameters.campaign.settings.quality.excluded_flag:
         study.note("records of a pass", "refuse" if refusal else "flag",
                    refusal or f"{percent(share)} of the pass's records are excluded",

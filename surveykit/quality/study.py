@@ -8,12 +8,14 @@ from typing import Any
 import numpy as np
 
 from surveykit.accounting import BIT, CHECKS, Mask, counted
-from surveykit.core import BoolArray
+from surveykit.core import BoolArray, IntArray
 from surveykit.intake.fieldsheet import Sheet
+from surveykit.intake.footprints import sees_foreign_ground
 from surveykit.intake.loggers import Records
 from surveykit.intake.params import Channel, Parameters
 from surveykit.intake.params.quality import QualitySettings
 from surveykit.intake.passes import Pass
+from surveykit.intake.paths import turns
 from surveykit.physics.sun import Sun
 
 Masks = dict[str, dict[str, Mask]]
@@ -70,6 +72,17 @@ class Study:
         if told:
             self.note(check, reason.action, f"{counted(count, 'record')}: {reason.sentence}",
                       reason.source, logger=logger, column=column, records=count)
+
+    def off_patch(self, this: Pass, time_ns: IntArray) -> Mask:
+        """Return the bits of times [ns UTC] at a pass's edges, in turns, or beside its patch."""
+        edge = (time_ns < this.from_ns) | (time_ns >= this.to_ns)
+        mask = np.where(edge, BIT["pass edge"], np.uint32(0))
+        mask |= np.where(sees_foreign_ground(this, time_ns, self.parameters) & ~edge,
+                         BIT["foreign ground in view"], np.uint32(0))
+        if self.parameters.campaign.settings.passes.exclude_turns:
+            mask |= np.where(turns(this, time_ns, self.parameters) & ~edge, BIT["turn"],
+                             np.uint32(0))
+        return mask.astype(np.uint32)
 
     def spans(self, channel: Channel, *kinds: str) -> list[tuple[int, int]]:
         """Return the written windows [ns] of the passes that a channel serves.

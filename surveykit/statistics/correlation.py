@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import NamedTuple
 
 import numpy as np
-from scipy.fft import irfft, next_fast_len, rfft
+from numpy.fft import irfft, rfft
 
 from surveykit.core import FloatArray
 
@@ -134,7 +134,7 @@ def _peak(one: FloatArray, two: FloatArray, reach: int) -> tuple[FloatArray, int
 def _lags(one: FloatArray, two: FloatArray, reach: int) -> FloatArray:
     # As scipy.signal.correlate by FFT, whose import takes longer than all the rest of `check`.
     n = len(one) + len(two) - 1
-    size = next_fast_len(n, real=True)
+    size = 1 << (n - 1).bit_length()
     full = irfft(rfft(one, size) * rfft(two[::-1], size), size)[:n]
     out, zero = np.zeros(2 * reach + 1), two.size - 1
     low, high = max(zero - reach, 0), min(zero + reach + 1, full.size)

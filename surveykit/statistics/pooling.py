@@ -71,21 +71,7 @@ def paule_mandel(values: ArrayLike, within_u: ArrayLike) -> float:
     y, variance = _units(values, within_u)
     if y.size < 2:
         raise ValueError("the scatter between units needs at least two of them, got one")
-
-    if np.ptp(y) == 0:
-        return 0.0
-
-    def excess(tau2: float) -> float:
-        weights = 1 / (variance + tau2)
-        return float(weights @ (y - weights @ y / weights.sum()) ** 2 - (y.size - 1))
-
-    # Sum w (y - mu)^2 is at most sum (y - mean)^2 / tau^2, so the root is at most the variance.
-    largest = float(y.var(ddof=1))
-    if excess(0.0) <= 0:
-        return 0.0
-    if excess(largest) >= 0:
-        return largest
-    return float(brentq(excess, 0.0, largest, xtol=largest * 1e-14, maxiter=500))
+    return _between([(y, variance)])[0]
 
 
 @dataclass(frozen=True)
@@ -125,24 +111,31 @@ def common_scatter(some: Sequence[tuple[ArrayLike, ArrayLike]]) -> Common | None
     dof = sum(y.size - 1 for y, _ in groups)
     if not dof:
         return None
+    tau2, scale = _between(groups)
+    return Common(tau2, scale, dof)
 
-    def squares(tau2: float) -> float:
-        total = 0.0
+
+def _between(groups: Sequence[tuple[FloatArray, FloatArray]]) -> tuple[float, float]:
+    """Return tau^2 of groups of (values, variance within), and the scale q left at it."""
+    dof = sum(y.size - 1 for y, _ in groups)
+    # Sum w (y - mu)^2 is at most sum (y - mean)^2 / tau^2, so the root is at most the variance.
+    largest = sum(float(((y - y.mean()) ** 2).sum()) for y, _ in groups) / dof
+    least = 1e-12 * largest
+    if largest == 0:
+        return 0.0, 0.0
+
+    def excess(tau2: float) -> float:
+        total = -float(dof)
         for y, variance in groups:
             weights = 1 / (variance + tau2)
             total += float(weights @ (y - weights @ y / weights.sum()) ** 2)
         return total
 
-    spread = sum(float(((y - y.mean()) ** 2).sum()) for y, _ in groups) / dof
-    if spread == 0:
-        return Common(0.0, 0.0, dof)
-    if squares(1e-12 * spread) <= dof:
-        return Common(0.0, squares(1e-12 * spread) / dof, dof)
-    largest = spread
-    if squares(largest) >= dof:
-        return Common(largest, 1.0, dof)
-    tau2 = brentq(lambda t: squares(t) - dof, 1e-12 * spread, largest, xtol=spread * 1e-14)
-    return Common(float(tau2), 1.0, dof)
+    if (left := excess(least)) <= 0:
+        return 0.0, left / dof + 1
+    if excess(largest) >= 0:
+        return largest, 1.0
+    return float(brentq(excess, least, largest, xtol=largest * 1e-14, maxiter=500)), 1.0
 
 
 def pool(values: ArrayLike, within_u: ArrayLike, common: Common | None = None) -> Pooled:

@@ -4,9 +4,9 @@ from __future__ import annotations
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy.fft import irfft, next_fast_len, rfft
 
 from surveykit.core import Estimate, FloatArray
+from surveykit.statistics.bootstrap import autocovariance, stationary_u
 
 
 def autocorrelation(x: ArrayLike) -> FloatArray:
@@ -41,10 +41,8 @@ def autocorrelation(x: ArrayLike) -> FloatArray:
     if np.ptp(values) == 0:
         return np.full(values.size, np.nan)
     # Scaled first: the squares of very small or very large records stay within range.
-    deviation = (values - values.mean()) / np.ptp(values)
-    length = next_fast_len(2 * values.size - 1, real=True)
-    covariance = irfft(np.abs(rfft(deviation, length)) ** 2, length)[: values.size]
-    return np.asarray(covariance / covariance[0], dtype=np.float64)
+    covariance = autocovariance((values - values.mean()) / np.ptp(values))
+    return covariance / covariance[0]
 
 
 def integrated_time(correlation: ArrayLike) -> float:
@@ -129,7 +127,9 @@ def mean_of_series(x: ArrayLike, unit: str, method: str) -> Estimate:
     Returns
     -------
     Estimate
-        Mean; u = sd / sqrt(n_eff) with sd over n - 1; n; n_eff.
+        Mean; n; n_eff; u the larger of sd / sqrt(n_eff), sd over n - 1, and of the stationary
+        bootstrap's standard error, which by itself is too small for strongly correlated records
+        (at a first-order correlation of .95: .73 of the truth for 600, .57 for 200).
 
     Raises
     ------
@@ -138,7 +138,8 @@ def mean_of_series(x: ArrayLike, unit: str, method: str) -> Estimate:
 
     References
     ----------
-    JCGM 100:2008, 4.2.3 (independent records) with n replaced by the effective number.
+    JCGM 100:2008, 4.2.3 (independent records) with n replaced by the effective number;
+    `bootstrap.stationary_u`.
 
     Examples
     --------
@@ -149,8 +150,9 @@ def mean_of_series(x: ArrayLike, unit: str, method: str) -> Estimate:
     if values.size < 2:
         raise ValueError("the spread of a series needs at least two records, got one")
     n_eff = float(effective_sample_size(values))
-    return Estimate(value=float(values.mean()), u=float(values.std(ddof=1) / np.sqrt(n_eff)),
-                    unit=unit, n=values.size, n_eff=n_eff, method=method)
+    u = max(float(values.std(ddof=1) / np.sqrt(n_eff)), stationary_u(values))
+    return Estimate(value=float(values.mean()), u=u, unit=unit, n=values.size, n_eff=n_eff,
+                    method=method)
 
 
 def _series(x: ArrayLike) -> FloatArray:

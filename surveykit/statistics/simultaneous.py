@@ -48,7 +48,7 @@ def simultaneous(results: Sequence[Result], coverage: float) -> FloatArray:
     good = [i for i, r in enumerate(results) if np.isfinite(r.total).all()]
     if not good:
         return out
-    size = np.array([np.abs(results[i].total - results[i].value) for i in good])
+    size = np.array([np.abs(results[i].judged - results[i].value) for i in good])
     ordered = np.sort(size, axis=1)
     largest = np.zeros(size.shape[1])
     for one, order in zip(size, ordered, strict=True):
@@ -110,3 +110,19 @@ def end_error(total: FloatArray, coverage: float) -> float:
     ends = np.quantile(total, [max(tail - step, 0), tail + step, 1 - tail - step,
                                min(1 - tail + step, 1)])
     return float(max(ends[1] - ends[0], ends[3] - ends[2]) / 2)
+
+
+def tolerance(u: float, digits: int) -> float:
+    """Return half a unit of the last of so many significant digits of a standard uncertainty.
+
+    References
+    ----------
+    JCGM 101:2008, 7.9.2.
+
+    Examples
+    --------
+    >>> tolerance(0.35, 2), tolerance(0.35, 1)  # 35e-2 and 4e-1
+    (0.005, 0.05)
+    """
+    exponent = int(f"{u:.{digits - 1}e}".partition("e")[2])
+    return 0.5 * 10.0 ** (exponent - digits + 1)

@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 import hashlib
+from itertools import islice
 
 import numpy as np
 from scipy.special import ndtri, stdtrit
 
 from surveykit.core import Distribution, FloatArray
 
-HELD_BYTES = 256_000_000  # of vectors kept; a vector let go comes back the same
+HELD_BYTES = 128_000_000  # of vectors kept; a vector let go comes back the same
+_held: dict[tuple[int, int, str, str, float], FloatArray] = {}  # for all dates of one study
 
 
 class Draws:
@@ -52,7 +54,6 @@ class Draws:
             raise ValueError(f"draws need a size of at least 2, got {size!r}")
         self.seed = seed
         self.size = size
-        self._held: dict[tuple[str, str, float], FloatArray] = {}
 
     def standard(self, scope: str, distribution: Distribution = "normal") -> FloatArray:
         """Return the draws of a scope, of mean 0 and variance 1.
@@ -78,17 +79,17 @@ class Draws:
         ----------
         JCGM 101:2008, 6.4.2 (rectangular) and 6.4.7 (normal).
         """
-        key = (distribution, scope, np.inf)
-        if key not in self._held:
+        key = (self.seed, self.size, distribution, scope, np.inf)
+        if key not in _held:
             share = self._strata(scope)
             if distribution == "normal":
-                self._keep(key, ndtri(share))
+                _keep(key, ndtri(share))
             elif distribution == "rectangular":
-                self._keep(key, np.sqrt(3) * (2 * share - 1))
+                _keep(key, np.sqrt(3) * (2 * share - 1))
             else:
                 raise ValueError(f"distribution must be normal or rectangular, "
                                  f"got {distribution!r}")
-        return self._held[key]
+        return _held[key]
 
     def student(self, scope: str, dof: float) -> FloatArray:
         """Return draws of Student's t for the sampling of a scope (not scaled to variance 1).
@@ -116,10 +117,10 @@ class Draws:
         """
         if not dof > 0:
             raise ValueError(f"Student's t needs dof > 0, got {dof!r} for scope {scope!r}")
-        key = ("student", scope, float(dof))
-        if key not in self._held:
-            self._keep(key, stdtrit(float(dof), self._strata(f"student|{scope}")))
-        return self._held[key]
+        key = (self.seed, self.size, "student", scope, float(dof))
+        if key not in _held:
+            _keep(key, stdtrit(float(dof), self._strata(f"student|{scope}")))
+        return _held[key]
 
     def _strata(self, scope: str) -> FloatArray:
         digest = hashlib.sha256(f"{self.seed}|{scope}".encode()).digest()
@@ -127,8 +128,10 @@ class Draws:
         share = (stream.permutation(self.size) + stream.random(self.size)) / self.size
         return np.clip(share, 2.0**-53, 1 - 2.0**-53)
 
-    def _keep(self, key: tuple[str, str, float], vector: FloatArray) -> None:
-        while self._held and (len(self._held) + 1) * vector.nbytes > HELD_BYTES:
-            self._held.pop(next(iter(self._held)))  # the oldest; made anew when asked for again
-        vector.flags.writeable = False
-        self._held[key] = vector
+
+def _keep(key: tuple[int, int, str, str, float], vector: FloatArray) -> None:
+    largest = max([vector.nbytes, *(one.nbytes for one in islice(_held.values(), 1))])
+    while _held and (len(_held) + 1) * largest > HELD_BYTES:
+        _held.pop(next(iter(_held)))  # the oldest; made anew when asked for again
+    vector.flags.writeable = False
+    _held[key] = vector

@@ -7,7 +7,7 @@ from time import perf_counter
 import numpy as np
 import pytest
 
-from surveykit.physics.bands import TabulatedBand, band
+from surveykit.physics.bands import Band, band
 
 T = np.linspace(230.0, 360.0, 2601)
 RESPONSES = {
@@ -23,7 +23,7 @@ def test_any_response_is_inverted_within_a_millikelvin(name):
     """Against the Planck integral over the response, summed at 40,001 wavelengths (trapezium)."""
     at, response = RESPONSES[name]
     fine = np.unique(np.concatenate([np.linspace(at[0], at[-1], 40_001), at]))
-    here = TabulatedBand(at[0], at[-1], tuple(at), tuple(response))
+    here = Band(at[0], at[-1], tuple(zip(at, response, strict=True)))
     weight = np.interp(fine, at, response)
     for t in (230.0, 260.0, 300.0, 333.0, 360.0):
         spectral = 1.191042972397e8 / fine**5 / np.expm1(14387.768775 / (fine * t))

@@ -39,7 +39,8 @@ SCATTER = {
     "clear": {"temperature": (0.4, 0.15), "albedo": (0.004, 0.0015), "ndvi": (0.008, 0.003)},
     "mixed": {"temperature": (1.0, 0.4), "albedo": (0.012, 0.004), "ndvi": (0.020, 0.008)},
 }
-FOLLOWS, FORM, DEPENDENCE = 0.3, 0.02, 0.1
+FOLLOWS, DEPENDENCE, WIDER = 0.3, 0.1, "path"
+FORM, GREEN = (0.01, 0.02), 0.3  # matched, partly matched; doubled above this NDVI
 DATES = ("yard-2025-06-11", "yard-2025-07-16")
 
 _WAVES = np.linspace(8e-6, 14e-6, 601)
@@ -75,9 +76,13 @@ class Simulated:
     plain: dict[tuple[str, str, str], tuple[float, float]] = field(default_factory=dict)
 
 
-def simulate(seed: int, k: int, sky: str) -> Simulated:
-    """Return one survey; `k` passes a surface, out and back; sky clear or mixed (broken)."""
+def simulate(seed: int, k: int, sky: str, wider: float = 1.0) -> Simulated:
+    """Return one survey; `k` passes a surface, out and back; sky clear or mixed (broken).
+
+    The passes of the surface `WIDER` scatter so many times as widely as those of the others.
+    """
     rng = np.random.default_rng([seed, k, sky == "clear"])
+    times = np.array([wider if s == WIDER else 1.0 for s in SURFACES])[:, None]
     made = Simulated()
     errors: dict[str, float] = {}
 
@@ -94,6 +99,7 @@ def simulate(seed: int, k: int, sky: str) -> Simulated:
     red = rng.uniform(0.05, 0.25, 6)
     index = rng.uniform(0.05, 0.7, 6)
     zeniths = rng.uniform(25.0, 50.0, 2)
+    earlier: tuple[float, ...] = ()
     for number, date in enumerate(DATES):
         moved = np.array([CHANGED.get(s, 0.0) * number for s in SURFACES])
         light, wind = rng.uniform(500, 950), rng.uniform(0.5, 4.0)
@@ -104,20 +110,22 @@ def simulate(seed: int, k: int, sky: str) -> Simulated:
 
         # temperature
         tau, s = SCATTER[sky]["temperature"]
-        form = np.where(np.arange(6) > 0, FORM * excess * rng.standard_normal(6) * number, 0.0)
+        seen = light, wind, float(np.cos(np.radians(zenith)))
+        share = np.where(index > GREEN, 2, 1) * FORM[not _matched(seen, earlier, sky)]
+        form = np.where(np.arange(6) > 0, share * excess * rng.standard_normal(6) * number, 0.0)
+        earlier = seen
         mean = air + theta * excess + form + moved * RELEVANT["temperature"]
         slope = rng.normal(0.0, 0.7) * theta * (
             1 + np.where(np.arange(6) > 0, FOLLOWS * rng.standard_normal(6), 0.0))
         course = slope[:, None] * (hours - hours.mean())
-        truth = mean[:, None] + course + tau * rng.standard_normal((6, k))
+        truth = mean[:, None] + course + tau * times * rng.standard_normal((6, k))
         emissivity = np.array([0.95 + 0.01 * error(f"emissivity:{n}") for n in SURFACES])[:, None]
         stated_air = air + 0.5 * error("kit:air:offset")
         stated_humidity = humidity + 0.05 * error("kit:humidity:offset")
-        above = ((0.95 + 0.05 * error(f"{date}:sky view", "rectangular"))
-                 * (1 + 0.15 * error(f"{date}:sky")) * sky_of(air, humidity))
+        view = 0.95 + 0.05 * error(f"{date}:sky view", "rectangular")
+        above = view * (1 + 0.15 * error(f"{date}:sky")) * sky_of(air, humidity)
         wall_k = stated_air + 10.0 * error(f"{date}:walls")
-        share = 0.95 + 0.05 * error(f"{date}:sky view", "rectangular")
-        around = above + (1 - share) * (0.92 * radiance(wall_k) + 0.08 * above / share)
+        around = above + (1 - view) * (0.92 * radiance(wall_k) + 0.08 * above / view)
         brightness = kelvin_of(emissivity * radiance(truth) + (1 - emissivity) * around)
         logged = brightness - 0.2 * error("kit:target:offset") + s * rng.standard_normal((6, k))
         fixed = {"band_low_um": 8.0, "band_high_um": 14.0, "walls_emissivity": 0.92,
@@ -144,7 +152,7 @@ def simulate(seed: int, k: int, sky: str) -> Simulated:
         turn = _turn(zenith, zeniths[0], DEPENDENCE)
         lean = np.array([error(f"zenith dependence:{n}") for n in SURFACES]) * number
         level = albedo * (1 + (turn - 1) * lean) + moved * RELEVANT["albedo"]
-        patch = level[:, None] + tau * rng.standard_normal((6, k))
+        patch = level[:, None] + tau * times * rng.standard_normal((6, k))
         down = light * rng.uniform(0.8, 1.1, (6, k))
         tilt = 1 + 0.006 * rng.standard_normal((6, k))
         up = patch * down
@@ -171,7 +179,7 @@ def simulate(seed: int, k: int, sky: str) -> Simulated:
         # NDVI
         tau, s = SCATTER[sky]["ndvi"]
         level = index + moved * RELEVANT["ndvi"]
-        patch = level[:, None] + tau * rng.standard_normal((6, k))
+        patch = level[:, None] + tau * times * rng.standard_normal((6, k))
         noisy = patch + s * rng.standard_normal((6, k))
         reds = np.broadcast_to(red[:, None], (6, k)) * rng.uniform(0.9, 1.1, (6, k))
         nirs = reds * (1 + noisy) / (1 - noisy)
@@ -192,6 +200,12 @@ def simulate(seed: int, k: int, sky: str) -> Simulated:
             made.change[name, quantity] = float(CHANGED.get(name, 0.0) * RELEVANT[quantity])
             # the sun's height stands in the interval of an albedo's change: it is no change
     return made
+
+
+def _matched(now: tuple[float, ...], then: tuple[float, ...], sky: str) -> bool:
+    """Whether irradiance, wind and sun height of two clear dates agree as far as is declared."""
+    return bool(sky == "clear" and then and abs(now[0] / then[0] - 1) <= 0.10
+                and abs(now[1] - then[1]) <= 1.0 and abs(now[2] - then[2]) <= 0.05)
 
 
 def _turn(zenith: float, other: float, d: float) -> float:

@@ -1,6 +1,7 @@
 """How often intervals hold the truth and verdicts are right: the package beside a spreadsheet.
 
     python tests/coverage/study.py 2000            # all cells, two processes, prints the table
+    python tests/coverage/study.py 2000 common     # what a common scatter costs an unlike surface
 
 Each seed is a survey of six surfaces on two dates with other weather (simulator.py); its pass
 estimates go straight to the evidence stage, with 2,000 draws.
@@ -10,6 +11,7 @@ estimates go straight to the evidence stage, with 2,000 draws.
 from __future__ import annotations
 
 import sys
+import time
 from concurrent.futures import ProcessPoolExecutor
 from pathlib import Path
 
@@ -24,7 +26,7 @@ import numpy as np
 import pandas as pd
 from pass_values import parameters
 from scipy import stats
-from simulator import CHANGED, DATES, QUANTITIES, RELEVANT, SURFACES, simulate
+from simulator import CHANGED, DATES, QUANTITIES, RELEVANT, SURFACES, WIDER, simulate
 
 from surveykit.evidence.comparability import Date
 from surveykit.evidence.compare import changes, differences
@@ -118,6 +120,11 @@ def study(seeds: int, *, passes: Iterable[int] = PASSES, skies: Iterable[str] = 
             blocks = list(pool.map(_block, jobs))
     else:
         blocks = [_block(job) for job in jobs]
+    return gathered(blocks)
+
+
+def gathered(blocks: Iterable[pd.DataFrame]) -> pd.DataFrame:
+    """Return the same of blocks of seeds."""
     made = pd.concat(blocks).groupby(["passes", "sky", "quantity", "question"]).agg(
         n=("n", "sum"), hits=("hits", "sum"), half=("half", "median"),
         student=("student", "median"), seeds=("seeds", "sum")).reset_index()
@@ -143,5 +150,46 @@ def printed(made: pd.DataFrame) -> str:
     return "\n".join(lines)
 
 
+def common_cells(seeds: int, factors: Iterable[float] = (1.0, 2.0, 3.0)) -> pd.DataFrame:
+    """Return the share of values held under either way of counting the scatter between passes.
+
+    Three passes under a broken sky; one surface scatters so many times as widely as the others.
+    """
+    rows = []
+    for factor in factors:
+        for seed in range(seeds):
+            survey = simulate(seed, 3, "mixed", factor)
+            for way in ("own", "common"):
+                found = groups(DATES[0], survey.passes[DATES[0]], DRAWS, coverage=0.95,
+                               between_passes=way)
+                table = surface_table(found, 0.95)
+                zero = np.where(table["quantity"] == "temperature", 273.15, 0.0)
+                for row, shift in zip(table.to_dict("records"), zero, strict=True):
+                    true = survey.value[DATES[0], row["surface"], row["quantity"]] - shift
+                    rows.append({"times": factor, "between_passes": way,
+                                 "surface": "the wider" if row["surface"] == WIDER else "others",
+                                 "quantity": row["quantity"],
+                                 "hit": row["lower"] <= true <= row["upper"]})
+    return pd.DataFrame(rows).pivot_table(
+        index=["times", "between_passes", "surface"], columns="quantity", values="hit") * 100
+
+
+def unchanged(seed: int, k: int, sky: str) -> dict[str, list[bool]]:
+    """Return by quantity which unchanged surfaces were called changed between two weathers."""
+    survey = simulate(seed, k, sky)
+    dates = []
+    for date, passes in survey.passes.items():
+        given = parameters(date, date[5:], sky="clear" if sky == "clear" else "broken")
+        dates.append(Date(given, {g.key: g for g in groups(date, passes, DRAWS, coverage=0.95)}))
+    table = changes(dates[1], (dates[0],), DRAWS)
+    still = table[(table["verdict"] != "") & ~table["surface"].isin(list(CHANGED))]
+    return {q: some["verdict"].isin(SHOWN).tolist() for q, some in still.groupby("quantity")}
+
+
 if __name__ == "__main__":
-    print(printed(study(int(sys.argv[1]) if len(sys.argv) > 1 else 200, workers=2)))  # noqa: T201
+    began, count = time.time(), int(sys.argv[1]) if len(sys.argv) > 1 else 200
+    if sys.argv[2:] == ["common"]:
+        print(common_cells(count).round(1).to_string())  # noqa: T201
+    else:
+        print(printed(study(count, workers=2)))  # noqa: T201
+    print(f"\n{count} seeds a cell, {DRAWS.size} draws, {time.time() - began:.0f} s")  # noqa: T201

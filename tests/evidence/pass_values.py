@@ -6,13 +6,15 @@ from collections.abc import Sequence
 from pathlib import Path
 from typing import Any
 
+import numpy as np
 from small_survey import KIT, SITE
 
 from surveykit.core import Input
 from surveykit.evidence.comparability import Date
 from surveykit.evidence.conditions import Sky
 from surveykit.evidence.estimates import PassEstimate
-from surveykit.evidence.models import evaluate
+from surveykit.evidence.models import MODELS
+from surveykit.evidence.moving import Batch
 from surveykit.evidence.surfaces import Group, groups
 from surveykit.intake.params import Campaign, Channel, Instrument, Parameters
 from surveykit.intake.params.settings import Settings
@@ -62,6 +64,18 @@ def kelvin(value: float, *uncertain: Input) -> tuple[Input, ...]:
 
 def error(name: str, u: float, scope: str, distribution: Any = "normal") -> Input:
     return Input(name, 0.0, u, scope, f"source of {scope}", distribution)
+
+
+def evaluate(model: str, these: Sequence[Input]) -> float:
+    """Return the model at its inputs' own values."""
+    return float(MODELS[model]({i.name: i.value for i in these}))
+
+
+def sensitivities(model: str, these: Sequence[Input]) -> dict[str, float]:
+    """Return per uncertain input its signed contribution, as the budget of one pass has it."""
+    parts = ({i.name: np.array([getattr(i, part)]) for i in these} for part in ("value", "u"))
+    batch = Batch((0,), model, tuple(these), *parts)
+    return {name: float(moved[0]) for name, moved in batch.slopes.items()}
 
 
 def channel_of(logger: str, **changed: Any) -> dict[str, Channel]:

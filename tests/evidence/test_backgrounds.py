@@ -7,12 +7,12 @@ import pytest
 from one_estimate import DAY_SCOPE, HEADS, inputs
 from small_survey import NDVI, STAND_OFF, lines, row, small
 
+from surveykit.physics.bands import band
 from surveykit.physics.surroundings import (
     hemispheric_emissivity,
     sky_emissivity_window,
     vapour_pressure_hpa,
 )
-from surveykit.physics.thermal import band
 
 ICE, N = 273.15, 400
 B = band(8.0, 14.0)
@@ -162,6 +162,23 @@ def test_emissivity_from_ndvi(tmp_path, form, value):
     assert e.value == pytest.approx(value, abs=5e-4)
     assert e.u > 0.01
     assert any("never for synthetic turf" in f and form in f for f in one.flags)
+
+
+@pytest.mark.parametrize(("nir", "value"), [(30.0, 0.9768), (90.0, None)])
+def test_emissivity_logarithmic_in_ndvi(tmp_path, nir, value):
+    """1.0094 + .047 ln .5 = .97682 (Van de Griend & Owe 1993, from memory); .8 is beyond its range.
+    """
+    logs = log(47) | {name: lines(name, n=N, **{b: np.full(N, level) + 1e-3 * CALM
+                      for b, level in some.items()}) for name, some in zip(HEADS, (
+                          {"red": 100.0, "nir": 100.0}, {"red": 10.0, "nir": nir}),
+                          strict=True)}
+    ndvi = row(**(NDVI | {"start": "12:02:40", "stop": "12:04:40"}))
+    one = made(tmp_path, logs, ndvi, **from_way("ndvi", u=0.01, form="logarithmic"))
+    if value is None:
+        assert one.note.startswith("NDVI 0.80 lies outside .157 to .727")
+    else:
+        assert inputs(one)["emissivity"].value == pytest.approx(value, abs=1e-4)
+        assert any("never for synthetic turf" in f for f in one.flags)
 
 
 def test_emissivity_from_ndvi_needs_an_ndvi(tmp_path):

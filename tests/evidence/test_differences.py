@@ -23,7 +23,7 @@ def test_words_of_a_difference():
     assert made[frozenset(("control", "lawn"))].verdict == "lower"
     near = by_pair(differences(heat("june", {"court": 320.0, "lawn": 320.0}), DRAWS))
     assert near[frozenset(("court", "lawn"))].verdict == "equivalent"
-    near = by_pair(differences(heat("june", {"court": 320.0, "lawn": 320.0}, u=0.6), DRAWS))
+    near = by_pair(differences(heat("june", {"court": 320.0, "lawn": 320.0}, u=0.8), DRAWS))
     row = near[frozenset(("court", "lawn"))]
     assert row.verdict == "no difference shown"
     # (t.975 + t.8) u with 6 dof: 2.4469 + .9057

@@ -5,9 +5,11 @@ from __future__ import annotations
 import numpy as np
 import pytest
 from one_estimate import HEADS, albedo, changed, made, stand_off
+from pass_values import evaluate
 from small_survey import ALBEDO, CONTACT, LONGWAVE, NDVI, lines, readings, row, small
 
-from surveykit.evidence.models import evaluate
+from surveykit.evidence.hills import TWO_KINDS
+from surveykit.evidence.surfaces import pass_tables
 
 CASES = {
     "stand-off": lambda root: stand_off(root),
@@ -48,6 +50,23 @@ def test_few_effective_records_are_flagged(tmp_path):
     lax = survey.with_settings(statistics={"few_effective": 1.0}).by_name()["C1-albedo-1"]
     assert "few effective records" not in lax.flags
     assert "few effective records" not in albedo(tmp_path / "clean").flags
+
+
+def test_a_pass_over_two_kinds_of_ground_shows_its_histogram(tmp_path):
+    """A third of the records over ground as bright again: flagged, shown, and not corrected."""
+    rng = np.random.default_rng(6)
+    two = readings("ground", 160, 1) * np.where(rng.random(160) < 1 / 3, 2.0, 1.0)
+    one = small(tmp_path, [row(**ALBEDO)], {"pair": lines("pair", ground=two)}).estimates()[0]
+    assert TWO_KINDS in one.flags
+    bars = pass_tables("yard", [one])["histograms"]
+    assert bars["n_records"].sum() == one.n_records
+    assert (bars["lower"].iloc[1:].to_numpy() == bars["upper"].iloc[:-1].to_numpy()).all()
+    assert bars["n_records"].iloc[5:15].sum() < 5  # two hills, nothing between
+    middle = (bars["lower"] + bars["upper"]) / 2
+    assert np.average(middle, weights=bars["n_records"]) == pytest.approx(one.value, rel=0.02)
+    plain = albedo(tmp_path / "one kind")
+    assert TWO_KINDS not in plain.flags
+    assert pass_tables("yard", [plain])["histograms"].empty
 
 
 # ---- calibrations, refusals of the records

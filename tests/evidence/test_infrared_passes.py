@@ -5,10 +5,13 @@ from __future__ import annotations
 import numpy as np
 import pytest
 from one_estimate import WEATHER, changed, changed_column, inputs, made, stand_off
+from pass_values import sensitivities
 from small_survey import CONTACT, KIT, STAND_OFF, lines, readings
 
 from surveykit.evidence.estimates import display
-from surveykit.evidence.models import sensitivities
+from surveykit.physics.bands import band
+from surveykit.physics.surroundings import sky_radiance
+from surveykit.physics.thermal import contact_temperature_k
 
 
 def test_worked_case_of_a_stand_off_pass(tmp_path):
@@ -68,11 +71,24 @@ def test_a_surface_without_emissivity_has_no_temperature(tmp_path):
     assert one.note == "surfaces.court.emissivity is missing"
 
 
-def test_a_contact_pass_needs_the_housing(tmp_path):
+def test_a_contact_pass_without_its_housing_keeps_its_reading(tmp_path):
+    """The whole term, a bore as warm as the air at 30 degC under ground at 47, stays as a
+    rectangle: emissivity .95 and a bore of .95 do 0.7 K there (from the cavity's closed form).
+    """
     kit = changed("thermal", columns={"target": KIT["thermal"]["columns"]["target"]})
     log = [",".join(line.split(",")[:2]) for line in lines("thermal")]
-    one = stand_off(tmp_path, CONTACT, logs=WEATHER | {"thermal": log}, kit=kit)
-    assert one.note == "the housing temperature of the contact head is missing"
+    one = stand_off(tmp_path / "a", CONTACT, logs=WEATHER | {"thermal": log}, kit=kit)
+    flag = "housing temperature not logged: emissivity and bore not corrected"
+    assert flag in one.flags
+    assert list(dict(one.steps)) == ["raw", "cooling under the head"]
+    assert dict(one.steps)["raw"] == pytest.approx(one.value_raw, abs=1e-6)
+    window, read, gap = band(8.0, 14.0), one.value_raw, inputs(one)["rim_gap"].value
+    sky = float(sky_radiance(window, 303.15, 0.3))
+    whole = float(contact_temperature_k(window, read, 0.95, 303.15, 0.95, gap, sky)) - read
+    assert whole > 0.7
+    assert sensitivities("contact", one.inputs)["correct_bore_left"] == pytest.approx(
+        whole / np.sqrt(3), rel=0.02)
+    assert flag not in stand_off(tmp_path / "b", CONTACT).flags
 
 
 def test_the_bore_belongs_to_the_calibration(tmp_path):

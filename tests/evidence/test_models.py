@@ -9,11 +9,26 @@ from __future__ import annotations
 import numpy as np
 import pytest
 from checks import check, names
-from pass_values import DRAWS, NDVI_REST, albedo, error, inputs, kelvin, ndvi
+from hypothesis import given
+from hypothesis import strategies as st
+from pass_values import (
+    DRAWS,
+    NDVI_REST,
+    albedo,
+    error,
+    evaluate,
+    inputs,
+    kelvin,
+    ndvi,
+    sensitivities,
+)
+from uncertainties import ufloat
 
 from surveykit.core import Input
-from surveykit.evidence.models import MODELS, deviations, evaluate, sensitivities
-from surveykit.physics.thermal import band, contact_temperature_k, sky_radiance
+from surveykit.evidence.models import MODELS, deviations
+from surveykit.physics.bands import band
+from surveykit.physics.surroundings import sky_radiance
+from surveykit.physics.thermal import contact_temperature_k
 from surveykit.statistics.draws import Result, summarise
 
 ICE = 273.15
@@ -242,6 +257,15 @@ def test_ndvi_of_two_bands_with_two_per_cent_each(index, u):
     these = ndvi(1 - index, 1 + index, error("nir_up_gain_error", 0.02, "nir"),
                  error("red_up_gain_error", 0.02, "red"))
     assert deviations("ndvi", these, DRAWS, "no pass").std() == pytest.approx(u, abs=5e-4)
+
+
+@given(st.floats(0.02, 0.9), st.floats(0.02, 0.9), st.floats(0.001, 0.05), st.floats(0.001, 0.05))
+def test_ndvi_budget_against_the_uncertainties_library(red, nir, u_red, u_nir):
+    r, n = ufloat(red, u_red * red), ufloat(nir, u_nir * nir)
+    these = ndvi(red, nir, error("red_up_gain_error", u_red, "red"),
+                 error("nir_up_gain_error", u_nir, "nir"))
+    moved = sensitivities("ndvi", these).values()
+    assert np.hypot(*moved) == pytest.approx(((n - r) / (n + r)).std_dev, rel=3e-3)
 
 
 @pytest.mark.parametrize(("light", "index"), [(500, 0.822), (100, 0.765), (30, 0.617)])

@@ -5,12 +5,13 @@ from __future__ import annotations
 import numpy as np
 import pytest
 from one_estimate import UNTOUCHED, albedo, changed, changed_column, inputs, stand_off
+from pass_values import sensitivities
 from small_survey import ALBEDO, CERTAIN, CONTACT, lines, readings, row, small
 
-from surveykit.evidence.models import sensitivities
+from surveykit.physics.bands import band
 from surveykit.physics.footprint import rectangle_share, self_shade
 from surveykit.physics.shortwave import patch_albedo, zenith_factor
-from surveykit.physics.thermal import band, brightness_without_setting
+from surveykit.physics.thermal import brightness_without_setting
 
 DISC = {"quantity": "albedo", "height_cm": "12", "length_m": "1"}
 WEATHER = {"weather": lines("weather", n=5, step_s=60)}
@@ -111,13 +112,22 @@ def test_a_response_that_is_not_flat_is_budgeted(tmp_path):
 
 def test_stand_off_steps_and_switch(tmp_path):
     one = stand_off(tmp_path / "on")
-    assert list(steps(one)) == ["raw", "emissivity and surroundings"]
+    assert list(steps(one)) == ["raw", "emissivity", "reflected surroundings"]
     off = stand_off(tmp_path / "off", settings=CERTAIN | {
-        "temperature": {"correct_surroundings": False}})
+        "temperature": {"correct_emissivity": False}})
     assert off.value == pytest.approx(one.value_raw, abs=1e-6)
-    left = sensitivities("stand-off", off.inputs)["correct_surroundings_left"]
+    left = sensitivities("stand-off", off.inputs)["correct_emissivity_left"]
     assert left == pytest.approx((one.value - one.value_raw) / np.sqrt(3), rel=0.01)
-    assert any("correct_surroundings is off" in f for f in off.flags)
+
+
+def test_emissivity_and_what_is_reflected_are_two_steps(tmp_path):
+    """47 degC, emissivity .95: divided by it alone, and less 5 % of the sky (by the physics)."""
+    one = stand_off(tmp_path, logs=WEATHER | {"thermal": lines("thermal", target=np.full(
+        160, 47.0) + np.resize([0.01, -0.01], 160))})
+    window = band(8.0, 14.0)
+    alone = float(window.temperature_k(window.radiance(47 + 273.15) / 0.95))
+    assert steps(one)["emissivity"] == pytest.approx(alone, abs=0.002)
+    assert steps(one)["reflected surroundings"] == pytest.approx(49.567 + 273.15, abs=0.01)
 
 
 def test_an_emissivity_set_in_the_instrument_is_undone(tmp_path):
@@ -137,7 +147,8 @@ def test_the_reflected_setting_is_the_housings_where_none_is_stated(tmp_path):
 
 def test_contact_steps(tmp_path):
     one = stand_off(tmp_path, CONTACT)
-    assert list(steps(one)) == ["raw", "emissivity and bore", "rim gap", "cooling under the head"]
+    assert list(steps(one)) == ["raw", "emissivity", "reflected bore", "rim gap",
+                                "cooling under the head"]
     flag = "rim gap not corrected"
     off = stand_off(tmp_path / "off", CONTACT, settings=CERTAIN | {
         "temperature": {"correct_rim_gap": False}})

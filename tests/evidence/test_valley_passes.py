@@ -97,4 +97,4 @@ def test_the_budget_without_darks_names_its_zeros(valley):
     groups = {g.quantity: g for g in pooled(valley().estimates(), campaign="valley-winter-day")}
     scopes = [row["scope"] for row in groups["albedo"].budget]
     assert {"station-2015:ghi:gain", "station-2015:uw_solar:gain", "station-2015:ghi:offset",
-            "station-2015:uw_solar:offset", "station-2015:ghi:gain:direction"} <= set(scopes)
+            "station-2015:uw_solar:offset", "station-2015:ghi:gain:direction at 60"} <= set(scopes)

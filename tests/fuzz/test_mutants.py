@@ -1,6 +1,7 @@
 """Spoilt files are read as if clean, accounted for, or refused at their place; never else.
 
-300 mutants by default, 5,000 with SURVEYKIT_FULL=all; the seed stands in the names of the tests.
+300 mutants by default, SURVEYKIT_MUTANTS=1600 in continuous integration, 5,000 with
+SURVEYKIT_FULL=all; the seed stands in the names of the tests.
 What a mutant comes to is held against the clean campaign: its numbers are the same, or the ledger,
 the checks, the flags or the notes differ; a spoilt parameter file that still loads must say
 something else, since what it says is printed with the report. The ledger is held against the lines
@@ -21,7 +22,8 @@ from surveykit.core import InputError
 
 SEED = 20250611
 FULL = os.environ.get("SURVEYKIT_FULL") == "all"
-MUTANTS, BATCHES = 5000 if FULL else 300, 20
+MUTANTS = 5000 if FULL else int(os.environ.get("SURVEYKIT_MUTANTS", "300"))
+BATCHES = 20
 CLEAN = yard.clean_files()
 STATED = (yard.PARAMETERS, yard.KIT_FILE)
 LOCATED = re.compile(r"(params/[\w./-]+|data/[\w./-]+|loggers\.\w+)( line \d+| row \d+|, line \d+)?"

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import csv
+import re
 import statistics
 import subprocess
 import sys
@@ -68,12 +69,12 @@ def test_ten_faults_are_told_in_one_go_and_soon(project):
 
 
 BARE_S, ASKED_S = 0.45, 1.5  # the bare imports on the quiet machine on which 1.5 s are asked
-HEADROOM = 1.4  # on a machine that others share
 
 
-def test_ten_faults_are_told_soon(project):
+@pytest.mark.parametrize("faults", [PLANTED, []], ids=["ten faults", "clean"])
+def test_what_is_found_is_told_soon(project, faults):
     """Measured in turns with the imports that any reader needs, as others use this machine."""
-    for fault in PLANTED:
+    for fault in faults:
         plant(project, fault)
     took: dict[str, list[float]] = {"check": [], "bare": []}
     for _ in range(3):
@@ -85,7 +86,7 @@ def test_ten_faults_are_told_soon(project):
             took[name].append(time.perf_counter() - start)
     ratio = min(took["check"]) / min(took["bare"])
     print(f"check took {min(took['check']):.2f} s, {ratio:.2f} of the bare imports")  # noqa: T201
-    assert ratio <= HEADROOM * ASKED_S / BARE_S
+    assert ratio <= ASKED_S / BARE_S
 
 
 @pytest.mark.parametrize("place", range(len(PLANTED)))
@@ -136,22 +137,49 @@ def test_what_was_understood_is_shown_for_each_logger(project):
     text = done.stdout
     # the same from the file by Python's csv: rows, ends, the median of the readings
     with (project / DATA / "weather.csv").open(encoding="windows-1252", newline="") as file:
-        rows = list(csv.reader(file, delimiter=";"))[3:]
-    good = [row for row in rows if len(row) == 4]
-    ends = [datetime.strptime(row[0], "%d.%m.%Y %H:%M") for row in (good[0], good[-1])]  # noqa: DTZ007
+        rows = list(csv.reader(file, delimiter=";"))[4:]  # two lines above the header, one below
+    good = [row for row in rows if len(row) == 5]
+    ends = [datetime.strptime(" ".join(row[:2]), "%d.%m.%Y %H:%M")  # noqa: DTZ007
+            for row in (good[0], good[-1])]
     local = [moment + timedelta(hours=1) for moment in ends]
     assert (f"weather: {len(rows)} records in 1 file, every 60 s, 2025-06-11 {ends[0]:%H:%M:%S} to "
             f"{ends[1]:%H:%M:%S} UTC ({local[0]:%H:%M:%S} to {local[1]:%H:%M:%S} Europe/Lisbon)"
             ) in text
-    median = statistics.median(float(row[2].replace(",", ".")) for row in good)
+    median = statistics.median(float(row[3].replace(",", ".")) for row in good)
     assert f"humidity  relative humidity, logged in %, typically {median:.4g} %" in text
     assert " records in 2 files, every 0.5 s" in text
     assert "unreadable line" in text
 
 
-def test_check_brings_no_drawing_and_no_notebooks():
-    code = ("import sys; import surveykit.checking, surveykit.cli; "
-            "print([m for m in ('matplotlib', 'seaborn', 'papermill', 'nbconvert', 'scipy.stats')"
-            " if m in sys.modules])")
-    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
-    assert done.stdout.strip() == "[]"
+def test_check_brings_no_drawing_no_notebooks_and_no_scipy(project):
+    code = (f"import sys; from surveykit.cli import main; main(['check', {FILE!r}]); "
+            "print([m for m in ('matplotlib', 'seaborn', 'papermill', 'nbconvert', 'scipy', "
+            "'pvlib') if m in sys.modules])")
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True,
+                          cwd=project)
+    assert done.stdout.splitlines()[-2:] == ["  no fault found", "[]"]
+
+
+def test_what_became_of_each_clock_is_shown(project):
+    lines = surveykit(project, "check", FILE).stdout.splitlines()
+    told = {line.split()[2].rstrip(":"): line for line in lines if line.startswith("  clock of ")}
+    assert list(told) == ["thermal", "shortwave", "rednir-sky", "rednir-ground", "weather"]
+    # true by demo_data/truth.json: 12.4 and -6.1 s at the day's beginning, 38 and -24 ppm
+    assert re.fullmatch(r"  clock of thermal: cover events: \+12\.\d\d s, \+\d+ ppm, u 1\.\d s",
+                        told["thermal"])
+    assert told["shortwave"] == "  clock of shortwave: declared: -4.00 s, u 0.5 s"
+    assert "aligned with rednir-sky, by covers: -6." in told["rednir-ground"]
+    assert "not checked: +0.00 s, u 2 s; nobody compared" in told["weather"]
+
+
+def test_a_refused_clock_is_shown_with_its_reason(project):
+    plant(project, (FILE, "clock: {cover_events: true}", "clock: {align_with: shortwave}", []))
+    sheet = project / SHEET
+    rows = sheet.read_text(encoding="utf-8").splitlines(keepends=True)
+    sheet.write_text("".join(row for row in rows if not row.startswith("cover,")),
+                     encoding="utf-8")
+    done = surveykit(project, "check", FILE)
+    assert done.returncode == 0
+    refused = [line for line in done.stdout.splitlines() if "refused: " in line]
+    assert [line.split()[2] for line in refused] == ["thermal:", "rednir-ground:"]
+    assert all("the field sheet has no cover row" in line for line in refused)

@@ -12,11 +12,13 @@ from pathlib import Path
 import numpy as np
 import pandas as pd
 import pytest
+from numpy.testing import assert_allclose
 from under_sky import START, log, sheet, sky, survey
 
 from surveykit.intake.aligning import align, read_logs
 from surveykit.intake.clocks.checking import sun_shift
 from surveykit.intake.params import load
+from surveykit.physics.sun import clear_sky_shape
 
 DATA = Path(__file__).parent.parent / "data/valley-winter-day"
 SITE = (37.70, -105.92, 2317.0)
@@ -150,3 +152,11 @@ def test_clouds_do_not_look_like_a_wrong_hour():
         found = sun_shift(START + (time_s * 1e9).astype("int64"), light, 41.3, -7.75, 120.0,
                           small_min=12.5)
         assert found is None or not (found.telling and abs(found.shift_min) > 25)
+
+
+def test_the_shape_of_a_clear_sky_is_that_of_an_independent_library():
+    from pvlib.clearsky import haurwitz
+
+    zenith = np.array([0.0, 30.0, 60.0, 85.0, 89.0, 91.0, 120.0])
+    assert_allclose(clear_sky_shape(np.cos(np.radians(zenith))),
+                    haurwitz(pd.Series(zenith))["ghi"].to_numpy(), rtol=1e-12, atol=1e-12)

@@ -13,26 +13,26 @@ from hypothesis import given
 from hypothesis import strategies as st
 from scipy.integrate import quad
 
-from surveykit.physics import thermal
+from surveykit.physics import bands
 
-WINDOW = thermal.band(8.0, 14.0)
+WINDOW = bands.band(8.0, 14.0)
 ZERO_C = 273.15
 
 
 def test_stefan_boltzmann_constant_codata():
     one = check("sigma")
-    assert pytest.approx(one.expected, abs=one.tol) == thermal.SIGMA.value
+    assert pytest.approx(one.expected, abs=one.tol) == bands.SIGMA.value
 
 
 def test_radiation_constants_codata_2022():
     # CODATA 2022 (exact): c1L = 1.191042972e-16 W m2 sr-1, c2 = 1.438776877e-2 m K
-    assert pytest.approx(1.191042972e8, rel=1e-9) == thermal.C1L.value
-    assert pytest.approx(14387.76877, rel=1e-9) == thermal.C2.value
+    assert pytest.approx(1.191042972e8, rel=1e-9) == bands.C1L.value
+    assert pytest.approx(14387.76877, rel=1e-9) == bands.C2.value
 
 
 def test_planck_radiance_check_value():
     one = check("planck_radiance")
-    got = thermal.planck_radiance(one.input["um"], one.input["K"])
+    got = bands.planck_radiance(one.input["um"], one.input["K"])
     assert got == pytest.approx(one.expected, abs=one.tol)
 
 
@@ -41,13 +41,13 @@ def test_planck_radiance_against_astropy(t_k):
     um = np.array([3.0, 8.0, 10.0, 14.0, 40.0])
     body = BlackBody(t_k * units.K, scale=1.0 * units.Unit("W m-2 sr-1 um-1"))
     expected = body(um * units.um).to_value("W m-2 sr-1 um-1")
-    np.testing.assert_allclose(thermal.planck_radiance(um, t_k), expected, rtol=1e-9)
+    np.testing.assert_allclose(bands.planck_radiance(um, t_k), expected, rtol=1e-9)
 
 
 @pytest.mark.parametrize("name", names("bb_fraction_"))
 def test_blackbody_fraction_check_values(name):
     one = check(name)
-    got = thermal.blackbody_fraction(one.input["lambdaT_um_K"])
+    got = bands.blackbody_fraction(one.input["lambdaT_um_K"])
     assert got == pytest.approx(one.expected, abs=one.tol)
 
 
@@ -62,12 +62,12 @@ def handbook():
 
 def test_blackbody_fraction_computed_table():
     product, exact, _, _ = handbook()
-    np.testing.assert_allclose(thermal.blackbody_fraction(product), exact, atol=1e-6, rtol=0)
+    np.testing.assert_allclose(bands.blackbody_fraction(product), exact, atol=1e-6, rtol=0)
 
 
 def test_blackbody_fraction_handbook_table_without_its_misprints():
     product, _, printed, misprint = handbook()
-    error = printed - thermal.blackbody_fraction(product)
+    error = printed - bands.blackbody_fraction(product)
     assert np.abs(error[~misprint]).max() < 6e-5
     # three misprints of the handbook, each .0010 too high
     assert list(product[misprint]) == [5200, 11500, 15000]
@@ -75,17 +75,17 @@ def test_blackbody_fraction_handbook_table_without_its_misprints():
 
 
 def test_blackbody_fraction_at_its_ends_and_across_its_two_series():
-    np.testing.assert_allclose(thermal.blackbody_fraction([0.0, 10.0, 1e12]), [0, 0, 1], atol=1e-12)
-    assert np.isnan(thermal.blackbody_fraction([-1.0, np.nan])).all()
-    join = thermal.C2.value * np.array([1 - 1e-12, 1 + 1e-12])
-    below, above = thermal.blackbody_fraction(join)
+    np.testing.assert_allclose(bands.blackbody_fraction([0.0, 10.0, 1e12]), [0, 0, 1], atol=1e-12)
+    assert np.isnan(bands.blackbody_fraction([-1.0, np.nan])).all()
+    join = bands.C2.value * np.array([1 - 1e-12, 1 + 1e-12])
+    below, above = bands.blackbody_fraction(join)
     assert above - below == pytest.approx(0, abs=1e-11)
 
 
 @pytest.mark.parametrize("name", names("band_8_14_radiance_"))
 def test_band_radiance_check_values(name):
     one = check(name)
-    band = thermal.band(*map(float, one.input["band_um"]))
+    band = bands.band(*map(float, one.input["band_um"]))
     assert band.radiance(one.input["K"]) == pytest.approx(one.expected, abs=one.tol)
 
 
@@ -105,20 +105,20 @@ def test_band_radiance_table():
 @pytest.mark.parametrize("t_k", [100.0, 220.0, 300.0, 360.0, 600.0])
 def test_band_radiance_against_quadrature(edges, t_k):
     # scipy.integrate.quad over Planck's law; 100 and 600 K lie outside the table
-    expected, _ = quad(lambda um: float(thermal.planck_radiance(um, t_k)), *edges, epsabs=0)
-    assert thermal.Band(*edges).radiance(t_k) == pytest.approx(expected, rel=1e-6)
+    expected, _ = quad(lambda um: float(bands.planck_radiance(um, t_k)), *edges, epsabs=0)
+    assert bands.Band(*edges).radiance(t_k) == pytest.approx(expected, rel=1e-6)
 
 
 def test_band_temperature_is_exact_to_far_below_a_millikelvin():
     t = np.linspace(150, 500, 4321)[1:-1]
-    exact = thermal.band_radiance(8.0, 14.0, t)
+    exact = bands.band_radiance(8.0, 14.0, t)
     np.testing.assert_allclose(WINDOW.temperature_k(exact), t, atol=1e-5)
     np.testing.assert_allclose(WINDOW.radiance(t), exact, rtol=1e-7)
 
 
 @given(st.floats(151, 499), st.floats(2, 20), st.floats(0.5, 10))
 def test_band_round_trip(t_k, low, width):
-    band = thermal.band(round(low), round(low) + round(width) + 1)
+    band = bands.band(round(low), round(low) + round(width) + 1)
     assert band.temperature_k(band.radiance(t_k)) == pytest.approx(t_k, abs=1e-3)
 
 
@@ -127,5 +127,5 @@ def test_band_refuses_what_is_no_temperature_or_radiance():
     assert np.isnan(WINDOW.temperature_k([0.0, -1.0, np.nan, 1e-6, 1e6])).all()
     for edges in [(14.0, 8.0), (0.0, 8.0), (np.nan, 8.0)]:
         with pytest.raises(ValueError, match="0 < low_um < high_um"):
-            thermal.Band(*edges)
-    assert thermal.band(8.0, 14.0) is WINDOW
+            bands.Band(*edges)
+    assert bands.band(8.0, 14.0) is WINDOW

@@ -2,16 +2,18 @@
 
 from __future__ import annotations
 
+from functools import partial
+
 import numpy as np
 import pytest
 
+from surveykit.physics.bands import band
 from surveykit.physics.emissivity import (
     emissivity_of_pair,
-    emissivity_of_pair_u,
     emissivity_of_two_backgrounds,
     foil_background,
 )
-from surveykit.physics.thermal import band
+from surveykit.physics.propagation import combined_u
 
 B = band(8.0, 14.0)
 ICE = 273.15
@@ -40,8 +42,7 @@ def test_reference_pairs_need_contrast(contrast, half_width, tolerance):
     low, high = np.quantile(draws, [0.025, 0.975])
     assert (high - low) / 2 == pytest.approx(half_width, abs=tolerance)
     if contrast >= 10:
-        linear = emissivity_of_pair_u(B, seen, surface, around, u_brightness_k=0.2,
-                                      u_surface_k=0.3, u_background=u)
+        linear = combined_u(partial(emissivity_of_pair, B), (seen, surface, around), (0.2, 0.3, u))
         assert 1.96 * linear == pytest.approx(half_width, abs=0.0015)
 
 
@@ -49,8 +50,7 @@ def test_reference_pairs_need_contrast(contrast, half_width, tolerance):
 def test_a_clear_sky_is_a_good_background(surface, half_width):
     """Sky -19 degC, u 1 K (computed)."""
     seen, known, around, u = pair(surface + 19, -19 + ICE)
-    found = emissivity_of_pair_u(B, seen, known, around, u_brightness_k=0.2, u_surface_k=0.3,
-                                 u_background=u)
+    found = combined_u(partial(emissivity_of_pair, B), (seen, known, around), (0.2, 0.3, u))
     assert 1.96 * found == pytest.approx(half_width, abs=0.0006)
     assert emissivity_of_pair(B, seen, known, around) == pytest.approx(0.95, abs=1e-6)
 

@@ -10,6 +10,7 @@ from hypothesis import strategies as st
 from scipy.integrate import dblquad, quad
 
 from surveykit.physics import footprint
+from surveykit.physics.walking import footprint_m
 
 side = st.floats(-5, 5)
 
@@ -77,7 +78,7 @@ def test_rectangle_parts_add_up(x0, x1, y0, y1, h, at):
 @pytest.mark.parametrize(("height", "circle"), [(0.05, 0.192), (0.04, 0.154)])
 def test_circle_seen_by_a_wide_head(height, circle):
     # common practice, no source: full field of view 125 degrees held 5 and 4 cm up
-    assert footprint.circle_seen_m(height, 62.5) == pytest.approx(circle, abs=6e-4)
+    assert footprint_m(height, 62.5) == pytest.approx(circle, abs=6e-4)
 
 
 def test_limited_view_against_quadrature():
@@ -88,7 +89,7 @@ def test_limited_view_against_quadrature():
     expected = weight(np.arctan(0.3 / 0.5)) / weight(np.radians(40.0))
     assert footprint.limited_share(0.3, 0.5, 40.0) == pytest.approx(expected, abs=1e-9)
     # the circle seen fills the cone and not a hair more; 90 degrees is the full hemisphere
-    radius = footprint.circle_seen_m(0.5, 40.0) / 2
+    radius = footprint_m(0.5, 40.0) / 2
     got = footprint.limited_share([radius * 0.999, radius, 5.0], 0.5, 40.0)
     assert got[0] < 1
     np.testing.assert_allclose(got[1:], 1, atol=1e-12)

@@ -8,9 +8,9 @@ from checks import check, names
 from hypothesis import given
 from hypothesis import strategies as st
 
-from surveykit.physics import surroundings, thermal
+from surveykit.physics import bands, surroundings, thermal
 
-WINDOW = thermal.band(8.0, 14.0)
+WINDOW = bands.band(8.0, 14.0)
 
 
 @pytest.mark.parametrize("name", names("sky_"))

@@ -8,9 +8,9 @@ from checks import check, names
 from hypothesis import given
 from hypothesis import strategies as st
 
-from surveykit.physics import thermal
+from surveykit.physics import bands, surroundings, thermal
 
-WINDOW = thermal.band(8.0, 14.0)
+WINDOW = bands.band(8.0, 14.0)
 ZERO_C = 273.15
 
 
@@ -38,15 +38,15 @@ def test_brightness_check_values(name):
 
 
 def golden(brightness_c=47.0, eps=0.95, air_c=30.0, humidity=0.30, sky_factor=1.0):
-    sky = sky_factor * thermal.sky_radiance(WINDOW, np.asarray(air_c) + ZERO_C, humidity)
+    sky = sky_factor * surroundings.sky_radiance(WINDOW, np.asarray(air_c) + ZERO_C, humidity)
     return thermal.standoff_temperature_k(WINDOW, np.asarray(brightness_c) + ZERO_C, eps,
                                           sky) - ZERO_C
 
 
 def test_worked_case_step_by_step():
     # computed by two scripts: T_b 47.0 degC, emissivity .95, air 30 degC, 30 %, open sky
-    assert thermal.vapour_pressure_hpa(303.15, 0.30) == pytest.approx(12.710, abs=6e-4)
-    assert thermal.sky_radiance(WINDOW, 303.15, 0.30) == pytest.approx(24.4704, abs=1e-4)
+    assert surroundings.vapour_pressure_hpa(303.15, 0.30) == pytest.approx(12.710, abs=6e-4)
+    assert surroundings.sky_radiance(WINDOW, 303.15, 0.30) == pytest.approx(24.4704, abs=1e-4)
     assert WINDOW.radiance(320.15) == pytest.approx(73.3733, abs=1e-4)
     assert golden() == pytest.approx(49.567, abs=6e-4)
 
@@ -75,7 +75,7 @@ def test_worked_case_monte_carlo_interval():
 
 def test_sensitivity_to_emissivity_vanishes_against_an_equally_warm_background():
     # computed [K per .01]: clear sky, background 30 degC, and surface 30 under 28 degC
-    sky = thermal.sky_radiance(WINDOW, 303.15, 0.30)
+    sky = surroundings.sky_radiance(WINDOW, 303.15, 0.30)
     warm, warmer = WINDOW.radiance(303.15), WINDOW.radiance(301.15)
     cases = [(50, sky, -0.54), (50, warm, -0.19), (30, warmer, -0.02)]
     for surface_c, background, expected in cases:
@@ -91,8 +91,8 @@ def test_sensitivity_to_emissivity_vanishes_against_an_equally_warm_background()
     (0.90, 60, -5.83, 2.47, -3.41, -2.09), (0.85, 60, -8.85, 3.90, -5.45, -3.34)])
 def test_error_of_each_shortcut(eps, surface_c, raw, divided, air, broadband):
     surface = surface_c + ZERO_C
-    read = brightness_k(surface, eps, thermal.sky_radiance(WINDOW, 303.15, 0.30))
-    whole = thermal.sky_emissivity_full(303.15, thermal.vapour_pressure_hpa(303.15, 0.30))
+    read = brightness_k(surface, eps, surroundings.sky_radiance(WINDOW, 303.15, 0.30))
+    whole = surroundings.sky_emissivity_full(303.15, surroundings.vapour_pressure_hpa(303.15, 0.30))
     backgrounds = [0.0, WINDOW.radiance(303.15), WINDOW.radiance(303.15 * whole**0.25)]
     got = [read] + [thermal.standoff_temperature_k(WINDOW, read, eps, b) for b in backgrounds]
     np.testing.assert_allclose(np.array(got) - surface, [raw, divided, air, broadband], atol=6e-3)
@@ -100,7 +100,7 @@ def test_error_of_each_shortcut(eps, surface_c, raw, divided, air, broadband):
 
 def test_without_background_a_broadband_reading_is_low_by_the_fourth_root():
     # common practice, no source: 1 - emissivity^(1/4): 1.3 % at .95, 3.8 K at 300 K
-    read = thermal.longwave_temperature_k(0.95 * thermal.SIGMA.value * 300.0**4, 0.0, 1.0)
+    read = thermal.longwave_temperature_k(0.95 * bands.SIGMA.value * 300.0**4, 0.0, 1.0)
     assert 1 - read / 300 == pytest.approx(0.013, abs=5e-4)
     assert 300 - read == pytest.approx(3.8, abs=0.05)
 
@@ -150,7 +150,7 @@ def test_contact_table(surface_c, body_c, eps, bore, effective, error):
 def test_the_wrong_mode_costs_kelvins(eps, sky_on_contact, body_on_standoff):
     # computed: surface 60, body 30 degC, black bore; sky of air 30 degC, 30 %
     surface, body = 60 + ZERO_C, 30 + ZERO_C
-    sky = thermal.sky_radiance(WINDOW, 303.15, 0.30)
+    sky = surroundings.sky_radiance(WINDOW, 303.15, 0.30)
     pressed = contact_reading_k(surface, body, eps, 1.0)
     got = thermal.standoff_temperature_k(WINDOW, pressed, eps, sky)
     assert got - surface == pytest.approx(sky_on_contact, abs=0.06)

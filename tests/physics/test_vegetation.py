@@ -7,7 +7,6 @@ import pytest
 from checks import check, names
 from hypothesis import given
 from hypothesis import strategies as st
-from uncertainties import ufloat
 
 from surveykit.physics import vegetation
 
@@ -43,21 +42,6 @@ def test_error_of_the_head_ratio(percent, expected):
     np.testing.assert_allclose(got, expected, atol=6e-4)
 
 
-def test_noise_table():
-    # computed: 2 % in each band at NDVI .1, .5, .8
-    index = np.array([0.1, 0.5, 0.8])
-    red, nir = (1 - index) / 2, (1 + index) / 2
-    got = vegetation.ndvi_u(red, nir, 0.02 * red, 0.02 * nir)
-    np.testing.assert_allclose(got, [0.014, 0.011, 0.005], atol=6e-4)
-
-
-@given(reflectance, reflectance, st.floats(0.001, 0.05), st.floats(0.001, 0.05))
-def test_ndvi_u_against_the_uncertainties_library(red, nir, u_red, u_nir):
-    r, n = ufloat(red, u_red), ufloat(nir, u_nir)
-    expected = ((n - r) / (n + r)).std_dev
-    assert vegetation.ndvi_u(red, nir, u_red, u_nir) == pytest.approx(expected, rel=1e-9)
-
-
 @given(reflectance, reflectance, st.floats(0.1, 10))
 def test_ndvi_ignores_a_common_gain(red, nir, gain):
     got = vegetation.ndvi(gain * red, gain * nir)
@@ -68,7 +52,6 @@ def test_ndvi_ignores_a_common_gain(red, nir, gain):
 def test_ndvi_of_nothing_is_missing():
     got = vegetation.ndvi([0.0, -0.1, np.nan, 0.1], [0.0, 0.05, 0.4, np.nan])
     assert np.isnan(got).all()
-    assert np.isnan(vegetation.ndvi_u(0.0, 0.0, 0.1, 0.1))
     assert np.isnan(vegetation.reflectance_factor([1.0, 1.0], [0.0, -2.0], 1.0)).all()
 
 

@@ -10,8 +10,10 @@ from __future__ import annotations
 import sys
 from collections.abc import Callable
 from pathlib import Path
+from typing import Any
 
 import numpy as np
+import yaml
 
 sys.path.insert(0, str(Path(__file__).resolve().parents[1]))
 from small_survey import KIT, LEVELS, lines, readings
@@ -68,6 +70,13 @@ def block(column: str, value: float, first: int = 50, last: int = 70) -> np.ndar
     """Return a column that stands about `value` for a while, alive."""
     return np.where((RAMP >= first) & (RAMP < last), value / LEVELS[column] * level(column),
                     level(column))
+
+
+def capped(column: str, before: float, after: float) -> np.ndarray:
+    """Return a column whose head is capped for the first 15 s and from 88 s on."""
+    shake = (level(column) / LEVELS[column] - 1) * 50
+    dark = np.where(RAMP < 50, before, after) + shake
+    return np.where((RAMP < 15) | (RAMP >= 88), dark, level(column))
 
 
 def clipped(column: str, top: float) -> np.ndarray:
@@ -140,14 +149,69 @@ BROKEN: dict[str, tuple[str, Log]] = {
     "rate": ("pair", timed(1.03)),
     "jitter": ("pair", timed(1.0, 0.02)),
     "swapped": ("pair", spoiled("pair", swap)),
+    "sun too low": ("pair", lines("pair", n=N, start="05:40:00", sky=level("sky") / 9,
+                                  ground=level("ground") / 9)),
+    "negative reflectance": ("rednir-ground", made("rednir-ground", red=block(
+        "rednir-ground.red", -0.4))),
 }
+# the same checks at their other ends and in other channels; named "check, end"
+BROKEN |= {
+    # zenith 18 deg (Long & Shi 2008; upward from memory): possible 1.2 * 1318 * .951**1.2 + 50 =
+    # 1539 W m-2, rare 1318 * .951**1.2 + 50 = 1291 W m-2
+    "physically impossible, upward": ("pair", spoiled("pair", cell(2, "1545"))),
+    "extremely rare irradiance, upward": ("pair", made(
+        "pair", sky=block("sky", 1500.0, 0, N), ground=block("ground", 1320.0, 0, N))),
+    "out of range, longwave down": ("longwave", spoiled("longwave", cell(1, "39"))),
+    "out of range, longwave up": ("longwave", spoiled("longwave", cell(2, "901"))),
+    "out of range, cold": ("thermal", spoiled("thermal", cell(1, "-41"))),
+    "longwave against air, warm": ("longwave", made("longwave", down=block("down", 515.0))),
+    "far from the air, cold": ("thermal", made("thermal", target=level("target")
+                                               - np.clip(2 * (RAMP - 45), 0, 33))),
+    "improbable albedo, bright": ("pair", made("pair", ground=block("ground", 880.0))),
+    "end of range, stated top": ("thermal", clean("thermal")),
+    "end of range, stated bottom": ("thermal", clean("thermal")),
+    "end of range, stated wide": ("thermal", clean("thermal")),
+    "saturated, low": ("thermal", made("thermal", target=np.maximum(level("target"), 47.0))),
+    "housing out of range, cold": ("thermal", made("thermal", body=block("body", -12.0))),
+}
+
+BROKEN |= {
+    "dark drift": ("pair", made("pair", **{c: capped(c, before=-1.0, after=9.5) for c in (
+        "sky", "ground")})),
+    "dark drift, none": ("pair", made("pair", **{c: capped(c, before=-1.0, after=-1.4) for c in (
+        "sky", "ground")})),
+    "wet ground": ("pair", clean("pair")), "panel": ("rednir-ground", clean("rednir-ground")),
+    "panel, near": ("rednir-ground", clean("rednir-ground")),
+}
+PANEL = {"entry": "panel", "instrument": "rednir-ground", "reading": "0.98", "reading_u": "0.01"}
+DARK = [{"entry": "dark", "instrument": "pair", "start": a, "stop": b}
+        for a, b in (("12:00:00", "12:00:15"), ("12:01:28", "12:01:39"))]
+DARK_PASS = {"start": "12:00:20", "stop": "12:01:25"}
+# what the case's log alone does not say: rows, the passes' times, keys of the head or the campaign
+BESIDE: dict[str, dict[str, Any]] = {
+    "sun too low": {"times": {"start": "05:40:20", "stop": "05:41:30"}},
+    "end of range, stated top": {"head": {"target": {"range": [-40, 47.6]}}},
+    "end of range, stated bottom": {"head": {"target": {"range": [46.6, 150]}}},
+    "end of range, stated wide": {"head": {"target": {"range": [-40, 150]}}},
+    "dark drift": {"rows": DARK, "times": DARK_PASS},
+    "dark drift, none": {"rows": DARK, "times": DARK_PASS},
+    "wet ground": {"conditions": {"sky": "clear", "rain_48h_mm": 4}},
+    "panel": {"rows": [{**PANEL, "start": "12:40:00", "stop": "12:40:20"}]},
+    "panel, near": {"rows": [{**PANEL, "start": "12:30:00", "stop": "12:30:20"}]},
+}
+BESIDE_FILE = "beside.yml"
 
 
 def files() -> dict[str, str]:
     """Return the text of every file by its name."""
     out = {f"clean-{logger}.csv": clean(logger) for logger in LOGGERS}
-    out |= {f"{check.replace(' ', '-')}.csv": log for check, (_, log) in BROKEN.items()}
-    return {name: "\n".join([*log, ""]) for name, log in out.items()}
+    out |= {file(case): log for case, (_, log) in BROKEN.items()}
+    texts = {name: "\n".join([*log, ""]) for name, log in out.items()}
+    return texts | {BESIDE_FILE: yaml.safe_dump(BESIDE)}
+
+
+def file(case: str) -> str:
+    return f"{case.replace(', ', '.').replace(' ', '-')}.csv"
 
 
 if __name__ == "__main__":

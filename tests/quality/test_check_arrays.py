@@ -50,8 +50,8 @@ def test_a_missing_reading_is_in_no_range_and_at_no_end():
     values = np.array([np.nan, -5.0, 0.5, 50.0, 99.5, 105.0])
     assert out_of_range(values, 0, 100).tolist() == [False, True, False, False, False, True]
     both = end_of_range(values, 0, 100, 0.01, lower=True)
-    assert both.tolist() == [False, False, True, False, True, False]
-    assert end_of_range(values, 0, 100, 0.01, lower=False).tolist() == [False] * 4 + [True, False]
+    assert both.tolist() == [False, True, True, False, True, True]
+    assert end_of_range(values, 0, 100, 0.01, lower=False).tolist() == [False] * 4 + [True, True]
 
 
 def test_readings_piled_up_at_the_largest_value_are_saturated():

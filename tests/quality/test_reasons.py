@@ -123,6 +123,10 @@ CASES = {
     "too little light": ((PASS, steady(49.0, 10.0)), (PASS, steady(51.0, 10.0))),
     "no partner": (([row(**NDVI)], two_heads(missing=(AT, AT + 1))),
                    ([row(**NDVI)], two_heads())),
+    # a head at 40 cm needs 53 cm to the edge for nine tenths: (1 + x / sqrt(x^2 + h^2)) / 2
+    "foreign ground in view": (([row(**ALBEDO, lanes="1")], pair()),),
+    "turn": (([row(**ALBEDO, lanes="4")], pair(),
+              {"settings": CERTAIN | {"albedo": {"min_footprint": 0.1}}}),),
     "pass edge": ((PASS, pair(), {"settings": EDGES}),),
     "between placements": (([row(**CONTACT)], pressed((60, 70), (100, 110))),
                            ([row(**CONTACT)], pressed())),
@@ -157,7 +161,7 @@ def test_the_clean_twin_raises_none(tmp_path, name):
 
 
 @pytest.mark.parametrize("name", [n for n in CASES if n not in (
-    "pass edge", "between placements", "capped", "no partner")])
+    "foreign ground in view", "turn", "pass edge", "between placements", "capped", "no partner")])
 def test_a_fault_is_told_with_its_number_of_records(tmp_path, name):
     _, quality = reasons(tmp_path, *CASES[name][0])
     told = quality.checks[quality.checks.check == name]

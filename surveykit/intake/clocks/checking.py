@@ -15,12 +15,13 @@ from surveykit.intake.clocks.clock import NS
 from surveykit.intake.clocks.finding import Set
 from surveykit.intake.clocks.signals import LIGHT, first_of, in_common, readings
 from surveykit.intake.params import Parameters
-from surveykit.physics.sun import sun_track
+from surveykit.physics.sun import clear_sky_shape, sun_position
 from surveykit.statistics.alignment import edge_u_s
 from surveykit.statistics.correlation import correlate
 
 MINUTE_NS = 60 * NS
 HALF_DAY_MIN = 720
+AIR_PA, AIR_DEGC = 101325.0, 12.0  # for the refraction, which moves no clock by a minute
 FEWEST_MIN = 45  # minutes of light that say anything of the sun
 CLEARLY = 1.5  # by which a shift must fit better than any small one
 ODD = 0.3  # of the largest irradiance: a minute further off counts no more than that
@@ -78,7 +79,8 @@ def sun_shift(time_ns: IntArray, values: FloatArray, latitude: float, longitude:
         return None
     first = keys[0] - HALF_DAY_MIN
     grid = np.arange(first, keys[-1] + HALF_DAY_MIN + 1)
-    clear = sun_track(grid * MINUTE_NS, latitude, longitude, elevation_m).clear_sky_w_m2
+    clear = clear_sky_shape(np.cos(np.radians(_zenith_deg(
+        grid * MINUTE_NS, latitude, longitude, elevation_m))))
 
     def misfit(shift: int) -> float:
         sky = clear[keys - first - shift]
@@ -125,10 +127,16 @@ def _lit_at_night(time_ns: IntArray, values: FloatArray, parameters: Parameters)
     """Return whether most of the light falls while the computed sun is below the horizon."""
     if values.size == 0:
         return False
-    bright = time_ns[values > 0.05 * float(np.quantile(values, 0.98))]
+    bright = np.unique(time_ns[values > 0.05 * float(np.quantile(values, 0.98))] // MINUTE_NS)
     site = parameters.campaign.site
-    zenith = sun_track(bright, site.latitude, site.longitude, site.elevation_m).zenith_deg
+    zenith = _zenith_deg(bright * MINUTE_NS, site.latitude, site.longitude, site.elevation_m)
     return bool(np.mean(zenith > 90.0) > 0.5) if bright.size else False
+
+
+def _zenith_deg(time_ns: IntArray, latitude: float, longitude: float,
+                elevation_m: float) -> FloatArray:
+    return sun_position(time_ns, latitude, longitude, elevation_m, AIR_PA,
+                        AIR_DEGC).apparent_zenith_deg
 
 
 def against_each_other(loggers: Mapping[str, Set], parameters: Parameters) -> dict[str, str]:

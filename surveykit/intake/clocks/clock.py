@@ -102,6 +102,15 @@ class Clock:
         u_s = self.u_at(time_ns)
         return u_s if self.to_watch else hypot(u_s, watch_u_s)
 
+    def u_between(self, other: Clock, time_ns: float, watch_u_s: float) -> float:
+        """Return u [s] of two loggers' times against each other at a time of the campaign."""
+        for one, two in ((self, other), (other, self)):
+            piece = one.piece(time_ns)
+            if one.reference is not None and one.reference.logger == two.logger and piece:
+                return piece.u_s(time_ns)
+        tied = 0.0 if self.to_watch == other.to_watch else watch_u_s
+        return hypot(self.u_at(time_ns), other.u_at(time_ns), tied)
+
     def refusal_in(self, start_ns: int, stop_ns: int) -> str:
         """Return why no record between two times can be placed, or an empty text."""
         if self.refusal:

@@ -27,9 +27,9 @@ class Channel:
     """A column with all that holds for it, in SI: value = offset + gain * reading.
 
     Gain and offset lead from the logged number straight to SI (K, W m-2, 1, Pa, m s-1); no
-    further conversion by `unit` is due. `u_gain` is relative, `u_offset` in SI; equal scopes share
-    an error. None means that the kit does not say; the time constant of a weather or housing
-    channel that states none is 0.
+    further conversion by `unit` is due. `range` holds the ends of what can be read. `u_gain` is
+    relative, `u_offset` in SI; equal scopes share an error. None means that the kit does not say;
+    the time constant of a weather or housing channel that states none is 0.
     """
 
     logger: str
@@ -56,6 +56,8 @@ class Channel:
     spectrally_flat: bool | None = None
     rod_width_m: float | None = None
     band_ratio: BandRatio | None = None
+    range: tuple[float, float] | None = None
+    band_response: tuple[tuple[float, float], ...] = ()
 
     def to_si(self, reading: ArrayLike) -> FloatArray:
         """Return the readings in SI, NaN where they are."""
@@ -86,6 +88,7 @@ def channel(name: str, header: str, column: Column, entry: Head, owner: str,
     gain_si = gain.value * scale
     calibration = stated("calibration")
     owner = calibration.id if calibration else owner
+    response = stated("band_response") if column.band_um is None else column.band_response
     radius, rod = stated("head_radius_cm"), stated("rod_width_cm")
     bore = stated("bore_emissivity") or Uncertain(
         value=settings.temperature.bore_emissivity, u=settings.temperature.bore_emissivity_u)
@@ -95,7 +98,8 @@ def channel(name: str, header: str, column: Column, entry: Head, owner: str,
         offset=Uncertain(value=shift + scale * offset.value, u=u_offset),
         u_gain=u_gain, u_offset=u_offset,
         gain_scope=f"{owner}:{header}:gain", offset_scope=f"{owner}:{header}:offset",
-        calibration=calibration, band_um=stated("band_um"),
+        calibration=calibration, band_response=response or (),
+        band_um=(response[0][0], response[-1][0]) if response else stated("band_um"),
         half_angle_deg=stated("half_angle_deg"), time_constant_s=stated("tau_s") or 0.0,
         head_radius_m=None if radius is None else radius / 100, bore_emissivity=bore,
         emissivity_setting=column.emissivity_setting,
@@ -103,4 +107,13 @@ def channel(name: str, header: str, column: Column, entry: Head, owner: str,
         reflected_setting_k=None if column.reflected_setting_degC is None
         else column.reflected_setting_degC + 273.15, class_terms=stated("class_terms"),
         spectrally_flat=stated("spectrally_flat"),
-        rod_width_m=None if rod is None else rod / 100, band_ratio=stated("band_ratio"))
+        rod_width_m=None if rod is None else rod / 100, band_ratio=stated("band_ratio"),
+        range=_ends(column.range, gain_si, shift + scale * offset.value))
+
+
+def _ends(logged: tuple[float, float] | None, gain: float,
+          offset: float) -> tuple[float, float] | None:
+    if logged is None:
+        return None
+    low, high = sorted(offset + gain * end for end in logged)
+    return low, high

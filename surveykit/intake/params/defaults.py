@@ -74,7 +74,11 @@ class TemperatureSettings(Strict):
     path_limit_m: float = setting(
         3.0, "m", "Height up to which the air in between is neglected.", gt=0)
     correct_surroundings: bool = setting(
-        True, "1", "Whether emissivity and what the ground reflects are corrected.")
+        True, "1", "Whether what the ground reflects of sky and walls is taken off.")
+    correct_emissivity: bool = setting(
+        True, "1", "Whether the surface's emissivity is corrected; without, nothing reflected is.")
+    correct_bore: bool = setting(
+        True, "1", "Whether what the ground reflects of a pressed head's bore is taken off.")
     correct_rim_gap: bool = setting(
         True, "1", "Whether half of rim_gap_max is taken as the gap under the rim.")
     correct_head_cooling: bool = setting(
@@ -204,9 +208,10 @@ class NdviSettings(Strict):
         0.001, "1", "Standard uncertainty of the dark reading, relative to the campaign's "
         "largest reading.", ge=0)
     min_dark_ratio: float = setting(
-        20.0, "1", "Least ratio of the signal to the uncertainty of the dark reading.", ge=1)
-    levelling_u_deg: float = setting(
-        1.0, "deg", "Standard uncertainty of the head's level.", ge=0)
+        20.0, "1", "Least ratio of the signal to the scatter of the dark reading.", ge=1)
+    max_dark_u: float = setting(
+        0.02, "1", "Largest uncertainty of the dark reading, relative to the signal of a head "
+        "that looks down.", gt=0)
     around_ndvi: float = setting(
         0.4, "1", "NDVI assumed of what surrounds a patch.", ge=-1, le=1)
     around_ndvi_u: float = setting(

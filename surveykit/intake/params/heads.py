@@ -7,7 +7,7 @@ from collections.abc import Iterator
 from datetime import date, timedelta
 from typing import Annotated, Literal
 
-from pydantic import Discriminator, Tag
+from pydantic import Discriminator, Field, Tag
 
 from surveykit.intake.params.amounts import Amount, BareNumber, Uncertain, given_once, u_field
 from surveykit.intake.params.base import (
@@ -78,6 +78,9 @@ class Head(Strict):
         "Calibration of the channel.", default=None, write="{id, date, valid_days}")
     band_um: Pair | None = key("Thermal band [um].", default=None,
                                write="[low, high] in um, such as [8, 14]")
+    band_response: Annotated[tuple[Pair, ...], Field(strict=False)] | None = key(
+        "Response of an infrared head over wavelength, in place of band_um.", default=None,
+        write="a list of [um, response] such as [[7.5, 0], [8.5, 1], [14, 0]], wavelengths rising")
     half_angle_deg: float | None = key(
         "Half of the field of view; 90 for a hemisphere.", default=None, gt=0, le=90,
         write=number_words("deg", gt=0, le=90))
@@ -117,6 +120,15 @@ class Head(Strict):
         if self.band_um and not 0.1 <= self.band_um[0] < self.band_um[1] <= 100:
             yield ("band_um",), f"got {list(self.band_um)}; write [low, high] in um, " \
                                 "such as [8, 14]"
+        if self.band_response is not None:
+            at, response = zip(*self.band_response, strict=True) if self.band_response else ((), ())
+            if self.band_um or not 2 <= len(at) <= 500 or any(
+                    b <= a for a, b in zip(at, at[1:], strict=False)) or not 0.1 <= at[0] \
+                    or at[-1] > 100 or min(response) < 0 or not max(response) > 0:
+                yield ("band_response",), (
+                    f"got {len(at)} points" + (" beside band_um" if self.band_um else "")
+                    + "; write 2 to 500 [um, response] in place of band_um, wavelengths rising "
+                    "within 0.1 to 100, no response below 0, one above")
 
     @property
     def tau_s(self) -> float | None:
@@ -135,6 +147,9 @@ class Column(Head):
         write="a number, or {value, u}")
     offset: Annotated[Amount, BareNumber()] | None = key(
         "Physical unit; added after the gain.", default=None, write="a number, or {value, u}")
+    range: Pair | None = key(
+        "Smallest and largest reading that head and logger can give, as logged.", default=None,
+        write="[low, high] as logged, two numbers, low below high")
     u_gain: float | None = u_field("1", "Relative standard uncertainty of the gain.")
     u_offset: float | None = u_field("", "Standard uncertainty of the offset, physical unit.")
     emissivity_setting: float | None = key(
@@ -162,6 +177,8 @@ class Column(Head):
             yield ("gain",), "got 0; write a gain other than 0"
         stated = (self.u_gain, self.u_offset, self.gain and self.gain.u,
                   self.offset and self.offset.u)
+        if self.range and not self.range[0] < self.range[1]:
+            yield ("range",), f"got {list(self.range)}; write [low, high] as logged, low below high"
         if self.quantity in MAIN and all(u is None for u in stated):
             yield (), f"a column of {self.quantity} must state u_gain or u_offset " \
                       "(0 is allowed, silence is not)"

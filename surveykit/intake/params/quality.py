@@ -57,7 +57,8 @@ class QualitySettings(Strict):
         5, "1", "Readings piled up at a channel's own largest or smallest value that show a head "
         "or logger at its end.", ge=3)
     saturation_share: float = setting(
-        0.01, "1", "Part of the plausible range, at its ends, that is flagged.", ge=0, lt=0.5)
+        0.01, "1", "Part of a column's range, else of the plausible one, that is flagged at its "
+        "ends.", ge=0, lt=0.5)
     spike_window: int = setting(
         11, "1", "Records around a reading whose median it is held against.", ge=5)
     spike_mad: float = setting(
@@ -111,6 +112,11 @@ class QualitySettings(Strict):
     body_rate_max_k_min: float = setting(
         2.0, "K min-1", "Warming or cooling of the housing from which readings are excluded.",
         gt=0)
+    dark_drift_max: float = setting(
+        0.01, "1", "Change of a head's dark reading between its caps, as a share of its largest "
+        "readings, that is flagged.", gt=0)
+    panel_reach_s: float = setting(
+        1800.0, "s", "How far from an NDVI pass the nearest row over the panel may lie.", gt=0)
     gap_intervals: float = setting(
         2.5, "1", "Distance of two records, in logging intervals, that makes a gap.", gt=1)
     missing_flag: float = setting(

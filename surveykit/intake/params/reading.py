@@ -149,8 +149,8 @@ def read_document(path: Path, name: str) -> Document:
     """
     text = read_text(path, name)
     try:
-        faults = _events(text, name)
-        node = yaml.compose(text, Loader=yaml.SafeLoader)
+        loader = _Loader(text, name)
+        node = loader.get_single_node()
     except yaml.YAMLError as problem:
         raise InputError(_syntax(problem, name)) from None
     except (ValueError, OverflowError):
@@ -163,44 +163,50 @@ def read_document(path: Path, name: str) -> Document:
     if not isinstance(data, dict):
         raise InputError(f"{name}: holds {'a list' if isinstance(data, list) else 'one text'}; "
                          "write keys, such as campaign: mill-yard-2025-07-24")
-    return Document(name, data, reader.lines, (*faults, *reader.faults),
+    return Document(name, data, reader.lines, (*loader.faults, *reader.faults),
                     tuple(reader.refused))
 
 
-def _events(text: str, name: str) -> list[Fault]:
-    # One pass over the stream of events, before anything is built: depth, aliases, tags.
-    faults: list[Fault] = []
-    open_anchors: list[str | None] = []
-    count = Counter[str]()
-    for number, event in enumerate(yaml.parse(text, Loader=yaml.SafeLoader)):
-        if number > 2 * MAX_NODES:
-            raise InputError(f"{name}: more than {MAX_NODES} entries; write a shorter file")
+class _Loader(yaml.SafeLoader):
+    """Watches the stream of events before anything is built of them: depth, aliases, tags."""
+
+    def __init__(self, text: str, name: str) -> None:
+        super().__init__(text)
+        self.called, self.faults = name, list[Fault]()
+        self.open_anchors: list[str | None] = []
+        self.count = Counter[str]()
+
+    def get_event(self) -> Any:
+        event = super().get_event()
+        self.count["events"] += 1
+        if self.count["events"] > 2 * MAX_NODES:
+            raise InputError(f"{self.called}: more than {MAX_NODES} entries; write a shorter file")
         line = event.start_mark.line + 1 if event.start_mark else 1
-        here = f"{name} line {line}: "
+        here = f"{self.called} line {line}: "
         if isinstance(event, yaml.DocumentStartEvent):
-            count["documents"] += 1
-            if count["documents"] > 1:
+            self.count["documents"] += 1
+            if self.count["documents"] > 1:
                 raise InputError(here + "a second document begins; write one, without ---")
         elif isinstance(event, yaml.AliasEvent):
-            count["aliases"] += 1
-            if event.anchor in open_anchors:
+            self.count["aliases"] += 1
+            if event.anchor in self.open_anchors:
                 raise InputError(here + f"*{event.anchor} stands inside what it names; "
                                  "write it out")
-            if count["aliases"] > MAX_ALIASES:
+            if self.count["aliases"] > MAX_ALIASES:
                 raise InputError(here + f"more than {MAX_ALIASES} aliases; write the values out")
         elif isinstance(event, yaml.CollectionStartEvent | yaml.ScalarEvent):
             if event.tag is not None:
                 tag = event.tag.replace("tag:yaml.org,2002:", "!!")
-                faults.append(((), f"tag {_short(tag)} in line {line}; write the value "
-                               "without a tag, a text in quotes"))
+                self.faults.append(((), f"tag {_short(tag)} in line {line}; write the value "
+                                    "without a tag, a text in quotes"))
             if isinstance(event, yaml.CollectionStartEvent):
-                open_anchors.append(event.anchor)
-                if len(open_anchors) > MAX_DEPTH:
+                self.open_anchors.append(event.anchor)
+                if len(self.open_anchors) > MAX_DEPTH:
                     raise InputError(here + f"more than {MAX_DEPTH} levels deep; "
                                      "check the indentation and the brackets")
         elif isinstance(event, yaml.CollectionEndEvent):
-            open_anchors.pop()
-    return faults
+            self.open_anchors.pop()
+        return event
 
 
 def _syntax(problem: yaml.YAMLError, name: str) -> str:

@@ -128,13 +128,15 @@ class Emissivity(Strict):
                                    gt=0, le=1, write=number_words("", gt=0, le=1))
     soil: float | None = key("Emissivity of bare ground, from: ndvi.", default=None, gt=0, le=1,
                              write=number_words("", gt=0, le=1))
-    form: Literal["linear", "squared"] | None = key(
-        "Form of the vegetation fraction, from: ndvi; absent: linear.", default=None,
-        write="linear or squared")
+    form: Literal["linear", "squared", "logarithmic"] | None = key(
+        "Form of the vegetation fraction, from: ndvi; absent: linear; or logarithmic in NDVI, for "
+        "natural ground, without vegetation and soil.", default=None,
+        write="linear, squared or logarithmic")
 
     def faults(self) -> Iterator[Fault]:
         """Each way needs its own keys and takes no others."""
-        ways = {None: ("value", "u", "source"), "ndvi": ("vegetation", "soil", "u")}
+        ways = {None: ("value", "u", "source"), "ndvi": (
+            ("u",) if self.form == "logarithmic" else ("vegetation", "soil", "u"))}
         needed = ways.get(self.from_, ())
         allowed = (*needed, "form") if self.from_ == "ndvi" else needed
         fields = type(self).model_fields
@@ -177,6 +179,9 @@ class Surface(Strict):
     emissivity_broadband: Emissivity | None = key(
         "Emissivity over all wavelengths, for longwave pairs, net radiation and the solar "
         "reflectance index.", default=None, write="{value, u, source}")
+    slope_deg: float | None = key(
+        "Its slope, for the conditions of published methods.", default=None, ge=0, le=90,
+        write=number_words("deg", ge=0, le=90))
     around: Around | None = key("What surrounds its patches.", default=None, write="{albedo, u}")
 
     def faults(self) -> Iterator[Fault]:

@@ -76,6 +76,10 @@ class PassSettings(Strict):
         "uncertainties, that is flagged.", gt=0)
     edge_contrast: float = setting(
         5.0, "1", "Least change of level that counts as an edge, in standard deviations.", gt=0)
+    exclude_turns: bool = setting(
+        True, "1", "Whether records in the turns between lanes are left out, where lanes are "
+        "written. They count neither as faults nor in the whole of which excluded_flag and "
+        "excluded_refuse are shares.")
     turn_s: float = setting(
         1.0, "s", "Left out on each side of a turn, besides three time constants.", ge=0)
     pace_u: float = setting(
@@ -93,10 +97,17 @@ class StatisticsSettings(Strict):
     draws: int = setting(
         20000, "1", "Monte Carlo draws of each shared error; 200000 for a final report.",
         ge=1000, le=1_000_000)
+    stable_digits: int = setting(
+        0, "1", "Significant digits of u that the ends of the surfaces' intervals must hold: draws "
+        "are doubled until they do, up to 400000; 0: the draws as stated.", STANDARD,
+        "JCGM 101:2008, 7.9", ge=0, le=2)
     coverage: float = setting(
         0.95, "1", "Coverage probability of the intervals.", STANDARD, GUM, gt=0.5, lt=1)
     few_effective: float = setting(
         10.0, "1", "Effective records below which a pass is flagged.", ge=1)
+    variogram_pairs: int = setting(
+        30, "1", "Least pairs of records at a distance that take part in the ground's pattern.",
+        ge=1)
 
 
 class ComparisonSettings(Strict):
