@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
+import calendar
+import datetime as dt
 import platform
 from importlib.metadata import version
 from typing import Any
 
+from surveykit.intake.params import load
 from surveykit.opening import Survey
 
 PACKAGES = ("surveykit", "numpy", "scipy", "pandas", "pvlib", "pydantic", "PyYAML", "matplotlib",
@@ -17,6 +20,7 @@ def collect(survey: Survey) -> dict[str, Any]:
     campaign, parameters = survey.campaign, survey.parameters
     statistics, site = campaign.settings.statistics, campaign.site
     path = survey.inputs[0]["path"]
+    surfaces = {name: surface.label for name, surface in campaign.surfaces.items()}
     return {
         "campaign": campaign.campaign, "title": campaign.title, "date": campaign.date,
         "site": {"name": site.name, "latitude": site.latitude, "longitude": site.longitude,
@@ -27,11 +31,12 @@ def collect(survey: Survey) -> dict[str, Any]:
         "draws": statistics.draws, "coverage": statistics.coverage,
         "settings": [dict(row) for row in campaign.settings.listing()],
         "instruments": _instruments(survey),
-        "surfaces": {name: surface.label for name, surface in campaign.surfaces.items()},
+        "surfaces": surfaces, "labels": _dates(survey) | surfaces,
         "control": campaign.comparison.control or "",
         "relevant_change": campaign.relevant_change.model_dump(),
         "earlier": [p.stem for p in parameters.earlier], "notes": list(parameters.notes),
         "crew": list(campaign.crew),
+        "interventions": [one.model_dump(mode="json") for one in campaign.interventions],
         "remarks": campaign.notes.splitlines(),
         "rerun": f"surveykit run {path}",
     }
@@ -40,6 +45,16 @@ def collect(survey: Survey) -> dict[str, Any]:
 def versions() -> dict[str, str]:
     """Return the versions of Python and of the packages that shape the numbers and the page."""
     return {"Python": platform.python_version()} | {name: version(name) for name in PACKAGES}
+
+
+def _dates(survey: Survey) -> dict[str, str]:
+    """Return the date of each earlier campaign in words, with its name where two share a date."""
+    days = {path.stem: dt.date.fromisoformat(load(path).campaign.date)
+            for path in survey.parameters.earlier}
+    dates = {name: f"{day.day} {calendar.month_name[day.month]} {day.year}"
+             for name, day in days.items()}
+    return {name: date if [*dates.values()].count(date) == 1 else f"{date} ({name})"
+            for name, date in dates.items()}
 
 
 def _conditions(survey: Survey) -> list[str]:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -12,11 +12,14 @@ import pandas as pd
 from surveykit.accounting import BIT, NOT_A_FAULT, REASONS
 from surveykit.intake.params import Parameters
 from surveykit.intake.passes import Pass
+from surveykit.intake.paths import walk
 from surveykit.intake.records import Records
 
 if TYPE_CHECKING:  # `check` shows loggers and channels without what evidence has to import
     from surveykit.evidence.conditions import Day
+    from surveykit.evidence.estimates import PassEstimate
 
+UNITS = {"temperature": "degC", "albedo": "1", "ndvi": "1"}
 STEP_NS, SHOWN_FROM_NS = 60_000_000_000, 10_000_000_000
 SHOWN = {  # how a quantity is shown: unit, and scale and shift from SI
     **dict.fromkeys(("brightness_temperature", "housing_temperature", "air_temperature"),
@@ -132,6 +135,63 @@ def excluded(day: Day, some: tuple[Pass, ...]) -> pd.DataFrame:
                         stop_utc=pd.to_datetime(frame["stop_utc"], utc=True))
 
 
+def inside_passes(day: Day, estimates: Sequence[PassEstimate]) -> dict[str, pd.DataFrame]:
+    """Return frames `cooling` and `walked`, a row a record.
+
+    Contact placements against the fitted law of cooling; readings with their place of passes
+    walked in lanes.
+    """
+    made: dict[str, list[pd.DataFrame]] = {"cooling": [], "walked": []}
+    for e in estimates:
+        if e.kind == "contact" and any(one.name == "fit_left" for one in e.inputs):
+            made["cooling"].append(_cooling(day, e))
+        if e.evaluated and e.this.lanes > 1:
+            time, value = _readings(day, e.this)
+            way = walk(e.this, time, day.parameters)
+            if way is not None:
+                made["walked"].append(pd.DataFrame({
+                    "surface": e.this.surface, "patch": e.this.patch, "pass": e.this.name,
+                    "quantity": e.this.quantity, "kind": e.kind, "unit": UNITS[e.this.quantity],
+                    "x_m": way.x_m, "y_m": way.y_m, "value": value})[~way.turning])
+    return {name: pd.concat(some, ignore_index=True) if some else pd.DataFrame()
+            for name, some in made.items()}
+
+
+def _cooling(day: Day, e: PassEstimate) -> pd.DataFrame:
+    """Return the records of a pass's placements under the temperature before the touch."""
+    from surveykit.evidence.contact import FEWEST_RECORDS, placement_courses
+    from surveykit.evidence.infrared import per_record
+    from surveykit.physics.cooling import fit_placements, root_time
+
+    tau = e.this.channels["brightness_temperature"].time_constant_s or 0.0
+    inputs = {one.name: one for one in e.inputs}
+    kept = [(time, per_record("contact", inputs, read))
+            for time, read in placement_courses(day, e.this, tau)
+            if (time >= 2 * tau).sum() >= FEWEST_RECORDS and time[-1] >= 5 * tau]
+    fit = fit_placements(*zip(*kept, strict=True), time_constant_s=tau, fit_time_constant=False,
+                         lagged=True)
+    return pd.concat([pd.DataFrame({
+        "surface": e.this.surface, "pass": e.this.name, "placement": n, "seconds": time,
+        "below_k": before - value, "law_k": fit.rate * root_time(time, tau, True),
+        "rate": fit.rate})[time >= 5 * tau]
+        for n, ((time, value), before) in enumerate(zip(kept, fit.before_k, strict=True), 1)])
+
+
+def _readings(day: Day, this: Pass) -> tuple[np.ndarray, np.ndarray]:
+    """Return time [ns] and reading of each record: brightness [degC], ratio or index [1]."""
+    from surveykit.evidence.parts import series
+
+    read = {name: series(day, this, name) for name in this.channels}
+    if this.quantity == "temperature":
+        time, kelvin = read["brightness_temperature"]
+        return time, kelvin - 273.15
+    share = {word: read[f"{word}_up"][1] / read[f"{word}_down"][1]
+             for word in ("shortwave", "red", "nir") if f"{word}_up" in read}
+    time = read["shortwave_up" if "shortwave" in share else "red_up"][0]
+    return time, (share["shortwave"] if "shortwave" in share else
+                  (share["nir"] - share["red"]) / (share["nir"] + share["red"]))
+
+
 def conditions(course: Mapping[str, pd.DataFrame]) -> list[str]:
     """Return one sentence on what was measured of the day's weather, from `day_course`."""
     spans = []
@@ -149,17 +209,6 @@ def conditions(course: Mapping[str, pd.DataFrame]) -> list[str]:
     if "air_temperature_degc" not in course["weather"]:
         line = f"{line} Air temperature was not logged.".strip()
     return [line]
-
-
-def geometry(some: tuple[Pass, ...]) -> dict[str, float | None]:
-    """Return how albedo was read: least and greatest height and least patch width [m]."""
-    albedo = [p for p in some if p.quantity == "albedo"]
-    heights = [p.height_m for p in albedo if np.isfinite(p.height_m)]
-    sizes = [float(np.fmin(p.width_m, p.length_m)) for p in albedo]  # a disc has no width
-    if not albedo:
-        return {}
-    return {"height_min_m": min(heights, default=None), "height_max_m": max(heights, default=None),
-            "size_min_m": min(sizes) if np.isfinite(sizes).all() else None}
 
 
 def _minutes(grid: np.ndarray, time: np.ndarray, value: np.ndarray) -> np.ndarray:

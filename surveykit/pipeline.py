@@ -135,6 +135,11 @@ def day_course(survey: Survey) -> Tables:
     return overview.day_course(today, passes) | {"excluded": overview.excluded(today, passes)}
 
 
+def inside_passes(survey: Survey) -> Tables:
+    """Return what figures of single passes draw: frames `cooling` and `walked`, a row a record."""
+    return overview.inside_passes(day(survey), surfaces(survey).estimates)
+
+
 @_once
 def surfaces(survey: Survey) -> Evidence:
     """Estimate every pass and pool the estimates to surfaces, with budgets."""

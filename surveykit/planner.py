@@ -34,7 +34,7 @@ def plan(path: Path) -> list[Path]:
     if not source.is_file():
         raise InputError(f"notebooks/{NOTEBOOK}.ipynb is missing; restore it from the project")
     known, made = facts.collect(survey), planning.make(survey)
-    visits = planning.order(survey, made, planning.rounds_needed(made))
+    visits = planning.order(survey, made, planning.rounds_needed(survey, made))
     sheet = planning.field_sheet(survey, made, visits)
     folder = root / "reports" / f"{survey.campaign.campaign}.plan"
     folder.mkdir(parents=True, exist_ok=True)
@@ -42,7 +42,7 @@ def plan(path: Path) -> list[Path]:
     _execute(source, executed, root, survey.inputs[0]["path"])
     notebook = nbformat.read(executed, as_version=4)
     executed.unlink()
-    pages = {"plan.html": plan_page(notebook, known),
+    pages = {"plan.html": plan_page(notebook, known, planning.fits(survey, made, visits)),
              "field_sheet.html": sheet_page(sheet, planning.SAFETY, known),
              "field_sheet.csv": sheet.to_csv(index=False, lineterminator="\n")}
     for name, text in pages.items():

@@ -45,7 +45,6 @@ def write(survey: Survey, new: Path, notebooks: tuple[str, ...], durations: dict
     tables = pipeline.all_tables(survey)
     known = facts.collect(survey)
     known["conditions"] += overview.conditions(pipeline.day_course(survey))
-    known["albedo_geometry"] = overview.geometry(pipeline.ingest(survey).passes)
     datapackage.write_tables(tables, new / "tables", known)
     shown = [_kept(new / "notebooks" / f"{name}.ipynb") for name in notebooks]
     (new / "report.html").write_text(page.build_page(shown, tables, known), encoding="utf-8",

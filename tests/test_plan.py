@@ -38,7 +38,7 @@ def plan(survey):
 
 @pytest.fixture(scope="module")
 def visits(survey, plan):
-    return planning.order(survey, plan, planning.rounds_needed(plan))
+    return planning.order(survey, plan, planning.rounds_needed(survey, plan))
 
 
 def test_sun_windows_agree_with_pvlib(survey, plan):
@@ -116,7 +116,7 @@ def test_passes_take_the_spread_of_the_earlier_campaign(plan, survey):
         assert row["passes"] == passes_needed(row["between"], row["within"], row["wanted"])
     first = open_file(survey.parameters.root / "params" / f"{DEMO[0]}.yml")
     defaults = planning.make(first).passes
-    assert set(defaults["source"]) == {"engineering default"}
+    assert set(defaults["source"]) == {"settings"}
     row = defaults[defaults["quantity"] == "temperature"].iloc[0]
     assert (row["between"], row["within"], row["wanted"], row["passes"]) == (0.5, 0.3, 1.0, 4)
 
@@ -158,7 +158,7 @@ def test_the_field_sheet_is_read_once_times_are_filled_in(survey, plan, visits, 
     sheet.to_csv(path, index=False)
     read = read_sheet(path, survey.parameters)
     assert len(read.entries) == len(sheet)
-    assert {e.entry for e in read.entries} == {"pass", "dark"}
+    assert {e.entry for e in read.entries} == {"pass", "dark", "cover"}
 
 
 def test_a_campaign_without_files_is_planned_on_the_command_line(project):

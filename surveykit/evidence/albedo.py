@@ -26,6 +26,7 @@ from surveykit.evidence.views import (
     foreign_ground,
     lane_effect,
     lean_deg,
+    operator_inputs,
     own_shade,
     treat,
 )
@@ -46,11 +47,15 @@ def albedo(day: Day, this: Pass, sky: Sky) -> PassValue:
     settings = day.parameters.campaign.settings.albedo
     head_up, head_down = this.channels["shortwave_up"], this.channels["shortwave_down"]
     zenith = day.quality.passes[this.name].zenith_deg
+    ratio = ratio_of_sums(up, down)
+    if not np.isfinite(ratio):
+        raise NotEvaluated("the irradiance of the pass does not sum to more than zero")
+    if not 0 <= ratio <= 1:
+        raise NotEvaluated(f"a share of {ratio:.2f} of the light comes back, which cannot be: "
+                           "check which head looks up, and their gains and darks")
     inputs, flags = _inputs(day, this, sky, up, down)
-    ratio = ratio_of_sums(up, down) / inputs["gain_ratio"].value
-    _refuse_impossible(ratio)
     stated = day.parameters.campaign.surfaces[this.surface].around is not None
-    inputs, more = treat(inputs, ratio, settings, stated)
+    inputs, more = treat(inputs, ratio / inputs["gain_ratio"].value, settings, stated)
     steps = [Correction("dark readings", {"up": float(raw[0].mean()), "down": float(raw[1].mean())},
                         "albedo.correct_darks", settings.correct_darks),
              Correction("gain ratio", {"gain_ratio": 1.0}, "albedo.correct_gain_ratio"),
@@ -93,7 +98,8 @@ def _inputs(day: Day, this: Pass, sky: Sky, up: FloatArray,
         Input("levelling_error", 0.0, float(np.sqrt(np.mean(levelling_error(
             zenith, settings.levelling_u_deg, EVERY_WAY_DEG, settings.beam_fraction) ** 2))),
               pass_scope(day, this), "levelling of the upper head in the hand"),
-        *skew(day, this, "shortwave", "down_per_s"), *class_inputs(day, this, head_up, head_down),
+        *operator_inputs(day, this), *skew(day, this, "shortwave", "down_per_s"),
+        *class_inputs(day, this, head_up, head_down),
     ]
     flags += more + most + last + _circumstances(day, this, down, zenith)
     return {i.name: i for i in inputs}, flags
@@ -156,11 +162,3 @@ def _normalised(day: Day, this: Pass, zenith: float) -> dict[str, Input]:
         "zenith_dependence": Input(
             "zenith_dependence", settings.zenith_dependence, settings.zenith_dependence_u,
             f"{this.surface}:zenith dependence", "dependence of albedo on the sun's height")}
-
-
-def _refuse_impossible(ratio: float) -> None:
-    if not np.isfinite(ratio):
-        raise NotEvaluated("the irradiance of the pass does not sum to more than zero")
-    if not 0 <= ratio <= 1:
-        raise NotEvaluated(f"a share of {ratio:.2f} of the light comes back, which cannot be: "
-                           "check which head looks up, and their gains and darks")

@@ -30,6 +30,14 @@ class Date:
         """Name of the campaign."""
         return self.parameters.campaign.campaign
 
+    @property
+    def families(self) -> dict[tuple[str, str], list[Group]]:
+        """The groups by quantity and kind, which alone are compared, in order."""
+        found: dict[tuple[str, str], list[Group]] = {}
+        for group in self.groups.values():
+            found.setdefault((group.quantity, group.kind), []).append(group)
+        return found
+
     def find(self, surface: str, quantity: str, kind: str) -> Group | None:
         """Return the group of this key if it has an interval."""
         group = self.groups.get((surface, quantity, kind))

@@ -36,8 +36,7 @@ def differences(date: Date, draws: Draws) -> pd.DataFrame:
     """
     settings = date.parameters.campaign.settings
     rows: list[dict[str, Any]] = []
-    for quantity, kind in dict.fromkeys((q, k) for _, q, k in date.groups):
-        family = [g for g in date.groups.values() if (g.quantity, g.kind) == (quantity, kind)]
+    for (quantity, _), family in date.families.items():
         carried, note = at_common_time(date, family, draws)
         some = [_difference(date, carried[a.surface], carried[b.surface], note, draws)
                 for a, b in combinations(family, 2)]
@@ -60,8 +59,7 @@ def ranks(date: Date, draws: Draws) -> pd.DataFrame:
     Place 1 is the highest value; temperatures stand at one common time.
     """
     rows: list[dict[str, Any]] = []
-    for quantity, kind in dict.fromkeys((q, k) for _, q, k in date.groups):
-        family = [g for g in date.groups.values() if (g.quantity, g.kind) == (quantity, kind)]
+    for (quantity, kind), family in date.families.items():
         carried, _ = at_common_time(date, family, draws)
         known = {name: g.result for name, g in carried.items() if g.result is not None}
         if not known:

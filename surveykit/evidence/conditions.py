@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cached_property
-from typing import Protocol
 
 import numpy as np
 
@@ -15,20 +14,11 @@ from surveykit.intake.fieldsheet import Sheet
 from surveykit.intake.loggers import Records
 from surveykit.intake.params import Channel, Parameters
 from surveykit.intake.passes import Pass
+from surveykit.intake.sheet_words import Entry
 from surveykit.physics.sun import Sun, sun_track
 from surveykit.statistics.series import mean_of_series
 
-
-class Span(Protocol):
-    """A stretch of time [ns UTC]: a pass, or a row of the field sheet."""
-
-    @property
-    def start_ns(self) -> int:
-        """Where it begins."""
-
-    @property
-    def stop_ns(self) -> int:
-        """Where it ends."""
+Span = Pass | Entry  # a stretch of time from start_ns to stop_ns
 
 
 @dataclass(frozen=True)

@@ -70,7 +70,8 @@ def contact(day: Day, this: Pass, sky: Sky) -> PassValue:
         return float(np.mean([np.broadcast_to(some, per.shape)[a:b].mean() for a, b in spans]))
 
     made = correct("contact", inputs, _corrections(day, inputs, placed is not None),
-                   f"{day.name}:{this.surface}:contact", series={"brightness_k": brightness}, reduce=over_placements)
+                   f"{day.name}:{this.surface}:contact", series={"brightness_k": brightness},
+                   reduce=over_placements)
     final = made.steps[-1][1]
     rows = [(int(time[a]), int(time[b - 1]), value, one.u, one.n) for (a, b), one, value in zip(
         spans, found, values + (final - values.mean()), strict=False)]
@@ -152,7 +153,7 @@ def _before_touch(day: Day, this: Pass, inputs: dict[str, Input],
         return None
     settings = day.parameters.campaign.settings.temperature
     tau = this.channels["brightness_temperature"].time_constant_s or 0.0
-    courses = [c for c in _courses(day, this, tau)
+    courses = [c for c in placement_courses(day, this, tau)
                if (c[0] >= 2 * tau).sum() >= FEWEST_RECORDS and c[0][-1] >= 5 * tau]
     if not courses:
         raise NotEvaluated(f"no placement has {FEWEST_RECORDS} records and five time constants: "
@@ -167,7 +168,7 @@ def _before_touch(day: Day, this: Pass, inputs: dict[str, Input],
     return fit
 
 
-def _courses(day: Day, this: Pass, tau: float) -> list[tuple[FloatArray, FloatArray]]:
+def placement_courses(day: Day, this: Pass, tau: float) -> list[tuple[FloatArray, FloatArray]]:
     """Return for each placement the seconds since its touch, and its readings [K].
 
     The touch is taken half a step before the first record that the law of cooling describes.

@@ -8,12 +8,11 @@ import numpy as np
 import pandas as pd
 
 from surveykit.core import FloatArray, table
-from surveykit.evidence.asking import Asked, Row
 from surveykit.evidence.conditions import Day
 from surveykit.evidence.estimates import PassEstimate
 from surveykit.evidence.models import MODELS
 from surveykit.evidence.parts import raw_series
-from surveykit.evidence.products import PRODUCTS
+from surveykit.evidence.products import PRODUCTS, Asked, Row
 from surveykit.evidence.surfaces import Group
 from surveykit.statistics.draws import Draws, summarise
 
@@ -48,15 +47,16 @@ def _caution(asked: Asked) -> Iterator[Row]:
         hottest = float(np.quantile(np.concatenate(
             [_records_k(asked.day, p) for p in group.used]), HOTTEST)) - 273.15
         row = asked.row(group.kind, "degC", None, value=hottest)
-        upper, what = np.nan, f"the hottest records reach {hottest:.1f} degC; one pass: U not known"
+        upper = np.nan
+        what = f"95th percentile of the records {hottest:.1f} degC (one pass, so U is not known)"
         if group.result is not None:
             upper = hottest + summarise(group.result, asked.coverage).upper - group.value
             what = f"upper bound {upper:.1f} degC (95th percentile of the records, plus U)"
             row["status"] = "ok"
         over = np.nanmax([hottest, upper]) > caution.temperature_degC
         yield row | {"upper": upper, "note": (
-            f"caution: {what} exceeds {limit}; consult local codes and the safety officer"
-            if over else f"{what}; below {limit}")}
+            f"caution: {what} exceeds {limit}, consult local codes and the safety officer"
+            if over else f"{what} lies below {limit}")}
 
 
 def _records_k(day: Day, one: PassEstimate) -> FloatArray:

@@ -96,8 +96,7 @@ def carried(date: Date, key: tuple[str, str, str], draws: Draws) -> Group | None
     found = date.find(*key)
     if found is None or key[1] != "temperature":
         return found
-    family = [g for g in date.groups.values() if g.key[1:] == key[1:]]
-    return at_common_time(date, family, draws)[0][key[0]]
+    return at_common_time(date, date.families[found.quantity, found.kind], draws)[0][key[0]]
 
 
 def _carried(date: Date, group: Group, course: Course, common_h: float, draws: Draws) -> Group:

@@ -38,7 +38,7 @@ NEUTRAL: dict[str, float] = {
     "gain_ratio": 1.0, "ratio_per_up_zero": 0.0, "ratio_per_down_zero": 0.0,
     "surroundings_corrected": 0.0, "shade_corrected": 0.0,
     "footprint_error": 0.0, "shade_error": 0.0, "contamination_error": 0.0,
-    "up_class_error": 0.0, "down_class_error": 0.0, "spectral_error": 0.0,
+    "up_class_error": 0.0, "down_class_error": 0.0, "spectral_error": 0.0, "operator_error": 0.0,
     "directional_error_next": 0.0, "clock_skew_s": 0.0,
     "down_per_s": 0.0, "red_down_per_s": 0.0, "nir_down_per_s": 0.0,
     "zenith_deg": 60.0, "reference_zenith_deg": 60.0, "zenith_dependence": 0.0,
@@ -107,7 +107,7 @@ def albedo(x: Values) -> FloatArray:
                                + x["ratio_per_down_zero"] * x["down_zero_error"])
     ratio = up / down / gains * (
         1 + x["directional_error"] + x["directional_error_next"] + x["levelling_error"]
-        + x["spectral_error"])
+        + x["spectral_error"] + x["operator_error"])
     seen, lit = x["surroundings_corrected"], x["shade_corrected"]
     higher = x["height_error"]
     share = 1 - seen * (1 - x["footprint_share"] - x["footprint_error"]

@@ -2,17 +2,17 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
-from dataclasses import replace
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass, replace
 from typing import Any, Literal
 
 import numpy as np
 
 from surveykit.core import Input
 from surveykit.evidence import e1918, models
-from surveykit.evidence.asking import Asked, Row
+from surveykit.evidence.conditions import Day
 from surveykit.evidence.emissivities import NOT_FOR
-from surveykit.evidence.parts import fixed
+from surveykit.evidence.parts import fixed, surface_scope
 from surveykit.evidence.surfaces import Group, pool_passes
 from surveykit.physics.bands import SIGMA
 from surveykit.physics.energy import (
@@ -24,10 +24,68 @@ from surveykit.physics.energy import (
 from surveykit.physics.shortwave import daily_factor
 from surveykit.physics.surroundings import sky_emissivity_full, vapour_pressure_hpa
 from surveykit.physics.vegetation import vegetation_fraction
+from surveykit.statistics.draws import Draws, Result, combine, summarise
 
 NS_A_DAY = 86_400_000_000_000
 FOOTPRINT = 0.94  # what E1918's own geometry sees: a disc of 2 m below a head at 50 cm
+Row = dict[str, Any]
 Rows = Iterator[Row]
+
+
+@dataclass(frozen=True)
+class Asked:
+    """One product of one surface, and all that it may be made of."""
+
+    day: Day
+    groups: tuple[Group, ...]
+    draws: Draws
+    coverage: float
+    surface: str
+    product: str
+
+    def of(self, quantity: str) -> list[Group]:
+        """Return the groups of the surface and a quantity that have a value."""
+        return [g for g in self.groups
+                if g.key[:2] == (self.surface, quantity) and np.isfinite(g.value)]
+
+    @property
+    def broadband(self) -> Input | None:
+        """The surface's broadband emissivity, if stated."""
+        entry = self.day.parameters.campaign.surfaces[self.surface].emissivity_broadband
+        return None if entry is None else Input(
+            "emissivity_broadband", float(entry.value or 0), float(entry.u or 0),
+            surface_scope("emissivity broadband", self.surface, entry), "")
+
+    def missing(self, what: str) -> Row:
+        """Return the row of a product that lacks something."""
+        return self.row("", "1", None, note=f"{what} is missing")
+
+    def row(self, form: str, unit: str, result: Result | None, *, value: float = np.nan,
+            note: str = "") -> Row:
+        """Return a row of the table `derived`; without a result there is no interval."""
+        row: Row = {
+            "campaign": self.day.name, "surface": self.surface, "product": self.product,
+            "form": form, "unit": unit, "value": value, "u": np.nan, "lower": np.nan,
+            "upper": np.nan, "coverage": self.coverage, "note": note,
+            "status": "value only" if np.isfinite(value) else "not evaluated"}
+        if result is not None:
+            s = summarise(result, self.coverage)
+            row |= {"value": s.value, "u": s.u, "lower": s.lower, "upper": s.upper, "status": "ok"}
+        return row
+
+    def made(self, form: str, unit: str, function: Callable[..., Any],
+             parts: Sequence[Group | Input], note: str = "") -> Row:
+        """Return a row of a function of groups and inputs; without repeats it has a value only."""
+        results = [p.result if isinstance(p, Group) else self._known(p) for p in parts]
+        if any(r is None for r in results):
+            return self.row(form, unit, None, value=float(function(*(p.value for p in parts))),
+                            note="; ".join(filter(None, [note, "no repeats: no interval"])))
+        return self.row(form, unit, combine(function, *(r for r in results if r is not None)),
+                        note=note)
+
+    def _known(self, one: Input) -> Result:
+        moved = one.value + one.u * self.draws.standard(one.scope, one.distribution)
+        return Result(one.value, moved, moved, ())
 
 
 def sri(asked: Asked) -> Rows:
@@ -39,7 +97,9 @@ def sri(asked: Asked) -> Rows:
                             f"surfaces.{asked.surface}.emissivity_broadband")
         return
     group = clear[0]
-    note = e1918.told(_e1980(asked, group), name="E1980", like="SRI-like, not by E1980")
+    met = _e1980(asked, group)
+    note = e1918.told(met, name="E1980", like="SRI-like, not by E1980")
+    like = {"status": "qualified"} if any(c.state != "met" for c in met) else {}
     for wind, convection in SRI_CONVECTION.items():
         for place, how in enumerate(("balance", "equation")):
             def index(albedo: Any, eps: Any, h: float = convection, n: int = place) -> Any:
@@ -50,7 +110,8 @@ def sri(asked: Asked) -> Rows:
                           for d, e in ((1e-3, 0.0), (0.0, 1e-3))]
                 return here + slopes[0] * (albedo - at[0]) + slopes[1] * (eps - at[1])
 
-            yield asked.made(f"{how}, {wind} wind", "1", index, [group, emissivity], note)
+            row = asked.made(f"{how}, {wind} wind", "1", index, [group, emissivity], note)
+            yield row | (like if row["status"] == "ok" else {})
 
 
 def _e1980(asked: Asked, group: Group) -> list[e1918.Condition]:

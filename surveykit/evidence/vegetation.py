@@ -58,6 +58,8 @@ def vegetation_index(day: Day, this: Pass, sky: Sky) -> PassValue:
                 "its dark reading: too little light for an index")
     skews = [i for band in ("red", "nir") for i in skew(day, this, band, f"{band}_down_per_s")]
     gains, more = _gains(day, this)
+    if sky.kind == "mixed":
+        more += (f"sky neither clear nor overcast: {sky.clear_index:.0%} of a clear one",)
     raw = {name: raw_series(day, this, name)[1] for name in BANDS}
     made = correct("ndvi", {i.name: i for i in (*inputs, *skews, *gains)}, [
         Correction("dark readings", {name: float(raw[name].mean()) for name in BANDS},
@@ -88,10 +90,10 @@ def _gains(day: Day, this: Pass) -> tuple[list[Input], tuple[str, ...]]:
     pairs = {band: (this.channels[f"{band}_up"], this.channels[f"{band}_down"])
              for band in ("red", "nir")}
     found = {band: over_panel(day, *pair) for band, pair in pairs.items()}
-    source = "gain ratio over a panel"
+    what, source = "panel rows", "gain ratio over a panel"
     if None in found.values():
         found = {band: swapped(day, *pair, "ndvi") for band, pair in pairs.items()}
-        source = "gain ratio by swapping the heads"
+        what, source = "swaps", "gain ratio by swapping the heads"
         if None not in found.values() and any(
                 up.half_angle_deg != down.half_angle_deg for up, down in pairs.values()):
             return own, ("swaps not used: the heads have different views",)
@@ -107,7 +109,7 @@ def _gains(day: Day, this: Pass) -> tuple[list[Input], tuple[str, ...]]:
                       f"{pairs['nir'][0].gain_scope}:band ratio",
                       f"ratio of the bands' gains ({certificate.source})")], ()
     if any(one.sd > settings.albedo.swap_max_sd for one in ratios.values()):
-        return own, (f"{source.split()[-2]} not used: its ratios scatter by more than "
+        return own, (f"{what} not used: their ratios scatter by more than "
                      f"{settings.albedo.swap_max_sd:.0%}",)
     made = [ratio_input(day, f"{band}_ratio", one, pairs[band][0], source)
             for band, one in ratios.items()]

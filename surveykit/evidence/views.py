@@ -19,10 +19,12 @@ from surveykit.physics.footprint import (
     limited_share,
     rectangle_share,
     self_shade,
+    upright_share,
 )
 from surveykit.physics.instrument import rod_shade
 from surveykit.physics.shortwave import levelling_error
 
+OPERATOR_M = (0.5, 1.75)  # width and height of a person, engineering default
 ROD_TO_SUN_DEG = {"sun": 0.0, "across": 90.0, "away": 180.0}
 
 
@@ -54,7 +56,7 @@ def lane_effect(day: Day, this: Pass, down: FloatArray) -> float:
     NaN where no path is known or the lanes are not balanced. A slow change of the sun drops out.
     """
     where = walk(this, _times(day, this), day.parameters)
-    if where is None or this.lanes % 2 or down.size != where.x_m.size:
+    if where is None or this.lanes % 2:
         return float("nan")
     lane = np.floor(where.y_m / this.width_m * this.lanes)
     good = ~where.turning & np.isfinite(lane)
@@ -136,15 +138,30 @@ def own_shade(day: Day, this: Pass, head: Channel, sky: Sky,
     def share(height_m: float) -> float:
         return known * shade_share(day, this, head, sky, zenith_deg, radius_m, height_m)
 
-    corrected = settings.correct_self_shade
-    u = HALF_WIDTH if known < 1 or not corrected else settings.self_shade_u
+    u = HALF_WIDTH if known < 1 else settings.self_shade_u
     return [
         fixed("shade_share", share(this.height_m)),
         fixed("shade_per_m", _per_m(day, this, share)),
         Input("shade_error", 0.0, u, f"{head.logger}:shade",
-              "shade of the head on the ground" + ("" if corrected else ", not corrected"),
-              "rectangular" if u == HALF_WIDTH else "normal"),
+              "shade of the head on the ground", "rectangular" if known < 1 else "normal"),
     ], flags
+
+
+def operator_inputs(day: Day, this: Pass) -> list[Input]:
+    """Return what the operator does, of whom the sheet tells: a plate in both heads' views.
+
+    It hides sky, of which only the diffuse part matters, and ground; dark or bright, it changes
+    the albedo by as much as it fills of them, either way.
+    """
+    settings = day.parameters.campaign.settings.albedo
+    if not this.operator_side:
+        return []
+    width, tall = OPERATOR_M
+    sky, ground = upright_share(width, [max(tall - this.height_m, 0.0), min(this.height_m, tall)],
+                                settings.operator_distance_m)
+    whole = float(np.hypot((1 - settings.beam_fraction) * sky, ground))
+    return [Input("operator_error", 0.0, whole * float(HALF_WIDTH), f"{day.name}:operator",
+                  f"the operator, {settings.operator_distance_m:g} m away", "rectangular")]
 
 
 def treat(inputs: dict[str, Input], ratio: float, settings: AlbedoSettings,

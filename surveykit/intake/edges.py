@@ -12,7 +12,7 @@ from surveykit.core import IntArray
 from surveykit.intake.clocks import Clock
 from surveykit.intake.clocks.signals import readings
 from surveykit.intake.params import Channel, Parameters
-from surveykit.intake.passes import Pass
+from surveykit.intake.passes import Pass, clock_text
 from surveykit.intake.placements import find_dwells
 from surveykit.intake.records import Records
 from surveykit.intake.sheet_words import Entry
@@ -62,17 +62,13 @@ def look(passes: Sequence[Pass], records: Mapping[str, Records], entries: Sequen
 
 def _gap(this: Pass, records: Mapping[str, Records], sheet_path: str) -> str:
     for name in this.loggers:
-        log = records[name]
-        time_ns = log.time_ns[:log.n_timed]
-        first, last = np.searchsorted(time_ns, [this.start_ns, this.stop_ns])
+        time_ns = records[name].time_ns[:records[name].n_timed]
+        first, last = map(int, np.searchsorted(time_ns, [this.start_ns, this.stop_ns]))
         if first == last:
-            around = [f"{_clock(time_ns[k])} UTC" if 0 <= k < time_ns.size else "" for k in
-                      (int(first) - 1, int(first))]
-            where = " and ".join(
-                text for text, known in ((f"the last before it at {around[0]}", around[0]),
-                                         (f"the next at {around[1]}", around[1])) if known)
+            near = " and ".join(f"{words} at {clock_text(time_ns[k])} UTC" for words, k in (
+                ("the last before it", first - 1), ("the next", first)) if 0 <= k < time_ns.size)
             return (f"{sheet_path} row {this.row}: {name} holds no record during the pass"
-                    + (f"; {where}" if where else ""))
+                    + (f"; {near}" if near else ""))
     return ""
 
 
@@ -128,7 +124,3 @@ def _placements(this: Pass, channel: Channel, log: Records,
         return ()
     found = count(this.start_ns, this.stop_ns, 1.0)
     return (f"{found} placements found, {this.reading:.0f} on the sheet",)
-
-
-def _clock(time_ns: int) -> str:
-    return str(np.datetime64(int(time_ns), "ns").astype("datetime64[s]")).replace("T", " ")

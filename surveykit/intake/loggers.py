@@ -7,13 +7,13 @@ import os
 import zlib
 from collections.abc import Sequence
 from concurrent.futures import ThreadPoolExecutor
-from dataclasses import dataclass
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
 from numpy.typing import NDArray
 
-from surveykit.core import BoolArray, FloatArray, InputError, IntArray
+from surveykit.core import BoolArray, InputError, IntArray
 from surveykit.intake import cells, dialect
 from surveykit.intake.counted import counted_times
 from surveykit.intake.params.instruments import COUNTED, Channel, Instrument, Layout
@@ -25,17 +25,6 @@ from surveykit.intake.times import NO_OFFSET, read_times, to_utc
 __all__ = ["MARKS", "NO_TIME_NS", "FileFacts", "Records", "expand_files", "read_logger"]
 
 SAMPLE_LINES = 200
-
-
-@dataclass(frozen=True)
-class _File:
-    facts: FileFacts
-    time_ns: IntArray
-    line: NDArray[np.int32]
-    stepped_back: BoolArray
-    bad_line: BoolArray
-    numbers: dict[str, cells.Numbers]
-    step: dict[str, float]
 
 
 def expand_files(data_folder: Path, patterns: Sequence[str]) -> list[Path]:
@@ -92,24 +81,25 @@ def read_logger(name: str, instrument: Instrument, paths: Sequence[Path], root: 
         column, not in the declared encoding or format, a time that the zone lacks or has twice.
     """
     channels = instrument.channels(name)
-    files: list[_File] = []
+    files: list[Records] = []
     faults: list[str] = []
     for path in sorted(set(paths), key=lambda path: path.as_posix()):
         try:
-            files.append(_read_file(path, root, instrument, channels))
+            files.append(_read_file(name, path, root, instrument, channels))
         except InputError as error:
             faults += error.faults
-    if not faults and not any(file.facts.records for file in files):
-        named = ", ".join(file.facts.path for file in files) or "no file"
+    if not faults and not any(len(file) for file in files):
+        named = ", ".join(file.files[0].path for file in files) or "no file"
         faults.append(f"{named}: logger {name!r} has no records; name its files under "
                       f"loggers.{name}.files")
     if faults:
         raise InputError(*faults)
-    return _joined(name, instrument, channels, files)
+    return in_order(_joined(files))
 
 
-def _read_file(path: Path, root: Path, instrument: Instrument,
-               channels: Sequence[Channel]) -> _File:
+def _read_file(name: str, path: Path, root: Path, instrument: Instrument,
+               channels: Sequence[Channel]) -> Records:
+    """Return the records of one file, as they stand in it."""
     where = path.relative_to(root).as_posix() if path.is_relative_to(root) else path.name
     layout = instrument.layout
     if not (outside_allowed() or path.resolve().is_relative_to(root.resolve())):
@@ -159,21 +149,25 @@ def _read_file(path: Path, root: Path, instrument: Instrument,
         part["line"] += np.int32(above)
         above += physical
     whole = _chained([part for _, _, part in blocks])
-    line, bad_line, wall_ns = whole["line"], whole["bad"], whole["wall_ns"]
+    line, bad_line = whole["line"], whole["bad"]
 
     def locate(rows: BoolArray) -> str:
         return f"{where}, line {line[np.flatnonzero(rows)[0]]}"
 
-    _refuse_unlike(data, header, instrument, where, line, bad_line, wall_ns, times_at)
-    time_ns = to_utc(wall_ns, whole["offset_s"], instrument.time.zone, locate)
-    steps = {channel.column: abs(channel.gain.value) * cells.printed_step(sample, at, layout)
-             for channel, at in zip(channels, numbers_at, strict=True)}
+    _refuse_unlike(data, header, instrument, where, line, bad_line, whole["wall_ns"], times_at)
+    time_ns = to_utc(whole["wall_ns"], whole["offset_s"], instrument.time.zone, locate)
     facts = FileFacts(where, sha256.result(), path.stat().st_size, len(line),
                       sum(again for _, again, _ in blocks))
-    numbers = {channel.column: cells.Numbers(whole[f"value {channel.column}"],
-                                             whole[f"unreadable {channel.column}"])
-               for channel in channels}
-    return _File(facts, time_ns, line, _stepped_back(time_ns), bad_line, numbers, steps)
+    return Records(
+        logger=name, time_ns=time_ns, file=np.zeros(len(line), dtype=np.int16), line=line,
+        channels={c.column: whole[f"value {c.column}"] for c in channels},
+        unreadable={c.column: whole[f"unreadable {c.column}"] for c in channels},
+        marks={"unreadable line": bad_line,
+               "unreadable time": (time_ns == NO_TIME_NS) & ~bad_line,
+               "time stepped back": _stepped_back(time_ns)},
+        files=(facts,), interval_s=instrument.interval_s or float("nan"),
+        resolution={c.column: abs(c.gain.value) * cells.printed_step(sample, at, layout)
+                    for c, at in zip(channels, numbers_at, strict=True)})
 
 
 def _stepped_back(time_ns: IntArray) -> BoolArray:
@@ -243,27 +237,19 @@ def _refuse_unlike(data: dialect.Data, header: dialect.Header, instrument: Instr
             f"time.format {instrument.time.format!r}, write iso8601 or the format the logger uses")
 
 
-def _joined(name: str, instrument: Instrument, channels: Sequence[Channel],
-            files: list[_File]) -> Records:
-    time_ns = _chain([file.time_ns for file in files])
-    bad_line = _chain([file.bad_line for file in files])
-    values: dict[str, FloatArray] = {}
-    unreadable: dict[str, BoolArray] = {}
-    for column in (channel.column for channel in channels):
-        values[column] = _chain([file.numbers[column].values for file in files])
-        unreadable[column] = _chain([file.numbers[column].unreadable for file in files])
-    steps = np.array([[file.step[c.column] for c in channels] for file in files])
-    finest = [float(np.nanmin(column)) if np.isfinite(column).any() else float("nan")
-              for column in steps.T]
-    records = Records(
-        logger=name, time_ns=time_ns,
-        file=np.repeat(np.arange(len(files), dtype=np.int16), [len(f.line) for f in files]),
-        line=_chain([file.line for file in files]),
-        channels=values, unreadable=unreadable,
-        marks={"unreadable line": bad_line,
-               "unreadable time": (time_ns == NO_TIME_NS) & ~bad_line,
-               "time stepped back": _chain([file.stepped_back for file in files])},
-        files=tuple(file.facts for file in files),
-        resolution={c.column: finest[i] for i, c in enumerate(channels)},
-        interval_s=instrument.interval_s or float("nan"))
-    return in_order(records)
+def _joined(files: list[Records]) -> Records:
+    """Return the records of all files, one after the other."""
+    def joined(held: str) -> dict[str, NDArray]:
+        columns = [getattr(file, held) for file in files]
+        return {name: _chain([part[name] for part in columns]) for name in columns[0]}
+
+    finest = {name: np.array([file.resolution[name] for file in files])
+              for name in files[0].resolution}
+    return replace(
+        files[0], time_ns=_chain([file.time_ns for file in files]),
+        file=np.repeat(np.arange(len(files), dtype=np.int16), [len(file) for file in files]),
+        line=_chain([file.line for file in files]), channels=joined("channels"),
+        unreadable=joined("unreadable"), marks=joined("marks"),
+        files=tuple(facts for file in files for facts in file.files),
+        resolution={name: float(np.nanmin(steps)) if np.isfinite(steps).any() else float("nan")
+                    for name, steps in finest.items()})

@@ -176,15 +176,16 @@ def check_coverage(passes: tuple[Pass, ...], records: Mapping[str, Records],
         edges = np.searchsorted(time_ns, [(one.start_ns, one.stop_ns) for one in mine]) \
             if mine else np.zeros((0, 2), dtype=int)
         if mine and (edges[:, 0] == edges[:, 1]).all():
-            span = f"{_clock(time_ns[0])} to {_clock(time_ns[-1])}" if time_ns.size else "no time"
+            span = " to ".join(map(clock_text, time_ns[[0, -1]])) if time_ns.size else "no time"
             faults.append(
                 f"loggers.{name}: its records ({span} UTC) miss every pass it serves on "
-                f"{sheet_path} ({_clock(min(one.start_ns for one in mine))} to "
-                f"{_clock(max(one.stop_ns for one in mine))} UTC); check its files, time.zone, "
+                f"{sheet_path} ({clock_text(min(one.start_ns for one in mine))} to "
+                f"{clock_text(max(one.stop_ns for one in mine))} UTC); check its files, time.zone, "
                 f"clock and watch")
     if faults:
         raise InputError(*faults)
 
 
-def _clock(time_ns: int) -> str:
+def clock_text(time_ns: int) -> str:
+    """Return a time [ns UTC] to the second, as messages write it."""
     return str(np.datetime64(int(time_ns), "ns").astype("datetime64[s]")).replace("T", " ")

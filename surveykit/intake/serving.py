@@ -53,7 +53,7 @@ def serve(offered: Offers, quantity: str, mode: str, instrument: str) -> Service
                          f"write one of {', '.join(offered)}")
     kind, needed = _kind(offered, quantity, mode, instrument)
     if instrument and not any(name in offered[instrument] for name in needed):
-        raise ValueError(f"instrument {instrument!r} has no column of {_either(needed)}, which "
+        raise ValueError(f"instrument {instrument!r} has no column of {' or '.join(needed)}, which "
                          f"{_a_pass(quantity, kind)} needs; name another, or leave it blank")
     missing = [name for name in needed
                if not any(name in columns for columns in offered.values())]
@@ -95,10 +95,6 @@ def _pick(offered: Offers, name: str, instrument: str) -> Channel:
         raise ValueError(f"{' and '.join(having)} both offer {name}; "
                          "name the one that was used under instrument")
     return offered[having[0]][name]
-
-
-def _either(names: tuple[str, ...]) -> str:
-    return " or ".join(names)
 
 
 def _a_pass(quantity: str, kind: str) -> str:

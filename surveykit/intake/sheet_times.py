@@ -7,6 +7,8 @@ from dataclasses import dataclass
 from datetime import UTC, date, datetime, timedelta
 from zoneinfo import ZoneInfo
 
+from surveykit.intake.params.base import since_epoch_ns
+
 _WALL = re.compile(r"(\d{1,2}):(\d{2})(?::(\d{2})(?:[.,](\d{1,6}))?)?(?:\s*([AaPp])\.?[Mm]\.?)?",
                    re.ASCII)
 _ISO = re.compile(r"\d{4}-\d{2}-\d{2}[T ]\d{2}:\d{2}(:\d{2}(?:[.,]\d{1,6})?)?"
@@ -65,7 +67,7 @@ def read_time(text: str, day: date, zone: str) -> SheetTime:
         if read.tzinfo is None:
             return SheetTime(_utc_ns(read, zone, text), read, iso[1] is not None, True)
         local = read.astimezone(ZoneInfo(zone)).replace(tzinfo=None)
-        return SheetTime(_since_epoch_ns(read), local, iso[1] is not None, True)
+        return SheetTime(since_epoch_ns(read), local, iso[1] is not None, True)
     if _FRACTION.fullmatch(text):
         share = float(text.replace(",", ".")) % 1
         meant = (datetime(2000, 1, 1, tzinfo=UTC)
@@ -101,9 +103,4 @@ def _utc_ns(local: datetime, zone: str, text: str) -> int:
         first = min(found).astimezone(ZoneInfo(zone)).isoformat()
         raise ValueError(f"{text!r} occurs twice in {zone} on {local:%Y-%m-%d} (clocks go back); "
                          f"write it with its offset, such as {first}")
-    return _since_epoch_ns(found.pop())
-
-
-def _since_epoch_ns(moment: datetime) -> int:
-    step = moment - datetime(1970, 1, 1, tzinfo=UTC)
-    return ((step.days * 86400 + step.seconds) * 1_000_000 + step.microseconds) * 1000
+    return since_epoch_ns(found.pop())

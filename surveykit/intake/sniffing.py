@@ -147,24 +147,16 @@ def _fits(cells: list[str], form: str) -> bool:
 
 def _time(table: dict[str, list[str]], path: Path) -> TimeGuess:
     dated = [f"{day} {clock}" for day in _DATES for clock in _CLOCKS]
-    for name, cells in table.items():
+    pairs = [(day, clock) for day in table for clock in table if day != clock
+             and re.search(r"\d[-./]\d", table[day][0]) and ":" in table[clock][0]]
+    for columns in (*((name,) for name in table), *pairs):
+        cells = [" ".join(parts) for parts in zip(*(table[name] for name in columns), strict=True)]
         if re.match(r"\s*\d{4}-\d\d-\d\d[T ]\d", cells[0]) and _fits(cells, "iso8601"):
             _, offsets = read_times(pd.Series(cells, dtype=object), "iso8601")
-            return TimeGuess((name,), "iso8601", bool((offsets > -86400).all()), (), cells[0])
+            return TimeGuess(columns, "iso8601", bool((offsets > -86400).all()), (), cells[0])
         fitting = [form for form in dated if _fits(cells, form)]
         if fitting:
-            return TimeGuess((name,), fitting[0], False, tuple(fitting[1:]), cells[0])
-    names = list(table)
-    for day in names:
-        for clock in names:
-            if day == clock or not re.search(r"\d[-./]\d", table[day][0]) or \
-                    ":" not in table[clock][0]:
-                continue
-            joined = [f"{a} {b}" for a, b in zip(table[day], table[clock], strict=True)]
-            fitting = [form for form in ("iso8601", *dated) if _fits(joined, form)]
-            if fitting:
-                return TimeGuess((day, clock), fitting[0], False, tuple(
-                    form for form in fitting[1:] if form not in dated[:2]), joined[0])
+            return TimeGuess(columns, fitting[0], False, tuple(fitting[1:]), cells[0])
     counted = _counted(table)
     if counted is None:
         raise InputError(f"{path}: no column looks like times; write the entry by hand, with the "

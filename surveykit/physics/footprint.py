@@ -129,6 +129,36 @@ def limited_share(radius_m: ArrayLike, height_m: ArrayLike,
     return np.asarray(np.minimum(1.0, disc_share(radius_m, height_m) / cone))
 
 
+def upright_share(width_m: ArrayLike, height_m: ArrayLike, distance_m: ArrayLike) -> FloatArray:
+    """Return the share of a level head's view that an upright plate fills, as a person does.
+
+    Parameters
+    ----------
+    width_m, height_m : array_like
+        Of the plate [m]; it stands on the head's level, its middle opposite the head.
+    distance_m : array_like
+        Of the head from the plate [m], above 0.
+
+    Returns
+    -------
+    ndarray
+        Share [1]: upwards of what rises above the head, downwards of what is below it.
+
+    References
+    ----------
+    Howell's catalogue (see `disc_share`): element to a rectangle in a perpendicular plane.
+
+    Examples
+    --------
+    >>> print(upright_share(0.5, [0.85, 0.90], 0.6).round(3))  # sky and ground from .9 m up
+    [0.082 0.086]
+    """
+    half = np.asarray(width_m, dtype=np.float64) / 2
+    away = np.asarray(distance_m, dtype=np.float64)
+    slant = np.hypot(np.asarray(height_m, dtype=np.float64), away)
+    return np.asarray((np.arctan(half / away) - away / slant * np.arctan(half / slant)) / pi)
+
+
 def beam_shade(head_radius_m: ArrayLike, height_m: ArrayLike,
                zenith_deg: ArrayLike) -> FloatArray:
     """Return the share of the view that the head's own shadow of the beam fills.

@@ -1,6 +1,6 @@
 """The plan of a survey day, from its parameter file and what earlier campaigns showed."""
 
-from surveykit.planning.day import ASSUMED, Plan, make, sun_course, sun_windows
+from surveykit.planning.day import Plan, make, sun_course, sun_windows
 from surveykit.planning.order import (
     SAFETY,
     duration_min,
@@ -11,6 +11,6 @@ from surveykit.planning.order import (
     visit_minutes,
 )
 
-__all__ = ["ASSUMED", "SAFETY", "Plan", "duration_min", "field_sheet", "fits",
+__all__ = ["SAFETY", "Plan", "duration_min", "field_sheet", "fits",
            "make", "order",
            "rounds_needed", "sun_course", "sun_windows", "visit_minutes"]

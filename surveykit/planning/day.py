@@ -1,7 +1,6 @@
 """The plan of a survey day: sun, heights, walking, passes and the order of visits.
 
-What a plan assumes where nothing better is known stands in `ASSUMED`, each an engineering default,
-and is printed with the plan.
+What a plan assumes where nothing better is known stands in `settings.planning`.
 """
 
 from __future__ import annotations
@@ -21,13 +20,10 @@ from surveykit.planning.patches import Patch, patches
 from surveykit.statistics.pooling import passes_needed, paule_mandel
 
 MINUTE_NS = 60_000_000_000
-ASSUMED = {  # between passes, within a pass: where no earlier campaign tells them
-    "temperature": (0.5, 0.3), "albedo": (0.01, 0.005), "ndvi": (0.01, 0.005)}
-REACH_M = 1.0  # that a hand-held pole carries a head level
-CONTRAST, LEAST_CONTRAST, SPOT_SHARE, HOLD_BELOW_M_S = 0.5, 0.05, 1 / 3, 0.3
 HEADS = {"contact": "brightness_temperature", "stand-off": "brightness_temperature",
          "longwave": "longwave_up", "albedo": "shortwave_up", "ndvi": "red_up"}
 UNITS = {"temperature": "K", "albedo": "1", "ndvi": "1"}
+LOWEST_SUN_DEG = 80.0  # from the zenith: lower, the beam's shade has no end on the ground
 
 
 @dataclass(frozen=True)
@@ -115,6 +111,7 @@ def _height(survey: Survey, patch: Patch, head: str, channel: Channel, zenith_de
             contrast: float) -> tuple[dict[str, object], pd.DataFrame | None]:
     """Return the row of one patch and head, and for albedo the curve of errors over height."""
     across, half_angle = patch.across_m, channel.half_angle_deg or 90.0
+    planning = survey.campaign.settings.planning
     if not np.isfinite(across):
         return {"height_m": np.nan, "note": "the patch's size is not known"}, None
     curve, note = None, ""
@@ -122,14 +119,15 @@ def _height(survey: Survey, patch: Patch, head: str, channel: Channel, zenith_de
         settings = survey.campaign.settings.albedo
         radius = channel.head_radius_m or settings.head_radius_assumed_cm / 100
         note = "" if channel.head_radius_m else "the head's radius is assumed"
-        optics = (radius, across / 2, contrast, min(zenith_deg, 80.0), settings.beam_fraction)
+        optics = (radius, across / 2, contrast, min(zenith_deg, LOWEST_SUN_DEG),
+                  settings.beam_fraction)
         height = footprint.best_height_m(*optics)
         curve = _curve(*optics)
     elif half_angle >= 89.9:
         height = across / 2 / walking.RADII_FOR_90
     else:
-        height = walking.spot_height_m(across, half_angle, SPOT_SHARE)
-    height = min(height, REACH_M)
+        height = walking.spot_height_m(across, half_angle, planning.spot_share)
+    height = min(height, planning.reach_m)
     wide = walking.footprint_m(height, half_angle)
     speed = walking.walking_speed_m_s(wide, channel.time_constant_s)
     return {"height_m": height, "footprint_m": wide,
@@ -137,18 +135,19 @@ def _height(survey: Survey, patch: Patch, head: str, channel: Channel, zenith_de
             "lanes": walking.lanes(patch.width_m if np.isfinite(patch.width_m) else across, wide),
             "speed_m_s": min(speed, 1.0),
             "note": "; ".join(filter(None, (note, "stop and hold instead of walking"
-                                            if speed < HOLD_BELOW_M_S else "")))}, curve
+                                            if speed < planning.hold_below_m_s else "")))}, curve
 
 
 def _contrast(survey: Survey, patch: Patch, known: pd.DataFrame | None) -> float:
     """Relative contrast of a patch with what surrounds it, from the last earlier campaign."""
-    around = survey.campaign.surfaces[patch.surface].around
+    around, planning = survey.campaign.surfaces[patch.surface].around, \
+        survey.campaign.settings.planning
     if around is None or known is None:
-        return CONTRAST
+        return planning.contrast
     own = known.loc[(known["surface"] == patch.surface) & (known["quantity"] == "albedo")
                     & (known["value"] > 0), "value"]
-    return max(float(abs(around.amount.value / own.iloc[0] - 1)), LEAST_CONTRAST) if len(own) \
-        else CONTRAST
+    return max(float(abs(around.amount.value / own.iloc[0] - 1)), planning.least_contrast) \
+        if len(own) else planning.contrast
 
 
 def _curve(radius: float, patch_radius: float, contrast: float, zenith_deg: float,
@@ -156,7 +155,10 @@ def _curve(radius: float, patch_radius: float, contrast: float, zenith_deg: floa
     height: FloatArray = np.geomspace(0.02, max(2 * patch_radius, 0.1), 80)
     shade = footprint.self_shade(radius, height, zenith_deg, beam_fraction)
     foreign = contrast * (1 - footprint.disc_share(patch_radius, height))
-    return pd.DataFrame({"height_m": height, "shade": shade, "foreign": foreign})
+    curve = pd.DataFrame({"height_m": height, "shade": shade, "contamination": foreign,
+                          "effect": shade + foreign, "role": ""})
+    curve.loc[curve["effect"].idxmin(), "role"] = "best"
+    return curve
 
 
 def _channel(survey: Survey, quantity: str) -> Channel | None:
@@ -175,7 +177,10 @@ def passes(survey: Survey, before: tuple[str, pipeline.Tables]) -> pd.DataFrame:
     top and do not shrink with passes.
     """
     wanted, rows = survey.campaign.relevant_change, []
-    told = _spreads(*before)
+    told, planning = _spreads(*before), survey.campaign.settings.planning
+    assumed = {"temperature": (planning.temperature_between_k, planning.temperature_within_k),
+               "albedo": (planning.albedo_between, planning.albedo_within),
+               "ndvi": (planning.ndvi_between, planning.ndvi_within)}
     quantities = [q for q, name in (("temperature", "brightness_temperature"),
                                     ("temperature", "longwave_up"), ("albedo", "shortwave_up"),
                                     ("ndvi", "red_up")) if _channel(survey, name)]
@@ -183,7 +188,7 @@ def passes(survey: Survey, before: tuple[str, pipeline.Tables]) -> pd.DataFrame:
         for surface in survey.campaign.surfaces:
             known = {k: v for k, v in told.items() if k[:2] == (surface, quantity)}
             for (_, _, kind), (between, within, source) in (known or {
-                    (surface, quantity, ""): (*ASSUMED[quantity], "engineering default")}).items():
+                    (surface, quantity, ""): (*assumed[quantity], "settings")}).items():
                 need = passes_needed(between, within, wanted.of(quantity))
                 rows.append({"surface": surface, "quantity": quantity, "kind": kind,
                              "between": between, "within": within, "wanted": wanted.of(quantity),

@@ -12,7 +12,6 @@ from surveykit.planning.day import Plan
 from surveykit.planning.patches import Patch
 from surveykit.starting import COLUMNS
 
-CONTROL_EVERY_MIN, WALK_MIN, LEAST_ROUNDS = 20.0, 1.0, 3
 LIGHT = ("shortwave_down", "shortwave_up", "red_down", "red_up")
 SAFETY = (
     "Local rules and the site's own safety plan come first; this list replaces neither, and work "
@@ -40,12 +39,14 @@ def visit_minutes(survey: Survey, patch: Patch) -> float:
     trim_s = settings.sheet_u_s + survey.campaign.settings.clocks.unchecked_u_s \
         + settings.settle_time_constants * slowest
     walks = ("contact" in patch.heads) + bool({*patch.heads} - {"contact"})
-    return WALK_MIN + walks * (2 * settings.min_duration_s + 2 * trim_s) / 60
+    walk_min = survey.campaign.settings.planning.walk_min
+    return walk_min + walks * (2 * settings.min_duration_s + 2 * trim_s) / 60
 
 
-def rounds_needed(plan: Plan) -> dict[str, int]:
-    """Return for each surface the rounds after which it has the passes it needs, at least 3."""
-    need = {p.surface: LEAST_ROUNDS for p in plan.patches}
+def rounds_needed(survey: Survey, plan: Plan) -> dict[str, int]:
+    """Return for each surface the rounds after which it has the passes it needs."""
+    need = dict.fromkeys((p.surface for p in plan.patches),
+                         survey.campaign.settings.planning.least_rounds)
     for row in plan.passes.to_dict("records"):
         places = sum(p.surface == row["surface"] for p in plan.patches)
         if places:
@@ -57,10 +58,11 @@ def order(survey: Survey, plan: Plan, rounds: Mapping[str, int]) -> pd.DataFrame
     """Return the visits in order: round, surface, patch, minutes from the start.
 
     A patch is visited in as many rounds as its surface needs. Every other round runs backwards,
-    so that a drift over the day cancels. The control comes first, last, and at least every 20
-    minutes.
+    so that a drift over the day cancels. The control comes first, last, and between as often as
+    `settings.planning` says.
     """
     control = survey.campaign.comparison.control
+    every_min = survey.campaign.settings.planning.control_every_min
     fixed = [p for p in plan.patches if p.surface == control]
     others = [p for p in plan.patches if p.surface != control] or fixed
     fixed = [] if others is fixed else fixed
@@ -79,7 +81,7 @@ def order(survey: Survey, plan: Plan, rounds: Mapping[str, int]) -> pd.DataFrame
     for number in range(1, last + 1):
         due_now = [p for p in others if rounds[p.surface] >= number]
         for place, patch in enumerate(due_now if number % 2 else due_now[::-1]):
-            due = since + visit_minutes(survey, patch) > CONTROL_EVERY_MIN
+            due = since + visit_minutes(survey, patch) > every_min
             if fixed and (due or (place == 0 and number == 1)):
                 visit(fixed[turn % len(fixed)], number)
                 turn += 1
@@ -109,16 +111,16 @@ def fits(survey: Survey, plan: Plan, visits: pd.DataFrame) -> str:
 
 
 def field_sheet(survey: Survey, plan: Plan, visits: pd.DataFrame) -> pd.DataFrame:
-    """Return the field sheet filled in but for the times: dark rows and passes in order."""
+    """Return the field sheet filled in but for the times: covers, darks and passes in order."""
     known = {(p.surface, p.name): p for p in plan.patches}
     heights = {(r["surface"], r["patch"], r["reading"]): r
                for r in plan.heights.to_dict("records")}
-    rows = [*_dark(survey, "start")]
+    rows = [*_marks(survey, "start")]
     seen: set[tuple[str, str]] = set()
     middle = len(visits) // 2
     for place, visit in enumerate(visits.to_dict("records")):
         if place == middle:
-            rows += _dark(survey, "middle")
+            rows += _marks(survey, "middle")
         patch = known[visit["surface"], visit["patch"]]
         for head in patch.heads:
             advice = heights.get((patch.surface, patch.name, head), {})
@@ -132,13 +134,14 @@ def field_sheet(survey: Survey, plan: Plan, visits: pd.DataFrame) -> pd.DataFram
                 "width_m": _short(patch.width_m) if first else "",
                 "length_m": _short(patch.length_m) if first else "",
                 "lanes": _whole(float(advice.get("lanes", math.nan)))})
-    rows += _dark(survey, "end")
+    rows += _marks(survey, "end")
     day = {"campaign": survey.campaign.campaign, "date": survey.campaign.date}
     return pd.DataFrame([dict.fromkeys(COLUMNS, "") | row | day for row in rows],
                         columns=list(COLUMNS))
 
 
-def _dark(survey: Survey, when: str) -> Iterable[dict[str, str]]:
+def _marks(survey: Survey, when: str) -> Iterable[dict[str, str]]:
+    yield {"entry": "cover", "note": f"all heads together for ten seconds, {when}"}
     for name in survey.campaign.loggers:
         if any(c.quantity in LIGHT for c in survey.parameters.channels(name)):
             yield {"entry": "dark", "instrument": name, "note": f"caps on for a minute, {when}"}

@@ -38,7 +38,7 @@ TITLES = {
     "trends": "Lines through the dates of each surface, three dates or more",
     "changes": "Changes since earlier campaigns",
     "corrections": "From the raw to the final value of each pass, step by step",
-    "histograms": "Readings by size of the passes whose readings fall into two groups",
+    "histograms": "Readings of passes that fall into two groups: records between two edges",
     "derived": "What was asked for beside the measured quantities",
     "geometry": "Shade and foreign ground of each albedo pass against height, used and best",
 }

@@ -20,6 +20,7 @@ TRACKS = (("irradiance_w_m2", "irradiance", "W m⁻²"), ("zenith_deg", "sun hei
           ("air_temperature_degc", "air temperature", "°C"),
           ("body_temperature_degc", "body temperature", "°C"))
 POINTS, FEW, MANY = 600, 40, 6
+LOGGED, USED = "logged", "used"
 
 
 @styled
@@ -106,26 +107,45 @@ def _stretches(axis: Axes, excluded: pd.DataFrame | None,
 
 @styled
 def ledger_plot(ledger: pd.DataFrame) -> Drawing:
-    """Draw for each logger the shares of records used, excluded by reason, outside passes."""
+    """Draw for each logger the way from its logged records to those used, loss by loss."""
     if ledger.empty or not ledger["records"].sum():
         return Drawing(None, "No record was logged, so there is no ledger to draw.")
-    keys = ledger["disposition"].where(ledger["disposition"] != "excluded",
-                                       "excluded: " + ledger["reason"])
-    counts = ledger.assign(key=keys).pivot_table(index="logger", columns="key", values="records",
-                                                 aggfunc="sum", fill_value=0)
-    outer = [key for key in ("used", "outside passes") if key in counts]
-    excluded = counts.drop(columns=outer).sum().sort_values(ascending=False, kind="stable").index
-    counts = pd.concat([counts[outer[:1]],
-                        _merged(counts[excluded], "excluded: other reasons", MANY - 2),
-                        counts[outer[1:]]], axis="columns")
-    totals = counts.sum(axis="columns")
-    shares = counts.div(totals.where(totals > 0), axis="index").fillna(0.0)
-    names = [f"{name}\n{w.count(int(total))} records" for name, total in totals.items()]
-    drawing = _stack(shares, names, "Share of records, %")
-    told = [f"{logger}: {w.count(int(total))} records, " + w.listing(
-        f"{w.percent(part)} {key}" for key, part in row.items() if part > 0) + "."
-        for (logger, row), total in zip(shares.iterrows(), totals, strict=True)]
-    return Drawing(drawing, " ".join(told), "What became of the records of each logger.")
+    ways = {str(logger): _losses(block) for logger, block in ledger.groupby("logger")}
+    figure, axes = panels(len(ways), [0.45 + 0.2 * len(way) for way in ways.values()],
+                          sharex=True)
+    told = []
+    for axis, (logger, way) in zip(axes, ways.items(), strict=True):
+        total = left = way[LOGGED]
+        for y, (word, n) in enumerate(way.items()):
+            whole = word in (LOGGED, USED)
+            start, left = (0, left) if whole else (left - n, left - n)
+            axis.barh(-y, 100 * n / total, left=100 * start / total, height=0.72, linewidth=0.6,
+                      color=PALETTE[0] if whole else PAPER, edgecolor=INK if not whole else PAPER,
+                      hatch="" if whole else HATCHES[1])
+            axis.text(100 * (start + n) / total + 1, -y, w.count(n), va="center", fontsize=8)
+        axis.set_yticks(-np.arange(len(way)), [*way], fontsize=8.5)
+        axis.set_title(logger)
+        axis.set_xlim(0, 112)
+        axis.set_xticks(range(0, 101, 20))
+        axis.tick_params(axis="y", length=0)
+        sns.despine(ax=axis, left=True)
+        told.append(f"{logger}: {w.plural(total, 'record')}, " + w.listing(
+            f"{w.percent(n / total)} {word}" for word, n in way.items() if word != LOGGED) + ".")
+    axes[-1].set_xlabel("Share of a logger’s records, %")
+    return Drawing(figure, " ".join(told), "From the records of each logger to those used: hatched "
+                   "bars are what is left out, each record once, by its first reason.")
+
+
+def _losses(block: pd.DataFrame) -> dict[str, int]:
+    """Records logged, outside passes, left out by reason (the largest first), and used."""
+    total = int(block["records"].sum())
+    outside = int(block.loc[block["disposition"] == "outside passes", "records"].sum())
+    reasons = block[block["disposition"] == "excluded"].groupby("reason")["records"].sum()
+    reasons = reasons[reasons > 0].sort_values(ascending=False, kind="stable")
+    kept, rest = reasons.iloc[:MANY], int(reasons.iloc[MANY:].sum())
+    way = {LOGGED: total, "outside passes": outside} | {str(k): int(n) for k, n in kept.items()}
+    way |= {"other reasons": rest, USED: total - outside - int(reasons.sum())}
+    return {word: n for word, n in way.items() if n or word in (LOGGED, USED)}
 
 
 def budget_plot(budget: pd.DataFrame, labels: Labels = None) -> tuple[Drawing, ...]:

@@ -1,14 +1,14 @@
-"""Figures of results: intervals by surface, differences between surfaces, changes since a date."""
+"""Figures of results: intervals by surface, places, differences, changes since a date."""
 
 from __future__ import annotations
 
-from collections.abc import Mapping
-from typing import Any
+from collections.abc import Mapping, Sequence
 
 import numpy as np
 import pandas as pd
 import seaborn as sns
 from matplotlib.axes import Axes
+from matplotlib.figure import Figure
 
 from . import wording as w
 from .style import INK, MARKERS, MUTED, PALETTE, PAPER, RAMP, Drawing, panels, shorten, styled
@@ -41,17 +41,12 @@ def interval_plot(surfaces: pd.DataFrame, quantity: str, labels: Labels = None) 
     findings = []
     for place, (axis, (kind, block)) in enumerate(zip(axes, families, strict=True)):
         rows = block.sort_values("value", na_position="first", kind="stable")
-        _rows(axis, [w.label(name, labels) for name in rows["surface"]])
-        for y, row in enumerate(rows.to_dict("records")):
-            _mark(axis, y, row, "value", place, hollow=row["status"] != "ok")
+        _draw_rows(axis, rows, "value", place, labels,
+                   [row["status"] != "ok" for row in rows.to_dict("records")])
         if len(families) > 1:
             axis.set_title(w.quantity_text(quantity, kind))
-        told = [f"{w.label(row['surface'], labels)} "
-                + w.with_unit(w.interval(row["value"], row["lower"], row["upper"],
-                                         w.places(quantity)), unit)
-                for row in rows[rows["value"].notna()].iloc[::-1].to_dict("records")]
-        findings.append(f"{w.quantity_text(quantity, kind)}: "
-                        f"{w.listing(told) or 'none evaluated'}.")
+        findings.append(f"{w.quantity_text(quantity, kind)}: " + (_told(
+            rows[rows["value"].notna()].iloc[::-1], "value", labels) or "none evaluated") + ".")
     axes[-1].set_xlabel(_axis(quantity, unit))
     hollow = surfaces[surfaces["quantity"] == quantity]["status"].isin(["qualified", "value only"])
     caption = f"{w.quantity_text(quantity)} of each surface with its interval" + (
@@ -59,53 +54,62 @@ def interval_plot(surfaces: pd.DataFrame, quantity: str, labels: Labels = None) 
     return Drawing(figure, "From high to low. " + " ".join(findings), caption)
 
 
+def rank_plots(ranks: pd.DataFrame, labels: Labels = None) -> tuple[Drawing, ...]:
+    """Return for each quantity and kind of the table `ranks` the probability of each place."""
+    return tuple(_rank_plot(pair, block, labels) for pair, block in w.families(ranks)
+                 if len({*block["surface"]}) > 1) or (
+        Drawing(None, "No two surfaces have a value, so there are no places to draw."),)
+
+
+@styled
+def _rank_plot(pair: tuple[str, str], block: pd.DataFrame, labels: Labels) -> Drawing:
+    shares = block.pivot_table(index="surface", columns="place", values="probability")
+    shares = shares.loc[(shares * shares.columns).sum(axis="columns").sort_values().index]
+    size = shares.to_numpy(float)
+    words = np.array([[w.percent(share) if share >= 0.005 else "" for share in row]
+                      for row in size], dtype=object)
+    figure = _matrix(size, words, [w.label(name, labels) for name in shares.index],
+                     [str(place) for place in shares], 0.36, vmax=1.0)
+    told = [f"{w.label(name, labels)} place {row.idxmax()} with probability "
+            f"{w.number(row.max(), 2)}" for name, row in shares.iterrows()]
+    return Drawing(figure, f"{w.quantity_text(*pair)}, most probable place from the highest down: "
+                           f"{w.listing(told)}.",
+                   f"Probability that a surface stands at each place of {w.inside_sentence(*pair)},"
+                   " place 1 the highest; empty cells are below 0.5 %.")
+
+
 def difference_matrices(differences: pd.DataFrame, labels: Labels = None) -> tuple[Drawing, ...]:
     """Return one matrix for each quantity and kind of the table `differences`."""
-    return tuple(difference_matrix(differences, quantity, kind, labels)
-                 for (quantity, kind), _ in w.families(differences)) or (
+    return tuple(_difference_matrix(pair, block, labels)
+                 for pair, block in w.families(differences)) or (
         Drawing(None, "No two surfaces could be compared, so there is no matrix to draw."),)
 
 
 @styled
-def difference_matrix(differences: pd.DataFrame, quantity: str, kind: str | None = None,
-                      labels: Labels = None) -> Drawing:
+def _difference_matrix(pair: tuple[str, str], block: pd.DataFrame, labels: Labels) -> Drawing:
     """Draw the differences row minus column, shaded by size, each with its verdict."""
-    families = {k: block for (name, k), block in w.families(differences) if name == quantity}
-    kind = next(iter(families), "") if kind is None else kind
-    block = families.get(kind, differences.iloc[:0])
     if not block["difference"].notna().any():
-        return Drawing(None, f"No difference of {w.inside_sentence(quantity, kind)} between "
-                             "surfaces could be evaluated, so there is no matrix to draw.")
+        return Drawing(None, f"No difference of {w.inside_sentence(*pair)} between surfaces could "
+                             "be evaluated, so there is no matrix to draw.")
     names = list(dict.fromkeys([*block["surface"], *block["other"]]))
     size = np.full((len(names), len(names)), np.nan)
     words = np.full(size.shape, "", dtype=object)
     for row in block.to_dict("records"):
         i, j = names.index(row["surface"]), names.index(row["other"])
         sign = 1 if i < j else -1
-        written = w.number(sign * row["difference"], w.places(quantity), sign=True)
+        written = w.number(sign * row["difference"], w.places(pair[0]), sign=True)
         size[min(i, j), max(i, j)] = abs(row["difference"])
         words[min(i, j), max(i, j)] = "\n".join(filter(None, (
             written, shorten(row["verdict"] if sign > 0 else _turned(row["verdict"]), 13))))
-    size, words = size[:-1, 1:], words[:-1, 1:]
-    figure, (axis,) = panels(1, [0.7 + 0.66 * len(size)])
-    small = 8.0 if len(size) < 5 else 6.5
-    sns.heatmap(size, ax=axis, cmap=RAMP, cbar=False, linewidths=1.5, linecolor=PAPER, vmin=0)
-    for i, j in zip(*np.nonzero(words != ""), strict=True):
-        axis.text(j + 0.5, i + 0.5, words[i, j], ha="center", va="center", color=INK,
-                  fontsize=small, linespacing=1.25)
-    axis.set_yticks(np.arange(len(size)) + 0.5,
-                    [shorten(w.label(n, labels), 16, 3) for n in names[:-1]], rotation=0)
-    axis.set_xticks(np.arange(len(size)) + 0.5,
-                    [shorten(w.label(n, labels), 13, 3) for n in names[1:]], rotation=0)
-    axis.tick_params(length=0, labelsize=small + 0.5, labeltop=True, labelbottom=False)
+    figure = _matrix(size[:-1, 1:], words[:-1, 1:], [w.label(n, labels) for n in names[:-1]],
+                     [w.label(n, labels) for n in names[1:]], 0.6)
     unit = w.unit_text(block["unit"].iloc[0])
     told = [f"{w.label(row['surface'], labels)} minus {w.label(row['other'], labels)} "
-            + (w.with_unit(w.number(row["difference"], w.places(quantity), sign=True), row["unit"])
+            + (w.with_unit(w.number(row["difference"], w.places(pair[0]), sign=True), row["unit"])
                or "no number") + f", {row['verdict']}" for row in block.to_dict("records")]
-    return Drawing(figure, f"{w.quantity_text(quantity, kind)}: {'; '.join(told)}.",
-                   f"Differences of {w.inside_sentence(quantity, kind)}"
-                   f"{f' in {unit}' if unit else ''}, row minus column, darker for larger, each "
-                   "with its verdict.")
+    return Drawing(figure, f"{w.quantity_text(*pair)}: {'; '.join(told)}.",
+                   f"Differences of {w.inside_sentence(*pair)}{f' in {unit}' if unit else ''}, row "
+                   "minus column, darker for larger, each with its verdict.")
 
 
 def change_plots(changes: pd.DataFrame, relevant: Mapping[str, float] | None = None,
@@ -121,35 +125,68 @@ def change_plot(changes: pd.DataFrame, earlier: str, relevant: Mapping[str, floa
                 labels: Labels = None) -> Drawing:
     """Draw the judged changes since one earlier campaign; the band is the relevant change."""
     judged = changes[(changes["earlier"] == earlier) & (changes["verdict"] != "")]
-    families = w.families(judged)
+    families, since = w.families(judged), w.label(earlier, labels)
     if not judged["change"].notna().any():
-        return Drawing(None, f"No change since {earlier} could be evaluated, so there is none to "
+        return Drawing(None, f"No change since {since} could be evaluated, so there is none to "
                              "draw.")
     figure, axes = panels(len(families), [0.95 + ROW_IN * len(b) for _, b in families])
     findings = []
     for place, (axis, ((quantity, kind), block)) in enumerate(zip(axes, families, strict=True)):
-        rows = block.iloc[::-1]
-        _rows(axis, [w.label(name, labels) for name in rows["surface"]])
         limit = (relevant or {}).get(quantity)
         if limit is not None:
             axis.axvspan(-limit, limit, color=MUTED, alpha=0.16, linewidth=0)
         axis.axvline(0, color=MUTED, linewidth=0.9)
-        for y, row in enumerate(rows.to_dict("records")):
-            _mark(axis, y, row, "change", place, hollow=row["verdict"] not in ("higher", "lower"))
+        rows = block.iloc[::-1]
+        _draw_rows(axis, rows, "change", place, labels,
+                   [verdict not in ("higher", "lower") for verdict in rows["verdict"]])
         axis.set_title(w.quantity_text(quantity, kind))
-        unit = block["unit"].iloc[0]
-        axis.set_xlabel(f"Change{f', {w.unit_text(unit)}' if w.unit_text(unit) else ''}")
+        unit = w.unit_text(block["unit"].iloc[0])
+        axis.set_xlabel(f"Change{f', {unit}' if unit else ''}")
         reach = max(*(abs(end) for end in axis.get_xlim()), 1.5 * (limit or 0))
         axis.set_xlim(-reach, reach)
-        told = [f"{w.label(row['surface'], labels)} "
-                + w.with_unit(w.interval(row["change"], row["lower"], row["upper"],
-                                         w.places(quantity), sign=True), unit)
-                + f" {row['verdict']}" for row in block.to_dict("records")]
-        findings.append(f"{w.quantity_text(quantity, kind)}: {w.listing(told)}.")
+        findings.append(f"{w.quantity_text(quantity, kind)}: "
+                        f"{_told(block, 'change', labels, 'verdict')}.")
     band = "; the grey band is the change that was declared relevant" if relevant else ""
-    return Drawing(figure, f"Change since {earlier}. " + " ".join(findings),
-                   f"Changes since {earlier} with their intervals{band}; filled marks are judged "
+    return Drawing(figure, f"Change since {since}. " + " ".join(findings),
+                   f"Changes since {since} with their intervals{band}; filled marks are judged "
                    "higher or lower, hollow ones small, equivalent or not shown.")
+
+
+def _matrix(size: np.ndarray, words: np.ndarray, rows: Sequence[str], columns: Sequence[str],
+            row_in: float, vmax: float | None = None) -> Figure:
+    """Draw cells shaded in one hue by size, words in them, columns named above."""
+    figure, (axis,) = panels(1, [0.6 + row_in * len(size)])
+    small = 8.0 if size.shape[1] < 6 else 7.0
+    sns.heatmap(size, ax=axis, cmap=RAMP, cbar=False, linewidths=1.5, linecolor=PAPER, vmin=0,
+                vmax=vmax)
+    for i, j in zip(*np.nonzero(words != ""), strict=True):
+        axis.text(j + 0.5, i + 0.5, words[i, j], ha="center", va="center", color=INK,
+                  fontsize=small, linespacing=1.25)
+    axis.set_yticks(np.arange(len(size)) + 0.5, [shorten(name, 16, 3) for name in rows],
+                    rotation=0)
+    axis.set_xticks(np.arange(size.shape[1]) + 0.5, [shorten(name, 13, 3) for name in columns],
+                    rotation=0)
+    axis.tick_params(length=0, labelsize=small + 0.5, labeltop=True, labelbottom=False)
+    return figure
+
+
+def _draw_rows(axis: Axes, rows: pd.DataFrame, column: str, place: int, labels: Labels,
+               hollow: Sequence[bool]) -> None:
+    """Draw a row's value and interval each, or in words why there is none."""
+    _rows(axis, [w.label(name, labels) for name in rows["surface"]])
+    colour, marker = PALETTE[place % len(PALETTE)], MARKERS[place % len(MARKERS)]
+    for y, (row, open_) in enumerate(zip(rows.to_dict("records"), hollow, strict=True)):
+        value, lower, upper = (float(row[key]) for key in (column, "lower", "upper"))
+        if np.isnan(value):
+            axis.text(0.01, y, str(row.get("verdict", row.get("status"))), va="center",
+                      transform=axis.get_yaxis_transform(), color=MUTED, style="italic",
+                      fontsize=8.5)
+            continue
+        if not np.isnan(lower):
+            axis.plot([lower, upper], [y, y], color=colour, linewidth=1.6, solid_capstyle="butt",
+                      marker="|", markersize=8)
+        axis.plot(value, y, marker=marker, markersize=6.5, color=colour,
+                  markerfacecolor=axis.get_facecolor() if open_ else colour, markeredgewidth=1.4)
 
 
 def _rows(axis: Axes, names: list[str]) -> None:
@@ -162,19 +199,13 @@ def _rows(axis: Axes, names: list[str]) -> None:
     sns.despine(ax=axis, left=True)
 
 
-def _mark(axis: Axes, y: int, row: Any, column: str, place: int, *, hollow: bool) -> None:
-    value, lower, upper = (float(row[key]) for key in (column, "lower", "upper"))
-    colour, marker = PALETTE[place % len(PALETTE)], MARKERS[place % len(MARKERS)]
-    if np.isnan(value):
-        word = row["verdict"] if "verdict" in row else row["status"]
-        axis.text(0.01, y, str(word), transform=axis.get_yaxis_transform(), va="center",
-                  color=MUTED, style="italic", fontsize=8.5)
-        return
-    if not np.isnan(lower):
-        axis.plot([lower, upper], [y, y], color=colour, linewidth=1.6, solid_capstyle="butt",
-                  marker="|", markersize=8)
-    axis.plot(value, y, marker=marker, markersize=6.5, color=colour,
-              markerfacecolor=axis.get_facecolor() if hollow else colour, markeredgewidth=1.4)
+def _told(rows: pd.DataFrame, column: str, labels: Labels, last: str = "") -> str:
+    """Tell surface, value and interval of each row."""
+    return w.listing(" ".join(filter(None, (
+        w.label(row["surface"], labels), w.with_unit(w.interval(
+            row[column], row["lower"], row["upper"], w.places(row["quantity"]),
+            sign=column == "change"), row["unit"]), row.get(last, ""))))
+        for row in rows.to_dict("records"))
 
 
 def _turned(verdict: str) -> str:

@@ -1,8 +1,8 @@
-"""Figures of the way to a value: correction steps, contact placements, values over the dates."""
+"""Figures of the way to a value: correction steps, values over the dates."""
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 
 import matplotlib.dates as mdates
 import numpy as np
@@ -10,7 +10,6 @@ import pandas as pd
 import seaborn as sns
 
 from . import wording as w
-from .figures_records import _clock_axis
 from .figures_results import _axis, _rows
 from .style import INK, MARKERS, MUTED, PALETTE, Drawing, panels, shorten, styled
 
@@ -68,63 +67,23 @@ def _correction_plot(corrections: pd.DataFrame, quantity: str, labels: Labels) -
                    "passes of a surface, after each step less the raw mean (the line at 0).")
 
 
-@styled
-def placement_plot(dwells: pd.DataFrame, labels: Labels = None,
-                   time_zone: str = "UTC") -> Drawing:
-    """Draw the placements of the contact head over the time of day, a panel a surface.
-
-    Parameters
-    ----------
-    dwells : DataFrame
-        Table `dwells`: one row a placement that counted.
-    labels : mapping, optional
-        Surface to label.
-    time_zone : str
-        IANA name of the zone of the time axis.
-    """
-    known = dwells[dwells["value"].notna()]
-    if known.empty:
-        return Drawing(None, "No placement of a contact head was evaluated, so there is none to "
-                             "draw.")
-    names = list(dict.fromkeys(known["surface"]))
-    figure, axes = panels(len(names), [1.05] * len(names), sharex=True)
-    told = []
-    for axis, name in zip(axes, names, strict=True):
-        block = known[known["surface"] == name]
-        for place, (_, patch) in enumerate(block.groupby("patch", sort=False)):
-            axis.plot(mdates.date2num(patch["start_utc"]), patch["value"], linestyle="",
-                      marker=MARKERS[place % 8], color=PALETTE[place % 8], markersize=3.2,
-                      markeredgewidth=0)
-        axis.set_title(w.label(name, labels))
-        axis.set_ylabel("°C")
-        axis.locator_params(axis="y", nbins=4)
-        axis.grid(axis="y")
-        sns.despine(ax=axis)
-        spread = block.groupby("pass")["value"].std().mean()
-        told.append(f"{w.label(name, labels)} {w.plural(len(block), 'placement')} from "
-                    f"{w.number(block['value'].min(), 1)} to {w.number(block['value'].max(), 1)} °C"
-                    + (f", standard deviation within a pass {w.number(spread, 1)} K"
-                       if np.isfinite(spread) else ""))
-    _clock_axis(axes[-1], time_zone)
-    return Drawing(figure, f"Contact placements: {'; '.join(told)}.",
-                   "Settled placements of the contact head over the day; equal marks within a "
-                   "panel are one patch.")
-
-
-def series_plots(series: pd.DataFrame, labels: Labels = None) -> tuple[Drawing, ...]:
+def series_plots(series: pd.DataFrame, labels: Labels = None,
+                 interventions: Sequence[Mapping[str, str]] = ()) -> tuple[Drawing, ...]:
     """Return for each quantity one plot of its values over the dates of several campaigns.
 
-    `series` is the table `surfaces` of all of them with a column `date` (ISO text). One date
-    gives none: there is no course to draw.
+    `series` is the table `surfaces` of all of them with a column `date` (ISO text);
+    `interventions` have `date`, `surface` and `text`. One date gives none: there is no course to
+    draw.
     """
     if series.empty or series["date"].nunique() < 2:
         return ()
     quantities = dict.fromkeys(quantity for (quantity, _), _ in w.families(series))
-    return tuple(_series_plot(series, quantity, labels) for quantity in quantities)
+    return tuple(_series_plot(series, quantity, labels, interventions) for quantity in quantities)
 
 
 @styled
-def _series_plot(series: pd.DataFrame, quantity: str, labels: Labels) -> Drawing:
+def _series_plot(series: pd.DataFrame, quantity: str, labels: Labels,
+                 interventions: Sequence[Mapping[str, str]]) -> Drawing:
     known = series[(series["quantity"] == quantity) & series["value"].notna()]
     if known.empty:
         return Drawing(None, f"No {w.inside_sentence(quantity)} could be evaluated on any date.")
@@ -135,6 +94,8 @@ def _series_plot(series: pd.DataFrame, quantity: str, labels: Labels) -> Drawing
                           * len(families), sharex=True)
     days = {date: float(mdates.datestr2num(date)) for date in dates}
     step = (max(days.values()) - min(days.values())) / 60  # surfaces stand side by side
+    done = [f"{w.date_text(one['date'])}, {w.label(one['surface'], labels)}: {one['text']}"
+            for one in interventions]
     told = []
     for axis, (kind, block) in zip(axes, families, strict=True):
         for place, name in enumerate(names):
@@ -150,6 +111,8 @@ def _series_plot(series: pd.DataFrame, quantity: str, labels: Labels) -> Drawing
             told.append(what + ", ".join(
                 f"{w.interval(r['value'], r['lower'], r['upper'], w.places(quantity))} "
                 f"on {w.date_text(r['date'])}" for r in rows.to_dict("records")))
+        for one in interventions:
+            axis.axvline(float(mdates.datestr2num(one["date"])), color=MUTED, linestyle=":")
         axis.set_title(w.quantity_text(quantity, kind))
         axis.set_ylabel(_axis(quantity, block["unit"].iloc[0]).rpartition(", ")[2])
         axis.grid(axis="y")
@@ -158,6 +121,8 @@ def _series_plot(series: pd.DataFrame, quantity: str, labels: Labels) -> Drawing
                         [w.date_text(date).rpartition(" ")[0] for date in dates], color=INK)
     axes[-1].set_xlabel(f"Date in {' and '.join(dict.fromkeys(date[:4] for date in dates))}")
     figure.legend(loc="outside upper left", ncols=2, handlelength=1.8, borderaxespad=0)
-    return Drawing(figure, "; ".join(told) + ".",
+    dotted = f" Dotted: {'; '.join(done)}." if done else ""
+    return Drawing(figure, "; ".join(told) + "." + dotted,
                    f"{w.quantity_text(quantity)} over the dates, raw values with their intervals: "
-                   "weather differs between dates, so read changes from the table below, not here.")
+                   "weather differs between dates, so read changes from the table below, not "
+                   f"here.{dotted}")

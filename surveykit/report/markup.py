@@ -6,12 +6,13 @@ becomes a sentence that says so.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from html import escape
 from typing import Literal
 
 from .typeset import typeset
+from .wording import sentence_case, with_labels
 
 NO_BREAK = "\u00a0"
 Align = Literal["text", "short", "long", "number", "code"]
@@ -69,6 +70,24 @@ class Cell:
         if self.room:
             inner += f'<span class="tail" style="min-width:{self.room:g}ch">{tail}</span>'
         return inner
+
+
+class Notes:
+    """The notes below a table: each text once, under its letter, names told by their labels."""
+
+    def __init__(self, labels: Mapping[str, str] | None = None) -> None:
+        self.labels, self.letters = labels or {}, dict[str, str]()
+
+    def letter(self, *notes: str) -> str:
+        """Return the letters of the notes, those of new ones the next free; "" for none."""
+        told = [self.letters.setdefault(note, chr(ord("a") + len(self.letters) % 26)
+                                        * (len(self.letters) // 26 + 1)) for note in notes if note]
+        return ", ".join(told)
+
+    def listed(self) -> list[tuple[str, str]]:
+        """Return letters and notes as they stand below the table."""
+        return [(letter, sentence_case(with_labels(note, self.labels)))
+                for note, letter in self.letters.items()]
 
 
 Row = Sequence[str | Cell]

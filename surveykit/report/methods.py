@@ -10,7 +10,6 @@ from collections.abc import Mapping
 import pandas as pd
 
 from . import wording as w
-from .sentences import Facts
 
 SHARED_FIRST = (
     "Records: each logged line is one record; it is used, or excluded by one first reason, or lies "
@@ -49,7 +48,7 @@ COMPARED = (
 )
 
 
-def methods(tables: Mapping[str, pd.DataFrame], facts: Facts) -> list[str]:
+def methods(tables: Mapping[str, pd.DataFrame]) -> list[str]:
     """Return the methods of the quantities that this campaign has, with their citations."""
     families = [pair for pair, _ in w.families(tables["surfaces"])]
     lines = [*SHARED_FIRST]
@@ -57,39 +56,15 @@ def methods(tables: Mapping[str, pd.DataFrame], facts: Facts) -> list[str]:
         if any(q == quantity and kind in ("", k) for q, k in families):
             lines.append(text)
             if quantity == "albedo":
-                lines.append(likeness(tables["passes"], facts))
+                lines.append(_likeness(tables["geometry"]))
     return [*lines, *(COMPARED if len(tables["changes"]) else ())]
 
 
-def likeness(passes: pd.DataFrame, facts: Facts) -> str:
-    """Say how the albedo passes stand to ASTM E1918, only as far as the record goes.
-
-    References
-    ----------
-    ASTM E1918: sun within 45 degrees of the normal (its scope); clear sky, head at 50 cm, surface
-    at least 4 m across (from memory).
-    """
-    known = facts.get("albedo_geometry") or {}
-    sky, size = facts.get("sky"), known.get("size_min_m")
-    low, high = known.get("height_min_m"), known.get("height_max_m")
-    zenith = passes.loc[passes["quantity"] == "albedo", "zenith_deg"].dropna()
-    missing = [name for name, value in (
-        ("the sky", sky), ("the height of the head", low), ("the size of every patch", size),
-        ("the sun’s height", len(zenith) or None)) if value is None]
-    if sky is None or low is None or high is None or size is None or missing:
-        return (f"ASTM E1918: {w.listing(missing)} {'is' if len(missing) == 1 else 'are'} not on "
-                "record, so nothing is said of how the albedo passes stand to that standard.")
-    deviations = [text for text, met in (
-        (f"sun up to {zenith.max():.0f}° from the zenith instead of less than 45°",
-         zenith.max() < 45),
-        (f"sky noted as {sky} instead of clear", sky == "clear"),
-        (f"head at {_span(low, high)} cm instead of 50 cm", abs(low - 0.5) + abs(high - 0.5) < 0.1),
-        (f"patches from {w.figures(size, 2)} m across instead of at least 4 m", size >= 4),
-        ("agreement of three readings within 0.01 not examined", False)) if not met]
-    return (f"ASTM E1918-like, with these deviations: {'; '.join(deviations)}. The conditions on "
-            "height, size and readings are quoted from memory; no conformity is claimed.")
-
-
-def _span(low: float, high: float) -> str:
-    one, other = f"{100 * low:.0f}", f"{100 * high:.0f}"
-    return one if one == other else f"{one} to {other}"
+def _likeness(geometry: pd.DataFrame) -> str:
+    """Say how the albedo passes stand to ASTM E1918, only as far as the record goes."""
+    notes = geometry.loc[geometry["role"] == "used", "note"]
+    told = [f"{note} ({w.plural(int(n), 'pass', 'passes')})"
+            for note, n in notes.value_counts(sort=False).items()] or [
+        "the patches' sizes are not on record, so nothing is said of how the passes stand to it"]
+    return (f"ASTM E1918: {'; '.join(told)}. Its conditions on height, size and readings are "
+            "quoted from memory; no conformity is claimed.")

@@ -158,7 +158,7 @@ def _refuse_unfit(output: NotebookNode, place: int) -> None:
 
 def _title_block(tables: Mapping[str, pd.DataFrame],
                  facts: Mapping[str, Any]) -> list[tuple[str, list[str]]]:
-    site, labels = facts["site"], facts.get("surfaces")
+    site, labels = facts["site"], facts.get("labels")
     where = ", ".join([site["name"], _degrees(site["latitude"], "N", "S"),
                        _degrees(site["longitude"], "E", "W"),
                        f"{w.number(site['elevation_m'], 0)} m above sea level"])
@@ -173,7 +173,8 @@ def _title_block(tables: Mapping[str, pd.DataFrame],
     if facts.get("remarks"):
         rows.append(("Notes", [*facts["remarks"]]))
     if facts.get("earlier"):
-        rows.append(("Compared with", [*facts["earlier"]]))
+        rows.append(("Compared with", [w.label(name, facts.get("labels"))
+                                       for name in facts["earlier"]]))
         rows.append(("Control", [w.label(facts.get("control") or "", labels) or "None named."]))
     zone = facts.get("time_zone") or site["time_zone"]
     rows.append(("Times", [zone if zone == "UTC" else f"{zone} unless UTC is stated."]))
@@ -182,21 +183,23 @@ def _title_block(tables: Mapping[str, pd.DataFrame],
 
 def _summary(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> list[dict[str, Any]]:
     """Return the sections of the summary: identifier, heading, markup; the first has no heading."""
-    labels, surfaces = facts.get("surfaces"), tables["surfaces"]
+    labels, surfaces = facts.get("labels"), tables["surfaces"]
     beside = [*sentences.two_kinds(surfaces, labels), *sentences.value_only(surfaces, labels)]
     sections = [
-        ("", "", [bullets(sentences.measured(tables, facts)), t.surface_overview(surfaces, labels),
-                  *(paragraph(line) for line in beside)]),
+        ("", "", [bullets(sentences.abstract(tables, facts)),
+                  t.surface_overview(surfaces, labels), *(paragraph(line) for line in beside)]),
         ("differs", "What differs", [bullets(
             sentences.differs(tables["differences"], facts),
             empty="No two surfaces could be compared.")]),
-        ("changed", "What changed", [_changes(tables["changes"], facts)]),
+        ("changed", "What changed", [_changes(tables, facts)]),
+        *([("derived", "What was asked for besides",
+            [t.derived_table(tables["derived"], labels)])] if len(tables["derived"]) else []),
         ("not-evaluated", "What could not be evaluated, and why", [bullets(
             sentences.not_evaluated(tables, labels),
             empty="Nothing was surveyed." if surfaces.empty else
             "Everything on the field sheet was evaluated.")]),
         ("narrowing", "What would narrow the uncertainty most", [bullets(
-            sentences.narrowing(tables["budget"], labels),
+            sentences.narrowing(tables, facts),
             empty="No uncertainty budget could be drawn up.")]),
         ("cautions", "Cautions", [bullets(standing.cautions(surfaces, labels))]),
         ("flags", "What was not corrected or not checked", [bullets(
@@ -207,10 +210,12 @@ def _summary(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> li
     return [{"id": anchor, "heading": heading, "body": body} for anchor, heading, body in sections]
 
 
-def _changes(changes: pd.DataFrame, facts: Mapping[str, Any]) -> Html:
+def _changes(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> Html:
+    changes = tables["changes"]
     if not facts.get("earlier") and changes.empty:
         return paragraph("No earlier campaign was named, so no change was looked for.", "empty")
-    return bullets(sentences.changed(changes, facts), empty=(
+    lines = [*sentences.changed(changes, facts), *sentences.trending(tables["trends"], facts)]
+    return bullets(lines, empty=(
         "The earlier campaigns share no surface and quantity with this one." if changes.empty else
         "No change could be judged; the reasons stand in the next section."))
 
@@ -225,7 +230,7 @@ def _appendix(tables: Mapping[str, pd.DataFrame],
         {"id": "reading", "heading": "How to read the numbers",
          "body": [bullets(standing.reading(facts))]},
         {"id": "methods", "heading": "Methods and their sources",
-         "body": [bullets(methods(tables, facts))]},
+         "body": [bullets(methods(tables))]},
         {"id": "instruments", "heading": "Instruments and calibrations",
          "body": [t.instrument_table(facts.get("instruments", []))]},
         {"id": "settings", "heading": "Settings",

@@ -12,10 +12,12 @@ import seaborn as sns
 from nbformat import NotebookNode
 
 from . import wording as w
+from .figures_passes import heights_drawn
 from .figures_records import _clock_axis
 from .markup import Cell, Column, Html, bullets, grouped_table, table
 from .page import render
-from .style import HAIRLINE, INK, MARKERS, MUTED, PALETTE, Drawing, panels, styled
+from .style import INK, PALETTE, Drawing, panels, styled
+from .typeset import typeset
 
 Labels = Mapping[str, str] | None
 
@@ -58,42 +60,14 @@ def sun_plot(course: pd.DataFrame, windows: pd.DataFrame, time_zone: str) -> Dra
                    "Height of the sun over the day and the limits of the methods.")
 
 
-@styled
 def height_plot(curves: pd.DataFrame) -> Drawing:
-    """Draw the head's own shade and the foreign ground in its view over its height.
+    """Draw own shade and foreign ground over the height, a panel a size of patch.
 
-    `curves` holds `patch`, `across_m`, `height_m` [m], `shade` and `foreign` (relative errors [1]).
+    `curves` holds `patch`, `across_m` and what `figures_passes.heights_drawn` asks for.
     """
-    if curves.empty:
-        return Drawing(None, "No albedo is planned on a patch of known size, so there is no best "
-                             "height to draw.")
-    names = list(dict.fromkeys(curves["patch"]))[:4]
-    figure, axes = panels(len(names), [1.7] * len(names), sharex=True)
-    told = []
-    for axis, name in zip(axes, names, strict=True):
-        block = curves[curves["patch"] == name]
-        both = block["shade"] + block["foreign"]
-        best = block.loc[both.idxmin(), "height_m"]
-        for values, label, colour, line, width in (
-                (both, "both", HAIRLINE, "-", 5.0),
-                (block["shade"], "own shade", PALETTE[0], "--", 1.5),
-                (block["foreign"], "foreign ground", PALETTE[1], ":", 1.8)):
-            axis.plot(100 * block["height_m"], 100 * values, color=colour, linestyle=line,
-                      linewidth=width, label=label if axis is axes[0] else None)
-        axis.plot(100 * best, 100 * both.min(), marker=MARKERS[0], color=INK)
-        axis.set_xscale("log")
-        axis.set_ylim(0, min(60, 100 * both.max() * 1.05))
-        axis.xaxis.set_major_formatter(lambda value, _: f"{value:g}")
-        axis.set_title(f"Patch {name}, {w.figures(block['across_m'].iloc[0], 2)} m across")
-        axis.set_ylabel("%", color=MUTED)
-        axis.grid(axis="y")
-        sns.despine(ax=axis)
-        told.append(f"patch {name}: least error {w.percent(both.min())} at {100 * best:.0f} cm")
-    axes[-1].set_xlabel("Height of the head, cm")
-    figure.legend(loc="outside upper left", ncols=3, borderaxespad=0)
-    return Drawing(figure, f"Error of albedo against the height of the head: {'; '.join(told)}.",
-                   "What the head’s own shade and the ground beyond the patch take from albedo, in "
-                   "per cent of it; the mark stands at the best height.")
+    return heights_drawn([(f"Patch {name}, {w.figures(block['across_m'].iloc[0], 2)} m across",
+                           block) for name, block in curves.groupby("patch", sort=False)]
+                         if len(curves) else [])
 
 
 def window_table(windows: pd.DataFrame) -> Html:
@@ -107,16 +81,19 @@ def window_table(windows: pd.DataFrame) -> Html:
 
 
 def height_table(heights: pd.DataFrame, labels: Labels = None) -> Html:
-    """Return one row a patch and way of reading: height, footprint, lanes, speed."""
+    """Return one row a kind of patch and way of reading: height, footprint, lanes, speed."""
     groups: dict[str, list[list[str | Cell]]] = {}
-    for row in heights.to_dict("records"):
+    alike = [name for name in heights if name != "patch"]
+    told = heights.groupby(alike, sort=False, dropna=False)["patch"].agg(", ".join).reset_index() \
+        if len(heights) else heights
+    for row in told.to_dict("records"):
         known = np.isfinite(row["height_m"])
         values = [w.number(100 * row["height_m"], 0), w.number(100 * row["footprint_m"], 0),
                   w.number(100 * row["margin_m"], 0), w.number(row["lanes"], 0),
                   w.number(row["speed_m_s"], 2)] if known else [""] * 5
         groups.setdefault(str(row["reading"]).replace("ndvi", "NDVI"), []).append(
             [row["patch"], w.label(row["surface"], labels), *values, row["note"]])
-    heads = [Column("Patch", "short"), Column("Surface", "short"),
+    heads = [Column("Patch"), Column("Surface", "short"),
              Column(f"Height,{w.NO_BREAK}cm", "number"),
              Column(f"Footprint,{w.NO_BREAK}cm", "number"),
              Column(f"Margin,{w.NO_BREAK}cm", "number"), Column("Lanes", "number"),
@@ -136,7 +113,7 @@ def needed_table(passes: pd.DataFrame, labels: Labels = None) -> Html:
         groups.append((w.quantity_text(quantity, kind) + (f", {unit}" if unit else ""), [
             [w.label(row["surface"], labels), w.figures(row["between"], 2),
              w.figures(row["within"], 2), w.figures(row["wanted"], 2), w.count(row["passes"]),
-             row["source"]] for row in block.to_dict("records")]))
+             w.label(row["source"], labels)] for row in block.to_dict("records")]))
     heads = [Column("Surface", "short"), Column("Between passes", "number"),
              Column("Within a pass", "number"), Column("Wanted U", "number"),
              Column("Passes", "number"), Column("Spread from", "short")]
@@ -173,9 +150,10 @@ def sheet_table(sheet: pd.DataFrame) -> Html:
                  "clock at the start and the end.", heads, rows, empty="There is no pass to note.")
 
 
-def plan_page(notebook: NotebookNode, facts: Mapping[str, Any]) -> str:
-    """Return the executed planning notebook as one HTML page."""
-    about = [("Date", [w.date_text(facts["date"])]), ("Site", [facts["site"]["name"]])]
+def plan_page(notebook: NotebookNode, facts: Mapping[str, Any], visits: str) -> str:
+    """Return the executed planning notebook as one HTML page, what the visits take first."""
+    about = [("Date", [w.date_text(facts["date"])]), ("Site", [facts["site"]["name"]]),
+             ("In short", [typeset(visits)])]
     return render("plan.html.j2", facts, [notebook], title_block=about, kind="Plan of a survey day")
 
 

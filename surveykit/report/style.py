@@ -14,22 +14,41 @@ from collections.abc import Iterable
 from typing import Any, NamedTuple
 
 import matplotlib as mpl
+import numpy as np
 import seaborn as sns
 from IPython.display import display
 from matplotlib.axes import Axes
+from matplotlib.colors import ListedColormap
 from matplotlib.figure import Figure
 from matplotlib.layout_engine import ConstrainedLayoutEngine
+from PIL import Image
 
 from .markup import paragraph
 from .typeset import typeset
 
-WIDTH_IN, DPI = 4.7, 180
+WIDTH_IN, DPI = 4.2, 190
 PAPER, INK, MUTED, HAIRLINE = "#ffffff", "#1f1e1b", "#5d5a53", "#d9d5ca"
 _COLOURS = sns.color_palette("colorblind").as_hex()
 PALETTE = tuple(_COLOURS[i] for i in (0, 3, 2, 4, 5, 1, 9, 7))  # strongest on paper first
 MARKERS = ("o", "s", "D", "^", "v", "P", "X", "*")
 HATCHES = ("", "//", "..", "\\\\", "xx", "--", "++", "o")
-RAMP = sns.light_palette("#62a9d8", as_cmap=True)  # light enough for ink at its dark end
+
+def even_ramp(colour: str) -> ListedColormap:
+    """Return one hue from near white to `colour`, its steps even in lightness.
+
+    References
+    ----------
+    CIE 015:2018 (from memory): lightness L* of the luminance of IEC 61966-2-1 (sRGB).
+    """
+    colours = np.array(sns.light_palette(colour, 1024))
+    linear = np.where(colours > 0.04045, ((colours + 0.055) / 1.055) ** 2.4, colours / 12.92)
+    lightness = 116 * np.cbrt(linear @ [0.2126, 0.7152, 0.0722]) - 16
+    even = np.linspace(lightness[-1], lightness[0], 256)[::-1]
+    return ListedColormap(colours[np.searchsorted(-lightness, -even).clip(0, 1023)])
+
+
+RAMP = even_ramp("#62a9d8")  # light enough for ink at its dark end
+MAP_RAMP = even_ramp("#123a5c")
 STYLE: Any = {
     **sns.axes_style("ticks"), "figure.facecolor": PAPER, "axes.facecolor": PAPER,
     "savefig.facecolor": PAPER, "font.family": "sans-serif", "font.sans-serif": ["DejaVu Sans"],
@@ -82,7 +101,11 @@ def png(figure: Figure) -> bytes:
         warnings.filterwarnings("ignore", message="Glyph .* missing from font")
         warnings.filterwarnings("ignore", message="Matplotlib currently does not support")
         figure.savefig(buffer, format="png", dpi=DPI, metadata={"Software": None})
-    return buffer.getvalue()
+    small = io.BytesIO()  # 256 colours are plenty for a drawing, at a third of the bytes
+    with Image.open(buffer) as drawn:
+        drawn.convert("RGB").quantize(256, dither=Image.Dither.NONE).save(small, "png",
+                                                                         optimize=True)
+    return small.getvalue()
 
 
 def show(*drawings: Drawing | Iterable[Drawing]) -> None:

@@ -14,30 +14,20 @@ from IPython.display import display
 
 from . import wording as w
 from .markup import Column, Html, bullets, table
-from .sentences import not_evaluated
-from .tables_records import (
-    check_table,
-    clock_table,
-    inputs_table,
-    instrument_table,
-    ledger_table,
-    settings_table,
-)
-from .tables_results import (
-    Labels,
-    budget_table,
-    change_table,
-    difference_table,
-    pass_table,
-    surface_overview,
-    surface_table,
-)
-
-__all__ = [
-    "budget_table", "change_table", "check_table", "clock_table", "difference_table",
-    "frame_table", "inputs_table", "instrument_table", "ledger_table", "not_evaluated_list",
-    "pass_table", "settings_table", "show", "surface_overview", "surface_table",
-]
+from .tables_records import check_table as check_table
+from .tables_records import clock_table as clock_table
+from .tables_records import inputs_table as inputs_table
+from .tables_records import instrument_table as instrument_table
+from .tables_records import ledger_table as ledger_table
+from .tables_records import settings_table as settings_table
+from .tables_results import change_table as change_table
+from .tables_results import derived_table as derived_table
+from .tables_results import difference_table as difference_table
+from .tables_results import geometry_table as geometry_table
+from .tables_results import pass_table as pass_table
+from .tables_results import surface_overview as surface_overview
+from .tables_results import surface_table as surface_table
+from .tables_results import trend_table as trend_table
 
 
 def show(item: Html | pd.DataFrame | Sequence[str], caption: str = "",
@@ -69,12 +59,6 @@ def frame_table(frame: pd.DataFrame, caption: str, columns: Sequence[str] | None
     rows = [[_any_text(value) for value in row]
             for row in shown.itertuples(index=False, name=None)]
     return table(caption, heads, rows, empty=f"{caption.rstrip('.')}: no rows.")
-
-
-def not_evaluated_list(surfaces: pd.DataFrame, labels: Labels = None) -> Html:
-    """Return the surfaces without a value and why, gathered by reason."""
-    return bullets(not_evaluated({"surfaces": surfaces}, labels),
-                   empty="Every surface on the field sheet was evaluated.")
 
 
 def _heading(name: str) -> str:

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import datetime as dt
 import math
+import re
 from collections.abc import Iterable, Mapping
 from typing import Any
 
@@ -17,7 +18,8 @@ from .typeset import typeset
 
 MINUS, NO_BREAK, NARROW_SPACE, DASH = "\u2212", "\u00a0", "\u202f", "\u2013"
 PLACES = {"temperature": 1, "albedo": 3, "ndvi": 3}
-UNITS = {"degC": "°C", "1": "", "W m-2": "W m⁻²", "m s-1": "m s⁻¹", "uV": "µV", "deg": "°",
+UNITS = {"degC": "°C", "1": "", "K a-1": "K a⁻¹", "a-1": "a⁻¹",
+         "W m-2": "W m⁻²", "m s-1": "m s⁻¹", "uV": "µV", "deg": "°",
          "J m-2 K-1 s-1/2": "J m⁻² K⁻¹ s⁻¹ᐟ²", "K-1": "K⁻¹", "kg m-3": "kg m⁻³"}
 QUANTITIES = {"temperature": "Temperature", "albedo": "Albedo", "ndvi": "NDVI"}
 ASYMMETRY = 0.20  # of the interval's two arms, above which both ends are printed (GUM supplement 1)
@@ -65,8 +67,28 @@ def families(frame: pd.DataFrame) -> list[tuple[tuple[str, str], pd.DataFrame]]:
     order = {name: place for place, name in enumerate(PLACES)}
     pairs = sorted({*zip(frame["quantity"], frame["kind"], strict=True)},
                    key=lambda pair: (order.get(pair[0], len(order)), *pair))
-    return [(pair, frame[(frame["quantity"] == pair[0]) & (frame["kind"] == pair[1])])
-            for pair in pairs]
+    return [(pair, of_family(frame, *pair)) for pair in pairs]
+
+
+def product_text(product: str) -> str:
+    """Return a derived product as it stands inside a sentence.
+
+    Examples
+    --------
+    >>> product_text("net_radiation"), product_text("sri")
+    ('net radiation', 'SRI')
+    """
+    return product.upper() if product in ("sri", "savi") else product.replace("_", " ")
+
+
+def of_family(frame: pd.DataFrame, quantity: str, kind: str) -> pd.DataFrame:
+    """Return the rows of one quantity and kind."""
+    return frame[(frame["quantity"] == quantity) & (frame["kind"] == kind)]
+
+
+def difference_unit(quantity: str) -> str:
+    """Return the unit of a difference or an uncertainty of a quantity."""
+    return "K" if quantity == "temperature" else "1"
 
 
 def places(quantity: str) -> int:
@@ -227,9 +249,22 @@ def plural(n: int, one: str, many: str = "") -> str:
     return f"{count(n)} {one if n == 1 else many or one + 's'}"
 
 
-def label(name: str, labels: Mapping[str, str] | None) -> str:
+def label(name: Any, labels: Mapping[str, str] | None) -> str:
     """Return the user's label of a surface, or its name where none was given."""
-    return (labels or {}).get(name) or name
+    return (labels or {}).get(name) or str(name)
+
+
+def with_labels(text: str, labels: Mapping[str, str]) -> str:
+    """Return a text in which each whole name is told by its label.
+
+    Examples
+    --------
+    >>> with_labels("brick-path since path-2, surfaces.path.x", {"brick-path": "Path", "path": "Y"})
+    'Path since path-2, surfaces.path.x'
+    """
+    names = "|".join(map(re.escape, labels))
+    return re.sub(rf"(?<![\w.-])({names})(?![\w-]|\.\w)", lambda m: labels[m[1]],
+                  text) if names else text
 
 
 def sentence_case(text: str) -> str:
@@ -242,7 +277,7 @@ def sentence_case(text: str) -> str:
     """
     text = text.strip()
     first = text.split(" ")[0]
-    if first.isalpha():
+    if first.isalpha() or first.startswith("pseudo-"):
         text = text[:1].upper() + text[1:]
     return text + ("" if text[-1:] in ".!?" else ".") if text else ""
 

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-from typing import NamedTuple
-
 import numpy as np
 from numpy.typing import ArrayLike
 from scipy.fft import irfft, next_fast_len, rfft
@@ -11,11 +9,22 @@ from scipy.fft import irfft, next_fast_len, rfft
 from surveykit.core import FloatArray
 
 
-class BlockLength(NamedTuple):
-    """Mean block length [records] for the stationary and length for the circular bootstrap."""
+def as_series(x: ArrayLike) -> FloatArray:
+    """Return records in order of time, shape (n,), or refuse what is no series.
 
-    stationary: float
-    circular: float
+    Raises
+    ------
+    ValueError
+        If x is empty, not one-dimensional, or holds a NaN or an infinity.
+    """
+    values = np.asarray(x, dtype=np.float64)
+    if values.ndim != 1 or values.size == 0:
+        raise ValueError(f"a series needs shape (n,) with n >= 1, got {values.shape}")
+    if not np.isfinite(values).all():
+        raise ValueError(f"a series may not hold a NaN or an infinity, got "
+                         f"{np.count_nonzero(~np.isfinite(values))} of {values.size}: "
+                         "leave such records out first")
+    return values
 
 
 def autocovariance(x: ArrayLike) -> FloatArray:
@@ -26,17 +35,16 @@ def autocovariance(x: ArrayLike) -> FloatArray:
     ValueError
         If x is not of shape (n,) with n >= 2, or holds a NaN or an infinity.
     """
-    values = np.asarray(x, dtype=np.float64)
-    if values.ndim != 1 or values.size < 2 or not np.isfinite(values).all():
-        raise ValueError("a series needs shape (n,) with n >= 2 and no NaN or infinity, got "
-                         f"shape {values.shape}")
+    values = as_series(x)
+    if values.size < 2:
+        raise ValueError("the scatter of a series needs n >= 2, got one record")
     length = next_fast_len(2 * values.size - 1, real=True)
     spectrum = rfft(values - values.mean(), length)
     return np.asarray(irfft(np.abs(spectrum) ** 2, length)[: values.size] / values.size)
 
 
-def block_length(covariance: FloatArray) -> BlockLength:
-    """Return the automatic block lengths of a series from its autocovariance.
+def block_length(covariance: FloatArray) -> float:
+    """Return the automatic mean block length of a series from its autocovariance.
 
     Parameters
     ----------
@@ -45,8 +53,8 @@ def block_length(covariance: FloatArray) -> BlockLength:
 
     Returns
     -------
-    BlockLength
-        Both at least 1 and at most ceil(min(3 sqrt n, n / 3)); 1 where the records are all equal.
+    float
+        Records, at least 1 and at most ceil(min(3 sqrt n, n / 3)); 1 where they are all equal.
 
     References
     ----------
@@ -56,7 +64,7 @@ def block_length(covariance: FloatArray) -> BlockLength:
     n = covariance.size
     most = float(np.ceil(min(3 * np.sqrt(n), n / 3)))
     if covariance[0] <= 0:
-        return BlockLength(1.0, 1.0)
+        return 1.0
     run = max(5, int(np.log10(n)))
     reach = min(int(np.ceil(np.sqrt(n))) + run, n - 1)
     small = np.abs(covariance[1: reach + 1] / covariance[0]) < 2 * np.sqrt(np.log10(n) / n)
@@ -71,10 +79,8 @@ def block_length(covariance: FloatArray) -> BlockLength:
     spread = covariance[0] + 2 * float(some.sum())
     lean = 2 * float(lags @ some)
     if spread <= 0:
-        return BlockLength(1.0, 1.0)
-    lengths = [float((2 * lean**2 / (factor * spread**2)) ** (1 / 3) * n ** (1 / 3))
-               for factor in (2.0, 4.0 / 3.0)]
-    return BlockLength(*(float(np.clip(one, 1.0, max(most, 1.0))) for one in lengths))
+        return 1.0
+    return float(np.clip(np.cbrt((lean / spread) ** 2 * n), 1.0, max(most, 1.0)))
 
 
 def stationary_u(x: ArrayLike, mean_block: float | None = None) -> float:
@@ -109,7 +115,7 @@ def stationary_u(x: ArrayLike, mean_block: float | None = None) -> float:
     0.559
     """
     covariance = autocovariance(x)
-    block = block_length(covariance).stationary if mean_block is None else mean_block
+    block = block_length(covariance) if mean_block is None else mean_block
     if not block >= 1:
         raise ValueError(f"mean_block must be 1 or more records, got {mean_block!r}")
     n = covariance.size

@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from surveykit.core import Estimate, FloatArray
-from surveykit.statistics.bootstrap import autocovariance, stationary_u
+from surveykit.statistics.bootstrap import as_series, autocovariance, stationary_u
 
 
 def autocorrelation(x: ArrayLike) -> FloatArray:
@@ -37,7 +37,7 @@ def autocorrelation(x: ArrayLike) -> FloatArray:
     >>> autocorrelation([1.0, 2.0, 3.0, 4.0]).round(3)
     array([ 1.  ,  0.25, -0.3 , -0.45])
     """
-    values = _series(x)
+    values = as_series(x)
     if np.ptp(values) == 0:
         return np.full(values.size, np.nan)
     # Scaled first: the squares of very small or very large records stay within range.
@@ -105,7 +105,7 @@ def effective_sample_size(x: ArrayLike) -> float:
     >>> effective_sample_size([5.0, 5.0, 5.0])
     1.0
     """
-    values = _series(x)
+    values = as_series(x)
     if np.ptp(values) == 0:
         return 1.0
     time = integrated_time(autocorrelation(values))
@@ -146,21 +146,10 @@ def mean_of_series(x: ArrayLike, unit: str, method: str) -> Estimate:
     >>> mean_of_series([1.0, 2.0, 1.0, 2.0], "K", "alternating").n_eff
     4.0
     """
-    values = _series(x)
+    values = as_series(x)
     if values.size < 2:
         raise ValueError("the spread of a series needs at least two records, got one")
     n_eff = float(effective_sample_size(values))
     u = max(float(values.std(ddof=1) / np.sqrt(n_eff)), stationary_u(values))
     return Estimate(value=float(values.mean()), u=u, unit=unit, n=values.size, n_eff=n_eff,
                     method=method)
-
-
-def _series(x: ArrayLike) -> FloatArray:
-    values = np.asarray(x, dtype=np.float64)
-    if values.ndim != 1 or values.size == 0:
-        raise ValueError(f"a series needs shape (n,) with n >= 1, got {values.shape}")
-    if not np.isfinite(values).all():
-        raise ValueError(f"a series may not hold a NaN or an infinity, got "
-                         f"{np.count_nonzero(~np.isfinite(values))} of {values.size}: "
-                         "leave such records out first")
-    return values

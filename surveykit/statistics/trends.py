@@ -6,8 +6,8 @@ from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy.special import comb, ndtr, stdtr, stdtrit
-from scipy.stats import theilslopes
+from scipy.special import ndtr, stdtrit
+from scipy.stats import kendalltau, linregress, theilslopes
 
 from surveykit.core import FloatArray
 
@@ -84,15 +84,10 @@ def ordinary(time: ArrayLike, values: ArrayLike, coverage: float) -> Slope:
     >>> print(f"{made.value:.2f} {made.u:.4f} {made.p:.3f}")
     1.15 0.0866 0.048
     """
-    t, y = np.asarray(time, dtype=np.float64), np.asarray(values, dtype=np.float64)
-    weights = slope_weights(t)
-    slope = float(weights @ y)
-    rest = y - y.mean() - slope * (t - t.mean())
-    dof = t.size - 2
-    u = float(np.sqrt(rest @ rest / dof * (weights @ weights)))
-    half = float(stdtrit(dof, (1 + coverage) / 2)) * u
-    p = float(2 * stdtr(dof, -abs(slope) / u)) if u > 0 else float(slope == 0)
-    return Slope(slope, u, slope - half, slope + half, p)
+    found = linregress(time, values)
+    half = float(stdtrit(np.size(time) - 2, (1 + coverage) / 2) * found.stderr)
+    return Slope(float(found.slope), float(found.stderr), float(found.slope) - half,
+                 float(found.slope) + half, float(found.pvalue))
 
 
 def theil_sen(time: ArrayLike, values: ArrayLike, coverage: float) -> Slope:
@@ -133,7 +128,7 @@ def mann_kendall(time: ArrayLike, values: ArrayLike) -> tuple[int, float]:
     References
     ----------
     Gilbert, Statistical Methods for Environmental Pollution Monitoring (1987), section 16.4
-    (from memory); Kendall's exact distribution of the number of inversions.
+    (from memory); Kendall's exact distribution by scipy.
 
     Examples
     --------
@@ -147,7 +142,7 @@ def mann_kendall(time: ArrayLike, values: ArrayLike) -> tuple[int, float]:
     n = t.size
     tied = [np.unique(one, return_counts=True)[1] for one in (t, y)]
     if n <= EXACT_UP_TO and all((count == 1).all() for count in tied):
-        return s, min(1.0, 2 * _tail(n, abs(s)))
+        return s, float(kendalltau(t, y, method="exact").pvalue)
     whole = n * (n - 1) * (2 * n + 5) / 18
     less = sum(float((c * (c - 1) * (2 * c + 5)).sum()) for c in tied) / 18
     pairs = [float((c * (c - 1)).sum()) for c in tied]
@@ -157,12 +152,3 @@ def mann_kendall(time: ArrayLike, values: ArrayLike) -> tuple[int, float]:
     if variance <= 0:
         return s, 1.0
     return s, min(1.0, 2 * float(ndtr(-max(abs(s) - 1, 0) / np.sqrt(variance))))
-
-
-def _tail(n: int, s: int) -> float:
-    """Return the probability of a count of S or more among all orders of n values."""
-    counts = np.ones(1)
-    for k in range(2, n + 1):  # inversions of k values: those of k - 1, and up to k - 1 more
-        counts = np.convolve(counts, np.ones(k))
-    inversions = (comb(n, 2) - s) / 2
-    return float(counts[: int(np.floor(inversions)) + 1].sum() / counts.sum())

@@ -56,13 +56,21 @@ def test_intervals_hold_the_truth(made, quantity, question):
         assert cells["share"].min() > 0.93 - slack(SEEDS) / 3 * (not FULL)
 
 
-@pytest.mark.parametrize("question", ["change", "difference"])
+@pytest.mark.skipif(not (CI or FULL), reason="SURVEYKIT_COVERAGE=ci: too few seeds to fail")
+@pytest.mark.parametrize("question", OURS)
 def test_eight_passes_that_scatter_more_between_than_within_are_not_wasted(made, question):
-    """Not above 97 %, where the scatter between passes leads; 2 passes hold nearly always."""
-    for quantity in ("albedo", "ndvi"):
-        eight = share(made, question, passes=8, sky="mixed", quantity=quantity)
-        assert eight < 0.97 + slack(SEEDS, 0.97)
-    assert share(made, question, passes=2) > 0.99
+    """Not above 97 %; all cells scatter more between passes than within."""
+    cells = made[(made["question"] == question) & (made["passes"] == 8)]
+    assert len(cells) == 6
+    if FULL:
+        assert cells["share"].max() <= 0.97
+    assert cells["share"].mean() < 0.97 + slack(6 * SEEDS, 0.97) * (not FULL)
+
+
+def test_two_passes_hold_more_often_than_they_say(made):
+    """By design of the modified rule; a difference of such values less so."""
+    assert share(made, "value", passes=2) > 0.99
+    assert share(made, "difference", passes=2) > 0.95
 
 
 def test_unchanged_surfaces_are_seldom_called_changed(made):
@@ -74,11 +82,14 @@ def test_unchanged_surfaces_are_seldom_called_changed(made):
 
 
 def test_other_weather_over_unchanged_ground_is_no_change():
-    """200 surveys, another weather on the second date: "changed" in at most 5 %."""
-    called = [unchanged(seed, 4, "clear") for seed in range(200)]
+    """200 surveys (a third of them in the plain command), another weather on the second date:
+    "changed" in at most 5 %.
+    """
+    seeds = 200 if CI or FULL else 66
+    called = [unchanged(seed, 4, "clear") for seed in range(seeds)]
     for quantity in ("temperature", "albedo", "ndvi"):
         verdicts = np.array([one[quantity] for one in called])
-        assert verdicts.shape == (200, 3)
+        assert verdicts.shape == (seeds, 3)
         assert verdicts.mean() <= 0.05
         assert verdicts.any(axis=1).mean() <= 0.05  # nor anywhere in a survey
 

@@ -7,6 +7,7 @@ import pytest
 from one_estimate import DAY_SCOPE, HEADS, inputs
 from small_survey import NDVI, STAND_OFF, lines, row, small
 
+from surveykit.core import InputError
 from surveykit.physics.bands import band
 from surveykit.physics.surroundings import (
     hemispheric_emissivity,
@@ -179,6 +180,11 @@ def test_emissivity_logarithmic_in_ndvi(tmp_path, nir, value):
     else:
         assert inputs(one)["emissivity"].value == pytest.approx(value, abs=1e-4)
         assert any("never for synthetic turf" in f for f in one.flags)
+
+
+def test_a_logarithmic_form_takes_no_mixture(tmp_path):
+    with pytest.raises(InputError, match=r"emissivity\.soil: does not go with from: ndvi"):
+        made(tmp_path, log(47), **from_way("ndvi", u=0.01, soil=0.95, form="logarithmic"))
 
 
 def test_emissivity_from_ndvi_needs_an_ndvi(tmp_path):

@@ -52,6 +52,17 @@ def test_one_pass_has_a_borrowed_interval():
     assert made({"court": [300.0, 301.0], "lawn": [310.0]})["lawn"].result is None
 
 
+def test_several_patches_borrow_within_them_and_keep_their_own_scatter_between():
+    """Each patch mean: the common spread over the root of 4 (hand); two patches, 1 dof."""
+    some = [one_pass(kelvin(320.0 + 3 * p + v), patch=f"C{p}", n=n, u_within=1e-4)
+            for p in range(2) for n, v in enumerate((0.0, 0.5, 1.0, 1.5))]
+    (group,) = groups("yard", some, DRAWS, coverage=0.95, between_passes="common")
+    assert group.dof == 1
+    assert group.notes[0].startswith("passes within its patches borrow the common spread of passes")
+    s = np.std([0.0, 0.5, 1.0, 1.5], ddof=1)
+    assert group.units_u == pytest.approx([s / 2, s / 2], rel=1e-3)
+
+
 def test_a_wider_scatter_than_the_common_one_is_warned_of_and_not_switched():
     """F of 100 with 3 and 3 dof: p .0017 (F table: 9.28 at 5 %)."""
     calm, wild = np.array([0.0, 0.1, 0.2, 0.3]), np.array([0.0, 1.0, 2.0, 3.0])

@@ -116,7 +116,7 @@ def test_a_caution_looks_at_the_hottest_records_not_at_the_mean(tmp_path):
     assert one.upper - one.value == pytest.approx(interval.upper - group.value)
     assert one.note == (
         f"caution: upper bound {one.upper:.1f} degC (95th percentile of the records, plus U) "
-        "exceeds the 55 degC entered (rule 7, invented); consult local codes and the safety "
+        "exceeds the 55 degC entered (rule 7, invented), consult local codes and the safety "
         "officer")
 
 
@@ -136,8 +136,10 @@ def test_one_pass_has_no_upper_bound_and_is_cautioned_by_itself(tmp_path):
     assert group.result is None
     assert np.isnan(one.upper)
     assert one.status == "value only"
-    assert one.note.startswith("caution: the hottest records reach "
-                               f"{one.value:.1f} degC; one pass: U not known")
+    assert one.note == (
+        f"caution: 95th percentile of the records {one.value:.1f} degC (one pass, so U is not "
+        "known) exceeds the 40 degC entered (rule 7, invented), consult local codes and the "
+        "safety officer")
     cold, *_ = caution_of(tmp_path / "b", 70.0, passes=1)
     assert not cold.note.startswith("caution")
 

@@ -92,18 +92,20 @@ def test_the_page_lists_what_was_not_met_not_recorded_and_met(tmp_path):
     assert set(table[table.role != "used"].note) == {""}
 
 
-def sri_note(root, **more):
+def sri(root, **more):
     day, found = survey(root, derived=["sri"], **more)
     pooled = groups(day.name, found, DRAWS, coverage=0.95)
-    return derived(day, pooled, DRAWS, 0.95).note.iloc[0]
+    return derived(day, pooled, DRAWS, 0.95).iloc[0]
 
 
 def test_an_index_names_its_conditions(tmp_path):
     """5 m square from 50 cm: .968 of the view; 4 m: .951; 3.4 m: .935, below the method's .94."""
-    assert sri_note(tmp_path / "a") == "conditions of E1980 recorded and met"
-    small_one = sri_note(tmp_path / "b", cells={"width_m": "3.4", "length_m": "3.4"})
-    assert small_one.startswith("SRI-like, not by E1980, deviations: patch 3.4 m across, not 4, "
-                                "patch fills 0.93 of the view, not 0.94")
+    met = sri(tmp_path / "a")
+    assert (met.note, met.status) == ("conditions of E1980 recorded and met", "ok")
+    small_one = sri(tmp_path / "b", cells={"width_m": "3.4", "length_m": "3.4"})
+    assert small_one.status == "qualified"
+    assert small_one.note.startswith("SRI-like, not by E1980, deviations: patch 3.4 m across, not "
+                                     "4, patch fills 0.93 of the view, not 0.94")
 
 
 def test_the_worst_of_several_passes_counts(tmp_path):

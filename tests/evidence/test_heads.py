@@ -10,11 +10,13 @@ from pass_values import albedo as albedo_inputs
 from pass_values import bright, channel_of, evaluate, parameters, pooled, sensitivities
 from small_survey import DAY, NDVI, lines, readings
 
-from surveykit.core import Input
+from surveykit.core import Input, InputError
 from surveykit.evidence.conditions import Day
 from surveykit.evidence.handing import from_frames, to_frames
 from surveykit.evidence.heads import directional_inputs
 from surveykit.evidence.models import window_of
+from surveykit.intake.clocks import Clock, Piece
+from surveykit.statistics.alignment import Line
 from surveykit.statistics.draws import Draws
 
 # ---- a tabulated response
@@ -59,6 +61,17 @@ def test_a_head_without_band_or_response_has_no_temperature(tmp_path):
         "band_um of thermal, target is missing")
 
 
+@pytest.mark.parametrize(("kit", "told"), [
+    ({"band_response": RESPONSE}, "got 4 points beside band_um"),  # the kit's own band stays
+    ({"band_um": None, "band_response": RESPONSE[::-1]}, "wavelengths rising"),
+    ({"band_um": None, "band_response": [[8.0, 1.0]]}, "got 1 points"),
+    ({"band_um": None, "band_response": [[8.0, 0.0], [14.0, 0.0]]}, "one above")])
+def test_a_response_that_is_none_is_refused_with_what_to_write(tmp_path, kit, told):
+    with pytest.raises(InputError, match=told) as refused:
+        stand_off(tmp_path, kit=changed("thermal", **kit))
+    assert "thermal.band_response" in refused.value.faults[0]
+
+
 # ---- clocks of two loggers against each other
 
 @pytest.mark.parametrize(("skew_s", "percent"), [(0.2, 0.6), (1.0, 2.9), (5.0, 14.0)])
@@ -95,6 +108,26 @@ def test_a_skew_moves_an_index_by_what_the_bands_do_unlike(tmp_path):
     assert abs(sensitivities("ndvi", one.inputs)["clock_skew_s"]) == pytest.approx(want, rel=0.05)
     alike = sensitivities("ndvi", ramped(tmp_path / "b", red=2e-3, nir=2e-3).inputs)
     assert abs(alike["clock_skew_s"]) < 0.1 * want
+
+
+def clock(name, u_s, **more):
+    """A clock known to u_s; with `reference` aligned with that other clock, so well."""
+    piece = Piece(0, 10**15, 0, Line(0.0, 0.0, 0.0, u_s**2, 0.0), (0, 10**15))
+    return Clock(name, "", 0.0, u_s, 0.0, "ok", "", pieces=(piece,), **more)
+
+
+def test_two_clocks_against_each_other():
+    """Declared: both u. Aligned one with the other: that fit alone. By covers: both u against the
+    watch, whose own u drops out; one so and one against UTC: the watch counts as well (2 s).
+    """
+    sky = clock("sky", 0.3)
+    assert sky.u_between(clock("ground", 0.4), 1e9, 2.0) == pytest.approx(0.5)
+    aligned = clock("ground", 0.05, reference=sky)
+    assert aligned.u_between(sky, 1e9, 2.0) == sky.u_between(aligned, 1e9, 2.0) == (
+        pytest.approx(0.05))
+    covered = clock("ground", 0.4, to_watch=True)
+    assert covered.u_between(clock("sky", 0.3, to_watch=True), 1e9, 2.0) == pytest.approx(0.5)
+    assert covered.u_between(sky, 1e9, 2.0) == pytest.approx(np.hypot(0.5, 2.0))
 
 
 def test_one_logger_has_no_skew(tmp_path):

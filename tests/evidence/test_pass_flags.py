@@ -37,6 +37,7 @@ def placements(rate):
     for start in (12, 60, 108):
         target[start:start + 40] -= rate * np.sqrt(np.arange(40))
         target[start - 8:start] -= 15 * np.sin(np.pi * (np.arange(8) + 0.5) / 8)
+    target[148:] -= 15.0  # lifted for good
     return {"thermal": lines("thermal", target=target)}
 
 

@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 import pytest
-from pass_values import error, kelvin, one_pass
+from pass_values import albedo, error, kelvin, one_pass
 from scipy import stats
 
-from surveykit.evidence.surfaces import groups, settled
+from surveykit.evidence.surfaces import _assert_floor, groups, settled
 from surveykit.statistics.draws import Draws, summarise
 from surveykit.statistics.simultaneous import end_error, tolerance
 
@@ -38,6 +38,17 @@ def test_draws_grow_until_the_ends_hold():
     assert 2 * end_error(loose.result.judged, 0.95) <= tolerance(s.u, 1)
     before = as_they_are[0].result
     assert 2 * end_error(before.judged, 0.95) > tolerance(s.u, 1)
+
+
+def test_an_interval_below_its_calibration_is_a_bug():
+    # gain 3 % of .30: no half-width below 1.96 x .009, however well the passes agree
+    gain = error("up_gain_error", 0.03, "pair:up:gain")
+    (group,) = groups("yard", [one_pass(albedo(0.3, gain), quantity="albedo", n=n, u_within=1e-6)
+                               for n in range(9)], Draws(1, 20000), coverage=0.95)
+    s = summarise(group.result, 0.95)
+    assert (s.upper - s.lower) / 2 == pytest.approx(1.96 * 0.009, rel=0.01)
+    with pytest.raises(AssertionError, match="below its calibration"):
+        _assert_floor(group, s._replace(lower=s.value - 0.01, upper=s.value + 0.01), 0.95)
 
 
 def test_the_stated_error_of_an_end_is_what_other_seeds_show():

@@ -164,6 +164,7 @@ def placements(rate, n=160):
         since = np.arange(40)
         target[start:start + 40] -= rate * np.sqrt(since)
         target[start - 8:start] -= 15 * np.sin(np.pi * (np.arange(8) + 0.5) / 8)
+    target[148:] -= 15.0  # lifted for good
     return lines("thermal", target=target)
 
 

@@ -69,6 +69,7 @@ def cooled(root, settings):
     for start in (12, 60, 108):
         target[start:start + 40] -= 0.2 * np.sqrt(np.arange(40))
         target[start - 8:start] -= 15 * np.sin(np.pi * (np.arange(8) + 0.5) / 8)
+    target[148:] -= 15.0  # lifted for good
     shade = {"pair": lines("pair", sky=readings("sky", 160, 1) / 3, ground=readings(
         "ground", 160, 1) / 3)}
     return stand_off(root, LONG, logs=WEATHER | shade | {"thermal": lines("thermal",

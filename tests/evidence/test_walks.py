@@ -5,9 +5,10 @@ from __future__ import annotations
 import numpy as np
 import pytest
 from one_estimate import albedo, changed, inputs
+from pass_values import sensitivities
 from small_survey import ALBEDO, CERTAIN, lines, readings, row, small
 
-from surveykit.physics.footprint import rectangle_share
+from surveykit.physics.footprint import rectangle_share, upright_share
 from surveykit.physics.shortwave import levelling_error
 
 AT = np.arange(160) - 20  # seconds since the walk began
@@ -96,4 +97,21 @@ def test_a_head_too_slow_for_the_walk(tmp_path, tau, flagged):
                                                ("", False)])
 def test_where_the_operator_stood(tmp_path, side, flagged):
     one = albedo(tmp_path, ALBEDO | {"operator_side": side})
+    assert ("operator_error" in inputs(one)) == bool(side)
     assert ("the operator stood beside or towards the sun" in one.flags) == flagged
+
+
+def test_the_operator_is_in_the_budget(tmp_path):
+    """At .6 m from a head 12 cm up: 11 % of the sky, 15 % of it diffuse, and .5 % of the ground
+    in view (the plate's view factors), rectangular; at 1.5 m far less.
+    """
+    cells = ALBEDO | {"operator_side": "away", "height_cm": "12"}
+    near = albedo(tmp_path / "a", cells, settings=CERTAIN | {"albedo": {
+        "operator_distance_m": 0.6}})
+    sky, ground = upright_share(0.5, [1.63, 0.12], 0.6)
+    want = np.hypot(0.15 * sky, ground) / np.sqrt(3)
+    assert sky == pytest.approx(0.11, abs=0.005)
+    assert sensitivities("albedo", near.inputs)["operator_error"] == pytest.approx(
+        want * near.value, rel=0.05)
+    far = inputs(albedo(tmp_path / "b", cells))["operator_error"]
+    assert far.u < 0.4 * inputs(near)["operator_error"].u

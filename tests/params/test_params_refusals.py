@@ -7,9 +7,7 @@ The twin is what the sentence asks for, so that following the sentence mends the
 from __future__ import annotations
 
 import pytest
-
-from surveykit.core import InputError
-from surveykit.intake.params import load
+from refusing import loads, refused, refused_once
 
 YML = "params/mill-yard-2025-07-24.yml"
 SITE_ZONE = "  longitude: -7.75\n  elevation_m: 120\n  time_zone: Europe/Lisbon"
@@ -228,24 +226,10 @@ CAMPAIGN_CASES = {
 }
 
 
-def refused(path):
-    with pytest.raises(InputError) as caught:
-        load(path)
-    return caught.value.faults
-
-
-def loads(path):
-    return load(path).campaign.campaign == "mill-yard-2025-07-24"
-
-
 @pytest.mark.parametrize("case", CAMPAIGN_CASES)
 def test_campaign_is_refused_with_one_sentence_and_its_mended_twin_loads(project, case):
     old, bad, good, *pieces = CAMPAIGN_CASES[case]
-    faults = refused(project.write(old, bad))
-    assert len(faults) == 1, faults
-    assert faults[0].startswith("params/")
-    for piece in pieces:
-        assert piece in faults[0]
+    refused_once(project.write(old, bad), "params/", pieces)
     assert loads(project.write(old, good))
 
 

@@ -129,3 +129,23 @@ def test_band_refuses_what_is_no_temperature_or_radiance():
         with pytest.raises(ValueError, match="0 < low_um < high_um"):
             bands.Band(*edges)
     assert bands.band(8.0, 14.0) is WINDOW
+
+
+@pytest.mark.parametrize("response", [
+    ((8.0, 1.0),), ((8.0, 1.0), (13.0, 1.0)), ((8.0, 1.0), (8.0, 1.0), (14.0, 1.0)),
+    ((8.0, -0.1), (14.0, 1.0)), ((8.0, 0.0), (14.0, 0.0)), ((14.0, 1.0), (8.0, 1.0))])
+def test_a_response_must_ascend_from_edge_to_edge(response):
+    with pytest.raises(ValueError, match="a response needs ascending wavelengths"):
+        bands.Band(8.0, 14.0, response)
+
+
+@pytest.mark.parametrize("t_k", [230.0, 300.0, 360.0])
+def test_a_triangle_against_quadrature(t_k):
+    """scipy.integrate.quad of Planck's law times a triangle; inverted within a millikelvin."""
+    def weighted(um):
+        return float(np.interp(um, [7.5, 10.5, 14.5], [0, 1, 0]) * bands.planck_radiance(um, t_k))
+
+    triangle = bands.band(7.5, 14.5, ((7.5, 0.0), (10.5, 1.0), (14.5, 0.0)))
+    expected = quad(weighted, 7.5, 14.5, points=[10.5], epsabs=0)[0]
+    assert triangle.radiance(t_k) == pytest.approx(expected, rel=1e-6)
+    assert triangle.temperature_k(expected) == pytest.approx(t_k, abs=1e-3)

@@ -14,6 +14,7 @@ from surveykit.physics.emissivity import (
     foil_background,
 )
 from surveykit.physics.propagation import combined_u
+from surveykit.physics.thermal import standoff_temperature_k
 
 B = band(8.0, 14.0)
 ICE = 273.15
@@ -84,3 +85,8 @@ def test_a_foil_emits_too():
     seen = B.temperature_k(0.96 * sky + 0.04 * B.radiance(foil))
     assert B.radiance(seen) - sky == pytest.approx(1.7, abs=0.05)
     assert foil_background(B, seen, foil, 0.96) == pytest.approx(float(sky), rel=1e-7)
+    # 3.4 K of the background's temperature, -.09 K of a surface at 50 degC, emissivity .95
+    assert seen - (-20 + ICE) == pytest.approx(3.4, abs=0.05)
+    read = B.temperature_k(0.95 * B.radiance(50 + ICE) + 0.05 * sky)
+    wrong = standoff_temperature_k(B, read, 0.95, B.radiance(seen))
+    assert wrong - (50 + ICE) == pytest.approx(-0.09, abs=0.006)

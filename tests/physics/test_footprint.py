@@ -177,3 +177,26 @@ def test_best_height_table(patch, zenith, contrast, height_cm, percent):
     # closed form within 6 %: sqrt(r R) (k / c)^(1/4), k = .85 cos^4 z + .15 / 3
     k = 0.85 * np.cos(np.radians(zenith))**4 + 0.15 / 3
     assert best == pytest.approx(np.sqrt(0.03 * patch) * (k / contrast)**0.25, rel=0.06)
+
+
+@pytest.mark.parametrize(("level", "distance", "sky", "ground"), [
+    (0.9, 0.6, 0.08, 0.086), (0.9, 1.5, 0.013, 0.014), (0.12, 0.6, 0.11, None)])
+def test_an_operator_hides_sky_and_ground(level, distance, sky, ground):
+    """A plate of .5 m by 1.75 m (computed), to the digits printed."""
+    digit = 5e-4 if sky < 0.05 else 5e-3
+    up = footprint.upright_share(0.5, 1.75 - level, distance)
+    assert up == pytest.approx(sky, abs=digit)
+    if ground:
+        assert footprint.upright_share(0.5, level, distance) == pytest.approx(ground, abs=6e-4)
+
+
+def test_an_upright_plate_against_double_quadrature():
+    """scipy.integrate.dblquad of cos cos / (pi r^2) over the plate."""
+    away = 0.7
+
+    def seen(z, y):
+        r2 = away**2 + y**2 + z**2
+        return z * away / (np.pi * r2**2)
+
+    whole, _ = dblquad(seen, -0.3, 0.3, 0, 1.2)
+    assert footprint.upright_share(0.6, 1.2, away) == pytest.approx(whole, rel=1e-6)

@@ -1,22 +1,21 @@
-"""Pages built once for the report's tests: two small notebooks, executed, on invented tables."""
+"""Pages built once for the report's tests: two small notebooks on invented tables.
+
+Their cells are run here, without a kernel: what they display is kept as a kernel would keep it.
+"""
 
 from __future__ import annotations
 
-from pathlib import Path
+import contextlib
+import io
+from typing import Any
 
 import nbformat
 import pytest
 import sample
-from nbclient import NotebookClient
 
+from surveykit.report import figures, tables
 from surveykit.report.page import build_page
 
-HERE = Path(__file__).parent
-SETUP = """import sys; sys.path.insert(0, {here!r})
-import sample
-from surveykit.report import figures, tables
-t, facts = sample.tables(hostile={hostile}), sample.facts(hostile={hostile})
-labels, zone = facts["surfaces"], facts["time_zone"]"""
 FIRST = """tables.show(tables.clock_table(t["clocks"]))
 figures.show(figures.day_timeline(t["passes"], sample.sky(), sample.weather(), zone, labels))
 tables.show(tables.pass_table(t["passes"], labels, zone))
@@ -27,11 +26,14 @@ print("<b>3</b> loggers & their files")"""
 SECOND = """figures.show(figures.interval_plots(t["surfaces"], labels))
 tables.show(tables.surface_table(t["surfaces"], labels))
 figures.show(figures.budget_plot(t["budget"], labels))
-tables.show(tables.budget_table(t["budget"], labels))
+figures.show(figures.rank_plots(t["ranks"], labels))
 figures.show(figures.difference_matrices(t["differences"], labels))
 tables.show(tables.difference_table(t["differences"], labels))
 figures.show(figures.change_plots(t["changes"], facts["relevant_change"], labels))
 tables.show(tables.change_table(t["changes"], labels))
+tables.show(tables.trend_table(t["trends"], labels))
+figures.show(figures.height_plot(t["geometry"], labels), figures.histogram_plots(t["histograms"]))
+tables.show(tables.geometry_table(t["geometry"], labels))
 tables.show(t["corrections"], "Correction steps", ["pass", "step", "value"])"""
 
 
@@ -49,12 +51,31 @@ def notebook(title: str, *cells: str) -> nbformat.NotebookNode:
 
 
 def executed(hostile: bool) -> list[nbformat.NotebookNode]:
-    setup = SETUP.format(here=str(HERE), hostile=hostile)
-    books = [notebook("From files to passes", setup, FIRST),
-             notebook("Surfaces, differences & changes", setup, SECOND)]
+    facts = sample.facts(hostile=hostile)
+    names = {"t": sample.tables(hostile=hostile), "facts": facts, "labels": facts["labels"],
+             "zone": facts["time_zone"], "sample": sample, "figures": figures, "tables": tables}
+    books = [notebook("From files to passes", FIRST),
+             notebook("Surfaces, differences & changes", SECOND)]
     for book in books:
-        NotebookClient(book, kernel_name="python3", timeout=120).execute()
+        for cell in book.cells:
+            if cell.cell_type == "code":
+                cell.outputs = _run(cell.source, names)
     return books
+
+
+def _run(source: str, names: dict[str, Any]) -> list[nbformat.NotebookNode]:
+    outputs, new = [], nbformat.v4.new_output
+
+    def keep(item: Any, *, raw: bool = False, metadata: dict[str, Any] | None = None) -> None:
+        data = item if raw else {"text/html": item._repr_html_(), "text/plain": repr(item)}
+        outputs.append(new("display_data", data=data, metadata=metadata or {}))
+
+    printed = io.StringIO()
+    with pytest.MonkeyPatch.context() as patch, contextlib.redirect_stdout(printed):
+        patch.setattr("surveykit.report.style.display", keep)
+        patch.setattr("surveykit.report.tables.display", keep)
+        exec(source, dict(names))
+    return [*outputs, *([new("stream", text=printed.getvalue())] if printed.getvalue() else [])]
 
 
 @pytest.fixture(scope="session")

@@ -11,6 +11,7 @@ from typing import Any
 
 import numpy as np
 import pandas as pd
+import sample_more
 from sample_facts import CAMPAIGN, EARLIER, HOSTILE, LABELS, facts
 
 from surveykit.core import TABLES, table
@@ -66,11 +67,11 @@ def tables(*, hostile: bool = False) -> dict[str, pd.DataFrame]:
     """Return all tables of `core.TABLES`, filled."""
     surfaces = [_surface(*row) for row in VALUES]
     rows: dict[str, list[dict[str, Any]]] = {
-        "surfaces": surfaces, "passes": _passes(), "dwells": _dwells(), "budget": _budget(),
-        "ledger": _ledger(), "waterfall": _waterfall(), "checks": _checks(), "clocks": _clocks(),
-        "ranks": _ranks(), "trends": _trends(),
-        "differences": _differences(surfaces), "changes": _changes(), "corrections": _steps(),
-    }
+        "surfaces": surfaces, "passes": _passes(), "budget": _budget(), "ledger": _ledger(),
+        "checks": _checks(), "clocks": _clocks(), "differences": _differences(surfaces),
+        "changes": _changes(), "corrections": sample_more.steps()}
+    rows |= {name: getattr(sample_more, name)() for name in (
+        "dwells", "waterfall", "ranks", "trends", "geometry", "histograms", "derived")}
     if hostile:
         rows["surfaces"][3]["note"] = "=HYPERLINK(\"http://example.org\") <i>x</i>"
         rows["checks"][0]["message"] = "</td><script>alert(2)</script> & {{ config }}"
@@ -151,14 +152,6 @@ def _passes() -> list[dict[str, Any]]:
     return rows
 
 
-def _dwells() -> list[dict[str, Any]]:
-    first = pd.Timestamp("2025-07-24 10:05:10", tz="UTC")
-    return [{"campaign": CAMPAIGN, "surface": "worn-asphalt", "patch": "W1", "pass": "W1-contact-1",
-             "dwell": n, "start_utc": first + pd.Timedelta(seconds=9.5 * n),
-             "stop_utc": first + pd.Timedelta(seconds=9.5 * n + 5), "value": 58.1 + 0.2 * n,
-             "u": 0.3, "n_records": 50} for n in range(3)]
-
-
 def _budget() -> list[dict[str, Any]]:
     rows = []
     for surface, quantity, kind, _, expanded, *_ in VALUES:
@@ -181,14 +174,6 @@ def _ledger() -> list[dict[str, Any]]:
     return [{"campaign": CAMPAIGN, "logger": logger, "file": f"{logger}.csv", "surface": "",
              "patch": "", "pass": "", "disposition": what, "reason": why, "records": n}
             for logger, what, why, n in spec]
-
-
-def _waterfall() -> list[dict[str, Any]]:
-    spec = [("excluded", "unreadable line", 3, 2_157), ("outside passes", "", 1_227, 930),
-            ("used", "", 930, 930)]
-    return [{"campaign": CAMPAIGN, "logger": "rednir", "file": "rednir.csv", "column": "nir_up",
-             "surface": "", "patch": "", "pass": "", "disposition": what, "reason": why,
-             "records": n, "remaining": left} for what, why, n, left in spec]
 
 
 def _checks() -> list[dict[str, Any]]:
@@ -214,22 +199,6 @@ def _clocks() -> list[dict[str, Any]]:
                 ("thermal", "declared", 12.0, 0.5, 3.0, "ok", ""),
                 ("shortwave", "declared", -3.5, 0.5, 0.0, "ok", ""),
                 ("rednir", "not checked", 0.0, 2.0, 0.0, "not checked", "no clock was stated")]]
-
-
-def _ranks() -> list[dict[str, Any]]:
-    return [{"campaign": CAMPAIGN, "quantity": "albedo", "kind": "clear", "surface": surface,
-             "place": place, "probability": share}
-            for surface, shares in (("worn-asphalt", (0.05, 0.95)), ("coated-court", (0.95, 0.05)))
-            for place, share in enumerate(shares, start=1)]
-
-
-def _trends() -> list[dict[str, Any]]:
-    return [{"campaign": CAMPAIGN, "quantity": "albedo", "kind": "clear",
-             "surface": "coated-court", "control": "worn-asphalt", "method": method,
-             "unit": "a-1", "dates": 3, "first": "2025-06-12", "last": "2025-07-24",
-             "slope": 0.31, "u": 0.1, "lower": 0.1, "upper": 0.52, "coverage": 0.95, "p": 0.01,
-             "verdict": verdict, "note": ""}
-            for method, verdict in (("weighted line", "higher"), ("ordinary line", ""))]
 
 
 def _differences(surfaces: list[dict[str, Any]]) -> list[dict[str, Any]]:
@@ -290,11 +259,3 @@ def _changes() -> list[dict[str, Any]]:
         "comparability": conditions, "could_have_missed": 1.4 * half, "verdict": verdict,
         "note": note}
         for quantity, kind, surface, method, change, half, conditions, verdict, note in spec]
-
-
-def _steps() -> list[dict[str, Any]]:
-    return [{"campaign": CAMPAIGN, "surface": "worn-asphalt", "pass": "W1-standoff-1",
-             "quantity": "temperature", "kind": "stand-off", "unit": "degC", "step": step,
-             "value": value} for step, value in [
-                 ("as logged", 55.9), ("emissivity setting taken out", 55.9),
-                 ("emissivity and background", 57.6)]]

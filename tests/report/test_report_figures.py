@@ -21,6 +21,8 @@ ALL = {
     "changes": lambda t, lab: figures.change_plots(t["changes"], {"temperature": 1.0}, lab),
     "budget": lambda t, lab: figures.budget_plot(t["budget"], lab),
     "ledger": lambda t, lab: (figures.ledger_plot(t["ledger"]),),
+    "ranks": lambda t, lab: figures.rank_plots(t["ranks"], lab),
+    "heights": lambda t, lab: (figures.height_plot(t["geometry"], lab),),
     "day": lambda t, lab: (figures.day_timeline(
         t["passes"], sample.sky(), sample.weather(), "Europe/Lisbon", lab),),
 }
@@ -68,7 +70,7 @@ def test_hostile_labels_draw_without_a_warning_and_the_same_twice(name: str) -> 
 
 
 def test_intervals_are_drawn_where_the_table_says() -> None:
-    figure = figure_of(figures.interval_plot(T["surfaces"], "temperature", LABELS))
+    figure = figure_of(figures.interval_plots(T["surfaces"], LABELS)[0])
     contact, standoff = figure.axes
     bars = sorted(tuple(line.get_xdata()) for line in contact.lines if len(line.get_xdata()) == 2)
     assert bars == [pytest.approx((45.75, 50.11)), pytest.approx((48.46, 51.28)),
@@ -82,14 +84,14 @@ def test_intervals_are_drawn_where_the_table_says() -> None:
 
 def test_a_value_without_interval_is_hollow_and_has_no_bar() -> None:
     frame = T["surfaces"][T["surfaces"]["status"] == "value only"]
-    axis = figure_of(figures.interval_plot(frame, "temperature", LABELS)).axes[0]
+    axis = figure_of(figures.interval_plots(frame, LABELS)[0]).axes[0]
     (mark,) = axis.lines
     assert [*mark.get_xdata()] == [36.48]
     assert mark.get_markerfacecolor() == axis.get_facecolor()
 
 
 def test_matrix_is_row_minus_column_with_the_verdict() -> None:
-    figure = figure_of(figures.difference_matrix(T["differences"], "albedo", "clear", LABELS))
+    figure = figure_of(figures.difference_matrices(T["differences"], LABELS)[2])
     told = {text.get_text() for text in figure.axes[0].texts}
     assert "−0.185\nlower" in told  # 0.1023 - 0.2871, asphalt against court
     assert "−0.014\nlower, small" in told
@@ -101,14 +103,14 @@ def test_matrix_turns_a_pair_named_the_other_way_round() -> None:
     first = rows.iloc[[0]].assign(surface="a", other="b", difference=0.2, verdict="higher")
     second = rows.iloc[[0]].assign(surface="b", other="c", difference=0.1, verdict="higher")
     third = rows.iloc[[0]].assign(surface="c", other="a", difference=-0.3, verdict="lower")
-    figure = figure_of(figures.difference_matrix(pd.concat([first, second, third]), "ndvi"))
+    figure = figure_of(figures.difference_matrices(pd.concat([first, second, third]))[0])
     # order a, b, c: the cell (a, c) shows a - c = +0.3, higher
     assert {text.get_text() for text in figure.axes[0].texts} == {
         "+0.200\nhigher", "+0.100\nhigher", "+0.300\nhigher"}
 
 
 def test_changes_show_the_relevant_band_and_only_judged_rows() -> None:
-    drawing = figures.change_plot(T["changes"], sample.EARLIER, {"temperature": 1.0}, LABELS)
+    drawing = figures.change_plots(T["changes"], {"temperature": 1.0}, LABELS)[0]
     axis = figure_of(drawing).axes[0]
     band = axis.patches[0].get_extents().transformed(axis.transData.inverted())
     assert (band.x0, band.x1) == pytest.approx((-1.0, 1.0))
@@ -119,23 +121,25 @@ def test_changes_show_the_relevant_band_and_only_judged_rows() -> None:
     assert f"Coated court −7.9{NO_BREAK}±{NO_BREAK}1.6{NO_BREAK}K lower" in drawing.alt
 
 
-def test_shares_of_records_add_up_to_a_hundred() -> None:
-    axis = figure_of(figures.ledger_plot(T["ledger"])).axes[0]
-    widths = pd.Series([bar.get_width() for bar in axis.patches],
-                       index=[round(bar.get_y(), 6) for bar in axis.patches])
-    assert widths.groupby(level=0).sum().to_numpy() == pytest.approx([100.0] * 3)
+def test_the_way_of_the_records_goes_down_to_those_used() -> None:
     drawing = figures.ledger_plot(T["ledger"])
+    axis = figure_of(drawing).axes[0]  # rednir: 2160 logged, 1227 outside, 3 unreadable, 930 used
+    bars = [(round(bar.get_x() * 21.6), round(bar.get_width() * 21.6)) for bar in axis.patches]
+    assert bars == [(0, 2160), (933, 1227), (930, 3), (0, 930)]
+    assert [t.get_text() for t in axis.get_yticklabels()] == [
+        "logged", "outside passes", "unreadable line", "used"]
     assert f"43{NO_BREAK}% used" in drawing.alt  # 930 of 2160
 
 
 def test_many_reasons_are_merged_without_losing_a_record() -> None:
     rows = pd.concat([T["ledger"].iloc[[1]].assign(reason=f"reason {n}", records=10 + n)
                       for n in range(20)] + [T["ledger"].iloc[[0, 3]]])
-    figure = figure_of(figures.ledger_plot(rows))
-    assert sum(bar.get_width() for bar in figure.axes[0].patches) == pytest.approx(100.0)
-    names = [text.get_text() for text in figure.legends[0].get_texts()]
-    assert names == ["used", *(f"excluded: reason {n}" for n in (19, 18, 17, 16)),
-                     "excluded: other reasons", "outside passes"]
+    axis = figure_of(figures.ledger_plot(rows)).axes[0]
+    names = [text.get_text() for text in axis.get_yticklabels()]
+    assert names == ["logged", "outside passes", *(f"reason {n}" for n in range(19, 13, -1)),
+                     "other reasons", "used"]
+    lost = [bar.get_width() for bar in axis.patches][1:]
+    assert sum(lost) == pytest.approx(100.0)
 
 
 def test_budget_keeps_each_surfaces_shares() -> None:

@@ -19,8 +19,10 @@ BUILDERS: dict[str, Callable[[dict[str, pd.DataFrame], dict], Html]] = {
     "surfaces": lambda d, f: t.surface_table(d["surfaces"], f["surfaces"]),
     "passes": lambda d, f: t.pass_table(d["passes"], f["surfaces"], "Europe/Lisbon"),
     "differences": lambda d, f: t.difference_table(d["differences"], f["surfaces"]),
-    "changes": lambda d, f: t.change_table(d["changes"], f["surfaces"]),
-    "budget": lambda d, f: t.budget_table(d["budget"], f["surfaces"]),
+    "changes": lambda d, f: t.change_table(d["changes"], f["labels"]),
+    "trends": lambda d, f: t.trend_table(d["trends"], f["labels"]),
+    "derived": lambda d, f: t.derived_table(d["derived"], f["labels"]),
+    "heights": lambda d, f: t.geometry_table(d["geometry"], f["labels"]),
     "checks": lambda d, f: t.check_table(d["checks"], f["surfaces"]),
     "ledger": lambda d, f: t.ledger_table(d["ledger"]),
     "clocks": lambda d, f: t.clock_table(d["clocks"]),
@@ -103,8 +105,8 @@ def test_what_every_pass_shares_is_told_once_in_the_heading() -> None:
     passes["flags"] = ["no swap; few effective records"] + ["no swap"] * (len(passes) - 1)
     rows = cells(t.pass_table(passes))
     assert rows[1] == ["NDVI; every pass: no swap"]
-    assert [row[-1] for row in rows[2:]] == ["ok; few effective records"] + ["ok"] * (
-        len(passes) - 1)
+    assert [row[-1] for row in rows[2:]] == ["oka"] + ["ok"] * (len(passes) - 1)
+    assert soup(t.pass_table(passes)).ul.get_text() == "a Few effective records."
 
 
 def test_many_degrees_of_freedom_print_as_more_than_a_thousand() -> None:
@@ -138,12 +140,42 @@ def test_settings_say_what_is_yours_and_split_maps() -> None:
 def test_changes_say_why_not_and_what_could_have_been_missed() -> None:
     rows = cells(BUILDERS["changes"](sample.tables(), sample.facts()))
     # 1.4 * 1.90 = 2.66 and 1.4 * 0.0103 = 0.0144 by the sample's own rule
-    assert ["Pale concrete slabs", "+0.3 ± 1.9", "no difference shown (could have missed up to "
-            "2.7)", "partly matched: wind not stated on 2025-06-12",
+    assert rows[1] == ["Temperature, contact, K, since 12 June 2025"]
+    assert ["Pale concrete slabs", "+0.3 ± 1.9", "no difference shown", "2.7", "partly matcheda",
             "ratio to control"] in rows
-    assert ["Lawn", "none", "not evaluated: no contact dwell settled for 3 s", "not matched",
-            "ratio to control"] in rows
-    assert ["Coated court", "−2.1 ± 1.9", "not judged", "partly matched", "raw"] in rows
+    assert ["Lawn", "none", "not evaluatedb", "", "not matched", "ratio to control"] in rows
+    assert rows[2] == ["Coated court", "−7.9 ± 1.6", "lower", "2.3", "partly matched",
+                       "ratio to control; in place of it: difference in differences −8.3 ± 1.6, "
+                       "raw −2.1 ± 1.9"]
+    notes = [li.get_text() for li in soup(
+        BUILDERS["changes"](sample.tables(), sample.facts())).find_all("li")]
+    assert notes[:2] == ["a Wind not stated on 2025-06-12.", "b No contact dwell settled for 3 s."]
+
+
+def test_intervals_that_hold_together_stand_beside_the_single_ones() -> None:
+    frame = sample.tables()["differences"].iloc[[0]].assign(
+        difference=8.47, lower=6.8, upper=10.0, lower_all=6.2, upper_all=10.7)
+    rows = cells(t.difference_table(frame, sample.LABELS))
+    assert rows[0][:3] == ["Pair", "Difference ± U", "All pairs at once"]
+    assert rows[2][:3] == ["Worn asphalt − Coated court", "+8.5 ± 1.6", "+6.2 to +10.7"]
+
+
+def test_trends_and_products_read_as_the_tables_say() -> None:
+    rows = cells(BUILDERS["trends"](sample.tables(), sample.facts()))
+    # the sample's arms are 0.21 either way
+    assert rows[1:] == [
+        ["Albedo, clear, a⁻¹"],
+        ["Coated court", "+0.310 ± 0.210", "weighted line", "3", "0.010", "higher"],
+        ["Coated court", "+0.310 ± 0.210", "ordinary line", "3", "0.010", "not judged"]]
+    rows = cells(BUILDERS["derived"](sample.tables(), sample.facts()))
+    assert rows[1:3] == [["Net radiation, W m⁻²"], ["Lawn", "as measured", "512 ± 28", "ok"]]
+    assert rows[3:] == [["SRI"], ["Lawn", "", "none", "not evaluateda"]]
+
+
+def test_heights_used_stand_beside_the_best_ones() -> None:
+    rows = cells(BUILDERS["heights"](sample.tables(), sample.facts()))
+    # hand arithmetic as in the sample: 0.03165 at 50 cm, 0.01125 at 10 cm, foreign 0.25 / 4
+    assert rows[1] == ["W1", "Worn asphalt", "50", "3 %", "6 %", "10", "1 %", "E1918-likea"]
 
 
 def test_inputs_carry_the_whole_hash() -> None:

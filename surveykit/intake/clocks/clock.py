@@ -5,9 +5,6 @@ from __future__ import annotations
 from dataclasses import dataclass
 from math import hypot
 
-import numpy as np
-
-from surveykit.core import IntArray
 from surveykit.statistics.alignment import Line
 from surveykit.statistics.correlation import Lag
 
@@ -45,10 +42,6 @@ class Piece:
     line: Line
     known_ns: tuple[int, int]
     refusal: str = ""
-
-    def shift_ns(self, time_ns: IntArray) -> IntArray:
-        """Return what is added to the logger's times."""
-        return np.rint(self.line.at((time_ns - self.origin_ns) / NS) * NS).astype(np.int64)
 
     def u_s(self, time_ns: float) -> float:
         """Return the standard uncertainty [s] at a time of the campaign."""

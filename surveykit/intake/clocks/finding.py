@@ -41,9 +41,9 @@ class _Found:
     fit: Fit | None = None
     numbers: tuple[int, ...] = ()
     lag: Lag | None = None
-    against_sheet: bool = False
 
 
+# of a clock that was refused: no certainty, wherever the search began
 NOTHING = Line(0.0, 0.0, 0.0, float("inf"), 0.0)
 
 
@@ -73,7 +73,7 @@ def find_clock(log: Records, stated: Stated, parameters: Parameters, rows: Seque
     pieces, found = [], []
     for rows_in in groups:
         one = ways.find(rows_in)
-        line = one.line if not one.refusal else replace_line(stated.offset_s.value)
+        line = NOTHING._replace(offset_s=stated.offset_s.value) if one.refusal else one.line
         moved = log.time_ns[rows_in] + np.rint(
             line.at((log.time_ns[rows_in] - origin_ns) / NS) * NS).astype(np.int64)
         time_ns[rows_in] = moved
@@ -93,11 +93,6 @@ def find_clock(log: Records, stated: Stated, parameters: Parameters, rows: Seque
     if refused.any():
         moved_log = replace(moved_log, marks=moved_log.marks | {REFUSED: refused[order]})
     return Set(moved_log, _clock(ways, tuple(pieces), found))
-
-
-def replace_line(offset_s: float) -> Line:
-    """Return the line of a clock that was refused: where the search began, and no certainty."""
-    return NOTHING._replace(offset_s=offset_s)
 
 
 @dataclass(frozen=True)
@@ -129,8 +124,7 @@ class _Search:
             fitted = fit(edges[1], edges[2], edges[3], limits,
                          two_loggers=self.reference is not None)
             return _Found(fitted.line, (float(edges[1].min()), float(edges[1].max())),
-                          fitted.refusal, fitted, tuple(edges[0]),
-                          against_sheet=self.reference is None)
+                          fitted.refusal, fitted, tuple(edges[0]))
         why = mine.why_not or self._few(mine, seen)
         if self.reference is None:
             return _Found(NOTHING, (0.0, 0.0), why)

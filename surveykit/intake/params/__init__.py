@@ -10,11 +10,10 @@ from surveykit.intake.params.loading import (
     is_kit_file,
     load,
     load_kit,
-    load_mapping,
     read_plain,
     refuse_other_sections,
 )
-from surveykit.intake.params.paths import find_root, inside
+from surveykit.intake.params.paths import find_root
 from surveykit.intake.params.schema import campaign_schema, instruments_schema, write_schemas
 from surveykit.intake.params.sections import LoggerUse
 from surveykit.intake.params.settings import SettingRow, Settings
@@ -23,6 +22,6 @@ from surveykit.intake.params.timekeeping import Clock, Watch
 __all__ = [
     "Amount", "Calibration", "Campaign", "Channel", "Clock", "Instrument", "LoggerUse",
     "Parameters", "SettingRow", "Settings", "Uncertain", "Watch", "campaign_schema", "find_root",
-    "inside", "instruments_schema", "is_kit", "is_kit_file", "load", "load_kit", "load_mapping",
+    "instruments_schema", "is_kit", "is_kit_file", "load", "load_kit",
     "read_plain", "refuse_other_sections", "write_schemas",
 ]

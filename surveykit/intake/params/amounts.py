@@ -44,7 +44,7 @@ class BareNumber:
     setting: str | None = None
     low: float = -1e300
     high: float = 1e300
-    write: str = "a number"
+    unit: str = ""
 
     def __get_pydantic_core_schema__(
             self, source: Any, handler: GetCoreSchemaHandler) -> CoreSchema:
@@ -67,16 +67,15 @@ class BareNumber:
         return {"anyOf": [number, handler(schema)]}
 
     def _wrap(self, data: Any, info: ValidationInfo) -> Any:
-        if isinstance(data, Uncertain | Amount):
-            return data
-        if isinstance(data, Mapping):
+        if isinstance(data, Uncertain | Amount | Mapping):
             return data
         return {"value": data} | (
             {"u": setting_value(info, self.setting)} if self.setting else {})
 
     def _within(self, amount: Any) -> Any:
         if not self.low <= amount.value <= self.high:
-            raise fault(f"got {amount.value:g}; write {self.write}")
+            write = number_words(self.unit, ge=self.low, le=self.high)
+            raise fault(f"got {amount.value:g}; write {write}")
         return amount
 
 
@@ -100,6 +99,12 @@ def given_once(name: str, amount: Amount | None, short: str, u: float | None) ->
         return []
     return [((short,), f"got {u:g}, and {name} gives u {amount.u:g} as well; write the "
              f"uncertainty once: {name} as {{value, u}}, or {short}")]
+
+
+def whole(amount: Amount, short_u: float | None) -> Uncertain:
+    """Return a number with its u, whether that was written with it or under its short key."""
+    u = short_u if amount.u is None else amount.u
+    return Uncertain(value=amount.value, u=u or 0.0)
 
 
 def u_field(unit: str, description: str) -> Any:

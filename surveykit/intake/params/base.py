@@ -5,8 +5,8 @@ from __future__ import annotations
 import re
 import unicodedata
 from collections.abc import Iterable, Mapping
-from datetime import date
-from typing import Annotated, Any, ClassVar, Self
+from datetime import UTC, date, datetime
+from typing import Annotated, Any, Self
 
 from pydantic import AfterValidator, BaseModel, ConfigDict, Field, model_validator
 from pydantic_core import InitErrorDetails, PydanticCustomError, ValidationError
@@ -31,10 +31,7 @@ class Strict(BaseModel):
     cannot see alone; all of them are reported together.
     """
 
-    model_config = ConfigDict(
-        extra="forbid", frozen=True, strict=True, allow_inf_nan=False,
-    )
-    RESERVED: ClassVar[Mapping[str, str]] = {}
+    model_config = ConfigDict(extra="forbid", frozen=True, strict=True, allow_inf_nan=False)
 
     def faults(self) -> Iterable[Fault]:
         """Yield (location below this model, sentence) for each fault between fields."""
@@ -57,8 +54,15 @@ class Strict(BaseModel):
         return self
 
 
-def key(description: str, *, write: str, **field: Any) -> Any:
-    """Return a pydantic field: what the key means, and what to write when it is wrong."""
+def key(description: str, *, write: str = "", unit: str | None = None, whole: bool = False,
+        **field: Any) -> Any:
+    """Return a pydantic field: what the key means, and what to write when it is wrong.
+
+    A number states its `unit` ("" where it has none); its limits then say what to write.
+    """
+    if unit is not None:
+        limits = {name: field[name] for name in ("ge", "gt", "le", "lt") if name in field}
+        write = number_words(unit, whole=whole, **limits)
     extra = {"write": write, **field.pop("extra", {})}
     return Field(description=description, json_schema_extra=extra, **field)
 
@@ -84,6 +88,12 @@ def number_words(unit: str, *, whole: bool = False, ge: float | None = None,
                  f", below {lt:.12g}" if lt is not None else ""]
         words += "".join(parts)
     return words if unit in ("", "1") else f"{words}, in {unit}"
+
+
+def since_epoch_ns(moment: datetime) -> int:
+    """Return a time with its offset as ns since 1970 UTC, to the microsecond."""
+    step = moment - datetime(1970, 1, 1, tzinfo=UTC)
+    return ((step.days * 86400 + step.seconds) * 1_000_000 + step.microseconds) * 1000
 
 
 def _plain_text(text: str) -> str:

@@ -42,12 +42,9 @@ def cross_faults(
     comparison: Comparison | None = sections.get("comparison")
     if comparison is not None:
         yield from _comparison(comparison, names.get("surfaces", ()), path, root)
-    known = names.get("surfaces", ())
     for index, done in enumerate(sections.get("interventions", ())):
-        if known and done.surface not in known:
-            yield ("interventions", index, "surface"), (
-                f"got {done.surface!r}, no surface of this file; "
-                + _known("write one of", done.surface, known))
+        yield from _no_surface(("interventions", index, "surface"), done.surface,
+                               names.get("surfaces", ()))
     if "kit" in names:
         for name in names.get("loggers", ()):
             if name not in names["kit"]:
@@ -91,16 +88,12 @@ def _paths(sections: Mapping[str, Any], root: Path) -> Iterator[Fault]:
 def _comparison(
         comparison: Comparison, surfaces: tuple[str, ...], path: Path,
         root: Path) -> Iterator[Fault]:
-    if comparison.control is not None and surfaces and comparison.control not in surfaces:
-        yield ("comparison", "control"), f"got {comparison.control!r}, no surface of this file; " \
-            + _known("write one of", comparison.control, surfaces)
-    named: list[tuple[Loc, str | None]] = [(("second_control",), comparison.second_control)] + [
-        (("families", family, index), name) for family, names in comparison.families.items()
-        for index, name in enumerate(names)]
+    named: list[tuple[Loc, str | None]] = [
+        (("control",), comparison.control), (("second_control",), comparison.second_control), *(
+            (("families", family, index), name) for family, names in comparison.families.items()
+            for index, name in enumerate(names))]
     for where, name in named:
-        if name is not None and surfaces and name not in surfaces:
-            yield ("comparison", *where), f"got {name!r}, no surface of this file; " \
-                + _known("write one of", name, surfaces)
+        yield from _no_surface(("comparison", *where), name, surfaces)
     if comparison.second_control and comparison.second_control == comparison.control:
         yield ("comparison", "second_control"), f"got {comparison.control!r}, which is control " \
             "already; write another surface"
@@ -119,6 +112,12 @@ def _comparison(
         elif not target.is_file():
             yield here, f"got {text!r}, but there is no such file; write an earlier campaign's file"
         seen.add(target)
+
+
+def _no_surface(where: Loc, name: str | None, surfaces: tuple[str, ...]) -> Iterator[Fault]:
+    if name is not None and surfaces and name not in surfaces:
+        yield where, f"got {name!r}, no surface of this file; " \
+            + _known("write one of", name, surfaces)
 
 
 def kit_faults(used: Mapping[str, Instrument], day: str | None) -> Iterator[Fault]:

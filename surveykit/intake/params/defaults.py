@@ -14,7 +14,7 @@ ISO9060 = "ISO 9060:2018, class B"
 
 
 def setting(value: Any, unit: str, description: str, origin: Origin = ENGINEERING,
-            source: str = "engineering default", **limits: float) -> Any:
+            source: str = "engineering default", **limits: Any) -> Any:
     """Return a field of the settings with its unit, origin and source."""
     write = ("true or false" if isinstance(value, bool)
              else "[low, high], two numbers, low below high" if isinstance(value, tuple)
@@ -175,6 +175,9 @@ class AlbedoSettings(Strict):
     swap_max_sd: float = setting(
         0.01, "1", "Relative standard deviation of the swaps' gain ratios above which none is "
         "used.", gt=0)
+    operator_distance_m: float = setting(
+        1.5, "m", "Distance of the operator from the head, where the sheet says on which side.",
+        gt=0)
     rod_length_m: float = setting(1.5, "m", "Length of the rod behind the head.", gt=0)
     spectral_u: float = setting(
         0.05, "1", "Relative standard uncertainty from a response that is not flat.", MEMORY,

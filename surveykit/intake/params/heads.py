@@ -18,7 +18,6 @@ from surveykit.intake.params.base import (
     Strict,
     Text,
     key,
-    number_words,
 )
 from surveykit.intake.params.quality import Pair
 from surveykit.intake.params.quantities import MAIN, PHYSICAL_UNITS, RAW_UNITS, Quantity, Unit
@@ -29,8 +28,8 @@ class Calibration(Strict):
 
     id: Text = key("Its name; equal ids share one error.", write=TEXT_WRITE)
     date: DateText = key("Its date.", write=DATE_WRITE)
-    valid_days: int | None = key("Days it holds; absent: it does not expire.", default=None, gt=0,
-                                 write=number_words("days", whole=True, gt=0))
+    valid_days: int | None = key(
+        "Days it holds; absent: it does not expire.", default=None, gt=0, unit="days", whole=True)
 
     def expired_on(self, day: str) -> bool:
         """Return whether it had run out by `day` ("YYYY-MM-DD")."""
@@ -43,27 +42,24 @@ class Calibration(Strict):
 class Bands(Strict):
     """One number for each of the two bands."""
 
-    red: float = key("Red band.", gt=0, le=5000, write=number_words("nm", gt=0, le=5000))
-    nir: float = key("Near-infrared band.", gt=0, le=5000,
-                     write=number_words("nm", gt=0, le=5000))
+    red: float = key("Red band.", gt=0, le=5000, unit="nm")
+    nir: float = key("Near-infrared band.", gt=0, le=5000, unit="nm")
 
 
 class ClassTermsStated(Strict):
     """Limits of a pyranometer, as a certificate or a leaflet states them (bounds)."""
 
-    directional_w_m2: float = key("Directional error at 1000 W m-2 of beam.", ge=0,
-                                  write=number_words("W m-2", ge=0))
-    zero_offset_w_m2: float = key("Zero offset under a clear sky.", ge=0,
-                                  write=number_words("W m-2", ge=0))
-    gain: float = key("Non-linearity, temperature, tilt and ageing together, relative.", ge=0,
-                      lt=1, write=number_words("", ge=0, lt=1))
+    directional_w_m2: float = key("Directional error at 1000 W m-2 of beam.", ge=0, unit="W m-2")
+    zero_offset_w_m2: float = key("Zero offset under a clear sky.", ge=0, unit="W m-2")
+    gain: float = key(
+        "Non-linearity, temperature, tilt and ageing together, relative.", ge=0, lt=1, unit="")
 
 
 class BandRatio(Strict):
     """Ratio of the gains of near infrared to red, ground head over sky head, of a certificate."""
 
-    value: float = key("The ratio.", gt=0, write=number_words("", gt=0))
-    u: float = key("Its standard uncertainty (k = 1).", ge=0, write=number_words("", ge=0))
+    value: float = key("The ratio.", gt=0, unit="")
+    u: float = key("Its standard uncertainty (k = 1).", ge=0, unit="")
     source: Text = key("Where it comes from.", write="where the value comes from, plain text")
 
 
@@ -82,17 +78,14 @@ class Head(Strict):
         "Response of an infrared head over wavelength, in place of band_um.", default=None,
         write="a list of [um, response] such as [[7.5, 0], [8.5, 1], [14, 0]], wavelengths rising")
     half_angle_deg: float | None = key(
-        "Half of the field of view; 90 for a hemisphere.", default=None, gt=0, le=90,
-        write=number_words("deg", gt=0, le=90))
+        "Half of the field of view; 90 for a hemisphere.", default=None, gt=0, le=90, unit="deg")
     time_constant_s: float | None = key(
-        "Time constant (63 %).", default=None, ge=0, le=3600,
-        write=number_words("s", ge=0, le=3600))
-    t95_s: float | None = key("Time to 95 %, in place of time_constant_s.", default=None, ge=0,
-                              le=3600, write=number_words("s", ge=0, le=3600))
-    head_radius_cm: float | None = key("Radius of the head.", default=None, gt=0, le=100,
-                                       write=number_words("cm", gt=0, le=100))
+        "Time constant (63 %).", default=None, ge=0, le=3600, unit="s")
+    t95_s: float | None = key(
+        "Time to 95 %, in place of time_constant_s.", default=None, ge=0, le=3600, unit="s")
+    head_radius_cm: float | None = key("Radius of the head.", default=None, gt=0, le=100, unit="cm")
     bore_emissivity: Annotated[Uncertain, BareNumber(
-        "temperature.bore_emissivity_u", 0.01, 1.0, number_words("", ge=0.01, le=1))] | None = key(
+        "temperature.bore_emissivity_u", 0.01, 1.0)] | None = key(
         "Emissivity of the bore of an infrared head.", default=None,
         write="a number from 0.01 to 1, or {value, u}")
     class_terms: Annotated[
@@ -103,8 +96,8 @@ class Head(Strict):
     spectrally_flat: bool | None = key(
         "Whether a shortwave head responds alike to all wavelengths of sunlight.", default=None,
         write="true or false")
-    rod_width_cm: float | None = key("Width of the rod that holds the head.", default=None, gt=0,
-                                     le=50, write=number_words("cm", gt=0, le=50))
+    rod_width_cm: float | None = key(
+        "Width of the rod that holds the head.", default=None, gt=0, le=50, unit="cm")
     band_ratio: BandRatio | None = key(
         "Certificate of the gains of near infrared to red, at the ground heads.", default=None,
         write="{value, u, source}")
@@ -153,11 +146,10 @@ class Column(Head):
     u_gain: float | None = u_field("1", "Relative standard uncertainty of the gain.")
     u_offset: float | None = u_field("", "Standard uncertainty of the offset, physical unit.")
     emissivity_setting: float | None = key(
-        "Emissivity set in the infrared logger.", default=None, gt=0, le=1,
-        write=number_words("", gt=0, le=1))
+        "Emissivity set in the infrared logger.", default=None, gt=0, le=1, unit="")
     reflected_setting_degC: float | None = key(  # noqa: N815 - the unit is written so
         "Reflected temperature set beside an emissivity other than 1; absent: the housing's.",
-        default=None, ge=-90, le=100, write=number_words("degC", ge=-90, le=100))
+        default=None, ge=-90, le=100, unit="degC")
 
     def faults(self) -> Iterator[Fault]:
         """Unit, gain, offset and u must fit the quantity."""

@@ -9,7 +9,7 @@ from zoneinfo import ZoneInfo
 
 from pydantic import BeforeValidator, Field
 
-from surveykit.intake.params.base import TEXT_WRITE, Fault, Strict, Text, key, number_words
+from surveykit.intake.params.base import TEXT_WRITE, Fault, Strict, Text, key
 from surveykit.intake.params.channels import Channel, channel
 from surveykit.intake.params.heads import Column, Head
 from surveykit.intake.params.quantities import MAIN
@@ -33,8 +33,7 @@ class Layout(Strict):
     delimiter: str = key("What separates the columns.", default=",", min_length=1, max_length=1,
                          write='one character in quotes, "," or ";" or "\\t"')
     decimal: Literal[".", ","] = key("Decimal mark.", default=".", write='"." or ","')
-    skip_lines: int = key("Lines before the header.", default=0, ge=0, le=1000,
-                          write=number_words("", whole=True, ge=0, le=1000))
+    skip_lines: int = key("Lines before the header.", default=0, ge=0, le=1000, unit="", whole=True)
     encoding: Literal["utf-8", "windows-1252", "latin-1"] = key(
         "Character encoding.", default="utf-8", write="utf-8, windows-1252 or latin-1")
     missing: Annotated[tuple[str, ...], Field(strict=False)] = key(
@@ -42,7 +41,7 @@ class Layout(Strict):
         default=("", "NAN", "-9999"), write='texts in quotes, such as ["", "NAN", "-9999"]')
     unit_lines: int = key(
         "Lines between the header and the records, such as one of units.", default=0, ge=0, le=20,
-        write=number_words("", whole=True, ge=0, le=20))
+        unit="", whole=True)
 
     def faults(self) -> list[Fault]:
         """The delimiter separates, and is not the decimal mark."""
@@ -126,8 +125,7 @@ class Instrument(Head):
         "Its columns by header.", min_length=1,
         write="at least one column: its header, then {quantity, unit, ...}")
     interval_s: float | None = key(
-        "Logging interval; absent: the median step.", default=None, gt=0, le=86400,
-        write=number_words("s", gt=0, le=86400))
+        "Logging interval; absent: the median step.", default=None, gt=0, le=86400, unit="s")
 
     def faults(self) -> Iterator[Fault]:
         """One column a quantity; the time is a column of its own."""

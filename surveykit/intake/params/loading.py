@@ -43,28 +43,6 @@ def load(path: Path | str, root: Path | None = None) -> Parameters:
     return _parameters(read_document(path, display_name(path, root)), path, root)
 
 
-def load_mapping(data: Mapping[str, Any], path: Path | str, root: Path | None = None) -> Parameters:
-    """Return the parameters of sections handed over by a notebook's runner.
-
-    Parameters
-    ----------
-    data : mapping
-        Top-level keys of a campaign; None counts as absent.
-    path : Path or str
-        The parameter file they come from.
-    root : Path, optional
-        The project folder.
-
-    Raises
-    ------
-    InputError
-        As `load`, without line numbers.
-    """
-    path = Path(path).absolute()
-    root = _root(path, root)
-    return _parameters(Document(display_name(path, root), dict(data), {}, (), ()), path, root)
-
-
 def load_kit(path: Path | str, root: Path | None = None) -> dict[str, Instrument]:
     """Return the entries of an instruments file, checked alone.
 

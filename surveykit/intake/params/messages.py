@@ -87,21 +87,18 @@ def model_faults(
     faults: list[tuple[str, Fault]] = []
     for item in error.errors(include_url=False):
         kind = str(item["type"])
-        loc = tuple(part for part in item["loc"] if part not in _NOT_KEYS)
-        path = _user_path(loc, data, missing=kind in ("missing", "fault"))
+        loc = keys_of(item["loc"])
+        path = written(loc, data, missing=kind in ("missing", "fault"))
         if kind == "missing" and path != loc:
             kind = "incomplete"
         if any(path[:n] in skipped for n in range(1, len(path) + 1)):
             continue
         word, text = _sentence(kind, dict(item), path, model, data)
         faults.append((word, (path, text)))
-    # A reserved key explains what is missing or unknown beside it, a misspelt one what it meant.
-    explained = {fault[0][:-1] for word, fault in faults if word == "reserved"}
+    # A misspelt key explains that the one it meant is missing.
     meant = {(*path[:-1], _close(str(path[-1]), model_at(model, path[:-1])))
              for word, (path, _) in faults if word == "unknown"}
-    return [fault for word, fault in faults
-            if word not in ("missing", "unknown")
-            or (fault[0][:-1] not in explained and fault[0] not in meant)]
+    return [fault for word, fault in faults if word != "missing" or fault[0] not in meant]
 
 
 def _close(name: str, parent: type[Strict] | None) -> str | None:
@@ -109,8 +106,16 @@ def _close(name: str, parent: type[Strict] | None) -> str | None:
     return next(iter(difflib.get_close_matches(name, known, 1, 0.6)), None)
 
 
-def _user_path(loc: Loc, data: Any, *, missing: bool) -> Loc:
-    # The part of pydantic's location that the user wrote: {value: x} made from a bare x is cut.
+def keys_of(loc: Loc) -> Loc:
+    """Return pydantic's location without what stands for no key."""
+    return tuple(part for part in loc if part not in _NOT_KEYS)
+
+
+def written(loc: Loc, data: Any, *, missing: bool = False) -> Loc:
+    """Return the part of a location that the user wrote; with `missing`, down to an absent key.
+
+    {value: x} made from a bare x is cut.
+    """
     for n, part in enumerate(loc):
         if isinstance(data, Mapping) and part in data:
             data = data[part]
@@ -133,10 +138,7 @@ def _sentence(
     known = {} if parent is None else {
         field.alias or name: field for name, field in parent.model_fields.items()}
     if kind == "extra_forbidden" and parent is not None:
-        name = str(path[-1])
-        if name in parent.RESERVED:
-            return "reserved", parent.RESERVED[name]
-        close = _close(name, parent)
+        close = _close(str(path[-1]), parent)
         hint = f"did you mean {close}? " if close else ""
         return "unknown", f"unknown key; {hint}known here: {', '.join(known)}"
     write = _write(known.get(str(path[-1]))) if path else None
@@ -181,7 +183,7 @@ def model_at(model: Any, path: Loc) -> type[Strict] | None:
     """Return the model whose keys stand at `path` below `model`, None if none does."""
     current = _unwrap(model)
     for part in path:
-        if isinstance(current, type) and issubclass(current, Strict):
+        if _is_model(current):
             info = current.model_fields.get(str(part))
             if info is None:
                 return None
@@ -190,21 +192,20 @@ def model_at(model: Any, path: Loc) -> type[Strict] | None:
             current = _unwrap(typing.get_args(current)[1])
         else:
             return None
-    if isinstance(current, type) and issubclass(current, Strict):
-        return current
-    return None
+    return current if _is_model(current) else None
+
+
+def _is_model(annotation: Any) -> bool:
+    return isinstance(annotation, type) and issubclass(annotation, Strict)
 
 
 def _unwrap(annotation: Any) -> Any:
     # Annotated[X, ...] -> X; of a union, the part that has keys.
-    while True:
-        origin = typing.get_origin(annotation)
-        if origin is typing.Annotated:
-            annotation = typing.get_args(annotation)[0]
-        elif origin in (typing.Union, types.UnionType):
-            parts = [_unwrap(part) for part in typing.get_args(annotation)]
-            keyed = [part for part in parts if typing.get_origin(part) is dict
-                     or (isinstance(part, type) and issubclass(part, Strict))]
-            return keyed[0] if keyed else parts[0]
-        else:
-            return annotation
+    origin, parts = typing.get_origin(annotation), typing.get_args(annotation)
+    if origin is typing.Annotated:
+        return _unwrap(parts[0])
+    if origin not in (typing.Union, types.UnionType):
+        return annotation
+    plain = [_unwrap(part) for part in parts]
+    return next((part for part in plain if typing.get_origin(part) is dict or _is_model(part)),
+                plain[0])

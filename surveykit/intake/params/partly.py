@@ -14,10 +14,11 @@ from zoneinfo import ZoneInfo
 from pydantic import ValidationError
 
 from surveykit.core import InputError
-from surveykit.intake.params.base import NAME_PATTERN, Loc
+from surveykit.intake.params.base import NAME_PATTERN
 from surveykit.intake.params.campaign import Campaign, Parameters
 from surveykit.intake.params.instruments import Instrument, zone_fault
 from surveykit.intake.params.loading import display_name, load
+from surveykit.intake.params.messages import keys_of, written
 from surveykit.intake.params.paths import find_root, path_fault
 from surveykit.intake.params.reading import read_document
 from surveykit.intake.params.settings import Settings
@@ -54,7 +55,7 @@ def load_partly(path: Path | str) -> Partly:
     except InputError:
         return Partly(None, faults, frozenset())
     doubtful: set[str] = set()
-    written = set(data["loggers"]) if isinstance(data.get("loggers"), Mapping) else set()
+    named = set(data["loggers"]) if isinstance(data.get("loggers"), Mapping) else set()
     campaign = _mended(lambda: Campaign.model_validate(_filled(data, path, doubtful)), data)
     if campaign is None or path_fault(root, campaign.data_folder):
         return Partly(None, faults, frozenset())
@@ -66,9 +67,8 @@ def load_partly(path: Path | str) -> Partly:
     base = root / campaign.data_folder
     usable = {name: use for name, use in campaign.loggers.items() if name in entries
               and not any(path_fault(root, pattern, base) for pattern in use.files)}
-    if any(entry.columns.keys() != kit[name]["columns"].keys() for name, entry in entries.items()):
-        doubtful.add("loggers")
-    if usable.keys() != written:
+    if usable.keys() != named or any(entry.columns.keys() != kit[name]["columns"].keys()
+                                     for name, entry in entries.items()):
         doubtful.add("loggers")
     if path_fault(root, campaign.field_sheet, base):
         doubtful.add("field_sheet")
@@ -137,7 +137,8 @@ def _mended(read: Callable[[], Model], data: dict[str, Any]) -> Model | None:
         try:
             return read()
         except ValidationError as error:
-            places = [_there(data, item["loc"]) for item in error.errors(include_url=False)]
+            places = [written(keys_of(item["loc"]), data)
+                      for item in error.errors(include_url=False)]
             *above, last = max(places, key=len) or (None,)
             if last is None:
                 return None
@@ -146,16 +147,3 @@ def _mended(read: Callable[[], Model], data: dict[str, Any]) -> Model | None:
                 holder = holder[part]
             del holder[last]
     return None
-
-
-def _there(held: Any, place: Loc) -> Loc:
-    """Return the part of `place` that the data hold."""
-    found: list[str | int] = []
-    for part in place:
-        if (isinstance(held, dict) and part in held) or (
-                isinstance(held, list) and isinstance(part, int) and part < len(held)):
-            found.append(part)
-            held = held[part]  # type: ignore[index]
-        elif part not in ("<path>", "<inline>", "[key]"):
-            break
-    return tuple(found)

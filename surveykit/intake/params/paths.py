@@ -59,17 +59,3 @@ def path_fault(root: Path, text: str, base: Path | None = None) -> str | None:
     if not inside_root:
         return f"got {shown}, a link that leads out of the project folder; write a path inside it"
     return None
-
-
-def inside(root: Path, text: str, key: str) -> Path:
-    """Return `root / text`, refusing absolute paths, `..` and links that lead out.
-
-    Raises
-    ------
-    InputError
-        If the path leaves `root`; the sentence begins with `key`.
-    """
-    wrong = path_fault(Path(root), text)
-    if wrong:
-        raise InputError(f"{key}: {wrong}")
-    return Path(root) / PurePosixPath(text)

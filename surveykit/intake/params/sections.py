@@ -16,6 +16,7 @@ from surveykit.intake.params.amounts import (
     Uncertain,
     given_once,
     u_field,
+    whole,
 )
 from surveykit.intake.params.base import (
     DATE_WRITE,
@@ -27,9 +28,8 @@ from surveykit.intake.params.base import (
     Text,
     fault,
     key,
-    number_words,
 )
-from surveykit.intake.params.instruments import zone_fault
+from surveykit.intake.params.instruments import one_or_more, zone_fault
 from surveykit.intake.params.timekeeping import Clock
 
 MAX_ZONE_GAP_H = 3.5
@@ -45,13 +45,13 @@ def _zone(zone: str) -> str:
 class Walls(Strict):
     """What hides part of the sky."""
 
-    temperature_degC: Annotated[Uncertain, BareNumber(  # noqa: N815 - the unit is written so
-        "temperature.walls_u_k", -60, 120, number_words("degC", ge=-60, le=120))] = key(
+    temperature_degC: Annotated[  # noqa: N815 - the unit is written so
+        Uncertain, BareNumber("temperature.walls_u_k", -60, 120, "degC")] = key(
         "Temperature; where walls are absent, the air's.",
         write="a number in degC, or {value, u}")
     emissivity: Annotated[float, FromSettings("temperature.walls_emissivity")] = key(
         "Emissivity; absent: settings.temperature.walls_emissivity.", default=None,
-        validate_default=True, gt=0, le=1, write=number_words("", gt=0, le=1))
+        validate_default=True, gt=0, le=1, unit="")
 
 
 class Site(Strict):
@@ -62,13 +62,11 @@ class Site(Strict):
                           write="degrees north, a number from -90 to 90, south negative")
     longitude: float = key("Degrees east; west negative.", ge=-180, le=180,
                            write="degrees east, a number from -180 to 180, west negative")
-    elevation_m: float = key("Height above sea level.", ge=-450, le=9000,
-                             write=number_words("m", ge=-450, le=9000))
+    elevation_m: float = key("Height above sea level.", ge=-450, le=9000, unit="m")
     time_zone: Annotated[str, AfterValidator(_zone)] = key(
         "Time zone of the field sheet: UTC or an IANA name.",
         write="UTC or an IANA name such as Europe/Lisbon")
-    sky_view: Annotated[Uncertain, BareNumber(
-        "temperature.sky_view_u", 0.0, 1.0, number_words("", ge=0, le=1))] = key(
+    sky_view: Annotated[Uncertain, BareNumber("temperature.sky_view_u", 0.0, 1.0)] = key(
         "Share of the sky seen from the ground.", default=1.0, validate_default=True,
         write="a number from 0 to 1, or {value, u}")
     walls: Walls | None = key("What hides the rest of the sky.", default=None,
@@ -95,16 +93,12 @@ def _standard_offset_h(zone: str) -> float:
     return min(offset.total_seconds() for offset in offsets if offset is not None) / 3600
 
 
-def _one_or_more(data: Any) -> Any:
-    return data if isinstance(data, list | tuple) else [data]
-
-
 class LoggerUse(Strict):
     """One logger's files and clock on this day."""
 
     files: Annotated[
         tuple[Text, ...], Field(strict=False, min_length=1),
-        BeforeValidator(_one_or_more, json_schema_input_type=Text | list[Text])] = key(
+        BeforeValidator(one_or_more, json_schema_input_type=Text | list[Text])] = key(
         "Its files in data_folder; * and ? stand for any text.",
         write='a file name or a pattern such as "thermal*.csv", or a list of them')
     clock: Clock | None = key("Its clock; absent: not checked.", default=None,
@@ -114,20 +108,18 @@ class LoggerUse(Strict):
 class Emissivity(Strict):
     """An emissivity: stated with its u and source, or to be found on the day."""
 
-    value: float | None = key("The emissivity.", default=None, gt=0, le=1,
-                              write=number_words("", gt=0, le=1))
-    u: float | None = key("Its standard uncertainty (k = 1).", default=None, ge=0, le=1,
-                          write=number_words("", ge=0, le=1))
+    value: float | None = key("The emissivity.", default=None, gt=0, le=1, unit="")
+    u: float | None = key("Its standard uncertainty (k = 1).", default=None, ge=0, le=1, unit="")
     source: Text | None = key("Where it comes from.", default=None,
                               write="where the value comes from, plain text")
     from_: Literal["reference_pairs", "two_backgrounds", "ndvi"] | None = key(
         "How it is found on the day, in place of value: reference or lid rows of the sheet, or "
         "the surface's NDVI.", default=None, alias="from",
         write="reference_pairs, two_backgrounds or ndvi")
-    vegetation: float | None = key("Emissivity of full vegetation, from: ndvi.", default=None,
-                                   gt=0, le=1, write=number_words("", gt=0, le=1))
-    soil: float | None = key("Emissivity of bare ground, from: ndvi.", default=None, gt=0, le=1,
-                             write=number_words("", gt=0, le=1))
+    vegetation: float | None = key(
+        "Emissivity of full vegetation, from: ndvi.", default=None, gt=0, le=1, unit="")
+    soil: float | None = key(
+        "Emissivity of bare ground, from: ndvi.", default=None, gt=0, le=1, unit="")
     form: Literal["linear", "squared", "logarithmic"] | None = key(
         "Form of the vegetation fraction, from: ndvi; absent: linear; or logarithmic in NDVI, for "
         "natural ground, without vegetation and soil.", default=None,
@@ -153,7 +145,7 @@ class Emissivity(Strict):
 class Around(Strict):
     """What surrounds a patch."""
 
-    albedo: Annotated[Amount, BareNumber(None, 0.0, 1.0, number_words("", ge=0, le=1))] = key(
+    albedo: Annotated[Amount, BareNumber(None, 0.0, 1.0)] = key(
         "Its albedo.", write="a number from 0 to 1, or {value, u}")
     u: float | None = u_field("1", "Standard uncertainty of albedo.")
 
@@ -165,9 +157,8 @@ class Around(Strict):
 
     @property
     def amount(self) -> Uncertain:
-        """The albedo with its u, whichever way that was written."""
-        u = self.albedo.u if self.albedo.u is not None else self.u
-        return Uncertain(value=self.albedo.value, u=u or 0.0)
+        """The albedo with its u."""
+        return whole(self.albedo, self.u)
 
 
 class Surface(Strict):
@@ -181,7 +172,7 @@ class Surface(Strict):
         "reflectance index.", default=None, write="{value, u, source}")
     slope_deg: float | None = key(
         "Its slope, for the conditions of published methods.", default=None, ge=0, le=90,
-        write=number_words("deg", ge=0, le=90))
+        unit="deg")
     around: Around | None = key("What surrounds its patches.", default=None, write="{albedo, u}")
 
     def faults(self) -> Iterator[Fault]:
@@ -197,8 +188,7 @@ class Conditions(Strict):
     sky: Literal["clear", "broken", "overcast"] | None = key(
         "The sky as seen.", default=None, write="clear, broken or overcast")
     rain_48h_mm: float | None = key(
-        "Rain in the 48 h before.", default=None, ge=0, le=2000,
-        write=number_words("mm", ge=0, le=2000))
+        "Rain in the 48 h before.", default=None, ge=0, le=2000, unit="mm")
 
 
 class Intervention(Strict):
@@ -212,10 +202,9 @@ class Intervention(Strict):
 class RelevantChange(Strict):
     """The smallest difference that matters."""
 
-    temperature: float = key("Of temperatures [K].", default=1.0, gt=0,
-                             write=number_words("K", gt=0))
-    albedo: float = key("Of albedos.", default=0.02, gt=0, write=number_words("", gt=0))
-    ndvi: float = key("Of NDVI.", default=0.03, gt=0, write=number_words("", gt=0))
+    temperature: float = key("Of temperatures [K].", default=1.0, gt=0, unit="K")
+    albedo: float = key("Of albedos.", default=0.02, gt=0, unit="")
+    ndvi: float = key("Of NDVI.", default=0.03, gt=0, unit="")
 
     def of(self, quantity: str) -> float:
         """Return that of a quantity: temperature [K], albedo or ndvi."""

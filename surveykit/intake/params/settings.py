@@ -146,6 +146,34 @@ class ComparisonSettings(Strict):
                 *rising(self, "model_u_matched", "model_u_partly")]
 
 
+class PlanningSettings(Strict):
+    """What a plan assumes before the day."""
+
+    temperature_between_k: float = setting(
+        0.5, "K", "Standard deviation between passes where no earlier campaign tells it.", ge=0)
+    temperature_within_k: float = setting(
+        0.3, "K", "Standard uncertainty within a pass where no earlier campaign tells it.", gt=0)
+    albedo_between: float = setting(0.01, "1", "The same between passes, of albedo.", ge=0)
+    albedo_within: float = setting(0.005, "1", "The same within a pass, of albedo.", gt=0)
+    ndvi_between: float = setting(0.01, "1", "The same between passes, of NDVI.", ge=0)
+    ndvi_within: float = setting(0.005, "1", "The same within a pass, of NDVI.", gt=0)
+    reach_m: float = setting(
+        1.0, "m", "Greatest height at which a hand-held pole carries a head level.", gt=0)
+    contrast: float = setting(
+        0.5, "1", "Relative contrast of albedo between a patch and what surrounds it, where "
+        "neither is known.", gt=0)
+    least_contrast: float = setting(
+        0.05, "1", "Contrast below which a head is not lifted any further.", gt=0)
+    spot_share: float = setting(
+        0.33, "1", "Largest spot of an infrared head, as a share of the patch.", gt=0, le=1)
+    hold_below_m_s: float = setting(
+        0.3, "m s-1", "Walking speed below which the plan says stop and hold.", ge=0)
+    control_every_min: float = setting(
+        20.0, "min", "Longest time between two visits to the control.", gt=0)
+    walk_min: float = setting(1.0, "min", "Walk from one patch to the next.", ge=0)
+    least_rounds: int = setting(3, "1", "Least rounds over all patches.", ge=1)
+
+
 def _section(model: type[Strict], description: str) -> Any:
     return key(description, default_factory=model, write="keys of this section, with their values")
 
@@ -172,6 +200,7 @@ class Settings(Strict):
     passes: PassSettings = _section(PassSettings, "Passes.")
     statistics: StatisticsSettings = _section(StatisticsSettings, "Draws and intervals.")
     comparison: ComparisonSettings = _section(ComparisonSettings, "Comparison of dates.")
+    planning: PlanningSettings = _section(PlanningSettings, "Planning of a survey day.")
 
     def listing(self) -> list[SettingRow]:
         """Return every setting with its value, unit, origin ('yours' if changed) and source."""

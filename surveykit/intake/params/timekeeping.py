@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping, Sequence
-from datetime import UTC, datetime
+from datetime import datetime
 from typing import Annotated
 
 from surveykit.intake.params.amounts import (
@@ -13,21 +13,21 @@ from surveykit.intake.params.amounts import (
     Uncertain,
     given_once,
     u_field,
+    whole,
 )
-from surveykit.intake.params.base import Fault, Name, Strict, key, number_words
+from surveykit.intake.params.base import Fault, Name, Strict, key, since_epoch_ns
 
 
 class Clock(Strict):
     """A logger's clock against UTC, found out in the field."""
 
-    offset_s: Annotated[Amount, BareNumber(
-        None, -86400.0 * 366, 86400.0 * 366, number_words("s"))] = key(
+    offset_s: Annotated[Amount, BareNumber(None, -86400.0 * 366, 86400.0 * 366, "s")] = key(
         "Seconds to ADD to the logger's time; positive: its clock was slow.",
         default=0.0, validate_default=True, write="a number of seconds, or {value, u}")
     u_s: float | None = u_field("s", "Standard uncertainty of offset_s.")
     drift_ppm: float = key(
         "Rate of the offset: microseconds to add for each second after drift_from.", default=0.0,
-        ge=-10000, le=10000, write=number_words("ppm", ge=-10000, le=10000))
+        ge=-10000, le=10000, unit="ppm")
     drift_from: str | None = key(
         "When offset_s held, ISO 8601 with its offset or Z.", default=None,
         write='a time such as "2025-07-24T08:00:00Z", in quotes')
@@ -39,7 +39,7 @@ class Clock(Strict):
         "readings share.", default=None, write="the name of another logger of this file")
     search_s: Annotated[float, FromSettings("clocks.search_s")] = key(
         "How far from offset_s to search; absent: settings.clocks.search_s.", default=None,
-        validate_default=True, gt=0, le=43200, write=number_words("s", gt=0, le=43200))
+        validate_default=True, gt=0, le=43200, unit="s")
 
     def faults(self) -> Iterator[Fault]:
         """The u of the offset once; a drift needs its beginning; one way to set the clock."""
@@ -71,9 +71,8 @@ class Clock(Strict):
 
     @property
     def offset(self) -> Uncertain:
-        """offset_s with its u [s], whichever way that was written."""
-        u = self.offset_s.u if self.offset_s.u is not None else self.u_s
-        return Uncertain(value=self.offset_s.value, u=u or 0.0)
+        """offset_s with its u [s]."""
+        return whole(self.offset_s, self.u_s)
 
     @property
     def drift_from_ns(self) -> int | None:
@@ -82,21 +81,19 @@ class Clock(Strict):
             moment = datetime.fromisoformat(self.drift_from or "")
         except ValueError:
             return None
-        if moment.tzinfo is None or not 1950 <= moment.year <= 2199:
-            return None
-        step = moment - datetime(1970, 1, 1, tzinfo=UTC)
-        return ((step.days * 86400 + step.seconds) * 1_000_000 + step.microseconds) * 1000
+        known = moment.tzinfo is not None and 1950 <= moment.year <= 2199
+        return since_epoch_ns(moment) if known else None
 
 
 class Watch(Strict):
     """The clock the field sheet was written by."""
 
-    offset_s: Annotated[Amount, BareNumber(None, -86400.0, 86400.0, number_words("s"))] = key(
+    offset_s: Annotated[Amount, BareNumber(None, -86400.0, 86400.0, "s")] = key(
         "Seconds to ADD to the sheet's times to reach UTC.", default=0.0, validate_default=True,
         write="a number of seconds, or {value, u}")
     u_s: Annotated[float, FromSettings("clocks.unchecked_u_s")] = key(
-        "Standard uncertainty of offset_s; absent: settings.clocks.unchecked_u_s.",
-        default=None, validate_default=True, ge=0, write=number_words("s", ge=0))
+        "Standard uncertainty of offset_s; absent: settings.clocks.unchecked_u_s.", default=None,
+        validate_default=True, ge=0, unit="s")
 
     def faults(self) -> Iterator[Fault]:
         """The u of the offset once."""
@@ -110,9 +107,8 @@ class Watch(Strict):
 
     @property
     def offset(self) -> Uncertain:
-        """offset_s with its u [s], whichever way that was written."""
-        u = self.u_s if self.offset_s.u is None else self.offset_s.u
-        return Uncertain(value=self.offset_s.value, u=u)
+        """offset_s with its u [s]."""
+        return whole(self.offset_s, self.u_s)
 
 
 def clock_faults(clocks: Mapping[str, Clock | None], known: Sequence[str]) -> Iterator[Fault]:
