@@ -76,8 +76,9 @@ def _clocks(ingested: Ingested) -> list[str]:
             told = f"refused: {clock.refusal}"
         else:
             drift = f", {clock.drift_ppm:+.0f} ppm" if clock.drift_ppm else ""
-            told = f"{clock.method}: {clock.offset_s:+.2f} s{drift}, u {clock.u_s:.2g} s" + (
-                f"; {clock.note}" if clock.status != "ok" and clock.note else "")
+            told = f"{clock.method}: {clock.offset_s:+.2f} s{drift}, u {clock.u_s:.2g} s"
+            if clock.status != "ok" and clock.pieces:  # part of it refused, or leaning on another
+                told += f"; {clock.note}"
         lines.append(f"  clock of {clock.logger}: {told}")
     return lines
 

@@ -7,7 +7,9 @@ longitude); the modifier standard_error is appendix C of the conventions.
 
 from __future__ import annotations
 
+import os
 import shutil
+import subprocess
 
 import numpy as np
 import pandas as pd
@@ -50,6 +52,27 @@ def test_it_keeps_the_conventions(opened):
             assert data[other].dims == variable.dims
     assert data["pass_start"].attrs["units"] == "seconds since 1970-01-01 00:00:00 UTC"
     assert data["surface_temperature"].attrs["units"] == "degree_Celsius"
+
+
+def test_temperatures_and_times_say_what_their_units_mean(opened):
+    """CF-1.11, 3.1.2 (temperature: on_scale, difference) and 4.4 (leap_seconds: none)."""
+    _, data = opened
+    assert data["surface_temperature"].attrs["units_metadata"] == "temperature: on_scale"
+    error = data["surface_temperature_standard_error"].attrs
+    assert (error["units"], error["units_metadata"]) == ("K", "temperature: difference")
+    assert data["pass_stop"].attrs["units_metadata"] == "leap_seconds: none"
+    assert data.attrs["history"]
+
+
+@pytest.mark.skipif("SURVEYKIT_CF_CHECKER" not in os.environ,
+                    reason="SURVEYKIT_CF_CHECKER names no checker of the conventions")
+def test_a_reference_checker_finds_nothing(opened):
+    """The checker that the variable names (compliance-checker 6 of the IOOS), against CF-1.11."""
+    done = subprocess.run(
+        [os.environ["SURVEYKIT_CF_CHECKER"], "-t", "cf:1.11", "-c", "strict",
+         opened[0] / "reports" / f"{NAME}.nc"], capture_output=True, text=True, check=False)
+    assert done.returncode == 0, done.stdout
+    assert "All tests passed!" in done.stdout, done.stdout
 
 
 def test_it_holds_the_numbers_of_the_tables(opened):

@@ -121,6 +121,32 @@ def test_passes_take_the_spread_of_the_earlier_campaign(plan, survey):
     assert (row["between"], row["within"], row["wanted"], row["passes"]) == (0.5, 0.3, 1.0, 4)
 
 
+def test_what_a_plan_assumes_is_a_setting(survey):
+    """Each moves what it says: reach the heights, patience the control, spread the passes."""
+    def planned(**changed):
+        settings = survey.campaign.settings
+        settings = settings.model_copy(update={
+            "planning": settings.planning.model_copy(update=changed)})
+        campaign = survey.campaign.model_copy(update={
+            "settings": settings,
+            "comparison": survey.campaign.comparison.model_copy(update={"earlier": ()})})
+        other = dataclasses.replace(survey, made={}, parameters=dataclasses.replace(
+            survey.parameters, campaign=campaign))
+        made = planning.make(other)
+        return made, planning.order(other, made, planning.rounds_needed(other, made))
+
+    plan, visits = planned()
+    low, seldom = planned(reach_m=0.5, control_every_min=1e6)
+    assert plan.heights["height_m"].max() == pytest.approx(1.0)
+    assert low.heights["height_m"].max() == pytest.approx(0.5)
+    control = survey.campaign.comparison.control
+    assert (visits["surface"] == control).sum() > (seldom["surface"] == control).sum() == 2
+    wide, _ = planned(albedo_between=0.02)
+    need = [made.passes.set_index("quantity")["passes"]["albedo"].iloc[0] for made in (plan, wide)]
+    assert need == [passes_needed(0.01, 0.005, 0.02), passes_needed(0.02, 0.005, 0.02)]
+    assert need[1] > need[0]
+
+
 def test_walking_by_hand():
     """Hand arithmetic: 0.5 m in three time constants of 1 s; a cone of 22 degrees fills a third of
     a patch of 1 m from 1 / (6 tan 22 deg) = 0.4125 m; a full view of 125 degrees held at 5 cm sees

@@ -118,7 +118,7 @@ def _gains(day: Day, this: Pass) -> tuple[list[Input], tuple[str, ...]]:
     if found.sd > settings.swap_max_sd:
         return own, (f"swaps not used: their ratios scatter by more than "
                      f"{settings.swap_max_sd:.0%}",)
-    flags = ("fewer swaps than recommended",) if found.n < settings.swap_min_pairs else ()
+    flags = ("fewer or shorter swaps than recommended",) if found.few else ()
     return [ratio_input(day, "gain_ratio", found, up, "gain ratio by swapping the heads"),
             fixed("ratio_per_up_zero", found.per_up_zero),
             fixed("ratio_per_down_zero", found.per_down_zero),

@@ -2,9 +2,7 @@
 
 from __future__ import annotations
 
-import numpy as np
-
-from surveykit.core import FloatArray, Input
+from surveykit.core import Input
 from surveykit.evidence.conditions import NS, Day, Span
 from surveykit.evidence.models import RESPONSE
 from surveykit.evidence.parts import NotEvaluated, fixed
@@ -84,12 +82,8 @@ def seen_in(day: Day, channel: Channel, row: Entry, *, before_s: float = 0.0) ->
     edge = round((min(row.edge_u_s, (stop - start) / NS / 4)
                   + settle * channel.time_constant_s) * NS)
     _, logged = day.readings(channel, start + edge, stop - edge)
-    return float(_undone(day, channel, row, logged).mean()) if logged.size else None
-
-
-def _undone(day: Day, channel: Channel, span: Span, logged: FloatArray) -> FloatArray:
-    held = {i.name: i.value for i in setting_inputs(day, channel, span)}
-    if held["emissivity_setting"] == 1.0:
-        return logged
-    return np.asarray(brightness_without_setting(
-        window_of(channel), logged, held["emissivity_setting"], held["reflected_k"]))
+    if not logged.size:
+        return None
+    held = {i.name: i.value for i in setting_inputs(day, channel, row)}
+    return float(logged.mean() if held["emissivity_setting"] == 1.0 else brightness_without_setting(
+        window_of(channel), logged, held["emissivity_setting"], held["reflected_k"]).mean())

@@ -12,6 +12,7 @@ from surveykit.evidence.brightness import housing
 from surveykit.evidence.conditions import NS, Day, Sky
 from surveykit.evidence.corrections import Correction, correct
 from surveykit.evidence.infrared import (
+    Found,
     emissivity_corrections,
     head_inputs,
     per_record,
@@ -56,8 +57,8 @@ def contact(day: Day, this: Pass, sky: Sky) -> PassValue:
     means = np.array([one.value for one in found])
     if placed is not None:
         inputs["head_cooling_k"] = fixed("head_cooling_k", placed.mean_k - float(means.mean()))
-    inputs |= _cooling_inputs(day, this, cooled, placed)
-    flags += _cooling_flags(day, cooled, placed)
+    cooling, more = _cooling(day, this, cooled, placed)
+    inputs, flags = inputs | cooling, flags + more
     raw = float(np.mean([brightness[a:b].mean() for a, b in spans]))
     inputs["brightness_k"] = fixed("brightness_k", raw)
     values = means if placed is None else placed.before_k
@@ -79,8 +80,7 @@ def contact(day: Day, this: Pass, sky: Sky) -> PassValue:
                      flags + made.flags, made.steps, tuple(rows))
 
 
-def _inputs(day: Day, this: Pass, sky: Sky,
-            brightness: FloatArray) -> tuple[dict[str, Input], tuple[str, ...]]:
+def _inputs(day: Day, this: Pass, sky: Sky, brightness: FloatArray) -> Found:
     inputs, flags = head_inputs(day, this, sky, brightness)
     channel = this.channels["brightness_temperature"]
     settings = day.parameters.campaign.settings.temperature
@@ -192,28 +192,22 @@ def placement_courses(day: Day, this: Pass, tau: float) -> list[tuple[FloatArray
     return out
 
 
-def _cooling_inputs(day: Day, this: Pass, cooled: float,
-                    placed: CoolingFit | None) -> dict[str, Input]:
+def _cooling(day: Day, this: Pass, cooled: float, placed: CoolingFit | None) -> Found:
+    """Return the inputs of the cooling under the head, fitted or whole, and flags."""
     settings, scope = day.parameters.campaign.settings.temperature, f"{day.name}:{this.surface}"
     if placed is None:
+        if cooled > settings.head_cooling_max_k:
+            raise NotEvaluated(f"the ground cools by about {cooled:.1f} K under the head, more "
+                               f"than {settings.head_cooling_max_k:g} without the fit")
         return {"head_cooling_error": Input(
             "head_cooling_error", 0.0, cooled * HALF_WIDTH, f"{scope}:head cooling",
-            "cooling of the ground under the head, not corrected", "rectangular")}
+            "cooling of the ground under the head, not corrected", "rectangular")}, (
+                ("head cooling not corrected",) if cooled > 0 else ())
     return {
         "head_cooling_error": Input(
             "head_cooling_error", 0.0, settings.head_cooling_u_k, f"{scope}:head cooling",
             "form of the law of cooling under the head"),
         "fit_left": Input("fit_left", 0.0, placed.u_mean_k, pass_scope(day, this),
-                          "fit of the cooling under the head")}
-
-
-def _cooling_flags(day: Day, cooled: float, placed: CoolingFit | None) -> tuple[str, ...]:
-    settings = day.parameters.campaign.settings.temperature
-    if placed is None:
-        if cooled > settings.head_cooling_max_k:
-            raise NotEvaluated(f"the ground cools by about {cooled:.1f} K under the head, more "
-                               f"than {settings.head_cooling_max_k:g} without the fit")
-        return ("head cooling not corrected",) if cooled > 0 else ()
-    if placed.rate < -3 * placed.u_rate:
-        return ("the ground warms under the head: the law of cooling does not hold",)
-    return ()
+                          "fit of the cooling under the head")}, (
+        ("the ground warms under the head: the law of cooling does not hold",)
+        if placed.rate < -3 * placed.u_rate else ())

@@ -39,13 +39,9 @@ class Corrected(NamedTuple):
     flags: tuple[str, ...]
 
 
-def _mean(values: FloatArray) -> float:
-    return float(np.mean(values))
-
-
 def correct(model: str, inputs: Inputs, corrections: Sequence[Correction], owner: str, *,
             series: Mapping[str, Any] | None = None,
-            reduce: Callable[[FloatArray], float] = _mean) -> Corrected:
+            reduce: Callable[[FloatArray], Any] = np.mean) -> Corrected:
     """Apply corrections in their order, the first step being the raw value.
 
     Parameters
@@ -73,7 +69,7 @@ def correct(model: str, inputs: Inputs, corrections: Sequence[Correction], owner
     full: dict[str, Any] = {name: i.value for name, i in inputs.items()} | dict(series or {})
 
     def value(x: Mapping[str, Any]) -> float:
-        return reduce(np.asarray(run(x), dtype=np.float64))
+        return float(reduce(np.asarray(run(x), dtype=np.float64)))
 
     x = dict(full)
     for one in corrections:

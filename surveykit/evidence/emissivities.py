@@ -162,14 +162,15 @@ def _from_ndvi(day: Day, surface: str, entry: Emissivity) -> Found:
                      f"emissivity from NDVI {index:.2f} (logarithmic)"), (
                          f"emissivity from NDVI (logarithmic): {NOT_FOR}",)
     ends = limits.bare_ndvi, limits.full_ndvi
-    share = float(vegetation_fraction(index, *ends, form))
-    steps = [float(vegetation_fraction(index, ends[0] + limits.cover_ndvi_u, ends[1], form)),
-             float(vegetation_fraction(index, ends[0], ends[1] + limits.cover_ndvi_u, form))]
-    vegetation, soil = float(entry.vegetation or 0.0), float(entry.soil or 0.0)
-    u = float(np.linalg.norm([u, *((step - share) * (vegetation - soil) for step in steps)]))
+
+    def mixed(low: float, high: float) -> FloatArray:
+        share = vegetation_fraction(index, low, high, form)
+        return emissivity_mixed(share, float(entry.vegetation or 0.0), float(entry.soil or 0.0))
+
+    u = float(np.hypot(u, combined_u(mixed, ends, [limits.cover_ndvi_u] * 2)))
     flags: tuple[str, ...] = (f"emissivity from NDVI ({form} vegetation fraction): {NOT_FOR}",)
     if not ends[0] <= index <= ends[1]:
         flags += ("NDVI outside the range of the vegetation fraction",)
-    return Input("emissivity", float(emissivity_mixed(share, vegetation, soil)), u,
+    return Input("emissivity", float(mixed(*ends)), u,
                  f"{day.name}:emissivity:{surface}:ndvi",
                  f"emissivity from NDVI {index:.2f} ({form} vegetation fraction)"), flags

@@ -17,6 +17,7 @@ from surveykit.statistics.series import mean_of_series
 class Ratios(NamedTuple):
     """Response of the ground head over that of the sky head: one value a swap or a panel row.
 
+    `few` says that fewer swaps, or shorter ones, are behind it than recommended.
     `per_up_zero` and `per_down_zero` say how the ratio moves, relative, with the zero errors of
     the ground head and the sky head in their usual places [1 / unit].
     """
@@ -27,6 +28,7 @@ class Ratios(NamedTuple):
     sd: float
     per_up_zero: float = 0.0
     per_down_zero: float = 0.0
+    few: bool = False
 
 
 def swapped(day: Day, up: Channel, down: Channel, product: str,
@@ -41,6 +43,7 @@ def swapped(day: Day, up: Channel, down: Channel, product: str,
             and e.instrument in ("", up.logger, down.logger)]
     found: list[HeadRatio] = []
     per_zero: list[tuple[float, float]] = []
+    settings, long = day.parameters.campaign.settings.albedo, 0
     for first, second in zip(rows[::2], rows[1::2], strict=False):
         if (first.reading > 0) == (second.reading > 0):
             continue  # not a pair: the sheet's check has said so
@@ -49,13 +52,15 @@ def swapped(day: Day, up: Channel, down: Channel, product: str,
         b = _over(day, inverted, down, up)
         if a is not None and b is not None:
             found.append(head_ratio_by_swap(a.ratio, b.ratio, a.u, b.u))
+            long += all(e.stop_ns - e.start_ns >= settings.swap_min_s * NS for e in (first, second))
             per_zero.append(((1 / a.reflected + 1 / ground_share / b.incoming) / 2,
                              -(1 / a.incoming + ground_share / b.reflected) / 2))
     made = _together([float(f.ratio) for f in found], [float(f.u) for f in found])
     if made is None:
         return None
     moves = np.mean(per_zero, axis=0)
-    return made._replace(per_up_zero=float(moves[0]), per_down_zero=float(moves[1]))
+    return made._replace(per_up_zero=float(moves[0]), per_down_zero=float(moves[1]),
+                         few=long < settings.swap_min_pairs)
 
 
 def over_panel(day: Day, up: Channel, down: Channel) -> Ratios | None:

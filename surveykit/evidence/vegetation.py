@@ -116,8 +116,8 @@ def _gains(day: Day, this: Pass) -> tuple[list[Input], tuple[str, ...]]:
     if "panel" in source:
         made.append(Input("panel_error", 0.0, panel_u(day, *pairs["red"]), f"{day.name}:panel",
                           "reflectance of the panel"))
-    few = min(one.n for one in ratios.values()) < settings.albedo.swap_min_pairs
-    return [*none, *made], ("fewer swaps than recommended",) if few and "swap" in source else ()
+    few = any(one.few for one in ratios.values())
+    return [*none, *made], ("fewer or shorter swaps than recommended",) if few else ()
 
 
 def _mean_of_ratios(read: dict[str, np.ndarray]) -> tuple[str, ...]:

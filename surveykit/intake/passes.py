@@ -19,6 +19,8 @@ from surveykit.intake.sheet_words import Entry
 
 NS = 1_000_000_000
 NAN = float("nan")
+WRITTEN = ("surface", "patch", "quantity", "mode", "row", "start_ns", "stop_ns", "height_m",
+           "lanes", "reading", "rod_side", "operator_side")  # taken from the row as they stand
 
 __all__ = ["Pass", "check_coverage", "find_dwells", "match_passes"]
 
@@ -125,13 +127,11 @@ def match_passes(sheet: Sheet, parameters: Parameters,
         trim_s, notes = _trim(entry, service.channels, parameters, () if refusal else used)
         width_m, length_m = sizes.get(entry.patch, (NAN, NAN))
         passes.append(Pass(
-            name=f"{entry.patch}-{word}-{count[entry.patch, word]}", surface=entry.surface,
-            patch=entry.patch, quantity=entry.quantity, kind=service.kind, mode=entry.mode,
-            row=entry.row, start_ns=entry.start_ns, stop_ns=entry.stop_ns, trim_s=trim_s,
+            **{name: getattr(entry, name) for name in WRITTEN}, kind=service.kind,
+            name=f"{entry.patch}-{word}-{count[entry.patch, word]}", trim_s=trim_s,
             from_ns=entry.start_ns + round(trim_s * NS), to_ns=entry.stop_ns - round(trim_s * NS),
-            channels=service.channels, height_m=entry.height_m, width_m=width_m,
-            length_m=length_m, lanes=entry.lanes, reading=entry.reading, notes=notes,
-            refusal=refusal, rod_side=entry.rod_side, operator_side=entry.operator_side,
+            channels=service.channels, width_m=width_m, length_m=length_m, notes=notes,
+            refusal=refusal,
             skew_u_s=used[0].u_between(used[1], (entry.start_ns + entry.stop_ns) / 2,
                                        parameters.campaign.watch.offset.u)
             if len(used) == 2 and not refusal else 0.0))
@@ -146,15 +146,11 @@ def _trim(entry: Entry, channels: Mapping[str, Channel], parameters: Parameters,
     ends = entry.start_ns, entry.stop_ns
     u_clock = max((clock.u_against_watch(end, watch_u_s) for clock in clocks for end in ends),
                   default=0.0)
-    unstated = [channel.column for channel in channels.values() if channel.time_constant_s is None]
-    slowest = max(channel.time_constant_s or 0.0 for channel in channels.values())
+    slowest = max(channel.time_constant_s for channel in channels.values())
     settle_s = settings.passes.settle_time_constants * slowest
     notes: tuple[str, ...] = ()
-    if unstated:
-        notes = (f"time constant of {', '.join(unstated)} is not stated: no time to settle is "
-                 "taken off",)
     if any(clock.extrapolated(*ends, settings.clocks.extrapolate) for clock in clocks):
-        notes += ("clock extrapolated",)
+        notes = ("clock extrapolated",)
     return entry.edge_u_s + u_clock + settle_s, notes
 
 

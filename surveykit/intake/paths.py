@@ -124,7 +124,7 @@ def walk(this: Pass, time_ns: IntArray, parameters: Parameters) -> Path | None:
 
 
 def _slowest_s(this: Pass) -> float:
-    return max(channel.time_constant_s or 0.0 for channel in this.channels.values())
+    return max(channel.time_constant_s for channel in this.channels.values())
 
 
 def _turn_s(this: Pass, parameters: Parameters) -> float:

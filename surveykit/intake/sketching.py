@@ -79,7 +79,7 @@ def _entry(name: str, guess: Guess) -> Iterable[str]:
     yield "  time:"
     columns = [_quoted(column) for column in time.columns]
     yield (f"    column: {columns[0] if len(columns) == 1 else '[' + ', '.join(columns) + ']'}  "
-           f"{CONFIRM}: the first record says {_comment(time.example)}")
+           f"{CONFIRM}: the first record says {time.example[:60]!r}")
     also = f"; {' and '.join(map(_quoted, time.others))} would fit as well: day or month first?" \
         if time.others else ""
     yield f"    format: {_quoted(time.format)}  {CONFIRM}{also}"
@@ -99,10 +99,6 @@ def _entry(name: str, guess: Guess) -> Iterable[str]:
         yield f"  time_constant_s:  {FILL_IN}: time to 63 % of a step"
         yield f"  half_angle_deg:  {FILL_IN}: half of the field of view, 90 for a hemisphere"
         yield '  # calibration: {id: ..., date: "YYYY-MM-DD", valid_days: 730}  ' + FILL_IN
-
-
-def _comment(text: str) -> str:
-    return repr(text[:60])
 
 
 def _column(column: ColumnGuess, seen: set[str]) -> Iterable[str]:

@@ -19,8 +19,7 @@ NO_OFFSET = -(2**31)
 FIRST_NS, END_NS = (int(np.datetime64(year, "ns").astype(np.int64)) for year in ("1700", "2200"))
 _OFFSET = re.compile(r"^\s*(.*?\d:?\d\d(?:[.,]\d+)?)\s*"
                      r"(Z|[+-](?:[01]\d|2[0-3])(?::?[0-5]\d)?)?\s*$")
-# where a part stands in ISO 8601, and its digits
-_WIDTHS = {"Y": (0, 4), "m": (5, 2), "d": (8, 2), "H": (11, 2), "M": (14, 2), "S": (17, 2)}
+_WIDTHS = {"Y": 4, "m": 2, "d": 2, "H": 2, "M": 2, "S": 2}
 
 Offsets = NDArray[np.int32]
 Locate = Callable[[BoolArray], str]
@@ -131,7 +130,7 @@ def _formatted(texts: NDArray[np.object_], form: str) -> tuple[IntArray, Offsets
 
 
 def _sliced(texts: NDArray[np.object_], form: str) -> IntArray:
-    """Read times of fixed width by putting their digits in ISO order: far faster than by format."""
+    """Read times of fixed width by the places of their digits: far faster than one by one."""
     wall = np.full(len(texts), NO_TIME_NS, dtype=np.int64)
     places = _places(form)
     try:
@@ -139,29 +138,52 @@ def _sliced(texts: NDArray[np.object_], form: str) -> IntArray:
     except UnicodeEncodeError:
         return wall
     width = table.dtype.itemsize
-    if places is None or not len(texts) or width < places["end"] + places["fraction"]:
+    if places is None or not len(texts) or width < places["end"]:
         return wall
-    cells = table.view(np.uint8).reshape(len(texts), width)
-    iso = np.tile(np.frombuffer(b"0000-00-00T00:00:00", dtype=np.uint8), (len(texts), 1))
+    cells = np.ascontiguousarray(table.view(np.uint8).reshape(len(texts), width).T)
     good = np.ones(len(texts), dtype=np.bool_)
     for at, character in enumerate(places["literals"]):
-        good &= cells[:, at] == character if character else cells[:, at] - np.uint8(48) < 10
-    for name, (slot, digits) in _WIDTHS.items():
-        iso[:, slot:slot + digits] = cells[:, places[name]:places[name] + digits]
-    rest = cells[:, places["end"]:]  # digits of a fraction, up to 9 of them, then nothing
-    digit = rest[:, :9] - np.uint8(48)
-    good &= ((digit < 10) & places["fraction"] | (rest[:, :9] == 0)).all(axis=1)
-    good &= (rest[:, 9:] == 0).all(axis=1)
+        if character:
+            good &= cells[at] == character
+
+    def number(at: int, digits: int) -> NDArray[np.int32]:
+        value = np.zeros(len(texts), dtype=np.int32)
+        for digit in cells[at: at + digits] - np.uint8(48):
+            np.logical_and(good, digit < 10, out=good)
+            value *= np.int32(10)
+            value += digit
+        return value
+
+    part = {name: number(places[name], digits) for name, digits in _WIDTHS.items()}
+    fraction = np.zeros(len(texts), dtype=np.int64)
+    scale = 100_000_000
+    ended = np.zeros(len(texts), dtype=np.bool_)
+    for column in range(places["end"], width):
+        digit = cells[column].astype(np.int64) - 48
+        ended |= cells[column] == 0
+        good &= ended | ((digit >= 0) & (digit < 10) & places["fraction"] & (scale > 0))
+        fraction += np.where(ended, 0, digit) * scale
+        scale //= 10
     if places["fraction"]:
-        good &= rest[:, 0] != 0
-    try:
-        second = iso[good].view("S19")[:, 0].astype("datetime64[s]").astype(np.int64)
-    except ValueError:  # one of them is no date or no time of day
-        return wall
-    fraction = np.where(digit < 10, digit, 0)[good] @ 10 ** np.arange(8, 8 - digit.shape[1], -1)
-    inside = (second >= FIRST_NS // NS) & (second < END_NS // NS)
-    wall[good] = np.where(inside, second * NS + fraction, NO_TIME_NS)
+        good &= cells[places["end"]] != 0 if width > places["end"] else False
+    good &= (part["m"] >= 1) & (part["m"] <= 12) & (part["H"] < 24) & (part["M"] < 60)
+    good &= part["S"] < 60
+    day, good = _days(part["Y"], part["m"], part["d"], good)
+    seconds = day * 86400 + (part["H"] * 3600 + part["M"] * 60 + part["S"])
+    good &= (seconds >= FIRST_NS // NS) & (seconds < END_NS // NS)
+    wall[good] = (seconds * NS + fraction)[good]
     return wall
+
+
+def _days(year: NDArray[np.int32], month: NDArray[np.int32], day: NDArray[np.int32],
+          good: BoolArray) -> tuple[IntArray, BoolArray]:
+    """Return days since 1970, each different month looked up once, and which are days."""
+    code = np.where(good, year * 12 + month - 1, 1970 * 12)
+    first, last = int(code.min()), int(code.max())
+    months = (np.arange(first, last + 2) - 1970 * 12).astype("datetime64[M]")
+    begin = months.astype("datetime64[D]").astype(np.int64)
+    within = (day >= 1) & (day <= np.diff(begin)[code - first])
+    return begin[code - first] + day - 1, good & within
 
 
 def _places(form: str) -> dict | None:
@@ -174,7 +196,7 @@ def _places(form: str) -> dict | None:
             found["literals"].append(ord(piece))
         elif piece[1] in _WIDTHS and piece[1] not in found:
             found[piece[1]] = len(found["literals"])
-            found["literals"] += [0] * _WIDTHS[piece[1]][1]
+            found["literals"] += [0] * _WIDTHS[piece[1]]
         else:
             return None
     found["end"] = len(found["literals"])

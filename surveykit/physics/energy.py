@@ -6,7 +6,6 @@ from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy.optimize import brentq
 
 from surveykit.core import FloatArray, Sourced
 from surveykit.physics.bands import SIGMA
@@ -17,15 +16,16 @@ SRI_AIR = Sourced(310.0, 0.0, "K", E1980)
 SRI_SKY = Sourced(300.0, 0.0, "K", E1980)
 SRI_BLACK = (0.05, 0.90)  # reflectance and emissivity of the black reference (E1980, from memory)
 SRI_WHITE = (0.80, 0.90)  # and of the white one
+HOTTEST_K, STEPS = 600.0, 20  # where the search for a temperature begins, and Newton's steps
 SRI_CONVECTION = {"low": 5.0, "medium": 12.0, "high": 30.0}  # W m-2 K-1, by wind (E1980)
 
 
 class ReflectanceIndex(NamedTuple):
     """SRI by the balance and by the regression equation, and the surface's temperature [K]."""
 
-    balance: float
-    regression: float
-    surface_k: float
+    balance: FloatArray
+    regression: FloatArray
+    surface_k: FloatArray
 
 
 def longwave_up(surface_k: ArrayLike, down_w_m2: ArrayLike, emissivity: ArrayLike) -> FloatArray:
@@ -90,45 +90,49 @@ def net_radiation(albedo: ArrayLike, shortwave_down_w_m2: ArrayLike,
                       - np.asarray(longwave_up_w_m2, dtype=np.float64))
 
 
-def balance_temperature_k(reflectance: float, emissivity: float, convection: float) -> float:
+def balance_temperature_k(reflectance: ArrayLike, emissivity: ArrayLike,
+                          convection: ArrayLike) -> FloatArray:
     """Return the temperature of a surface under the standard conditions of E1980.
 
     Parameters
     ----------
-    reflectance, emissivity : float
+    reflectance, emissivity : array_like
         Solar reflectance and broadband emissivity [1].
-    convection : float
+    convection : array_like
         Convection coefficient [W m-2 K-1]: 5, 12 or 30 for low, medium and high wind.
 
     Returns
     -------
-    float
+    ndarray
         Temperature [K].
 
     References
     ----------
-    ASTM E1980-11, steady heat balance: (1 - R) I = e sigma (T^4 - Tsky^4) + h (T - Ta).
+    ASTM E1980-11, steady heat balance: (1 - R) I = e sigma (T^4 - Tsky^4) + h (T - Ta), by Newton's
+    method from above, where it is convex and each step nears the root.
 
     Examples
     --------
     >>> print(f"{balance_temperature_k(0.05, 0.90, 12.0):.3f}")
     355.607
     """
-    def gain(t: float) -> float:
-        return float((1 - reflectance) * SRI_IRRADIANCE.value
-                     - emissivity * SIGMA.value * (t**4 - SRI_SKY.value**4)
-                     - convection * (t - SRI_AIR.value))
+    absorbed = (1 - np.asarray(reflectance, dtype=np.float64)) * SRI_IRRADIANCE.value
+    emitted = np.asarray(emissivity, dtype=np.float64) * SIGMA.value
+    carried = np.asarray(convection, dtype=np.float64)
+    t = np.full(np.broadcast(absorbed, emitted, carried).shape, HOTTEST_K)
+    for _ in range(STEPS):
+        loss = emitted * (t**4 - SRI_SKY.value**4) + carried * (t - SRI_AIR.value)
+        t = t - (loss - absorbed) / (4 * emitted * t**3 + carried)
+    return t
 
-    return float(brentq(gain, 200.0, 600.0, xtol=1e-10))
 
-
-def solar_reflectance_index(reflectance: float, emissivity: float,
+def solar_reflectance_index(reflectance: ArrayLike, emissivity: ArrayLike,
                             convection: float) -> ReflectanceIndex:
     """Return the solar reflectance index by the heat balance and by the regression equation.
 
     Parameters
     ----------
-    reflectance, emissivity : float
+    reflectance, emissivity : array_like
         Solar reflectance and broadband emissivity [1].
     convection : float
         Convection coefficient [W m-2 K-1]: 5, 12 or 30.
@@ -150,12 +154,10 @@ def solar_reflectance_index(reflectance: float, emissivity: float,
     >>> print(f"{found.balance:.2f} {found.regression:.2f}")
     31.87 32.14
     """
-    surface, black, white = (balance_temperature_k(*pair, convection)
-                             for pair in ((reflectance, emissivity), SRI_BLACK, SRI_WHITE))
-    absorbed = 1 - reflectance
-    regression = float("nan")
-    if absorbed > 0.1 and emissivity > 0.1 and not (absorbed > 0.8 and emissivity < 0.2):
-        chi = ((absorbed - 0.029 * emissivity) * (8.797 + convection)
-               / (9.5205 * emissivity + convection))
-        regression = 123.97 - 141.35 * chi + 9.655 * chi**2
+    surface, black, white = (balance_temperature_k(r, e, convection) for r, e in (
+        (reflectance, emissivity), SRI_BLACK, SRI_WHITE))
+    absorbed, eps = 1 - np.asarray(reflectance, np.float64), np.asarray(emissivity, np.float64)
+    chi = (absorbed - 0.029 * eps) * (8.797 + convection) / (9.5205 * eps + convection)
+    held = (absorbed > 0.1) & (eps > 0.1) & ~((absorbed > 0.8) & (eps < 0.2))
+    regression = np.where(held, 123.97 - 141.35 * chi + 9.655 * chi**2, np.nan)
     return ReflectanceIndex(100 * (black - surface) / (black - white), regression, surface)

@@ -6,7 +6,7 @@ pvlib does the astronomy. Times are int64 ns since the epoch, UTC; `MISSING_NS` 
 from __future__ import annotations
 
 import sys
-from functools import cache
+from functools import cache, lru_cache
 from importlib import import_module
 from importlib.machinery import PathFinder
 from importlib.util import find_spec, module_from_spec
@@ -21,6 +21,7 @@ SOLAR_CONSTANT = Sourced(1361.0, 0.5, "W m-2", "IAU 2015 Resolution B3, nominal 
                          "u: Kopp & Lean (2011), Geophys. Res. Lett. 38, L01706")
 MISSING_NS = np.iinfo(np.int64).min
 _GRID_NS = 60_000_000_000
+_BLOCK = 360  # minutes worked out together
 _REFRACTION_AT_HORIZON_DEG = 0.5667
 _USUAL_AIR_DEGC = 12.0  # only in the refraction of `sun_track`: 0.02 deg at 70 deg zenith in all
 
@@ -138,19 +139,28 @@ def sun_track(time_ns: ArrayLike, latitude: float, longitude: float,
     columns = np.full((5, times.size), np.nan)
     if known.any():
         wanted = times[known]
-        first = wanted.min() // _GRID_NS
+        first = int(wanted.min() // _GRID_NS)
         steps = int(wanted.max() // _GRID_NS - first) + 2
         if steps < wanted.size:
-            grid = (first + np.arange(steps)) * _GRID_NS
-            minutes = (wanted - grid[0]) / _GRID_NS
-            columns[:, known] = [np.interp(minutes, np.arange(steps), column)
-                                 for column in _columns(grid, latitude, longitude, elevation_m)]
+            blocks = range(first // _BLOCK, (first + steps - 1) // _BLOCK + 1)
+            grid = np.concatenate([_block(number, latitude, longitude, elevation_m)
+                                   for number in blocks], axis=1)
+            minutes = (wanted - blocks.start * _BLOCK * _GRID_NS) / _GRID_NS
+            columns[:, known] = [np.interp(minutes, np.arange(grid.shape[1]), column)
+                                 for column in grid]
         else:
             columns[:, known] = _columns(wanted, latitude, longitude, elevation_m)
     east, north, upward, extraterrestrial, clear_sky = columns
     zenith = np.arctan2(np.hypot(east, north), upward)
     return Sun(np.degrees(zenith), np.degrees(np.arctan2(east, north)) % 360, np.cos(zenith),
                     extraterrestrial, clear_sky)
+
+
+@lru_cache(maxsize=64)
+def _block(number: int, latitude: float, longitude: float, elevation_m: float) -> FloatArray:
+    """Return the columns at every minute of a quarter of a day, kept for the passes in it."""
+    minutes = number * _BLOCK + np.arange(_BLOCK)
+    return np.array(_columns(minutes * _GRID_NS, latitude, longitude, elevation_m))
 
 
 def _columns(times: IntArray, latitude: float, longitude: float,

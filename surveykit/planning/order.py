@@ -10,21 +10,10 @@ import pandas as pd
 from surveykit.opening import Survey
 from surveykit.planning.day import Plan
 from surveykit.planning.patches import Patch
+from surveykit.report.standing import SAFETY as SAFETY
 from surveykit.starting import COLUMNS
 
 LIGHT = ("shortwave_down", "shortwave_up", "red_down", "red_up")
-SAFETY = (
-    "Local rules and the site's own safety plan come first; this list replaces neither, and work "
-    "on roofs, roads and electrical plant belongs to people licensed for it.",
-    "Heat: water, shade and breaks planned before the start; nobody works alone; agree beforehand "
-    "who stops the survey and at what local heat warning.",
-    "Traffic: permission of the site, visible clothing, never a back turned to moving vehicles, no "
-    "survey in lanes that are open.",
-    "Heights: within 2 m of an edge or beside roof lights only under the plan of a competent "
-    "person; not in wind or storm.",
-    "Hot ground: pads to kneel on, closed shoes, no bare skin on sunlit paving.",
-    "Eyes and skin: sun protection; never look along the head towards the sun.",
-)
 
 
 def visit_minutes(survey: Survey, patch: Patch) -> float:

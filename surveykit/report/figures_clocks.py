@@ -9,7 +9,7 @@ import seaborn as sns
 
 from . import wording as w
 from .figures_records import _clock_axis
-from .style import INK, MARKERS, MUTED, PALETTE, Drawing, panels, styled
+from .style import INK, MARKERS, MUTED, PALETTE, Drawing, dress, panels, styled
 
 EDGES = ("covered", "uncovered")
 
@@ -85,10 +85,8 @@ def _correlation(name: str, curve: pd.DataFrame) -> Drawing:
     axis.axhline(one["peak"], color=PALETTE[0], linewidth=1, label="peak")
     axis.axhline(one["second"], color=PALETTE[1], linewidth=1, linestyle=":", label="second peak")
     axis.set_xlabel(f"Seconds added to {name}")
-    axis.set_ylabel("Correlation of changes")
     axis.legend(loc="upper right", handlelength=1.6)
-    axis.grid(axis="y")
-    sns.despine(ax=axis)
+    dress(axis, label="Correlation of changes")
     refused = one["status"] == "refused"
     alt = (f"{name} against {one['reference']}: the correlation of their changes peaks at "
            f"{w.number(one['peak'], 2)} with {w.number(one['found_s'], 1, sign=True)} s added; the "

@@ -7,22 +7,11 @@ from collections.abc import Iterable, Mapping
 import matplotlib.dates as mdates
 import numpy as np
 import pandas as pd
-import seaborn as sns
 
 from . import wording as w
 from .figures_records import _clock_axis
 from .figures_results import _axis
-from .style import (
-    HAIRLINE,
-    INK,
-    MAP_RAMP,
-    MARKERS,
-    MUTED,
-    PALETTE,
-    Drawing,
-    panels,
-    styled,
-)
+from .style import HAIRLINE, INK, MAP_RAMP, MARKERS, PALETTE, Drawing, dress, panels, styled
 
 Labels = Mapping[str, str] | None
 PANELS = 6  # of one figure: it still fits a page
@@ -55,11 +44,8 @@ def placement_plot(dwells: pd.DataFrame, labels: Labels = None,
             axis.plot(mdates.date2num(patch["start_utc"]), patch["value"], linestyle="",
                       marker=MARKERS[place % 8], color=PALETTE[place % 8], markersize=3.2,
                       markeredgewidth=0)
-        axis.set_title(w.label(name, labels))
-        axis.set_ylabel("°C")
         axis.locator_params(axis="y", nbins=4)
-        axis.grid(axis="y")
-        sns.despine(ax=axis)
+        dress(axis, w.label(name, labels), "°C")
         spread = block.groupby("pass")["value"].std().mean()
         told.append(f"{w.label(name, labels)} {w.plural(len(block), 'placement')} from "
                     f"{w.number(block['value'].min(), 1)} to {w.number(block['value'].max(), 1)} °C"
@@ -94,10 +80,7 @@ def cooling_plot(courses: pd.DataFrame, labels: Labels = None) -> Drawing:
                   markersize=2.6, label="readings")
         law = block.groupby(block["seconds"].round(1))["law_k"].mean()
         axis.plot(law.index, -law, color=INK, linewidth=1.3, label="fitted law, mean of the passes")
-        axis.set_title(w.label(name, labels))
-        axis.set_ylabel("K")
-        axis.grid(axis="y")
-        sns.despine(ax=axis)
+        dress(axis, w.label(name, labels), "K")
         rates = block.groupby("pass")["rate"].first()
         told.append(f"{w.label(name, labels)} {w.number(float(rates.mean()), 2)} K s⁻¹ᐟ² over "
                     f"{w.plural(len(rates), 'pass', 'passes')}, so "
@@ -132,10 +115,8 @@ def _map_plot(pair: tuple[str, str], block: pd.DataFrame, labels: Labels) -> Dra
         some = block[(block["surface"] == surface) & (block["patch"] == patch)]
         drawn = axis.scatter(some["x_m"], some["y_m"], c=some["value"], cmap=MAP_RAMP, s=14,
                              marker="s", linewidths=0, vmin=low, vmax=high)
-        axis.set_title(f"{w.label(surface, labels)}, {patch}")
         axis.set_aspect("equal")
-        axis.set_ylabel("Across the lanes, m")
-        sns.despine(ax=axis)
+        dress(axis, f"{w.label(surface, labels)}, {patch}", "Across the lanes, m", "")
         ends = [w.number(float(some["value"].quantile(q)), w.places(pair[0])) for q in (0.05, 0.95)]
         told.append(f"{w.label(surface, labels)}, patch {patch}, nine tenths of "
                     f"{w.plural(len(some), 'record')} from {ends[0]} to "
@@ -163,10 +144,8 @@ def _histogram_plot(histograms: pd.DataFrame, labels: Labels) -> Drawing:
         first, low, high = bars.iloc[0], bars["lower"].min(), bars["upper"].max()
         axis.bar(bars["lower"], bars["n_records"], bars["upper"] - bars["lower"], align="edge",
                  color=PALETTE[0], edgecolor="white", linewidth=0.4)
-        axis.set_title(f"{name}, {w.label(first['surface'], labels)}")
         axis.set_xlabel(_axis(first["quantity"], first["unit"]))
-        axis.set_ylabel("Records")
-        sns.despine(ax=axis)
+        dress(axis, f"{name}, {w.label(first['surface'], labels)}", "Records", "")
         ends = [w.number(end, w.places(first["quantity"])) for end in (low, high)]
         told.append(f"{name}, {w.plural(int(bars['n_records'].sum()), 'record')} from {ends[0]} to "
                     f"{w.with_unit(ends[1], first['unit'])}")
@@ -217,10 +196,7 @@ def heights_drawn(curves: Iterable[tuple[str, pd.DataFrame]]) -> Drawing:
         axis.set_xscale("log")
         axis.xaxis.set_major_formatter(lambda value, _: f"{value:g}")
         axis.set_ylim(0, 100 * min(0.6, 1.2 * float(block["effect"].max())))
-        axis.set_title(title)
-        axis.set_ylabel("%", color=MUTED)
-        axis.grid(axis="y")
-        sns.despine(ax=axis)
+        dress(axis, title, "%")
         told.append(f"{title}: " + w.listing(f"{role} {text}" for role, text in marks.items()))
     axes[-1].set_xlabel("Height of the head, cm")
     seen = dict(pair for axis in axes for pair in zip(

@@ -13,7 +13,7 @@ from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 
 from . import wording as w
-from .style import HATCHES, INK, MUTED, PALETTE, PAPER, Drawing, panels, shorten, styled
+from .style import HATCHES, INK, MUTED, PALETTE, PAPER, Drawing, of_each, panels, shorten, styled
 
 Labels = Mapping[str, str] | None
 TRACKS = (("irradiance_w_m2", "irradiance", "W m⁻²"), ("zenith_deg", "sun height", "°"),
@@ -150,9 +150,8 @@ def _losses(block: pd.DataFrame) -> dict[str, int]:
 
 def budget_plot(budget: pd.DataFrame, labels: Labels = None) -> tuple[Drawing, ...]:
     """Return one plot of variance shares a quantity of the table `budget`."""
-    quantities = dict.fromkeys(quantity for (quantity, _), _ in w.families(budget))
-    return tuple(_budget_of(budget, quantity, labels) for quantity in quantities) or (
-        Drawing(None, "No uncertainty budget could be drawn up, so there are no shares to draw."),)
+    return of_each(budget, lambda quantity: _budget_of(budget, quantity, labels),
+                   "No uncertainty budget could be drawn up, so there are no shares to draw.")
 
 
 @styled

@@ -11,7 +11,19 @@ from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 
 from . import wording as w
-from .style import INK, MARKERS, MUTED, PALETTE, PAPER, RAMP, Drawing, panels, shorten, styled
+from .style import (
+    INK,
+    MARKERS,
+    MUTED,
+    PALETTE,
+    PAPER,
+    RAMP,
+    Drawing,
+    of_each,
+    panels,
+    shorten,
+    styled,
+)
 
 Labels = Mapping[str, str] | None
 ROW_IN, FRAME_IN = 0.34, 0.75
@@ -19,13 +31,12 @@ ROW_IN, FRAME_IN = 0.34, 0.75
 
 def interval_plots(surfaces: pd.DataFrame, labels: Labels = None) -> tuple[Drawing, ...]:
     """Return one interval plot a quantity of the table `surfaces`."""
-    quantities = dict.fromkeys(quantity for (quantity, _), _ in w.families(surfaces))
-    return tuple(interval_plot(surfaces, quantity, labels) for quantity in quantities) or (
-        Drawing(None, "No surface was surveyed, so there is no interval to draw."),)
+    return of_each(surfaces, lambda quantity: _interval_plot(surfaces, quantity, labels),
+                   "No surface was surveyed, so there is no interval to draw.")
 
 
 @styled
-def interval_plot(surfaces: pd.DataFrame, quantity: str, labels: Labels = None) -> Drawing:
+def _interval_plot(surfaces: pd.DataFrame, quantity: str, labels: Labels = None) -> Drawing:
     """Draw value and interval by surface, a panel a kind, on one scale.
 
     Filled marks are unqualified, hollow ones qualified or without an interval; a surface that was

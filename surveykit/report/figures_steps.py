@@ -7,11 +7,10 @@ from collections.abc import Mapping, Sequence
 import matplotlib.dates as mdates
 import numpy as np
 import pandas as pd
-import seaborn as sns
 
 from . import wording as w
 from .figures_results import _axis, _rows
-from .style import INK, MARKERS, MUTED, PALETTE, Drawing, panels, shorten, styled
+from .style import INK, MARKERS, MUTED, PALETTE, Drawing, dress, of_each, panels, shorten, styled
 
 Labels = Mapping[str, str] | None
 RAW = "raw"
@@ -19,9 +18,8 @@ RAW = "raw"
 
 def correction_plots(corrections: pd.DataFrame, labels: Labels = None) -> tuple[Drawing, ...]:
     """Return for each quantity one plot of the table `corrections`, from raw to final value."""
-    quantities = dict.fromkeys(quantity for (quantity, _), _ in w.families(corrections))
-    return tuple(_correction_plot(corrections, quantity, labels) for quantity in quantities) or (
-        Drawing(None, "No pass has a value, so there are no corrections to draw."),)
+    return of_each(corrections, lambda quantity: _correction_plot(corrections, quantity, labels),
+                   "No pass has a value, so there are no corrections to draw.")
 
 
 @styled
@@ -113,10 +111,8 @@ def _series_plot(series: pd.DataFrame, quantity: str, labels: Labels,
                 f"on {w.date_text(r['date'])}" for r in rows.to_dict("records")))
         for one in interventions:
             axis.axvline(float(mdates.datestr2num(one["date"])), color=MUTED, linestyle=":")
-        axis.set_title(w.quantity_text(quantity, kind))
-        axis.set_ylabel(_axis(quantity, block["unit"].iloc[0]).rpartition(", ")[2])
-        axis.grid(axis="y")
-        sns.despine(ax=axis)
+        dress(axis, w.quantity_text(quantity, kind),
+              _axis(quantity, block["unit"].iloc[0]).rpartition(", ")[2])
     axes[-1].set_xticks([days[date] for date in dates],
                         [w.date_text(date).rpartition(" ")[0] for date in dates], color=INK)
     axes[-1].set_xlabel(f"Date in {' and '.join(dict.fromkeys(date[:4] for date in dates))}")

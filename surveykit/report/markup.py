@@ -6,13 +6,14 @@ becomes a sentence that says so.
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from html import escape
 from typing import Literal
 
 from .typeset import typeset
-from .wording import sentence_case, with_labels
+from .wording import sentence_case
 
 NO_BREAK = "\u00a0"
 Align = Literal["text", "short", "long", "number", "code"]
@@ -70,6 +71,19 @@ class Cell:
         if self.room:
             inner += f'<span class="tail" style="min-width:{self.room:g}ch">{tail}</span>'
         return inner
+
+
+def with_labels(text: str, labels: Mapping[str, str]) -> str:
+    """Return a text in which each whole name is told by its label.
+
+    Examples
+    --------
+    >>> with_labels("brick-path since path-2, surfaces.path.x", {"brick-path": "Path", "path": "Y"})
+    'Path since path-2, surfaces.path.x'
+    """
+    names = "|".join(map(re.escape, labels))
+    return re.sub(rf"(?<![\w.-])({names})(?![\w-]|\.\w)", lambda m: labels[m[1]],
+                  text) if names else text
 
 
 class Notes:

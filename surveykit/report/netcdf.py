@@ -60,6 +60,7 @@ def write_netcdf(tables: Mapping[str, pd.DataFrame], path: Path, facts: Mapping[
         seconds = passes[name].dt.as_unit("ns").astype("int64").to_numpy() / 1e9
         variables[f"pass_{name.removesuffix('_utc')}"] = ("pass", seconds, {
             "standard_name": "time", "units": EPOCH, "calendar": "standard",
+            "units_metadata": "leap_seconds: none",
             "long_name": f"{name.removesuffix('_utc')} of the pass"})
     variables["pass_zenith"] = ("pass", passes["zenith_deg"].to_numpy(float), {
         "standard_name": "solar_zenith_angle", "units": "degree",
@@ -71,6 +72,7 @@ def write_netcdf(tables: Mapping[str, pd.DataFrame], path: Path, facts: Mapping[
     version = facts.get("versions", {}).get("surveykit", "")
     data = xr.Dataset(variables, attrs={
         "Conventions": "CF-1.11", "title": facts["title"], "source": f"surveykit {version}".strip(),
+        "history": f"made by surveykit {version} from the tables of its report",
         "comment": f"campaign {facts['campaign']}; intervals cover {facts['coverage']:g}"})
     encoding = {name: {"_FillValue": NAN if data[name].dtype.kind == "f" else None}
                 for name in data.variables}
@@ -99,6 +101,8 @@ def _values(variables: dict[str, tuple[Any, ...]], table: pd.DataFrame, dimensio
         difference = suffix == "_standard_error" and quantity == "temperature"
         about = {"units": "K" if difference else UNITS[quantity],
                  "long_name": f"{LONG[quantity]}{suffix.replace('_', ' ')}"}
+        if quantity == "temperature":
+            about["units_metadata"] = f"temperature: {'difference' if difference else 'on_scale'}"
         if suffix in ("", "_standard_error"):
             modifier = " standard_error" if suffix else ""
             about["standard_name"] = f"{CF_NAMES[quantity]}{modifier}"

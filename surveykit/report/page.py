@@ -192,8 +192,6 @@ def _summary(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> li
             sentences.differs(tables["differences"], facts),
             empty="No two surfaces could be compared.")]),
         ("changed", "What changed", [_changes(tables, facts)]),
-        *([("derived", "What was asked for besides",
-            [t.derived_table(tables["derived"], labels)])] if len(tables["derived"]) else []),
         ("not-evaluated", "What could not be evaluated, and why", [bullets(
             sentences.not_evaluated(tables, labels),
             empty="Nothing was surveyed." if surfaces.empty else

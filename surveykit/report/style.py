@@ -10,11 +10,12 @@ from __future__ import annotations
 import base64
 import io
 import warnings
-from collections.abc import Iterable
-from typing import Any, NamedTuple
+from collections.abc import Callable, Iterable
+from typing import Any, Literal, NamedTuple
 
 import matplotlib as mpl
 import numpy as np
+import pandas as pd
 import seaborn as sns
 from IPython.display import display
 from matplotlib.axes import Axes
@@ -25,6 +26,7 @@ from PIL import Image
 
 from .markup import paragraph
 from .typeset import typeset
+from .wording import families
 
 WIDTH_IN, DPI = 4.2, 190
 PAPER, INK, MUTED, HAIRLINE = "#ffffff", "#1f1e1b", "#5d5a53", "#d9d5ca"
@@ -69,6 +71,13 @@ class Drawing(NamedTuple):
     caption: str = ""
 
 
+def of_each(frame: pd.DataFrame, draw: Callable[[str], Drawing],
+            empty: str) -> tuple[Drawing, ...]:
+    """Return a drawing for each quantity of a table, or the sentence that there is none."""
+    quantities = dict.fromkeys(quantity for (quantity, _), _ in families(frame))
+    return tuple(draw(quantity) for quantity in quantities) or (Drawing(None, empty),)
+
+
 styled = mpl.rc_context(STYLE)  # a decorator: draws under the house style
 
 
@@ -79,6 +88,16 @@ def panels(n: int, heights: Iterable[float], **kwargs: Any) -> tuple[Figure, lis
                     layout=ConstrainedLayoutEngine(h_pad=0.06))
     axes = figure.subplots(n, 1, squeeze=False, height_ratios=tall, **kwargs)
     return figure, [*axes[:, 0]]
+
+
+def dress(axis: Axes, title: str = "", label: str = "", grid: Literal["x", "y", ""] = "y",
+          **despined: bool) -> None:
+    """Give a panel its title, the label of its y axis, its grid, and no frame."""
+    axis.set_title(title)
+    axis.set_ylabel(label)
+    if grid:
+        axis.grid(axis=grid)
+    sns.despine(ax=axis, **despined)
 
 
 def shorten(text: str, width: int = 22, most: int = 2) -> str:

@@ -14,20 +14,24 @@ from IPython.display import display
 
 from . import wording as w
 from .markup import Column, Html, bullets, table
-from .tables_records import check_table as check_table
-from .tables_records import clock_table as clock_table
-from .tables_records import inputs_table as inputs_table
-from .tables_records import instrument_table as instrument_table
-from .tables_records import ledger_table as ledger_table
-from .tables_records import settings_table as settings_table
-from .tables_results import change_table as change_table
-from .tables_results import derived_table as derived_table
-from .tables_results import difference_table as difference_table
-from .tables_results import geometry_table as geometry_table
-from .tables_results import pass_table as pass_table
-from .tables_results import surface_overview as surface_overview
-from .tables_results import surface_table as surface_table
-from .tables_results import trend_table as trend_table
+from .tables_records import (  # noqa: F401 - imported to be called from here
+    check_table,
+    clock_table,
+    inputs_table,
+    instrument_table,
+    ledger_table,
+    settings_table,
+)
+from .tables_results import (  # noqa: F401
+    change_table,
+    derived_table,
+    difference_table,
+    geometry_table,
+    pass_table,
+    surface_overview,
+    surface_table,
+    trend_table,
+)
 
 
 def show(item: Html | pd.DataFrame | Sequence[str], caption: str = "",

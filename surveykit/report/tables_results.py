@@ -15,7 +15,7 @@ from typing import Any
 import pandas as pd
 
 from . import wording as w
-from .markup import Cell, Column, Group, Html, Notes, Row, grouped_table, table
+from .markup import Cell, Column, Group, Html, Notes, Row, grouped_table, paragraph, table
 
 Labels = Mapping[str, str] | None
 NONE = Cell("none", quiet=True)
@@ -168,23 +168,26 @@ def trend_table(trends: pd.DataFrame, labels: Labels = None) -> Html:
 
 
 def derived_table(derived: pd.DataFrame, labels: Labels = None) -> Html:
-    """Return one row a surface and form, grouped by product: value ± U, status and why."""
-    notes, groups = Notes(labels), []
+    """Return a table a product: one row a surface, one column a form, value ± U with its notes."""
+    made = []
     for (product, unit), block in derived.groupby(["product", "unit"], sort=False):
-        digits = 3 if unit == "1" and product != "sri" else 0
-        values = _values(block, digits=digits)
-        written = w.unit_text(str(unit))
-        groups.append((w.sentence_case(w.product_text(str(product)))[:-1]
-                       + (f", {written}" if written else ""), [
-            [w.label(row["surface"], labels), row["form"], values[index],
-             Cell(row["status"], note=notes.letter(*row["note"].split("; ")))]
-            for index, row in block.iterrows()]))
-    heads = [_surface_column(derived, labels), Column("Form"), _with_u("Value"),
-             Column("Status", "short")]
-    return grouped_table(f"What was asked for beside the measured quantities, "
-                         f"{_coverage(derived)}.", heads, groups, notes=notes.listed(),
-                         empty="Nothing was asked for beside the measured quantities "
-                               "(key derived of the parameter file).")
+        values = _values(block, digits=3 if unit == "1" and product != "sri" else 0)
+        forms, notes = [*dict.fromkeys(block["form"])], Notes(labels)
+        rows = {name: dict.fromkeys(forms, Cell("", quiet=True)) for name in block["surface"]}
+        for index, row in block.iterrows():
+            gone = row["status"] == "not evaluated"
+            cell = Cell(row["status"], quiet=True) if gone else values[index]
+            rows[row["surface"]][row["form"]] = replace(cell, note=notes.letter(row["note"]))
+        written, name = w.unit_text(str(unit)), w.product_text(str(product))
+        made.append(table(
+            f"{w.sentence_case(name)[:-1]}{f', {written}' if written else ''}: value ± U, "
+            f"{_coverage(block)}.", [_surface_column(block, labels), *(
+                Column(form[:1].upper() + form[1:] or "Value", "number") for form in forms)],
+            [[w.label(surface, labels), *cells.values()] for surface, cells in rows.items()],
+            notes=notes.listed(), empty=""))
+    return Html("".join(one.html for one in made), "\n".join(one.text for one in made)) if made \
+        else paragraph("Nothing was asked for beside the measured quantities (key derived of the "
+                       "parameter file).", "empty")
 
 
 def geometry_table(geometry: pd.DataFrame, labels: Labels = None) -> Html:

@@ -8,7 +8,6 @@ from __future__ import annotations
 
 import datetime as dt
 import math
-import re
 from collections.abc import Iterable, Mapping
 from typing import Any
 
@@ -254,19 +253,6 @@ def label(name: Any, labels: Mapping[str, str] | None) -> str:
     return (labels or {}).get(name) or str(name)
 
 
-def with_labels(text: str, labels: Mapping[str, str]) -> str:
-    """Return a text in which each whole name is told by its label.
-
-    Examples
-    --------
-    >>> with_labels("brick-path since path-2, surfaces.path.x", {"brick-path": "Path", "path": "Y"})
-    'Path since path-2, surfaces.path.x'
-    """
-    names = "|".join(map(re.escape, labels))
-    return re.sub(rf"(?<![\w.-])({names})(?![\w-]|\.\w)", lambda m: labels[m[1]],
-                  text) if names else text
-
-
 def sentence_case(text: str) -> str:
     """Return the text with its first letter raised, unless a name in code, and a full stop.
 
@@ -276,8 +262,9 @@ def sentence_case(text: str) -> str:
     ('One pass.', 'width_m is missing.')
     """
     text = text.strip()
-    first = text.split(" ")[0]
-    if first.isalpha() or first.startswith("pseudo-"):
+    first, _, rest = text.partition(" ")
+    plain_word = first.rstrip(":,").isalpha() or first.startswith("pseudo-")
+    if plain_word and not rest.startswith("="):
         text = text[:1].upper() + text[1:]
     return text + ("" if text[-1:] in ".!?" else ".") if text else ""
 

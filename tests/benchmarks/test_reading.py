@@ -1,12 +1,14 @@
 """Reading logs costs little beside what pandas does for the same values: ratios, never seconds.
 
 The asks are ratios to a plain way of doing the same work, measured in turns (median of five) in one
-process, since machines are noisy; each benchmark compares the values as well. HEADROOM is for
-machines that others share, where the two threads of the reader do not get two cores.
+process, since machines are noisy; each benchmark compares the values as well. The reader's two
+threads want two cores: where others have taken them, processor times are compared instead, which
+say nothing of the threads: hence HEADROOM_BUSY.
 """
 
 from __future__ import annotations
 
+import os
 import statistics
 import subprocess
 import sys
@@ -25,7 +27,7 @@ from surveykit.intake.params import Instrument
 from surveykit.intake.times import read_times
 
 pytestmark = pytest.mark.slow
-HEADROOM, TURNS = 1.6, 5
+HEADROOM, HEADROOM_BUSY, TURNS = 1.25, 2.0, 5
 ISO_ASK, DAY_FIRST_ASK, COMMA_ASK, BYTES_ASK = 1.3, 0.3, 0.35, 120
 
 
@@ -47,14 +49,20 @@ def table(rows: int) -> pd.DataFrame:
     return frame
 
 
+def busy() -> bool:
+    """Return whether others have taken the cores that the reader's threads want."""
+    return hasattr(os, "getloadavg") and os.getloadavg()[0] > (os.cpu_count() or 1)
+
+
 def in_turns(ours: Callable[[], Any], plain: Callable[[], Any]) -> tuple[float, Any, Any]:
-    """Return the ratio of the medians, and what both gave."""
+    """Return the ratio of the medians, and what both gave; of processor time where it is busy."""
+    clock = time.process_time if busy() else time.perf_counter
     durations: tuple[list[float], list[float]] = ([], [])
     for _ in range(TURNS):
         for work, taken in zip((ours, plain), durations, strict=True):
-            start = time.perf_counter()
+            start = clock()
             got = work()
-            taken.append(time.perf_counter() - start)
+            taken.append(clock() - start)
             if work is ours:
                 one = got
             else:
@@ -63,8 +71,9 @@ def in_turns(ours: Callable[[], Any], plain: Callable[[], Any]) -> tuple[float, 
 
 
 def held(ratio: float, ask: float) -> None:
-    print(f"ratio {ratio:.3f}, asked {ask:g}")  # noqa: T201
-    assert ratio <= HEADROOM * ask, f"{ratio:.3f} of the plain way, asked {ask:g}"
+    print(f"ratio {ratio:.3f}, asked {ask:g}{', busy machine' if busy() else ''}")  # noqa: T201
+    limit = ask * (HEADROOM_BUSY if busy() else HEADROOM)
+    assert ratio <= limit, f"{ratio:.3f} of the plain way, asked {ask:g}"
 
 
 def test_an_iso_log_costs_little_more_than_bare_pandas(tmp_path):

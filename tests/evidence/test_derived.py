@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 from one_estimate import HEADS
-from small_survey import KIT, NDVI, SIZE, flux, lines, row, small
+from small_survey import KIT, LONGWAVE, NDVI, SIZE, flux, lines, row, small
 
 from surveykit.evidence.derived import derived
 from surveykit.evidence.estimates import estimate_all
@@ -183,3 +183,20 @@ def test_heights_used_and_best(tmp_path):
         float(self_shade(0.012, 0.5, found[0].zenith_deg, 0.85)), rel=1e-6)
     assert "E1918-like" in one.note["used"]
     assert disc_share(2.0, 0.5) == pytest.approx(0.941, abs=5e-4)
+
+
+def test_a_caution_of_a_longwave_pair(tmp_path):
+    """600 W m-2 up, 380 down, emissivity .95: (581 / .95 / sigma)^(1/4) record by record."""
+    sheet = [row(**LONGWAVE | {"start": f"12:0{m}:10", "stop": f"12:0{m + 2}:30"})
+             for m in (0, 3, 6)]
+    made = small(tmp_path, sheet, {"longwave": lines("longwave", n=600)}, caution={
+        "temperature_degC": 40, "source": "rule 7, invented"})
+    day = made.day()
+    pooled = groups(day.name, estimate_all(day, made.passes), DRAWS, coverage=0.95)
+    (one,) = derived(day, pooled, DRAWS, 0.95).to_dict("records")
+    log = made.records["longwave"].channels
+    used = np.concatenate([day.quality.passes[p.name].index for p in made.passes])
+    each = ((log["up"] - 0.05 * log["down"]) / 0.95 / 5.670374419e-8) ** 0.25 - 273.15
+    assert one["value"] == pytest.approx(np.quantile(each[used], 0.95), abs=1e-6)
+    assert one["form"] == "longwave"
+    assert one["note"].startswith("caution: upper bound")

@@ -13,20 +13,20 @@ SETTINGS = CERTAIN | UNTOUCHED
 KAPPA = 1.04
 
 
-def turned(n_pairs, *, scatter=0.0, albedo=0.2, kappa=KAPPA):
+def turned(n_pairs, *, scatter=0.0, albedo=0.2, kappa=KAPPA, each=62):
     """A pair whose ground head reads `kappa` times too much, turned over after the pass."""
     sky, ground = readings("sky", N, 1), albedo * readings("sky", N, 1)
     up, down = sky.copy(), kappa * ground
     rows = []
     for pair in range(n_pairs):
-        at = 140 + 130 * pair
+        at = 140 + 140 * pair
         wobble = 1 + scatter * (pair - 1)
-        down[at:at + 60] *= wobble
-        up[at + 65:at + 125], down[at + 65:at + 125] = (
-            ground[at + 65:at + 125], kappa * sky[at + 65:at + 125])
-        for word, start in (("normal", at), ("inverted", at + 65)):
+        down[at:at + 65] *= wobble
+        up[at + 70:at + 135], down[at + 70:at + 135] = (
+            ground[at + 70:at + 135], kappa * sky[at + 70:at + 135])
+        for word, start in (("normal", at), ("inverted", at + 70)):
             rows.append(row(entry="swap", surface="court", patch="C1", instrument="pair",
-                            start=clock(start + 1), stop=clock(start + 59), reading=word))
+                            start=clock(start + 1), stop=clock(start + 1 + each), reading=word))
     return {"pair": lines("pair", n=N, sky=up, ground=down)}, rows
 
 
@@ -63,10 +63,18 @@ def test_the_zeros_of_the_heads_move_the_ratio(tmp_path):
 
 
 @pytest.mark.parametrize(("pairs", "flag"), [
-    (0, "gain ratio not checked by swapping"), (2, "fewer swaps than recommended"), (3, None)])
+    (0, "gain ratio not checked by swapping"), (2, "fewer or shorter swaps than recommended"),
+    (3, None)])
 def test_few_swaps_are_flagged(tmp_path, pairs, flag):
     flags = swapped(tmp_path, pairs).flags
     assert (flag in flags) if flag else not any("swap" in f for f in flags)
+
+
+@pytest.mark.parametrize(("each", "flagged"), [(59, True), (61, False)])
+def test_short_swaps_are_flagged(tmp_path, each, flagged):
+    """Three swaps, a minute each way asked for (engineering default)."""
+    flags = swapped(tmp_path, each=each).flags
+    assert ("fewer or shorter swaps than recommended" in flags) == flagged
 
 
 def test_swaps_that_disagree_are_not_used(tmp_path):

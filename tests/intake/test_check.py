@@ -172,7 +172,17 @@ def test_what_became_of_each_clock_is_shown(project):
                         told["thermal"])
     assert told["shortwave"] == "  clock of shortwave: declared: -4.00 s, u 0.5 s"
     assert "aligned with rednir-sky, by covers: -6." in told["rednir-ground"]
-    assert "not checked: +0.00 s, u 2 s; nobody compared" in told["weather"]
+    assert told["weather"] == "  clock of weather: not checked: +0.00 s, u 2 s"
+
+
+def test_clocks_that_hang_on_each_other_are_one_fault(project):
+    plant(project, (FILE, "clock: {cover_events: true}", "clock: {align_with: rednir-ground}", []))
+    plant(project, (FILE, "clock: {align_with: rednir-sky}", "clock: {align_with: thermal}", []))
+    done = surveykit(project, "check", FILE)
+    assert done.returncode == 2
+    assert "Traceback" not in done.stderr
+    assert all("align_with" in line and "hangs on this one" in line
+               for line in done.stderr.splitlines())
 
 
 def test_a_refused_clock_is_shown_with_its_reason(project):

@@ -4,6 +4,9 @@ from __future__ import annotations
 
 import pytest
 from checks import check, names
+from hypothesis import given
+from hypothesis import strategies as st
+from scipy.optimize import brentq
 
 from surveykit.physics.energy import (
     SRI_BLACK,
@@ -69,3 +72,15 @@ def test_longwave_and_net_radiation():
     assert net_radiation(0.1, 850.0, 400.0, up) == pytest.approx(508.89, abs=0.005)
     slope = (longwave_up(330.5, 400.0, 0.94) - longwave_up(329.5, 400.0, 0.94))
     assert slope == pytest.approx(7.7, abs=0.05)
+
+
+@given(st.floats(0.0, 1.0), st.floats(0.05, 1.0), st.floats(1.0, 40.0))
+def test_the_balance_is_kept_and_agrees_with_a_bracketing_solver(reflectance, emissivity, wind):
+    """scipy.optimize.brentq of the standard's heat balance."""
+    def gain(t):
+        return (1 - reflectance) * 1000 - emissivity * 5.670374419e-8 * (t**4 - 300.0**4) \
+            - wind * (t - 310)
+
+    found = balance_temperature_k([reflectance, 0.05], emissivity, wind)
+    assert found.shape == (2,)
+    assert found[0] == pytest.approx(brentq(gain, 200.0, 1500.0, xtol=1e-10), abs=1e-6)

@@ -18,6 +18,7 @@ import numpy as np
 import pvlib
 import pytest
 from scipy.optimize import curve_fit
+from small_survey import ALBEDO, CERTAIN, KIT, NDVI, flux, lines, row, small
 
 from surveykit.physics.shortwave import ratio_of_sums, zenith_factor
 from surveykit.physics.vegetation import ndvi, ndvi_of_sums
@@ -101,6 +102,32 @@ def test_measured_spectra_through_channels_give_the_band_weighted_truth(spectra,
     index = ndvi_of_sums(channel(red, 0.0043, surface), channel(red, 0.0042, whole),
                          channel(nir, 0.0039, surface), channel(nir, 0.0038, whole))
     assert index == pytest.approx(float(ndvi(*truth)), abs=1e-3)
+
+
+@pytest.mark.parametrize("chosen", [0, 2500, 6500])
+def test_measured_spectra_from_raw_files_to_the_pass(spectra, tmp_path, chosen):
+    """The same light written as three loggers' files and a field sheet, taken to pass values."""
+    wavelength, reflectance, _ = spectra
+    surface, sun = np.clip(reflectance[chosen], 0, 1), sunlight(wavelength)
+    bands = {name: (np.abs(wavelength - centre) <= 25).astype(float)
+             for name, centre in (("red", 650), ("nir", 810))}
+    level = {"sky": sun.sum(), "ground": (sun * surface).sum()}
+    at_noon = 950 / level["sky"]  # W m-2
+    noise = {c: at_noon * v * (1 + 1e-3 * np.random.default_rng(n).standard_normal(160))
+             for n, (c, v) in enumerate(level.items())}
+    seen = {"rednir-sky": {b: (sun * w).sum() for b, w in bands.items()},
+            "rednir-ground": {b: (sun * w * surface).sum() for b, w in bands.items()}}
+    logs = {"pair": lines("pair", **noise)} | {
+        name: lines(name, **{b: 20 * v * (1 + 1e-3 * np.random.default_rng(len(name + b))
+                                          .standard_normal(160)) for b, v in some.items()})
+        for name, some in seen.items()}
+    kit = KIT | {name: KIT[name] | {"columns": {b: flux(f"{b}_{way}", u_offset=0.0) for b in bands}}
+                 for name, way in (("rednir-sky", "down"), ("rednir-ground", "up"))}
+    made = small(tmp_path, [row(**ALBEDO), row(**NDVI)], logs, kit=kit, settings=CERTAIN | {
+        "albedo": {"correct_surroundings": False, "correct_self_shade": False}}).by_name()
+    assert made["C1-albedo-1"].value == pytest.approx(level["ground"] / level["sky"], abs=1e-3)
+    truth = [seen["rednir-ground"][b] / seen["rednir-sky"][b] for b in bands]
+    assert made["C1-ndvi-1"].value == pytest.approx(float(ndvi(*truth)), abs=1e-3)
 
 
 @pytest.mark.parametrize(("word", "albedo", "index"), [

@@ -89,7 +89,7 @@ def test_summary_comes_first_and_in_order(page: str) -> None:
     soup = BeautifulSoup(page, "html5lib")
     assert soup.main.find_all(["h2", "h3"])[0].get_text() == "Summary"
     heads = [h.get_text() for h in soup.find(id="summary").find_all(["h2", "h3"])]
-    assert heads == ["Summary", "What differs", "What changed", "What was asked for besides",
+    assert heads == ["Summary", "What differs", "What changed",
                      "What could not be evaluated, and why",
                      "What would narrow the uncertainty most", "Cautions",
                      "What was not corrected or not checked", "Notes on this run"]

@@ -70,10 +70,9 @@ def set_clocks(logs: Mapping[str, Records], parameters: Parameters, sheet: Sheet
     if sheet is not None:
         rows = [entry for entry in sheet.entries if entry.entry == "cover"]
     done: dict[str, Set] = {}
-    waiting = [name for name in logs if name in uses]
-    while waiting:
-        later = []
-        for name in waiting:
+
+    def settle(name: str, above: tuple[str, ...] = ()) -> Set:
+        if name not in done:
             stated = uses[name].clock
             partner = stated.align_with if stated is not None else None
             if stated is None or not stated.found or sheet is None:
@@ -82,16 +81,15 @@ def set_clocks(logs: Mapping[str, Records], parameters: Parameters, sheet: Sheet
                 done[name] = find_clock(logs[name], stated, parameters, rows, None)
             elif partner not in logs:
                 done[name] = _refuse(logs[name], f"its reference {partner} could not be read")
-            elif partner not in done:
-                later.append(name)
-            elif done[partner].clock.refusal:
+            elif partner in (name, *above):  # of parameters that are refused for it
+                return _refuse(logs[name], f"it hangs on that of {partner}, which hangs on it")
+            elif settle(partner, (name, *above)).clock.refusal:
                 done[name] = _refuse(logs[name], f"it hangs on that of {partner}, refused itself")
             else:
                 done[name] = find_clock(logs[name], stated, parameters, rows, done[partner])
-        if later == waiting:
-            raise AssertionError(f"clocks hang on each other: {', '.join(later)}")
-        waiting = later
-    ordered = {name: done[name] for name in logs if name in done}
+        return done[name]
+
+    ordered = {name: settle(name) for name in logs if name in uses}
     if sheet is not None:
         wrong = against_each_other(ordered, parameters)
         if placed:
@@ -113,12 +111,12 @@ def _declared(log: Records, use: LoggerUse, settings: Settings) -> Set:
             f"its drift of {clock.drift_ppm:+g} ppm is beyond {limits.max_drift_ppm:g} ppm "
             "(settings.clocks.max_drift_ppm)"))
     parts = stretches(log, float("inf"))
-    if len(parts) == 1:
+    if len(parts.back) == 1:
         return Set(records, clock)
-    if len(parts) > MOST_RESETS:
+    if len(parts.back) > MOST_RESETS:
         return _taken_out(Set(records, clock),
-                          f"its time steps back {len(parts) - 1} times: the lines of its files "
-                          "are out of order")
+                          f"its time steps back {len(parts.back) - 1} times: the lines of its "
+                          "files are out of order")
     after = parts.number > 0
     at = str(np.datetime64(int(log.time_ns[np.argmax(parts.number == 1)]), "ns"))[:19]
     why = (f"the clock of {log.logger} steps back to {at} UTC of its own, and its offset holds for "

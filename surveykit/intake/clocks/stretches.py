@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 
@@ -12,15 +12,11 @@ from surveykit.intake.records import Records
 NS = 1_000_000_000
 
 
-@dataclass(frozen=True)
-class Stretches:
+class Stretches(NamedTuple):
     """By record with a time: number of its stretch; by stretch: whether a step back begins it."""
 
     number: IntArray
     back: tuple[bool, ...]
-
-    def __len__(self) -> int:
-        return len(self.back)
 
 
 def stretches(log: Records, jump_s: float) -> Stretches:

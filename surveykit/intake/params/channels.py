@@ -21,6 +21,9 @@ from surveykit.intake.params.heads import (
 from surveykit.intake.params.quantities import DEFAULT_U, PHYSICAL_UNITS
 from surveykit.intake.params.settings import Settings
 
+AS_STATED = ("half_angle_deg", "band_centres_nm", "band_widths_nm", "class_terms",
+             "spectrally_flat", "band_ratio")
+
 
 @dataclass(frozen=True)
 class Channel:
@@ -90,6 +93,8 @@ def channel(name: str, header: str, column: Column, entry: Head, owner: str,
     owner = calibration.id if calibration else owner
     response = stated("band_response") if column.band_um is None else column.band_response
     radius, rod = stated("head_radius_cm"), stated("rod_width_cm")
+    ends: Any = tuple(sorted(shift + scale * offset.value + gain_si * end
+                             for end in column.range or ()))
     bore = stated("bore_emissivity") or Uncertain(
         value=settings.temperature.bore_emissivity, u=settings.temperature.bore_emissivity_u)
     return Channel(
@@ -100,20 +105,10 @@ def channel(name: str, header: str, column: Column, entry: Head, owner: str,
         gain_scope=f"{owner}:{header}:gain", offset_scope=f"{owner}:{header}:offset",
         calibration=calibration, band_response=response or (),
         band_um=(response[0][0], response[-1][0]) if response else stated("band_um"),
-        half_angle_deg=stated("half_angle_deg"), time_constant_s=stated("tau_s") or 0.0,
-        head_radius_m=None if radius is None else radius / 100, bore_emissivity=bore,
+        time_constant_s=stated("tau_s") or 0.0, bore_emissivity=bore,
+        head_radius_m=None if radius is None else radius / 100,
         emissivity_setting=column.emissivity_setting,
-        band_centres_nm=stated("band_centres_nm"), band_widths_nm=stated("band_widths_nm"),
         reflected_setting_k=None if column.reflected_setting_degC is None
-        else column.reflected_setting_degC + 273.15, class_terms=stated("class_terms"),
-        spectrally_flat=stated("spectrally_flat"),
-        rod_width_m=None if rod is None else rod / 100, band_ratio=stated("band_ratio"),
-        range=_ends(column.range, gain_si, shift + scale * offset.value))
-
-
-def _ends(logged: tuple[float, float] | None, gain: float,
-          offset: float) -> tuple[float, float] | None:
-    if logged is None:
-        return None
-    low, high = sorted(offset + gain * end for end in logged)
-    return low, high
+        else column.reflected_setting_degC + 273.15,
+        rod_width_m=None if rod is None else rod / 100, range=ends if ends else None,
+        **{field: stated(field) for field in AS_STATED})

@@ -172,6 +172,9 @@ class AlbedoSettings(Strict):
         0.20, "1", "Relative standard uncertainty of the computed self-shade.", ge=0)
     swap_min_pairs: int = setting(
         3, "1", "Swaps of the heads below which their gain ratio is flagged.", ge=1)
+    swap_min_s: float = setting(
+        60.0, "s", "Time in either position below which a swap does not count as one of them.",
+        ge=0)
     swap_max_sd: float = setting(
         0.01, "1", "Relative standard deviation of the swaps' gain ratios above which none is "
         "used.", gt=0)

@@ -109,10 +109,8 @@ def _filled(data: dict[str, Any], path: Path, doubtful: set[str]) -> dict[str, A
         doubtful.add("surfaces")
     if isinstance(data["surfaces"], dict):
         for name, surface in data["surfaces"].items():
-            if isinstance(surface, dict) and not surface.get("label"):
-                surface["label"] = "unknown"
-            elif not isinstance(surface, dict):
-                data["surfaces"][name] = {"label": "unknown"}
+            known = surface if isinstance(surface, dict) else {}
+            data["surfaces"][name] = known | {"label": known.get("label") or "unknown"}
         if not all(isinstance(name, str) and re.match(NAME_PATTERN, name)
                    for name in data["surfaces"]):
             doubtful.add("surfaces")
