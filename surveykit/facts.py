@@ -8,6 +8,7 @@ import platform
 from importlib.metadata import version
 from typing import Any
 
+from surveykit.handover import load_facts
 from surveykit.intake.params import load
 from surveykit.opening import Survey
 
@@ -19,7 +20,7 @@ def collect(survey: Survey) -> dict[str, Any]:
     """Return the facts of a run; nothing in it depends on the machine's folders or on the clock."""
     campaign, parameters = survey.campaign, survey.parameters
     statistics, site = campaign.settings.statistics, campaign.site
-    path = survey.inputs[0]["path"]
+    path, drawn = survey.inputs[0]["path"], survey.run_folder / "surfaces" / "draws.json"
     surfaces = {name: surface.label for name, surface in campaign.surfaces.items()}
     return {
         "campaign": campaign.campaign, "title": campaign.title, "date": campaign.date,
@@ -28,7 +29,8 @@ def collect(survey: Survey) -> dict[str, Any]:
         "time_zone": site.time_zone, "conditions": _conditions(survey),
         "sky": campaign.conditions.sky, "params_file": path,
         "inputs": list(survey.inputs), "versions": versions(), "seed": statistics.seed,
-        "draws": statistics.draws, "coverage": statistics.coverage,
+        "draws": load_facts(drawn)["draws"] if drawn.is_file() else statistics.draws,
+        "coverage": statistics.coverage,
         "settings": [dict(row) for row in campaign.settings.listing()],
         "instruments": _instruments(survey),
         "surfaces": surfaces, "labels": _dates(survey) | surfaces,

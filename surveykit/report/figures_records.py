@@ -20,7 +20,7 @@ TRACKS = (("irradiance_w_m2", "irradiance", "W m⁻²"), ("zenith_deg", "sun hei
           ("air_temperature_degc", "air temperature", "°C"),
           ("body_temperature_degc", "body temperature", "°C"))
 POINTS, FEW, MANY = 600, 40, 6
-LOGGED, USED = "logged", "used"
+LOGGED, USED, LOSSES = "logged", "used", 4
 
 
 @styled
@@ -111,7 +111,7 @@ def ledger_plot(ledger: pd.DataFrame) -> Drawing:
     if ledger.empty or not ledger["records"].sum():
         return Drawing(None, "No record was logged, so there is no ledger to draw.")
     ways = {str(logger): _losses(block) for logger, block in ledger.groupby("logger")}
-    figure, axes = panels(len(ways), [0.45 + 0.2 * len(way) for way in ways.values()],
+    figure, axes = panels(len(ways), [0.4 + 0.18 * len(way) for way in ways.values()],
                           sharex=True)
     told = []
     for axis, (logger, way) in zip(axes, ways.items(), strict=True):
@@ -142,7 +142,7 @@ def _losses(block: pd.DataFrame) -> dict[str, int]:
     outside = int(block.loc[block["disposition"] == "outside passes", "records"].sum())
     reasons = block[block["disposition"] == "excluded"].groupby("reason")["records"].sum()
     reasons = reasons[reasons > 0].sort_values(ascending=False, kind="stable")
-    kept, rest = reasons.iloc[:MANY], int(reasons.iloc[MANY:].sum())
+    kept, rest = reasons.iloc[:LOSSES], int(reasons.iloc[LOSSES:].sum())
     way = {LOGGED: total, "outside passes": outside} | {str(k): int(n) for k, n in kept.items()}
     way |= {"other reasons": rest, USED: total - outside - int(reasons.sum())}
     return {word: n for word, n in way.items() if n or word in (LOGGED, USED)}

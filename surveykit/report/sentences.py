@@ -167,8 +167,8 @@ def trending(trends: pd.DataFrame, facts: Facts) -> list[str]:
              for row in with_words(trends, "verdict", SHOWN).to_dict("records")]
     judged = int((trends["verdict"] != "").sum())
     if judged and not lines:
-        lines = [f"No trend is established over {w.plural(int(trends['dates'].max()), 'date')}, "
-                 f"in none of {w.plural(judged, 'line')}."]
+        lines = [f"No trend is established over {w.plural(int(trends['dates'].max()), 'date')} "
+                 f"({judged} series judged)."]
     return lines
 
 

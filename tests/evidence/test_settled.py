@@ -5,8 +5,11 @@ from __future__ import annotations
 import pytest
 from pass_values import albedo, error, kelvin, one_pass
 from scipy import stats
+from small_survey import ALBEDO, CERTAIN, DAY, lines, row, small
 
 from surveykit.evidence.surfaces import _assert_floor, groups, settled
+from surveykit.facts import collect
+from surveykit.pipeline import comparison, open_file, surfaces
 from surveykit.statistics.draws import Draws, summarise
 from surveykit.statistics.simultaneous import end_error, tolerance
 
@@ -38,6 +41,18 @@ def test_draws_grow_until_the_ends_hold():
     assert 2 * end_error(loose.result.judged, 0.95) <= tolerance(s.u, 1)
     before = as_they_are[0].result
     assert 2 * end_error(before.judged, 0.95) > tolerance(s.u, 1)
+
+
+def test_a_campaign_says_how_many_draws_it_took(tmp_path):
+    sheet = [row(**ALBEDO, start=f"12:0{2 * n}:20", stop=f"12:0{2 * n + 2}:00") for n in range(3)]
+    settings = CERTAIN | {"statistics": {"draws": 1000, "stable_digits": 1}}
+    small(tmp_path, sheet, {"pair": lines("pair", n=420)}, settings=settings)
+    survey = open_file(tmp_path / "params" / f"yard-{DAY}.yml")
+    assert collect(survey)["draws"] == 1000  # stated, nothing run
+    surfaces(survey)
+    again = open_file(survey.parameters.path)
+    comparison(again)
+    assert collect(again)["draws"] == surfaces(again).draws.size > 1000
 
 
 def test_an_interval_below_its_calibration_is_a_bug():

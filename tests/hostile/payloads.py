@@ -4,10 +4,13 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from copy import deepcopy
+from pathlib import Path as File
 from typing import Any
 
 import small_survey
+import yaml
 
+from surveykit.intake.params import load
 from surveykit.intake.params.schema import campaign_schema
 
 PAYLOADS = (
@@ -88,3 +91,9 @@ def _walk(whole: dict[str, Any], node: dict[str, Any], held: Any, here: Path,
     if isinstance(node.get("items"), dict):
         below = held[0] if isinstance(held, list) and held else None
         yield from _walk(whole, node["items"], below, (*here, 0), depth + 1)
+
+
+def read_document(document: dict[str, Any], path: File) -> None:
+    """Write a campaign's file and read it as any file is read; InputError if it is refused."""
+    path.write_text(yaml.safe_dump(document, sort_keys=False), encoding="utf-8")
+    load(path)

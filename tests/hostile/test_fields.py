@@ -10,10 +10,9 @@ import os
 import pytest
 from IPython.core.inputtransformer2 import TransformerManager
 from papermill.translators import PythonTranslator
-from payloads import PAYLOADS, full_campaign, put, text_places
+from payloads import PAYLOADS, full_campaign, put, read_document, text_places
 
 from surveykit.core import InputError
-from surveykit.intake.params import load_mapping
 
 PLACES = text_places(full_campaign())
 
@@ -52,7 +51,7 @@ def test_a_payload_is_refused_or_plain_text(params, place):
 
 def faults_of(document, path):
     try:
-        load_mapping(document, path)
+        read_document(document, path)
     except InputError as error:
         return error.faults
     return ()
@@ -76,5 +75,5 @@ def test_a_payload_as_a_name_is_refused(params, payload):
                      put(base, ("site", payload), 1), put(base, ("instruments", payload), {}),
                      put(base, ("loggers", payload), {"files": "x"})):
         with pytest.raises(InputError) as refused:
-            load_mapping(document, params)
+            read_document(document, params)
         assert all(fault.isprintable() for fault in refused.value.faults)

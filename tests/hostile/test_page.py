@@ -13,12 +13,11 @@ import pytest
 import small_survey
 import yaml
 from bs4 import BeautifulSoup
-from payloads import PAYLOADS, full_campaign, put, text_places
+from payloads import PAYLOADS, full_campaign, put, read_document, text_places
 from small_campaigns import ROOT, left_behind
 
 from surveykit import season
 from surveykit.core import TABLES, InputError
-from surveykit.intake.params import load_mapping
 from surveykit.report.datapackage import FORMULA_STARTS
 
 CHROMIUM = shutil.which("chromium") or shutil.which("chromium-browser")
@@ -37,7 +36,7 @@ def hostile_document(folder: Path) -> tuple[dict, int]:
         for turn in range(len(SHOWN)):
             changed = put(document, place, PAYLOADS[SHOWN[(number + turn) % len(SHOWN)]])
             try:
-                load_mapping(changed, folder / "params" / "yard.yml")
+                read_document(changed, folder / "params" / "yard.yml")
             except InputError:
                 continue
             document, taken = changed, taken + 1

@@ -109,7 +109,7 @@ def test_trends_are_told_only_where_established() -> None:
         "Trend of albedo (clear) of Coated court: +0.310 ± 0.210 a⁻¹ over 3 dates, higher."]
     none = trends.assign(verdict=["no difference shown", ""])
     assert sentences.trending(none, FACTS) == [
-        "No trend is established over 3 dates, in none of 1 line."]
+        "No trend is established over 3 dates (1 series judged)."]
     assert sentences.trending(trends.iloc[:0], FACTS) == []
 
 
