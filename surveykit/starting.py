@@ -64,10 +64,15 @@ def start(name: str, here: Path, logs: Sequence[Path] = ()) -> list[str]:
     if not re.fullmatch(r"[a-z0-9][a-z0-9-]{0,63}", name):
         raise InputError(f"ID: got {name[:80]!r}; write lower-case letters, digits and -, "
                          "at most 64, such as mill-yard-2025-07-24")
-    kit, loggers, written = "instruments", LOGGERS, {}
+    kit, loggers, written, over = "instruments", LOGGERS, {}, []
     if logs:
-        from surveykit.intake.sketching import sketch
+        from surveykit.intake.sketching import is_sheet, sketch
 
+        over = [f"{path.name}: a field sheet, no log; passed over" for path in logs
+                if is_sheet(path)]
+        logs = [path for path in logs if not is_sheet(path)]
+        if not logs:
+            raise InputError(*over, "--log: none of the files is a log; name the loggers' files")
         kit = f"{name}-instruments"
         text, files = sketch(name, logs)
         written[root / "params" / f"{kit}.yml"] = text
@@ -88,7 +93,7 @@ def start(name: str, here: Path, logs: Sequence[Path] = ()) -> list[str]:
             file.write(text)
     shown = [path.relative_to(root).as_posix() for path in written]
     if logs:
-        return [*(f"wrote {name}" for name in shown),
+        return [*over, *(f"wrote {name}" for name in shown),
                 "compare each CONFIRM with the logger's program, fill in each FILL IN, then: "
                 f"surveykit check params/{kit}.yml"]
     return [*(f"wrote {name}" for name in shown),

@@ -51,6 +51,16 @@ def sketch(name: str, paths: Sequence[Path]) -> tuple[str, dict[str, list[str]]]
     return text, files
 
 
+def is_sheet(path: Path) -> bool:
+    """Return whether a file begins as a field sheet does; False where it cannot be read."""
+    try:
+        with path.open("rb") as file:
+            head = file.readline(2000).decode("utf-8-sig", "replace")
+    except OSError:
+        return False
+    return {"entry", "surface", "patch"} <= {*re.split(r"[\s,;\"]+", head.casefold())}
+
+
 def _entry_name(files: list[str], at: int) -> str:
     stem = files[0].split(".")[0].lower()
     if len(files) > 1:

@@ -127,6 +127,17 @@ def test_what_is_no_log_is_refused_and_nothing_is_written(folder, text, sentence
         start("mill-yard", folder, [folder / "none.csv"])
 
 
+def test_a_field_sheet_among_the_logs_is_passed_over(folder):
+    sheet = JUNE / "field_sheet.csv"
+    said = start("mill-yard", folder, sorted([*DEMO, sheet]))
+    assert said[0] == "field_sheet.csv: a field sheet, no log; passed over"
+    kit = yaml.safe_load((folder / "params/mill-yard-instruments.yml").read_text("utf-8"))
+    assert set(kit) == {"thermal", "shortwave", "rednir-sky", "rednir-ground", "weather"}
+    assert "field_sheet" not in (folder / "params/mill-yard-instruments.yml").read_text("utf-8")
+    with pytest.raises(InputError, match=r"none of the files is a log"):
+        start("other-yard", folder, [sheet])
+
+
 def test_nothing_is_overwritten(folder):
     start("mill-yard", folder)
     before = (folder / "params/mill-yard.yml").read_bytes()
