@@ -22,7 +22,7 @@ PAYLOADS = (
     "%run CANARY", "!touch CANARY", "@x\u2028", "a\n!touch CANARY\n%system touch CANARY",
     "\\u000a!touch CANARY", "?x", "x?", "\t=1+1", "`touch CANARY`", "$(touch CANARY)",
     "&lt;script&gt;&#60;svg onload=window.canary=1&#62;", "]]><svg onload=window.canary=1>",
-    "javascript:window.canary=1", "\x00", "\ud800", "a" * 100_000,
+    "javascript:window.canary=1", "\x00", "\ud800", "a" * 3000,
 )
 Path = tuple[str | int, ...]
 
