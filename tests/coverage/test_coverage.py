@@ -1,7 +1,7 @@
 """Intervals hold the truth as often as they say, and verdicts err as seldom (study.py).
 
 The plain command runs a few seeds of every cell and judges cells together; SURVEYKIT_COVERAGE=ci
-runs 120, SURVEYKIT_FULL=all 2,000 a cell and judges each by itself: always the first ones of the
+runs 240, SURVEYKIT_FULL=all 2,000 a cell and judges each by itself: always the first ones of the
 same seeds. Questions of one survey share its errors, so a cell's count is taken as its number of
 seeds.
 """
@@ -22,7 +22,7 @@ from study import study, unchanged  # noqa: E402
 
 FULL = os.environ.get("SURVEYKIT_FULL") == "all"
 CI = os.environ.get("SURVEYKIT_COVERAGE") == "ci"
-SEEDS = 2000 if FULL else 120 if CI else 8
+SEEDS = 2000 if FULL else 240 if CI else 8
 OURS = ("value", "difference", "change")
 
 

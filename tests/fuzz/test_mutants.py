@@ -1,6 +1,6 @@
 """Spoilt files are read as if clean, accounted for, or refused at their place; never else.
 
-300 mutants by default, SURVEYKIT_MUTANTS=1600 in continuous integration, 5,000 with
+300 mutants by default, SURVEYKIT_MUTANTS=4000 in continuous integration, 5,000 with
 SURVEYKIT_FULL=all; the seed stands in the names of the tests.
 What a mutant comes to is held against the clean campaign: its numbers are the same, or the ledger,
 the checks, the flags or the notes differ; a spoilt parameter file that still loads must say
