@@ -10,9 +10,10 @@ import numpy as np
 from surveykit.core import Input
 from surveykit.evidence.brightness import seen_in_rows, window_of
 from surveykit.evidence.conditions import Day, Sky, Span
-from surveykit.evidence.models import background
-from surveykit.evidence.parts import fixed, need
+from surveykit.evidence.models import NEUTRAL, background
+from surveykit.evidence.parts import HALF_WIDTH, fixed, need
 from surveykit.intake.params import Channel
+from surveykit.intake.params.amounts import Uncertain
 from surveykit.intake.sheet_words import Entry
 from surveykit.physics.emissivity import foil_background
 from surveykit.physics.propagation import combined_u
@@ -20,6 +21,7 @@ from surveykit.physics.surroundings import (
     hemispheric_emissivity,
     sky_emissivity_window,
     sky_radiance,
+    sky_view_of_horizon,
     vapour_pressure_hpa,
 )
 
@@ -58,13 +60,15 @@ def surroundings(day: Day, this: Span, sky: Sky, channel: Channel) -> Found:
     """Return the inputs of all that a stand-off reading reflects: sky, walls, a foil's reading."""
     inputs, flags = sky_inputs(day, this, sky, channel)
     site, settings = day.parameters.campaign.site, day.parameters.campaign.settings.temperature
-    inputs["sky_view"] = Input("sky_view", site.sky_view.value, site.sky_view.u,
-                               f"{day.name}:sky view", "share of sky over the site")
+    view = site.sky_view if site.horizon_deg is None else Uncertain(
+        value=sky_view_of_horizon(site.horizon_deg), u=settings.sky_view_u)
+    inputs["sky_view"] = Input("sky_view", view.value, view.u, f"{day.name}:sky view",
+                               "share of sky over the site")
     if site.walls is None:
         walls = Input("walls_k", inputs["air_k"].value, settings.walls_u_k, f"{day.name}:walls",
                       "temperature of what hides the sky, taken as the air's")
         emissivity = settings.walls_emissivity
-        if site.sky_view.value < 1:
+        if view.value < 1:
             flags += ("walls not measured",)
     else:
         given = site.walls.temperature_degC
@@ -73,7 +77,29 @@ def surroundings(day: Day, this: Span, sky: Sky, channel: Channel) -> Found:
         emissivity = site.walls.emissivity
     inputs |= {"walls_k": walls, "walls_emissivity": fixed("walls_emissivity", emissivity),
                "background_factor": fixed("background_factor", 1.0)}
-    return _with_foil(day, this, channel, inputs, flags)
+    inputs, flags = _with_foil(day, this, channel, inputs, flags)
+    if day.parameters.campaign.surfaces[this.surface].reflection == "specular":
+        inputs["background_factor"] = _overhead(day, this, channel, inputs)
+    return inputs, flags
+
+
+def _overhead(day: Day, this: Span, channel: Channel, inputs: dict[str, Input]) -> Input:
+    """Return the factor by which polished ground shows the sky overhead in place of all around.
+
+    No ground is a mirror: the difference of the two, rectangular, is its uncertainty.
+    """
+    x = NEUTRAL | {name: i.value for name, i in inputs.items()} | {"background_factor": 1.0}
+    window, whole = window_of(channel), inputs["background_factor"]
+    zenith = np.minimum(sky_emissivity_window(
+        x["air_k"], vapour_pressure_hpa(x["air_k"], x["relative_humidity"])), 1.0)
+    cloud, base = x["cloud_fraction"], window.radiance(x["air_k"] - x["cloud_base_k"])
+    overhead = x["sky_factor"] * (
+        (1 - cloud) * zenith * window.radiance(x["air_k"]) + cloud * base)
+    ratio = float(overhead / background(x, window))
+    return Input(
+        "background_factor", whole.value * ratio,
+        float(np.hypot(whole.u * ratio, whole.value * (1 - ratio) * HALF_WIDTH)),
+        f"{day.name}:background of polished ground", "sky overhead in place of the whole sky")
 
 
 def _with_measured_sky(day: Day, this: Span, channel: Channel, inputs: dict[str, Input],

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from surveykit.core import Input
+from surveykit.core import FloatArray, Input
 from surveykit.evidence.conditions import NS, Day, Span
 from surveykit.evidence.models import RESPONSE
 from surveykit.evidence.parts import NotEvaluated, fixed
@@ -69,21 +69,33 @@ def seen_in_rows(day: Day, kind: str, channel: Channel) -> list[tuple[Entry, flo
             if e.entry == kind and e.instrument in ("", channel.logger)]
 
 
-def seen_in(day: Day, channel: Channel, row: Entry, *, before_s: float = 0.0) -> float | None:
-    """Return the mean brightness [K] in a row of the sheet, or so long before it; None if unread.
+def seen_in(day: Day, channel: Channel, row: Entry) -> float | None:
+    """Return the mean brightness [K] in a row of the sheet; None if unread.
 
-    Settled readings between the uncertain edges count; an emissivity set in the instrument is
-    undone as in a pass.
+    Settled readings between the uncertain edges count.
     """
-    start, stop = row.start_ns, row.stop_ns
-    if before_s:
-        start, stop = start - round(before_s * NS), start
-    settle = day.parameters.campaign.settings.passes.settle_time_constants
-    edge = round((min(row.edge_u_s, (stop - start) / NS / 4)
-                  + settle * channel.time_constant_s) * NS)
-    _, logged = day.readings(channel, start + edge, stop - edge)
+    start, stop = settled_part(day, channel, row)
+    _, seen = seen_between(day, channel, row, start, stop)
+    return float(seen.mean()) if seen.size else None
+
+
+def settled_part(day: Day, channel: Channel, row: Entry) -> tuple[int, int]:
+    """Return what is left of a row [ns] between its uncertain edges, the head settled."""
+    edge = min(row.edge_u_s, (row.stop_ns - row.start_ns) / NS / 4)
+    edge += day.parameters.campaign.settings.passes.settle_time_constants * channel.time_constant_s
+    return row.start_ns + round(edge * NS), row.stop_ns - round(edge * NS)
+
+
+def seen_between(day: Day, channel: Channel, row: Entry, start_ns: int,
+                 stop_ns: int) -> tuple[FloatArray, FloatArray]:
+    """Return time [s from the row's start] and brightness [K] of readings beside or in a row.
+
+    An emissivity set in the instrument is undone as in a pass.
+    """
+    time_ns, logged = day.readings(channel, start_ns, stop_ns)
+    time = (time_ns - row.start_ns) / NS
     if not logged.size:
-        return None
+        return time, logged
     held = {i.name: i.value for i in setting_inputs(day, channel, row)}
-    return float(logged.mean() if held["emissivity_setting"] == 1.0 else brightness_without_setting(
-        window_of(channel), logged, held["emissivity_setting"], held["reflected_k"]).mean())
+    return time, logged if held["emissivity_setting"] == 1.0 else brightness_without_setting(
+        window_of(channel), logged, held["emissivity_setting"], held["reflected_k"])

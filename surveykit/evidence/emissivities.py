@@ -9,10 +9,10 @@ import numpy as np
 
 from surveykit.core import FloatArray, Input
 from surveykit.evidence.backgrounds import surroundings
-from surveykit.evidence.brightness import seen_in, window_of
-from surveykit.evidence.conditions import Day, Sky
+from surveykit.evidence.brightness import seen_between, seen_in, settled_part, window_of
+from surveykit.evidence.conditions import NS, Day, Sky
 from surveykit.evidence.models import background
-from surveykit.evidence.parts import BANDS, NotEvaluated, series, surface_scope
+from surveykit.evidence.parts import BANDS, HALF_WIDTH, NotEvaluated, series, surface_scope
 from surveykit.intake.params import Channel
 from surveykit.intake.params.sections import Emissivity
 from surveykit.intake.sheet_words import Entry
@@ -29,8 +29,7 @@ from surveykit.physics.vegetation import (
 MOST = 1.03  # of a measured emissivity that is credible
 WIDE = 1.96  # half-width of 95 % of a normal distribution
 NOT_FOR = "never for synthetic turf, paint, metal, water or wet ground"
-LID_REACH_S = 30.0  # between the readings below a lid and below the sky
-LID_U_K = 0.1  # of both readings, against each other
+OPEN_S = 30.0  # before a lid is put on: shows how fast the ground's temperature moves
 Found = tuple[Input, tuple[str, ...]]
 
 
@@ -121,22 +120,41 @@ def _pair(day: Day, entry: Entry, channel: Channel, sky: Sky) -> Pair | None:
 
 
 def _lid(day: Day, entry: Entry, channel: Channel, sky: Sky) -> Pair | None:
-    """Compare the reading below a lid with that below the sky just before."""
-    below, open_sky = seen_in(day, channel, entry), seen_in(day, channel, entry,
-                                                            before_s=LID_REACH_S)
-    if below is None or open_sky is None:
+    """Compare the readings just after a lid was put on with those below the sky just before.
+
+    The ground itself must not move in between: the faster of the rates seen before and below the
+    lid, over the time between the two readings, is allowed as a rectangular error.
+    """
+    settings = day.parameters.campaign.settings.temperature
+    start, stop = settled_part(day, channel, entry)
+    on = 2 * entry.start_ns - start  # as long before as the head needs after, edges and all
+    lidded = seen_between(day, channel, entry, start, stop)
+    before = seen_between(day, channel, entry, on - round(OPEN_S * NS), on)
+    near = [seen[(time >= at) & (time < at + settings.lid_span_s)] for (time, seen), at in (
+        (before, (on - entry.start_ns) / NS - settings.lid_span_s),
+        (lidded, (start - entry.start_ns) / NS))]
+    if not near[0].size or not near[1].size:
         return None
+    open_sky, below = (float(seen.mean()) for seen in near)
+    moved = max(abs(_rate(*before)), abs(_rate(*lidded))) * (
+        (start - on) / NS + settings.lid_span_s)
     window, around, u_around = _around(day, entry, sky, channel)
 
     def found(open_k: float, below_k: float, around: float, lid_k: float) -> FloatArray:
         first, second, lid = (window.radiance(t) for t in (open_k, below_k, lid_k))
         return emissivity_of_two_backgrounds(first, second, around, lid)
 
-    u_lid = entry.reading_u if np.isfinite(entry.reading_u) else \
-        day.parameters.campaign.settings.temperature.lid_u_k
+    u_lid = entry.reading_u if np.isfinite(entry.reading_u) else settings.lid_u_k
     known = open_sky, below, around, entry.reading + 273.15
-    return Pair(float(found(*known)), combined_u(found, known, (LID_U_K, LID_U_K, u_around, u_lid)),
+    us = (settings.lid_reading_u_k, float(np.hypot(settings.lid_reading_u_k, moved * HALF_WIDTH)),
+          u_around, u_lid)
+    return Pair(float(found(*known)), combined_u(found, known, us),
                 known[3] - float(window.temperature_k(around)))
+
+
+def _rate(time_s: FloatArray, seen_k: FloatArray) -> float:
+    """Return the rate of readings [K s-1]; 0 for fewer than three."""
+    return float(np.polyfit(time_s, seen_k, 1)[0]) if seen_k.size > 2 else 0.0
 
 
 def _from_ndvi(day: Day, surface: str, entry: Emissivity) -> Found:

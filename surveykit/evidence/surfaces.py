@@ -180,7 +180,8 @@ def _notes(passes: tuple[PassEstimate, ...], used: tuple[PassEstimate, ...]) -> 
     """Return what lowers the status of a surface: what half its passes or more are flagged with."""
     serious = ("calibration expired", "no calibration stated", "sun lower than",
                "small footprint share", "head radius not stated", "no dark reading",
-               "cloud in the sky model", "few placements", "higher than", "field of view")
+               "cloud in the sky model", "few placements", "higher than", "field of view",
+               "the spot is wider", "housing temperature not logged")
     seen = [f for p in used for f in p.flags if f.startswith(serious)]
     flags = [f for f in dict.fromkeys(seen) if 2 * seen.count(f) >= len(used)]
     left = [p for p in passes if not p.evaluated]

@@ -41,8 +41,9 @@ def stand_off(day: Day, this: Pass, sky: Sky) -> PassValue:
     settings = day.parameters.campaign.settings.temperature
     if this.height_m > settings.path_limit_m:
         more += (f"higher than {settings.path_limit_m:g} m: the air in between is not corrected",)
-    cone = this.channels["brightness_temperature"].half_angle_deg
-    if cone is not None and footprint_m(this.height_m, cone) > np.nanmin(
+    head = this.channels["brightness_temperature"]
+    if head.half_angle_deg is not None and footprint_m(
+            this.height_m, head.half_angle_deg, head.view_angle_deg or 0.0) > np.nanmin(
             [this.length_m, this.width_m, np.inf]):
         more += ("the spot is wider than the patch",)
     made = correct("stand-off", inputs, [

@@ -163,6 +163,31 @@ def sky_radiance(band: Band, t_k: ArrayLike, relative_humidity: ArrayLike) -> Fl
     return np.asarray(hemispheric_emissivity(np.minimum(zenith, 1.0)) * band.radiance(t_k))
 
 
+def sky_view_of_horizon(elevation_deg: ArrayLike) -> float:
+    """Return the share of a level surface's view that is sky, from the horizon around it.
+
+    Parameters
+    ----------
+    elevation_deg : array_like, shape (n,)
+        Elevation of the horizon in n evenly spaced directions [deg].
+
+    Returns
+    -------
+    float
+        Share, cosine-weighted [1].
+
+    References
+    ----------
+    Hand integration: up to an elevation e the horizon of one direction takes sin^2 e.
+
+    Examples
+    --------
+    >>> print(f"{sky_view_of_horizon([30, 30, 0, 0, 0, 0, 30, 30]):.3f}")
+    0.875
+    """
+    return float(1 - np.mean(np.sin(np.radians(np.asarray(elevation_deg, dtype=np.float64))) ** 2))
+
+
 def background_radiance(band: Band, sky_radiance: ArrayLike, sky_view: ArrayLike,
                         walls_k: ArrayLike, walls_emissivity: ArrayLike) -> FloatArray:
     """Return the mean radiance that falls on a surface from sky and walls together.

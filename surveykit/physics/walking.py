@@ -2,13 +2,57 @@
 
 from __future__ import annotations
 
-from math import ceil, floor, isfinite, radians, tan
+from math import ceil, cos, floor, inf, isfinite, log, radians, sin, sqrt, tan
+from typing import NamedTuple
 
 RADII_FOR_90 = 3.0  # a disc of three heights' radius fills 90 % of a cosine head's view
 
 
-def spot_height_m(patch_m: float, half_angle_deg: float, share: float) -> float:
-    """Return the greatest height at which a cone's circle is no more than a share of a patch.
+class Spot(NamedTuple):
+    """The ellipse of ground in a cone's view: full axes and how far ahead its middle lies [m]."""
+
+    length_m: float
+    width_m: float
+    ahead_m: float
+
+
+def spot(height_m: float, half_angle_deg: float, view_angle_deg: float = 0.0) -> Spot:
+    """Return the ground that a cone looks at, straight down or tilted.
+
+    Parameters
+    ----------
+    height_m : float
+        Height of the head [m].
+    half_angle_deg : float
+        Half the full field of view [deg].
+    view_angle_deg : float, optional
+        Angle between the cone's axis and straight down [deg].
+
+    Returns
+    -------
+    Spot
+        Infinite length and width where the cone's upper edge does not meet the ground.
+
+    References
+    ----------
+    Conic section of a cone with a plane: far and near edge at h tan(view angle +- half angle).
+
+    Examples
+    --------
+    >>> print("{:.3f} {:.3f} {:.3f}".format(*spot(1.0, 22.0, 30.0)))
+    1.138 0.949 0.708
+    """
+    view, half = radians(view_angle_deg), radians(half_angle_deg)
+    if view_angle_deg + half_angle_deg >= 90:
+        return Spot(inf, inf, inf)
+    far, near = tan(view + half), tan(view - half)
+    across = 2 * sin(half) / sqrt(cos(view) ** 2 - sin(half) ** 2)
+    return Spot(height_m * (far - near), height_m * across, height_m * (far + near) / 2)
+
+
+def spot_height_m(patch_m: float, half_angle_deg: float, share: float,
+                  view_angle_deg: float = 0.0) -> float:
+    """Return the greatest height at which a cone's spot is no longer than a share of a patch.
 
     Parameters
     ----------
@@ -17,26 +61,28 @@ def spot_height_m(patch_m: float, half_angle_deg: float, share: float) -> float:
     half_angle_deg : float
         Half the full field of view [deg], below 90.
     share : float
-        Largest diameter of the circle as a share of the patch [1].
+        Largest length of the spot as a share of the patch [1].
+    view_angle_deg : float, optional
+        Angle between where the head looks and straight down [deg].
 
     Returns
     -------
     float
-        Height [m].
+        Height [m]; 0 where the cone looks above the horizon.
 
     References
     ----------
-    Geometry of a cone: diameter 2 h tan(half angle).
+    See `spot`: its length grows with the height.
 
     Examples
     --------
     >>> print(f"{spot_height_m(1.0, 22.0, 1 / 3):.3f}")
     0.413
     """
-    return share * patch_m / (2 * tan(radians(half_angle_deg)))
+    return share * patch_m / spot(1.0, half_angle_deg, view_angle_deg).length_m
 
 
-def footprint_m(height_m: float, half_angle_deg: float) -> float:
+def footprint_m(height_m: float, half_angle_deg: float, view_angle_deg: float = 0.0) -> float:
     """Return the diameter of the ground that matters to a head: its cone, or 90 % of a half-space.
 
     Parameters
@@ -45,12 +91,14 @@ def footprint_m(height_m: float, half_angle_deg: float) -> float:
         Height of the head [m].
     half_angle_deg : float
         Half the full field of view [deg]; a head that sees the whole half-space has 90.
+    view_angle_deg : float, optional
+        Angle between where the head looks and straight down [deg].
 
     Returns
     -------
     float
-        Diameter [m]: of the cone's circle, or of the disc that fills 90 % of the view, whichever
-        is smaller.
+        Diameter [m]: of the cone's circle (the longer one of its ellipse), or of the disc that
+        fills 90 % of the view of a level head, whichever is smaller.
 
     References
     ----------
@@ -61,9 +109,8 @@ def footprint_m(height_m: float, half_angle_deg: float) -> float:
     >>> print(f"{footprint_m(0.4, 90.0):.2f}", f"{footprint_m(0.05, 62.5):.3f}")
     2.40 0.192
     """
-    whole = 2 * RADII_FOR_90 * height_m
-    return whole if half_angle_deg >= 89.9 else min(
-        whole, 2 * height_m * tan(radians(half_angle_deg)))
+    seen = spot(height_m, half_angle_deg, view_angle_deg).length_m
+    return seen if view_angle_deg else min(seen, 2 * RADII_FOR_90 * height_m)
 
 
 def walking_speed_m_s(footprint: float, time_constant_s: float) -> float:
@@ -142,3 +189,30 @@ def edge_margin_m(patch_m: float, height_m: float, half_angle_deg: float) -> flo
     (1.2, 0.5)
     """
     return floor(100 * min(footprint_m(height_m, half_angle_deg) / 2, patch_m / 2) + 0.5) / 100
+
+
+def settling_time_s(step: float, left: float, time_constant_s: float) -> float:
+    """Return how long a first-order head needs until of a step no more than a rest is left.
+
+    Parameters
+    ----------
+    step, left : float
+        Size of the step and of the rest, in one unit, above 0.
+    time_constant_s : float
+        Time constant of the head (63 %) [s].
+
+    Returns
+    -------
+    float
+        Time [s]; 0 where the step is no larger than the rest.
+
+    References
+    ----------
+    First-order response: the rest is step exp(-t / time constant).
+
+    Examples
+    --------
+    >>> print(f"{settling_time_s(30.0, 0.1, 1.0):.1f}")
+    5.7
+    """
+    return time_constant_s * max(0.0, log(step / left))

@@ -5,7 +5,8 @@ from __future__ import annotations
 import numpy as np
 import pytest
 from one_estimate import DAY_SCOPE, HEADS, inputs
-from small_survey import NDVI, STAND_OFF, lines, row, small
+from pass_values import sensitivities
+from small_survey import NDVI, SITE, STAND_OFF, lines, row, small
 
 from surveykit.core import InputError
 from surveykit.physics.bands import band
@@ -147,6 +148,80 @@ def test_emissivity_from_two_backgrounds(tmp_path):
                **from_way("two_backgrounds"))
     assert inputs(one)["emissivity"].value == pytest.approx(0.94, abs=2e-3)
     assert one.value - ICE == pytest.approx(50.0, abs=0.1)
+
+
+LID = row(entry="lid", surface="court", patch="C1", instrument="thermal", start="12:03:20",
+          stop="12:03:40", reading="60", reading_u="1")
+
+
+def lidded(root, open_rate=0.0, lid_rate=0.0):
+    """A lid of 60 degC over ground at 50 degC of emissivity .94 that warms or cools [K/s]."""
+    at = np.arange(N) - 200.0
+    ground = 50 + open_rate * np.clip(at, -40, 0) + lid_rate * np.clip(at, 0, 20)
+    seen = 0.94 * B.radiance(ground + ICE) + 0.06 * np.where(
+        (at >= 0) & (at < 20), B.radiance(60 + ICE), HEMISPHERE * B.radiance(AIR))
+    logs = WEATHER | {"thermal": lines("thermal", n=N, target=B.temperature_k(seen) - ICE + CALM)}
+    return made(root, logs, LID, **from_way("two_backgrounds"))
+
+
+def test_only_readings_beside_a_lids_edge_are_compared(tmp_path):
+    """Ground that cools by .05 K/s below the lid: the 5 s after it are off by .13 K, the whole row
+    by .5 K; .13 K of the 1.9 K between the two readings is .004 of emissivity (hand arithmetic)."""
+    still, cooling = lidded(tmp_path / "a"), lidded(tmp_path / "b", lid_rate=-0.05)
+    e = [inputs(one)["emissivity"] for one in (still, cooling)]
+    assert e[0].value == pytest.approx(0.94, abs=1e-3)
+    assert abs(e[1].value - 0.94) < 0.006
+    assert abs(e[1].value - 0.94) < 2 * e[1].u
+    assert e[1].u > e[0].u
+
+
+@pytest.mark.parametrize("moving", [{"open_rate": 0.6}, {"lid_rate": -0.6}])
+def test_a_lid_over_ground_that_moves_fast_is_refused(tmp_path, moving):
+    assert "emissivity is known to" in lidded(tmp_path, **moving).note
+
+
+def test_a_horizon_stands_for_the_sky_view(tmp_path):
+    """Walls up to 30 degrees all round leave cos^2 30 = .75 of the sky (analytic)."""
+    round_about = {"horizon_deg": [30] * 8, "walls": {"temperature_degC": 45.0}}
+    stated = {"sky_view": 0.75, "walls": {"temperature_degC": 45.0}}
+    one, other = (made(tmp_path / name, log(47), site=SITE | site) for name, site in (
+        ("a", round_about), ("b", stated)))
+    assert inputs(one)["sky_view"].value == pytest.approx(0.75)
+    assert inputs(one)["sky_view"].u == 0.1
+    assert one.value == pytest.approx(other.value, abs=1e-9)
+    with pytest.raises(InputError, match="beside sky_view; write one of the two"):
+        made(tmp_path / "c", log(47), site=SITE | round_about | stated)
+
+
+def test_polished_ground_shows_the_sky_overhead(tmp_path):
+    """Independent of the model's own path: the balance solved with the zenith's radiance, and the
+    difference from the hemisphere's as half-width of a rectangle."""
+    def court(**more):
+        return {"surfaces": {"court": {"label": "Court", "emissivity": {
+            "value": 0.90, "u": 0.0, "source": "stated"}, **more}}}
+
+    one = made(tmp_path / "a", log(47), **court(reflection="specular"))
+    other = made(tmp_path / "b", log(47), **court())
+    seen = B.radiance(47 + ICE)
+    zenith, whole = (float(B.temperature_k((seen - 0.1 * e * B.radiance(AIR)) / 0.9))
+                     for e in (ZENITH, HEMISPHERE))
+    assert one.value == pytest.approx(zenith, abs=0.02)
+    assert other.value == pytest.approx(whole, abs=0.02)
+    moved = sensitivities("stand-off", one.inputs)["background_factor"]
+    assert abs(moved) == pytest.approx((zenith - whole) / np.sqrt(3), rel=0.02)
+    assert "background_factor" not in sensitivities("stand-off", other.inputs)
+
+
+@pytest.mark.parametrize("cloud", ["0.5", "1"])
+def test_cloud_overhead_is_as_warm_as_all_around(tmp_path, cloud):
+    """Below full cloud the sky is one: polished ground reads as rough ground does."""
+    rows = [row(entry="weather", quantity="cloud_fraction", start="12:00:00", reading=cloud,
+                reading_u="0.1")]
+    polished = {"surfaces": {"court": {"label": "Court", "reflection": "specular", "emissivity": {
+        "value": 0.90, "u": 0.0, "source": "stated"}}}}
+    one = made(tmp_path, log(47), *rows, **polished)
+    factor = inputs(one)["background_factor"].value
+    assert (factor == pytest.approx(1.0)) if cloud == "1" else 0.85 < factor < 0.99
 
 
 @pytest.mark.parametrize(("form", "value"), [("linear", 0.968), ("squared", 0.958)])

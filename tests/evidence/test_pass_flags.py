@@ -92,11 +92,14 @@ def test_heads_whose_response_is_not_flat(tmp_path, flat, flagged):
     assert (flag in one.flags) == flagged
 
 
-@pytest.mark.parametrize(("height", "flagged"), [("600", True), ("250", False)])
-def test_a_spot_wider_than_its_patch(tmp_path, height, flagged):
-    """22 degrees: 2 h tan 22 is 4.8 m from 6 m, 2.0 m from 2.5 m; the patch is 4 m."""
+@pytest.mark.parametrize(("height", "view", "flagged"), [
+    ("600", None, True), ("250", None, False), ("250", 50, True), ("100", 50, False)])
+def test_a_spot_wider_than_its_patch(tmp_path, height, view, flagged):
+    """22 degrees: 2 h tan 22 is 4.8 m from 6 m, 2.0 m from 2.5 m; the patch is 4 m. Tilted by 50
+    degrees the spot is h (tan 72 - tan 28) long: 6.4 m from 2.5 m, 2.5 m from 1 m.
+    """
     one = stand_off(tmp_path, STAND_OFF | {"height_cm": height}, kit=changed(
-        "thermal", half_angle_deg=22))
+        "thermal", half_angle_deg=22, view_angle_deg=view))
     assert ("the spot is wider than the patch" in one.flags) == flagged
 
 

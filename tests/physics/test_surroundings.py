@@ -7,6 +7,7 @@ import pytest
 from checks import check, names
 from hypothesis import given
 from hypothesis import strategies as st
+from scipy.integrate import dblquad
 
 from surveykit.physics import bands, surroundings, thermal
 
@@ -97,3 +98,21 @@ def test_background_limits():
     assert surroundings.background_radiance(WINDOW, 25.0, 0.3, 310.0, 0.0) == pytest.approx(25.0)
     walls = surroundings.background_radiance(WINDOW, 25.0, 0.0, 310.0, 1.0)
     assert walls == pytest.approx(WINDOW.radiance(310.0))
+
+
+@pytest.mark.parametrize("elevation", [0.0, 20.0, 45.0, 90.0])
+def test_sky_view_below_an_even_horizon(elevation):
+    """Analytic: a cone of sky around the zenith weighs cos^2 of the horizon's elevation."""
+    share = surroundings.sky_view_of_horizon(np.full(8, elevation))
+    assert share == pytest.approx(np.cos(np.radians(elevation)) ** 2)
+
+
+def test_sky_view_beside_a_wall_against_quadrature():
+    """Independent: cosine-weighted dblquad over the sky above a wall that takes half the round."""
+    def over(azimuth_from, azimuth_to, horizon):
+        return dblquad(lambda e, _: np.sin(e) * np.cos(e) / np.pi, azimuth_from, azimuth_to,
+                       horizon, np.pi / 2)[0]
+
+    expected = over(0, np.pi, np.radians(35.0)) + over(np.pi, 2 * np.pi, 0.0)
+    share = surroundings.sky_view_of_horizon([35, 35, 35, 35, 0, 0, 0, 0])
+    assert share == pytest.approx(expected, abs=1e-9)

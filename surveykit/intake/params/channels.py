@@ -21,7 +21,7 @@ from surveykit.intake.params.heads import (
 from surveykit.intake.params.quantities import DEFAULT_U, PHYSICAL_UNITS
 from surveykit.intake.params.settings import Settings
 
-AS_STATED = ("half_angle_deg", "band_centres_nm", "band_widths_nm", "class_terms",
+AS_STATED = ("half_angle_deg", "view_angle_deg", "band_centres_nm", "band_widths_nm", "class_terms",
              "spectrally_flat", "band_ratio")
 
 
@@ -61,6 +61,7 @@ class Channel:
     band_ratio: BandRatio | None = None
     range: tuple[float, float] | None = None
     band_response: tuple[tuple[float, float], ...] = ()
+    view_angle_deg: float | None = None
 
     def to_si(self, reading: ArrayLike) -> FloatArray:
         """Return the readings in SI, NaN where they are."""

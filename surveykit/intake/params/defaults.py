@@ -121,6 +121,11 @@ class TemperatureSettings(Strict):
         ge=0)
     lid_u_k: float = setting(
         2.0, "K", "Standard uncertainty of a lid's temperature where none is written.", ge=0)
+    lid_span_s: float = setting(
+        5.0, "s", "Stretch just before a lid is put on, and just after, whose readings are "
+        "compared.", gt=0, le=60)
+    lid_reading_u_k: float = setting(
+        0.1, "K", "Standard uncertainty of either of these readings against the other.", ge=0)
 
 
 class AlbedoSettings(Strict):

@@ -79,6 +79,9 @@ class Head(Strict):
         write="a list of [um, response] such as [[7.5, 0], [8.5, 1], [14, 0]], wavelengths rising")
     half_angle_deg: float | None = key(
         "Half of the field of view; 90 for a hemisphere.", default=None, gt=0, le=90, unit="deg")
+    view_angle_deg: float | None = key(
+        "Angle between where an infrared head looks and straight down; absent: straight down.",
+        default=None, ge=0, le=60, unit="deg")
     time_constant_s: float | None = key(
         "Time constant (63 %).", default=None, ge=0, le=3600, unit="s")
     t95_s: float | None = key(

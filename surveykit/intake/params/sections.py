@@ -33,6 +33,7 @@ from surveykit.intake.params.instruments import one_or_more, zone_fault
 from surveykit.intake.params.timekeeping import Clock
 
 MAX_ZONE_GAP_H = 3.5
+Elevation = Annotated[float, Field(ge=0, le=90)]
 
 
 def _zone(zone: str) -> str:
@@ -69,11 +70,17 @@ class Site(Strict):
     sky_view: Annotated[Uncertain, BareNumber("temperature.sky_view_u", 0.0, 1.0)] = key(
         "Share of the sky seen from the ground.", default=1.0, validate_default=True,
         write="a number from 0 to 1, or {value, u}")
+    horizon_deg: Annotated[tuple[Elevation, ...], Field(strict=False, min_length=4)] | None = key(
+        "Elevation of the horizon in evenly spaced directions all round, in place of sky_view.",
+        default=None, write="a list of four or more elevations from 0 to 90, such as one every 45 "
+        "degrees, in degrees")
     walls: Walls | None = key("What hides the rest of the sky.", default=None,
                               write="{temperature_degC, emissivity}")
 
     def faults(self) -> Iterator[Fault]:
-        """Longitude and time zone must belong together."""
+        """The sky's share once; longitude and time zone must belong together."""
+        if self.horizon_deg is not None and "sky_view" in self.model_fields_set:
+            yield ("horizon_deg",), "got it beside sky_view; write one of the two"
         if self.time_zone in ("UTC", "Etc/UTC", "Etc/UCT", "UCT", "Zulu", "Etc/Zulu", "Universal",
                               "Etc/Universal"):
             return
@@ -170,6 +177,9 @@ class Surface(Strict):
     emissivity_broadband: Emissivity | None = key(
         "Emissivity over all wavelengths, for longwave pairs, net radiation and the solar "
         "reflectance index.", default=None, write="{value, u, source}")
+    reflection: Literal["diffuse", "specular"] = key(
+        "How it reflects in the thermal band: rough ground shows the whole sky, polished ground "
+        "seen from above the sky overhead.", default="diffuse", write="diffuse or specular")
     slope_deg: float | None = key(
         "Its slope, for the conditions of published methods.", default=None, ge=0, le=90,
         unit="deg")
