@@ -142,7 +142,8 @@ TABLES: dict[str, dict[str, str]] = {
         "campaign": "text", "quantity": "text", "kind": "text", "surface": "text",
         "other": "text", "unit": "text", "difference": "number", "u": "number",
         "lower": "number", "upper": "number", "coverage": "number",
-        "lower_all": "number", "upper_all": "number", "p_adjusted": "number",
+        "end_error": "number", "lower_all": "number", "upper_all": "number",
+        "p_adjusted": "number",
         "could_have_missed": "number", "verdict": "text", "note": "text",
     },
     "ranks": {
@@ -153,7 +154,8 @@ TABLES: dict[str, dict[str, str]] = {
         "campaign": "text", "earlier": "text", "quantity": "text", "kind": "text",
         "surface": "text", "control": "text", "method": "text", "unit": "text",
         "change": "number", "u": "number", "lower": "number", "upper": "number",
-        "coverage": "number", "comparability": "text", "could_have_missed": "number",
+        "coverage": "number", "end_error": "number", "comparability": "text",
+        "could_have_missed": "number",
         "verdict": "text", "note": "text",
     },
     "trends": {

@@ -7,7 +7,7 @@ predecessors first where their results are absent or belong to other inputs.
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Callable
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass, field, replace
 from functools import cached_property, wraps
 from pathlib import Path
@@ -34,8 +34,11 @@ from surveykit.opening import Survey, open_file
 from surveykit.opening import open_survey as open_survey
 from surveykit.quality import examine
 from surveykit.statistics.draws import Draws
+from surveykit.statistics.simultaneous import settled
 
 Tables = dict[str, pd.DataFrame]
+Groups = tuple[pooling.Group, ...]
+Ends = Iterable[tuple[float, float]]
 COMPARED = ("differences", "ranks", "changes", "trends")
 STAGES = ("ingest", "quality", "surfaces", "comparison")
 
@@ -156,10 +159,16 @@ def surfaces(survey: Survey) -> Evidence:
         draws = Draws(survey.draws().seed, load_facts(folder / "draws.json")["draws"])
         return Evidence(estimates, tables, draws, lambda: _groups(survey, estimates, draws))
     estimates = estimate_all(day(survey), ingest(survey).passes)
-    groups, draws = pooling.settled(lambda some: _groups(survey, estimates, some), survey.draws(),
-                                    coverage, survey.campaign.settings.statistics.stable_digits)
+
+    def pooled(draws: Draws) -> tuple[tuple[Groups, pd.DataFrame], Ends]:
+        groups = _groups(survey, estimates, draws)
+        frame = pooling.surface_table(groups, coverage, survey.campaign.relevant_change)
+        return (groups, frame), _ends(frame)
+
+    (groups, frame), draws = settled(
+        pooled, survey.draws(), survey.campaign.settings.statistics.stable_digits)
     tables = pooling.pass_tables(name, estimates) | {
-        "surfaces": pooling.surface_table(groups, coverage, survey.campaign.relevant_change),
+        "surfaces": frame,
         "budget": pooling.budget_table(groups),
         "derived": derived(day(survey), groups, draws, coverage),
         "geometry": geometry(day(survey), estimates)}
@@ -178,13 +187,18 @@ def comparison(survey: Survey) -> Tables:
     key = hashlib.sha256("".join(s.key for s in (survey, *earlier)).encode()).hexdigest()
     if _fresh(folder, key):
         return {name: load_table(folder / f"{name}.npz") for name in COMPARED}
+
+    def compared(draws: Draws) -> tuple[Tables, Ends]:
+        now, *then = (_date(one, draws) for one in (survey, *earlier))
+        _refuse_later(now, tuple(then))
+        made = {"differences": compare.differences(now, draws), "ranks": compare.ranks(now, draws),
+                "changes": compare.changes(now, tuple(then), draws),
+                "trends": trends(now, tuple(then), draws)}
+        return made, [*_ends(made["differences"]), *_ends(made["changes"])]
+
     size = max(surfaces(one).draws.size for one in (survey, *earlier))
-    draws = Draws(survey.draws().seed, size)
-    now = _date(survey, draws)
-    then = tuple(_date(one, draws) for one in earlier)
-    _refuse_later(now, then)
-    made = {"differences": compare.differences(now, draws), "ranks": compare.ranks(now, draws),
-            "changes": compare.changes(now, then, draws), "trends": trends(now, then, draws)}
+    made, _ = settled(compared, Draws(survey.draws().seed, size),
+                      survey.campaign.settings.statistics.stable_digits)
     for name, frame in made.items():
         save_table(folder / f"{name}.npz", frame)
     _finish(folder, key)
@@ -212,6 +226,11 @@ def _date(survey: Survey, draws: Draws) -> Date:
     alike = (evidence.draws.seed, evidence.draws.size) == (draws.seed, draws.size)
     found = evidence.groups if alike else _groups(survey, evidence.estimates, draws)
     return Date(survey.parameters, {group.key: group for group in found})
+
+
+def _ends(frame: pd.DataFrame) -> Ends:
+    """Return u and the Monte Carlo error of the ends of each interval in a table."""
+    return frame[["u", "end_error"]].dropna().itertuples(index=False, name=None)
 
 
 def _groups(survey: Survey, estimates: tuple[PassEstimate, ...],

@@ -58,7 +58,8 @@ def _rows(now: Date, then: Date, key: tuple[str, str, str], control: str,
         "campaign": now.name, "earlier": then.name, "quantity": quantity, "kind": kind,
         "surface": surface, "control": "" if is_control else control,
         "unit": "K" if quantity == "temperature" else "1", "change": np.nan, "u": np.nan,
-        "lower": np.nan, "upper": np.nan, "comparability": "", "could_have_missed": np.nan,
+        "lower": np.nan, "upper": np.nan, "end_error": np.nan, "comparability": "",
+        "could_have_missed": np.nan,
         "verdict": "", "note": "", "p_adjusted": np.nan, "judged": False}
     new, old = now.find(*key), then.find(*key)
     control_key = (control, quantity, kind)
@@ -118,8 +119,8 @@ def _absent(now: Date, then: Date, key: tuple[str, str, str]) -> dict[str, Any]:
 
 def _summary(now: Date, made: Result) -> dict[str, Any]:
     s = summarise(made, now.parameters.campaign.settings.statistics.coverage)
-    return {"change": s.value, "u": s.u, "lower": s.lower, "upper": s.upper, "p": s.p_two_sided,
-            "dof": s.dof, "result": made}
+    return {"change": s.value, "u": s.u, "lower": s.lower, "upper": s.upper,
+            "end_error": s.end_error, "p": s.p_two_sided, "dof": s.dof, "result": made}
 
 
 def _known(value: float, deviation: FloatArray) -> Result:

@@ -153,7 +153,8 @@ def _difference(date: Date, a: Group, b: Group, note: str, draws: Draws) -> dict
     row: dict[str, Any] = {
         "campaign": date.name, "quantity": a.quantity, "kind": a.kind, "surface": a.surface,
         "other": b.surface, "unit": DIFFERENCE_UNITS[a.quantity], "difference": np.nan,
-        "u": np.nan, "lower": np.nan, "upper": np.nan, "lower_all": np.nan, "upper_all": np.nan,
+        "u": np.nan, "lower": np.nan, "upper": np.nan, "end_error": np.nan,
+        "lower_all": np.nan, "upper_all": np.nan,
         "p_adjusted": np.nan, "could_have_missed": np.nan, "verdict": "", "note": ""}
     for group in (a, b):
         if group.result is None:
@@ -169,5 +170,5 @@ def _difference(date: Date, a: Group, b: Group, note: str, draws: Draws) -> dict
         late.append(f"pseudo-replication: one patch of {' and of '.join(single)}, so this holds "
                     f"for {'these patches' if len(single) > 1 else 'that patch'}")
     return row | {"difference": s.value, "u": s.u, "lower": s.lower, "upper": s.upper,
-                  "p": s.p_two_sided, "dof": s.dof, "result": made,
+                  "end_error": s.end_error, "p": s.p_two_sided, "dof": s.dof, "result": made,
                   "note": "; ".join(t for t in (note, *late) if t)}

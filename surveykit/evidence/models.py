@@ -28,6 +28,7 @@ from surveykit.physics.vegetation import ndvi, reflectance_factor, savi
 from surveykit.statistics.draws import Draws
 
 Values = Mapping[str, Any]
+CHUNK = 8192  # draws that a model is given at once: 64 kB a vector stays in the cache
 RESPONSE = "response at um "  # and the wavelength: an input of a head's tabulated response
 
 # Effects that a pass may or may not have, at the value at which they do nothing.
@@ -155,15 +156,19 @@ def deviations(model: str, inputs: Sequence[Input], draws: Draws, pass_scope: st
     """Return draws of value minus nominal value, shape (M,), shared inputs moved together.
 
     Inputs of the pass's own scope stay at their value: they are part of the pass's own scatter.
+    The model runs on one chunk of draws after another, so that what it holds in between does not
+    grow with their number.
     """
     x: dict[str, Any] = {i.name: i.value for i in inputs}
     nominal = MODELS[model](x)
-    moved = [i for i in inputs if i.u > 0 and i.scope != pass_scope]
-    for i in moved:
-        x[i.name] = i.value + i.u * draws.standard(i.scope, i.distribution)
-    if not moved:
-        return np.zeros(draws.size)
-    return np.asarray(MODELS[model](x) - nominal)
+    moved = [(i, draws.standard(i.scope, i.distribution)) for i in inputs
+             if i.u > 0 and i.scope != pass_scope]
+    out = np.zeros(draws.size)
+    for start in range(0, draws.size if moved else 0, CHUNK):
+        some = slice(start, start + CHUNK)
+        out[some] = MODELS[model](
+            x | {i.name: i.value + i.u * vector[some] for i, vector in moved}) - nominal
+    return out
 
 
 def _foreign(x: Values, contrast: Any) -> Any:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from typing import Any
 
@@ -19,9 +19,7 @@ from surveykit.evidence.spreads import Spreads, rows_by_patch
 from surveykit.intake.params.sections import RelevantChange
 from surveykit.statistics.draws import Draws, Result, Sampling, Summary, observed, summarise
 from surveykit.statistics.pooling import Common, Pooled, pool
-from surveykit.statistics.simultaneous import end_error, tolerance
 
-MOST_DRAWS = 400_000
 MEASURED = re.compile(r"\d+(?=%| s of| W m-2| degrees)")  # numbers in a reason that passes share
 
 
@@ -85,27 +83,6 @@ def groups(campaign: str, estimates: Sequence[PassEstimate], draws: Draws, *, co
     spreads = Spreads(campaign, found) if between_passes == "common" else None
     return tuple(pool_passes(campaign, key, some, draws, coverage, spreads)
                  for key, some in found.items())
-
-
-def settled(make: Callable[[Draws], tuple[Group, ...]], draws: Draws, coverage: float,
-            digits: int) -> tuple[tuple[Group, ...], Draws]:
-    """Return the groups with as many draws as hold the ends of their intervals, and these draws.
-
-    Draws are doubled, up to 400,000, until twice the standard error of every end is within half
-    a unit of the last of so many significant digits of u; 0 digits: the draws as they are.
-
-    References
-    ----------
-    JCGM 101:2008, 7.9.2 (numerical tolerance) and 7.9.4 (the comparison).
-    """
-    while True:
-        found = make(draws)
-        open_ends = (
-            2 * end_error(g.result.judged, coverage) > tolerance(s.u, digits)
-            for g in found if g.result is not None and (s := summarise(g.result, coverage)).u > 0)
-        if not digits or draws.size >= MOST_DRAWS or not any(open_ends):
-            return found, draws
-        draws = Draws(draws.seed, min(2 * draws.size, MOST_DRAWS))
 
 
 def pool_passes(campaign: str, key: tuple[str, str, str], passes: Sequence[PassEstimate],
@@ -232,7 +209,7 @@ def surface_table(found: Sequence[Group], coverage: float,
             s = summarise(g.result, coverage)
             row |= {"u": s.u, "lower": display(s.lower, g.quantity),
                     "upper": display(s.upper, g.quantity), "k": s.k, "dof": s.dof,
-                    "end_error": end_error(g.result.judged, coverage)}
+                    "end_error": s.end_error}
             if wanted and g.pooled and g.units_u is not None:
                 row["needed"] = units_needed(g.budget, g.pooled, g.units_u, wanted.of(g.quantity),
                                              coverage)

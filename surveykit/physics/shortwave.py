@@ -156,9 +156,10 @@ def daily_factor(zenith_deg: ArrayLike, irradiance_w_m2: ArrayLike, at_zenith_de
     zenith = np.asarray(zenith_deg, dtype=np.float64)
     weight = np.where(zenith < 90, np.asarray(irradiance_w_m2, dtype=np.float64), 0.0)
     strength = np.asarray(d, dtype=np.float64)
-    course = zenith_factor(np.minimum(zenith, 90.0), strength[..., None])
-    mean = (course * weight).sum(axis=-1) / weight.sum()
-    return np.asarray(mean / zenith_factor(at_zenith_deg, strength))
+    whole = sum((share * zenith_factor(angle, strength)  # one time at once: d may be many draws
+                 for angle, share in zip(zenith, weight / weight.sum(), strict=True) if share > 0),
+                np.zeros(strength.shape))
+    return np.asarray(whole / zenith_factor(at_zenith_deg, strength))
 
 
 def levelling_error(zenith_deg: ArrayLike, tilt_deg: ArrayLike,

@@ -81,7 +81,10 @@ class Result:
 
 
 class Summary(NamedTuple):
-    """What is reported of a result: u, the interval of the draws, k = U / u, effective dof."""
+    """What is reported of a result: u, the interval of the draws, k = U / u, effective dof.
+
+    `end_error` is the standard error by Monte Carlo of the interval's ends, the larger of the two.
+    """
 
     value: float
     u: float
@@ -90,6 +93,7 @@ class Summary(NamedTuple):
     k: float
     dof: float
     p_two_sided: float
+    end_error: float
 
 
 def observed(value: float, systematic: FloatArray, sampling: tuple[Sampling, ...],
@@ -198,7 +202,9 @@ def summarise(result: Result, coverage: float) -> Summary:
         u = sqrt(var(systematic) + sum se^2), which stays finite at any dof; lower and upper are
         the draws' quantiles with equal tails; k = (upper - lower) / (2 u), NaN where u is 0; dof
         by Welch-Satterthwaite, infinite without sampling; p of the value against 0, two-sided:
-        of Student's t with these dof or of the draws, whichever is larger.
+        of Student's t with these dof or of the draws, whichever is larger; the ends' error from
+        the draws one standard error of a binomial count away (an upper bound: draws in strata are
+        a little better than that).
 
     Raises
     ------
@@ -207,20 +213,23 @@ def summarise(result: Result, coverage: float) -> Summary:
 
     References
     ----------
-    JCGM 100:2008, G.4.1 equation (G.2b) (Welch-Satterthwaite); JCGM 101:2008, 7.7.
+    JCGM 100:2008, G.4.1 equation (G.2b) (Welch-Satterthwaite); JCGM 101:2008, 7.7 and 7.9.1; the
+    distribution-free interval of a quantile: David, Order Statistics (from memory).
     """
     if not 0 < coverage < 1:
         raise ValueError(f"coverage must lie between 0 and 1, got {coverage!r}")
     variance, dof = _effective(result.sampling, float(result.systematic.var(ddof=1)))
     u = float(np.sqrt(variance))
-    tails = [(1 - coverage) / 2, (1 + coverage) / 2]
-    lower, upper = (float(end) for end in np.quantile(result.judged, tails))
+    tail = (1 - coverage) / 2
+    off = np.array([-1.0, 0.0, 1.0]) * np.sqrt(tail * (1 - tail) / result.judged.size)
+    low, high = np.quantile(result.judged, np.clip([tail + off, 1 - tail + off], 0, 1))
+    lower, upper, error = float(low[1]), float(high[1]), float(max(np.ptp(low), np.ptp(high)) / 2)
     if u == 0:
-        return Summary(result.value, u, lower, upper, np.nan, dof, float(result.value == 0))
+        return Summary(result.value, u, lower, upper, np.nan, dof, float(result.value == 0), error)
     beyond = min(np.count_nonzero(result.judged <= 0), np.count_nonzero(result.judged >= 0))
     p = max(float(2 * stdtr(dof, -abs(result.value) / u)),
             min(1.0, 2.0 * float(beyond) / result.total.size))
-    return Summary(result.value, u, lower, upper, (upper - lower) / (2 * u), dof, p)
+    return Summary(result.value, u, lower, upper, (upper - lower) / (2 * u), dof, p, error)
 
 
 def _effective(sampling: tuple[Sampling, ...], known: float = 0.0) -> tuple[float, float]:

@@ -1,13 +1,17 @@
-"""Several results judged at once: simultaneous intervals, ranks, error of the Monte Carlo ends."""
+"""Several results judged at once: simultaneous intervals, ranks, enough draws for all of them."""
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Iterable, Sequence
+from typing import TypeVar
 
 import numpy as np
 
 from surveykit.core import FloatArray
-from surveykit.statistics.draws import Result
+from surveykit.statistics.draws import Draws, Result
+
+MOST_DRAWS = 400_000
+Made = TypeVar("Made")
 
 
 def simultaneous(results: Sequence[Result], coverage: float) -> FloatArray:
@@ -82,36 +86,6 @@ def rank_probabilities(results: Sequence[Result]) -> FloatArray:
     return np.stack([(places == j).mean(axis=1) for j in range(len(results))], axis=1)
 
 
-def end_error(total: FloatArray, coverage: float) -> float:
-    """Return the standard error by Monte Carlo of an interval's ends, the larger of the two.
-
-    From the order statistics one standard error of a binomial count away; draws in strata are
-    a little better than that, so it is an upper bound.
-
-    Parameters
-    ----------
-    total : ndarray, shape (M,)
-        Draws of the result.
-    coverage : float
-        Coverage probability of the interval [1].
-
-    Returns
-    -------
-    float
-        Standard error, unit of the draws; NaN where a draw is NaN.
-
-    References
-    ----------
-    JCGM 101:2008, 7.9.1 and D; the distribution-free interval of a quantile: David, Order
-    Statistics (from memory).
-    """
-    tail = (1 - coverage) / 2
-    step = np.sqrt(tail * (1 - tail) / total.size)
-    ends = np.quantile(total, [max(tail - step, 0), tail + step, 1 - tail - step,
-                               min(1 - tail + step, 1)])
-    return float(max(ends[1] - ends[0], ends[3] - ends[2]) / 2)
-
-
 def tolerance(u: float, digits: int) -> float:
     """Return half a unit of the last of so many significant digits of a standard uncertainty.
 
@@ -126,3 +100,36 @@ def tolerance(u: float, digits: int) -> float:
     """
     exponent = int(f"{u:.{digits - 1}e}".partition("e")[2])
     return 0.5 * 10.0 ** (exponent - digits + 1)
+
+
+def settled(make: Callable[[Draws], tuple[Made, Iterable[tuple[float, float]]]], draws: Draws,
+            digits: int) -> tuple[Made, Draws]:
+    """Return what is made with as many draws as hold the ends of its intervals, and these draws.
+
+    Draws are doubled, up to 400,000, until twice the standard error of every end is within half
+    a unit of the last of so many significant digits of u.
+
+    Parameters
+    ----------
+    make : callable
+        From draws to what is made, and (u, standard error of the ends) of each interval in it.
+    draws : Draws
+        The draws to begin with.
+    digits : int
+        Significant digits of u that must hold; 0 takes the draws as they are.
+
+    Returns
+    -------
+    tuple
+        What was made last, and its draws.
+
+    References
+    ----------
+    JCGM 101:2008, 7.9.2 (numerical tolerance) and 7.9.4 (the comparison).
+    """
+    while True:
+        made, ends = make(draws)
+        if not digits or draws.size >= MOST_DRAWS or not any(
+                2 * error > tolerance(u, digits) for u, error in ends if u > 0):
+            return made, draws
+        draws = Draws(draws.seed, min(2 * draws.size, MOST_DRAWS))

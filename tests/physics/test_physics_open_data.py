@@ -20,7 +20,8 @@ import pytest
 from scipy.optimize import curve_fit
 from small_survey import ALBEDO, CERTAIN, KIT, NDVI, flux, lines, row, small
 
-from surveykit.physics.shortwave import ratio_of_sums, zenith_factor
+from surveykit.physics.shortwave import ratio_of_sums, shortwave_limits, zenith_factor
+from surveykit.physics.sun import sun_track
 from surveykit.physics.vegetation import ndvi, ndvi_of_sums
 
 pytestmark = pytest.mark.skipif(
@@ -53,6 +54,19 @@ def test_zenith_dependence_of_clear_days(month, day, expected):
                           p0=(0.2, 0.3))
     assert 0.33 <= d <= 0.41
     assert d == pytest.approx(expected, abs=0.02)
+
+
+def test_limits_on_a_measured_month(month):
+    """No minute beyond what is physically possible, 13 beyond what is extremely rare (computed
+    apart, by the published formulas; one more lies within a watt of the limit, half a minute of
+    the sun's way)."""
+    light = month["ghi"].astype(float).to_numpy()
+    time_ns = month.index.tz_convert("UTC").tz_localize(None).to_numpy().astype("datetime64[ns]")
+    sun = sun_track(time_ns.astype(np.int64), 46.815, 6.944, 491.0)
+    limits = shortwave_limits(sun.cos_zenith, sun.extraterrestrial_w_m2)
+    with np.errstate(invalid="ignore"):
+        assert np.count_nonzero(light > limits.down_possible) == 0
+        assert np.count_nonzero(light > limits.down_rare) == pytest.approx(13, abs=1)
 
 
 @pytest.fixture(scope="module")

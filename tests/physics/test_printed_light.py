@@ -215,12 +215,14 @@ def test_slopes_of_the_index_to_the_printed_digits():
     assert index(0.30, 0.905) - index(0.30, 0.895) == pytest.approx(0.43, abs=0.005)
 
 
-def test_the_equation_stays_within_two_of_the_balance():
-    """E1980's own statement of its regression: largest deviation 2, mean .9 (from its text)."""
+@pytest.mark.parametrize("convection", [12.0, 30.0])
+def test_the_equation_stays_within_two_of_the_balance(convection):
+    """ASTM E1980 of its regression: largest deviation 2, mean .9. So it is with medium and strong
+    wind at emissivities of .3 to .95; in weak wind its largest is 2.6 there."""
     reflectance, emissivity = np.meshgrid(np.linspace(0.1, 0.9, 17), np.linspace(0.3, 0.95, 14))
-    found = solar_reflectance_index(reflectance.ravel(), emissivity.ravel(), 12.0)
+    found = solar_reflectance_index(reflectance.ravel(), emissivity.ravel(), convection)
     off = np.abs(found.balance - found.regression)
     off = off[np.isfinite(off)]
     assert off.size > 150
-    assert off.max() < 2.5
-    assert off.mean() < 0.95
+    assert off.max() <= 2
+    assert off.mean() <= 0.9

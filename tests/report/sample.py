@@ -59,7 +59,8 @@ SOURCES = {
 
 FILL: dict[str, dict[str, Any]] = {
     "surfaces": {"spread": 0.4, "end_error": 0.002, "needed": 12.0}, "budget": {"narrower": 0.01},
-    "differences": {"lower_all": float("nan"), "upper_all": float("nan")},
+    "differences": {"end_error": 0.002, "lower_all": float("nan"), "upper_all": float("nan")},
+    "changes": {"end_error": 0.002},
 }
 
 

@@ -6,8 +6,8 @@ import numpy as np
 import pytest
 from scipy import stats
 
-from surveykit.statistics.draws import Draws, Result, Sampling, combine, observed
-from surveykit.statistics.simultaneous import end_error, rank_probabilities, simultaneous
+from surveykit.statistics.draws import Draws, Result, Sampling, combine, observed, summarise
+from surveykit.statistics.simultaneous import rank_probabilities, simultaneous
 
 DRAWS = Draws(20251, 200_000)
 
@@ -66,5 +66,6 @@ def test_places_of_two_and_of_shared_errors():
 def test_error_of_the_ends_against_repeated_draws(size):
     rng = np.random.default_rng(3)
     ends = [np.quantile(rng.standard_normal(size), 0.975) for _ in range(300)]
-    stated = np.mean([end_error(rng.standard_normal(size), 0.95) for _ in range(30)])
+    made = (Result(0.0, draws, draws) for draws in rng.standard_normal((30, size)))
+    stated = np.mean([summarise(one, 0.95).end_error for one in made])
     assert stated == pytest.approx(np.std(ends), rel=0.2)
