@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from surveykit.core import FloatArray, Input
+from surveykit.evidence import models
 from surveykit.evidence.conditions import NS, Day, Sky
 from surveykit.evidence.corrections import Correction, correct
 from surveykit.evidence.heads import class_inputs, directional_inputs, limits
@@ -36,6 +37,7 @@ from surveykit.statistics.series import mean_of_series
 
 GROUND_SHARE = 1 / 3  # of the sky head's hidden zero, for the head that looks at the ground
 EVERY_WAY_DEG = np.arange(0.0, 360.0, 45.0)  # a hand may lean any way
+NEAR_M = 1.5  # nearer than this an operator hides more than a hundredth of either view
 LOWEST = 0.02  # albedo below which something is wrong, as no ground is so dark
 
 
@@ -72,7 +74,9 @@ def albedo(day: Day, this: Pass, sky: Sky) -> PassValue:
     value = made.steps[-1][1]
     if value < LOWEST:
         more += ("darker than any ground",)
-    residual = (up - up.mean() / down.mean() * down) / down.mean()
+    x = {name: i.value for name, i in made.inputs.items()}
+    slope = float(models.albedo(x | {"up": x["up"] + 1.0}) - models.albedo(x))  # linear in `up`
+    residual = slope * (up - up.mean() / down.mean() * down)
     within = mean_of_series(residual, unit="1", method="ratio of sums")
     return PassValue(float(ratio_of_sums(*raw)), value, within.u, within.n_eff,
                      tuple(made.inputs.values()),
@@ -130,7 +134,7 @@ def _circumstances(day: Day, this: Pass, down: FloatArray, zenith: float) -> tup
     settings = day.parameters.campaign.settings.albedo
     heads = this.channels["shortwave_up"], this.channels["shortwave_down"]
     flags: tuple[str, ...] = ()
-    if all(day.darks[c.logger, c.column] is None for c in heads):
+    if any(day.darks[c.logger, c.column] is None for c in heads):
         flags += ("no dark reading",)
     if zenith > settings.zenith_qualified_deg:
         flags += (f"sun lower than {90 - settings.zenith_qualified_deg:.0f} degrees: "
@@ -151,6 +155,8 @@ def _circumstances(day: Day, this: Pass, down: FloatArray, zenith: float) -> tup
             flags += ("heads too slow for the walk",)
     if this.operator_side in ("sun", "across"):
         flags += ("the operator stood beside or towards the sun",)
+    if settings.operator_distance_m < NEAR_M:
+        flags += (f"the operator stood nearer than {NEAR_M:g} m",)
     return flags
 
 

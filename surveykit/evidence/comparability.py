@@ -7,10 +7,12 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from surveykit.evidence.surfaces import Group
+from surveykit.evidence.vegetation import bands_of
 from surveykit.intake.params import Parameters
 
 WORDS = {"A": "matched", "B": "partly matched", "C": "not matched"}
 STATED_SKY = {"clear": "clear", "overcast": "diffuse", "broken": "mixed"}
+OTHER_BANDS = "the bands differ"
 SKY_WORDS = {"clear": "clear", "diffuse": "overcast", "mixed": "broken"}
 
 
@@ -99,9 +101,9 @@ def comparability(now: Date, then: Date, new: Group, old: Group,
         _match(lowered, "wind", abs(new.mean("wind_m_s") - old.mean("wind_m_s")),
                limits.wind_match_m_s, "wind differs by {:.1f} m s-1")
     if new.quantity == "ndvi":
-        if _bands(new) != _bands(old):
-            barred.append("the bands differ")
-        elif None in _bands(new):
+        if any(bands(a) != bands(b) for a, b in ((new, old), *([controls] if controls else []))):
+            barred.append(OTHER_BANDS)
+        elif any(None in pair for pair in bands(new)):
             lowered.append("the bands are not stated")
     if controls is None:
         missing = "no control with an interval on both dates"
@@ -124,8 +126,6 @@ def _match(lowered: list[str], what: str, size: float, limit: float, words: str)
         lowered.append(words.format(size))
 
 
-def _bands(group: Group) -> tuple[object, ...]:
-    """Return centres and widths of the bands of a group's heads; None where one is not stated."""
-    channels = group.used[0].this.channels
-    return tuple(getattr(channels[name], part) for name in sorted(channels)
-                 for part in ("band_centres_nm", "band_widths_nm"))
+def bands(group: Group) -> frozenset[tuple[object, object]]:
+    """Return centres and widths of all bands that a group's NDVI was read in."""
+    return frozenset().union(*(bands_of(p.this, p.inputs) for p in group.used))

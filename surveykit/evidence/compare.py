@@ -10,12 +10,13 @@ import pandas as pd
 
 from surveykit.core import table
 from surveykit.evidence.changes import changes_between, zenith_term
-from surveykit.evidence.comparability import Date
+from surveykit.evidence.comparability import OTHER_BANDS, SKY_WORDS, Date, bands, sky_of
 from surveykit.evidence.drift import EXTRAPOLATED, at_common_time
 from surveykit.evidence.surfaces import Group
 from surveykit.statistics.draws import Draws, Result, combine, summarise
 from surveykit.statistics.simultaneous import rank_probabilities, simultaneous
 from surveykit.statistics.verdicts import (
+    NOT_COMPARABLE,
     NOT_EVALUATED,
     could_have_missed,
     equivalence_p,
@@ -41,10 +42,9 @@ def differences(date: Date, draws: Draws) -> pd.DataFrame:
         some = [_difference(date, carried[a.surface], carried[b.surface], note, draws)
                 for a, b in combinations(family, 2)]
         for part in _families(date, some, lambda row: (row["surface"], row["other"])):
-            results = [row["result"] for row in part if row["verdict"] == ""]
-            ends = simultaneous(results, settings.statistics.coverage)
+            judged = [row for row in part if row["verdict"] == ""]
+            ends = simultaneous([row["result"] for row in judged], settings.statistics.coverage)
             judge(part, "difference", date, quantity)
-            judged = [row for row in part if row["verdict"] != NOT_EVALUATED]
             for row, (lower, upper) in zip(judged, ends, strict=True):
                 row |= {"lower_all": float(lower), "upper_all": float(upper)}
         rows += _without(some, "result", "dof", "p")
@@ -165,10 +165,22 @@ def _difference(date: Date, a: Group, b: Group, note: str, draws: Draws) -> dict
     made = combine(lambda x, y, *t: x - y + sum(t), a.result, b.result, *terms)
     s = summarise(made, date.parameters.campaign.settings.statistics.coverage)
     late = [f"{g.surface}: {EXTRAPOLATED}" for g in (a, b) if EXTRAPOLATED in g.notes]
+    barred = _barred(date, a, b)
     single = [g.surface for g in (a, b) if len({p.this.patch for p in g.used}) == 1]
     if single:
         late.append(f"pseudo-replication: one patch of {' and of '.join(single)}, so this holds "
                     f"for {'these patches' if len(single) > 1 else 'that patch'}")
     return row | {"difference": s.value, "u": s.u, "lower": s.lower, "upper": s.upper,
                   "end_error": s.end_error, "p": s.p_two_sided, "dof": s.dof, "result": made,
-                  "note": "; ".join(t for t in (note, *late) if t)}
+                  "verdict": NOT_COMPARABLE if barred else "",
+                  "note": "; ".join(t for t in (*barred, note, *late) if t)}
+
+
+def _barred(date: Date, a: Group, b: Group) -> list[str]:
+    """Return why two surfaces of one date cannot be compared: NDVI of other bands or skies."""
+    if a.quantity != "ndvi":
+        return []
+    skies = [sky_of(date, g) for g in (a, b)]
+    return [OTHER_BANDS] * (bands(a) != bands(b)) + [
+        f"the sky differs: {SKY_WORDS.get(skies[0])} over {a.surface}, {SKY_WORDS.get(skies[1])} "
+        f"over {b.surface}"] * (set(skies) == {"clear", "diffuse"})

@@ -150,12 +150,17 @@ class Day:
 
     @cached_property
     def largest(self) -> dict[tuple[str, str], float]:
-        """Largest good reading [SI] of every channel over the day, dark taken off; 0 if none."""
-        out = {}
-        for channel in (c for some in self.channels.values() for c in some):
-            time, value = self.readings(channel, 0, np.iinfo(np.int64).max)
-            good = self.without_dark(channel, time, value)
-            out[channel.logger, channel.column] = float(good.max(initial=0.0))
+        """Largest good reading [SI] of a channel in the day's passes, dark taken off; 0 if none.
+
+        Readings over a panel or with the heads exchanged lie outside passes and do not count.
+        """
+        out: dict[tuple[str, str], float] = {}
+        for this in self.passes:
+            for channel in this.channels.values():
+                place = channel.logger, channel.column
+                time, value = self.readings(channel, this.start_ns, this.stop_ns)
+                good = self.without_dark(channel, time, value)
+                out[place] = float(good.max(initial=out.get(place, 0.0)))
         return out
 
     def sun(self, time_ns: IntArray) -> Sun:
@@ -166,7 +171,7 @@ class Day:
     def sky(self, start_ns: int, stop_ns: int) -> Sky:
         """Return irradiance and sky class of a stretch: how much of a clear sky, how steady.
 
-        clear: at least `quality.clear_index_min` of the modelled clear sky and steady within
+        clear: `quality.clear_index_min` to `clear_index_max` of the modelled sky, steady within
         `quality.steady_max` (half the middle 68 %, so that a hand over the head for a few seconds
         does not make a cloud); diffuse: at most `overcast_index_max`.
         """
@@ -182,7 +187,7 @@ class Day:
             low, index, high = np.quantile(value / model, [0.16, 0.5, 0.84])
             steady = high - low <= 2 * quality.steady_max * index
             kind = "mixed"
-            if index >= quality.clear_index_min and steady:
+            if quality.clear_index_min <= index <= quality.clear_index_max and steady:
                 kind = "clear"
             elif index <= quality.overcast_index_max:
                 kind = "diffuse"

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from contextlib import suppress
 from functools import partial
 from typing import NamedTuple
 
@@ -12,7 +13,8 @@ from surveykit.evidence.backgrounds import surroundings
 from surveykit.evidence.brightness import seen_between, seen_in, settled_part, window_of
 from surveykit.evidence.conditions import NS, Day, Sky
 from surveykit.evidence.models import background
-from surveykit.evidence.parts import BANDS, HALF_WIDTH, NotEvaluated, series, surface_scope
+from surveykit.evidence.parts import HALF_WIDTH, NotEvaluated, surface_scope
+from surveykit.evidence.vegetation import vegetation_index
 from surveykit.intake.params import Channel
 from surveykit.intake.params.sections import Emissivity
 from surveykit.intake.sheet_words import Entry
@@ -22,7 +24,6 @@ from surveykit.physics.propagation import combined_u
 from surveykit.physics.vegetation import (
     emissivity_logarithmic,
     emissivity_mixed,
-    ndvi_of_sums,
     vegetation_fraction,
 )
 
@@ -165,7 +166,9 @@ def _from_ndvi(day: Day, surface: str, entry: Emissivity) -> Found:
         records = day.quality.passes.get(this.name)
         if this.surface == surface and this.quantity == "ndvi" and records is not None \
                 and not records.refusal:
-            found.append(ndvi_of_sums(*(series(day, this, name)[1] for name in BANDS)))
+            with suppress(NotEvaluated):
+                found.append(vegetation_index(day, this, day.sky(this.start_ns,
+                                                                 this.stop_ns)).value)
     if not found:
         raise NotEvaluated(f"surfaces.{surface}.emissivity is to come from NDVI, and no pass of "
                            "ndvi on it can be used")

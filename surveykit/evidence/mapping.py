@@ -10,7 +10,7 @@ from surveykit.intake.passes import Pass
 from surveykit.intake.paths import walk
 from surveykit.statistics.spatial import fit_exponential, patch_mean_u, variogram
 
-POINTS, LAGS, NODES = 800, 8, 20  # of the map, the variogram, and each side of the patch
+POINTS, LAGS = 800, 8  # of the map and of the variogram
 UNFITTED = "pattern of the ground not fitted"
 SPARSE = "lanes too far apart for the ground's pattern"
 
@@ -36,5 +36,5 @@ def patch_mean(day: Day, this: Pass, records: FloatArray) -> tuple[float, tuple[
         patch_m=smaller, min_pairs=day.parameters.settings.statistics.variogram_pairs)
     if fit.refusal:
         return np.nan, (f"{UNFITTED}: {fit.refusal}",)
-    u = patch_mean_u(x_m, y_m, fit, width_m=this.length_m, length_m=this.width_m, nodes=NODES)
+    u = patch_mean_u(x_m, y_m, fit, width_m=this.length_m, length_m=this.width_m)
     return u, (SPARSE,) if this.width_m / this.lanes > 2 * fit.scale_m else ()

@@ -44,6 +44,7 @@ NEUTRAL: dict[str, float] = {
     "down_per_s": 0.0, "red_down_per_s": 0.0, "nir_down_per_s": 0.0,
     "zenith_deg": 60.0, "reference_zenith_deg": 60.0, "zenith_dependence": 0.0,
     "red_ratio": 1.0, "nir_ratio": 1.0, "panel_error": 0.0,
+    "conversion_slope": 1.0, "conversion_intercept": 0.0, "conversion_error": 0.0,
 }
 
 
@@ -125,7 +126,8 @@ def albedo(x: Values) -> FloatArray:
 def vegetation_index(x: Values) -> FloatArray:
     """NDVI [1] of the patch: index of the ratios of sums of both bands."""
     x = NEUTRAL | dict(x)
-    index = ndvi(*reflectances(x))
+    index = (x["conversion_intercept"] + x["conversion_slope"] * ndvi(*reflectances(x))
+             + x["conversion_error"])
     return index + _foreign(x, x["around_ndvi"] - index) + _left(x)
 
 

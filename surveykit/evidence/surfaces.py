@@ -16,6 +16,7 @@ from surveykit.evidence.budget import budget_rows, units_needed
 from surveykit.evidence.estimates import UNITS, PassEstimate, display
 from surveykit.evidence.moving import Moves
 from surveykit.evidence.spreads import Spreads, rows_by_patch
+from surveykit.evidence.vegetation import bands_of
 from surveykit.intake.params.sections import RelevantChange
 from surveykit.statistics.draws import Draws, Result, Sampling, Summary, observed, summarise
 from surveykit.statistics.pooling import Common, Pooled, pool
@@ -93,6 +94,8 @@ def pool_passes(campaign: str, key: tuple[str, str, str], passes: Sequence[PassE
                     "not evaluated", ())
     if not used:
         return replace(nothing, notes=_why_not(tuple(passes)))
+    if key[1] == "ndvi" and len({bands_of(p.this, p.inputs) for p in used}) > 1:
+        return replace(nothing, notes=("the bands differ between its passes",))
     moves = Moves(campaign, used)
     common = spreads.common(key) if spreads else None
     over = _pool(used, moves.own_u, common)
@@ -163,6 +166,8 @@ def _notes(passes: tuple[PassEstimate, ...], used: tuple[PassEstimate, ...]) -> 
     flags = [f for f in dict.fromkeys(seen) if 2 * seen.count(f) >= len(used)]
     left = [p for p in passes if not p.evaluated]
     notes = list(flags)
+    if used[0].this.quantity == "ndvi" and {"clear", "diffuse"} <= {p.sky.kind for p in used}:
+        notes.append("passes under a clear and under an overcast sky")
     if left:
         why = _why_not(tuple(left))[0]
         notes.append(f"{len(left)} of {len(passes)} passes not evaluated: {why}")

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
+
 import numpy as np
 
 from surveykit.core import Input
@@ -18,9 +20,11 @@ from surveykit.evidence.parts import (
     raw_series,
     series,
     skew,
+    surface_scope,
     zero,
 )
 from surveykit.evidence.views import foreign_ground
+from surveykit.intake.params.heads import BandConversion
 from surveykit.intake.passes import Pass
 from surveykit.physics.vegetation import ndvi, ndvi_of_sums
 from surveykit.statistics.series import mean_of_series
@@ -61,18 +65,23 @@ def vegetation_index(day: Day, this: Pass, sky: Sky) -> PassValue:
     if sky.kind == "mixed":
         more += (f"sky neither clear nor overcast: {sky.clear_index:.0%} of a clear one",)
     raw = {name: raw_series(day, this, name)[1] for name in BANDS}
-    made = correct("ndvi", {i.name: i for i in (*inputs, *skews, *gains)}, [
+    converted = _conversion(this)
+    made = correct("ndvi", {i.name: i for i in (*inputs, *skews, *gains, *converted)}, [
         Correction("dark readings", {name: float(raw[name].mean()) for name in BANDS},
                    "ndvi.correct_darks", settings.correct_darks),
         *[Correction("gain ratio", {"red_ratio": 1.0, "nir_ratio": 1.0},
-                     "ndvi.correct_gain_ratio")] * any(i.name == "nir_ratio" for i in gains)],
+                     "ndvi.correct_gain_ratio")] * any(i.name == "nir_ratio" for i in gains),
+        *[Correction("bands converted", {"conversion_slope": 1.0, "conversion_intercept": 0.0},
+                     "ndvi.correct_bands", settings.correct_bands)] * bool(converted)],
         f"{day.name}:{this.surface}:ndvi")
     if made.inputs["footprint_share"].value < 1:
         flags += ("surroundings not corrected",)
     flags += (*more, *made.flags, *_mean_of_ratios(read))
-    red, nir = (read[f"{band}_up"] / read[f"{band}_down"].mean() for band in ("red", "nir"))
+    red, nir = (read[f"{band}_up"] / read[f"{band}_down"].mean() / next(
+        (i.value for i in gains if i.name == f"{band}_ratio"), 1.0) for band in ("red", "nir"))
     r, n = float(red.mean()), float(nir.mean())
-    lean = 2 / (r + n) ** 2
+    lean = 2 / (r + n) ** 2 * next((i.value for i in made.inputs.values()
+                                    if i.name == "conversion_slope"), 1.0)
     steady = lean * (r * (nir - n * read["nir_down"] / read["nir_down"].mean())
                      - n * (red - r * read["red_down"] / read["red_down"].mean()))
     within = mean_of_series(steady, unit="1", method="ratio of sums")
@@ -80,6 +89,29 @@ def vegetation_index(day: Day, this: Pass, sky: Sky) -> PassValue:
                      tuple(made.inputs.values()),
                      calibration_flags(day, [this.channels[b] for b in BANDS])
                      + tuple(dict.fromkeys(flags)), made.steps, records=steady)
+
+
+def bands_of(this: Pass, inputs: Iterable[Input]) -> frozenset[tuple[object, object]]:
+    """Return centres and widths of the bands that an NDVI stands for, None where not stated."""
+    held, entry = {i.name: i.value for i in inputs}, _stated(this)
+    if entry is not None and (held.get("conversion_slope"), held.get("conversion_intercept")) == (
+            entry.slope, entry.intercept):
+        return frozenset([(entry.centres_nm, entry.widths_nm)])
+    return frozenset((c.band_centres_nm, c.band_widths_nm) for c in this.channels.values())
+
+
+def _stated(this: Pass) -> BandConversion | None:
+    return next(filter(None, (c.band_conversion for c in this.channels.values())), None)
+
+
+def _conversion(this: Pass) -> list[Input]:
+    """Return the conversion to other bands that the ground heads state, if they do."""
+    entry = _stated(this)
+    if entry is None:
+        return []
+    return [fixed("conversion_slope", entry.slope), fixed("conversion_intercept", entry.intercept),
+            Input("conversion_error", 0.0, entry.u, surface_scope("bands", this.surface, entry),
+                  f"conversion of NDVI to other bands ({entry.source})")]
 
 
 def _gains(day: Day, this: Pass) -> tuple[list[Input], tuple[str, ...]]:

@@ -11,6 +11,8 @@ from scipy.spatial.distance import cdist, pdist
 
 from surveykit.core import FloatArray
 
+GAUSS, WEIGHT = np.polynomial.legendre.leggauss(24)
+
 
 class Variogram(NamedTuple):
     """Semivariances by lag: mean distance [m], pairs, Matheron's and the robust estimate."""
@@ -134,8 +136,8 @@ def fit_exponential(made: Variogram, *, patch_m: float, min_pairs: int) -> Fit:
     return Fit(nugget, sill, scale, refusal)
 
 
-def patch_mean_u(x_m: ArrayLike, y_m: ArrayLike, fit: Fit, *, width_m: float, length_m: float,
-                 nodes: int) -> float:
+def patch_mean_u(x_m: ArrayLike, y_m: ArrayLike, fit: Fit, *, width_m: float,
+                 length_m: float) -> float:
     """Return the standard error of the records' mean as the mean of a rectangular patch.
 
     Parameters
@@ -146,8 +148,6 @@ def patch_mean_u(x_m: ArrayLike, y_m: ArrayLike, fit: Fit, *, width_m: float, le
         Model of the covariance.
     width_m, length_m : float
         Sides of the patch [m].
-    nodes : int
-        Grid cells along each side that stand for the patch.
 
     Returns
     -------
@@ -159,18 +159,35 @@ def patch_mean_u(x_m: ArrayLike, y_m: ArrayLike, fit: Fit, *, width_m: float, le
     References
     ----------
     Extension variance, Journel & Huijbregts, Mining Geostatistics (1978), section II.C (from
-    memory); block kriging with equal weights.
+    memory); block kriging with equal weights. The means over the patch are integrals: from a
+    record by the angle, the distance in closed form; within, over the distances of two random
+    points, whose densities are 2 (width - u) / width^2 and likewise along the length.
     """
-    records = np.column_stack([np.asarray(x_m, np.float64), np.asarray(y_m, np.float64)])
-    steps = (np.arange(nodes) + 0.5) / nodes
-    grid = np.stack(np.meshgrid(steps * width_m, steps * length_m), axis=-1).reshape(-1, 2)
+    x, y = (np.clip(np.asarray(a, np.float64), 0.0, side)
+            for a, side in ((x_m, width_m), (y_m, length_m)))
+    records = np.column_stack([x, y])
     among = float(fit.covariance(cdist(records, records)).mean())
-    across = float(fit.covariance(cdist(records, grid)).mean())
-    # The grid against itself shifted by half a cell: no point meets itself at distance zero.
-    shifted = grid + np.array([width_m, length_m]) / (2 * nodes)
-    within = 0.5 * float(fit.covariance(cdist(grid, grid)).mean()
-                         + fit.covariance(cdist(grid, shifted)).mean())
+    across = sum(float(_from_corner(p, q, fit).mean()) for p in (x, width_m - x)
+                 for q in (y, length_m - y)) / (width_m * length_m)
+    at, weight = (GAUSS + 1) / 2, WEIGHT / 2  # u = width at^2: the origin drawn out
+    apart = fit.covariance(np.hypot((width_m * at**2)[:, None], length_m * at**2))
+    density = 4 * at * (1 - at**2) * weight
+    within = float(density @ apart @ density)
     return float(np.sqrt(max(among - 2 * across + within, 0.0) + fit.nugget / len(records)))
+
+
+def _from_corner(p_m: FloatArray, q_m: FloatArray, fit: Fit) -> FloatArray:
+    """Return the integral of the covariance from a corner over rectangles p by q."""
+    turn = np.arctan2(q_m, p_m)
+
+    def sector(low: FloatArray, high: FloatArray, reach: FloatArray, off: float) -> FloatArray:
+        angle = (low + high) / 2 + (high - low) / 2 * GAUSS[:, None]
+        far = reach / np.cos(angle - off) / fit.scale_m
+        ring = fit.sill * fit.scale_m**2 * (1 - (1 + far) * np.exp(-far))
+        return np.asarray((high - low) / 2 * (WEIGHT @ ring))
+
+    right = np.full_like(turn, np.pi / 2)
+    return sector(0 * turn, turn, p_m, 0.0) + sector(turn, right, q_m, np.pi / 2)
 
 
 def _placed(x_m: ArrayLike, y_m: ArrayLike, values: ArrayLike) -> tuple[FloatArray, FloatArray]:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from one_estimate import DAY_SCOPE, HEADS, inputs
+from one_estimate import DAY_SCOPE, HEADS, changed, inputs
 from pass_values import sensitivities
 from small_survey import NDVI, SITE, STAND_OFF, lines, row, small
 
@@ -238,6 +238,18 @@ def test_emissivity_from_ndvi(tmp_path, form, value):
     assert e.value == pytest.approx(value, abs=5e-4)
     assert e.u > 0.01
     assert any("never for synthetic turf" in f and form in f for f in one.flags)
+
+
+def test_emissivity_from_ndvi_takes_the_calibrated_index(tmp_path):
+    """A gain ratio of 1.25 over near infrared 30 and red 10: (24 - 10) / 34 = .412, cover .321."""
+    logs = log(47) | {name: lines(name, n=N, **{b: np.full(N, level) + 1e-3 * CALM
+                      for b, level in some.items()}) for name, some in zip(HEADS, (
+                          {"red": 100.0, "nir": 100.0}, {"red": 10.0, "nir": 30.0}),
+                          strict=True)}
+    kit = changed("rednir-ground", band_ratio={"value": 1.25, "u": 0.0, "source": "invented"})
+    one = made(tmp_path, logs, row(**(NDVI | {"start": "12:02:40", "stop": "12:04:40"})), kit=kit,
+               **from_way("ndvi", vegetation=0.99, soil=0.95, u=0.01))
+    assert inputs(one)["emissivity"].value == pytest.approx(0.95 + 0.04 * 0.321, abs=1e-4)
 
 
 @pytest.mark.parametrize(("nir", "value"), [(30.0, 0.9768), (90.0, None)])

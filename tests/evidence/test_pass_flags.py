@@ -119,3 +119,10 @@ def test_a_zero_that_is_left_in(tmp_path, zero_up, zero_down, light, share, read
     assert one.value_raw - share == pytest.approx(reads, abs=6e-4)
     assert one.value == pytest.approx(share, abs=3e-4)
     assert inputs(one)["up"].value == pytest.approx(light * share, abs=0.1)
+
+
+@pytest.mark.parametrize(("distance", "flagged"), [(1.2, True), (1.5, False)])
+def test_an_operator_who_stands_near(tmp_path, distance, flagged):
+    """At 1.5 m an operator hides 1.3 % of the sky and 1.4 % of the ground (computed)."""
+    one = albedo(tmp_path, settings=CERTAIN | {"albedo": {"operator_distance_m": distance}})
+    assert ("the operator stood nearer than 1.5 m" in one.flags) == flagged

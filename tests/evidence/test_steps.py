@@ -4,9 +4,18 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from one_estimate import UNTOUCHED, albedo, changed, changed_column, inputs, stand_off
+from one_estimate import (
+    HEADS,
+    UNTOUCHED,
+    albedo,
+    changed,
+    changed_column,
+    inputs,
+    made,
+    stand_off,
+)
 from pass_values import sensitivities
-from small_survey import ALBEDO, CERTAIN, CONTACT, lines, readings, row, small
+from small_survey import ALBEDO, CERTAIN, CONTACT, NDVI, lines, readings, row, small
 
 from surveykit.physics.bands import band
 from surveykit.physics.footprint import rectangle_share, self_shade
@@ -216,3 +225,29 @@ def test_check_readings_show_a_drift(tmp_path, known, drift):
     assert ("check reading off by more than 0.5 K" in one.flags) == drift
     assert inputs(one)["check_error"].u == pytest.approx(
         0.9 / np.sqrt(3) if drift else 0.0, abs=0.02)
+
+
+def test_scatter_within_a_pass_is_that_of_the_corrected_albedo(tmp_path):
+    """Independent: the scatter of the raw ratio times the slope of the closed form 1 / (F - S)."""
+    one = albedo(tmp_path / "a", DISC)
+    raw = albedo(tmp_path / "b", DISC, settings=CERTAIN | UNTOUCHED)
+    found = inputs(one)
+    assert found["footprint_share"].value < 0.99
+    lit = found["footprint_share"].value - found["shade_share"].value
+    assert one.u_within == pytest.approx(raw.u_within / lit, rel=1e-6)
+
+
+def test_scatter_within_a_pass_follows_the_gain_ratio_of_an_index(tmp_path):
+    """Analytic: N = (n - r) / (n + r) of n over its gain ratio k moves by 2 r k / (n + r k)^2."""
+    def read(name, **certificate):
+        return made(tmp_path / name, NDVI, *HEADS, kit=changed("rednir-ground", **certificate),
+                    settings=CERTAIN)
+
+    plain = read("a")
+    held = {name: i.value for name, i in inputs(plain).items()}
+    r, n = (held[f"{b}_up"] / held[f"{b}_down"] for b in ("red", "nir"))
+    k = 1.25
+    one = read("b", band_ratio={"value": k, "u": 0.0, "source": "invented"})
+    # relative scatter is alike in both bands, so both slopes scale by the same factor
+    scaled = k * ((n + r) / (n + r * k)) ** 2
+    assert one.u_within / plain.u_within == pytest.approx(scaled, rel=1e-6)

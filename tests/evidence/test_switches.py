@@ -7,9 +7,9 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from one_estimate import HEADS, WEATHER, changed_column, inputs, stand_off
+from one_estimate import HEADS, WEATHER, changed, changed_column, inputs, stand_off
 from pass_values import sensitivities
-from small_survey import ALBEDO, CERTAIN, CONTACT, NDVI, lines, readings, row, small
+from small_survey import ALBEDO, CERTAIN, CONTACT, KIT, NDVI, lines, readings, row, small
 
 from surveykit.intake.params.settings import Settings
 
@@ -31,11 +31,11 @@ def light(root, cells, settings):
     return one
 
 
-def index(root, rows, settings, logs=None):
+def index(root, rows, settings, logs=None, kit=KIT):
     logs = logs or {"rednir-sky": capped("rednir-sky", {"red": 0.5, "nir": 0.5}),
                     "rednir-ground": capped("rednir-ground", {"red": 0.5, "nir": 0.5})}
     sheet = [row(**NDVI | {"start": "12:00:20", "stop": "12:01:20"}), *rows]
-    (one,) = small(root, sheet, logs, settings=settings).estimates()
+    (one,) = small(root, sheet, logs, settings=settings, kit=kit).estimates()
     return one
 
 
@@ -76,6 +76,9 @@ def cooled(root, settings):
                      target=target)}, settings=settings)
 
 
+OTHER_BANDS = changed("rednir-ground", band_conversion={
+    "slope": 0.95, "intercept": 0.02, "u": 0.01, "source": "invented",
+    "centres_nm": {"red": 670, "nir": 780}, "widths_nm": {"red": 20, "nir": 20}})
 SET = {"kit": changed_column("thermal", "target", emissivity_setting=0.95,
                              reflected_setting_degC=20.0)}
 # switch: (maker of the pass, name of the step, input that keeps what is left)
@@ -104,6 +107,9 @@ CASES = {
         lambda root, s: light(root, ALBEDO, s), "own shade", "shade_error"),
     "ndvi.correct_darks": (
         lambda root, s: index(root, DARKS[1:], s), "dark readings", "correct_darks_left"),
+    "ndvi.correct_bands": (
+        lambda root, s: index(root, [], s, kit=OTHER_BANDS), "bands converted",
+        "correct_bands_left"),
     "ndvi.correct_gain_ratio": (over_panel, "gain ratio", "red_up_gain_error"),
 }
 

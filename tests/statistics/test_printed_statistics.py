@@ -20,7 +20,7 @@ from surveykit.statistics.draws import Draws, Sampling, combine, observed, summa
 from surveykit.statistics.pooling import Common, pool
 from surveykit.statistics.series import integrated_time
 from surveykit.statistics.shape import huber_location
-from surveykit.statistics.spatial import Fit, patch_mean_u
+from surveykit.statistics.spatial import Fit
 from surveykit.statistics.trends import mann_kendall, ordinary, theil_sen
 from surveykit.statistics.verdicts import could_have_missed, equivalence_p, verdict
 
@@ -66,13 +66,6 @@ MODEL = Fit(0.25, 4.0, 2.0, "")
 def lanes(spacing):
     x, y = np.meshgrid(np.arange(spacing / 2, 20, spacing), np.arange(0.25, 20, 0.5))
     return x.ravel(), y.ravel()
-
-
-@pytest.mark.parametrize(("spacing", "u"), [(2, 0.058), (4, 0.137), (5, 0.181), (10, 0.391)])
-def test_extension_error_to_the_printed_digits(spacing, u):
-    """Patch taken as continuous (computed)."""
-    assert patch_mean_u(*lanes(spacing), MODEL, width_m=20.0, length_m=20.0, nodes=40) == (
-        pytest.approx(u, abs=6e-4))
 
 
 def test_few_of_four_hundred_records_count_for_the_process():

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
+from scipy.integrate import dblquad
 from scipy.spatial.distance import cdist
 
 from surveykit.statistics.spatial import (
@@ -27,8 +28,22 @@ def lanes(spacing: float) -> tuple[np.ndarray, np.ndarray]:
 def test_extension_error_by_lane_spacing(spacing, u):
     """20 x 20 m, C = 4 exp(-d / 2 m), nugget .25, a record each .5 m of lane (computed twice)."""
     x, y = lanes(spacing)
-    assert patch_mean_u(x, y, MODEL, width_m=20.0, length_m=20.0, nodes=40) == pytest.approx(
-        u, abs=0.0015)
+    assert patch_mean_u(x, y, MODEL, width_m=20.0, length_m=20.0) == pytest.approx(u, abs=5e-4)
+
+
+def test_means_over_a_patch_against_quadrature():
+    """Independent: dblquad of the covariance over an uneven patch; one record, at its edge."""
+    fit = Fit(0.0, 1.0, 0.7, "")
+
+    def mean(function, *ends):
+        return dblquad(function, *ends)[0]
+
+    x, y, width, length = 0.0, 0.4, 3.0, 1.5
+    across = mean(lambda v, u: np.exp(-np.hypot(u - x, v - y) / 0.7), 0, width, 0, length) / 4.5
+    within = mean(lambda v, u: 4 * (width - u) * (length - v) * np.exp(-np.hypot(u, v) / 0.7),
+                  0, width, 0, length) / 4.5**2
+    assert patch_mean_u([x], [y], fit, width_m=width, length_m=length) == pytest.approx(
+        np.sqrt(1 - 2 * across + within), rel=1e-5)
 
 
 def test_the_error_of_this_patch_is_not_that_of_the_process():
@@ -37,7 +52,7 @@ def test_the_error_of_this_patch_is_not_that_of_the_process():
     among = MODEL.covariance(cdist(np.c_[x, y], np.c_[x, y])).mean()
     assert np.sqrt(4.25 / x.size) == pytest.approx(0.103, abs=5e-4)
     assert np.sqrt(among + 0.25 / x.size) == pytest.approx(0.444, abs=5e-4)
-    assert patch_mean_u(x, y, MODEL, width_m=20.0, length_m=20.0, nodes=40) < 0.06
+    assert patch_mean_u(x, y, MODEL, width_m=20.0, length_m=20.0) < 0.06
 
 
 def test_extension_error_against_simulated_patches():
@@ -48,8 +63,7 @@ def test_extension_error_against_simulated_patches():
     root = np.linalg.cholesky(np.exp(-cdist(grid, grid) / 1.0) + 1e-9 * np.eye(len(grid)))
     fields = root @ rng.standard_normal((len(grid), 3000))
     apart = fields[records].mean(axis=0) - fields.mean(axis=0)
-    ours = patch_mean_u(*grid[records].T, Fit(0.0, 1.0, 1.0, ""), width_m=6.0, length_m=6.0,
-                        nodes=30)
+    ours = patch_mean_u(*grid[records].T, Fit(0.0, 1.0, 1.0, ""), width_m=6.0, length_m=6.0)
     assert ours == pytest.approx(apart.std(), rel=0.08)
 
 

@@ -11,6 +11,7 @@ from numpy.typing import ArrayLike
 from surveykit.core import FloatArray
 from surveykit.intake.params.amounts import Amount, Uncertain
 from surveykit.intake.params.heads import (
+    BandConversion,
     BandRatio,
     Bands,
     Calibration,
@@ -22,7 +23,7 @@ from surveykit.intake.params.quantities import DEFAULT_U, PHYSICAL_UNITS
 from surveykit.intake.params.settings import Settings
 
 AS_STATED = ("half_angle_deg", "view_angle_deg", "band_centres_nm", "band_widths_nm", "class_terms",
-             "spectrally_flat", "band_ratio")
+             "spectrally_flat", "band_ratio", "band_conversion")
 
 
 @dataclass(frozen=True)
@@ -59,6 +60,7 @@ class Channel:
     spectrally_flat: bool | None = None
     rod_width_m: float | None = None
     band_ratio: BandRatio | None = None
+    band_conversion: BandConversion | None = None
     range: tuple[float, float] | None = None
     band_response: tuple[tuple[float, float], ...] = ()
     view_angle_deg: float | None = None

@@ -230,6 +230,8 @@ class NdviSettings(Strict):
     correct_darks: bool = setting(True, "1", "Whether dark readings are taken off.")
     correct_gain_ratio: bool = setting(
         True, "1", "Whether a gain ratio by panel, swap or certificate is used.")
+    correct_bands: bool = setting(
+        True, "1", "Whether a conversion of NDVI to other bands is used.")
     soil_factor: float = setting(
         0.5, "1", "L of the soil-adjusted index.", MEMORY, "Huete 1988", ge=0, le=1)
     bare_ndvi: float = setting(

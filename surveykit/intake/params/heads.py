@@ -63,6 +63,17 @@ class BandRatio(Strict):
     source: Text = key("Where it comes from.", write="where the value comes from, plain text")
 
 
+class BandConversion(Strict):
+    """A linear conversion of a head's NDVI to that of other bands."""
+
+    slope: float = key("Slope.", gt=0, unit="")
+    intercept: float = key("Intercept.", unit="")
+    u: float = key("Standard uncertainty of a converted NDVI (k = 1).", ge=0, unit="")
+    centres_nm: Bands = key("Centres of the bands converted to [nm].", write="{red, nir} in nm")
+    widths_nm: Bands = key("Widths of the bands converted to [nm].", write="{red, nir} in nm")
+    source: Text = key("Where it comes from.", write="where the values come from, plain text")
+
+
 def _shape(data: object) -> str:
     return "<explicit>" if isinstance(data, dict | ClassTermsStated) else "<class>"
 
@@ -104,6 +115,10 @@ class Head(Strict):
     band_ratio: BandRatio | None = key(
         "Certificate of the gains of near infrared to red, at the ground heads.", default=None,
         write="{value, u, source}")
+    band_conversion: BandConversion | None = key(
+        "Conversion of NDVI to that of other bands, at the ground heads; without one, NDVI of "
+        "other bands is not compared.", default=None,
+        write="{slope, intercept, u, centres_nm, widths_nm, source}")
     band_centres_nm: Bands | None = key("Centres of the red and near-infrared bands [nm].",
                                         default=None, write="{red, nir} in nm")
     band_widths_nm: Bands | None = key("Widths of the red and near-infrared bands [nm].",

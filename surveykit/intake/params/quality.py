@@ -126,7 +126,9 @@ class QualitySettings(Strict):
     excluded_refuse: float = setting(
         0.60, "1", "Share of excluded records above which a pass is refused.", ge=0, le=1)
     clear_index_min: float = setting(
-        0.80, "1", "Irradiance over clear-sky irradiance from which the sky is clear.", ge=0)
+        0.85, "1", "Irradiance over clear-sky irradiance from which the sky is clear.", ge=0)
+    clear_index_max: float = setting(
+        1.10, "1", "The same, above which clouds beside the sun add to it.", ge=0)
     overcast_index_max: float = setting(
         0.55, "1", "Irradiance over clear-sky irradiance up to which it is overcast.", ge=0)
     steady_max: float = setting(
@@ -144,4 +146,4 @@ class QualitySettings(Strict):
                                        "[low, high], two numbers, low below high")]
         return [*pair, *rising(self, "excluded_flag", "excluded_refuse"),
                 *rising(self, "body_rate_flag_k_min", "body_rate_max_k_min"),
-                *rising(self, "overcast_index_max", "clear_index_min")]
+                *rising(self, "overcast_index_max", "clear_index_min", "clear_index_max")]
