@@ -50,8 +50,9 @@ def contact(day: Day, this: Pass, sky: Sky) -> PassValue:
         raise NotEvaluated("no settled placement of the head was found in the contact pass")
     inputs, flags = _inputs(day, this, sky, brightness)
     settings = day.parameters.campaign.settings.temperature
-    cooled = _expected_cooling_k(day, this, time, spans)
-    placed = _before_touch(day, this, inputs, cooled) if settings.correct_head_cooling else None
+    cooled, placed = _expected_cooling_k(day, this, time, spans), None
+    if settings.correct_head_cooling and cooled > 0:
+        placed, spans = _before_touch(day, this, inputs, spans)
     per = per_record("contact", inputs, brightness)
     found = [mean_of_series(per[a:b], unit="K", method="contact") for a, b in spans]
     means = np.array([one.value for one in found])
@@ -75,7 +76,7 @@ def contact(day: Day, this: Pass, sky: Sky) -> PassValue:
                    reduce=over_placements)
     final = made.steps[-1][1]
     rows = [(int(time[a]), int(time[b - 1]), value, one.u, one.n) for (a, b), one, value in zip(
-        spans, found, values + (final - values.mean()), strict=False)]
+        spans, found, values + (final - values.mean()), strict=True)]
     return PassValue(raw, final, u, float(n), tuple(made.inputs.values()),
                      flags + made.flags, made.steps, tuple(rows))
 
@@ -141,31 +142,30 @@ def _sun_w_m2(day: Day, this: Pass) -> float:
 
 
 def _before_touch(day: Day, this: Pass, inputs: dict[str, Input],
-                  cooled: float) -> CoolingFit | None:
-    """Fit the placements' course and return what stood before the touch, or None without sun.
+                  spans: Spans) -> tuple[CoolingFit, Spans]:
+    """Fit the placements' course: what stood before the touch, and the placements long enough.
 
     Raises
     ------
     NotEvaluated
         If no placement is long enough, or the fit is too uncertain.
     """
-    if cooled == 0.0:
-        return None
     settings = day.parameters.campaign.settings.temperature
     tau = this.channels["brightness_temperature"].time_constant_s or 0.0
-    courses = [c for c in placement_courses(day, this, tau)
-               if (c[0] >= 2 * tau).sum() >= FEWEST_RECORDS and c[0][-1] >= 5 * tau]
-    if not courses:
+    kept = [(span, course) for span, course in zip(
+        spans, placement_courses(day, this, tau), strict=True)
+        if (course[0] >= 2 * tau).sum() >= FEWEST_RECORDS and course[0][-1] >= 5 * tau]
+    if not kept:
         raise NotEvaluated(f"no placement has {FEWEST_RECORDS} records and five time constants: "
                            "the cooling under the head cannot be fitted; hold it longer")
-    fit = fit_placements([c[0] for c in courses],
-                         [per_record("contact", inputs, c[1]) for c in courses],
+    fit = fit_placements([time_s for _, (time_s, _) in kept],
+                         [per_record("contact", inputs, read) for _, (_, read) in kept],
                          time_constant_s=tau, fit_time_constant=False, lagged=True)
     if not fit.u_mean_k <= settings.head_cooling_fit_max_u_k:
         raise NotEvaluated(
             f"the fit of the cooling under the head leaves {fit.u_mean_k:.1f} K, more than "
             f"{settings.head_cooling_fit_max_u_k:g}: hold the head longer, or measure from above")
-    return fit
+    return fit, tuple(span for span, _ in kept)
 
 
 def placement_courses(day: Day, this: Pass, tau: float) -> list[tuple[FloatArray, FloatArray]]:

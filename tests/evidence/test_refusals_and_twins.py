@@ -44,11 +44,14 @@ def paired(root, emissivity):
         "label": "Court", "emissivity": {"from": "reference_pairs"}}}).by_name()["C1-standoff-1"]
 
 
-def placed(root, records):
+def placed(root, *records, colder=0.0):
     """Placements of so many records, one in 2 s, on ground in the sun, lifted for 6 s in between.
+
+    Those of fewer than 8 records are `colder` by so many kelvins.
     """
-    at = np.arange(80) % (records + 3)
-    target = np.where(at < records, 47 - 0.1 * np.sqrt(2.0 * at), 32.0)
+    target = np.resize(np.concatenate([np.append(
+        47 - 0.1 * np.sqrt(2.0 * np.arange(n)) - colder * (n < 8), [32.0] * 3)
+        for n in records]), 80)
     logs = {"thermal": lines("thermal", n=80, step_s=2, target=target + CALM[:80]),
             "pair": lines("pair"), "weather": lines("weather", n=5, step_s=60)}
     kit = changed("thermal", interval_s=2)
@@ -150,3 +153,17 @@ def test_head_without_its_setting_and_with_it(tmp_path):
                 kit=changed_column("thermal", "target", emissivity_setting=None))
     assert none.note == "emissivity_setting of thermal, target is missing"
     assert stand_off(tmp_path / "b").evaluated
+
+
+def test_a_placement_too_short_for_the_fit_is_left_out_whole(tmp_path):
+    """Of 8 and 5 records in turn, the short ones 6 K colder: they neither move the mean nor give
+    their times to others (each 8 records long, less one a side)."""
+    alike, colder = placed(tmp_path / "a", 8, 5), placed(tmp_path / "b", 8, 5, colder=6.0)
+    long = placed(tmp_path / "c", 8)
+    for one in (alike, colder):
+        assert one.evaluated, one.note
+        assert one.n_effective == len(one.dwells) == 4
+        assert {d[4] for d in one.dwells} == {d[4] for d in long.dwells}
+        assert one.value == pytest.approx(long.value, abs=0.06)
+    assert [d[:3] for d in alike.dwells] == [d[:3] for d in colder.dwells]
+    assert alike.value_raw == colder.value_raw
