@@ -25,6 +25,7 @@ SWAPS, SWAP_S, TURN_S = 3, 70.0, 15.0
 HEADER = ("entry,surface,patch,quantity,mode,instrument,start,stop,height_cm,width_m,length_m,"
           "lanes,reading,reading_u,note,date,campaign").split(",")
 PATCH_SHARE, PASS_SHARE = 0.6, 0.3  # of the spread within a patch
+LANES, LANES_S, MAPPED = 8, 160.0, "L2"  # the last day's patch that is walked lane by lane
 CAPPED = ("shortwave", "rednir-sky", "rednir-ground")
 
 
@@ -34,7 +35,13 @@ def schedule(day: Day) -> list[Stay]:
     surfaces = {patch: name for name, s in day.surfaces.items() for patch in s.patches}
     now = solar_noon(day.date) - BEFORE_NOON_S
     stays: list[Stay] = []
-    for visit, patch in enumerate((*ROUND, *ROUND[::-1], *ROUND)):
+    visits = (*ROUND, *ROUND[::-1], *ROUND)
+    for visit, patch in enumerate(visits):
+        if day is DAYS[-1] and visit == len(visits) - 1:  # before the control's last visit
+            stays.append(Stay(visit, 4, surfaces[MAPPED], MAPPED, "lanes", now, now + LANES_S,
+                              HEIGHTS_M[MAPPED[0]], *effects(day, surfaces[MAPPED], MAPPED, 4,
+                                                             "lanes"), (), LANES))
+            now += LANES_S + rng.uniform(30, 40)
         turn, surface = visit // len(ROUND) + 1, surfaces[patch]
         contact, dwells, since = rng.uniform(68, 72), [], 0.0
         while since + 4.0 < contact:
@@ -102,7 +109,9 @@ def sheet(day: Day, stays: list[Stay], caps: list[tuple[float, float]],
                                         "reading": str(len(stay.dwells))}))
             continue
         common["height_cm"] = f"{100 * stay.height_m:.0f}"
-        for quantity in ("temperature", "albedo", "ndvi"):
+        if stay.lanes:
+            common["lanes"] = str(stay.lanes)
+        for quantity in ("temperature", "albedo", "ndvi")[:1 if stay.lanes else 3]:
             mode = {"mode": "stand-off"} if quantity == "temperature" else {}
             rows.append((stay.start_s, {**common, **mode, "quantity": quantity}))
     if day is DAYS[0]:

@@ -20,6 +20,11 @@ def ndvi(red: float, nir: float) -> float:
     return (nir - red) / (nir + red)
 
 
+def counts(stay: Stay, quantity: str, how: str) -> bool:
+    """Return whether a stay is a pass of this quantity and kind; along lanes, temperature only."""
+    return stay.kind == how or (stay.kind == "lanes" and (quantity, how) == ("temperature", "walk"))
+
+
 def truth_series(world: World, name: str, quantity: str, as_on: Day) -> np.ndarray:
     """Return the true series of a kind of ground in this world, with its properties of `as_on`."""
     surface = as_on.surfaces[name]
@@ -49,7 +54,7 @@ def truths(done: list[Done]) -> dict[str, Rows]:
     tables: dict[str, Rows] = {"surfaces": [], "passes": [], "changes": []}
     for number, (day, world, stays) in enumerate(done):
         for quantity, kind, how, unit in QUANTITIES:
-            everyone = [stay for stay in stays if stay.kind == how]
+            everyone = [stay for stay in stays if counts(stay, quantity, how)]
             for name, surface in day.surfaces.items():
                 mine = [stay for stay in everyone if stay.surface == name]
                 series = truth_series(world, name, quantity, day)
@@ -73,8 +78,8 @@ def truths(done: list[Done]) -> dict[str, Rows]:
 def change(later: Done, earlier: Done, name: str, quantity: str, how: str) -> dict[str, object]:
     """Return how one kind of ground changed between two days, at its own pass times."""
     (day, world, stays), (before, world_before, stays_before) = later, earlier
-    mine = [stay for stay in stays if stay.surface == name and stay.kind == how]
-    theirs = [stay for stay in stays_before if stay.surface == name and stay.kind == how]
+    mine, theirs = ([stay for stay in some if stay.surface == name and counts(stay, quantity, how)]
+                    for some in (stays, stays_before))
     now = over(world, truth_series(world, name, quantity, day), mine)
     had = over(world, truth_series(world, name, quantity, before), mine)
     was = over(world_before, truth_series(world_before, name, quantity, before), theirs)
