@@ -17,6 +17,7 @@ from yard import (
     World,
     brightness_k,
     follow,
+    pattern,
     radiance,
     shared_error,
     stream,
@@ -29,10 +30,7 @@ Series = dict[str, np.ndarray]
 
 @dataclass(frozen=True)
 class Stay:
-    """The head on one patch, pressed to the ground or walked over it, from start to stop.
-
-    `lanes`: the infrared head alone, along so many lanes, each returning; else 0.
-    """
+    """The head on one patch, pressed to the ground or walked over it, from start to stop."""
 
     visit: int
     turn: int  # 1, 2, 3
@@ -46,7 +44,7 @@ class Stay:
     effect_albedo: float
     effect_green: float
     dwells: tuple[tuple[float, float], ...]
-    lanes: int = 0
+    lanes: int = 0  # of the infrared head alone, each returning
 
 
 @dataclass(frozen=True)
@@ -141,8 +139,9 @@ def thermal(world: World, stays: list[Stay], covers: list[tuple[float, float]]) 
         local = world.temperature_k[stay.surface][part] + stay.effect_k
         emissivity = true_emissivity(stay.surface, surface)
         if stay.kind != "contact":
-            local = local + surface.spread_k * (
-                pattern(stay, surface.size_m, world.time_s[part]) if stay.lanes else texture[part])
+            walked = (world.time_s[part] - stay.start_s) / (stay.stop_s - stay.start_s)
+            local = local + surface.spread_k * (pattern(
+                stay.patch, surface.size_m, stay.lanes, walked) if stay.lanes else texture[part])
             seen[part] = brightness_k(emissivity * radiance(local)
                                       + (1 - emissivity) * world.background[part])
             continue
@@ -176,26 +175,6 @@ def thermal(world: World, stays: list[Stay], covers: list[tuple[float, float]]) 
     log.columns["body"] += (noise(world, "body", size, 0.03) - ICE_K
                             + shared_error("thermal-2025-02:body:offset", 0.5))
     return log
-
-
-def pattern(stay: Stay, size_m: tuple[float, float], time_s: np.ndarray) -> np.ndarray:
-    """Return what the ground below a walk along lanes has that the patch's mean has not.
-
-    A sum of cosines over the patch, so that its mean is 0 and its variance 1; their weights are
-    those of a covariance that falls with exp(-distance / 0.4 m).
-    """
-    width, length = size_m
-    share = (time_s - stay.start_s) / (stay.stop_s - stay.start_s) * stay.lanes
-    lane = np.clip(np.floor(share), 0, stay.lanes - 1)
-    there = np.where(lane % 2 == 0, share - lane, 1 - share + lane)
-    i, j = (k.ravel()[1:] for k in np.meshgrid(np.arange(20), np.arange(20), indexing="ij"))
-    wave = np.pi * np.hypot(i / length, j / width)
-    weight = (1 + (0.4 * wave) ** 2) ** -0.75
-    weight *= stream("pattern", stay.patch).standard_normal(i.size)
-    square = np.where(i > 0, 0.5, 1.0) * np.where(j > 0, 0.5, 1.0)  # mean square of each wave
-    weight /= np.sqrt((weight**2) @ square)
-    return np.asarray((np.cos(np.pi * np.outer(there, i))
-                       * np.cos(np.pi * np.outer((lane + 0.5) / stay.lanes, j))) @ weight)
 
 
 def level(world: World, stays: list[Stay], pole: str, beam: float,

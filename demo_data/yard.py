@@ -141,6 +141,25 @@ def slow(rng: np.random.Generator, n: int, scale_s: float) -> np.ndarray:
     return np.interp(np.arange(n), knots * np.arange(few), wander(rng, few, scale_s, 30.0))
 
 
+def pattern(patch: str, size_m: tuple[float, float], lanes: int, walked: np.ndarray) -> np.ndarray:
+    """Return what the ground below a walk along lanes has that the patch's mean has not.
+
+    A sum of cosines over the patch, so that its mean is 0 and its variance 1; their weights are
+    those of a covariance that falls with exp(-distance / 0.4 m). `walked` is the share of the walk.
+    """
+    width, length = size_m
+    lane = np.clip(np.floor(walked * lanes), 0, lanes - 1)
+    along = walked * lanes - lane
+    along = np.where(lane % 2 == 0, along, 1 - along)
+    i, j = (k.ravel()[1:] for k in np.meshgrid(np.arange(20), np.arange(20), indexing="ij"))
+    wave = np.pi * np.hypot(i / length, j / width)
+    weight = (1 + (0.4 * wave) ** 2) ** -0.75 * stream("pattern", patch).standard_normal(i.size)
+    square = np.where(i > 0, 0.5, 1.0) * np.where(j > 0, 0.5, 1.0)  # mean square of each wave
+    weight /= np.sqrt((weight**2) @ square)
+    waves = np.cos(np.pi * np.outer(along, i)) * np.cos(np.pi * np.outer((lane + 0.5) / lanes, j))
+    return np.asarray(waves @ weight)
+
+
 _WAVELENGTH_UM = np.linspace(8.0, 14.0, 601)
 _BAND_T_K = np.arange(180.0, 420.0, 0.1)
 _spectral = 1.191042972e8 / _WAVELENGTH_UM**5 / np.expm1(

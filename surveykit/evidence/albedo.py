@@ -7,7 +7,7 @@ import numpy as np
 from surveykit.core import FloatArray, Input
 from surveykit.evidence import models
 from surveykit.evidence.conditions import NS, Day, Sky
-from surveykit.evidence.corrections import Correction, correct
+from surveykit.evidence.corrections import Correction, correct, lag_corrections
 from surveykit.evidence.heads import class_inputs, directional_inputs, limits
 from surveykit.evidence.intercalibration import ratio_input, swapped
 from surveykit.evidence.parts import (
@@ -60,6 +60,7 @@ def albedo(day: Day, this: Pass, sky: Sky) -> PassValue:
     inputs, more = treat(inputs, ratio / inputs["gain_ratio"].value, settings, stated)
     steps = [Correction("dark readings", {"up": float(raw[0].mean()), "down": float(raw[1].mean())},
                         "albedo.correct_darks", settings.correct_darks),
+             *lag_corrections(inputs.values(), "albedo.correct_lag", settings.correct_lag),
              Correction("gain ratio", {"gain_ratio": 1.0}, "albedo.correct_gain_ratio"),
              Correction("surroundings", {"surroundings_corrected": 0.0},
                         "albedo.correct_surroundings"),
@@ -102,7 +103,7 @@ def _inputs(day: Day, this: Pass, sky: Sky, up: FloatArray,
         Input("levelling_error", 0.0, float(np.sqrt(np.mean(levelling_error(
             zenith, settings.levelling_u_deg, EVERY_WAY_DEG, settings.beam_fraction) ** 2))),
               pass_scope(day, this), "levelling of the upper head in the hand"),
-        *operator_inputs(day, this), *skew(day, this, "shortwave", "down_per_s"),
+        *operator_inputs(day, this), *skew(day, this, "shortwave"),
         *class_inputs(day, this, head_up, head_down),
     ]
     flags += more + most + last + _circumstances(day, this, down, zenith)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any, NamedTuple
 
@@ -90,3 +90,9 @@ def correct(model: str, inputs: Inputs, corrections: Sequence[Correction], owner
                           f"{one.name}: not corrected", "rectangular")
         flags.append(one.why or f"not corrected, settings.{one.switch} is off: {one.name}")
     return Corrected(held, tuple(steps), tuple(flags))
+
+
+def lag_corrections(inputs: Iterable[Input], switch: str, on: bool) -> list[Correction]:
+    """Return the correction for heads that follow the light at different speeds, if they do."""
+    lags = {i.name: 0.0 for i in inputs if i.name.endswith("lag_s") and i.value != 0}
+    return [Correction("lag of the heads", lags, switch, on)] if lags else []

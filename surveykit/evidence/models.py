@@ -40,7 +40,8 @@ NEUTRAL: dict[str, float] = {
     "surroundings_corrected": 0.0, "shade_corrected": 0.0,
     "footprint_error": 0.0, "shade_error": 0.0, "contamination_error": 0.0,
     "up_class_error": 0.0, "down_class_error": 0.0, "spectral_error": 0.0, "operator_error": 0.0,
-    "directional_error_next": 0.0, "clock_skew_s": 0.0,
+    "directional_error_next": 0.0, "clock_skew_s": 0.0, "lag_s": 0.0, "red_lag_s": 0.0,
+    "nir_lag_s": 0.0,
     "down_per_s": 0.0, "red_down_per_s": 0.0, "nir_down_per_s": 0.0,
     "zenith_deg": 60.0, "reference_zenith_deg": 60.0, "zenith_dependence": 0.0,
     "red_ratio": 1.0, "nir_ratio": 1.0, "panel_error": 0.0,
@@ -99,12 +100,12 @@ def albedo(x: Values) -> FloatArray:
     What is not corrected is budgeted around the value: its whole size on either side. `..._per_m`
     say how the shares move with the height of the head, so that passes held at other heights than
     written scatter; `..._per_s` how the light changed, relative, while two loggers' clocks differ
-    by `clock_skew_s`.
+    by `clock_skew_s` and the head that looks up follows `lag_s` later than the other.
     """
     x = NEUTRAL | dict(x)
     up = x["up"] * (1 + x["up_gain_error"] + x["up_class_error"]) + x["up_zero_error"]
     down = x["down"] * (1 + x["down_gain_error"] + x["down_class_error"]
-                        + x["clock_skew_s"] * x["down_per_s"]) + x["down_zero_error"]
+                        + (x["clock_skew_s"] + x["lag_s"]) * x["down_per_s"]) + x["down_zero_error"]
     gains = x["gain_ratio"] * (1 + x["ratio_per_up_zero"] * x["up_zero_error"]
                                + x["ratio_per_down_zero"] * x["down_zero_error"])
     ratio = up / down / gains * (
@@ -137,7 +138,7 @@ def reflectances(x: Values) -> tuple[FloatArray, FloatArray]:
     red, nir = (reflectance_factor(
         x[f"{name}_up"] * (1 + x[f"{name}_up_gain_error"]) + x[f"{name}_up_zero_error"],
         x[f"{name}_down"] * (1 + x[f"{name}_down_gain_error"]
-                             + x["clock_skew_s"] * x[f"{name}_down_per_s"])
+                             + (x["clock_skew_s"] + x[f"{name}_lag_s"]) * x[f"{name}_down_per_s"])
         + x[f"{name}_down_zero_error"], x[f"{name}_ratio"]) * (1 + x["panel_error"])
         for name in ("red", "nir"))
     return red, nir

@@ -89,21 +89,25 @@ def zero(day: Day, channel: Channel, name: str, hidden_u: float) -> Input:
                  f"zero of {channel.logger}, {channel.column} (dark readings)")
 
 
-def skew(day: Day, this: Pass, word: str, per_s: str) -> list[Input]:
-    """Return what the clocks of two loggers do to a ratio: their difference, and the light's rate.
+def skew(day: Day, this: Pass, word: str, band: str = "") -> list[Input]:
+    """Return what two loggers' clocks, and heads that follow at different speeds, do to a ratio.
 
     Sums over a pass begin and end at other moments where the clocks differ, so that the ratio
-    moves by the relative rate [s-1] of the light times the difference [s].
+    moves by the relative rate [s-1] of the light times the difference [s]; a head behind a ramp
+    of the light shows that of one time constant earlier.
     """
     up, down = (this.channels[f"{word}_{way}"] for way in ("up", "down"))
-    if up.logger == down.logger:
+    lag_s = down.time_constant_s - up.time_constant_s
+    if up.logger == down.logger and lag_s == 0:
         return []
     time, light = series(day, this, f"{word}_down")
     rate = float(np.polyfit((time - time[0]) / NS, light, 1)[0] / light.mean())
-    return [fixed(per_s, rate),
-            Input("clock_skew_s", 0.0, this.skew_u_s,
-                  f"{day.name}:{up.logger}:{down.logger}:clocks",
-                  f"clocks of {up.logger} and {down.logger} against each other")]
+    made = [fixed(f"{band}down_per_s", rate), fixed(f"{band}lag_s", lag_s)]
+    if up.logger != down.logger:
+        made.append(Input("clock_skew_s", 0.0, this.skew_u_s,
+                          f"{day.name}:{up.logger}:{down.logger}:clocks",
+                          f"clocks of {up.logger} and {down.logger} against each other"))
+    return made
 
 
 def pass_scope(day: Day, this: Pass) -> str:

@@ -8,7 +8,7 @@ import numpy as np
 
 from surveykit.core import Input
 from surveykit.evidence.conditions import Day, Sky
-from surveykit.evidence.corrections import Correction, correct
+from surveykit.evidence.corrections import Correction, correct, lag_corrections
 from surveykit.evidence.intercalibration import over_panel, panel_u, ratio_input, swapped
 from surveykit.evidence.parts import (
     BANDS,
@@ -60,7 +60,7 @@ def vegetation_index(day: Day, this: Pass, sky: Sky) -> PassValue:
                 f"{channel.column} reads {mean:.3g}, less than {1 / settings.max_dark_u:g} times "
                 f"the uncertainty of its zero or {settings.min_dark_ratio:g} times the scatter of "
                 "its dark reading: too little light for an index")
-    skews = [i for band in ("red", "nir") for i in skew(day, this, band, f"{band}_down_per_s")]
+    skews = [i for band in ("red", "nir") for i in skew(day, this, band, f"{band}_")]
     gains, more = _gains(day, this)
     if sky.kind == "mixed":
         more += (f"sky neither clear nor overcast: {sky.clear_index:.0%} of a clear one",)
@@ -69,6 +69,7 @@ def vegetation_index(day: Day, this: Pass, sky: Sky) -> PassValue:
     made = correct("ndvi", {i.name: i for i in (*inputs, *skews, *gains, *converted)}, [
         Correction("dark readings", {name: float(raw[name].mean()) for name in BANDS},
                    "ndvi.correct_darks", settings.correct_darks),
+        *lag_corrections(skews, "ndvi.correct_lag", settings.correct_lag),
         *[Correction("gain ratio", {"red_ratio": 1.0, "nir_ratio": 1.0},
                      "ndvi.correct_gain_ratio")] * any(i.name == "nir_ratio" for i in gains),
         *[Correction("bands converted", {"conversion_slope": 1.0, "conversion_intercept": 0.0},

@@ -4,17 +4,14 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from html import escape
 from typing import Any
 
 import pandas as pd
 
 from . import wording as w
-from .markup import Cell, Column, Html, Row, grouped_table, table
+from .markup import Cell, Group, Html, Row, grouped_table, paragraph, table
 from .page import render
-from .typeset import typeset
-
-CHANGED = ("higher", "lower", "higher, small", "lower, small")
+from .phrases import SHOWN
 
 
 @dataclass(frozen=True)
@@ -27,15 +24,6 @@ class Entry:
     changes: pd.DataFrame
 
 
-@dataclass(frozen=True)
-class _Linked(Cell):
-    address: str = ""
-
-    @property
-    def html(self) -> str:
-        return f'<a href="{escape(self.address)}">{escape(typeset(self.text))}</a>'
-
-
 def contents_page(entries: Sequence[Entry]) -> str:
     """Return the page as HTML, campaigns by date; equal reports give equal bytes."""
     ordered = sorted(entries, key=lambda e: (str(e.facts["date"]), str(e.facts["campaign"])))
@@ -46,50 +34,46 @@ def contents_page(entries: Sequence[Entry]) -> str:
 
 
 def _campaigns(entries: Sequence[Entry]) -> Html:
-    columns = [Column("Campaign", "long"), Column("Date", "short"), Column("Site"),
-               Column("Passes", "number"), Column("Evaluated", "short"), Column("Changed", "text")]
+    heads = {"Campaign": "long", "Date": "short", "Site": "text", "Passes": "number",
+                      "Evaluated": "short", "Changed": "text"}
     rows: list[Row] = []
     for entry in entries:
         known = entry.surfaces["status"].ne("not evaluated")
         judged = entry.changes["verdict"].fillna("").ne("")
-        changed = entry.changes["verdict"].isin(CHANGED)
+        changed = entry.changes["verdict"].isin(SHOWN)
         rows.append((
-            _Linked(str(entry.facts["title"]), address=entry.address),
-            w.date_text(str(entry.facts["date"])), str(entry.facts["site"]),
+            _linked(entry), w.date_text(str(entry.facts["date"])), str(entry.facts["site"]),
             w.count(int(entry.surfaces["n_passes"].sum())),
             f"{w.count(int(known.sum()))} of {w.count(len(known))} values",
             f"{w.count(int(changed.sum()))} of {w.count(int(judged.sum()))} judged"
             if judged.any() else Cell("none judged", quiet=True)))
-    return table("Campaigns, by date", columns, rows, empty="There is no report yet.")
+    return table("Campaigns, by date.", heads, rows, empty="There is no report yet.")
+
+
+def _linked(entry: Entry) -> Cell:
+    return Cell(str(entry.facts["title"]), link=entry.address)
 
 
 def _values(entries: Sequence[Entry]) -> Html:
     """Return value ± U of every surface on every date, a group a surface."""
-    labels: dict[str, str] = {}
-    dates: dict[str, dict[int, dict[str, str]]] = {}
-    kinds: dict[tuple[str, str], None] = {}
-    for place, entry in enumerate(entries):
-        labels |= {str(k): str(v) for k, v in entry.facts["surfaces"].items()}
-        for row in entry.surfaces.to_dict("records"):
-            quantity, kind = str(row["quantity"]), str(row["kind"])
-            text = w.interval(float(row["value"]), float(row["lower"]), float(row["upper"]),
-                              w.places(quantity))
-            if text:
-                kinds[(quantity, kind)] = None
-                by_place = dates.setdefault(str(row["surface"]), {})
-                by_place.setdefault(place, {})[w.quantity_text(quantity, kind)] = text
-    order = [*w.PLACES]
-    heads = [w.quantity_text(*pair) for pair in sorted(
-        kinds, key=lambda pair: (order.index(pair[0]) if pair[0] in order else 9, pair[1]))]
-    units = {w.quantity_text(q, k): w.unit_text("degC") if q == "temperature" else ""
-             for q, k in kinds}
-    columns = [Column("Campaign", "long"), Column("Date", "short"), *(
-        Column(f"{head}, {units[head]}" if units[head] else head, "number") for head in heads)]
-    groups: list[tuple[str, list[Row]]] = [(w.label(surface, labels), [
-        (_Linked(str(entries[place].facts["title"]), address=entries[place].address),
-         w.date_text(str(entries[place].facts["date"])),
-         *(texts.get(head, "") for head in heads))
-        for place, texts in by_date.items()]) for surface, by_date in sorted(dates.items())]
+    labels = {name: label for e in entries for name, label in e.facts["surfaces"].items()}
+    frames = [e.surfaces.assign(place=place) for place, e in enumerate(entries)]
+    known = pd.concat(frames).dropna(subset=["value"]) if frames else pd.DataFrame()
+    if known.empty:
+        return paragraph("No surface has a value yet.", "empty")
+    families = w.families(known)
+    groups: list[Group] = []
+    for surface, block in known.groupby(known["surface"].astype(str)):
+        rows: list[Row] = []
+        for place, some in block.groupby("place"):
+            told = {(row["quantity"], row["kind"]): w.interval(
+                row["value"], row["lower"], row["upper"], w.places(row["quantity"]))
+                for row in some.to_dict("records")}
+            entry = entries[int(str(place))]
+            rows.append([_linked(entry), w.date_text(str(entry.facts["date"])),
+                         *(told.get(pair, "") for pair, _ in families)])
+        groups.append((w.label(surface, labels), rows))
+    heads = {"Campaign": "long", "Date": "short"} | {
+        w.heading(*pair, str(some["unit"].iloc[0])): "number" for pair, some in families}
     return grouped_table("Value ± U of each surface at its passes’ own times; weather differs "
-                         "between dates, so read changes in the reports", columns, groups,
-                         empty="No surface has a value yet.")
+                         "between dates, so read changes in the reports.", heads, groups, empty="")

@@ -5,11 +5,9 @@ from __future__ import annotations
 import matplotlib.dates as mdates
 import numpy as np
 import pandas as pd
-import seaborn as sns
 
 from . import wording as w
-from .figures_records import _clock_axis
-from .style import INK, MARKERS, MUTED, PALETTE, Drawing, dress, panels, styled
+from .style import INK, MARKERS, MUTED, PALETTE, Drawing, clock_axis, dress, panels, styled
 
 EDGES = ("covered", "uncovered")
 
@@ -44,7 +42,7 @@ def clock_plots(events: pd.DataFrame, lags: pd.DataFrame,
 def _covers(name: str, edges: pd.DataFrame, time_zone: str) -> Drawing:
     """Draw offsets at the edges of covers with the line, and what is left of them."""
     reference = edges["reference"].iloc[0]
-    figure, (before, after) = panels(2, [1.5, 1.5], sharex=True)
+    figure, (before, after) = panels([1.5, 1.5], sharex=True)
     edges = edges.sort_values("time_utc")
     before.plot(mdates.date2num(edges["time_utc"]), edges["fitted_s"], color=MUTED, linewidth=1)
     for place, edge in enumerate(EDGES):
@@ -56,15 +54,13 @@ def _covers(name: str, edges: pd.DataFrame, time_zone: str) -> Drawing:
         after.errorbar(when, some["residual_s"], yerr=some["u_s"], elinewidth=1, capsize=2.5,
                        **look)
     after.axhline(0, color=MUTED, linewidth=1)
-    before.set_title(f"Before: {reference} minus {name}, s", fontweight="normal", fontsize=9)
-    after.set_title("After: what is left, with u of each edge, s", fontweight="normal", fontsize=9)
     figure.legend(*before.get_legend_handles_labels(), loc="outside upper left", ncols=2,
                   handlelength=1.0, borderaxespad=0)
-    for axis in (before, after):
-        axis.grid(axis="y")
-        axis.margins(x=0.06)
-        sns.despine(ax=axis)
-    _clock_axis(after, time_zone)
+    for axis, title in ((before, f"Before: {reference} minus {name}, s"),
+                        (after, "After: what is left, with u of each edge, s")):
+        dress(axis, title, plain=True)
+        axis.margins(0.06, 0.15)
+    clock_axis(after, time_zone)
     low, high = (w.number(edges["offset_s"].agg(f), 1, sign=True) for f in ("min", "max"))
     left = w.number(float(np.abs(edges["residual_s"]).max()), 2)
     fate = " The clock was refused." if edges["status"].iloc[0] == "refused" else ""
@@ -79,7 +75,7 @@ def _covers(name: str, edges: pd.DataFrame, time_zone: str) -> Drawing:
 def _correlation(name: str, curve: pd.DataFrame) -> Drawing:
     """Draw the correlation of two loggers' light over the lag, with its two peaks."""
     one = curve.iloc[0]
-    figure, (axis,) = panels(1, [1.9])
+    figure, (axis,) = panels([1.9])
     axis.plot(curve["lag_s"], curve["r"], color=INK, linewidth=0.9)
     axis.axvline(one["found_s"], color=PALETTE[0], linewidth=1.1, linestyle="--")
     axis.axhline(one["peak"], color=PALETTE[0], linewidth=1, label="peak")

@@ -3,15 +3,25 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
+from typing import Any
 
 import matplotlib.dates as mdates
 import numpy as np
 import pandas as pd
 
 from . import wording as w
-from .figures_records import _clock_axis
-from .figures_results import _axis
-from .style import HAIRLINE, INK, MAP_RAMP, MARKERS, PALETTE, Drawing, dress, panels, styled
+from .style import (
+    HAIRLINE,
+    INK,
+    MAP_RAMP,
+    MARKERS,
+    PALETTE,
+    Drawing,
+    clock_axis,
+    dress,
+    panels,
+    styled,
+)
 
 Labels = Mapping[str, str] | None
 PANELS = 6  # of one figure: it still fits a page
@@ -36,7 +46,7 @@ def placement_plot(dwells: pd.DataFrame, labels: Labels = None,
         return Drawing(None, "No placement of a contact head was evaluated, so there is none to "
                              "draw.")
     names = list(dict.fromkeys(known["surface"]))
-    figure, axes = panels(len(names), [1.05] * len(names), sharex=True)
+    figure, axes = panels([1.05] * len(names), sharex=True)
     told = []
     for axis, name in zip(axes, names, strict=True):
         block = known[known["surface"] == name]
@@ -51,7 +61,7 @@ def placement_plot(dwells: pd.DataFrame, labels: Labels = None,
                     f"{w.number(block['value'].min(), 1)} to {w.number(block['value'].max(), 1)} °C"
                     + (f", standard deviation within a pass {w.number(spread, 1)} K"
                        if np.isfinite(spread) else ""))
-    _clock_axis(axes[-1], time_zone)
+    clock_axis(axes[-1], time_zone)
     return Drawing(figure, f"Contact placements: {'; '.join(told)}.",
                    "Settled placements of the contact head over the day; equal marks within a "
                    "panel are one patch.")
@@ -72,7 +82,7 @@ def cooling_plot(courses: pd.DataFrame, labels: Labels = None) -> Drawing:
         return Drawing(None, "No contact placement was fitted for the cooling under the head, so "
                              "there is none to draw.")
     names = [*dict.fromkeys(courses["surface"])]
-    figure, axes = panels(len(names), [1.15] * len(names), sharex=True, sharey=True)
+    figure, axes = panels([1.15] * len(names), sharex=True, sharey=True)
     told = []
     for axis, name in zip(axes, names, strict=True):
         block = courses[courses["surface"] == name]
@@ -85,7 +95,8 @@ def cooling_plot(courses: pd.DataFrame, labels: Labels = None) -> Drawing:
         told.append(f"{w.label(name, labels)} {w.number(float(rates.mean()), 2)} K s⁻¹ᐟ² over "
                     f"{w.plural(len(rates), 'pass', 'passes')}, so "
                     f"{w.number(float(law.abs().max()), 1)} K after {law.index.max():.0f} s")
-    axes[0].set_ylim(-1.15 * float(courses["law_k"].max()) - 0.3, 0.3)
+    high, low = -courses["below_k"].quantile([0.01, 0.99])  # but for stray ones all are seen
+    axes[0].set_ylim(min(-1.15 * float(courses["law_k"].max()) - 0.3, low), max(high, 0.3))
     axes[-1].set_xlabel("Seconds since the touch")
     figure.legend(*axes[0].get_legend_handles_labels(), loc="outside upper left", ncols=2,
                   borderaxespad=0, handlelength=1.4)
@@ -106,10 +117,12 @@ def map_plots(readings: pd.DataFrame, labels: Labels = None) -> tuple[Drawing, .
 
 @styled
 def _map_plot(pair: tuple[str, str], block: pd.DataFrame, labels: Labels) -> Drawing:
-    patches = [*dict.fromkeys(zip(block["surface"], block["patch"], strict=True))][:PANELS]
-    unit = w.unit_text(block["unit"].iloc[0])
+    patches, rest = _first(
+        dict.fromkeys(zip(block["surface"], block["patch"], strict=True)), "patches")
     low, high = block["value"].quantile([0.02, 0.98])
-    figure, axes = panels(len(patches), [2.3] * len(patches))
+    spans = block.groupby(["surface", "patch"])[["x_m", "y_m"]].agg(np.ptp).clip(lower=0.5)
+    figure, axes = panels([0.4 + float(np.clip(2.7 * y / x, 0.8, 3.0)) for x, y in (
+        spans.loc[patch] for patch in patches)])  # as high as a map of the column's width needs
     told = []
     for axis, (surface, patch) in zip(axes, patches, strict=True):
         some = block[(block["surface"] == surface) & (block["patch"] == patch)]
@@ -122,11 +135,10 @@ def _map_plot(pair: tuple[str, str], block: pd.DataFrame, labels: Labels) -> Dra
                     f"{w.plural(len(some), 'record')} from {ends[0]} to "
                     f"{w.with_unit(ends[1], block['unit'].iloc[0])}")
     axes[-1].set_xlabel("Along the lanes, m")
-    figure.colorbar(drawn, ax=axes, label=f"{w.quantity_text(*pair)}{f', {unit}' if unit else ''}",
-                    shrink=0.8)
+    figure.colorbar(drawn, ax=axes, label=w.heading(*pair, block["unit"].iloc[0]), shrink=0.8)
     return Drawing(figure, f"{w.quantity_text(*pair)} over the ground: {'; '.join(told)}.",
                    f"Readings of {w.inside_sentence(*pair)} where the lanes were walked, before "
-                   "corrections; darker is higher.")
+                   f"corrections; darker is higher{rest}.")
 
 
 def histogram_plots(histograms: pd.DataFrame, labels: Labels = None) -> tuple[Drawing, ...]:
@@ -136,34 +148,34 @@ def histogram_plots(histograms: pd.DataFrame, labels: Labels = None) -> tuple[Dr
 
 @styled
 def _histogram_plot(histograms: pd.DataFrame, labels: Labels) -> Drawing:
-    names = [*dict.fromkeys(histograms["pass"])][:PANELS]
-    figure, axes = panels(len(names), [1.3] * len(names))
+    names, rest = _first(dict.fromkeys(histograms["pass"]), "passes")
+    figure, axes = panels([1.3] * len(names))
     told = []
     for axis, name in zip(axes, names, strict=True):
         bars = histograms[histograms["pass"] == name]
         first, low, high = bars.iloc[0], bars["lower"].min(), bars["upper"].max()
         axis.bar(bars["lower"], bars["n_records"], bars["upper"] - bars["lower"], align="edge",
                  color=PALETTE[0], edgecolor="white", linewidth=0.4)
-        axis.set_xlabel(_axis(first["quantity"], first["unit"]))
+        axis.set_xlabel(w.heading(first["quantity"], "", first["unit"]))
         dress(axis, f"{name}, {w.label(first['surface'], labels)}", "Records", "")
         ends = [w.number(end, w.places(first["quantity"])) for end in (low, high)]
         told.append(f"{name}, {w.plural(int(bars['n_records'].sum()), 'record')} from {ends[0]} to "
                     f"{w.with_unit(ends[1], first['unit'])}")
     return Drawing(figure, f"Readings in two groups: {'; '.join(told)}.",
                    "Readings of passes that look like two kinds of ground: their mean stands for "
-                   "neither.")
+                   f"neither{rest}.")
 
 
-def height_plot(geometry: pd.DataFrame, labels: Labels = None) -> Drawing:
+def height_plot(geometry: pd.DataFrame, labels: Labels = None) -> tuple[Drawing, ...]:
     """Draw what the head's height costs an albedo, of each surface the pass that loses most.
 
-    `geometry` is the table of that name.
+    `geometry` is the table of that name; without a row there is no drawing: its table says so.
     """
     used = geometry[geometry["role"] == "used"].sort_values("effect", kind="stable")
     worst = used.groupby("surface", sort=False)["pass"].last()
-    return heights_drawn([
+    return () if used.empty else (heights_drawn([
         (f"{w.label(name, labels)}, {worst[name]}", geometry[geometry["pass"] == worst[name]])
-        for name in dict.fromkeys(geometry["surface"]) if name in worst.index])
+        for name in dict.fromkeys(geometry["surface"]) if name in worst.index]),)
 
 
 @styled
@@ -173,10 +185,8 @@ def heights_drawn(curves: Iterable[tuple[str, pd.DataFrame]]) -> Drawing:
     A curve has `height_m` [m], `shade`, `contamination` and `effect` (relative errors of the
     albedo [1]) and `role`: used, best or empty.
     """
-    shown = [*curves][:PANELS]
-    if not shown:
-        return Drawing(None, "No albedo over a patch of known size: no height to weigh.")
-    figure, axes = panels(len(shown), [1.45] * len(shown), sharex=True)
+    shown, rest = _first(curves, "patches")
+    figure, axes = panels([1.45] * len(shown), sharex=True)
     told = []
     for axis, (title, rows) in zip(axes, shown, strict=True):
         block = rows.sort_values("height_m")
@@ -204,4 +214,10 @@ def heights_drawn(curves: Iterable[tuple[str, pd.DataFrame]]) -> Drawing:
     figure.legend(seen.values(), seen.keys(), loc="outside upper left", ncols=3, borderaxespad=0)
     return Drawing(figure, f"Error of albedo against the height of the head: {'; '.join(told)}.",
                    "What the head’s own shade and the ground beyond the patch would take from "
-                   "albedo without correction, in per cent of it.")
+                   f"albedo without correction, in per cent of it{rest}.")
+
+
+def _first(items: Iterable[Any], what: str) -> tuple[list[Any], str]:
+    """Return as many items as fit a figure, and for the caption how many there are."""
+    found = [*items]
+    return found[:PANELS], f"; the first {PANELS} of {len(found)} {what}" if found[PANELS:] else ""

@@ -3,17 +3,28 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from zoneinfo import ZoneInfo
 
 import matplotlib.dates as mdates
 import numpy as np
 import pandas as pd
-import seaborn as sns
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 
 from . import wording as w
-from .style import HATCHES, INK, MUTED, PALETTE, PAPER, Drawing, of_each, panels, shorten, styled
+from .style import (
+    HATCHES,
+    INK,
+    MUTED,
+    PALETTE,
+    PAPER,
+    Drawing,
+    clock_axis,
+    dress,
+    of_each,
+    panels,
+    shorten,
+    styled,
+)
 
 Labels = Mapping[str, str] | None
 TRACKS = (("irradiance_w_m2", "irradiance", "W m⁻²"), ("zenith_deg", "sun height", "°"),
@@ -49,7 +60,7 @@ def day_timeline(passes: pd.DataFrame, sky: pd.DataFrame | None = None,
               for frame in (sky, weather) if frame is not None and column in frame
               and frame.loc[frame["time_utc"].between(*window), column].notna().any()]
     names = list(dict.fromkeys(passes["surface"]))[::-1]
-    figure, axes = panels(1 + len(tracks), [0.75 + 0.36 * len(names), *[0.9] * len(tracks)],
+    figure, axes = panels([0.75 + 0.36 * len(names), *[0.9] * len(tracks)],
                           sharex=True)
     families = w.families(passes)
     lane = 0.76 / len(families)  # a quantity keeps its lane in each surface's row
@@ -63,21 +74,20 @@ def day_timeline(passes: pd.DataFrame, sky: pd.DataFrame | None = None,
         axes[0].plot(((start + stop) / 2)[gone], rows[gone], "x", color=INK, markersize=4.5)
     axes[0].set_yticks(range(len(names)), [shorten(w.label(n, labels)) for n in names])
     axes[0].set_ylim(-0.6, len(names) - 0.4)
-    axes[0].legend(loc="lower left", bbox_to_anchor=(0, 1), ncols=2, borderaxespad=0,
-                   handlelength=1.4)
+    figure.legend(*axes[0].get_legend_handles_labels(), loc="outside upper left", ncols=2,
+                  borderaxespad=0, handlelength=1.4)
     axes[0].set_xlim(*mdates.date2num(window))
     spans = []
     for axis, ((when, what), name, unit) in zip(axes[1:], tracks, strict=True):
         axis.plot(when, what, color=INK, linewidth=1.1,
                   marker="o" if len(what) <= FEW else None, markersize=3)
-        axis.set_title(f"{w.sentence_case(name)[:-1]}, {unit}", fontweight="normal", fontsize=9)
+        dress(axis, f"{w.sentence_case(name)[:-1]}, {unit}", grid="x", plain=True)
         spans.append(f"{name} from {w.figures(what.min(), 3)} to {w.figures(what.max(), 3)} {unit}")
+    dress(axes[0], grid="x")
     for axis in axes:
-        axis.grid(axis="x")
         axis.tick_params(axis="y", length=2)
-        sns.despine(ax=axis)
     reasons = _stretches(axes[0], excluded, window)
-    _clock_axis(axes[-1], time_zone)
+    clock_axis(axes[-1], time_zone)
     begin, end = (f"{time.tz_convert(time_zone):%H:%M}" for time in (first, last))
     unused = int((passes["status"] == "not evaluated").sum())
     alt = (f"{w.plural(len(passes), 'pass', 'passes')} on {w.plural(len(names), 'surface')} from "
@@ -111,7 +121,7 @@ def ledger_plot(ledger: pd.DataFrame) -> Drawing:
     if ledger.empty or not ledger["records"].sum():
         return Drawing(None, "No record was logged, so there is no ledger to draw.")
     ways = {str(logger): _losses(block) for logger, block in ledger.groupby("logger")}
-    figure, axes = panels(len(ways), [0.4 + 0.18 * len(way) for way in ways.values()],
+    figure, axes = panels([0.4 + 0.18 * len(way) for way in ways.values()],
                           sharex=True)
     told = []
     for axis, (logger, way) in zip(axes, ways.items(), strict=True):
@@ -124,11 +134,10 @@ def ledger_plot(ledger: pd.DataFrame) -> Drawing:
                       hatch="" if whole else HATCHES[1])
             axis.text(100 * (start + n) / total + 1, -y, w.count(n), va="center", fontsize=8)
         axis.set_yticks(-np.arange(len(way)), [*way], fontsize=8.5)
-        axis.set_title(logger)
         axis.set_xlim(0, 112)
         axis.set_xticks(range(0, 101, 20))
         axis.tick_params(axis="y", length=0)
-        sns.despine(ax=axis, left=True)
+        dress(axis, logger, grid="", left=True)
         told.append(f"{logger}: {w.plural(total, 'record')}, " + w.listing(
             f"{w.percent(n / total)} {word}" for word, n in way.items() if word != LOGGED) + ".")
     axes[-1].set_xlabel("Share of a logger’s records, %")
@@ -167,7 +176,10 @@ def _budget_of(budget: pd.DataFrame, quantity: str, labels: Labels) -> Drawing:
     order = [(kind, name) for (_, kind), block in w.families(known)
              for name in dict.fromkeys(block["surface"])]
     ranked = shares.sum().sort_values(ascending=False, kind="stable").index
-    shares = _merged(shares.reindex(order)[ranked], "other sources", MANY)
+    shares = shares.reindex(order)[ranked]
+    if len(ranked) > MANY + 1:
+        rest = shares.iloc[:, MANY:].sum(axis="columns")
+        shares = shares.iloc[:, :MANY].assign(**{"other sources": rest})
     names = [shorten(w.label(name, labels)) + (f"\n{kind}" if kind else "")
              for kind, name in order]
     told = [f"{w.label(name, labels)}{f' ({kind})' if kind else ''} "
@@ -182,7 +194,7 @@ def _budget_of(budget: pd.DataFrame, quantity: str, labels: Labels) -> Drawing:
 def _stack(shares: pd.DataFrame, names: list[str], title: str) -> Figure:
     wide = max(len(str(key)) for key in shares) > 25
     lines = sum(1 + (len(str(key)) > 40) for key in shares)
-    figure, (axis,) = panels(1, [0.75 + 0.19 * (lines if wide else (lines + 1) // 2)
+    figure, (axis,) = panels([0.75 + 0.19 * (lines if wide else (lines + 1) // 2)
                                  + 0.44 * len(shares)])
     left = np.zeros(len(shares))
     rows = np.arange(len(shares))[::-1]
@@ -203,17 +215,8 @@ def _stack(shares: pd.DataFrame, names: list[str], title: str) -> Figure:
     axis.tick_params(axis="y", length=0)
     figure.legend(loc="outside upper left", ncols=1 if wide else 2, handlelength=1.6,
                   columnspacing=1.2, borderaxespad=0)
-    sns.despine(ax=axis, left=True)
+    dress(axis, grid="", left=True)
     return figure
-
-
-def _merged(table: pd.DataFrame, rest: str, most: int) -> pd.DataFrame:
-    """Keep the first columns and add the rest up into one."""
-    if len(table.columns) <= most + 1:
-        return table
-    kept = table.iloc[:, :most].copy()
-    kept[rest] = table.iloc[:, most:].sum(axis="columns")
-    return kept
 
 
 def _thinned(frame: pd.DataFrame, column: str,
@@ -228,12 +231,3 @@ def _thinned(frame: pd.DataFrame, column: str,
     values = known[column].to_numpy(float)
     return (mdates.date2num(known["time_utc"].to_numpy()),
             90 - values if column == "zenith_deg" else values)
-
-
-def _clock_axis(axis: Axes, time_zone: str) -> None:
-    zone = ZoneInfo(time_zone)
-    locator = mdates.AutoDateLocator(tz=zone, minticks=3, maxticks=7)
-    axis.xaxis.set_major_locator(locator)
-    axis.xaxis.set_major_formatter(mdates.DateFormatter("%H:%M", tz=zone))
-    axis.set_xlabel(f"Time of day ({time_zone})")
-    axis.xaxis.label.set_color(MUTED)

@@ -19,6 +19,8 @@ from .style import (
     PAPER,
     RAMP,
     Drawing,
+    dress,
+    kinds,
     of_each,
     panels,
     shorten,
@@ -42,26 +44,24 @@ def _interval_plot(surfaces: pd.DataFrame, quantity: str, labels: Labels = None)
     Filled marks are unqualified, hollow ones qualified or without an interval; a surface that was
     not evaluated keeps its row, with these words in it.
     """
-    families = [(kind, block) for (name, kind), block in w.families(surfaces) if name == quantity]
+    families = kinds(surfaces, quantity)
     if not any(block["value"].notna().any() for _, block in families):
         return Drawing(None, f"No {w.inside_sentence(quantity)} could be evaluated, so there is "
                              "no interval to draw.")
-    unit = families[0][1]["unit"].iloc[0]
-    figure, axes = panels(len(families), [FRAME_IN + ROW_IN * len(b) for _, b in families],
+    figure, axes = panels([FRAME_IN + ROW_IN * len(b) for _, b in families],
                           sharex=True)
     findings = []
     for place, (axis, (kind, block)) in enumerate(zip(axes, families, strict=True)):
         rows = block.sort_values("value", na_position="first", kind="stable")
-        _draw_rows(axis, rows, "value", place, labels,
-                   [row["status"] != "ok" for row in rows.to_dict("records")])
+        _draw_rows(axis, rows, "value", place, labels, rows["status"] != "ok")
         if len(families) > 1:
             axis.set_title(w.quantity_text(quantity, kind))
         findings.append(f"{w.quantity_text(quantity, kind)}: " + (_told(
             rows[rows["value"].notna()].iloc[::-1], "value", labels) or "none evaluated") + ".")
-    axes[-1].set_xlabel(_axis(quantity, unit))
-    hollow = surfaces[surfaces["quantity"] == quantity]["status"].isin(["qualified", "value only"])
+    axes[-1].set_xlabel(w.heading(quantity, "", families[0][1]["unit"].iloc[0]))
+    hollow = any(block["status"].isin(["qualified", "value only"]).any() for _, block in families)
     caption = f"{w.quantity_text(quantity)} of each surface with its interval" + (
-        "; hollow marks are qualified or have no interval." if hollow.any() else ".")
+        "; hollow marks are qualified or have no interval." if hollow else ".")
     return Drawing(figure, "From high to low. " + " ".join(findings), caption)
 
 
@@ -140,7 +140,7 @@ def change_plot(changes: pd.DataFrame, earlier: str, relevant: Mapping[str, floa
     if not judged["change"].notna().any():
         return Drawing(None, f"No change since {since} could be evaluated, so there is none to "
                              "draw.")
-    figure, axes = panels(len(families), [0.95 + ROW_IN * len(b) for _, b in families])
+    figure, axes = panels([0.95 + ROW_IN * len(b) for _, b in families])
     findings = []
     for place, (axis, ((quantity, kind), block)) in enumerate(zip(axes, families, strict=True)):
         limit = (relevant or {}).get(quantity)
@@ -148,11 +148,9 @@ def change_plot(changes: pd.DataFrame, earlier: str, relevant: Mapping[str, floa
             axis.axvspan(-limit, limit, color=MUTED, alpha=0.16, linewidth=0)
         axis.axvline(0, color=MUTED, linewidth=0.9)
         rows = block.iloc[::-1]
-        _draw_rows(axis, rows, "change", place, labels,
-                   [verdict not in ("higher", "lower") for verdict in rows["verdict"]])
+        _draw_rows(axis, rows, "change", place, labels, ~rows["verdict"].isin(["higher", "lower"]))
         axis.set_title(w.quantity_text(quantity, kind))
-        unit = w.unit_text(block["unit"].iloc[0])
-        axis.set_xlabel(f"Change{f', {unit}' if unit else ''}")
+        axis.set_xlabel(w.heading("Change", "", block["unit"].iloc[0]))
         reach = max(*(abs(end) for end in axis.get_xlim()), 1.5 * (limit or 0))
         axis.set_xlim(-reach, reach)
         findings.append(f"{w.quantity_text(quantity, kind)}: "
@@ -166,7 +164,7 @@ def change_plot(changes: pd.DataFrame, earlier: str, relevant: Mapping[str, floa
 def _matrix(size: np.ndarray, words: np.ndarray, rows: Sequence[str], columns: Sequence[str],
             row_in: float, vmax: float | None = None) -> Figure:
     """Draw cells shaded in one hue by size, words in them, columns named above."""
-    figure, (axis,) = panels(1, [0.6 + row_in * len(size)])
+    figure, (axis,) = panels([0.6 + row_in * len(size)])
     small = 8.0 if size.shape[1] < 6 else 7.0
     sns.heatmap(size, ax=axis, cmap=RAMP, cbar=False, linewidths=1.5, linecolor=PAPER, vmin=0,
                 vmax=vmax)
@@ -182,9 +180,9 @@ def _matrix(size: np.ndarray, words: np.ndarray, rows: Sequence[str], columns: S
 
 
 def _draw_rows(axis: Axes, rows: pd.DataFrame, column: str, place: int, labels: Labels,
-               hollow: Sequence[bool]) -> None:
+               hollow: pd.Series) -> None:
     """Draw a row's value and interval each, or in words why there is none."""
-    _rows(axis, [w.label(name, labels) for name in rows["surface"]])
+    surface_rows(axis, [w.label(name, labels) for name in rows["surface"]])
     colour, marker = PALETTE[place % len(PALETTE)], MARKERS[place % len(MARKERS)]
     for y, (row, open_) in enumerate(zip(rows.to_dict("records"), hollow, strict=True)):
         value, lower, upper = (float(row[key]) for key in (column, "lower", "upper"))
@@ -200,14 +198,14 @@ def _draw_rows(axis: Axes, rows: pd.DataFrame, column: str, place: int, labels: 
                   markerfacecolor=axis.get_facecolor() if open_ else colour, markeredgewidth=1.4)
 
 
-def _rows(axis: Axes, names: list[str]) -> None:
+def surface_rows(axis: Axes, names: list[str]) -> None:
+    """Name the rows of a panel from the bottom up, with a grid across them."""
     axis.set_yticks(range(len(names)), [shorten(name) for name in names])
     axis.set_ylim(-0.6, len(names) - 0.4)
     axis.locator_params(axis="x", nbins=6, steps=[1, 2, 5, 10])
-    axis.grid(axis="x")
     axis.tick_params(axis="y", length=0)
     axis.tick_params(axis="x", labelbottom=True)
-    sns.despine(ax=axis, left=True)
+    dress(axis, grid="x", left=True)
 
 
 def _told(rows: pd.DataFrame, column: str, labels: Labels, last: str = "") -> str:
@@ -223,8 +221,3 @@ def _turned(verdict: str) -> str:
     """The verdict on a pair named the other way round."""
     return {"higher": "lower", "lower": "higher", "higher, small": "lower, small",
             "lower, small": "higher, small"}.get(verdict, verdict)
-
-
-def _axis(quantity: str, unit: str) -> str:
-    written = w.unit_text(unit)
-    return w.quantity_text(quantity) + (f", {written}" if written else "")

@@ -10,13 +10,11 @@ import re
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from html import escape
-from typing import Literal
 
-from .typeset import typeset
-from .wording import sentence_case
+from .typeset import NO_BREAK, typeset
+from .wording import label, sentence_case
 
-NO_BREAK = "\u00a0"
-Align = Literal["text", "short", "long", "number", "code"]
+Columns = dict[str, str]  # a heading: how its cells are set: text, short, long, number or code
 
 
 @dataclass(frozen=True)
@@ -37,16 +35,8 @@ class Html:
 
 
 @dataclass(frozen=True)
-class Column:
-    """A heading and how its cells are set: text, unbroken, running text, numbers or code."""
-
-    heading: str
-    align: Align = "text"
-
-
-@dataclass(frozen=True)
 class Cell:
-    """A cell: a muted word (`quiet`), the letter of a note below the table, or a number and its U.
+    """A cell: a muted word (`quiet`), a link, a note's letter, or a number and its U.
 
     `tail` follows the number in a box `room` digits wide: equal over a column, the decimal marks
     of values and of uncertainties stand in line.
@@ -57,6 +47,7 @@ class Cell:
     quiet: bool = False
     tail: str = ""
     room: float = 0.0
+    link: str = ""
 
     @property
     def html(self) -> str:
@@ -64,6 +55,8 @@ class Cell:
         inner = _set(self.text)
         if self.quiet:
             inner = f'<span class="quiet">{inner}</span>'
+        if self.link:
+            inner = f'<a href="{escape(self.link)}">{inner}</a>'
         note = f'<sup class="note">{escape(self.note)}</sup>' if self.note else ""
         tail = f"{NO_BREAK}{_set(self.tail)}{note}" if self.tail else ""
         if not tail:
@@ -73,7 +66,7 @@ class Cell:
         return inner
 
 
-def with_labels(text: str, labels: Mapping[str, str]) -> str:
+def with_labels(text: str, labels: Mapping[str, str] | None) -> str:
     """Return a text in which each whole name is told by its label.
 
     Examples
@@ -81,8 +74,8 @@ def with_labels(text: str, labels: Mapping[str, str]) -> str:
     >>> with_labels("brick-path since path-2, surfaces.path.x", {"brick-path": "Path", "path": "Y"})
     'Path since path-2, surfaces.path.x'
     """
-    names = "|".join(map(re.escape, labels))
-    return re.sub(rf"(?<![\w.-])({names})(?![\w-]|\.\w)", lambda m: labels[m[1]],
+    names = "|".join(map(re.escape, labels or {}))
+    return re.sub(rf"(?<![\w.-])({names})(?![\w-]|\.\w)", lambda m: label(m[1], labels),
                   text) if names else text
 
 
@@ -90,7 +83,7 @@ class Notes:
     """The notes below a table: each text once, under its letter, names told by their labels."""
 
     def __init__(self, labels: Mapping[str, str] | None = None) -> None:
-        self.labels, self.letters = labels or {}, dict[str, str]()
+        self.labels, self.letters = labels, dict[str, str]()
 
     def letter(self, *notes: str) -> str:
         """Return the letters of the notes, those of new ones the next free; "" for none."""
@@ -108,13 +101,13 @@ Row = Sequence[str | Cell]
 Group = tuple[str, Sequence[Row]]  # its heading, "" for none
 
 
-def table(caption: str, columns: Sequence[Column], rows: Sequence[Row], *, empty: str,
+def table(caption: str, columns: Columns, rows: Sequence[Row], *, empty: str,
           notes: Iterable[tuple[str, str]] = ()) -> Html:
     """Return a table whose first column heads its rows, without groups; see `grouped_table`."""
     return grouped_table(caption, columns, [("", rows)], empty=empty, notes=notes)
 
 
-def grouped_table(caption: str, columns: Sequence[Column], groups: Sequence[Group], *, empty: str,
+def grouped_table(caption: str, columns: Columns, groups: Sequence[Group], *, empty: str,
                   notes: Iterable[tuple[str, str]] = ()) -> Html:
     """Return a table whose first column heads its rows, in groups under headings of their own.
 
@@ -122,7 +115,8 @@ def grouped_table(caption: str, columns: Sequence[Column], groups: Sequence[Grou
     ----------
     caption : str
         What the table shows, with units and coverage where they hold for all of it.
-    columns : sequence of Column
+    columns : mapping of str to str
+        Heading of each column and how its cells are set, see `Columns`.
     groups : sequence of (heading, rows)
         A row is a sequence of str or Cell; a group without rows is left out.
     empty : str
@@ -133,7 +127,8 @@ def grouped_table(caption: str, columns: Sequence[Column], groups: Sequence[Grou
     filled = [(heading, rows) for heading, rows in groups if rows]
     if not filled:
         return paragraph(empty, "empty")
-    head = "".join(f'<th scope="col" class="{c.align}">{_set(c.heading)}</th>' for c in columns)
+    head = "".join(f'<th scope="col" class="{align}">{_set(heading)}</th>'
+                   for heading, align in columns.items())
     body = "".join(_group(columns, heading, rows) for heading, rows in filled)
     below = "".join(f'<li><span class="letter">{escape(letter)}</span> {_set(text)}</li>'
                     for letter, text in notes)
@@ -151,7 +146,7 @@ def paragraph(text: str, css: str = "") -> Html:
     return Html(f"<p{attribute}>{_set(text)}</p>\n", text)
 
 
-def bullets(lines: Sequence[str], *, empty: str = "", css: str = "") -> Html:
+def bullets(lines: Sequence[str], *, empty: str = "") -> Html:
     """Return escaped sentences as a list; one as a paragraph; none as the sentence `empty`.
 
     A line's beginning up to a first ": " is set strong where it is short: it names the subject.
@@ -160,25 +155,24 @@ def bullets(lines: Sequence[str], *, empty: str = "", css: str = "") -> Html:
         return paragraph(empty, "empty") if empty else Html("")
     if len(lines) == 1:
         return Html(f"<p>{_lead(lines[0])}</p>\n", lines[0])
-    attribute = f' class="{css}"' if css else ""
     items = "".join(f"<li>{_lead(line)}</li>\n" for line in lines)
-    return Html(f"<ul{attribute}>\n{items}</ul>\n", "\n".join(lines))
+    return Html(f"<ul>\n{items}</ul>\n", "\n".join(lines))
 
 
-def _group(columns: Sequence[Column], heading: str, rows: Sequence[Row]) -> str:
+def _group(columns: Columns, heading: str, rows: Sequence[Row]) -> str:
     head = (f'<tr class="group"><th scope="rowgroup" colspan="{len(columns)}">'
             f"<span>{_set(heading)}</span></th></tr>\n") if heading else ""
     body = "".join(f"<tr>{_row(columns, row)}</tr>\n" for row in rows)
     return f"<tbody>\n{head}{body}</tbody>\n"
 
 
-def _row(columns: Sequence[Column], row: Row) -> str:
+def _row(columns: Columns, row: Row) -> str:
     written = []
-    for place, (column, cell) in enumerate(zip(columns, row, strict=True)):
-        inner = (cell.html if isinstance(cell, Cell) else escape(cell) if column.align == "code"
+    for place, (align, cell) in enumerate(zip(columns.values(), row, strict=True)):
+        inner = (cell.html if isinstance(cell, Cell) else escape(cell) if align == "code"
                  else _set(cell))
         tag = 'th scope="row"' if place == 0 else "td"
-        written.append(f'<{tag} class="{column.align}">{inner}</{tag.split()[0]}>')
+        written.append(f'<{tag} class="{align}">{inner}</{tag.split()[0]}>')
     return "".join(written)
 
 

@@ -23,9 +23,9 @@ from . import sentences, standing
 from . import tables as t
 from . import wording as w
 from .markup import Html, bullets, paragraph
-from .methods import methods
 from .typeset import typeset
 
+Section = tuple[str, str, list[Html]]  # identifier, heading, markup
 TEMPLATES = Path(__file__).parent / "template"
 LEFT_OUT = {"remove_cell", "page-skip"}  # cells with one of these tags are not on the page
 HEADING = re.compile(r"<h([1-6])[^>]*>(.*?)</h\1>", re.DOTALL)
@@ -158,34 +158,30 @@ def _refuse_unfit(output: NotebookNode, place: int) -> None:
 
 def _title_block(tables: Mapping[str, pd.DataFrame],
                  facts: Mapping[str, Any]) -> list[tuple[str, list[str]]]:
-    site, labels = facts["site"], facts.get("labels")
+    site, labels, zone = facts["site"], facts["labels"], facts["time_zone"]
     where = ", ".join([site["name"], _degrees(site["latitude"], "N", "S"),
                        _degrees(site["longitude"], "E", "W"),
                        f"{w.number(site['elevation_m'], 0)} m above sea level"])
     conditions = [*facts.get("conditions", [])] or ["Not stated."]
     height = 90 - tables["passes"]["zenith_deg"].dropna()
     if len(height):
-        ends = dict.fromkeys(f"{end:.0f}°" for end in (height.min(), height.max()))
+        ends = dict.fromkeys(f"{w.number(end, 0)}°" for end in (height.min(), height.max()))
         conditions.append(f"Sun {' to '.join(ends)} above the horizon during the passes.")
-    rows = [("Date", [w.date_text(facts["date"])]), ("Site", [where]),
-            ("Crew", [", ".join(facts.get("crew") or []) or "Not stated."]),
-            ("Conditions", conditions)]
-    if facts.get("remarks"):
-        rows.append(("Notes", [*facts["remarks"]]))
+    rows = {"Date": [w.date_text(facts["date"])], "Site": [where],
+            "Crew": [", ".join(facts.get("crew") or []) or "Not stated."],
+            "Conditions": conditions, "Notes": [*facts.get("remarks", [])]}
     if facts.get("earlier"):
-        rows.append(("Compared with", [w.label(name, facts.get("labels"))
-                                       for name in facts["earlier"]]))
-        rows.append(("Control", [w.label(facts.get("control") or "", labels) or "None named."]))
-    zone = facts.get("time_zone") or site["time_zone"]
-    rows.append(("Times", [zone if zone == "UTC" else f"{zone} unless UTC is stated."]))
-    return [(term, [typeset(line) for line in lines]) for term, lines in rows]
+        rows["Compared with"] = [w.label(name, labels) for name in facts["earlier"]]
+        rows["Control"] = [w.label(facts["control"] or "", labels) or "None named."]
+    rows["Times"] = [zone if zone == "UTC" else f"{zone} unless UTC is stated."]
+    return [(term, [typeset(line) for line in lines]) for term, lines in rows.items() if lines]
 
 
-def _summary(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> list[dict[str, Any]]:
+def _summary(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> list[Section]:
     """Return the sections of the summary: identifier, heading, markup; the first has no heading."""
-    labels, surfaces = facts.get("labels"), tables["surfaces"]
+    labels, surfaces = facts["labels"], tables["surfaces"]
     beside = [*sentences.two_kinds(surfaces, labels), *sentences.value_only(surfaces, labels)]
-    sections = [
+    return [
         ("", "", [bullets(sentences.abstract(tables, facts)),
                   t.surface_overview(surfaces, labels), *(paragraph(line) for line in beside)]),
         ("differs", "What differs", [bullets(
@@ -202,10 +198,9 @@ def _summary(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> li
         ("cautions", "Cautions", [bullets(standing.cautions(surfaces, labels))]),
         ("flags", "What was not corrected or not checked", [bullets(
             sentences.flagged(tables["passes"]), empty="No pass carries a flag.")]),
+        *([("notes", "Notes on this run", [bullets([*facts["notes"]])])]
+          if facts.get("notes") else []),
     ]
-    if facts.get("notes"):
-        sections.append(("notes", "Notes on this run", [bullets([*facts["notes"]])]))
-    return [{"id": anchor, "heading": heading, "body": body} for anchor, heading, body in sections]
 
 
 def _changes(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> Html:
@@ -218,29 +213,23 @@ def _changes(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> Ht
         "No change could be judged; the reasons stand in the next section."))
 
 
-def _appendix(tables: Mapping[str, pd.DataFrame],
-              facts: Mapping[str, Any]) -> list[dict[str, Any]]:
+def _appendix(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> list[Section]:
     """Return the sections of the appendix: identifier, heading, markup."""
-    rerun = facts.get("rerun") or "Not handed over."
-    commands = [f"surveykit verify reports/{facts['campaign']}", rerun]
-    verify, again = (Html(f"<pre>{escape(command)}</pre>\n") for command in commands)
+    verify, again = (Html(f"<pre>{escape(command)}</pre>\n") for command in (
+        f"surveykit verify reports/{facts['campaign']}", facts["rerun"]))
     return [
-        {"id": "reading", "heading": "How to read the numbers",
-         "body": [bullets(standing.reading(facts))]},
-        {"id": "methods", "heading": "Methods and their sources",
-         "body": [bullets(methods(tables))]},
-        {"id": "instruments", "heading": "Instruments and calibrations",
-         "body": [t.instrument_table(facts.get("instruments", []))]},
-        {"id": "settings", "heading": "Settings",
-         "body": [t.settings_table(facts.get("settings", []))]},
-        {"id": "inputs", "heading": "Input files",
-         "body": [t.inputs_table(facts.get("inputs", []))]},
-        {"id": "versions", "heading": "Programs", "body": [paragraph(standing.programs(facts))]},
-        {"id": "rerun", "heading": "How to run it again", "body": [
+        ("reading", "How to read the numbers", [bullets(standing.reading(facts))]),
+        ("methods", "Methods and their sources", [bullets(standing.methods(tables))]),
+        ("instruments", "Instruments and calibrations",
+         [t.instrument_table(facts.get("instruments", []))]),
+        ("settings", "Settings", [t.settings_table(facts.get("settings", []))]),
+        ("inputs", "Input files", [t.inputs_table(facts.get("inputs", []))]),
+        ("versions", "Programs", [paragraph(standing.programs(facts))]),
+        ("rerun", "How to run it again", [
             paragraph("From the project’s folder, with the input files listed above. First: do "
                       "inputs, tables and page still belong together?"), verify,
             paragraph("The same page and tables again, on one machine and with the programs "
-                      "listed above byte for byte:"), again]},
+                      "listed above byte for byte:"), again]),
     ]
 
 

@@ -8,6 +8,7 @@ from typing import Any
 import pandas as pd
 
 from . import wording as w
+from .markup import with_labels
 
 Tables = Mapping[str, pd.DataFrame]
 Facts = Mapping[str, Any]
@@ -26,9 +27,9 @@ def of_surface(row: Any, labels: Labels) -> str:
             f"{w.label(row['surface'], labels)}")
 
 
-def reason_of(row: Any) -> str:
-    """Return why a row has no value, without its full stop."""
-    return row["note"].strip().rstrip(".") or "no reason was handed over"
+def reason_of(note: str, labels: Labels) -> str:
+    """Return a note without its full stop, names told by their labels."""
+    return with_labels(note, labels).strip().rstrip(".")
 
 
 def value_of(row: Any, labels: Labels) -> str:
@@ -37,27 +38,21 @@ def value_of(row: Any, labels: Labels) -> str:
     return f"{w.with_unit(text, row['unit'])} ({w.label(row['surface'], labels)})"
 
 
-def covering(facts: Facts) -> str:
-    """Return the coverage in brackets, where it is known."""
-    return f" ({w.percent(facts['coverage'])})" if facts.get("coverage") else ""
-
-
 def signed(row: Any, column: str) -> str:
     """Return a signed difference with its interval and unit."""
     return w.with_unit(w.interval(row[column], row["lower"], row["upper"],
                                   w.places(row["quantity"]), sign=True), row["unit"])
 
 
-def verbs(row: Any, column: str, against: str, facts: Facts, lead: str,
-          end: str = ".") -> dict[str, str]:
-    """Return the sentences of the four verdicts that show something, size without sign."""
+def shown(row: Any, column: str, against: str, facts: Facts) -> str:
+    """Return what a verdict shows, its size without a sign: "1.2 ± 0.3 K lower than ..."."""
     value, lower, upper = row[column], row["lower"], row["upper"]
     if value < 0:
         value, lower, upper = -value, -upper, -lower
     size = w.with_unit(w.interval(value, lower, upper, w.places(row["quantity"])), row["unit"])
+    word, _, small = row["verdict"].partition(",")
     less = f", less than the relevant {relevant(row['quantity'], facts) or 'change'}"
-    return {word: f"{lead}{size} {word.partition(',')[0]} {against}"
-                  f"{less if 'small' in word else ''}{end}" for word in SHOWN}
+    return f"{size} {word} {against}{less if small else ''}"
 
 
 def relevant(quantity: str, facts: Facts) -> str:
@@ -73,19 +68,8 @@ def margin(row: Any, facts: Facts) -> str:
     return f"±{small}" if small else "the relevant change"
 
 
-def by_at_least(quantity: str, facts: Facts) -> str:
-    """Return " by at least the relevant ...", where one was declared."""
-    limit = relevant(quantity, facts)
-    return f" by at least the relevant {limit}" if limit else ""
-
-
 def missed(row: Any, words: str = "could have missed up to ") -> str:
     """Return in brackets what could have been missed, where it is known."""
     most = row["could_have_missed"]
     size = w.with_unit(w.expanded(most, w.places(row["quantity"])), row["unit"])
     return "" if pd.isna(most) else f" ({words}{size})"
-
-
-def because(note: str) -> str:
-    """Return a note as the reason that follows a verdict."""
-    return f": {note.strip().rstrip('.')}" if note.strip() else ""

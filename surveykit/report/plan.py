@@ -8,15 +8,13 @@ from typing import Any
 import matplotlib.dates as mdates
 import numpy as np
 import pandas as pd
-import seaborn as sns
 from nbformat import NotebookNode
 
 from . import wording as w
 from .figures_passes import heights_drawn
-from .figures_records import _clock_axis
-from .markup import Cell, Column, Html, bullets, grouped_table, table
+from .markup import Cell, Html, bullets, grouped_table, table
 from .page import render
-from .style import INK, PALETTE, Drawing, panels, styled
+from .style import INK, PALETTE, Drawing, clock_axis, dress, panels, styled
 from .typeset import typeset
 
 Labels = Mapping[str, str] | None
@@ -38,18 +36,16 @@ def sun_plot(course: pd.DataFrame, windows: pd.DataFrame, time_zone: str) -> Dra
     up = course[course["zenith_deg"] < 90]
     if up.empty:
         return Drawing(None, "The sun does not rise on this day, so there is no window to draw.")
-    figure, (axis,) = panels(1, [2.3])
+    figure, (axis,) = panels([2.3])
     axis.plot(mdates.date2num(up["time_utc"]), 90 - up["zenith_deg"], color=INK, linewidth=1.4)
     for place, row in enumerate(windows.to_dict("records")):
         axis.axhline(90 - row["limit_deg"], color=PALETTE[place % 8], linewidth=1.1,
                      linestyle=("--", ":", "-.")[place % 3],
                      label=f"{row['limit_deg']:.0f}° from the zenith: {row['meaning']}")
     axis.set_ylim(0, max(95 - up["zenith_deg"].min(), 50))
-    axis.set_title("Sun height, °", fontweight="normal", fontsize=9)
-    axis.grid(axis="x")
-    sns.despine(ax=axis)
+    dress(axis, "Sun height, °", grid="x", plain=True)
     figure.legend(loc="outside upper left", ncols=1, borderaxespad=0, handlelength=2.2)
-    _clock_axis(axis, time_zone)
+    clock_axis(axis, time_zone)
     noon = up.iloc[int(up["zenith_deg"].argmin())]
     told = [f"within {row['limit_deg']:.0f}° of the zenith " + (
         f"from {row['first']} to {row['last']}" if row["hours"] else "never")
@@ -65,19 +61,19 @@ def height_plot(curves: pd.DataFrame) -> Drawing:
 
     `curves` holds `patch`, `across_m` and what `figures_passes.heights_drawn` asks for.
     """
-    return heights_drawn([(f"Patch {name}, {w.figures(block['across_m'].iloc[0], 2)} m across",
-                           block) for name, block in curves.groupby("patch", sort=False)]
-                         if len(curves) else [])
+    if curves.empty:
+        return Drawing(None, "No albedo over a patch of known size: no height to weigh.")
+    return heights_drawn((f"Patch {name}, {w.figures(block['across_m'].iloc[0])} m across", block)
+                         for name, block in curves.groupby("patch", sort=False))
 
 
 def window_table(windows: pd.DataFrame) -> Html:
     """Return one row a limit of the zenith angle with its window."""
     rows = [[row["meaning"], f"{row['limit_deg']:.0f}", row["first"], row["last"],
              w.number(row["hours"], 1)] for row in windows.to_dict("records")]
-    return table("Sun windows at the site.", [
-        Column("What it allows"), Column(f"Zenith up to,{w.NO_BREAK}°", "number"),
-        Column("From", "number"), Column("To", "number"), Column("Hours", "number")], rows,
-        empty="No limit of the sun’s height is set.")
+    return table("Sun windows at the site.", {
+        "What it allows": "text", f"Zenith up to,{w.NO_BREAK}°": "number", "From": "number",
+        "To": "number", "Hours": "number"}, rows, empty="No limit of the sun’s height is set.")
 
 
 def height_table(heights: pd.DataFrame, labels: Labels = None) -> Html:
@@ -93,11 +89,10 @@ def height_table(heights: pd.DataFrame, labels: Labels = None) -> Html:
                   w.number(row["speed_m_s"], 2)] if known else [""] * 5
         groups.setdefault(str(row["reading"]).replace("ndvi", "NDVI"), []).append(
             [row["patch"], w.label(row["surface"], labels), *values, row["note"]])
-    heads = [Column("Patch"), Column("Surface", "short"),
-             Column(f"Height,{w.NO_BREAK}cm", "number"),
-             Column(f"Footprint,{w.NO_BREAK}cm", "number"),
-             Column(f"Margin,{w.NO_BREAK}cm", "number"), Column("Lanes", "number"),
-             Column(f"Walk at most,{w.NO_BREAK}m s⁻¹", "number"), Column("Note", "long")]
+    heads = {"Patch": "text", "Surface": "short", f"Height,{w.NO_BREAK}cm": "number",
+             f"Footprint,{w.NO_BREAK}cm": "number", f"Margin,{w.NO_BREAK}cm": "number",
+             "Lanes": "number", f"Walk at most,{w.NO_BREAK}m{w.NO_BREAK}s⁻¹": "number",
+             "Note": "long"}
     return grouped_table("Best height of the head (of a narrow one the greatest, up to 100 cm), "
                          "the ground that matters to it, how far to stay from the edge, lanes and "
                          "speed.", heads, [*groups.items()],
@@ -107,16 +102,12 @@ def height_table(heights: pd.DataFrame, labels: Labels = None) -> Html:
 
 def needed_table(passes: pd.DataFrame, labels: Labels = None) -> Html:
     """Return one row a surface, grouped by quantity: the passes that the wanted U needs."""
-    groups = []
-    for (quantity, kind), block in w.families(passes):
-        unit = w.unit_text(block["unit"].iloc[0])
-        groups.append((w.quantity_text(quantity, kind) + (f", {unit}" if unit else ""), [
-            [w.label(row["surface"], labels), w.figures(row["between"], 2),
-             w.figures(row["within"], 2), w.figures(row["wanted"], 2), w.count(row["passes"]),
-             w.label(row["source"], labels)] for row in block.to_dict("records")]))
-    heads = [Column("Surface", "short"), Column("Between passes", "number"),
-             Column("Within a pass", "number"), Column("Wanted U", "number"),
-             Column("Passes", "number"), Column("Spread from", "short")]
+    groups = [(w.heading(*pair, block["unit"].iloc[0]), [
+        [w.label(row["surface"], labels), w.figures(row["between"]), w.figures(row["within"]),
+         w.figures(row["wanted"]), w.count(row["passes"]), w.label(row["source"], labels)]
+        for row in block.to_dict("records")]) for pair, block in w.families(passes)]
+    heads = {"Surface": "short", "Between passes": "number", "Within a pass": "number",
+             "Wanted U": "number", "Passes": "number", "Spread from": "short"}
     return grouped_table("Passes of a surface that make the U of repeating no wider than the "
                          "relevant change (95 %); between and within are standard deviations.",
                          heads, groups, empty="No quantity is planned.")
@@ -130,8 +121,8 @@ def order_table(visits: pd.DataFrame, labels: Labels = None) -> Html:
                                     w.number(row["starts_min"], 0)]
                                    for row in block.to_dict("records")])
               for number, block in numbered.groupby("round", sort=True)]
-    heads = [Column("Visit", "number"), Column("Patch", "short"), Column("Surface", "short"),
-             Column("Minutes from the start", "number")]
+    heads = {"Visit": "number", "Patch": "short", "Surface": "short",
+             "Minutes from the start": "number"}
     return grouped_table("Order of the visits; every other round runs backwards.", heads, groups,
                          empty="There is no patch to visit.")
 
@@ -145,7 +136,7 @@ def sheet_table(sheet: pd.DataFrame) -> Html:
     """Return the field sheet as a table to fill in by hand."""
     rows = [["" if pd.isna(row[name]) else str(row[name]) for name in SHEET]
             for row in sheet.to_dict("records")]
-    heads = [Column(text, "text" if text == "Note" else "short") for text in SHEET.values()]
+    heads = {text: "text" if text == "Note" else "short" for text in SHEET.values()}
     return table("Field sheet: times to the second, by a watch photographed beside each logger’s "
                  "clock at the start and the end.", heads, rows, empty="There is no pass to note.")
 

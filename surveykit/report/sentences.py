@@ -21,22 +21,22 @@ from .phrases import (
     Facts,
     Labels,
     Tables,
-    because,
-    by_at_least,
-    covering,
     margin,
     missed,
     of_surface,
     reason_of,
+    relevant,
+    shown,
     signed,
     value_of,
-    verbs,
     with_words,
 )
 
+WITHOUT = ("not evaluated", "not comparable")  # verdicts and statuses without a number to judge
+
 
 def abstract(tables: Tables, facts: Facts) -> list[str]:
-    """Say in a line each: what was measured, how sure, what stands out, changed, and is next."""
+    """Say in a line each: what was surveyed, how sure, what stands out, changed, and is next."""
     surfaces, passes, labels = tables["surfaces"], tables["passes"], facts.get("labels")
     names, site = surfaces["surface"].unique(), facts["site"]["name"]
     day, visited = w.date_text(facts["date"]), w.plural(len(names), "surface")
@@ -46,23 +46,26 @@ def abstract(tables: Tables, facts: Facts) -> list[str]:
         return [f"{visited} at {site} {'was' if len(names) == 1 else 'were'} visited on {day}, but "
                 "no pass could be matched with records."]
     families = [(w.inside_sentence(*pair), block) for pair, block in w.families(surfaces)]
-    lines = [f"Measured: {w.listing(what for what, _ in families)} of {visited} at {site}, in "
+    lines = [f"Surveyed: {w.listing(what for what, _ in families)} of {visited} at {site}, in "
              f"{w.plural(len(passes), 'pass', 'passes')} on {day}."]
     known = [(what, block.dropna(subset=["value"]).sort_values("value"))
              for what, block in families]
     ends = [f"{what} from {value_of(block.iloc[0], labels)} to {value_of(block.iloc[-1], labels)}"
             if len(block) > 1 else f"{what} {value_of(block.iloc[0], labels)}"
             for what, block in known if len(block)]
-    lines += [f"Found, value ± U{covering(facts)}: {'; '.join(ends)}."] if ends else []
+    if ends:
+        lines.append(f"Found, value ± U ({w.percent(facts['coverage'])}): {'; '.join(ends)}.")
     changes = tables["changes"]
     if len(changes):
         since = [f"{w.label(surface, labels)} since {w.label(earlier, labels)} (" + ", ".join(
             f"{w.inside_sentence(r['quantity'], r['kind'])} {signed(r, 'change')}"
             for r in block.to_dict("records")) + ")" for (surface, earlier), block
             in with_words(changes, "verdict", SHOWN).groupby(["surface", "earlier"], sort=False)]
-        rest = f"no {'other ' if since else ''}change is shown"
+        judged = ~changes["verdict"].isin(["", *WITHOUT])
+        rest = (f"no {'other ' if since else ''}change is shown" if judged.any() else
+                "no change could be judged")
         lines.append(f"Changed: {'; '.join([*since, rest])}.")
-    return [*lines, *(f"To do next: {advice}" for advice in advice(tables, facts)[:1])]
+    return [*lines, *(f"To do next: {text}" for text in [advice(tables, facts)] if text)]
 
 
 def two_kinds(surfaces: pd.DataFrame, labels: Labels = None) -> list[str]:
@@ -88,17 +91,19 @@ def differs(differences: pd.DataFrame, facts: Facts) -> list[str]:
     """Say, for each quantity and kind, how many pairs differ, the largest, and which do not."""
     lines = []
     for (quantity, kind), block in w.families(differences):
-        judged = block[~block["verdict"].isin(["", "not evaluated", "not comparable"])]
+        judged = block[~block["verdict"].isin(["", *WITHOUT])]
         large = judged[judged["verdict"].isin(["higher", "lower"])]
+        limit = relevant(quantity, facts)
         parts = [f"{len(large)} of {w.plural(len(judged), 'pair')} "
-                 f"{'differs' if len(large) == 1 else 'differ'}{by_at_least(quantity, facts)}"]
+                 f"{'differs' if len(large) == 1 else 'differ'}"
+                 + (f" by at least the relevant {limit}" if limit else "")]
         if len(large):
             largest = large.iloc[int(large["difference"].abs().argmax())]
-            parts[0] += f", the largest: {pair_sentence(largest, facts)[:-1]}"
+            parts[0] += f", the largest: {pair_part(largest, facts)}"
         for verdict in (*SHOWN[2:], "equivalent", "no difference shown"):
             rows = judged[judged["verdict"] == verdict].to_dict("records")
             if len(rows) <= 2:
-                parts += [pair_sentence(row, facts)[:-1] for row in rows]
+                parts += [pair_part(row, facts) for row in rows]
             else:
                 widest = max(rows, key=lambda row: row["could_have_missed"])
                 most = missed(widest) if verdict == "no difference shown" else ""
@@ -108,16 +113,14 @@ def differs(differences: pd.DataFrame, facts: Facts) -> list[str]:
     return lines
 
 
-def pair_sentence(row: Any, facts: Facts) -> str:
-    """Return the verdict on a pair as a sentence; "" where the row is not judged."""
+def pair_part(row: Any, facts: Facts) -> str:
+    """Return the verdict on a judged pair as a sentence without its full stop."""
     one, other = (w.label(row[end], facts.get("labels")) for end in ("surface", "other"))
-    return {
-        **verbs(row, "difference", f"than {other}", facts, f"{one} is "),
-        "equivalent": f"{one} and {other} are equivalent within {margin(row, facts)}.",
-        "no difference shown": f"no difference is shown between {one} and {other}{missed(row)}.",
-        "not comparable": f"{one} and {other} are not comparable{because(row['note'])}.",
-        "not evaluated": f"{one} and {other} were not evaluated{because(row['note'])}.",
-    }.get(row["verdict"], "")
+    if row["verdict"] == "equivalent":
+        return f"{one} and {other} are equivalent within {margin(row, facts)}"
+    if row["verdict"] == "no difference shown":
+        return f"no difference is shown between {one} and {other}{missed(row)}"
+    return f"{one} is {shown(row, 'difference', f'than {other}', facts)}"
 
 
 def changed(changes: pd.DataFrame, facts: Facts) -> list[str]:
@@ -127,10 +130,12 @@ def changed(changes: pd.DataFrame, facts: Facts) -> list[str]:
             ["surface", "earlier"], sort=False):
         rows = block.to_dict("records")
         grades = dict.fromkeys(row["comparability"] for row in rows if row["comparability"])
-        why = "; ".join(dict.fromkeys(part for row in rows for part in row["note"].split("; ")))
+        why = "; ".join(dict.fromkeys(part for row in rows for part in
+                                      reason_of(row["note"], labels).split("; ") if part))
         lines.append(f"{w.label(surface, labels)} since {w.label(earlier, labels)}: "
                      f"{'; '.join(change_part(row, facts) for row in rows)}."
-                     + (f" Conditions {w.listing(grades)}{because(why)}." if grades else ""))
+                     + (f" Conditions {': '.join(filter(None, [w.listing(grades), why]))}."
+                        if grades else ""))
     for verdict, word in (("no difference shown", ", with what could have been missed"),
                           ("equivalent", " within the relevant change")):
         rest = with_words(changes, "verdict", (verdict,))
@@ -144,20 +149,14 @@ def changed(changes: pd.DataFrame, facts: Facts) -> list[str]:
 
 
 def change_part(row: Any, facts: Facts) -> str:
-    """Return the verdict on a change of a surface; "" where the row is not judged."""
+    """Return what a change of a surface shows, and against what."""
     control = w.label(row["control"], facts.get("labels"))
     against = {
         "ratio to control": f"than the control, {control}, leads to expect",
         "difference in differences": f"than before, the change of {control} taken off",
     }.get(row["method"], "than before")
-    what, why = w.inside_sentence(row["quantity"], row["kind"]), because(row["note"])
-    return {
-        **verbs(row, "change", against, facts, f"{what} is ", ""),
-        "equivalent": f"{what} is equivalent within {margin(row, facts)}",
-        "no difference shown": f"no difference of {what} is shown{missed(row)}",
-        "not comparable": f"{what} is not comparable{why}",
-        "not evaluated": f"{what} was not evaluated{why}",
-    }.get(row["verdict"], "")
+    what = w.inside_sentence(row["quantity"], row["kind"])
+    return f"{what} is {shown(row, 'change', against, facts)}"
 
 
 def trending(trends: pd.DataFrame, facts: Facts) -> list[str]:
@@ -174,28 +173,38 @@ def trending(trends: pd.DataFrame, facts: Facts) -> list[str]:
 
 def not_evaluated(tables: Tables, labels: Labels = None) -> list[str]:
     """Return what has no value or no verdict, gathered by reason, surfaces first."""
-    gathered: dict[str, list[str]] = defaultdict(list)
-    without = ("not evaluated", "not comparable")
-    for row in with_words(tables["surfaces"], "status", without).to_dict("records"):
-        gathered[reason_of(row)].append(f"{of_surface(row, labels)} was not evaluated")
-    for row in with_words(tables["derived"], "status", without).to_dict("records"):
-        gathered[reason_of(row)].append(f"{w.product_text(row['product'])} of "
-                                        f"{w.label(row['surface'], labels)} was not evaluated")
-    for (_, quantity, kind, verdict), block in with_words(
-            tables["differences"], "verdict", without).groupby(
+    def rows(name: str, column: str = "verdict") -> list[Any]:
+        return with_words(tables[name], column, WITHOUT).to_dict("records")
+
+    told = [(row["note"], f"{of_surface(row, labels)} was not evaluated")
+            for row in rows("surfaces", "status")]
+    told += [(row["note"], f"{w.product_text(row['product'])} of "
+              f"{w.label(row['surface'], labels)} was not evaluated")
+             for row in rows("derived", "status")]
+    surfaces = tables["surfaces"].set_index(["surface", "quantity", "kind"])["status"]
+    for (note, *key), block in with_words(tables["passes"], "status", WITHOUT).groupby(
+            ["note", "surface", "quantity", "kind"], sort=False):
+        first, n = block.iloc[0], len(block)
+        which = f"pass {first['pass']}" if n == 1 else f"{n} passes"
+        if surfaces.get(tuple(key)) not in WITHOUT:
+            told.append((note, f"{of_surface(first, labels)} in {which} was not evaluated"))
+    for (note, _, _, verdict), block in with_words(
+            tables["differences"], "verdict", WITHOUT).groupby(
             ["note", "quantity", "kind", "verdict"], sort=False):
         first, n = block.iloc[0], len(block)
         which = (f" between {w.label(first['surface'], labels)} and "
                  f"{w.label(first['other'], labels)} was" if n == 1 else f"s of {n} pairs were")
-        gathered[reason_of(first)].append(
-            f"the {w.inside_sentence(str(quantity), str(kind))} difference{which} {verdict}")
-    for row in with_words(tables["changes"], "verdict", without).to_dict("records"):
-        verb = ("is not comparable with" if row["verdict"] == "not comparable" else
-                "was not evaluated against")
-        gathered[reason_of(row)].append(f"{of_surface(row, labels)} {verb} "
-                                        f"{w.label(row['earlier'], labels)}")
-    return [f"{w.sentence_case(reason)[:-1]}: {'; '.join(dict.fromkeys(items))}."
-            for reason, items in gathered.items()]
+        told.append((note, f"the {w.inside_sentence(first['quantity'], first['kind'])} "
+                           f"difference{which} {verdict}"))
+    verb = {"not comparable": "is not comparable with",
+            "not evaluated": "was not evaluated against"}
+    told += [(row["note"], f"{of_surface(row, labels)} {verb[row['verdict']]} "
+              f"{w.label(row['earlier'], labels)}") for row in rows("changes")]
+    gathered: dict[str, dict[str, None]] = defaultdict(dict)
+    for note, text in told:
+        gathered[reason_of(note, labels)][text] = None
+    return [f"{w.sentence_case(reason)[:-1] or 'No reason was handed over'}: {'; '.join(texts)}."
+            for reason, texts in gathered.items()]
 
 
 def value_only(surfaces: pd.DataFrame, labels: Labels = None) -> list[str]:
@@ -215,10 +224,10 @@ def flagged(passes: pd.DataFrame) -> list[str]:
     for (quantity, kind), block in w.families(passes):
         told = block["flags"].str.split("; ").explode()
         told = told[told != ""]
-        alike = told.map(lambda flag: re.sub(r"\d+(\.\d+)?", "#", flag))
+        alike = told.map(lambda flag: re.sub(r"[-+]?\d+(\.\d+)?", "#", flag))
+        counts = alike.reset_index().drop_duplicates()["flags"].value_counts(sort=False)
         parts = []
-        for key, n in alike.value_counts(sort=False).sort_values(ascending=False,
-                                                                 kind="stable").items():
+        for key, n in counts.sort_values(ascending=False, kind="stable").items():
             some = [*dict.fromkeys(told[alike == key])]
             often = "every pass" if n == len(block) else f"{n} of {len(block)} passes"
             parts.append(f"{some[0]}{' and the like' if some[1:] else ''} ({often})")

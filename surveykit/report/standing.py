@@ -8,7 +8,7 @@ from pathlib import Path
 import pandas as pd
 
 from . import wording as w
-from .phrases import Facts, Labels
+from .phrases import Facts, Labels, Tables
 
 PROSE = tomllib.loads((Path(__file__).parent / "template/prose.toml").read_text("utf-8"))
 SAFETY = tuple(PROSE["safety"])  # of the plan and of the field sheet
@@ -21,7 +21,7 @@ def cautions(surfaces: pd.DataFrame, labels: Labels = None) -> list[str]:
         return [*PROSE["cautions"]]
     top = hot.assign(end=hot["upper"].fillna(hot["value"]))
     row = top.iloc[int(top["end"].argmax())]
-    return [PROSE["hot"].format(
+    return [PROSE["touching"].format(
         what="value" if pd.isna(row["upper"]) else "upper end of an interval",
         size=w.with_unit(w.number(row["end"], 1), row["unit"]),
         surface=w.label(row["surface"], labels)), *PROSE["cautions"]]
@@ -29,9 +29,8 @@ def cautions(surfaces: pd.DataFrame, labels: Labels = None) -> list[str]:
 
 def reading(facts: Facts) -> list[str]:
     """Say how the numbers are written and made, with the published methods."""
-    coverage = w.percent(facts["coverage"]) if facts.get("coverage") else "the stated coverage"
-    return [line.format(coverage=coverage, draws=w.count(facts.get("draws") or 0),
-                        seed=facts.get("seed", "not stated")) for line in PROSE["reading"]]
+    return [line.format(coverage=w.percent(facts["coverage"]), draws=w.count(facts["draws"]),
+                        seed=facts["seed"]) for line in PROSE["reading"]]
 
 
 def programs(facts: Facts) -> str:
@@ -39,3 +38,28 @@ def programs(facts: Facts) -> str:
     versions = facts.get("versions") or {}
     named = w.listing(f"{name} {version}" for name, version in versions.items())
     return f"Computed by {named}." if versions else "No version was handed over."
+
+
+def methods(tables: Tables) -> list[str]:
+    """Return the methods of the quantities that this campaign has, with their citations."""
+    families = [pair for pair, _ in w.families(tables["surfaces"])]
+    lines = [*PROSE["shared"]]
+    for name, text in PROSE["methods"].items():
+        quantity, _, kind = name.partition(" ")
+        if any(q == quantity and kind in ("", k) for q, k in families):
+            lines.append(text)
+            if quantity == "albedo":
+                lines.append(_likeness(tables["geometry"]))
+    return [*lines, *(PROSE["compared"] if len(tables["changes"]) else ())]
+
+
+def _likeness(geometry: pd.DataFrame) -> str:
+    """Say how the albedo passes stand to ASTM E1918, only as far as the record goes."""
+    kinds = geometry.loc[geometry["role"] == "used", "note"].str.split("[:,]").str[0]
+    told = w.listing(f"{kind} ({w.plural(int(n), 'pass', 'passes')})"
+                     for kind, n in kinds.value_counts(sort=False).items())
+    return ("ASTM E1918: " + (
+        f"{told}; what deviates stands below the table of heights" if told else
+        "the patches' sizes are not on record, so nothing is said of how the passes stand to it")
+        + ". Its conditions on height, size and readings are quoted from memory; no conformity is "
+          "claimed.")

@@ -10,10 +10,12 @@ from __future__ import annotations
 import base64
 import io
 import warnings
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Sequence
 from typing import Any, Literal, NamedTuple
+from zoneinfo import ZoneInfo
 
 import matplotlib as mpl
+import matplotlib.dates as mdates
 import numpy as np
 import pandas as pd
 import seaborn as sns
@@ -78,26 +80,41 @@ def of_each(frame: pd.DataFrame, draw: Callable[[str], Drawing],
     return tuple(draw(quantity) for quantity in quantities) or (Drawing(None, empty),)
 
 
+def kinds(frame: pd.DataFrame, quantity: str) -> list[tuple[str, pd.DataFrame]]:
+    """Return kind and rows of one quantity, in the page's order."""
+    return [(kind, block) for (name, kind), block in families(frame) if name == quantity]
+
+
 styled = mpl.rc_context(STYLE)  # a decorator: draws under the house style
 
 
-def panels(n: int, heights: Iterable[float], **kwargs: Any) -> tuple[Figure, list[Axes]]:
-    """Return a figure of the text column's width with `n` stacked panels, heights in inches."""
-    tall = [*heights]
-    figure = Figure(figsize=(WIDTH_IN, sum(tall) + 0.25), dpi=DPI,
+def panels(heights: Sequence[float], **kwargs: Any) -> tuple[Figure, list[Axes]]:
+    """Return a figure of the text column's width with stacked panels, heights in inches."""
+    figure = Figure(figsize=(WIDTH_IN, sum(heights) + 0.25), dpi=DPI,
                     layout=ConstrainedLayoutEngine(h_pad=0.06))
-    axes = figure.subplots(n, 1, squeeze=False, height_ratios=tall, **kwargs)
+    axes = figure.subplots(len(heights), 1, squeeze=False, height_ratios=heights, **kwargs)
     return figure, [*axes[:, 0]]
 
 
 def dress(axis: Axes, title: str = "", label: str = "", grid: Literal["x", "y", ""] = "y",
-          **despined: bool) -> None:
-    """Give a panel its title, the label of its y axis, its grid, and no frame."""
-    axis.set_title(title)
+          *, plain: bool = False, left: bool = False) -> None:
+    """Give a panel its title (`plain`: not bold), the label of its y axis, its grid, no frame.
+
+    `left` takes off the line of the y axis too.
+    """
+    axis.set_title(title, {"fontweight": "normal", "fontsize": 9} if plain else None)
     axis.set_ylabel(label)
     if grid:
         axis.grid(axis=grid)
-    sns.despine(ax=axis, **despined)
+    sns.despine(ax=axis, left=left)
+
+
+def clock_axis(axis: Axes, time_zone: str) -> None:
+    """Make the x axis one of the time of day in a zone."""
+    zone = ZoneInfo(time_zone)
+    axis.xaxis.set_major_locator(mdates.AutoDateLocator(tz=zone, minticks=3, maxticks=7))
+    axis.xaxis.set_major_formatter(mdates.DateFormatter("%H:%M", tz=zone))
+    axis.set_xlabel(f"Time of day ({time_zone})", color=MUTED)
 
 
 def shorten(text: str, width: int = 22, most: int = 2) -> str:

@@ -13,7 +13,7 @@ import pandas as pd
 from IPython.display import display
 
 from . import wording as w
-from .markup import Column, Html, bullets, table
+from .markup import Html, bullets, table
 from .tables_records import (  # noqa: F401 - imported to be called from here
     check_table,
     clock_table,
@@ -57,9 +57,8 @@ def show(item: Html | pd.DataFrame | Sequence[str], caption: str = "",
 def frame_table(frame: pd.DataFrame, caption: str, columns: Sequence[str] | None = None) -> Html:
     """Return any frame as a table, numbers to four significant digits, underscores as spaces."""
     shown = frame if columns is None else frame[[*columns]]
-    numeric = {name: pd.api.types.is_numeric_dtype(shown[name]) for name in shown}
-    heads = [Column(_heading(str(name)),
-                    "number" if numeric[name] else "text") for name in shown]
+    heads = {_heading(str(name)): "number" if pd.api.types.is_numeric_dtype(kind) else "text"
+             for name, kind in shown.dtypes.items()}
     rows = [[_any_text(value) for value in row]
             for row in shown.itertuples(index=False, name=None)]
     return table(caption, heads, rows, empty=f"{caption.rstrip('.')}: no rows.")

@@ -11,7 +11,7 @@ from typing import Any
 import pandas as pd
 
 from . import wording as w
-from .markup import Column, Html, grouped_table, table
+from .markup import Html, grouped_table, table
 
 SEVERITIES = ("refuse", "exclude", "flag", "note")
 Rows = Sequence[Mapping[str, Any]]
@@ -30,8 +30,8 @@ def check_table(checks: pd.DataFrame, labels: Mapping[str, str] | None = None) -
                      w.sentence_case(row["message"].removeprefix(f"{row['records']} records: ")
                                      .removeprefix("1 record: ")),
                      row["source"]])
-    heads = [Column("Check"), Column("Severity"), Column("Where"), Column("Records", "number"),
-             Column("Finding", "long"), Column("Source of the limit")]
+    heads = {"Check": "text", "Severity": "text", "Where": "text", "Records": "number",
+             "Finding": "long", "Source of the limit": "text"}
     return table("Checks that found something, the most severe first.", heads, rows,
                  empty="No check found anything to report.")
 
@@ -49,8 +49,7 @@ def ledger_table(ledger: pd.DataFrame) -> Html:
             [row["disposition"], row["reason"], w.count(row["records"]),
              w.percent(row["records"] / total if total else float("nan"))]
             for row in block.to_dict("records")]))
-    heads = [Column("Disposition"), Column("Reason"), Column("Records", "number"),
-             Column("Share", "number")]
+    heads = {"Disposition": "text", "Reason": "text", "Records": "number", "Share": "number"}
     return grouped_table("What became of each logged record: one disposition, one reason.", heads,
                          groups, empty="No record was logged.")
 
@@ -60,9 +59,9 @@ def clock_table(clocks: pd.DataFrame) -> Html:
     rows = [[row["logger"], row["method"], w.number(row["offset_s"], 1, sign=True),
              w.expanded(row["u_s"], 1), w.number(row["drift_ppm"], 1, sign=True), row["status"],
              row["note"]] for row in clocks.to_dict("records")]
-    heads = [Column("Logger"), Column("Method"), Column(f"Offset added,{w.NO_BREAK}s", "number"),
-             Column(f"u,{w.NO_BREAK}s", "number"), Column(f"Drift,{w.NO_BREAK}10⁻⁶", "number"),
-             Column("Status"), Column("Note", "long")]
+    heads = {"Logger": "text", "Method": "text", f"Offset added,{w.NO_BREAK}s": "number",
+             f"u,{w.NO_BREAK}s": "number", f"Drift,{w.NO_BREAK}10⁻⁶": "number",
+             "Status": "text", "Note": "long"}
     return table("Clocks: seconds added to each logger’s time to reach UTC, with the standard "
                  "uncertainty u.", heads, rows, empty="No logger was read.")
 
@@ -77,8 +76,8 @@ def settings_table(settings: Rows) -> Html:
              w.unit_text(row["unit"]), row["origin"],
              "" if row["source"] == row["origin"] else row["source"]]
             for key, value in parts.items())
-    heads = [Column("Setting", "code"), Column("Value", "number"), Column("Unit", "short"),
-             Column("Origin", "short"), Column("Source", "long")]
+    heads = {"Setting": "code", "Value": "number", "Unit": "short", "Origin": "short",
+             "Source": "long"}
     return grouped_table("Every setting of the method; “yours” marks one changed in the parameter "
                          "file.", heads, [*groups.items()], empty="No setting was handed over.")
 
@@ -90,13 +89,12 @@ def instrument_table(instruments: Rows) -> Html:
         serial = f", serial {row['serial']}" if row["serial"] else ""
         groups.setdefault(f"{row['logger']}{serial}", []).append(
             [row["column"], str(row["quantity"]).replace("_", " "), w.unit_text(row["unit"]),
-             w.plain(row["gain"]), _relative(row["u_gain"]), w.plain(row["offset"]),
-             w.plain(row["u_offset"]), w.plain(row["calibration"]),
-             w.plain(row["calibration_date"]), row["status"]])
-    heads = [Column("Column", "code"), Column("Quantity"), Column("Logged in", "short"),
-             Column("Gain", "number"), Column("u of gain", "number"), Column("Offset", "number"),
-             Column("u of offset", "number"), Column("Calibration"), Column("Dated", "short"),
-             Column("Status")]
+             w.plain(row["gain"]), f"{100 * row['u_gain']:.3g}{w.NO_BREAK}%",
+             w.plain(row["offset"]), w.plain(row["u_offset"]), row["calibration"],
+             row["calibration_date"], row["status"]])
+    heads = {"Column": "code", "Quantity": "text", "Logged in": "short", "Gain": "number",
+             "u of gain": "number", "Offset": "number", "u of offset": "number",
+             "Calibration": "text", "Dated": "short", "Status": "text"}
     return grouped_table("Instruments and calibrations: value = offset + gain × reading; u of gain "
                          "is relative.", heads, [*groups.items()],
                          empty="No instrument was handed over.")
@@ -105,11 +103,5 @@ def instrument_table(instruments: Rows) -> Html:
 def inputs_table(inputs: Rows) -> Html:
     """Return one row an input file with its size and SHA-256."""
     rows = [[row["path"], w.count(row["bytes"]), row["sha256"]] for row in inputs]
-    heads = [Column("File", "code"), Column("Bytes", "number"), Column("SHA-256", "code")]
+    heads = {"File": "code", "Bytes": "number", "SHA-256": "code"}
     return table("Files that went in.", heads, rows, empty="No input file was handed over.")
-
-
-def _relative(u_gain: Any) -> str:
-    if isinstance(u_gain, int | float):
-        return f"{100 * u_gain:.3g}{w.NO_BREAK}%"
-    return w.plain(u_gain)

@@ -8,6 +8,7 @@ more than a fifth, both ends stand in place of U.
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Callable, Mapping
 from dataclasses import replace
 from typing import Any
@@ -15,17 +16,19 @@ from typing import Any
 import pandas as pd
 
 from . import wording as w
-from .markup import Cell, Column, Group, Html, Notes, Row, grouped_table, paragraph, table
+from .markup import Cell, Columns, Group, Html, Notes, Row, grouped_table, paragraph, table
 
 Labels = Mapping[str, str] | None
 NONE = Cell("none", quiet=True)
+N = w.NO_BREAK
+PRODUCT_PLACES = {"K": 1, "degC": 1, "1": 3}  # decimals of a derived product by its unit, else 0
 
 
 def surface_overview(surfaces: pd.DataFrame, labels: Labels = None) -> Html:
     """Return one row a surface, one column a quantity and kind, notes by letter below."""
     families = w.families(surfaces)
     written = {pair: _values(block) for pair, block in families}
-    notes, rows = Notes(), []
+    notes, rows = Notes(labels), []
     for name in dict.fromkeys(surfaces["surface"]):
         cells: list[str | Cell] = [w.label(name, labels)]
         for pair, block in families:
@@ -34,15 +37,13 @@ def surface_overview(surfaces: pd.DataFrame, labels: Labels = None) -> Html:
                 cells.append(Cell("not surveyed", quiet=True))
                 continue
             row = found.iloc[0]
-            gone = row["status"] == "not evaluated"
-            cell = Cell("not evaluated", quiet=True) if gone else written[pair][found.index[0]]
+            cell = _unless_gone(row, written[pair][found.index[0]])
             cells.append(replace(cell, note=notes.letter(_note(row))))
         rows.append(cells)
-    units = {pair: w.unit_text(block["unit"].iloc[0]) for pair, block in families}
-    heads = [Column("Surface"), *(Column(w.quantity_text(*pair) + (f", {u}" if u else ""), "number")
-                                  for pair, u in units.items())]
     caption = f"Mean of each surface ± U ({_coverage(surfaces)}), at its passes’ own times."
-    return table(caption, heads, rows, empty="No surface was surveyed.", notes=notes.listed())
+    return table(caption, {"Surface": "text"} | _numbers(
+        *(w.heading(*pair, block["unit"].iloc[0]) for pair, block in families)), rows,
+        empty="No surface was surveyed.", notes=notes.listed())
 
 
 def surface_table(surfaces: pd.DataFrame, labels: Labels = None) -> Html:
@@ -54,9 +55,9 @@ def surface_table(surfaces: pd.DataFrame, labels: Labels = None) -> Html:
                 w.count(one["n_patches"]), w.count(one["n_passes"]), w.count(one["n_records"]),
                 Cell(one["status"], note=notes.letter(_note(one)))]
 
-    heads = [_surface_column(surfaces, labels), _with_u("Value"), Column("k", "number"),
-             Column("Degrees of freedom", "number"), Column("Patches", "number"),
-             Column("Passes", "number"), Column("Records", "number"), Column("Status", "short")]
+    heads = {"Surface": _width(surfaces, labels)} | _numbers(
+        _with_u("Value"), "k", "Degrees of freedom", "Patches", "Passes", "Records") | {
+        "Status": "short"}
     return grouped_table(f"Surfaces: mean ± U, {_coverage(surfaces)}, U = k times the standard "
                          "uncertainty.", heads, _groups(surfaces, row), notes=notes.listed(),
                          empty="No surface was surveyed.")
@@ -67,7 +68,7 @@ def pass_table(passes: pd.DataFrame, labels: Labels = None, time_zone: str = "UT
     notes, groups = Notes(labels), []
     for (quantity, kind), block in w.families(passes.sort_values(["start_utc", "pass"])):
         shared = _shared_flags(block)
-        groups.append((_heading(quantity, kind, block)
+        groups.append((w.heading(quantity, kind, block["unit"].iloc[0])
                        + (f"; every pass: {', '.join(shared)}" if shared else ""), [
             [row["pass"], w.label(row["surface"], labels),
              f"{row['start_utc'].tz_convert(time_zone):%H:%M:%S}",
@@ -78,11 +79,9 @@ def pass_table(passes: pd.DataFrame, labels: Labels = None, time_zone: str = "UT
              Cell(row["status"], note=notes.letter(*row["note"].split("; "), *(
                  flag for flag in row["flags"].split("; ") if flag not in shared)))]
             for row in block.to_dict("records")]))
-    heads = [Column("Pass", "short"), _surface_column(passes, labels), Column("From", "number"),
-             Column("To", "number"), Column("Value", "number"),
-             Column(f"u{w.NO_BREAK}within", "number"), Column("Records", "number"),
-             Column("Effective", "number"),
-             Column(f"Zenith,{w.NO_BREAK}°", "number"), Column("Status", "short")]
+    heads = {"Pass": "short", "Surface": _width(passes, labels)} | _numbers(
+        "From", "To", "Value", f"u{N}within", "Records", "Effective", f"Zenith,{N}°") | {
+        "Status": "short"}
     return grouped_table(
         f"Passes in order of time ({time_zone}), after trimming. u within: standard uncertainty of "
         "the pass mean from its own records; effective: records reduced for their correlation; "
@@ -102,9 +101,9 @@ def difference_table(differences: pd.DataFrame, labels: Labels = None) -> Html:
                 Cell(one["verdict"], note=notes.letter(*one["note"].split("; "))),
                 w.probability(one["p_adjusted"]), w.expanded(one["could_have_missed"], places)]
 
-    heads = [Column("Pair"), _with_u("Difference"),
-             *([Column("All pairs at once", "number")] if every else []), Column("Verdict"),
-             Column(f"p,{w.NO_BREAK}adjusted", "number"), Column("Could have missed", "number")]
+    heads = {"Pair": "text"} | _numbers(
+        _with_u("Difference"), *(["All pairs at once"] if every else [])) | {
+        "Verdict": "text"} | _numbers(f"p,{N}adjusted", "Could have missed")
     at_once = ("; all pairs at once: intervals that hold together with this coverage"
                if every else "")
     return grouped_table(
@@ -124,7 +123,7 @@ def change_table(changes: pd.DataFrame, labels: Labels = None) -> Html:
             for name, some in block.groupby("surface", sort=False):
                 judged = some[some["verdict"] != ""]
                 lead = judged.iloc[0] if len(judged) else some.iloc[0]
-                rest = [f"{one['method']} {values[index].text}{w.NO_BREAK}{values[index].tail}"
+                rest = [f"{one['method']} {values[index].text}{N}{values[index].tail}".strip()
                         for index, one in some.iterrows() if index != lead.name]
                 gone = lead["verdict"] in ("not evaluated", "not comparable")
                 why = notes.letter(*lead["note"].split("; "))
@@ -134,11 +133,12 @@ def change_table(changes: pd.DataFrame, labels: Labels = None) -> Html:
                              w.expanded(lead["could_have_missed"], w.places(quantity)),
                              Cell(lead["comparability"], note="" if gone else why), lead["method"]
                              + (f"; in place of it: {', '.join(rest)}" if rest else "")])
-            groups.append((f"{_heading(quantity, kind, block)}, since {w.label(earlier, labels)}",
-                           rows))
-    heads = [_surface_column(changes, labels), _with_u("Change"), Column("Verdict"),
-             Column("Could have missed", "number"), Column("Conditions", "short"),
-             Column("Method, and what others give", "long")]
+            groups.append((f"{w.heading(quantity, kind, block['unit'].iloc[0])}, since "
+                           f"{w.label(earlier, labels)}", rows))
+    heads = {
+        "Surface": _width(changes, labels), _with_u("Change"): "number", "Verdict": "text",
+        "Could have missed": "number", "Conditions": "short",
+        "Method, and what others give": "long"}
     controls = [w.label(name, labels) for name in dict.fromkeys(changes["control"]) if name]
     against = f"; control: {w.listing(controls)}" if controls else ""
     return grouped_table(f"Changes since earlier campaigns, {_coverage(changes)}{against}.", heads,
@@ -158,8 +158,8 @@ def trend_table(trends: pd.DataFrame, labels: Labels = None) -> Html:
                 w.probability(one["p"]),
                 Cell(shown or "not judged", quiet=not shown, note=notes.letter(*why))]
 
-    heads = [_surface_column(trends, labels), _with_u("Slope"), Column("Method"),
-             Column("Dates", "number"), Column("p", "number"), Column("Verdict")]
+    heads = {"Surface": _width(trends, labels), _with_u("Slope"): "number",
+                      "Method": "text", "Dates": "number", "p": "number", "Verdict": "text"}
     return grouped_table(
         f"Lines through the dates, {_coverage(trends)}, weather taken off as for changes; a trend "
         "is established where the line that knows each date’s uncertainty and the one that takes "
@@ -168,21 +168,26 @@ def trend_table(trends: pd.DataFrame, labels: Labels = None) -> Html:
 
 
 def derived_table(derived: pd.DataFrame, labels: Labels = None) -> Html:
-    """Return a table a product: one row a surface, one column a form, value ± U with its notes."""
+    """Return a table a product: one row a surface, one column a form, value ± U with its notes.
+
+    A caution has the hottest records in place of a mean, and an upper bound in place of U.
+    """
     made = []
     for (product, unit), block in derived.groupby(["product", "unit"], sort=False):
-        values = _values(block, digits=3 if unit == "1" and product != "sri" else 0)
+        hottest = product == "caution"
+        about = ("95th percentile of the records, and what it may reach with U" if hottest else
+                 f"value ± U, {_coverage(block)}")
+        values = _values(block, digits=0 if product == "sri" else PRODUCT_PLACES.get(str(unit), 0))
         forms, notes = [*dict.fromkeys(block["form"])], Notes(labels)
         rows = {name: dict.fromkeys(forms, Cell("", quiet=True)) for name in block["surface"]}
         for index, row in block.iterrows():
-            gone = row["status"] == "not evaluated"
-            cell = Cell(row["status"], quiet=True) if gone else values[index]
-            rows[row["surface"]][row["form"]] = replace(cell, note=notes.letter(row["note"]))
-        written, name = w.unit_text(str(unit)), w.product_text(str(product))
+            note = re.sub(r" [\d.]+ degC \(", " (", row["note"]) if hottest else row["note"]
+            rows[row["surface"]][row["form"]] = replace(
+                _unless_gone(row, values[index]), note=notes.letter(note))
         made.append(table(
-            f"{w.sentence_case(name)[:-1]}{f', {written}' if written else ''}: value ± U, "
-            f"{_coverage(block)}.", [_surface_column(block, labels), *(
-                Column(form[:1].upper() + form[1:] or "Value", "number") for form in forms)],
+            f"{w.sentence_case(w.heading(w.product_text(str(product)), '', str(unit)))[:-1]}: "
+            f"{about}.", {"Surface": _width(block, labels)} | _numbers(
+                *(form[:1].upper() + form[1:] or "Value" for form in forms)),
             [[w.label(surface, labels), *cells.values()] for surface, cells in rows.items()],
             notes=notes.listed(), empty=""))
     return Html("".join(one.html for one in made), "\n".join(one.text for one in made)) if made \
@@ -193,22 +198,20 @@ def derived_table(derived: pd.DataFrame, labels: Labels = None) -> Html:
 def geometry_table(geometry: pd.DataFrame, labels: Labels = None) -> Html:
     """Return one row a patch: the height used and the best one, with what each would cost."""
     notes, rows = Notes(labels), list[Row]()
-    for (surface, patch), block in geometry.groupby(["surface", "patch"], sort=False):
-        ends = {}
-        for role in ("used", "best"):
-            some = block[block["role"] == role]
-            ends[role] = [w.number(100 * float(some["height_m"].mean()), 0),
-                          w.percent(float(some["effect"].mean()))]
-        used = block[block["role"] == "used"]
-        rows.append([str(patch), w.label(surface, labels), *ends["used"],
-                     w.percent(float(used["foreign"].mean())), *ends["best"],
+    order = [*dict.fromkeys(geometry["surface"])]
+    for (surface, patch), block in geometry.sort_values(
+            "surface", key=lambda names: names.map(order.index), kind="stable").groupby(
+            ["surface", "patch"], sort=False):
+        used, best = (block[block["role"] == role] for role in ("used", "best"))
+        ends = [[w.number(100 * float(some["height_m"].mean()), 0),
+                 w.percent(float(some["effect"].mean()))] for some in (used, best)]
+        rows.append([str(patch), w.label(surface, labels), *ends[0],
+                     w.percent(float(used["foreign"].mean())), *ends[1],
                      Cell(used["note"].iloc[0].split(":")[0].split(",")[0] if len(used) else "",
                           note=notes.letter(*dict.fromkeys(used["note"])))])
-    heads = [Column("Patch", "short"), Column("Surface", "short"),
-             Column(f"Height,{w.NO_BREAK}cm", "number"), Column("Takes", "number"),
-             Column("View beyond the patch", "number"),
-             Column(f"Best height,{w.NO_BREAK}cm", "number"), Column("Would take", "number"),
-             Column("ASTM E1918", "long")]
+    heads = {"Patch": "short", "Surface": "short"} | _numbers(
+        f"Height,{N}cm", "Takes", "View beyond the patch", f"Best height,{N}cm", "Would take") | {
+        "ASTM E1918": "long"}
     return table("Height of the albedo head over each patch, mean of its passes: what shade and "
                  "foreign ground take from albedo before correction, at the height used and at the "
                  "best one.", heads, rows, notes=notes.listed(),
@@ -219,20 +222,26 @@ def _groups(frame: pd.DataFrame, row: Callable[[Any, Cell], Row],
             column: str = "value") -> list[Group]:
     """One group a quantity and kind, a row of `frame` each, with its value ± U written."""
     groups: list[Group] = []
-    for (quantity, kind), block in w.families(frame):
+    for pair, block in w.families(frame):
         values = _values(block, column, sign=column != "value")
-        groups.append((_heading(quantity, kind, block),
+        groups.append((w.heading(*pair, block["unit"].iloc[0]),
                        [row(one, values[index]) for index, one in block.iterrows()]))
     return groups
 
 
 def _values(block: pd.DataFrame, column: str = "value", *, sign: bool = False,
             digits: int | None = None) -> dict[Any, Cell]:
-    """Write a block's values ± U, what follows the value given the same room in every row."""
-    texts = {index: w.interval(
-        row[column], row["lower"], row["upper"],
-        w.places(row["quantity"]) if digits is None else digits,
-        sign=sign).partition(w.NO_BREAK) for index, row in block.iterrows()}
+    """Write a block's values ± U, what follows the value given the same room in every row.
+
+    A value with an upper bound alone stands as "value to bound".
+    """
+    texts = {}
+    for index, row in block.iterrows():
+        places = w.places(row["quantity"]) if digits is None else digits
+        text = w.interval(row[column], row["lower"], row["upper"], places, sign=sign)
+        if math.isnan(row["lower"]) and not math.isnan(row["upper"]):
+            text += f"{N}to {w.number(row['upper'], places)}"
+        texts[index] = text.partition(N)
     room = max((_room(tail) for _, _, tail in texts.values()), default=0.0)
     return {index: Cell(value, tail=tail, room=room) if value else NONE
             for index, (value, _, tail) in texts.items()}
@@ -240,7 +249,12 @@ def _values(block: pd.DataFrame, column: str = "value", *, sign: bool = False,
 
 def _room(tail: str) -> float:
     """About how many digits wide a tail is: spaces, marks and points are half as wide."""
-    return sum(0.5 if c in f"{w.NO_BREAK}.()" else 1.0 for c in tail) + 0.8 if tail else 0.0
+    return sum(0.5 if c in f"{N}.()t" else 1.0 for c in tail) + 0.8 if tail else 0.0
+
+
+def _unless_gone(row: Any, value: Cell) -> Cell:
+    gone = row["status"] == "not evaluated"
+    return Cell(row["status"], quiet=True) if gone else value
 
 
 def _note(row: pd.Series) -> str:
@@ -255,7 +269,7 @@ def _note(row: pd.Series) -> str:
 
 
 def _coverage(frame: pd.DataFrame) -> str:
-    levels = [f"{100 * level:g}{w.NO_BREAK}%" for level in sorted({*frame["coverage"].dropna()})]
+    levels = [f"{100 * level:g}{N}%" for level in sorted({*frame["coverage"].dropna()})]
     return "coverage " + w.listing(levels or ["not stated"])
 
 
@@ -267,20 +281,18 @@ def _shared_flags(passes: pd.DataFrame) -> list[str]:
 
 
 def _dof(dof: float) -> str:
-    return f">{w.NO_BREAK}1000" if 1000 < dof < math.inf else w.number(dof, 0)
+    return f">{N}1000" if 1000 < dof < math.inf else w.number(dof, 0)
 
 
-def _surface_column(frame: pd.DataFrame, labels: Labels) -> Column:
+def _numbers(*headings: str) -> Columns:
+    return dict.fromkeys(headings, "number")
+
+
+def _width(frame: pd.DataFrame, labels: Labels) -> str:
     """Surfaces stay on one line unless a label is long."""
     longest = max((len(w.label(name, labels)) for name in frame["surface"]), default=0)
-    return Column("Surface", "short" if longest <= 24 else "text")
+    return "short" if longest <= 24 else "text"
 
 
-def _with_u(name: str) -> Column:
-    return Column(f"{name} ± U".replace(" ", w.NO_BREAK), "number")
-
-
-def _heading(quantity: str, kind: str, block: pd.DataFrame) -> str:
-    """A group's heading with its unit."""
-    written = w.unit_text(block["unit"].iloc[0])
-    return w.quantity_text(quantity, kind) + (f", {written}" if written else "")
+def _with_u(name: str) -> str:
+    return f"{name} ± U".replace(" ", N)

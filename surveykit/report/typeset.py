@@ -13,11 +13,12 @@ _RULES = (
     (re.compile(r"\bdegC\b"), "°C"),
     (re.compile(r"(?<![\w.,)\]\-/])-(?=\d)"), MINUS),                # -20, never 2025-06-11
 )
-_UNIT = re.compile(r"(?<=\S )(m|s|K|sr|kg|min)(-[1-4])(?![\w-])")  # W m-2, m s-1
+_UNIT = re.compile(r"(?<=\S) (m|s|K|sr|kg|min)(-[1-4])(?![\w-])")  # W m-2, m s-1
+_AFTER_NUMBER = re.compile(r"(?<=\d) (?=(?:°C|K|W|mm|cm|m|s|min|h|hPa)(?![\w°-]))")
 
 
 def typeset(text: str) -> str:
-    """Return the text with apostrophes, minus signs, per cent and units as printed.
+    """Return the text with apostrophes, minus signs, per cent and units as printed, unbroken.
 
     Examples
     --------
@@ -28,4 +29,5 @@ def typeset(text: str) -> str:
     """
     for pattern, put in _RULES:
         text = pattern.sub(put, text)
-    return _UNIT.sub(lambda m: m[1] + m[2].translate(_SUPERSCRIPT), text)
+    text = _UNIT.sub(lambda m: NO_BREAK + m[1] + m[2].translate(_SUPERSCRIPT), text)
+    return _AFTER_NUMBER.sub(NO_BREAK, text)

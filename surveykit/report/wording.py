@@ -13,17 +13,15 @@ from typing import Any
 
 import pandas as pd
 
-from .typeset import typeset
+from .typeset import MINUS, NO_BREAK, typeset
 
-MINUS, NO_BREAK, NARROW_SPACE, DASH = "\u2212", "\u00a0", "\u202f", "\u2013"
+NARROW_SPACE, DASH = "\u202f", "\u2013"
 PLACES = {"temperature": 1, "albedo": 3, "ndvi": 3}
 UNITS = {"degC": "°C", "1": "", "K a-1": "K a⁻¹", "a-1": "a⁻¹",
          "W m-2": "W m⁻²", "m s-1": "m s⁻¹", "uV": "µV", "deg": "°",
          "J m-2 K-1 s-1/2": "J m⁻² K⁻¹ s⁻¹ᐟ²", "K-1": "K⁻¹", "kg m-3": "kg m⁻³"}
 QUANTITIES = {"temperature": "Temperature", "albedo": "Albedo", "ndvi": "NDVI"}
 ASYMMETRY = 0.20  # of the interval's two arms, above which both ends are printed (GUM supplement 1)
-MONTHS = ("January February March April May June July August September October November "
-          "December").split()
 
 
 def unit_text(unit: str) -> str:
@@ -47,6 +45,18 @@ def quantity_text(quantity: str, kind: str = "") -> str:
     """
     name = QUANTITIES.get(quantity, quantity)
     return f"{name}, {kind}" if kind else name
+
+
+def heading(quantity: str, kind: str, unit: str) -> str:
+    """Return the quantity and its kind with the unit.
+
+    Examples
+    --------
+    >>> heading("temperature", "contact", "degC"), heading("ndvi", "", "1")
+    ('Temperature, contact, °C', 'NDVI')
+    """
+    written = unit_text(unit)
+    return quantity_text(quantity, kind) + (f", {written}" if written else "")
 
 
 def inside_sentence(quantity: str, kind: str = "") -> str:
@@ -222,7 +232,7 @@ def date_text(iso: str) -> str:
         day = dt.date.fromisoformat(iso)
     except ValueError:
         return iso
-    return f"{day.day} {MONTHS[day.month - 1]} {day.year}"
+    return f"{day.day} {day:%B %Y}"
 
 
 def listing(items: Iterable[str], last: str = "and") -> str:

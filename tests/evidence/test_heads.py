@@ -5,10 +5,20 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from one_estimate import DAY_SCOPE, HEADS, albedo, changed, inputs, made, stand_off
+from one_estimate import (
+    DAY_SCOPE,
+    HEADS,
+    UNTOUCHED,
+    albedo,
+    changed,
+    changed_column,
+    inputs,
+    made,
+    stand_off,
+)
 from pass_values import albedo as albedo_inputs
 from pass_values import bright, channel_of, evaluate, parameters, pooled, sensitivities
-from small_survey import DAY, NDVI, lines, readings
+from small_survey import CERTAIN, DAY, NDVI, lines, readings
 
 from surveykit.core import Input, InputError
 from surveykit.evidence.conditions import Day
@@ -82,6 +92,28 @@ def test_a_ramp_and_a_skew(skew_s, percent):
         ("down_per_s", -20 / 700, 0.0), ("clock_skew_s", 0.0, 1e-3))]
     a_second = sensitivities("albedo", these)["clock_skew_s"] / 1e-3 / 0.2
     assert 100 * skew_s * abs(a_second) == pytest.approx(percent, abs=0.05 if skew_s < 5 else 0.5)
+
+
+@pytest.mark.parametrize("tau", [10.0, 0.0])
+def test_a_slow_head_lags_a_ramp(tmp_path, tau):
+    """A cloud ramp of 10 W m-2 s-1 leaves a head of 10 s behind by 100 W m-2 (computed); with the
+    ground head fast, an albedo of .2 at some 800 W m-2 reads .2 x 800 / 700 before it is made up
+    for."""
+    light = 800.0 + 10.0 * (np.arange(160) - 80.0)  # of the middle, and of all at once
+    kit = changed_column("pair", "sky", time_constant_s=tau)
+    one = albedo(tmp_path, kit=kit, logs={"pair": lines(
+        "pair", sky=light - 10.0 * tau, ground=0.2 * light)}, settings=CERTAIN | UNTOUCHED | {
+            "passes": {"sheet_u_s": 0.0, "settle_time_constants": 1.0}})
+    assert one.evaluated, one.note
+    seen = inputs(one)["down"].value
+    if tau:
+        assert inputs(one)["lag_s"].value * inputs(one)["down_per_s"].value * seen == \
+            pytest.approx(100.0, rel=1e-3)
+        assert one.value_raw == pytest.approx(0.2 * (seen + 100) / seen, rel=0.01)
+        assert dict(one.steps)["lag of the heads"] == pytest.approx(0.2, rel=0.01)
+    else:
+        assert "lag of the heads" not in dict(one.steps)
+    assert one.value == pytest.approx(0.2, rel=0.01)
 
 
 def ramped(root, red=0.0, nir=0.0, clock_u_s=0.5):

@@ -9,7 +9,18 @@ import numpy as np
 import pytest
 from one_estimate import HEADS, WEATHER, changed, changed_column, inputs, stand_off
 from pass_values import sensitivities
-from small_survey import ALBEDO, CERTAIN, CONTACT, KIT, NDVI, lines, readings, row, small
+from small_survey import (
+    ALBEDO,
+    CERTAIN,
+    CONTACT,
+    KIT,
+    LEVELS,
+    NDVI,
+    lines,
+    readings,
+    row,
+    small,
+)
 
 from surveykit.intake.params.settings import Settings
 
@@ -64,6 +75,19 @@ def turned(root, settings):
     return one
 
 
+def slow_sky(root, settings, *, logger, column, cells):
+    """Light that grows by .2 % a second, the sky head 3 s behind the ground head."""
+    at = np.arange(160) - 80.0
+    names = ("pair",) if logger == "pair" else HEADS
+    logs = {name: lines(name, **{c: readings(c if c in LEVELS else f"{name}.{c}", 160, 1)
+                                 * (1 + 0.002 * (at - 3.0 * (name == logger and c == column)))
+                                 for c in KIT[name]["columns"]}) for name in names}
+    kit = changed_column(logger, column, time_constant_s=3.0)
+    rows = [row(**cells | {"start": "12:00:20", "stop": "12:02:20"})]
+    (one,) = small(root, rows, logs, kit=kit, settings=settings).estimates()
+    return one
+
+
 def cooled(root, settings):
     target = 47 + 0.02 * (readings("target", 160, 1) - 47)
     for start in (12, 60, 108):
@@ -100,6 +124,12 @@ CASES = {
         "correct_emissivity_setting_left"),
     "albedo.correct_darks": (
         lambda root, s: light(root, ALBEDO, s), "dark readings", "correct_darks_left"),
+    "albedo.correct_lag": (
+        lambda root, s: slow_sky(root, s, logger="pair", column="sky", cells=ALBEDO),
+        "lag of the heads", "correct_lag_left"),
+    "ndvi.correct_lag": (
+        lambda root, s: slow_sky(root, s, logger="rednir-sky", column="red", cells=NDVI),
+        "lag of the heads", "correct_lag_left"),
     "albedo.correct_gain_ratio": (turned, "gain ratio", "up_gain_error"),
     "albedo.correct_surroundings": (
         lambda root, s: light(root, ALBEDO, s), "surroundings", "contamination_error"),

@@ -85,6 +85,20 @@ def test_the_package_names_units_hashes_and_cf_names(folder: Path) -> None:
     assert fields["quantity"]["standard_names"]["albedo"] == "surface_albedo"
 
 
+def test_each_number_is_described_as_what_it_is(folder: Path) -> None:
+    """The edges of a histogram are no interval; an input's u has the input's own unit."""
+    package = json.loads((folder / "datapackage.json").read_text("utf-8"))
+    told = {(resource["name"], field["name"]): field for resource in package["resources"]
+            for field in resource["schema"]["fields"]}
+    assert told["surfaces", "lower"]["description"] == "lower end of the interval at `coverage`"
+    assert told["histograms", "lower"]["description"].startswith("lower edge of the readings")
+    assert told["budget", "u_input"]["unit"] == "of the input"
+    assert told["budget", "contribution"]["unit"] == "as the column unit says"
+    assert [told["dwells", name]["unit"] for name in ("value", "u")] == ["degC", "K"]
+    with pytest.raises(ValueError, match="unknown"):
+        write_tables({"unknown": pd.DataFrame()}, folder, sample.facts())
+
+
 def test_twice_gives_the_same_bytes(tmp_path: Path) -> None:
     first = write_tables(sample.tables(), tmp_path / "a", sample.facts())
     second = write_tables(sample.tables(), tmp_path / "b", sample.facts())
@@ -95,4 +109,4 @@ def test_twice_gives_the_same_bytes(tmp_path: Path) -> None:
 def test_a_table_off_its_contract_is_refused(tmp_path: Path) -> None:
     broken = sample.tables()["clocks"].drop(columns="u_s")
     with pytest.raises(ValueError, match="u_s"):
-        write_tables({"clocks": broken}, tmp_path)
+        write_tables({"clocks": broken}, tmp_path, sample.facts())

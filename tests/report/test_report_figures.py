@@ -22,7 +22,7 @@ ALL = {
     "budget": lambda t, lab: figures.budget_plot(t["budget"], lab),
     "ledger": lambda t, lab: (figures.ledger_plot(t["ledger"]),),
     "ranks": lambda t, lab: figures.rank_plots(t["ranks"], lab),
-    "heights": lambda t, lab: (figures.height_plot(t["geometry"], lab),),
+    "heights": lambda t, lab: figures.height_plot(t["geometry"], lab),
     "day": lambda t, lab: (figures.day_timeline(
         t["passes"], sample.sky(), sample.weather(), "Europe/Lisbon", lab),),
 }
@@ -67,6 +67,18 @@ def test_hostile_labels_draw_without_a_warning_and_the_same_twice(name: str) -> 
     one, two = ALL[name](T, labels), ALL[name](T, labels)
     for first, second in zip(one, two, strict=True):
         assert style.png(figure_of(first)) == style.png(figure_of(second))
+
+
+@pytest.mark.parametrize("name", ALL)
+def test_no_legend_is_cut_off_beside_long_labels(name: str) -> None:
+    labels = {key: "Court before the pale coating" for key in LABELS}
+    for drawing in ALL[name](T, labels):
+        figure = figure_of(drawing)
+        style.png(figure)  # lays it out
+        for legend in [*figure.legends, *filter(None, (a.get_legend() for a in figure.axes))]:
+            box = legend.get_window_extent()
+            assert box.x0 >= -0.5
+            assert box.x1 <= figure.bbox.width + 0.5
 
 
 def test_intervals_are_drawn_where_the_table_says() -> None:

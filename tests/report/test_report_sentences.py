@@ -23,18 +23,15 @@ ROW = {
     "comparability": "partly matched", "note": "wind not stated",
 }
 PAIRS = {
-    "higher": "Coated court is 7.9 ± 1.6 K higher than Worn asphalt.",
-    "lower": "Coated court is 7.9 ± 1.6 K lower than Worn asphalt.",
+    "higher": "Coated court is 7.9 ± 1.6 K higher than Worn asphalt",
+    "lower": "Coated court is 7.9 ± 1.6 K lower than Worn asphalt",
     "higher, small": "Coated court is 7.9 ± 1.6 K higher than Worn asphalt, less than the "
-                     "relevant 1.0 K.",
+                     "relevant 1.0 K",
     "lower, small": "Coated court is 7.9 ± 1.6 K lower than Worn asphalt, less than the "
-                    "relevant 1.0 K.",
-    "equivalent": "Coated court and Worn asphalt are equivalent within ±1.0 K.",
+                    "relevant 1.0 K",
+    "equivalent": "Coated court and Worn asphalt are equivalent within ±1.0 K",
     "no difference shown": "no difference is shown between Coated court and Worn asphalt (could "
-                           "have missed up to 2.2 K).",
-    "not comparable": "Coated court and Worn asphalt are not comparable: wind not stated.",
-    "not evaluated": "Coated court and Worn asphalt were not evaluated: wind not stated.",
-    "": "",
+                           "have missed up to 2.2 K)",
 }
 SINCE = "12 June 2025"
 WHAT, CONTROL = "temperature (contact)", "than the control, Worn asphalt, leads to expect"
@@ -43,11 +40,6 @@ CHANGES = {
     "lower": f"{WHAT} is 7.9 ± 1.6 K lower {CONTROL}",
     "higher, small": f"{WHAT} is 7.9 ± 1.6 K higher {CONTROL}, less than the relevant 1.0 K",
     "lower, small": f"{WHAT} is 7.9 ± 1.6 K lower {CONTROL}, less than the relevant 1.0 K",
-    "equivalent": f"{WHAT} is equivalent within ±1.0 K",
-    "no difference shown": f"no difference of {WHAT} is shown (could have missed up to 2.2 K)",
-    "not comparable": f"{WHAT} is not comparable: wind not stated",
-    "not evaluated": f"{WHAT} was not evaluated: wind not stated",
-    "": "",
 }
 
 
@@ -58,7 +50,7 @@ def plain(text: str) -> str:
 @pytest.mark.parametrize("verdict", PAIRS)
 def test_each_verdict_on_a_pair_is_a_sentence(verdict: str) -> None:
     row = {**ROW, "verdict": verdict, "difference": -7.94}
-    assert plain(sentences.pair_sentence(row, FACTS)) == PAIRS[verdict]
+    assert plain(sentences.pair_part(row, FACTS)) == PAIRS[verdict]
 
 
 @pytest.mark.parametrize("verdict", CHANGES)
@@ -77,16 +69,16 @@ def test_the_method_decides_what_a_change_is_measured_against() -> None:
 def test_a_missing_relevant_change_leaves_a_whole_sentence() -> None:
     row = {**ROW, "verdict": "equivalent"}
     facts = {**FACTS, "relevant_change": {}}
-    assert sentences.pair_sentence(row, facts) == (
-        "Coated court and Worn asphalt are equivalent within the relevant change.")
+    assert sentences.pair_part(row, facts) == (
+        "Coated court and Worn asphalt are equivalent within the relevant change")
 
 
 def test_the_abstract_says_in_a_line_each_what_a_reader_asks_first() -> None:
     lines = [plain(line) for line in sentences.abstract(sample.tables(), FACTS)]
     assert [line.partition(":")[0] for line in lines] == [
-        "Measured", "Found, value ± U (95 %)", "Changed", "To do next"]
+        "Surveyed", "Found, value ± U (95 %)", "Changed", "To do next"]
     assert lines[0] == (
-        "Measured: temperature (contact), temperature (stand-off), albedo (clear) and NDVI of "
+        "Surveyed: temperature (contact), temperature (stand-off), albedo (clear) and NDVI of "
         "5 surfaces at Mill Yard, in 44 passes on 24 July 2025.")
     assert ("temperature (contact) from 47.9 ± 2.2 °C (Pale concrete slabs) to 58.3 ± 1.2 °C "
             "(Worn asphalt)") in lines[1]
@@ -145,6 +137,42 @@ def test_many_pairs_without_a_difference_are_counted() -> None:
         "difference shown (could have missed up to 4.7 K)."]
 
 
+def test_nothing_is_called_unchanged_where_nothing_could_be_judged() -> None:
+    tables = sample.tables()
+    changes = tables["changes"].assign(verdict="not comparable")
+    lines = sentences.abstract({**tables, "changes": changes}, FACTS)
+    assert "Changed: no change could be judged." in lines
+
+
+def test_without_any_value_the_abstract_points_to_the_reasons() -> None:
+    tables = sample.tables()
+    gone = {**tables, "surfaces": tables["surfaces"].assign(
+        value=math.nan, lower=math.nan, upper=math.nan, status="not evaluated")}
+    assert sentences.abstract(gone, FACTS)[-1] == (
+        "To do next: see below what could not be evaluated, and why.")
+
+
+def test_reasons_tell_names_by_their_labels() -> None:
+    tables = sample.tables()
+    note = f"coated-court: the sky differs: clear now, overcast on {sample.EARLIER}"
+    told = "Coated court: the sky differs: clear now, overcast on 12 June 2025"
+    rows = tables["changes"].iloc[[0]]
+    barred = rows.assign(verdict="not comparable", note=note)
+    lines = sentences.not_evaluated({**sample.empty_tables(), "changes": barred}, FACTS["labels"])
+    assert lines == [f"{told}: temperature (contact) of Coated court is not comparable with "
+                     "12 June 2025."]
+    shown = sentences.changed(rows.assign(verdict="lower", note=note), FACTS)
+    assert shown[0].endswith(f"Conditions partly matched: {told}.")
+
+
+def test_flags_are_counted_by_passes_and_alike_ones_told_once() -> None:
+    passes = sample.tables()["passes"].iloc[:3].assign(quantity="ndvi", kind="", flags=[
+        "edge disagrees (stop +18 s); edge disagrees (stop -3 s)", "edge disagrees (stop -7 s)",
+        "no swap"])
+    assert sentences.flagged(passes) == [
+        "NDVI: edge disagrees (stop +18 s) and the like (2 of 3 passes); no swap (1 of 3 passes)."]
+
+
 def test_not_evaluated_is_gathered_by_reason() -> None:
     lines = sentences.not_evaluated(sample.tables(), FACTS["labels"])
     assert lines[0] == (
@@ -153,34 +181,6 @@ def test_not_evaluated_is_gathered_by_reason() -> None:
         "Lawn was not evaluated against 12 June 2025.")
     assert any(line.startswith("The control was 5.2 K above the air") and
                "is not comparable with 12 June 2025" in line for line in lines)
-
-
-def narrowed(narrower: list[float]) -> list[str]:
-    tables = sample.tables()
-    budget = tables["budget"].iloc[:4].copy()
-    budget["surface"] = ["pale-slabs", "worn-asphalt", "pale-slabs", "worn-asphalt"]
-    budget["source"], budget["share"] = ["emissivity", "emissivity", "b", "b"], [0.2, 0.8, 0.9, 0.2]
-    budget["narrower"] = narrower
-    surfaces = tables["surfaces"].assign(needed=[math.inf, 12.0, 6.0] + [math.nan] * 13)
-    return [plain(line) for line in sentences.narrowing(
-        {**tables, "budget": budget, "surfaces": surfaces}, FACTS)]
-
-
-def test_narrowing_names_the_source_whose_halving_gains_most_and_what_it_takes() -> None:
-    # hand arithmetic: halving gains 0.1 + 0.5 by the emissivity, 0.3 + 0.1 by b: the first, of
-    # which the asphalt gains most, from 1.22 to 0.72; shares 0.2 and 0.8, mean 50 %
-    assert narrowed([0.1, 0.5, 0.3, 0.1]) == [
-        "Temperature, contact: halving “emissivity” (50 % of the variance on average) would narrow "
-        "U most, that of Worn asphalt from 1.2 to 0.7 K. Next: a surer emissivity, from a sample "
-        "or a reference thermometer on the spot. For U within ±1.0 K: Coated court 12 patches (2 "
-        "read) and Pale concrete slabs 6 passes (2 made). No number of passes brings U of Worn "
-        "asphalt within ±1.0 K: what they share is wider."]
-
-
-def test_narrowing_falls_back_on_shares_where_no_interval_is_known() -> None:
-    # shares of b 0.9 and 0.2, mean 0.55, beat the emissivity's 0.50
-    assert narrowed([math.nan] * 4)[0].startswith(
-        "Temperature, contact: “b” weighs most, 55 % of the known variance.")
 
 
 def test_cautions_defer_and_lead_with_the_hottest_upper_end() -> None:

@@ -81,11 +81,10 @@ def test_overview_shows_value_and_u_and_says_why_not() -> None:
     assert rows["Worn asphalt"] == ["58.3 ± 1.2", "57.6 ± 1.7", "0.102 ± 0.007", "0.031 ± 0.010"]
     assert rows["Lawn"][0] == "not evaluatedc"  # the note's letter is set raised
     assert rows["Planting bed"][:2] == ["not surveyed", "36.5e"]
-    notes = [li.get_text() for li in soup(
+    notes = [li.get_text().replace(NO_BREAK, " ") for li in soup(
         BUILDERS["overview"](sample.tables(), sample.facts())).find_all("li")]
     assert "c No contact dwell settled for 3 s." in notes
-    assert "e One pass; no interval; standard uncertainty at least 0.4 K." in [
-        note.replace(NO_BREAK, " ") for note in notes]
+    assert "e One pass; no interval; standard uncertainty at least 0.4 K." in notes
 
 
 def test_interval_with_unequal_arms_prints_both_ends() -> None:
@@ -147,7 +146,7 @@ def test_changes_say_why_not_and_what_could_have_been_missed() -> None:
     assert rows[2] == ["Coated court", "−7.9 ± 1.6", "lower", "2.3", "partly matched",
                        "ratio to control; in place of it: difference in differences −8.3 ± 1.6, "
                        "raw −2.1 ± 1.9"]
-    notes = [li.get_text() for li in soup(
+    notes = [li.get_text().replace(NO_BREAK, " ") for li in soup(
         BUILDERS["changes"](sample.tables(), sample.facts())).find_all("li")]
     assert notes[:2] == ["a Wind not stated on 2025-06-12.", "b No contact dwell settled for 3 s."]
 
@@ -172,10 +171,45 @@ def test_trends_and_products_read_as_the_tables_say() -> None:
                     ["Surface", "Value"], ["Lawn", "not evaluateda"]]
 
 
+def test_products_in_kelvin_follow_the_page_rule() -> None:
+    base = sample.tables()["derived"].iloc[[0]]
+    excess = base.assign(product="surface_minus_air", unit="K", value=20.56, lower=19.44,
+                         upper=21.68)
+    assert cells(t.derived_table(excess, sample.LABELS))[1] == ["Lawn", "20.6 ± 1.1"]
+
+
+def test_a_caution_shows_its_bound_and_says_the_same_only_once() -> None:
+    base = sample.tables()["derived"].iloc[[0]].assign(product="caution", unit="degC",
+                                                       lower=float("nan"))
+    note = ("caution: upper bound {} degC (95th percentile of the records, plus U) exceeds the "
+            "40 degC entered (a threshold), consult local codes and the safety officer")
+    rows = pd.concat([
+        base.assign(form="contact", value=44.96, upper=46.04, note=note.format("46.0")),
+        base.assign(form="stand-off", value=44.2, upper=45.4, note=note.format("45.4"))])
+    html = t.derived_table(rows.reset_index(drop=True), sample.LABELS)
+    page = soup(html)
+    assert page.caption.get_text() == (
+        "Caution, °C: 95th percentile of the records, and what it may reach with U.")
+    assert cells(html)[1] == ["Lawn", "45.0 to 46.0a", "44.2 to 45.4a"]
+    assert [li.get_text().replace(NO_BREAK, " ") for li in page.find_all("li")] == [
+        "a Caution: upper bound (95th percentile of the records, plus U) exceeds the 40 °C entered "
+        "(a threshold), consult local codes and the safety officer."]
+
+
+def test_notes_of_the_overview_tell_names_by_their_labels() -> None:
+    frame = sample.tables()["surfaces"].iloc[[2]].assign(note="see lawn on mill-yard-2025-06-12")
+    page = soup(t.surface_overview(frame, sample.facts()["labels"]))
+    assert page.li.get_text() == "a See Lawn on 12 June 2025."
+
+
 def test_heights_used_stand_beside_the_best_ones() -> None:
     rows = cells(BUILDERS["heights"](sample.tables(), sample.facts()))
     # hand arithmetic as in the sample: 0.03165 at 50 cm, 0.01125 at 10 cm, foreign 0.25 / 4
     assert rows[1] == ["W1", "Worn asphalt", "50", "3 %", "6 %", "10", "1 %", "E1918-likea"]
+    first, other = (sample.tables()["geometry"].query(f"surface == '{name}'")
+                    for name in ("worn-asphalt", "lawn"))
+    mixed = pd.concat([first, other, first.assign(patch="W2", **{"pass": "W2-albedo-1"})])
+    assert [row[0] for row in cells(t.geometry_table(mixed))[1:]] == ["W1", "W2", "L1"]
 
 
 def test_inputs_carry_the_whole_hash() -> None:

@@ -12,6 +12,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from surveykit.report import wording as w
+from surveykit.report.typeset import typeset
 
 NAN = float("nan")
 
@@ -50,6 +51,14 @@ def test_a_printed_interval_keeps_its_form(value: float, half: float, decimals: 
     assert "-" not in text
     assert not re.match(r"−0\.0+ ", text)
     assert not re.search(r"± 0\.0+$", text)
+
+
+def test_a_number_keeps_its_unit_on_the_line() -> None:
+    gap = w.NO_BREAK
+    assert typeset("air 21 degC, light 686 to 810 W m-2, wind 2.7 m s-1, u 2 s") == (
+        f"air 21{gap}°C, light 686 to 810{gap}W{gap}m⁻², wind 2.7{gap}m{gap}s⁻¹, u 2{gap}s")
+    assert typeset("5 surfaces, 14 min-max pairs, 3 K-types") == (
+        "5 surfaces, 14 min-max pairs, 3 K-types")
 
 
 def test_counts_units_dates() -> None:
