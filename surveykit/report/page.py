@@ -218,7 +218,7 @@ def _appendix(tables: Mapping[str, pd.DataFrame], facts: Mapping[str, Any]) -> l
     verify, again = (Html(f"<pre>{escape(command)}</pre>\n") for command in (
         f"surveykit verify reports/{facts['campaign']}", facts["rerun"]))
     return [
-        ("reading", "How to read the numbers", [bullets(standing.reading(facts))]),
+        ("reading", "How to read the numbers", [bullets(standing.reading(facts, tables))]),
         ("methods", "Methods and their sources", [bullets(standing.methods(tables))]),
         ("instruments", "Instruments and calibrations",
          [t.instrument_table(facts.get("instruments", []))]),

@@ -27,10 +27,18 @@ def cautions(surfaces: pd.DataFrame, labels: Labels = None) -> list[str]:
         surface=w.label(row["surface"], labels)), *PROSE["cautions"]]
 
 
-def reading(facts: Facts) -> list[str]:
+def reading(facts: Facts, tables: Tables) -> list[str]:
     """Say how the numbers are written and made, with the published methods."""
     return [line.format(coverage=w.percent(facts["coverage"]), draws=w.count(facts["draws"]),
-                        seed=facts["seed"]) for line in PROSE["reading"]]
+                        seed=facts["seed"], ends=_ends(tables)) for line in PROSE["reading"]]
+
+
+def _ends(tables: Tables) -> str:
+    """Say how well so many draws tell the ends of the intervals: the worst of them."""
+    shares = pd.concat([2 * frame["end_error"] / (frame["upper"] - frame["lower"]) for frame in (
+        tables[name] for name in ("surfaces", "differences", "changes"))]).dropna()
+    return (f" So many draws leave the ends of the intervals a standard error of at most "
+            f"{w.percent(float(shares.max()))} of U." if len(shares) else "")
 
 
 def programs(facts: Facts) -> str:

@@ -194,7 +194,7 @@ def test_cautions_defer_and_lead_with_the_hottest_upper_end() -> None:
 def test_no_sentence_claims_more_than_was_measured() -> None:
     tables = sample.tables()
     lines = [*sentences.abstract(tables, FACTS), *sentences.changed(tables["changes"], FACTS),
-             *sentences.differs(tables["differences"], FACTS), *standing.reading(FACTS),
+             *sentences.differs(tables["differences"], FACTS), *standing.reading(FACTS, tables),
              *sentences.not_evaluated(tables), *sentences.narrowing(tables, FACTS),
              *standing.cautions(tables["surfaces"]), *sentences.two_kinds(tables["surfaces"]),
              *sentences.value_only(tables["surfaces"])]
@@ -216,3 +216,20 @@ def test_nothing_at_all_is_said_in_words() -> None:
     bare = sentences.abstract(sample.bare_tables(), FACTS)
     assert bare == ["1 surface at Mill Yard was visited on 24 July 2025, but no pass could be "
                     "matched with records."]
+
+
+def test_the_draws_own_error_is_told_of_the_worst_interval():
+    """Hand arithmetic: .03 of a half-width of 1.2 is 2.5 %, .002 and .01 of others are less."""
+    made = {name: frame.copy() for name, frame in sample.tables().items()}
+    for name in ("surfaces", "differences", "changes"):
+        made[name]["end_error"] = 0.0
+    made["changes"].loc[0, ["lower", "upper", "end_error"]] = -0.2, 2.2, 0.03
+    made["surfaces"].loc[0, ["lower", "upper", "end_error"]] = 10.0, 14.0, 0.01
+    assert "a standard error of at most 2 % of U." in told(made)
+    bare = {name: frame.iloc[:0] for name, frame in made.items()}
+    assert "standard error" not in told(bare)
+
+
+def told(tables):
+    return " ".join(standing.reading(FACTS, tables)).replace("\N{NO-BREAK SPACE}", " ").replace(
+        "\N{NARROW NO-BREAK SPACE}", " ")
