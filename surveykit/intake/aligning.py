@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from collections.abc import Callable
 from dataclasses import dataclass
 from typing import TypeVar
@@ -86,7 +87,7 @@ def align(parameters: Parameters, logs: dict[str, Records], faults: list[str],
 
 def _sheet(parameters: Parameters, doubtful: frozenset[str]) -> Sheet:
     campaign = parameters.campaign
-    if not parameters.sheet_path.is_file():
+    if not os.path.isfile(parameters.sheet_path):  # also where the name is too long for a file's
         where = parameters.relative(parameters.path)
         raise InputError(f"{where}: field_sheet: no file {campaign.field_sheet!r} in "
                          f"{campaign.data_folder}; write the name of the field sheet")

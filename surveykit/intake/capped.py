@@ -3,8 +3,10 @@
 from __future__ import annotations
 
 from surveykit.intake.fieldsheet import Sheet
+from surveykit.intake.records import NS
 
-NS = 1_000_000_000
+PRODUCTS = {"brightness": "temperature", "longwave": "temperature", "shortwave": "albedo",
+            "red": "ndvi", "nir": "ndvi"}
 
 
 def windows(sheet: Sheet, kind: str, logger: str, quantity: str, *,
@@ -15,7 +17,7 @@ def windows(sheet: Sheet, kind: str, logger: str, quantity: str, *,
     left lies within the row whatever the watch said; rows of which nothing is left are kept, with
     a stop not after their start.
     """
-    product = {"shortwave": "albedo", "red": "ndvi", "nir": "ndvi"}.get(quantity.split("_")[0], "")
+    product = PRODUCTS.get(quantity.split("_")[0], "")
     rows = [e for e in sheet.entries if e.entry == kind
             and e.instrument in ("", logger) and e.quantity in ("", product)]
     edges = [round(e.edge_u_s * NS) if certain else 0 for e in rows]

@@ -60,7 +60,7 @@ def read_table(text: bytes, fields: int, texts_at: Sequence[int], numbers_at: Se
     for at in texts_at:  # a text and a missing one give a missing one
         part = frame[at] if iso or len(texts_at) == 1 else frame[at].str.strip()
         times = part if at == texts_at[0] else times + " " + part
-    return times, {at: _numbers(frame[at], layout) for at in numbers_at}
+    return times, {at: numbers_of(frame[at], layout) for at in numbers_at}
 
 
 def missing_codes(layout: Layout) -> tuple[list[str], FloatArray]:
@@ -80,7 +80,8 @@ def missing_codes(layout: Layout) -> tuple[list[str], FloatArray]:
     return list(dict.fromkeys(texts)), np.array(numbers, dtype=np.float64)
 
 
-def _numbers(column: pd.Series, layout: Layout) -> Numbers:
+def numbers_of(column: pd.Series, layout: Layout) -> Numbers:
+    """Return what a column of numbers, or of texts, holds; each different text is read once."""
     texts, codes = missing_codes(layout)
     if column.dtype == np.float64:
         values = column.to_numpy()
@@ -89,11 +90,6 @@ def _numbers(column: pd.Series, layout: Layout) -> Numbers:
         for code in codes:
             missing |= values == code
         return Numbers(np.where(missing, np.nan, values) if missing.any() else values, unreadable)
-    return _from_text(column, texts, layout)
-
-
-def _from_text(column: pd.Series, texts: list[str], layout: Layout) -> Numbers:
-    """Read a column that holds other text than numbers; each different cell once."""
     code, different = pd.factorize(column.astype(object).where(column.notna(), ""))
     cells = pd.Series(different, dtype=object).str.strip()
     if layout.decimal != ".":
@@ -102,7 +98,7 @@ def _from_text(column: pd.Series, texts: list[str], layout: Layout) -> Numbers:
     text = "\n".join(cells.where(good, "")) + "\n"
     again = pd.read_csv(io.StringIO(text), header=None, names=["value"], dtype=float, sep="\t",
                         skip_blank_lines=False, keep_default_na=False, na_values=[""])
-    read = _numbers(again["value"], layout)
+    read = numbers_of(again["value"], layout)
     unreadable = read.unreadable | ~(good | cells.isin(texts).to_numpy())
     return Numbers(read.values[code], unreadable[code])  # noqa: PD011 - not a table
 

@@ -7,8 +7,8 @@ from collections.abc import Sequence
 import numpy as np
 
 from surveykit.core import FloatArray, IntArray
-from surveykit.intake.records import NO_TIME_NS
-from surveykit.intake.times import END_NS, FIRST_NS, NO_OFFSET, NS, Offsets
+from surveykit.intake.records import NO_TIME_NS, NS
+from surveykit.intake.times import END_NS, FIRST_NS, NO_OFFSET, Offsets
 
 US = 1_000_000
 FIRST_YEAR, LAST_YEAR = 1950, 2199

@@ -17,6 +17,7 @@ from surveykit.intake.params.instruments import Layout
 
 BLOCK_BYTES = 1 << 21  # fits a processor's cache; measured best of 1 to 8 MB
 MIN_PREAMBLE = 4  # a shorter line of the preamble may as well be a record
+HUGE = 100_000  # bytes of a line; a cell of more is no CSV to Python's reader
 _BOM = b"\xef\xbb\xbf"
 
 Data = bytes | mmap.mmap
@@ -229,12 +230,12 @@ def _utf8(text: bytes, encoding: str) -> bytes:
 
 
 def line_text(data: Data, header: Header, number: int, encoding: str) -> str:
-    """Return one line after the header as text, for a message."""
+    """Return one line after the header as text, for a message; its beginning if it is huge."""
     start = header.start
     for _ in range(number - header.first):
         start = data.find(b"\n", start) + 1
-    end = data.find(b"\n", start)
-    return data[start:end if end >= 0 else len(data)].decode(encoding, "replace").strip("\r")
+    text = data[start:start + HUGE].partition(b"\n")[0]
+    return text.decode(encoding, "replace").strip("\r")
 
 
 def sample_rows(data: Data, header: Header, layout: Layout, lines: int) -> list[list[str]]:

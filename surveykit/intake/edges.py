@@ -12,13 +12,12 @@ from surveykit.core import IntArray
 from surveykit.intake.clocks import Clock
 from surveykit.intake.clocks.signals import readings
 from surveykit.intake.params import Channel, Parameters
-from surveykit.intake.passes import Pass, clock_text
+from surveykit.intake.passes import Pass
 from surveykit.intake.placements import find_dwells
-from surveykit.intake.records import Records
+from surveykit.intake.records import NS, Records, clock_text
 from surveykit.intake.sheet_words import Entry
 from surveykit.statistics.alignment import change_point
 
-NS = 1_000_000_000
 LOOK_S = 60.0  # outside an edge and inside, at most
 LEAST_SIDE_S = 3.0
 GROUND = ("brightness_temperature", "shortwave_up", "nir_up", "longwave_up")
@@ -43,15 +42,12 @@ def look(passes: Sequence[Pass], records: Mapping[str, Records], entries: Sequen
         for name in this.loggers:
             served.setdefault(name, []).append(this)
     for this in passes:
-        gap = "" if this.refusal else _gap(this, records, sheet_path)
-        if gap or this.refusal:
-            out.append(replace(this, refusal=this.refusal or gap))
-            continue
+        this = replace(this, refusal=this.refusal or _gap(this, records, sheet_path))
         channel = next((this.channels[q] for q in GROUND if q in this.channels), None)
-        if channel is None:
-            out.append(this)
-            continue
-        if this.kind == "contact":
+        notes: tuple[str, ...] = ()
+        if channel is None or this.refusal:
+            pass
+        elif this.kind == "contact":
             notes = _placements(this, channel, records[channel.logger], parameters)
         else:
             notes = _edges(this, channel, served[channel.logger], records[channel.logger], covers,
@@ -88,7 +84,7 @@ def _edges(this: Pass, channel: Channel, others: Sequence[Pass], log: Records, c
         part = np.arange(*np.searchsorted(log.time_ns[:log.n_timed], [low, high]))
         time_ns = log.time_ns[part][:, None]
         part = part[~((time_ns >= covers[:, 0]) & (time_ns <= covers[:, 1])).any(axis=1)]
-        time_s, values = readings(log, channel, settings, part, edge)
+        time_s, values = readings(log, channel, settings, edge, part)
         side = max(3, int(np.ceil(LEAST_SIDE_S / log.interval_s))) if log.interval_s > 0 else 3
         found = change_point(values, min_side=side, min_contrast=settings.passes.edge_contrast)
         if found is None:
@@ -113,7 +109,7 @@ def _placements(this: Pass, channel: Channel, log: Records,
 
     def count(start_ns: int, stop_ns: int, share: float) -> int:
         part = np.arange(*np.searchsorted(log.time_ns[:log.n_timed], [start_ns, stop_ns]))
-        time_s, values = readings(log, channel, settings, part, this.start_ns)
+        time_s, values = readings(log, channel, settings, this.start_ns, part)
         return len(find_dwells(time_s, values, settle_s=0.0,
                                min_s=share * settings.temperature.dwell_min_s,
                                max_rate_k_s=settings.temperature.dwell_max_rate_k_s))

@@ -7,7 +7,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from datetime import date
 from pathlib import Path
-from typing import Any
+from typing import Any, TypeVar
 
 from surveykit.core import InputError
 from surveykit.intake.params import Parameters
@@ -24,8 +24,6 @@ from surveykit.intake.sheet_words import (
     weather_reading,
 )
 
-__all__ = ["Entry", "Sheet", "read_sheet"]
-
 NS = 1_000_000_000
 NEEDED = {
     "pass": ("surface", "patch", "quantity", "start", "stop"),
@@ -41,18 +39,21 @@ NEEDED = {
     "lid": ("surface", "patch", "instrument", "start", "stop", "reading"),
 }
 MAX_LABEL, MAX_NOTE = 120, 2000
+T = TypeVar("T")
 
 
 @dataclass(frozen=True)
 class Sheet:
     """The field sheet: path under the project folder, SHA-256, entries in order of their start.
 
-    `notices` are sentences worth reading that are no faults.
+    `services` holds by row the channels that serve a pass; `notices` are sentences worth reading
+    that are no faults.
     """
 
     path: str
     sha256: str
     entries: tuple[Entry, ...]
+    services: dict[int, Service]
     notices: tuple[str, ...]
 
 
@@ -88,12 +89,12 @@ def read_sheet(path: Path, parameters: Parameters,
     except OSError as error:
         raise InputError(f"{where}: the field sheet cannot be read ({error.strerror}); "
                          "check field_sheet and data_folder") from None
-    table = read_rows(data, where)
-    faults, entries = list(table.faults), []
+    rows, notices, faults = read_rows(data, where)
+    entries: list[Entry] = []
     services: dict[int, Service] = {}
     times: dict[int, dict[str, SheetTime]] = {}
     offered = offers(parameters)
-    for row, cells in table.rows:
+    for row, cells in rows:
         reader = _Row(row, cells, parameters, offered, doubtful)
         entry = reader.entry()
         times[row] = reader.times
@@ -102,9 +103,10 @@ def read_sheet(path: Path, parameters: Parameters,
             entries.append(entry)
             if reader.service is not None:
                 services[row] = reader.service
-    day, notices = day_faults(table.rows, times, parameters.campaign)
-    day = [] if doubtful & {"date", "site"} else day
-    faults += [f"{where} {fault}" for fault in day]
+    of_day, undated = day_faults(rows, times, parameters.campaign)
+    notices += [f"{where}: {notice}" for notice in undated]
+    if not doubtful & {"date", "site"}:
+        faults += [f"{where} {fault}" for fault in of_day]
     if not faults and not any(entry.entry == "pass" for entry in entries):
         faults.append(f"{where}: the field sheet holds no pass; write one row for each")
     found = [*patch_faults(entries), *swap_faults(entries),
@@ -113,8 +115,7 @@ def read_sheet(path: Path, parameters: Parameters,
     if faults:
         raise InputError(*faults)
     entries.sort(key=lambda entry: (entry.start_ns, entry.row))
-    return Sheet(where, hashlib.sha256(data).hexdigest(), tuple(entries),
-                 (*table.notices, *(f"{where}: {notice}" for notice in notices)))
+    return Sheet(where, hashlib.sha256(data).hexdigest(), tuple(entries), services, tuple(notices))
 
 
 class _Row:
@@ -158,10 +159,9 @@ class _Row:
     def _time(self, name: str) -> None:
         campaign = self.parameters.campaign
         day = date.fromisoformat(campaign.date)
-        try:
-            time = read_time(self.cells[name], day, campaign.site.time_zone)
-        except ValueError as error:
-            self.faults.append(f"{name} {error}")
+        time = self._read(
+            lambda: read_time(self.cells[name], day, campaign.site.time_zone), None, f"{name} ")
+        if time is None:
             return
         self.times[name] = time
         # A full time may lie a day off: a station's UTC day reaches into the site's neighbour days.
@@ -205,14 +205,12 @@ class _Row:
         if "loggers" in self.doubtful:
             return texts
         if kind == "pass" and texts["quantity"] and known:
-            self._collect(lambda: self._serve(texts))
+            self.service = self._read(lambda: serve(
+                self.offered, texts["quantity"], texts["mode"], texts["instrument"]), None)
         elif texts["instrument"] and texts["instrument"] not in self.offered:
             self.faults.append(f"instrument {texts['instrument']!r} is none of the campaign's "
                                f"loggers; write one of {', '.join(self.offered)}")
         return texts
-
-    def _serve(self, texts: dict[str, Any]) -> None:
-        self.service = serve(self.offered, texts["quantity"], texts["mode"], texts["instrument"])
 
     def _values(self, kind: str, texts: dict[str, Any]) -> dict[str, Any]:
         values: dict[str, Any] = {}
@@ -223,9 +221,8 @@ class _Row:
         if lanes % 1 > 0:
             self.faults.append(f"lanes {self.cells['lanes']!r} is no whole number")
         values["lanes"] = int(lanes) if lanes == lanes else 0
-        values["reading"] = NAN
-        if self.cells["reading"]:
-            self._collect(lambda: values.update(reading=row_reading(kind, self.cells["reading"])))
+        values["reading"] = self._read(
+            lambda: row_reading(kind, self.cells["reading"]), NAN) if self.cells["reading"] else NAN
         values["reading_u"] = self._number("reading_u", 0.0)
         for name in ("rod_side", "operator_side"):
             values[name] = self.cells[name].lower()
@@ -233,16 +230,16 @@ class _Row:
                 self.faults.append(f"{name} {self.cells[name]!r} is not known; write where it was, "
                                    f"seen from the head: {', '.join(SIDES)} (towards or from it)")
         if kind == "weather" and texts["quantity"] and self.cells["reading"]:
-            self._collect(lambda: values.update(weather_reading(
+            values |= self._read(lambda: weather_reading(
                 texts["quantity"], values["reading"], values["reading_u"],
-                self.parameters.settings.temperature)))
+                self.parameters.settings.temperature), dict[str, float]())
         if kind == "pass":
             product = texts["quantity"]
-            if not self.cells["height_cm"] and (
-                    product in ("albedo", "ndvi") or texts["mode"] == "stand-off"):
-                self.faults.append(f"{'a stand-off' if texts['mode'] else f'an {product}'} pass "
-                                   "needs height_cm, the head's height over the ground; the cell "
-                                   "is empty")
+            level = product in ("albedo", "ndvi")
+            if not self.cells["height_cm"] and (level or texts["mode"] == "stand-off"):
+                self.faults.append(f"{f'an {product}' if level else 'a stand-off'} pass needs "
+                                   "height_cm, the head's height over the ground; the cell is "
+                                   "empty")
             if self.cells["width_m"] and not self.cells["length_m"]:
                 self.faults.append("width_m without length_m; a disc has length_m (its diameter) "
                                    "alone, a rectangle both")
@@ -251,19 +248,17 @@ class _Row:
     def _number(self, name: str, low: float, *, above: bool = False) -> float:
         if not self.cells[name]:
             return NAN
-        try:
-            value = number(self.cells[name])
-        except ValueError as error:
-            self.faults.append(f"{name} {error}")
-            return NAN
+        value = self._read(lambda: number(self.cells[name]), NAN, f"{name} ")
         if value < low or (above and value == low):
             self.faults.append(f"{name} {self.cells[name]!r} is too small; write a number "
                                f"{'above' if above else 'from'} {low:g}{'' if above else ' up'}")
             return NAN
         return value
 
-    def _collect(self, action: Callable[[], None]) -> None:
+    def _read(self, action: Callable[[], T], otherwise: T, before: str = "") -> T:
+        """Return what `action` reads; where it cannot, keep the fault and return `otherwise`."""
         try:
-            action()
+            return action()
         except ValueError as error:
-            self.faults.append(str(error))
+            self.faults.append(f"{before}{error}")
+            return otherwise

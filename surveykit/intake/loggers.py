@@ -18,11 +18,9 @@ from surveykit.intake import cells, dialect
 from surveykit.intake.counted import counted_times
 from surveykit.intake.params.instruments import COUNTED, Channel, Instrument, Layout
 from surveykit.intake.params.paths import outside_allowed
-from surveykit.intake.records import MARKS, NO_TIME_NS, FileFacts, Records, in_order
+from surveykit.intake.records import NO_TIME_NS, FileFacts, Records, in_order, out_of_order
 from surveykit.intake.shapes import odd_times, usual_shape
 from surveykit.intake.times import NO_OFFSET, read_times, to_utc
-
-__all__ = ["MARKS", "NO_TIME_NS", "FileFacts", "Records", "expand_files", "read_logger"]
 
 SAMPLE_LINES = 200
 
@@ -41,9 +39,9 @@ def expand_files(data_folder: Path, patterns: Sequence[str]) -> list[Path]:
         matches = _matches(data_folder, pattern)
         found.update(matches)
         if not matches:
-            held = sorted(path.name for path in data_folder.glob("*") if path.is_file())
+            held = sorted(path.name for path in _matches(data_folder, "*"))
             listing = ", ".join(held[:20]) + (", ..." if len(held) > 20 else "")
-            state = f"it holds {listing or 'no files'}" if data_folder.is_dir() else \
+            state = f"it holds {listing or 'no files'}" if os.path.isdir(data_folder) else \
                 "the folder does not exist"
             faults.append(f"{data_folder.name}: no file matches {pattern!r}; {state}")
     if faults:
@@ -52,11 +50,11 @@ def expand_files(data_folder: Path, patterns: Sequence[str]) -> list[Path]:
 
 
 def _matches(folder: Path, pattern: str) -> list[Path]:
-    if (folder / pattern).is_file():  # a name that holds [ or ] is no pattern
-        return [folder / pattern]
     try:
+        if (folder / pattern).is_file():  # a name that holds [ or ] is no pattern
+            return [folder / pattern]
         return [path for path in folder.glob(pattern) if path.is_file()]
-    except (ValueError, NotImplementedError):
+    except (OSError, ValueError, IndexError, NotImplementedError):  # of pathlib, of no name
         return []
 
 
@@ -171,11 +169,13 @@ def _read_file(name: str, path: Path, root: Path, instrument: Instrument,
 
 
 def _stepped_back(time_ns: IntArray) -> BoolArray:
-    """Mark times earlier than any before them in their file."""
+    """Mark single times out of place in their file, and times earlier than any other before."""
     marked = np.zeros(len(time_ns), dtype=np.bool_)
     if (time_ns[1:] < time_ns[:-1]).any():
-        latest = np.maximum.accumulate(time_ns)
-        marked[1:] = (time_ns[1:] < latest[:-1]) & (time_ns[1:] != NO_TIME_NS)
+        timed = np.flatnonzero(time_ns != NO_TIME_NS)
+        odd = out_of_order(time_ns[timed])
+        latest = np.maximum.accumulate(np.where(odd, NO_TIME_NS, time_ns[timed]))
+        marked[timed] = odd | (time_ns[timed] < latest)
     return marked
 
 
@@ -214,27 +214,24 @@ def _refuse_unlike(data: dialect.Data, header: dialect.Header, instrument: Instr
                    line: NDArray[np.int32], bad_line: BoolArray, wall_ns: IntArray,
                    times_at: Sequence[int]) -> None:
     """Refuse a file none of whose lines is as declared: then the declaration is at fault."""
-    layout = instrument.layout
-    if not len(line):
+    unread = bad_line.all()
+    if not len(line) or not (unread or (wall_ns == NO_TIME_NS).all()):
         return
-    number = int(line[0])
+    layout = instrument.layout
+    number = int(line[0] if unread else line[~bad_line][0])
     text = dialect.line_text(data, header, number, layout.encoding)
-    if bad_line.all():
-        fields = dialect.cells_of(text, layout)
+    fields = dialect.cells_of(text, layout)
+    if unread:
         what = (f"{len(fields)} fields where the header has {len(header.columns)}"
                 if len(fields) != len(header.columns) else
                 f"bytes that are not {layout.encoding}" if "\ufffd" in text else "stray bytes")
         raise InputError(
             f"{where}, line {number}: no line of the file can be read, this first one has {what}; "
             "check layout.delimiter, layout.decimal, layout.encoding and layout.skip_lines")
-    if (wall_ns == NO_TIME_NS).all():
-        number = int(line[~bad_line][0])
-        text = dialect.line_text(data, header, number, layout.encoding)
-        fields = dialect.cells_of(text, layout)
-        cell = " ".join(fields[at] for at in times_at)
-        raise InputError(
-            f"{where}, line {number}: no time of the file can be read, the first is {cell!r}; got "
-            f"time.format {instrument.time.format!r}, write iso8601 or the format the logger uses")
+    cell = " ".join(fields[at] for at in times_at if at < len(fields))[:60]
+    raise InputError(
+        f"{where}, line {number}: no time of the file can be read, the first is {cell!r}; got "
+        f"time.format {instrument.time.format!r}, write iso8601 or the format the logger uses")
 
 
 def _joined(files: list[Records]) -> Records:

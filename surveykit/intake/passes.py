@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections import Counter
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from itertools import combinations
 
 import numpy as np
 
@@ -13,11 +14,9 @@ from surveykit.intake.clocks import REFUSED, Clock
 from surveykit.intake.fieldsheet import Sheet
 from surveykit.intake.params import Channel, Parameters
 from surveykit.intake.placements import find_dwells
-from surveykit.intake.records import Records
-from surveykit.intake.serving import offers, serve
+from surveykit.intake.records import NS, Records, clock_text
 from surveykit.intake.sheet_words import Entry
 
-NS = 1_000_000_000
 NAN = float("nan")
 WRITTEN = ("surface", "patch", "quantity", "mode", "row", "start_ns", "stop_ns", "height_m",
            "lanes", "reading", "rod_side", "operator_side")  # taken from the row as they stand
@@ -59,7 +58,8 @@ class Pass:
     rod_side, operator_side : str
         Where rod and operator were, seen from the head: sun, across, away, or "" if not written.
     skew_u_s : float
-        Standard uncertainty [s] of its two loggers' times against each other; 0 with one logger.
+        Standard uncertainty [s] of its loggers' times against each other, of the two that are
+        known least; 0 with one logger.
     """
 
     name: str
@@ -100,43 +100,30 @@ def match_passes(sheet: Sheet, parameters: Parameters,
     the worst of the pass's loggers against the watch at the pass's time (hypot(u(clock), u(watch))
     unless the clock was found from the sheet itself), and `passes.settle_time_constants` times the
     slowest channel's time constant. A pass whose logger's clock is refused stays, and says why.
-
-    Raises
-    ------
-    InputError
-        If no channel, or more than one, could serve a pass.
     """
-    offered = offers(parameters)
-    rows = sorted((entry for entry in sheet.entries if entry.entry == "pass"),
-                  key=lambda entry: (entry.start_ns, entry.row))
+    watch_u_s = parameters.campaign.watch.offset.u
+    rows = [entry for entry in sheet.entries if entry.entry == "pass"]
     sizes = {entry.patch: (entry.width_m, entry.length_m) for entry in rows
              if entry.length_m == entry.length_m}
     count: Counter[tuple[str, str]] = Counter()
-    passes, faults = [], []
+    passes = []
     for entry in rows:
-        try:
-            service = serve(offered, entry.quantity, entry.mode, entry.instrument)
-        except ValueError as error:
-            faults.append(f"{sheet.path} row {entry.row}: {error}")
-            continue
+        service = sheet.services[entry.row]
         word = (service.kind or entry.quantity).replace("-", "")
         count[entry.patch, word] += 1
         used = [clocks[name] for name in service.loggers]
         refusal = next((why for clock in used if (
             why := clock.refusal_in(entry.start_ns, entry.stop_ns))), "")
         trim_s, notes = _trim(entry, service.channels, parameters, () if refusal else used)
+        middle_ns = (entry.start_ns + entry.stop_ns) / 2
+        skews = [one.u_between(two, middle_ns, watch_u_s) for one, two in combinations(used, 2)]
         width_m, length_m = sizes.get(entry.patch, (NAN, NAN))
         passes.append(Pass(
             **{name: getattr(entry, name) for name in WRITTEN}, kind=service.kind,
             name=f"{entry.patch}-{word}-{count[entry.patch, word]}", trim_s=trim_s,
             from_ns=entry.start_ns + round(trim_s * NS), to_ns=entry.stop_ns - round(trim_s * NS),
             channels=service.channels, width_m=width_m, length_m=length_m, notes=notes,
-            refusal=refusal,
-            skew_u_s=used[0].u_between(used[1], (entry.start_ns + entry.stop_ns) / 2,
-                                       parameters.campaign.watch.offset.u)
-            if len(used) == 2 and not refusal else 0.0))
-    if faults:
-        raise InputError(*faults)
+            refusal=refusal, skew_u_s=0.0 if refusal else max(skews, default=0.0)))
     return tuple(passes)
 
 
@@ -180,8 +167,3 @@ def check_coverage(passes: tuple[Pass, ...], records: Mapping[str, Records],
                 f"clock and watch")
     if faults:
         raise InputError(*faults)
-
-
-def clock_text(time_ns: int) -> str:
-    """Return a time [ns UTC] to the second, as messages write it."""
-    return str(np.datetime64(int(time_ns), "ns").astype("datetime64[s]")).replace("T", " ")

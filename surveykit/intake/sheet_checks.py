@@ -9,9 +9,9 @@ from surveykit.intake.params import Campaign
 from surveykit.intake.serving import Service
 from surveykit.intake.sheet_times import SheetTime
 from surveykit.intake.sheet_words import Entry
+from surveykit.intake.times import DATES
 
 Times = Mapping[int, Mapping[str, SheetTime]]
-_DATES = ("%Y-%m-%d", "%d.%m.%Y", "%d/%m/%Y", "%m/%d/%Y", "%Y/%m/%d", "%d-%m-%Y")
 
 
 def day_faults(rows: Sequence[tuple[int, Mapping[str, str]]], times: Times,
@@ -35,11 +35,12 @@ def day_faults(rows: Sequence[tuple[int, Mapping[str, str]]], times: Times,
 
 
 def _more(rows: Sequence[object]) -> str:
-    return f" (and {len(rows) - 1} more rows)" if len(rows) > 1 else ""
+    more = len(rows) - 1
+    return f" (and {more} more row{'s' if more > 1 else ''})" if more else ""
 
 
 def _is_date(text: str, day: str) -> bool:
-    for form in _DATES:
+    for form in DATES:
         try:
             if datetime.strptime(text, form).strftime("%Y-%m-%d") == day:  # noqa: DTZ007
                 return True

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import csv
 import io
-from dataclasses import dataclass
 
 from surveykit.core import InputError
 from surveykit.intake.sheet_xlsx import read_cells
@@ -12,19 +11,12 @@ from surveykit.intake.sheet_xlsx import read_cells
 COLUMNS = ("entry", "surface", "patch", "quantity", "mode", "instrument", "start", "stop",
            "height_cm", "width_m", "length_m", "lanes", "reading", "reading_u", "note",
            "date", "campaign", "rod_side", "operator_side")
+Row = tuple[int, dict[str, str]]  # as the spreadsheet counts them, the header being row 1; cells
+SPACES = dict.fromkeys(map(ord, "\N{NO-BREAK SPACE}\N{NARROW NO-BREAK SPACE}"), " ")
 
 
-@dataclass(frozen=True)
-class Rows:
-    """Rows that are not blank: (spreadsheet row, cells by column); notices; faults."""
-
-    rows: tuple[tuple[int, dict[str, str]], ...]
-    notices: tuple[str, ...]
-    faults: tuple[str, ...]
-
-
-def read_rows(data: bytes, where: str) -> Rows:
-    """Return the cells of a sheet, CSV or .xlsx; the header is row 1.
+def read_rows(data: bytes, where: str) -> tuple[list[Row], list[str], list[str]]:
+    """Return the rows of a sheet, CSV or .xlsx, that are not blank; notices; faults.
 
     Raises
     ------
@@ -43,7 +35,7 @@ def read_rows(data: bytes, where: str) -> Rows:
                if name and name not in COLUMNS]
     rows = []
     for number, cells in enumerate(table[1:], start=2):
-        cells = [cell.replace("\N{NO-BREAK SPACE}", " ").strip() for cell in cells]
+        cells = [cell.translate(SPACES).strip() for cell in cells]
         if any(cells[len(header):]):
             faults.append(f"{where} row {number}: has {len(cells)} cells where the first row has "
                           f"{len(header)}; "
@@ -55,7 +47,7 @@ def read_rows(data: bytes, where: str) -> Rows:
                                f"has {len(header)}; was the file cut off? the rest counts as empty")
             named = dict(reversed([*zip(header, cells, strict=False)]))  # the first of a name
             rows.append((number, {name: named.get(name, "") for name in COLUMNS}))
-    return Rows(tuple(rows), tuple(notices), tuple(faults))
+    return rows, notices, faults
 
 
 def _csv_cells(data: bytes, where: str) -> tuple[list[list[str]], str]:

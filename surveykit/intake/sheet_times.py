@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 from dataclasses import dataclass
-from datetime import UTC, date, datetime, timedelta
+from datetime import UTC, date, datetime, time, timedelta
 from zoneinfo import ZoneInfo
 
 from surveykit.intake.params.base import since_epoch_ns
@@ -51,11 +51,8 @@ def read_time(text: str, day: date, zone: str) -> SheetTime:
     """
     wall = _WALL.fullmatch(text)
     if wall:
-        hour, minute, second, fraction, half = wall.groups()
-        moment = _clock_time(text, int(hour), int(minute), int(second or 0), half)
-        micro = int((fraction or "0").ljust(6, "0"))
-        local = datetime.combine(day, moment.time()).replace(microsecond=micro)
-        return SheetTime(_utc_ns(local, zone, text), local, second is not None, False)
+        local = datetime.combine(day, _time_of_day(text, *wall.groups(default="")))
+        return SheetTime(_utc_ns(local, zone, text), local, bool(wall[3]), False)
     iso = _ISO.fullmatch(text)
     if iso:
         try:
@@ -77,14 +74,16 @@ def read_time(text: str, day: date, zone: str) -> SheetTime:
     raise ValueError(f"{text!r} is no time; write {FORMS}")
 
 
-def _clock_time(text: str, hour: int, minute: int, second: int, half: str | None) -> datetime:
+def _time_of_day(text: str, hours: str, minute: str, second: str, fraction: str,
+                 half: str) -> time:
+    hour = int(hours)
     if half and not 1 <= hour <= 12:
         raise ValueError(f"{text!r} is no time: with AM or PM hours run from 1 to 12; "
                          f"write {FORMS}")
     if half:
         hour = hour % 12 + (12 if half in "Pp" else 0)
     try:
-        return datetime(2000, 1, 1, hour, minute, second, tzinfo=UTC)
+        return time(hour, int(minute), int(second or 0), int(fraction.ljust(6, "0")))
     except ValueError:
         raise ValueError(f"{text!r} is no time of day; write {FORMS}") from None
 

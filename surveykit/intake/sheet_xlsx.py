@@ -36,19 +36,23 @@ def read_cells(data: bytes, where: str) -> list[list[str]]:
                              "save the field sheet alone as CSV (UTF-8)")
         book, formulas = (openpyxl.load_workbook(io.BytesIO(data), read_only=True, data_only=only)
                           for only in (True, False))
-        names = [sheet.title for sheet in book.worksheets]
-        tables = [_texts(book[name], formulas[name], where) for name in names]
+        sheets = sorted(book.worksheets, key=lambda sheet: "entry" not in _first_row(sheet))
+        tables = (_texts(sheet, formulas[sheet.title], where) for sheet in sheets)
+        table = next((table for table in tables if table), None)
     except InputError:
         raise
     except Exception as error:  # openpyxl lets through whatever a broken part raises
         raise InputError(f"{where}: is no readable workbook ({type(error).__name__}); open and "
                          "save it again, or save the sheet as CSV (UTF-8)") from None
-    tables = [table for table in tables if table]
-    if not tables:
+    if table is None:
         raise InputError(f"{where}: the workbook holds no cells; write the field sheet into its "
                          "first worksheet")
-    return next((table for table in tables
-                 if "entry" in (cell.lower() for cell in table[0])), tables[0])
+    return table
+
+
+def _first_row(sheet: Any) -> list[str]:
+    return [str(cell.value).strip().lower()
+            for row in sheet.iter_rows(max_row=1, max_col=MAX_COLUMNS) for cell in row]
 
 
 def _texts(sheet: Any, formulas: Any, where: str) -> list[list[str]]:

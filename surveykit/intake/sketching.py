@@ -4,10 +4,11 @@ from __future__ import annotations
 
 import json
 import re
-from collections.abc import Iterable, Sequence
+from collections.abc import Collection, Iterable, Sequence
 from pathlib import Path
 
 from surveykit.intake.params.quantities import MAIN, PHYSICAL_UNITS, RAW_UNITS
+from surveykit.intake.params.scalars import plain_reading
 from surveykit.intake.sniffing import ColumnGuess, Guess, look_at
 
 CONFIRM, FILL_IN = "# CONFIRM", "# FILL IN"
@@ -42,8 +43,10 @@ def sketch(name: str, paths: Sequence[Path]) -> tuple[str, dict[str, list[str]]]
         key = (guess.header, guess.layout.delimiter, guess.layout.decimal, guess.time.columns,
                guess.time.format)
         found.setdefault(key, (guess, []))[1].append(path)
-    files = {_entry_name([path.name for path in some], at): [path.name for path in some]
-             for at, (_, some) in enumerate(found.values(), start=1)}
+    files: dict[str, list[str]] = {}
+    for _, some in found.values():
+        names = [path.name for path in some]
+        files[_entry_name(names, files)] = names
     text = HEAD.format(name=name, files=", ".join(
         path.name if path.name.isprintable() else repr(path.name) for path in paths))
     for entry, (guess, _) in zip(files, found.values(), strict=True):
@@ -61,12 +64,16 @@ def is_sheet(path: Path) -> bool:
     return {"entry", "surface", "patch"} <= {*re.split(r"[\s,;\"]+", head.casefold())}
 
 
-def _entry_name(files: list[str], at: int) -> str:
+def _entry_name(files: Sequence[str], taken: Collection[str]) -> str:
+    """Return a name that no other entry has and that every YAML reader takes for text."""
     stem = files[0].split(".")[0].lower()
     if len(files) > 1:
         stem = re.sub(r"[-_ ]*\d+$", "", stem)
-    name = re.sub(r"[^a-z0-9]+", "-", stem).strip("-")[:40]
-    return f"{name}-{at}" if not name or at > 1 and name in ("log", "data") else name
+    name = re.sub(r"[^a-z0-9]+", "-", stem).strip("-")[:40] or "logger"
+    if plain_reading(name) != (name, None):
+        name = f"logger-{name}"
+    return next(one for one in (name, *(f"{name}-{n}" for n in range(2, len(taken) + 2)))
+                if one not in taken)
 
 
 def _quoted(text: str) -> str:
@@ -99,7 +106,8 @@ def _entry(name: str, guess: Guess) -> Iterable[str]:
     yield f"    zone: UTC  {CONFIRM}: {why}"
     if time.format == "day_of_year" and len(time.columns) < 3:
         yield f"    year:  {FILL_IN}: no column holds it"
-    yield "  columns:"
+    guessed = any(column.quantity for column in guess.columns)
+    yield "  columns:" + ("" if guessed else f"  {FILL_IN}: no header says what its column holds")
     seen: set[str] = set()
     for column in guess.columns:
         yield from _column(column, seen)

@@ -12,19 +12,18 @@ import numpy as np
 import pandas as pd
 
 from surveykit.core import InputError
-from surveykit.intake import dialect
+from surveykit.intake import cells, dialect
+from surveykit.intake.counted import counted_times
 from surveykit.intake.params.instruments import Layout
 from surveykit.intake.records import NO_TIME_NS
 from surveykit.intake.sniffing_words import quantity_of, unit_of
-from surveykit.intake.times import read_times
+from surveykit.intake.times import DATES, NO_OFFSET, read_times
 
 SAMPLE_BYTES, SAMPLE_LINES, LEAST_SHARE = 256 * 1024, 400, 0.8
 DELIMITERS = ("\t", ";", "|", ",")
 _NUMBER = re.compile(r"[+-]?(\d+([.,]\d*)?|[.,]\d+)([eE][+-]?\d+)?")
 _MISSING = re.compile(r"|-?9{3,}(\.9*|,9*)?|-?6999|[\"']?(nan|na|n/a|null|none|-?inf|-+|\*+)[\"']?"
                       r"|#.*", re.IGNORECASE)
-_DATES = ("%Y-%m-%d", "%d.%m.%Y", "%d/%m/%Y", "%m/%d/%Y", "%Y/%m/%d", "%d-%m-%Y", "%d.%m.%y",
-          "%d/%m/%y", "%m/%d/%y")
 _CLOCKS = ("%H:%M:%S", "%H:%M", "%H:%M:%S.%f", "%H:%M:%S,%f", "%I:%M:%S %p", "%I:%M %p")
 
 
@@ -71,9 +70,7 @@ def look_at(path: Path) -> Guess:
         If it cannot be read, or has no regular lines, no header, or no times.
     """
     lines, encoding = _lines(path)
-    delimiter, fields, share = _delimiter(lines, path)
-    layout = Layout(delimiter=delimiter, decimal="," if delimiter == "\t" else ".",
-                    encoding=encoding)  # type: ignore[arg-type]
+    layout, fields, share = _delimiter(lines, path)
     rows = [dialect.cells_of(line, layout) for line in lines]
     first = next((at for at, row in enumerate(rows) if len(row) == fields and _is_record(row)),
                  None)
@@ -90,17 +87,17 @@ def look_at(path: Path) -> Guess:
     records = [row for row in rows[first:] if len(row) == fields and row != rows[head]]
     table = {name: [row[at] for row in records] for at, name in enumerate(header)}
     time = _time(table, path)
-    decimal = "," if delimiter != "," and any(
-        re.fullmatch(r"[+-]?\d*,\d+", cell) for name, cells in table.items()
-        if name not in time.columns for cell in cells) else "."
-    missing = {"", "NAN", "-9999"} | {
-        cell for name, cells in table.items() if name not in time.columns
-        for cell in cells if not _NUMBER.fullmatch(cell) and _MISSING.fullmatch(cell)}
-    layout = Layout(delimiter=delimiter, decimal=decimal,  # type: ignore[arg-type]
-                    encoding=layout.encoding,
-                    skip_lines=head, unit_lines=first - head - 1, missing=tuple(sorted(missing)))
-    columns = [_column(name, units[at], table[name], decimal) for at, name in enumerate(header)
-               if name and name not in time.columns]
+    readings = [cell for name, column in table.items() if name not in time.columns
+                for cell in column]
+    layout = layout.model_copy(update={
+        "encoding": encoding, "skip_lines": head, "unit_lines": first - head - 1,
+        "decimal": "," if layout.delimiter != "," and any(
+            re.fullmatch(r"[+-]?\d*,\d+", cell) for cell in readings) else ".",
+        "missing": tuple(sorted({*layout.missing} | {
+            cell for cell in readings if _MISSING.fullmatch(cell)
+            and (cell.startswith("-") or not _NUMBER.fullmatch(cell))}))})
+    columns = (_column(name, units[at], table[name], layout) for at, name in enumerate(header)
+               if name and name not in time.columns)
     return Guess(layout, header, share, time, tuple(found for found in columns if found))
 
 
@@ -120,15 +117,15 @@ def _lines(path: Path) -> tuple[list[str], str]:
         return data.decode("windows-1252", "replace").splitlines()[:SAMPLE_LINES], "windows-1252"
 
 
-def _delimiter(lines: list[str], path: Path) -> tuple[str, int, float]:
+def _delimiter(lines: list[str], path: Path) -> tuple[Layout, int, float]:
     """Return the delimiter, the number of fields and the share of the lines that have them."""
+    later = [line for line in lines[len(lines) // 4:] if line.strip()]
     for delimiter in DELIMITERS:
-        layout = Layout(delimiter=delimiter, decimal="," if delimiter != "," else ".")
-        later = [line for line in lines[len(lines) // 4:] if line.strip()]
+        layout = Layout(delimiter=delimiter)
         counts = Counter(len(dialect.cells_of(line, layout)) for line in later)
         fields, most = counts.most_common(1)[0] if counts else (0, 0)
         if fields > 1 and most >= LEAST_SHARE * len(later):
-            return delimiter, fields, most / len(later)
+            return layout, fields, most / len(later)
     raise InputError(f"{path}: the lines have no regular number of columns, be it with tab, "
                      "semicolon, bar or comma; name a logger's file of delimited text")
 
@@ -140,23 +137,23 @@ def _is_record(row: list[str]) -> bool:
     return numbers >= 1 and 2 * (readings + missing) > len(row)
 
 
-def _fits(cells: list[str], form: str) -> bool:
-    wall, _ = read_times(pd.Series(cells, dtype=object), form)
+def _fits(texts: list[str], form: str) -> bool:
+    wall, _ = read_times(pd.Series(texts, dtype=object), form)
     return bool((wall != NO_TIME_NS).mean() >= LEAST_SHARE)
 
 
 def _time(table: dict[str, list[str]], path: Path) -> TimeGuess:
-    dated = [f"{day} {clock}" for day in _DATES for clock in _CLOCKS]
+    dated = [f"{day} {clock}" for day in DATES for clock in _CLOCKS]
     pairs = [(day, clock) for day in table for clock in table if day != clock
              and re.search(r"\d[-./]\d", table[day][0]) and ":" in table[clock][0]]
     for columns in (*((name,) for name in table), *pairs):
-        cells = [" ".join(parts) for parts in zip(*(table[name] for name in columns), strict=True)]
-        if re.match(r"\s*\d{4}-\d\d-\d\d[T ]\d", cells[0]) and _fits(cells, "iso8601"):
-            _, offsets = read_times(pd.Series(cells, dtype=object), "iso8601")
-            return TimeGuess(columns, "iso8601", bool((offsets > -86400).all()), (), cells[0])
-        fitting = [form for form in dated if _fits(cells, form)]
+        texts = [" ".join(parts) for parts in zip(*(table[name] for name in columns), strict=True)]
+        if re.match(r"\s*\d{4}-\d\d-\d\d[T ]\d", texts[0]) and _fits(texts, "iso8601"):
+            _, offsets = read_times(pd.Series(texts, dtype=object), "iso8601")
+            return TimeGuess(columns, "iso8601", bool((offsets != NO_OFFSET).all()), (), texts[0])
+        fitting = [form for form in dated if _fits(texts, form)]
         if fitting:
-            return TimeGuess(columns, fitting[0], False, tuple(fitting[1:]), cells[0])
+            return TimeGuess(columns, fitting[0], False, tuple(fitting[1:]), texts[0])
     counted = _counted(table)
     if counted is None:
         raise InputError(f"{path}: no column looks like times; write the entry by hand, with the "
@@ -166,33 +163,29 @@ def _time(table: dict[str, list[str]], path: Path) -> TimeGuess:
 
 def _counted(table: dict[str, list[str]]) -> TimeGuess | None:
     """Return the columns that count: seconds since 1970, or year, day of year and hhmm."""
-    numbers = {name: pd.to_numeric(pd.Series(cells).str.replace(",", "."), errors="coerce")
-               for name, cells in table.items()}
+    numbers = {name: pd.to_numeric(pd.Series(texts).str.replace(",", "."), errors="coerce")
+               for name, texts in table.items()}
     for name, values in numbers.items():
         if values.between(6e8, 7e9).mean() >= LEAST_SHARE and values.is_monotonic_increasing:
             return TimeGuess((name,), "epoch_s", True, (), table[name][0])
     names = list(numbers)
-    for at in range(len(names) - 1):
-        day, clock = numbers[names[at]], numbers[names[at + 1]]
-        whole = (day % 1 == 0) & (clock % 1 == 0)
-        fits = whole & day.between(1, 366) & clock.between(0, 2400) & (clock % 100 < 60)
-        if fits.mean() < LEAST_SHARE or not re.search("day|doy|jul", names[at], re.IGNORECASE):
+    for at, name in enumerate(names[:-1]):
+        if not re.search("day|doy|jul", name, re.IGNORECASE):
             continue
-        year = numbers[names[at - 1]] if at else day
-        has_year = bool(at and year.between(1990, 2100).mean() >= LEAST_SHARE)
-        columns = tuple(names[at - has_year: at + 2])
-        return TimeGuess(columns, "day_of_year", False, (),
-                         " ".join(table[name][0] for name in columns))
+        for first in range(max(at - 1, 0), at + 1):  # with the column of years before it, without
+            columns = tuple(names[first: at + 2])
+            wall, _ = counted_times([numbers[one].to_numpy(float) for one in columns],
+                                    "day_of_year", 2024)  # of 366 days
+            if (wall != NO_TIME_NS).mean() >= LEAST_SHARE:
+                return TimeGuess(columns, "day_of_year", False, (),
+                                 " ".join(table[one][0] for one in columns))
     return None
 
 
-def _column(name: str, unit: str, cells: list[str], decimal: str) -> ColumnGuess | None:
-    values = np.array([float(cell.replace(decimal, ".")) if _NUMBER.fullmatch(cell)
-                       and not _MISSING.fullmatch(cell) and (decimal == "," or "," not in cell)
-                       else np.nan for cell in cells])
-    good = values[np.isfinite(values)]
-    if not good.size:
+def _column(name: str, unit: str, texts: list[str], layout: Layout) -> ColumnGuess | None:
+    values = cells.numbers_of(pd.Series(texts, dtype=object), layout).values  # noqa: PD011
+    if np.isnan(values).all():
         return None
-    low, median, high = (float(v) for v in np.quantile(good, [0, 0.5, 1]))
-    quantity = quantity_of(name, median)
+    low, median, high = (float(v) for v in np.nanquantile(values, [0, 0.5, 1]))
+    quantity = quantity_of(name)
     return ColumnGuess(name, quantity, unit_of(name, unit, quantity, median), low, median, high)

@@ -21,20 +21,20 @@ _RULES: tuple[tuple[str, str], ...] = (
 )
 _UNITS: tuple[tuple[str, str], ...] = (
     (r"(µ|u|μ)V(?![a-z])", "uV"), (r"mV(?![a-z])", "mV"), (r"W ?/? ?m|W·m", "W m-2"),
-    (r"°C|deg ?_?C|(?<![a-zA-Z])C(?![a-zA-Z])|celsius", "degC"),
+    (r"°C|(?i:deg[ _]?C|celsius)|(?<![a-zA-Z])C(?![a-zA-Z])", "degC"),
     (r"(?<![a-zA-Z])K(?![a-zA-Z])|kelvin", "K"), (r"%|percent", "%"), (r"hPa|mbar", "hPa"),
     (r"kPa", "kPa"), (r"(?<![a-zA-Z])Pa(?![a-zA-Z])", "Pa"), (r"m ?/ ?s|m s-1", "m s-1"),
-    (r"count|cts|(?<![a-z])dn(?![a-z])", "count"),
+    (r"(?i:count|cts|(?<![a-z])dn(?![a-z]))", "count"),
 )
 _USUAL = {"relative_humidity": "%", "wind_speed": "m s-1", "air_pressure": "hPa"}
 
 
-def quantity_of(name: str, median: float) -> str:
+def quantity_of(name: str) -> str:
     """Return the quantity a column's name suggests, "" if it suggests none.
 
     Examples
     --------
-    >>> quantity_of("T_body [degC]", 30.0), quantity_of("sky_mV", 90.0), quantity_of("batt", 12.1)
+    >>> quantity_of("T_body [degC]"), quantity_of("sky_mV"), quantity_of("batt")
     ('housing_temperature', 'shortwave_down', '')
     """
     words = re.sub(r"[\[(].*?[\])]", " ", name).replace("_", " ").lower()
@@ -56,8 +56,7 @@ def unit_of(name: str, unit_cell: str, quantity: str, median: float) -> str:
     """
     for text in (unit_cell, " ".join(re.findall(r"[\[(](.*?)[\])]", name)), name.replace("_", " ")):
         for pattern, unit in _UNITS:
-            if text and re.search(pattern, text, 0 if text is not unit_cell else re.IGNORECASE
-                                  if unit in ("degC", "count") else 0):
+            if re.search(pattern, text):
                 return unit
     if quantity.endswith("temperature"):
         return "K" if median > 150 else "degC"

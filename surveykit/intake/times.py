@@ -12,13 +12,14 @@ import pandas as pd
 from numpy.typing import NDArray
 
 from surveykit.core import BoolArray, InputError, IntArray
-from surveykit.intake.records import NO_TIME_NS
+from surveykit.intake.records import NO_TIME_NS, NS
 
-NS = 1_000_000_000
 NO_OFFSET = -(2**31)
 FIRST_NS, END_NS = (int(np.datetime64(year, "ns").astype(np.int64)) for year in ("1700", "2200"))
-_OFFSET = re.compile(r"^\s*(.*?\d:?\d\d(?:[.,]\d+)?)\s*"
-                     r"(Z|[+-](?:[01]\d|2[0-3])(?::?[0-5]\d)?)?\s*$")
+DATES = ("%Y-%m-%d", "%d.%m.%Y", "%d/%m/%Y", "%m/%d/%Y", "%Y/%m/%d", "%d-%m-%Y", "%d.%m.%y",
+         "%d/%m/%y", "%m/%d/%y")  # as people and loggers write them
+_OFFSET = re.compile(r"^\s*([\d-]+(?:[T ]\s*[\d:.,]+)?)\s*"
+                     r"(Z|[+-](?:[01]\d|2[0-3])(?::?[0-5]\d)?)?\s*$", re.ASCII)
 _WIDTHS = {"Y": 4, "m": 2, "d": 2, "H": 2, "M": 2, "S": 2}
 
 Offsets = NDArray[np.int32]
@@ -82,10 +83,7 @@ def _iso(texts: NDArray[np.object_]) -> pd.Series:
 def _of_several_offsets(texts: NDArray[np.object_]) -> tuple[IntArray, Offsets]:
     """Read ISO 8601 times and their offsets apart; each different offset once."""
     parts = pd.Series(texts, dtype=object).str.extract(_OFFSET)
-    walls = _iso(parts[0].to_numpy(dtype=object))
-    if walls.dtype.kind != "M" or walls.dt.tz is not None:
-        return _one_by_one(texts, datetime.fromisoformat)
-    wall = _in_ns(walls)
+    wall = _in_ns(_iso(parts[0].to_numpy(dtype=object)))
     code, different = pd.factorize(parts[1].fillna(""))
     offset_s = [_offset_s(str(text)) for text in different]
     offsets = np.array(offset_s, dtype=np.int32)[code]
@@ -100,13 +98,13 @@ def _offset_s(text: str) -> int:
     return int(offset.total_seconds()) if offset is not None else NO_OFFSET
 
 
-def _one_by_one(texts: NDArray[np.object_], read: Callable[[str], datetime]
-                ) -> tuple[IntArray, Offsets]:
+def _with_offsets(texts: NDArray[np.object_], form: str) -> tuple[IntArray, Offsets]:
+    """Read times whose format holds an offset, one by one."""
     walls: list[datetime | None] = [None] * len(texts)
     offsets = np.full(len(texts), NO_OFFSET, dtype=np.int32)
     for i, text in enumerate(texts):
         try:
-            time = read(text.strip())
+            time = datetime.strptime(text.strip(), form)  # noqa: DTZ007 - form has %z
         except (ValueError, AttributeError):
             continue
         offset = time.utcoffset()
@@ -117,16 +115,15 @@ def _one_by_one(texts: NDArray[np.object_], read: Callable[[str], datetime]
 
 
 def _formatted(texts: NDArray[np.object_], form: str) -> tuple[IntArray, Offsets]:
-    offsets = np.full(len(texts), NO_OFFSET, dtype=np.int32)
+    if "%z" in form.lower():
+        return _with_offsets(texts, form)
     wall = _sliced(texts, form)
     rest = (wall == NO_TIME_NS) & pd.notna(texts)
-    if rest.all() and "%z" in form.lower():
-        return _one_by_one(texts, lambda text: datetime.strptime(text, form))  # noqa: DTZ007
     if rest.any():
         stripped = np.array([str(text).strip() for text in texts[rest]], dtype=object)
         times = pd.to_datetime(pd.Series(stripped, dtype=object), format=form, errors="coerce")
         wall[rest] = _in_ns(times)
-    return wall, offsets
+    return wall, np.full(len(texts), NO_OFFSET, dtype=np.int32)
 
 
 def _sliced(texts: NDArray[np.object_], form: str) -> IntArray:
@@ -188,7 +185,6 @@ def _days(year: NDArray[np.int32], month: NDArray[np.int32], day: NDArray[np.int
 
 def _places(form: str) -> dict | None:
     """Return where each part of a fixed-width format stands; None if it is not of fixed width."""
-    form = form.replace("%T", "%H:%M:%S").replace("%F", "%Y-%m-%d")
     fraction = form.endswith("%f")
     found: dict = {"literals": [], "fraction": fraction}
     for piece in re.findall(r"%.|.", form.removesuffix("%f"), re.DOTALL):

@@ -163,7 +163,7 @@ CASES: dict[str, dict[str, Any]] = {
         "miss every pass it serves", {"thermal": "thermal.elsewhere"}, {"thermal": "thermal"}, {},
         "walk", sheet_u_s=5.0),
     "a pass too short": case(
-        "29 s of the pass lie between its uncertain edges, less than 30 s",
+        "28 s of the pass lie between its uncertain edges, less than 30 s",
         {"thermal": "thermal"}, {"thermal": "thermal"}, {}, "short", sheet_u_s=5.0,
         clean_sheet="walk"),
 }

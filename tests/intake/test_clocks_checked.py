@@ -16,6 +16,7 @@ from numpy.testing import assert_allclose
 from under_sky import START, log, sheet, sky, survey
 
 from surveykit.intake.aligning import align, read_logs
+from surveykit.intake.clocks import REFUSED
 from surveykit.intake.clocks.checking import sun_shift
 from surveykit.intake.params import load
 from surveykit.physics.sun import clear_sky_shape
@@ -55,6 +56,18 @@ def test_part_of_a_day_is_enough(winter_day, hours):
     found = sun_shift(time_ns[part] + 3600 * 10**9, light[part], *SITE, small_min=12.5)
     assert found.telling
     assert found.shift_min == pytest.approx(60, abs=8 if hours == 3 else 20)
+
+
+def test_a_stray_minute_of_another_day_does_not_hide_an_hour(winter_day):
+    time_ns, light = winter_day
+    for far_ns in (-40 * 86400 * 10**9, 40 * 86400 * 10**9):
+        late = np.concatenate([time_ns + 3600 * 10**9, [time_ns[0] + far_ns]])
+        order = np.argsort(late)
+        found = sun_shift(late[order], np.concatenate([light, [500.0]])[order], *SITE,
+                          small_min=12.5)
+        assert found is not None
+        assert found.telling
+        assert found.shift_min == pytest.approx(60, abs=8)
 
 
 def test_too_little_light_says_nothing(winter_day):
@@ -137,6 +150,18 @@ def test_the_clock_nobody_checked_gives_way(tmp_path):
     assert [one.status for one in found.clocks] == ["ok", "refused"]
     assert "align_with: rednir-sky" in found.clocks[1].refusal
     assert "come 60 s before" in found.clocks[1].refusal  # its times are too early by 60 s
+
+
+def test_what_was_aligned_with_a_clock_that_the_sun_refuses_is_refused_with_it(tmp_path):
+    clocks = {"pair": GOOD, "rednir-ground": {"align_with": "pair"}}
+    for shift_s, status in ((0.0, "ok"), (3600.0, "refused")):
+        logs = {"pair": log("pair", n=10800, shift_s=shift_s),
+                "rednir-ground": log("rednir-ground", n=10800)}
+        found = survey(tmp_path / status, logs, clocks, rows=sheet(ndvi=False))
+        assert [one.status for one in found.clocks] == [status, status]
+    assert "follows the clear sky" in found.clocks[0].refusal
+    assert "it is set by that of pair, which is refused itself" in found.clocks[1].refusal
+    assert all(log_.marks[REFUSED].all() for log_ in found.records.values())
 
 
 def test_a_clear_sky_lets_no_clock_be_judged(tmp_path):

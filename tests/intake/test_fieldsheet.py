@@ -54,6 +54,7 @@ def test_the_watchs_offset_is_added(tmp_path):
 
 @pytest.mark.parametrize(("written", "edge_u_s"), [
     ("12:00:00", 5), ("12:00", 60), ("12:00:00 PM", 5), ("12:00 pm", 60),
+    ("12:00:00\u00a0PM", 5), ("12:00:00\u202fPM", 5),  # as spreadsheets space them
     ("2025-07-24T12:00:00", 5), ("2025-07-24 12:00", 60), ("2025-07-24T11:00:00Z", 5),
     ("2025-07-24T13:00:00+02:00", 5), ("12:00:00.0", 5)])
 def test_ways_to_write_noon(tmp_path, written, edge_u_s):
@@ -236,11 +237,12 @@ def test_date_and_campaign_columns(tmp_path):
     columns = [*COLUMNS, "date", "campaign"]
     good = {**PASS, "date": "2025-07-24", "campaign": "mill-yard"}
     assert read(tmp_path, good, columns=columns).notices == ()
-    assert read(tmp_path, {**good, "date": "24.07.2025"}, columns=columns).notices == ()
+    for day in ("24.07.2025", "24/07/2025", "07/24/2025", "24.07.25", "24/07/25"):
+        assert read(tmp_path, {**good, "date": day}, columns=columns).notices == ()
     later = {**PASS, "start": "13:00:00", "stop": "13:05:00"}
     old = {**good, "date": "2025-06-12", "campaign": "mill-yard-june"}
     found = faults(tmp_path, old, {**old, **later, "date": "2025-06-12"}, columns=columns)
-    assert "row 2: date '2025-06-12' (and 1 more rows): the sheet is from another day than the " \
+    assert "row 2: date '2025-06-12' (and 1 more row): the sheet is from another day than the " \
         "campaign, 2025-07-24" in found
     assert "row 2: campaign 'mill-yard-june'" in found
 

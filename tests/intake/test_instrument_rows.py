@@ -6,6 +6,7 @@ import pytest
 from invented import COLUMNS, PASS, parameters, text_of, write
 
 from surveykit.core import InputError
+from surveykit.intake.capped import windows
 from surveykit.intake.fieldsheet import read_sheet
 
 WHERE = {"instrument": "pair", "surface": "asphalt", "patch": "A1"}
@@ -55,3 +56,16 @@ def test_a_reference_needs_its_uncertainty(tmp_path):
              "reading": "48"}
     with pytest.raises(InputError, match="a reference row needs reading_u; the cell is empty"):
         entries(tmp_path, given)
+
+
+@pytest.mark.parametrize(("quantity", "concerned"), [
+    ("", {"brightness_temperature", "longwave_up", "shortwave_down", "red_up", "nir_down"}),
+    ("temperature", {"brightness_temperature", "longwave_up"}),
+    ("albedo", {"shortwave_down"}), ("ndvi", {"red_up", "nir_down"})])
+def test_a_row_concerns_the_channels_of_its_quantity(tmp_path, quantity, concerned):
+    cover = {"entry": "cover", "quantity": quantity, "start": "13:00:00", "stop": "13:00:10"}
+    study = parameters(tmp_path)
+    sheet = read_sheet(write(tmp_path, "sheet.csv", text_of(PASS, cover)), study)
+    found = {name for name in ("brightness_temperature", "longwave_up", "shortwave_down", "red_up",
+                               "nir_down") if windows(sheet, "cover", "any", name)}
+    assert found == concerned

@@ -76,6 +76,15 @@ def test_format_with_offsets_agrees_with_strptime(tmp_path):
         ns(datetime.strptime(text, form)) for text in texts])  # noqa: DTZ007 - form has %z
 
 
+def test_a_line_without_a_time_beside_times_with_offsets(tmp_path):
+    form = "%d.%m.%Y %H:%M:%S %z"
+    records = read(tmp_path, ["24.07.2025 12:00:00 +0100", "", "x", "24.07.2025 12:00:01 +0100"],
+                   "Europe/Lisbon", form)
+    first = ns(datetime(2025, 7, 24, 11, tzinfo=UTC))
+    assert_array_equal(records.time_ns, [first, first + 10**9, NO_TIME_NS, NO_TIME_NS])
+    assert_array_equal(records.line[records.marks["unreadable time"]], [3, 4])
+
+
 # ---- zones. European Union: clocks go forward at 01:00 UTC on the last Sunday of March, back at
 # 01:00 UTC on the last Sunday of October (Directive 2000/84/EC, from memory).
 

@@ -208,14 +208,20 @@ def test_repeated_and_conflicting_records(tmp_path):
     assert marked(read(tmp_path, CLEAN, name="clean.csv")) == {}
 
 
-def test_a_time_that_steps_back_is_marked_and_sorted(tmp_path):
-    times = ["11:00:00", "11:00:05", "11:00:01", "x", "11:00:04", "11:00:05", "11:00:06"]
+@pytest.mark.parametrize(("times", "order", "marks"), [
+    # one line out of place, later or earlier than both neighbours: the others are in order
+    ("00 05 01 x 04 05 06", [2, 4, 6, 3, 7, 8, 5], {"time stepped back": [3],
+                                                    "unreadable time": [5]}),
+    ("00 01 02 00 x 03 04", [2, 5, 3, 4, 7, 8, 6], {"time stepped back": [5],
+                                                    "unreadable time": [6]}),
+    # the clock was set back: what comes before the latest time so far is earlier than it
+    ("00 04 05 01 02 06 07", [2, 5, 6, 3, 4, 7, 8], {"time stepped back": [5, 6]})])
+def test_a_time_that_steps_back_is_marked_and_sorted(tmp_path, times, order, marks):
     text = "time,target,body\n" + "".join(
-        f"2025-07-24T{time},{40 + i},30\n" for i, time in enumerate(times))
+        f"2025-07-24T11:00:{time},{40 + i},30\n" for i, time in enumerate(times.split()))
     records = read(tmp_path, text)
-    assert_array_equal(records.line, [2, 4, 6, 3, 7, 8, 5])
-    assert marked(records) == {"time stepped back": [4, 6], "unreadable time": [5],
-                               "conflicting records": [3, 7]}
+    assert marked(records) == marks
+    assert_array_equal(records.line, order)
 
 
 # ---- several files
@@ -243,3 +249,12 @@ def test_patterns_find_each_file_once_sorted(tmp_path):
         expand_files(tmp_path, ("x*",))
     with pytest.raises(InputError, match="the folder does not exist"):
         expand_files(tmp_path / "none", ("x*",))
+
+
+@pytest.mark.parametrize("pattern", [".", "..", "*/", "[", "**", "x" * 300, "a\0b"])
+def test_a_pattern_that_can_match_no_file_is_told_as_such(tmp_path, pattern):
+    write(tmp_path, "t.csv", CLEAN)
+    with pytest.raises(InputError, match="no file matches"):
+        expand_files(tmp_path, (pattern,))
+    with pytest.raises(InputError, match="the folder does not exist"):
+        expand_files(tmp_path / ("x" * 300), ("*.csv",))

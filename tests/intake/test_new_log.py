@@ -12,7 +12,7 @@ from invented import CLEAN, write
 
 from surveykit.core import InputError
 from surveykit.intake.loggers import read_logger
-from surveykit.intake.params import load_kit
+from surveykit.intake.params import load, load_kit
 from surveykit.intake.sniffing import look_at
 from surveykit.starting import start
 
@@ -85,6 +85,9 @@ FORMS = {
                     {}, ("year", "doy", "hhmm"), "day_of_year"),
     "day alone": ("doy,hhmm,a\n" + "".join(f"205,{930 + m},1\n" for m in range(5)),
                   {}, ("doy", "hhmm"), "day_of_year"),
+    "codes": ("t,a\n2025-07-24 09:00:00,-6999\n2025-07-24 09:00:01,n/a\n"
+              + "".join(f"2025-07-24 09:00:0{s},1{s}\n" for s in range(2, 6)),
+              {"missing": ("", "-6999", "-9999", "NAN", "n/a")}, ("t",), "iso8601"),
     "windows": ("t,a [°C]\n" + "".join(f"2025-07-24 09:00:0{s},1\n" for s in range(5)),
                 {"encoding": "windows-1252"}, ("t",), "iso8601"),
 }
@@ -96,9 +99,10 @@ def test_how_a_file_is_written_is_found_and_the_reader_agrees(tmp_path, form):
     path = write(tmp_path, "log.csv", text.encode(layout.get("encoding", "utf-8")))
     guess = look_at(path)
     plain = {"delimiter": ",", "decimal": ".", "skip_lines": 0, "unit_lines": 0,
-             "encoding": "utf-8"}
+             "encoding": "utf-8", "missing": ("", "-9999", "NAN")}
     assert {key: getattr(guess.layout, key) for key in plain} == plain | layout
     assert (guess.time.columns, guess.time.format) == (columns, time_format)
+    assert guess.columns[0].low > 0  # codes are no readings
     # reading the file by the guess loses no record
     from surveykit.intake.params import Instrument
 
@@ -156,3 +160,32 @@ def test_odd_names_of_columns_and_files_stay_readable_yaml(folder):
     start("mill-yard", folder, [odd])
     plain = yaml.safe_load((folder / "params/mill-yard-instruments.yml").read_text("utf-8"))
     assert list(plain) == ["no-1-a"]
+
+
+@pytest.mark.parametrize("names", [("a/log.csv", "b/log.csv"), ("l-1.csv", "l_1.csv"),
+                                   ("x" * 45 + "1.csv", "x" * 45 + "2.csv")])
+def test_loggers_whose_files_are_named_alike_are_two_entries(folder, names):
+    paths = []
+    for name, text in zip(names, (CLEAN, CLEAN.replace("target", "air")), strict=True):
+        (folder / name).parent.mkdir(exist_ok=True)
+        paths.append(write(folder, name, text))
+    start("mill-yard", folder, paths)
+    kit = yaml.safe_load((folder / "params/mill-yard-instruments.yml").read_text("utf-8"))
+    assert len(kit) == 2
+
+
+@pytest.mark.parametrize("name", ["2025-06-11", "no", "0120", "y", "1e3", "null"])
+def test_an_entry_is_named_so_that_every_yaml_reader_takes_it_for_text(folder, name):
+    start("mill-yard", folder, [write(folder, f"{name}.csv", CLEAN.replace("target", "air")
+                                      .replace("body", "hum"))])
+    assert list(load_kit(folder / "params/mill-yard-instruments.yml")) == [f"logger-{name}"]
+    with pytest.raises(InputError) as caught:
+        load(folder / "params/mill-yard.yml")
+    assert not any("loggers" in fault for fault in caught.value.faults)
+
+
+def test_headers_that_say_nothing_are_left_to_be_filled_in(folder):
+    start("mill-yard", folder, [write(folder, "log.csv", CLEAN.replace("target,body", "a,b"))])
+    text = (folder / "params/mill-yard-instruments.yml").read_text("utf-8")
+    assert "  columns:  # FILL IN: no header says what its column holds\n" in text
+    assert '    # "a": left out, no guess of its quantity; from 40.25 to 40.75' in text

@@ -121,6 +121,19 @@ def test_trimming_takes_the_worst_clock_and_minutes_only(tmp_path):
     assert_allclose(one.trim_s, 60 + 5.0 + 1.5, rtol=1e-12)  # hypot(3, 4) = 5
 
 
+def test_the_skew_of_a_pass_is_that_of_the_two_loggers_furthest_apart(tmp_path):
+    one, two = passes(tmp_path, PASS, NDVI, u_s={"rednir_ground": 3.0})
+    assert (one.skew_u_s, two.skew_u_s) == (0.0, pytest.approx(sqrt(0.25 + 9)))
+    kit = {"red": pair("red_down"), "nir": pair("nir_down"),
+           "rednir-ground": KIT["rednir-ground"]}  # three clocks
+    study = parameters(tmp_path, kit)
+    known = {name: Clock(name, "declared", 0, u, 0, "ok", "")
+             for name, u in (("red", 0.5), ("nir", 1.0), ("rednir-ground", 3.0))}
+    (three,) = match_passes(read_sheet(write(tmp_path, "sheet.csv", text_of(NDVI)), study), study,
+                            known)
+    assert three.skew_u_s == pytest.approx(sqrt(1 + 9))
+
+
 def test_t95_counts_as_three_time_constants(tmp_path):
     entry = {name: value for name, value in SHORTWAVE.items() if name != "time_constant_s"}
     (one,) = passes(tmp_path, ALBEDO, kit={"shortwave": {**entry, "t95_s": 6.0}})

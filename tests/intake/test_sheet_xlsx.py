@@ -133,6 +133,18 @@ def test_a_damaged_workbook_is_refused(tmp_path, data):
     assert refusal(tmp_path, data).startswith("sheet.xlsx")
 
 
+def test_worksheets_beside_the_field_sheet_may_hold_what_they_like(tmp_path):
+    def beside(sheet):
+        other = sheet.parent.create_sheet("calculations")
+        other["A1"] = "=1+1"  # without its value
+        other.append([""] * 300)
+        for _ in range(20_001):
+            other.append(["much"])
+
+    found = entries(tmp_path, "sheet.xlsx", book(spoil=beside))
+    assert repr(found) == repr(entries(tmp_path, "sheet.csv", text_of(*ROWS)))
+
+
 def test_empty_and_huge_workbooks_are_refused(tmp_path):
     assert "holds no cells" in refusal(tmp_path, book([], []))
     assert "row 1: no column entry" in refusal(tmp_path, book([], ["a", "b"]))

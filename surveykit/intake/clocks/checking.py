@@ -1,20 +1,22 @@
-"""Clocks held against what they did not come from: the sun, and each other's light."""
+"""Clocks held against what they did not come from: the sun, each other's light, the date."""
 
 from __future__ import annotations
 
 from collections.abc import Mapping
+from datetime import date
 from itertools import combinations
 from math import hypot
 from typing import NamedTuple
+from zoneinfo import ZoneInfo
 
 import numpy as np
 import pandas as pd
 
-from surveykit.core import FloatArray, IntArray
-from surveykit.intake.clocks.clock import NS
-from surveykit.intake.clocks.finding import Set
+from surveykit.core import FloatArray, InputError, IntArray
+from surveykit.intake.clocks.finding import Timed
 from surveykit.intake.clocks.signals import LIGHT, first_of, in_common, readings
 from surveykit.intake.params import Parameters
+from surveykit.intake.records import NS, Records
 from surveykit.physics.sun import clear_sky_shape, sun_position
 from surveykit.statistics.alignment import edge_u_s
 from surveykit.statistics.correlation import correlate
@@ -49,9 +51,10 @@ def sun_shift(time_ns: IntArray, values: FloatArray, latitude: float, longitude:
               elevation_m: float, *, small_min: float) -> SunShift | None:
     """Return the shift of downwelling light against the clear sky, its scale left free.
 
-    Minute medians over one day are compared with the clear sky of every minute within half a day;
-    a minute under a cap or a cloud counts no more than a limited distance. Good to some ten
-    minutes, the haze of the day being unknown: enough for a wrong zone, useless as a clock.
+    Minute medians over the day about the middle one are compared with the clear sky of every
+    minute within half a day; a minute under a cap or a cloud counts no more than a limited
+    distance. Good to some ten minutes, the haze of the day being unknown: enough for a wrong zone,
+    useless as a clock.
 
     Parameters
     ----------
@@ -71,9 +74,8 @@ def sun_shift(time_ns: IntArray, values: FloatArray, latitude: float, longitude:
         return None
     minute = pd.Series(values).groupby(time_ns // MINUTE_NS).median()
     keys, light = minute.index.to_numpy(np.int64), minute.to_numpy(np.float64)
-    if keys[-1] - keys[0] > 2 * HALF_DAY_MIN:
-        inside = keys < keys[0] + 2 * HALF_DAY_MIN
-        keys, light = keys[inside], light[inside]
+    inside = np.abs(keys - np.median(keys)) <= HALF_DAY_MIN
+    keys, light = keys[inside], light[inside]
     top = float(np.quantile(light, 0.98))
     if top <= 0 or np.count_nonzero(light > 0.05 * top) < FEWEST_MIN:
         return None
@@ -100,7 +102,7 @@ def sun_shift(time_ns: IntArray, values: FloatArray, latitude: float, longitude:
     return SunShift(float(fine[best]), fits[best], small)
 
 
-def against_the_sun(loggers: Mapping[str, Set], parameters: Parameters) -> dict[str, str]:
+def against_the_sun(loggers: Mapping[str, Timed], parameters: Parameters) -> dict[str, str]:
     """Return by logger why its time cannot be right: its light fits the clear sky elsewhere."""
     site, limit = parameters.campaign.site, parameters.settings.clocks.sun_shift_min
     wrong = {}
@@ -108,8 +110,7 @@ def against_the_sun(loggers: Mapping[str, Set], parameters: Parameters) -> dict[
         channel = first_of(parameters.channels(name), [q for q in LIGHT if q.endswith("_down")])
         if channel is None or one.clock.refusal:
             continue
-        time_s, values = readings(one.records, channel, parameters.settings,
-                                  np.arange(one.records.n_timed), 0)
+        time_s, values = readings(one.records, channel, parameters.settings, 0)
         time_ns = (time_s * NS).astype(np.int64)
         if _lit_at_night(time_ns, values, parameters):
             continue  # the passes say so, each with what its pair read: longitude, zone or clock
@@ -139,7 +140,7 @@ def _zenith_deg(time_ns: IntArray, latitude: float, longitude: float,
                         AIR_DEGC).apparent_zenith_deg
 
 
-def against_each_other(loggers: Mapping[str, Set], parameters: Parameters) -> dict[str, str]:
+def against_each_other(loggers: Mapping[str, Timed], parameters: Parameters) -> dict[str, str]:
     """Return by logger why its clock disagrees with another's under the same changing light.
 
     Where the correlation of two loggers' light is accepted and its lag lies beyond 3 u, the clock
@@ -152,9 +153,8 @@ def against_each_other(loggers: Mapping[str, Set], parameters: Parameters) -> di
         pair = in_common(parameters.channels(name), parameters.channels(other))
         if pair is None:
             continue
-        first, second = ((readings(some.records, channel, parameters.settings,
-                                   np.arange(some.records.n_timed),
-                                   int(one.records.time_ns[0])))
+        first, second = (readings(some.records, channel, parameters.settings,
+                                  int(one.records.time_ns[0]))
                          for some, channel in zip((one, two), pair, strict=True))
         step_s = max(one.records.interval_s, two.records.interval_s, LEAST_STEP_S)
         lag = correlate(*first, *second, search_s=max(limits.crosscheck_s, 10 * step_s),
@@ -178,10 +178,47 @@ def against_each_other(loggers: Mapping[str, Set], parameters: Parameters) -> di
     return wrong
 
 
-def _related(one: Set, two: Set) -> bool:
+def _related(one: Timed, two: Timed) -> bool:
     return any(a.clock.reference is not None and a.clock.reference.logger == b.clock.logger
                for a, b in ((one, two), (two, one)))
 
 
-def _evidence(one: Set) -> int:
+def _evidence(one: Timed) -> int:
     return {"not checked": 0, "declared": 1}.get(one.clock.method, 2)
+
+
+def check_days(records: Mapping[str, Records], parameters: Parameters) -> None:
+    """Refuse loggers none of whose records falls on the campaign's date at the site.
+
+    Raises
+    ------
+    InputError
+        One sentence a logger; it states the days the logger does cover.
+    """
+    zone, day = parameters.campaign.site.time_zone, parameters.campaign.date
+    midnight = pd.Timestamp(day).tz_localize(ZoneInfo(zone), nonexistent="shift_forward",
+                                             ambiguous=True)
+    ends = [midnight, (midnight + pd.DateOffset(days=1))]
+    start_ns, stop_ns = (int(end.as_unit("ns").value) for end in ends)
+    faults = []
+    for name, log in records.items():
+        time_ns = log.time_ns[:log.n_timed]
+        if not ((time_ns >= start_ns) & (time_ns < stop_ns)).any():
+            covered = pd.DatetimeIndex(time_ns, tz="UTC").tz_convert(ZoneInfo(zone))
+            days = sorted({date.isoformat() for date in covered.normalize().unique().date})
+            listing = " and ".join(_runs(days)) or "no day (no time is readable)"
+            faults.append(f"loggers.{name}: no record falls on {day} ({zone}); its files cover "
+                          f"{listing}; check loggers.{name}.files, loggers.{name}.clock and date")
+    if faults:
+        raise InputError(*faults)
+
+
+def _runs(days: list[str]) -> list[str]:
+    """Join consecutive days: ["2025-07-01 to 2025-07-03", "2025-07-09"]."""
+    runs: list[list[str]] = []
+    for day in days:
+        if runs and (date.fromisoformat(day) - date.fromisoformat(runs[-1][-1])).days == 1:
+            runs[-1] = [runs[-1][0], day]
+        else:
+            runs.append([day])
+    return [" to ".join(run) for run in runs]

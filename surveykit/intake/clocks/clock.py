@@ -5,10 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 from math import hypot
 
+from surveykit.intake.records import NS
 from surveykit.statistics.alignment import Line
 from surveykit.statistics.correlation import Lag
 
-NS = 1_000_000_000
 REFUSED = "clock refused"
 
 
@@ -78,9 +78,12 @@ class Clock:
     refusal: str = ""
 
     def piece(self, time_ns: float) -> Piece | None:
-        """Return the stretch that holds a time of the campaign, or the nearest; None: declared."""
-        return min(self.pieces, default=None,
-                   key=lambda p: max(p.first_ns - time_ns, time_ns - p.last_ns, 0))
+        """Return the stretch that holds a time of the campaign, or the nearest; None: declared.
+
+        Of two that do, as a refused one may where its times are wrong, the one that is not refused.
+        """
+        return min(self.pieces, default=None, key=lambda p: (
+            max(p.first_ns - time_ns, time_ns - p.last_ns, 0), bool(p.refusal)))
 
     def u_at(self, time_ns: float) -> float:
         """Return u [s] at a time: against the sheet's watch with `to_watch`, else against UTC."""

@@ -12,11 +12,10 @@ from surveykit.core import FloatArray, IntArray
 from surveykit.intake.clocks.signals import COVERED, LIGHT, first_of, readings
 from surveykit.intake.params import Channel, Settings
 from surveykit.intake.params.settings import ClockSettings
-from surveykit.intake.records import Records
+from surveykit.intake.records import NS, Records
 from surveykit.intake.sheet_words import Entry
 from surveykit.statistics.alignment import Cover, Line, find_covers, fit_line, robust_line
 
-NS = 1_000_000_000
 Candidate = tuple[int, float, float, Cover]  # number of the row, offset and u [s], what was found
 NEAR_TIE = 0.5  # of the clearness of the best offset: another as clear makes it ambiguous
 
@@ -54,7 +53,7 @@ def see(records: Records, channels: Sequence[Channel], part: IntArray, rows: Seq
     channel = first_of(channels, COVERED)
     if channel is None:
         return Seen({}, "it has no channel that a cover changes")
-    time_s, values = readings(records, channel, settings, part, origin_ns)
+    time_s, values = readings(records, channel, settings, origin_ns, part)
     limits = settings.clocks
     candidates: list[Candidate] = []
     for number, row in enumerate(rows):

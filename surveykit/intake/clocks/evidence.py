@@ -7,7 +7,8 @@ from collections.abc import Sequence
 import numpy as np
 import pandas as pd
 
-from surveykit.intake.clocks.clock import NS, Clock
+from surveykit.intake.clocks.clock import Clock
+from surveykit.intake.records import NS
 
 EVENTS = ("logger", "reference", "status", "cover", "edge", "time_utc", "offset_s", "fitted_s",
           "residual_s", "u_s")

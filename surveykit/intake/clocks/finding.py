@@ -9,13 +9,13 @@ from math import hypot
 import numpy as np
 
 from surveykit.core import FloatArray, IntArray
-from surveykit.intake.clocks.clock import NS, REFUSED, Clock, Event, Piece
+from surveykit.intake.clocks.clock import REFUSED, Clock, Event, Piece
 from surveykit.intake.clocks.covers import Fit, Seen, fit, see, too_far, written_u_s
 from surveykit.intake.clocks.signals import in_common, readings
-from surveykit.intake.clocks.stretches import stretches
-from surveykit.intake.params import Channel, Parameters
+from surveykit.intake.clocks.stretches import judged_apart, stretches
+from surveykit.intake.params import Parameters
 from surveykit.intake.params.timekeeping import Clock as Stated
-from surveykit.intake.records import NO_TIME_NS, Records, in_order
+from surveykit.intake.records import NS, Records, clock_text, in_order
 from surveykit.intake.sheet_words import Entry
 from surveykit.statistics.alignment import Line, edge_u_s
 from surveykit.statistics.correlation import Lag, correlate
@@ -24,7 +24,7 @@ LEAST_SEARCH_S = 30.0  # of a cover in a logger whose clock is set
 
 
 @dataclass(frozen=True)
-class Set:
+class Timed:
     """A logger whose clock is set: its records in the campaign's time, and the clock."""
 
     records: Records
@@ -48,7 +48,7 @@ NOTHING = Line(0.0, 0.0, 0.0, float("inf"), 0.0)
 
 
 def find_clock(log: Records, stated: Stated, parameters: Parameters, rows: Sequence[Entry],
-               reference: Set | None) -> Set:
+               reference: Timed | None) -> Timed:
     """Return a logger with its clock found, stretch by stretch between resets.
 
     Parameters
@@ -61,17 +61,17 @@ def find_clock(log: Records, stated: Stated, parameters: Parameters, rows: Seque
         The campaign and its kit.
     rows : sequence of Entry
         The sheet's cover rows.
-    reference : Set or None
+    reference : Timed or None
         The logger to align with; None: the sheet's written times.
     """
-    n, origin_ns = log.n_timed, int(log.time_ns[0]) if log.n_timed else 0
-    ways = _Search(log, stated, parameters, rows, reference, origin_ns)
+    origin_ns = int(log.time_ns[0]) if log.n_timed else 0
     parts = stretches(log, parameters.settings.clocks.jump_s)
-    groups = _joined(ways, parts.number, parts.back)
+    log = judged_apart(log, parts)
+    ways = _Search(log, stated, parameters, rows, reference, origin_ns)
     time_ns = log.time_ns.copy()
     refused = np.zeros(len(log), dtype=np.bool_)
     pieces, found = [], []
-    for rows_in in groups:
+    for rows_in in _joined(ways, parts.number, parts.back):
         one = ways.find(rows_in)
         line = NOTHING._replace(offset_s=stated.offset_s.value) if one.refusal else one.line
         moved = log.time_ns[rows_in] + np.rint(
@@ -82,17 +82,9 @@ def find_clock(log: Records, stated: Stated, parameters: Parameters, rows: Seque
         pieces.append(Piece(int(moved[0]), int(moved[-1]), origin_ns, line,
                             (known[0], known[1]), one.refusal))
         found.append(one)
-    moved_log = replace(log, time_ns=time_ns)
-    if sum(parts.back):
-        stepped = log.marks["time stepped back"].copy()
-        stepped[:n] &= refused[:n]
-        moved_log = replace(moved_log, marks=log.marks | {"time stepped back": stepped})
-    order = np.argsort(np.where(time_ns == NO_TIME_NS, np.iinfo(np.int64).max, time_ns),
-                       kind="stable")
-    moved_log = in_order(moved_log)
-    if refused.any():
-        moved_log = replace(moved_log, marks=moved_log.marks | {REFUSED: refused[order]})
-    return Set(moved_log, _clock(ways, tuple(pieces), found))
+    marks = log.marks | ({REFUSED: refused} if refused.any() else {})
+    return Timed(in_order(replace(log, time_ns=time_ns, marks=marks), parts.number),
+                 _clock(ways, tuple(pieces), found))
 
 
 @dataclass(frozen=True)
@@ -103,14 +95,11 @@ class _Search:
     stated: Stated
     parameters: Parameters
     rows: Sequence[Entry]
-    reference: Set | None
+    reference: Timed | None
     origin_ns: int
 
-    def channels(self, logger: str) -> tuple[Channel, ...]:
-        return self.parameters.channels(logger)
-
     def covers(self, part: IntArray) -> Seen:
-        return see(self.log, self.channels(self.log.logger), part, self.rows,
+        return see(self.log, self.parameters.channels(self.log.logger), part, self.rows,
                    self.parameters.settings, offset_s=self.stated.offset_s.value,
                    search_s=self.stated.search_s, origin_ns=self.origin_ns)
 
@@ -165,7 +154,7 @@ class _Search:
         reach = max((3 * hypot(other.clock.u_against_watch(
             r.start_ns, self.parameters.campaign.watch.offset.u), r.edge_u_s)
             for r in self.rows), default=0.0)
-        theirs = see(other.records, self.channels(other.clock.logger),
+        theirs = see(other.records, self.parameters.channels(other.clock.logger),
                      np.arange(other.records.n_timed), self.rows, settings, offset_s=0.0,
                      search_s=max(reach, LEAST_SEARCH_S), origin_ns=self.origin_ns)
         return {n: (c.start_s, c.stop_s, c.start_step_s, c.stop_step_s, 0.0)
@@ -175,13 +164,11 @@ class _Search:
         assert self.reference is not None
         limits = self.parameters.settings.clocks
         other, name = self.reference.records, self.reference.clock.logger
-        pair = in_common(self.channels(self.log.logger), self.channels(name))
+        pair = in_common(self.parameters.channels(self.log.logger), self.parameters.channels(name))
         if pair is None:
             return _Found(NOTHING, (0.0, 0.0), f"{why}, and it shares no signal with {name}")
-        time_s, values = readings(self.log, pair[0], self.parameters.settings, part,
-                                  self.origin_ns)
-        other_s, others = readings(other, pair[1], self.parameters.settings,
-                                   np.arange(other.n_timed), self.origin_ns)
+        time_s, values = readings(self.log, pair[0], self.parameters.settings, self.origin_ns, part)
+        other_s, others = readings(other, pair[1], self.parameters.settings, self.origin_ns)
         step_s = max(self.log.interval_s, other.interval_s)
         lag = correlate(other_s, others, time_s, values, search_s=self.stated.search_s,
                         step_s=step_s, centre_s=self.stated.offset_s.value)
@@ -234,28 +221,29 @@ def _clock(ways: _Search, pieces: tuple[Piece, ...], found: list[_Found]) -> Clo
         for f in found if f.fit is not None for place, number in enumerate(f.numbers))
     lag = next((f.lag for f in found if f.lag is not None), None)
     by = f"aligned with {other.logger}" if other else "cover events"
+    clock = Clock(name, by, float("nan"), float("nan"), float("nan"), "refused", "", pieces,
+                  other.to_watch if other else True, other, events, lag)
     if not good:
         why = found[0].refusal if found else "it holds no record with a readable time"
-        return Clock(name, by, float("nan"), float("nan"), float("nan"), "refused",
-                     f"the clock of {name} could not be set: {why}", pieces, False, other,
-                     events, lag, f"the clock of {name} could not be set: {why}")
+        why = f"the clock of {name} could not be set: {why}"
+        return replace(clock, note=why, refusal=why)
     piece, first = good[0]
-    clock = Clock(name, f"{by}, by {'covers' if first.fit else 'correlation'}" if other else by,
-                  piece.line.offset_s, 0.0, 1e6 * piece.line.slope, "ok", "", pieces,
-                  other.to_watch if other else True, other, events, lag)
+    if other:
+        by += ", by covers" if first.fit else ", by correlation"
     ends = [max(clock.u_at(t) for t in p.known_ns) for p, _ in good]
     u_s = max(ends)
     if clock.to_watch:
         u_s = hypot(u_s, ways.parameters.campaign.watch.offset.u)
     left = [p for p in pieces if p.refusal]
     status = "qualified" if left or (other is not None and other.status != "ok") else "ok"
-    return replace(clock, u_s=u_s, status=status, note=_note(good, left, other))
+    return replace(clock, method=by, offset_s=piece.line.offset_s, u_s=u_s,
+                   drift_ppm=1e6 * piece.line.slope, status=status, note=_note(good, left, other))
 
 
 def _note(good: list[tuple[Piece, _Found]], left: list[Piece], other: Clock | None) -> str:
     notes = []
     for piece, one in good:
-        at = str(np.datetime64(piece.at_ns, "ns").astype("datetime64[s]"))[11:]
+        at = clock_text(piece.at_ns)[11:]
         if one.fit is not None:
             notes.append(
                 f"{len(one.fit.time_s) // 2} covers, largest distance of an edge from the line "

@@ -8,16 +8,18 @@ from dataclasses import replace
 import numpy as np
 
 from surveykit.intake.clocks.checking import against_each_other, against_the_sun
-from surveykit.intake.clocks.clock import NS, REFUSED, Clock, Piece
+from surveykit.intake.clocks.clock import REFUSED, Clock, Piece
 from surveykit.intake.clocks.covers import too_far
-from surveykit.intake.clocks.finding import Set, find_clock
-from surveykit.intake.clocks.stretches import stretches
+from surveykit.intake.clocks.finding import Timed, find_clock
+from surveykit.intake.clocks.stretches import judged_apart, stretches
 from surveykit.intake.fieldsheet import Sheet
 from surveykit.intake.params import LoggerUse, Parameters, Settings
-from surveykit.intake.records import NO_TIME_NS, Records
+from surveykit.intake.records import NO_TIME_NS, NS, Records, clock_text
 from surveykit.statistics.alignment import Line
 
 MOST_RESETS = 20
+DISORDER = "its time steps back {} times: the lines of its files are out of order"
+SET_BY = "it is set by that of {}, which is refused itself"
 
 
 def set_clock(records: Records, use: LoggerUse, settings: Settings) -> tuple[Records, Clock]:
@@ -69,22 +71,24 @@ def set_clocks(logs: Mapping[str, Records], parameters: Parameters, sheet: Sheet
     uses, rows = parameters.campaign.loggers, []
     if sheet is not None:
         rows = [entry for entry in sheet.entries if entry.entry == "cover"]
-    done: dict[str, Set] = {}
+    done: dict[str, Timed] = {}
 
-    def settle(name: str, above: tuple[str, ...] = ()) -> Set:
+    def settle(name: str, above: tuple[str, ...] = ()) -> Timed:
         if name not in done:
             stated = uses[name].clock
             partner = stated.align_with if stated is not None else None
             if stated is None or not stated.found or sheet is None:
                 done[name] = _declared(logs[name], uses[name], parameters.settings)
+            elif (backs := sum(stretches(logs[name], float("inf")).back)) > MOST_RESETS:
+                done[name] = _refuse(logs[name], DISORDER.format(backs))
             elif partner is None:
                 done[name] = find_clock(logs[name], stated, parameters, rows, None)
             elif partner not in logs:
                 done[name] = _refuse(logs[name], f"its reference {partner} could not be read")
             elif partner in (name, *above):  # of parameters that are refused for it
-                return _refuse(logs[name], f"it hangs on that of {partner}, which hangs on it")
+                return _refuse(logs[name], f"it is set by that of {partner}, which it sets")
             elif settle(partner, (name, *above)).clock.refusal:
-                done[name] = _refuse(logs[name], f"it hangs on that of {partner}, refused itself")
+                done[name] = _refuse(logs[name], SET_BY.format(partner))
             else:
                 done[name] = find_clock(logs[name], stated, parameters, rows, done[partner])
         return done[name]
@@ -94,52 +98,57 @@ def set_clocks(logs: Mapping[str, Records], parameters: Parameters, sheet: Sheet
         wrong = against_each_other(ordered, parameters)
         if placed:
             wrong = against_the_sun(ordered, parameters) | wrong
-        for name, why in wrong.items():
-            ordered[name] = _taken_out(ordered[name], why)
+        for name, one in ordered.items():
+            on = one.clock.reference
+            while on is not None and name not in wrong:
+                if on.logger in wrong:
+                    wrong[name] = SET_BY.format(on.logger)
+                on = on.reference
+            if name in wrong:
+                ordered[name] = _taken_out(one, wrong[name])
     return ({name: one.records for name, one in ordered.items()},
             tuple(one.clock for one in ordered.values()))
 
 
-def _declared(log: Records, use: LoggerUse, settings: Settings) -> Set:
+def _declared(log: Records, use: LoggerUse, settings: Settings) -> Timed:
     """Take a clock as stated; what follows a reset of it is refused."""
     records, clock = set_clock(log, use, settings)
     limits = settings.clocks
     if abs(clock.offset_s) > limits.max_offset_s:
-        return _taken_out(Set(records, clock), too_far(clock.offset_s, limits))
+        return _taken_out(Timed(records, clock), too_far(clock.offset_s, limits))
     if abs(clock.drift_ppm) > limits.max_drift_ppm:
-        return _taken_out(Set(records, clock), (
+        return _taken_out(Timed(records, clock), (
             f"its drift of {clock.drift_ppm:+g} ppm is beyond {limits.max_drift_ppm:g} ppm "
             "(settings.clocks.max_drift_ppm)"))
     parts = stretches(log, float("inf"))
     if len(parts.back) == 1:
-        return Set(records, clock)
+        return Timed(records, clock)
     if len(parts.back) > MOST_RESETS:
-        return _taken_out(Set(records, clock),
-                          f"its time steps back {len(parts.back) - 1} times: the lines of its "
-                          "files are out of order")
-    after = parts.number > 0
-    at = str(np.datetime64(int(log.time_ns[np.argmax(parts.number == 1)]), "ns"))[:19]
-    why = (f"the clock of {log.logger} steps back to {at} UTC of its own, and its offset holds for "
-           "what came before: cover all heads twice after a reset and write cover_events")
-    marked = np.zeros(len(records), dtype=np.bool_)
-    marked[:after.size] = after
+        return _taken_out(Timed(records, clock), DISORDER.format(len(parts.back) - 1))
+    first = int(np.argmax(parts.number == 1))
+    why = (f"the clock of {log.logger} steps back to {clock_text(log.time_ns[first])} UTC of its "
+           f"own ({log.files[log.file[first]].path}, line {log.line[first]}); its offset holds for "
+           "what came before, what follows is left out: where all heads were covered twice after "
+           "a reset, write cover_events")
     pieces = []
-    for late in (False, True):
-        time = records.time_ns[:after.size][after == late]
+    for part, refusal in ((parts.number == 0, ""), (parts.number > 0, why)):
+        time = records.time_ns[part]
         pieces.append(Piece(int(time[0]), int(time[-1]), int(time[0]),
                             Line(0.0, 0.0, 0.0, clock.u_s**2, 0.0), (int(time[0]), int(time[-1])),
-                            why if late else ""))
-    return Set(replace(records, marks=records.marks | {REFUSED: marked}), replace(
+                            refusal))
+    records = judged_apart(records, parts)
+    return Timed(replace(records, marks=records.marks | {REFUSED: parts.number > 0}), replace(
         clock, status="qualified", pieces=tuple(pieces), note=f"{clock.note}; {why}"))
 
 
-def _refuse(log: Records, why: str) -> Set:
-    return _taken_out(Set(log, Clock(log.logger, "refused", np.nan, np.nan, np.nan, "ok", "")), why)
+def _refuse(log: Records, why: str) -> Timed:
+    clock = Clock(log.logger, "refused", np.nan, np.nan, np.nan, "ok", "")
+    return _taken_out(Timed(log, clock), why)
 
 
-def _taken_out(one: Set, why: str) -> Set:
+def _taken_out(one: Timed, why: str) -> Timed:
     """Return a logger whose clock is refused: every record marked, the reason kept."""
     why = f"the clock of {one.clock.logger} is refused: {why}"
     every = np.ones(len(one.records), dtype=np.bool_)
-    return Set(replace(one.records, marks=one.records.marks | {REFUSED: every}),
-               replace(one.clock, status="refused", note=why, refusal=why))
+    return Timed(replace(one.records, marks=one.records.marks | {REFUSED: every}),
+                 replace(one.clock, status="refused", note=why, refusal=why))

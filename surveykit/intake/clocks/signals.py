@@ -8,9 +8,8 @@ import numpy as np
 
 from surveykit.core import FloatArray, IntArray
 from surveykit.intake.params import Channel, Settings
-from surveykit.intake.records import Records
+from surveykit.intake.records import NS, Records
 
-NS = 1_000_000_000
 LIGHT = ("shortwave_down", "nir_down", "red_down", "shortwave_up", "nir_up", "red_up")
 COVERED = (*LIGHT, "brightness_temperature", "longwave_down", "longwave_up")
 
@@ -32,13 +31,15 @@ def in_common(one: Sequence[Channel], two: Sequence[Channel]) -> tuple[Channel, 
     return min(pairs, key=unlike, default=None)
 
 
-def readings(log: Records, channel: Channel, settings: Settings, part: IntArray,
-             origin_ns: int) -> tuple[FloatArray, FloatArray]:
-    """Return time [s since origin_ns] and good readings [SI] of the records `part`, ascending."""
-    marked = np.zeros(len(log), dtype=np.bool_)
-    for name, mark in log.marks.items():
-        if name != "time stepped back":  # which is what the stretches are for
-            marked |= mark
+def readings(log: Records, channel: Channel, settings: Settings, origin_ns: int,
+             part: IntArray | None = None) -> tuple[FloatArray, FloatArray]:
+    """Return time [s since origin_ns] and good readings [SI], ascending; of all records or a part.
+
+    `part` holds the places of records that have a time.
+    """
+    if part is None:
+        part = np.arange(log.n_timed)
+    marked = np.logical_or.reduce([*log.marks.values()])
     values = log.channels[channel.column][part]
     low, high = settings.quality.range_of(channel.quantity)
     with np.errstate(invalid="ignore"):

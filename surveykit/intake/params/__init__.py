@@ -6,13 +6,13 @@ from surveykit.intake.params.channels import Channel
 from surveykit.intake.params.heads import Calibration
 from surveykit.intake.params.instruments import Instrument
 from surveykit.intake.params.loading import (
-    is_kit,
     is_kit_file,
     load,
     load_kit,
     read_plain,
     refuse_other_sections,
 )
+from surveykit.intake.params.partly import is_kit
 from surveykit.intake.params.paths import find_root
 from surveykit.intake.params.schema import campaign_schema, instruments_schema, write_schemas
 from surveykit.intake.params.sections import LoggerUse

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import difflib
 import re
 import unicodedata
 from collections.abc import Iterable, Mapping
@@ -22,6 +23,17 @@ Fault = tuple[Loc, str]
 def fault(text: str) -> PydanticCustomError:
     """Return the error whose sentence is `text` as it stands (braces are not a template)."""
     return PydanticCustomError("fault", "{text}", {"text": text})
+
+
+def nearest(name: Any, known: Iterable[str]) -> str | None:
+    """Return the known name that comes close to `name`, None if none does."""
+    return next(iter(difflib.get_close_matches(str(name), known, 1, 0.6)), None)
+
+
+def meant(name: Any, known: Iterable[str]) -> str:
+    """Return the part of a sentence that asks for the known name close to `name`, "" if none is."""
+    close = nearest(name, known)
+    return f"did you mean {close}? " if close else ""
 
 
 class Strict(BaseModel):

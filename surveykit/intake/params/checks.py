@@ -2,58 +2,48 @@
 
 from __future__ import annotations
 
-import difflib
+import os
 from collections.abc import Iterator, Mapping
 from pathlib import Path
-from typing import Any
 
-from surveykit.intake.params.base import Fault, Loc
+from surveykit.intake.params.base import Fault, Loc, meant
+from surveykit.intake.params.campaign import Campaign
 from surveykit.intake.params.heads import Calibration
 from surveykit.intake.params.instruments import Instrument
 from surveykit.intake.params.paths import path_fault
-from surveykit.intake.params.sections import Comparison, LoggerUse, Surface
-from surveykit.intake.params.settings import Settings
+from surveykit.intake.params.sections import Comparison
 from surveykit.intake.params.timekeeping import clock_faults
 
 
 def cross_faults(
-        sections: Mapping[str, Any], names: Mapping[str, tuple[str, ...]], path: Path,
+        campaign: Campaign, names: Mapping[str, tuple[str, ...]], path: Path,
         root: Path) -> Iterator[Fault]:
     """Yield the faults between sections of a campaign.
 
     Parameters
     ----------
-    sections : mapping
-        The valid top-level sections by key; what is at fault itself is absent.
+    campaign : Campaign
+        What is valid of it.
     names : mapping
-        The names under `surfaces` and `loggers` and in the `kit`, valid or not; a name absent from
-        this mapping is not checked.
+        The names under `surfaces` and `loggers` and in the `kit`, valid or not; none where they
+        are not known.
     path, root : Path
         The parameter file and the project folder.
     """
-    campaign = sections.get("campaign")
-    if campaign is not None and campaign != path.stem:
-        yield ("campaign",), f"got {campaign!r} in the file {path.name}; write {path.stem}, " \
-                             f"or name the file {campaign}.yml"
-    yield from _paths(sections, root)
-    loggers: dict[str, LoggerUse] = sections.get("loggers", {})
-    yield from clock_faults({name: use.clock for name, use in loggers.items()},
-                            names.get("loggers", ()))
-    comparison: Comparison | None = sections.get("comparison")
-    if comparison is not None:
-        yield from _comparison(comparison, names.get("surfaces", ()), path, root)
-    for index, done in enumerate(sections.get("interventions", ())):
-        yield from _no_surface(("interventions", index, "surface"), done.surface,
-                               names.get("surfaces", ()))
-    if "kit" in names:
-        for name in names.get("loggers", ()):
-            if name not in names["kit"]:
-                yield ("loggers", name), "no such entry in the kit; " \
-                    + _known("write one of", name, names["kit"])
-    settings: Settings | None = sections.get("settings")
-    surfaces: dict[str, Surface] = sections.get("surfaces", {})
-    for name, surface in surfaces.items():
-        limit = (settings or Settings()).temperature.min_emissivity
+    if campaign.campaign != path.stem:
+        yield ("campaign",), f"got {campaign.campaign!r} in the file {path.name}; write " \
+                             f"{path.stem}, or name the file {campaign.campaign}.yml"
+    yield from _paths(campaign, root)
+    loggers, surfaces = names.get("loggers", ()), names.get("surfaces", ())
+    yield from clock_faults({name: use.clock for name, use in campaign.loggers.items()}, loggers)
+    yield from _comparison(campaign.comparison, surfaces, path, root)
+    for index, done in enumerate(campaign.interventions):
+        yield from _no_surface(("interventions", index, "surface"), done.surface, surfaces)
+    for name in loggers:
+        if names["kit"] and name not in names["kit"]:
+            yield ("loggers", name), "no such entry in the kit; " + _known(name, names["kit"])
+    limit = campaign.settings.temperature.min_emissivity
+    for name, surface in campaign.surfaces.items():
         if surface.emissivity is not None and (surface.emissivity.value or 1.0) < limit:
             yield ("surfaces", name, "emissivity", "value"), (
                 f"got {surface.emissivity.value:g}; below {limit:g} "
@@ -61,25 +51,22 @@ def cross_faults(
                 "write the value of the surface, or leave emissivity out")
 
 
-def _paths(sections: Mapping[str, Any], root: Path) -> Iterator[Fault]:
-    kit = sections.get("instruments")
+def _paths(campaign: Campaign, root: Path) -> Iterator[Fault]:
+    kit = campaign.instruments
     if isinstance(kit, str):
         wrong = path_fault(root, kit)
-        if not wrong and not (root / kit).is_file():
+        if not wrong and not os.path.isfile(root / kit):
             wrong = f"got {kit!r}, but there is no such file; write the path of the kit, " \
                     "such as params/instruments.yml"
         if wrong:
             yield ("instruments",), wrong
-    folder = sections.get("data_folder")
-    wrong = path_fault(root, folder) if folder is not None else None
+    wrong = path_fault(root, campaign.data_folder)
     if wrong:
         yield ("data_folder",), wrong
-    base = root if folder is None or wrong else root / folder
-    sheet = sections.get("field_sheet")
-    if sheet is not None and (wrong := path_fault(root, sheet, base)):
+    base = root if wrong else root / campaign.data_folder
+    if wrong := path_fault(root, campaign.field_sheet, base):
         yield ("field_sheet",), wrong
-    loggers: dict[str, LoggerUse] = sections.get("loggers", {})
-    for name, use in loggers.items():
+    for name, use in campaign.loggers.items():
         for index, pattern in enumerate(use.files):
             if wrong := path_fault(root, pattern, base):
                 yield ("loggers", name, "files", index), wrong
@@ -97,27 +84,22 @@ def _comparison(
     if comparison.second_control and comparison.second_control == comparison.control:
         yield ("comparison", "second_control"), f"got {comparison.control!r}, which is control " \
             "already; write another surface"
-    seen: set[Path] = set()
+    seen = {os.path.realpath(path): ", this file itself; write an earlier campaign's file"}
     for index, text in enumerate(comparison.earlier):
-        here: Loc = ("comparison", "earlier", index)
+        target = os.path.realpath(root / text)
         wrong = path_fault(root, text)
+        if not wrong and target in seen:
+            wrong = f"got {text!r}{seen[target]}"
+        elif not wrong and not os.path.isfile(target):
+            wrong = f"got {text!r}, but there is no such file; write an earlier campaign's file"
         if wrong:
-            yield here, wrong
-            continue
-        target = (root / text).resolve()
-        if target == path.resolve():
-            yield here, f"got {text!r}, this file itself; write an earlier campaign's file"
-        elif target in seen:
-            yield here, f"got {text!r} a second time; write it once"
-        elif not target.is_file():
-            yield here, f"got {text!r}, but there is no such file; write an earlier campaign's file"
-        seen.add(target)
+            yield ("comparison", "earlier", index), wrong
+        seen.setdefault(target, " a second time; write it once")
 
 
 def _no_surface(where: Loc, name: str | None, surfaces: tuple[str, ...]) -> Iterator[Fault]:
     if name is not None and surfaces and name not in surfaces:
-        yield where, f"got {name!r}, no surface of this file; " \
-            + _known("write one of", name, surfaces)
+        yield where, f"got {name!r}, no surface of this file; " + _known(name, surfaces)
 
 
 def kit_faults(used: Mapping[str, Instrument], day: str | None) -> Iterator[Fault]:
@@ -160,7 +142,5 @@ def _calibrations(instrument: Instrument) -> Iterator[tuple[Loc, Calibration]]:
             yield ("columns", header, "calibration"), column.calibration
 
 
-def _known(words: str, name: str, known: tuple[str, ...]) -> str:
-    close = difflib.get_close_matches(name, known, 1, 0.6)
-    hint = f"did you mean {close[0]}? " if close else ""
-    return f"{hint}{words} {', '.join(known)}"
+def _known(name: str, known: tuple[str, ...]) -> str:
+    return f"{meant(name, known)}write one of {', '.join(known)}"

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from datetime import date, timedelta
 from typing import Annotated, Literal
 
@@ -74,6 +74,15 @@ class BandConversion(Strict):
     source: Text = key("Where it comes from.", write="where the values come from, plain text")
 
 
+_INFRARED, _SHORTWAVE = ("brightness_temperature",), ("shortwave_down", "shortwave_up")
+_BANDS = ("red_down", "red_up", "nir_down", "nir_up")
+# what only some heads have: told elsewhere, since nothing would come of it
+ONLY_OF: dict[str, tuple[str, ...]] = {
+    "emissivity_setting": _INFRARED, "reflected_setting_degC": _INFRARED,
+    "view_angle_deg": _INFRARED, "band_response": _INFRARED, "class_terms": _SHORTWAVE,
+    "spectrally_flat": _SHORTWAVE, "band_ratio": _BANDS, "band_conversion": _BANDS}
+
+
 def _shape(data: object) -> str:
     return "<explicit>" if isinstance(data, dict | ClassTermsStated) else "<class>"
 
@@ -141,6 +150,15 @@ class Head(Strict):
                     + "; write 2 to 500 [um, response] in place of band_um, wavelengths rising "
                     "within 0.1 to 100, no response below 0, one above")
 
+    def misplaced(self, kind: str, quantities: Iterable[str]) -> Iterator[Fault]:
+        """Yield the faults of what no column of these quantities has."""
+        for name, heads in ONLY_OF.items():
+            value = getattr(self, name, None)
+            if value is not None and set(heads).isdisjoint(quantities):
+                got = f"{value:g}" if isinstance(value, float) else "it"
+                yield (name,), f"got {got} in {kind} of {', '.join(quantities)}; only a column " \
+                               f"of {' or '.join(heads)} has one: leave it out"
+
     @property
     def tau_s(self) -> float | None:
         """Time constant [s], from t95 where that is given (t95 = tau ln 20); None if unstated."""
@@ -192,6 +210,4 @@ class Column(Head):
         if self.quantity in MAIN and all(u is None for u in stated):
             yield (), f"a column of {self.quantity} must state u_gain or u_offset " \
                       "(0 is allowed, silence is not)"
-        if self.emissivity_setting is not None and self.quantity != "brightness_temperature":
-            yield ("emissivity_setting",), f"got {self.emissivity_setting:g} in a column of " \
-                f"{self.quantity}; only a brightness_temperature column has one: leave it out"
+        yield from self.misplaced("a column", [self.quantity])

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterator
 from datetime import UTC, datetime
 from typing import Annotated, Any, Literal
@@ -15,6 +16,8 @@ from surveykit.intake.params.heads import Column, Head
 from surveykit.intake.params.quantities import MAIN
 from surveykit.intake.params.settings import Settings
 
+# one byte in every encoding, and in no number or time
+DELIMITERS = "\t !#$%&()*,./:;<=>?@[\\]^_`{|}~"
 COUNTED = ("epoch_s", "day_of_year")
 
 
@@ -45,7 +48,7 @@ class Layout(Strict):
 
     def faults(self) -> list[Fault]:
         """The delimiter separates, and is not the decimal mark."""
-        if self.delimiter.isalnum() or self.delimiter in "\"'\r\n+-":
+        if self.delimiter not in DELIMITERS:
             return [(("delimiter",), f"got {self.delimiter!r}; write one character in quotes, "
                      '"," or ";" or "\\t"')]
         if self.delimiter == self.decimal:
@@ -109,7 +112,7 @@ def _holds_a_moment(form: str) -> bool:
     moment = datetime(2025, 7, 24, 13, 5, tzinfo=UTC)
     try:
         back = datetime.strptime(moment.strftime(form), form)  # noqa: DTZ007
-    except ValueError:
+    except (ValueError, re.error):  # re.error: a directive that stands twice
         return False
     return back.replace(tzinfo=UTC) == moment
 
@@ -130,6 +133,7 @@ class Instrument(Head):
     def faults(self) -> Iterator[Fault]:
         """One column a quantity; the time is a column of its own."""
         yield from super().faults()
+        yield from self.misplaced("an entry", [c.quantity for c in self.columns.values()])
         seen: dict[str, str] = {}
         for header, column in self.columns.items():
             first = seen.setdefault(column.quantity, header)

@@ -2,21 +2,29 @@
 
 from __future__ import annotations
 
-import difflib
 import re
 import types
 import typing
 from collections.abc import Iterable, Mapping
-from typing import Any
+from typing import Any, NamedTuple
 
 from pydantic import ValidationError
 
-from surveykit.intake.params.base import NAME_PATTERN, NAME_WRITE, TEXT_WRITE, Fault, Loc, Strict
+from surveykit.intake.params.base import NAME_WRITE, Fault, Loc, Strict, meant, nearest
 from surveykit.intake.params.reading import Document
 
 NUMBER = re.compile(r"\s*[-+]?[0-9.]+\s*", re.ASCII)
 # what pydantic adds to a location: the choice in `instruments`, and "this is about the key"
 _NOT_KEYS = ("<path>", "<inline>", "<class>", "<explicit>", "[key]")
+# type of error: what to write at an entry of a list or mapping, which has no description of its own
+_ENTRIES = {
+    "string_type": "a text", "float_type": "a number", "int_type": "a whole number",
+    "model_type": "keys and their values", "dict_type": "keys and their values",
+    "string_pattern_mismatch": NAME_WRITE, "literal_error": "{expected}",
+    "string_too_long": "a text of at most {max_length} characters",
+    "greater_than": "a number above {gt:g}", "less_than": "a number below {lt:g}",
+    "greater_than_equal": "a number, {ge:g} or more", "less_than_equal": "a number, at most {le:g}",
+}
 
 
 def located(document: Document, faults: Iterable[Fault]) -> list[str]:
@@ -69,6 +77,68 @@ def shown(value: Any) -> str:
     return text if len(text) <= 60 else text[:56] + "..." + text[-1:]
 
 
+class Place(NamedTuple):
+    """What stands at a location: the keys the user wrote, their model, what to write, what was got.
+
+    `parent` is the model whose key is the last one; `write` belongs to that key, where it has none
+    of its own (`own`) to the nearest above.
+    """
+
+    path: Loc
+    parent: type[Strict] | None
+    write: str
+    own: bool
+    got: Any
+
+
+def place_of(loc: Loc, model: Any, data: Any, *, missing: bool = False) -> Place:
+    """Follow a location of pydantic's through `model` and `data`, as far as the user wrote it.
+
+    {value: x} made from a bare x is cut; with `missing`, the last key may be absent.
+    """
+    here, current = Place((), None, "at least one entry", False, data), _unwrap(model)
+    for part in loc:
+        if part in _NOT_KEYS:
+            continue
+        there = (part in here.got if isinstance(here.got, Mapping)
+                 else isinstance(here.got, list) and part in range(len(here.got)))
+        if not there and not (missing and isinstance(here.got, Mapping)):
+            break
+        parent = current if _is_model(current) else None
+        info = keys_of(parent).get(str(part))
+        if parent is None:  # an entry: of a mapping by its name, of a list by its number
+            entry = typing.get_args(current)
+            current = _unwrap(entry[-1 if typing.get_origin(current) is dict else 0])
+        else:
+            current = _unwrap(info.annotation if info else None)
+        write = info.json_schema_extra["write"] if info else ""
+        here = Place((*here.path, part), parent, write or here.write, bool(write),
+                     here.got[part] if there else None)
+    return here
+
+
+def keys_of(model: type[Strict] | None) -> dict[str, Any]:
+    """Return the fields of a model by the keys people write."""
+    return {} if model is None else {
+        field.alias or name: field for name, field in model.model_fields.items()}
+
+
+def _is_model(annotation: Any) -> bool:
+    return isinstance(annotation, type) and issubclass(annotation, Strict)
+
+
+def _unwrap(annotation: Any) -> Any:
+    # Annotated[X, ...] -> X; of a union, the part that has keys or entries.
+    origin, parts = typing.get_origin(annotation), typing.get_args(annotation)
+    if origin is typing.Annotated:
+        return _unwrap(parts[0])
+    if origin not in (typing.Union, types.UnionType):
+        return annotation
+    plain = [_unwrap(part) for part in parts]
+    return next((part for part in plain
+                 if typing.get_origin(part) in (dict, tuple) or _is_model(part)), plain[0])
+
+
 def model_faults(
         error: ValidationError, model: Any, data: Any, skip: Iterable[Loc] = ()) -> list[Fault]:
     """Return the faults of a failed validation of `data` against `model`.
@@ -83,129 +153,42 @@ def model_faults(
     skip : iterable of tuple
         Key paths already found at fault; nothing more is said about them.
     """
-    skipped = set(skip)
-    faults: list[tuple[str, Fault]] = []
+    found = []
     for item in error.errors(include_url=False):
-        kind = str(item["type"])
-        loc = keys_of(item["loc"])
-        path = written(loc, data, missing=kind in ("missing", "fault"))
-        if kind == "missing" and path != loc:
-            kind = "incomplete"
-        if any(path[:n] in skipped for n in range(1, len(path) + 1)):
-            continue
-        word, text = _sentence(kind, dict(item), path, model, data)
-        faults.append((word, (path, text)))
-    # A misspelt key explains that the one it meant is missing.
-    meant = {(*path[:-1], _close(str(path[-1]), model_at(model, path[:-1])))
-             for word, (path, _) in faults if word == "unknown"}
-    return [fault for word, fault in faults if word != "missing" or fault[0] not in meant]
+        kind = item["type"]
+        place = place_of(item["loc"], model, data, missing=kind in ("missing", "fault"))
+        if not under(place.path, skip):
+            found.append((*_sentence(kind, item, place), place))
+    # A misspelt key explains that the one it meant is missing, an entry that its list is short.
+    told = {(*place.path[:-1], nearest(str(place.path[-1]), keys_of(place.parent)))
+            for word, _, place in found if word == "unknown"}
+    told |= {place.path[:n] for *_, place in found for n in range(1, len(place.path))}
+    return [(place.path, text) for word, text, place in found
+            if word not in ("missing", "too_short") or place.path not in told]
 
 
-def _close(name: str, parent: type[Strict] | None) -> str | None:
-    known = parent.model_fields if parent is not None else {}
-    return next(iter(difflib.get_close_matches(name, known, 1, 0.6)), None)
+def under(path: Loc, others: Iterable[Loc]) -> bool:
+    """Return whether a key path is one of the others or lies below one."""
+    return not {path[:n] for n in range(1, len(path) + 1)}.isdisjoint(others)
 
 
-def keys_of(loc: Loc) -> Loc:
-    """Return pydantic's location without what stands for no key."""
-    return tuple(part for part in loc if part not in _NOT_KEYS)
-
-
-def written(loc: Loc, data: Any, *, missing: bool = False) -> Loc:
-    """Return the part of a location that the user wrote; with `missing`, down to an absent key.
-
-    {value: x} made from a bare x is cut.
-    """
-    for n, part in enumerate(loc):
-        if isinstance(data, Mapping) and part in data:
-            data = data[part]
-        elif isinstance(data, list | tuple) and isinstance(part, int) and part < len(data):
-            data = data[part]
-        elif missing and isinstance(data, Mapping):
-            return loc
-        else:
-            return loc[:n]
-    return loc
-
-
-def _sentence(
-        kind: str, item: dict[str, Any], path: Loc, model: Any, data: Any) -> tuple[str, str]:
+def _sentence(kind: str, item: Mapping[str, Any], place: Place) -> tuple[str, str]:
+    """Return a word for the kind of fault, and the sentence."""
+    got, write = place.got, place.write
     if kind == "fault":
-        return "fault", item["msg"]
+        return kind, item["msg"]
+    if not place.own and kind in _ENTRIES:
+        write = _ENTRIES[kind].format(**item.get("ctx", {}))
     if item["loc"][-1:] == ("[key]",):
-        return "name", f"got the name {shown(path[-1])}; write {_fallback(kind, item)}"
-    parent = model_at(model, path[:-1])
-    known = {} if parent is None else {
-        field.alias or name: field for name, field in parent.model_fields.items()}
-    if kind == "extra_forbidden" and parent is not None:
-        close = _close(str(path[-1]), parent)
-        hint = f"did you mean {close}? " if close else ""
-        return "unknown", f"unknown key; {hint}known here: {', '.join(known)}"
-    write = _write(known.get(str(path[-1]))) if path else None
-    got = _at(data, path)
-    if kind == "missing":
-        return "missing", f"missing; write {write or 'it'}"
-    if write is None:
-        write = _fallback(kind, item)
+        return "name", f"got the name {shown(place.path[-1])}; write {write}"
+    if kind == "extra_forbidden":
+        known = keys_of(place.parent)
+        return "unknown", f"unknown key; {meant(place.path[-1], known)}known here: " \
+            + ", ".join(known)
+    if kind == "missing" and got is None and place.own:
+        return kind, f"missing; write {write}"
     if kind == "string_type" and isinstance(got, int | float) and not isinstance(got, bool):
         write += f', in quotes: "{got}"' if "quotes" not in write else f': "{got}"'
     if kind in ("float_type", "int_type") and isinstance(got, str) and NUMBER.fullmatch(got):
         write += ", without quotes"
-    return "value", f"got {shown(got)}; write {write}"
-
-
-def _fallback(kind: str, item: dict[str, Any]) -> str:
-    words = {
-        "string_type": "a text", "float_type": "a number", "int_type": "a whole number",
-        "model_type": "keys and their values", "dict_type": "keys and their values",
-        "string_pattern_mismatch": NAME_WRITE
-        if item.get("ctx", {}).get("pattern") == NAME_PATTERN else "another text",
-        "string_too_long": TEXT_WRITE,
-    }
-    return words.get(kind, "another value (" + str(item["msg"]).lower() + ")")
-
-
-def _at(data: Any, path: Loc) -> Any:
-    for part in path:
-        try:
-            data = data[part]
-        except (KeyError, IndexError, TypeError):
-            return None
-    return data
-
-
-def _write(info: Any) -> str | None:
-    extra = getattr(info, "json_schema_extra", None)
-    return str(extra["write"]) if isinstance(extra, dict) and "write" in extra else None
-
-
-def model_at(model: Any, path: Loc) -> type[Strict] | None:
-    """Return the model whose keys stand at `path` below `model`, None if none does."""
-    current = _unwrap(model)
-    for part in path:
-        if _is_model(current):
-            info = current.model_fields.get(str(part))
-            if info is None:
-                return None
-            current = _unwrap(info.annotation)
-        elif typing.get_origin(current) is dict:
-            current = _unwrap(typing.get_args(current)[1])
-        else:
-            return None
-    return current if _is_model(current) else None
-
-
-def _is_model(annotation: Any) -> bool:
-    return isinstance(annotation, type) and issubclass(annotation, Strict)
-
-
-def _unwrap(annotation: Any) -> Any:
-    # Annotated[X, ...] -> X; of a union, the part that has keys.
-    origin, parts = typing.get_origin(annotation), typing.get_args(annotation)
-    if origin is typing.Annotated:
-        return _unwrap(parts[0])
-    if origin not in (typing.Union, types.UnionType):
-        return annotation
-    plain = [_unwrap(part) for part in parts]
-    return next((part for part in plain if typing.get_origin(part) is dict or _is_model(part)),
-                plain[0])
+    return kind, f"got {shown(got)}; write {write}"

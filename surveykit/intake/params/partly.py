@@ -1,29 +1,31 @@
-"""What can be read of a parameter file at fault, so that logs and sheet are checked as well."""
+"""All faults of a parameter file and of its kit, and what can be read of them nevertheless."""
 
 from __future__ import annotations
 
+import os
 import re
 from collections.abc import Callable, Mapping
 from copy import deepcopy
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from datetime import datetime
 from pathlib import Path
 from typing import Any, TypeVar
 from zoneinfo import ZoneInfo
 
-from pydantic import ValidationError
+from pydantic import TypeAdapter, ValidationError
 
 from surveykit.core import InputError
-from surveykit.intake.params.base import NAME_PATTERN
-from surveykit.intake.params.campaign import Campaign, Parameters
+from surveykit.intake.params.base import NAME_PATTERN, Fault
+from surveykit.intake.params.campaign import Campaign, Kit, Parameters
+from surveykit.intake.params.checks import cross_faults, kit_faults, kit_notes
 from surveykit.intake.params.instruments import Instrument, zone_fault
-from surveykit.intake.params.loading import display_name, load
-from surveykit.intake.params.messages import keys_of, written
-from surveykit.intake.params.paths import find_root, path_fault
-from surveykit.intake.params.reading import read_document
+from surveykit.intake.params.messages import located, model_faults, place_of, under
+from surveykit.intake.params.paths import display_name, path_fault, root_of
+from surveykit.intake.params.reading import Document, read_document
 from surveykit.intake.params.settings import Settings
 
-Model = TypeVar("Model")
+Model = TypeVar("Model", Campaign, Instrument)
+_KIT: TypeAdapter[dict[str, Instrument]] = TypeAdapter(Kit)
 _ROUNDS = 60
 _DAY = "2000-01-01"
 
@@ -38,63 +40,183 @@ class Partly:
 
     parameters: Parameters | None
     faults: tuple[str, ...]
-    doubtful: frozenset[str]
+    doubtful: frozenset[str] = frozenset()
 
 
-def load_partly(path: Path | str) -> Partly:
-    """Return the parameters of one campaign, with every fault in place of an exception."""
+def load_partly(path: Path | str, root: Path | None = None) -> Partly:
+    """Return the parameters of one campaign, with every fault in place of an exception.
+
+    `root` is the project folder; it is found from the file upwards where it is not given.
+    """
     path = Path(path).absolute()
     try:
-        return Partly(load(path), (), frozenset())
+        root = root_of(path, root)
+        document = read_document(path, display_name(path, root))
     except InputError as error:
-        faults = error.faults
+        return Partly(None, error.faults)
+    if is_kit(document.data):
+        return Partly(None, (f"{document.name}: is a kit of instruments, not a campaign; "
+                             "name a campaign's parameter file",))
+    return _checked(document, path, root)
+
+
+def is_kit(data: Any) -> bool:
+    """Return whether plain data are an instruments file: no campaign, entries with columns.
+
+    Examples
+    --------
+    >>> is_kit({"thermal": {"columns": {}, "time": {}}}), is_kit({"campaign": "x"})
+    (True, False)
+    """
+    return (isinstance(data, Mapping) and "campaign" not in data
+            and any(isinstance(entry, Mapping) and "columns" in entry for entry in data.values()))
+
+
+def read_kit(
+        document: Document, settings: Settings) -> tuple[dict[str, Instrument], list[Fault]]:
+    """Return what can be read of an instruments file, and its faults."""
+    if "campaign" in document.data:
+        return {}, [((), "is a campaign's parameter file, not a kit; write the path of the kit, "
+                     "such as params/instruments.yml")]
     try:
-        root = find_root(path.parent)
-        data = deepcopy(read_document(path, display_name(path, root)).data)
-        kit = _kit_data(data.get("instruments"), root)
-    except InputError:
-        return Partly(None, faults, frozenset())
-    doubtful: set[str] = set()
-    named = set(data["loggers"]) if isinstance(data.get("loggers"), Mapping) else set()
-    campaign = _mended(lambda: Campaign.model_validate(_filled(data, path, doubtful)), data)
-    if campaign is None or path_fault(root, campaign.data_folder):
-        return Partly(None, faults, frozenset())
-    entries = {}
-    for name in campaign.loggers:
-        entry = _instrument(kit.get(name), campaign.settings)
-        if entry is not None:
-            entries[name] = entry
+        return _KIT.validate_python(document.data, context={"settings": settings}), [
+            *document.faults]
+    except ValidationError as error:
+        return _entries(document.data, settings), [
+            *document.faults, *model_faults(error, Kit, document.data, document.refused)]
+
+
+@dataclass(frozen=True)
+class _Kit:
+    """The kit of a campaign: what can be read of it, as it was written, and its faults."""
+
+    entries: dict[str, Instrument] = field(default_factory=dict)
+    written: Mapping[str, Any] = field(default_factory=dict)
+    faults: tuple[Fault, ...] = ()
+    document: Document | None = None
+    path: Path | None = None
+
+
+def _checked(document: Document, path: Path, root: Path) -> Partly:
+    data, doubtful = document.data, set[str]()
+    settings = _settings(data.get("settings"))
+    try:
+        campaign = Campaign.model_validate(data, context={"settings": settings})
+        wrong = []
+    except ValidationError as error:
+        wrong = model_faults(error, Campaign, data, document.refused)
+        mended = _mended(Campaign, data, settings, lambda rest: _fill(rest, path, doubtful))
+        if mended is None:
+            return Partly(None, tuple(located(document, [*document.faults, *wrong])))
+        campaign = mended
+    at_fault = {*document.refused, *(where for where, _ in wrong),
+                *((key,) for key in doubtful & {"instruments"})}
+    sentences: tuple[str, ...] = ()
+    try:
+        kit = _find_kit(data.get("instruments"), root, settings)
+    except InputError as error:
+        kit, sentences = _Kit(), error.faults
+    names = {key: tuple(data[key]) for key in ("surfaces", "loggers")
+             if isinstance(data.get(key), Mapping)} | {"kit": tuple(kit.written)}
+    wrong += [(where, text) for where, text in cross_faults(campaign, names, path, root)
+              if not under(where, at_fault)]
+    bad = {where[0] for where, _ in kit.faults if where}
+    used = {name: kit.entries[name] for name in names.get("loggers", ()) if name in kit.entries}
+    day = None if "date" in doubtful else campaign.date
+    own = kit_faults({name: used[name] for name in used if name not in bad}, day)
+    if kit.document is None:
+        wrong += ((("instruments", *where), text) for where, text in own
+                  if not under(("instruments", *where[:1]), at_fault))
+    else:
+        sentences = tuple(located(kit.document, [*kit.faults, *own]))
+    faults = dict.fromkeys([*located(document, [*document.faults, *wrong]), *sentences])
+    notes = () if faults else tuple(dict.fromkeys(kit_notes(used, campaign.date)))
+    if faults:
+        campaign = _usable(campaign, data, kit, root, doubtful)
+    if "data_folder" in doubtful or path_fault(root, campaign.data_folder):
+        return Partly(None, tuple(faults))
+    files = (path,) if kit.path is None else (path, kit.path)
+    return Partly(Parameters(path, root, campaign, kit.entries, kit.path, files, notes),
+                  tuple(faults), frozenset(doubtful))
+
+
+def _settings(raw: Any) -> Settings:
+    try:
+        return Settings.model_validate(raw or {})
+    except ValidationError:
+        return Settings()
+
+
+def _find_kit(stated: Any, root: Path, settings: Settings) -> _Kit:
+    if isinstance(stated, Mapping):
+        return _Kit(_entries(stated, settings), stated)
+    if not isinstance(stated, str) or path_fault(root, stated) or not os.path.isfile(root / stated):
+        return _Kit()  # the cross checks say so
+    path = root / stated
+    document = read_document(path, display_name(path, root))
+    entries, faults = read_kit(document, settings)
+    return _Kit(entries, {} if "campaign" in document.data else document.data, tuple(faults),
+                document, path)
+
+
+def _usable(campaign: Campaign, data: Mapping[str, Any], kit: _Kit, root: Path,
+            doubtful: set[str]) -> Campaign:
+    """Return a campaign at fault with the loggers whose files can be read."""
     base = root / campaign.data_folder
-    usable = {name: use for name, use in campaign.loggers.items() if name in entries
+    usable = {name: use for name, use in campaign.loggers.items() if name in kit.entries
               and not any(path_fault(root, pattern, base) for pattern in use.files)}
-    if usable.keys() != named or any(entry.columns.keys() != kit[name]["columns"].keys()
-                                     for name, entry in entries.items()):
+    named = data.get("loggers")
+    if usable.keys() != (set(named) if isinstance(named, Mapping) else set()) or any(
+            kit.entries[name].columns.keys() != kit.written[name]["columns"].keys()
+            for name in usable):
         doubtful.add("loggers")
     if path_fault(root, campaign.field_sheet, base):
         doubtful.add("field_sheet")
-    campaign = campaign.model_copy(update={"loggers": usable})
-    return Partly(Parameters(path, root, campaign, entries, None, (path,)), faults,
-                  frozenset(doubtful))
+    return campaign.model_copy(update={"loggers": usable})
 
 
-def _kit_data(stated: Any, root: Path) -> dict[str, Any]:
-    if isinstance(stated, Mapping):
-        return deepcopy(dict(stated))
-    if not isinstance(stated, str) or path_fault(root, stated):
-        return {}
-    return read_document(root / stated, stated).data
+def _entries(written: Mapping[str, Any], settings: Settings) -> dict[str, Instrument]:
+    mended = {name: _mended(Instrument, entry, settings, _fill_entry)
+              for name, entry in written.items()}
+    return {name: entry for name, entry in mended.items() if entry is not None}
 
 
-def _filled(data: dict[str, Any], path: Path, doubtful: set[str]) -> dict[str, Any]:
+def _mended(model: type[Model], written: Any, settings: Settings,
+            fill: Callable[[dict[str, Any]], None]) -> Model | None:
+    """Read data, taking out what is at fault until the rest is none; None if nothing is left."""
+    data = deepcopy(written)
+    for _ in range(_ROUNDS):
+        if not isinstance(data, dict):
+            return None
+        fill(data)
+        try:
+            return model.model_validate(data, context={"settings": settings})
+        except ValidationError as error:
+            places = {place_of(item["loc"], model, data).path for item in error.errors()}
+        for path in sorted(places, key=len, reverse=True):
+            numbers = [n for n, part in enumerate(path) if isinstance(part, int)]
+            *above, last = path[:numbers[0]] if numbers else path or (None,)
+            if last is None:
+                return None
+            holder: Any = data  # a list at fault goes as a whole: its other entries keep no place
+            for part in above:
+                holder = holder[part]
+            holder.pop(last, None)
+    return None
+
+
+def _fill(data: dict[str, Any], path: Path, doubtful: set[str]) -> None:
     """Fill in what is missing and not needed to read the files; note what is then doubtful."""
-    data |= {"campaign": path.stem, "instruments": "params/instruments.yml"}
-    data.setdefault("title", path.stem)
-    for key in ("comparison", "conditions", "settings"):
-        if not isinstance(data.get(key), Mapping):
-            data.pop(key, None)
-    if not data.get("date"):
-        doubtful.add("date")
-        data["date"] = _DAY
+    for key in ("campaign", "title"):
+        data[key] = data.get(key) or path.stem
+    stand_ins: dict[str, Any] = {
+        "date": _DAY, "instruments": "unknown", "data_folder": "unknown",
+        "field_sheet": "unknown", "loggers": {"unknown": {"files": "unknown"}},
+        "surfaces": {"unknown": {"label": "unknown"}}}
+    for key, value in stand_ins.items():
+        if not data.get(key):
+            doubtful.add(key)
+            data[key] = value
     site = data["site"] if isinstance(data.get("site"), dict) else {}
     zone = site.get("time_zone")
     if not isinstance(zone, str) or zone_fault(zone):
@@ -104,44 +226,14 @@ def _filled(data: dict[str, Any], path: Path, doubtful: set[str]) -> dict[str, A
     east = offset.total_seconds() / 240 if offset else 0.0
     data["site"] = {"name": path.stem, "latitude": 0.0, "elevation_m": 0.0,
                     "longitude": (east + 180) % 360 - 180} | site
-    if not data.get("surfaces"):
-        data["surfaces"] = {"unknown": {"label": "unknown"}}
-        doubtful.add("surfaces")
     if isinstance(data["surfaces"], dict):
         for name, surface in data["surfaces"].items():
             known = surface if isinstance(surface, dict) else {}
             data["surfaces"][name] = known | {"label": known.get("label") or "unknown"}
-        if not all(isinstance(name, str) and re.match(NAME_PATTERN, name)
-                   for name in data["surfaces"]):
+        if not all(re.match(NAME_PATTERN, name) for name in data["surfaces"]):
             doubtful.add("surfaces")
-    if not data.get("field_sheet"):
-        doubtful.add("field_sheet")
-        data["field_sheet"] = "unknown"
-    return data
 
 
-def _instrument(entry: Any, settings: Settings) -> Instrument | None:
-    if not isinstance(entry, Mapping) or not isinstance(entry.get("columns"), Mapping):
-        return None
-    data = deepcopy(dict(entry))
-    if data.get("t95_s") is None:
-        data.setdefault("time_constant_s", 0.0)
-    return _mended(lambda: Instrument.model_validate(data, context={"settings": settings}), data)
-
-
-def _mended(read: Callable[[], Model], data: dict[str, Any]) -> Model | None:
-    """Read data, taking out what is at fault until the rest is none; None if nothing is left."""
-    for _ in range(_ROUNDS):
-        try:
-            return read()
-        except ValidationError as error:
-            places = [written(keys_of(item["loc"]), data)
-                      for item in error.errors(include_url=False)]
-            *above, last = max(places, key=len) or (None,)
-            if last is None:
-                return None
-            holder: Any = data
-            for part in above:
-                holder = holder[part]
-            del holder[last]
-    return None
+def _fill_entry(data: dict[str, Any]) -> None:
+    if data.get("t95_s") is None and data.get("time_constant_s") is None:
+        data["time_constant_s"] = 0.0

@@ -8,6 +8,7 @@ import unicodedata
 from pathlib import Path, PurePosixPath
 
 from surveykit.core import InputError
+from surveykit.intake.params.reading import read_text
 
 
 def find_root(start: Path) -> Path:
@@ -24,6 +25,32 @@ def find_root(start: Path) -> Path:
                 return folder
     raise InputError(f"{start}: no project folder: no folder above it, nor above {Path.cwd()}, "
                      "holds params/ and notebooks/; work from a clone of the project")
+
+
+def root_of(path: Path, root: Path | None = None) -> Path:
+    """Return the project folder of a parameter file: `root`, else found from the file upwards.
+
+    Raises
+    ------
+    InputError
+        If there is none, or no such file.
+    """
+    try:
+        return Path(root).resolve() if root is not None else find_root(path.parent)
+    except InputError:
+        read_text(path, str(path))  # a missing file is the fault to tell first
+        raise
+    except (OSError, ValueError, RuntimeError):
+        raise InputError(f"{path}: cannot be read; check the name") from None
+
+
+def display_name(path: Path, root: Path) -> str:
+    """Return how a file is called in messages: from the project folder where it lies inside."""
+    try:
+        name = path.resolve().relative_to(root.resolve()).as_posix()
+    except (ValueError, OSError, RuntimeError):
+        name = str(path)
+    return name if name.isprintable() else repr(name)
 
 
 def outside_allowed() -> bool:

@@ -22,7 +22,7 @@ _CORE = (
     (re.compile(r"\.nan|\.NaN|\.NAN"), lambda text: float("nan")),
 )
 _SINGLE_LETTER = ("y", "Y", "n", "N")  # booleans in YAML 1.1, not in every reader of it
-_LOADER = yaml.SafeLoader("")
+_LOADER: Any = yaml.SafeLoader("")  # reads scalars as the notebooks' runner does
 MAX_NUMBER = 60
 
 
@@ -38,17 +38,6 @@ def core_reading(text: str) -> Scalar:
         if pattern.fullmatch(text):
             return convert(text)
     return text
-
-
-def old_reading(tag: str, text: str) -> Any:
-    """Return a plain scalar as the YAML 1.1 reader of the notebooks' runner reads it.
-
-    Raises
-    ------
-    ValueError, yaml.YAMLError
-        If it cannot.
-    """
-    return _LOADER.construct_object(yaml.ScalarNode(tag, text), deep=True)
 
 
 def implicit_tag(text: str) -> str:
@@ -85,7 +74,8 @@ def plain_reading(text: str) -> tuple[Scalar, str | None]:
         return text, (f"some YAML readers take {text} for yes or no; "
                       f"write true or false, or {quoted}")
     try:
-        old, core = old_reading(tag, text), core_reading(text)
+        old = _LOADER.yaml_constructors[tag](_LOADER, yaml.ScalarNode(tag, text))
+        core = core_reading(text)
     except (ValueError, ArithmeticError, yaml.YAMLError):
         return text, f"no YAML reader agrees on it; write {quoted}"
     if type(old) is type(core) and (old == core or (old != old and core != core)):
@@ -95,13 +85,12 @@ def plain_reading(text: str) -> tuple[Scalar, str | None]:
         return text, f"YAML reads a bare {text} as {word} or as text; write {word}, or {quoted}"
     if ":" in text:
         return text, f"YAML reads a bare {text} as {old}; write {quoted}"
-    if isinstance(core, int | float) and not isinstance(core, bool):
-        return core, (f"YAML reads a bare {text} as {_told(old)} or as {_told(core)}; "
-                      f"write {number_text(core)}, or {quoted}")
-    if isinstance(old, int | float):
-        return text, (f"YAML reads a bare {text} as {_told(old)} or as text; "
-                      f"write {number_text(old)}, or {quoted}")
-    return text, f"YAML readers differ on a bare {text}; write {quoted}"
+    number = next((value for value in (core, old) if isinstance(value, int | float)), None)
+    if number is None:
+        return text, f"YAML readers differ on a bare {text}; write {quoted}"
+    told, too = ("text" if isinstance(value, str) else repr(value) for value in (old, core))
+    return core, (f"YAML reads a bare {text} as {told} or as {too}; "
+                  f"write {number_text(number)}, or {quoted}")
 
 
 def number_text(value: float) -> str:
@@ -122,7 +111,3 @@ def number_text(value: float) -> str:
     elif text in ("inf", "-inf"):
         text = text.replace("inf", ".inf")
     return text
-
-
-def _told(value: Any) -> str:
-    return "text" if isinstance(value, str) else repr(value)

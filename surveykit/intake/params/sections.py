@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Iterator
 from datetime import UTC, datetime
 from typing import Annotated, Any, Literal
@@ -112,6 +113,12 @@ class LoggerUse(Strict):
                               write="{offset_s, u_s}")
 
 
+# how an emissivity is found: (keys that it needs, keys that may stand beside them)
+_WAYS = {"from: None": (("value", "u", "source"), ()),
+         "from: ndvi": (("vegetation", "soil", "u"), ("form",)),
+         "form: logarithmic": (("u",), ("form",))}
+
+
 class Emissivity(Strict):
     """An emissivity: stated with its u and source, or to be found on the day."""
 
@@ -134,18 +141,16 @@ class Emissivity(Strict):
 
     def faults(self) -> Iterator[Fault]:
         """Each way needs its own keys and takes no others."""
-        ways = {None: ("value", "u", "source"), "ndvi": (
-            ("u",) if self.form == "logarithmic" else ("vegetation", "soil", "u"))}
-        needed = ways.get(self.from_, ())
-        allowed = (*needed, "form") if self.from_ == "ndvi" else needed
-        fields = type(self).model_fields
-        for name in ("value", "u", "source", "vegetation", "soil", "form"):
+        way = f"form: {self.form}" if self.from_ == "ndvi" and self.form == "logarithmic" else (
+            f"from: {self.from_}")
+        needed, optional = _WAYS.get(way, ((), ()))
+        for name, info in type(self).model_fields.items():
             given = getattr(self, name) is not None
-            extra: Any = fields[name].json_schema_extra
+            extra: Any = info.json_schema_extra
             if name in needed and not given:
                 yield (name,), f"missing; write {extra['write']}"
-            if given and name not in allowed:
-                yield (name,), (f"does not go with from: {self.from_}; leave it out" if self.from_
+            if given and name not in (*needed, *optional, "from_"):
+                yield (name,), (f"does not go with {way}; leave it out" if self.from_
                                 else "goes with from: ndvi only; leave it out")
 
 
@@ -238,3 +243,10 @@ class Comparison(Strict):
     relevant_change: RelevantChange = key(
         "The smallest difference that matters.", default_factory=RelevantChange,
         write="{temperature, albedo, ndvi}")
+
+    def faults(self) -> Iterator[Fault]:
+        """A family names each surface once."""
+        for family, names in self.families.items():
+            twice = [name for name, count in Counter(names).items() if count > 1]
+            if twice:
+                yield ("families", family), f"names {twice[0]!r} twice; write each surface once"
