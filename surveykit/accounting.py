@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from typing import Literal
 
 import numpy as np
@@ -105,6 +105,12 @@ NOT_A_FAULT = OFF_PATCH | BIT["between placements"]
 LAST_FAULT = [r.name for r in REASONS].index("spike")  # of the reading alone, in or out of a pass
 
 
+def primary(mask: Mask) -> IntArray:
+    """Return the index of the first reason set in each mask; -1 where none is."""
+    lowest = mask & (~mask + np.uint32(1))
+    return np.where(mask == 0, -1, np.log2(np.maximum(lowest, 1)).astype(np.int64))
+
+
 def counted(number: int, word: str) -> str:
     """Return a number with its word in the singular or plural.
 
@@ -157,4 +163,4 @@ class Quality:
     passes: dict[str, PassRecords]
     checks: pd.DataFrame
     ledger: pd.DataFrame
-    waterfall: pd.DataFrame = field(default_factory=pd.DataFrame)
+    waterfall: pd.DataFrame

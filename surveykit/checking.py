@@ -8,6 +8,7 @@ from pathlib import Path
 import pandas as pd
 
 from surveykit import overview
+from surveykit.accounting import counted
 from surveykit.core import InputError
 from surveykit.intake.aligning import Ingested, align, read_logs
 from surveykit.intake.params import Parameters, is_kit_file, load_kit
@@ -42,14 +43,14 @@ def _loggers(parameters: Parameters, ingested: Ingested) -> list[str]:
     """Return for each logger a line on its records, and one for each of its channels."""
     zone = parameters.campaign.site.time_zone
     lines = []
-    channels = overview.channels(overview.Understood(parameters, ingested.records))
-    for log, (_, row) in zip(ingested.records.values(),
-                             overview.loggers(ingested.records, zone).iterrows(), strict=True):
+    channels = overview.channels(parameters, ingested.records)
+    for row in overview.loggers(ingested.records, zone).to_dict("records"):
+        log = ingested.records[row["Logger"]]
         ends = pd.to_datetime(log.time_ns[[0, log.n_timed - 1]], utc=True).tz_convert(zone)
         days = " to ".join(dict.fromkeys(ends.strftime("%Y-%m-%d")))
         lines.append(
-            f"  {row['Logger']}: {row['Records']} records in {row['Files']} "
-            f"file{'s' if row['Files'] > 1 else ''}, every {float(row['Interval, s']):g} s, {days} "
+            f"  {log.logger}: {counted(len(log), 'record')} in {counted(len(log.files), 'file')}, "
+            + (f"every {log.interval_s:g} s, " if log.interval_s > 0 else "") + f"{days} "
             f"{row['First (UTC)']} to {row['Last (UTC)']} UTC "
             f"({row['First (site)']} to {row['Last (site)']} {zone})")
         mine = channels[channels["Logger"] == row["Logger"]]

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from pathlib import Path
+from tempfile import TemporaryDirectory
 
 from surveykit import facts, pipeline
 from surveykit.intake.params import find_root
@@ -21,5 +22,7 @@ def export(folder: Path) -> Path:
     """
     verify(folder)
     survey = open_file(find_root(folder) / params_file(folder))
-    return write_netcdf(pipeline.all_tables(survey), folder.with_name(f"{folder.name}.nc"),
-                        facts.collect(survey))
+    with TemporaryDirectory(prefix=f".{folder.name}.", dir=folder.parent) as aside:
+        made = write_netcdf(pipeline.all_tables(survey), Path(aside) / f"{folder.name}.nc",
+                            facts.collect(survey))
+        return made.replace(folder.parent / made.name)

@@ -6,6 +6,7 @@ old file or the new one, never half of one. No pickle: what is read back cannot 
 
 from __future__ import annotations
 
+import hashlib
 import json
 import os
 from collections.abc import Callable, Mapping
@@ -17,6 +18,29 @@ import pandas as pd
 from numpy.typing import NDArray
 
 _TIME = pd.DatetimeTZDtype("ns", "UTC")
+
+
+def save_whole(path: Path, write: Callable[[BinaryIO], Any]) -> None:
+    """Have `write` write a file, which takes the place of an old one once it is whole."""
+    path.parent.mkdir(parents=True, exist_ok=True)
+    beside = path.with_name(f".{path.name}.{os.getpid()}.new")
+    try:
+        with beside.open("wb") as file:
+            write(file)
+        os.replace(beside, path)
+    finally:
+        beside.unlink(missing_ok=True)
+
+
+def save_text(path: Path, text: str) -> None:
+    """Write a text in UTF-8, whole, its line ends as they are."""
+    save_whole(path, lambda file: file.write(text.encode("utf-8")))
+
+
+def sha256(path: Path) -> str:
+    """Return the SHA-256 of a file in hexadecimal."""
+    with path.open("rb") as file:
+        return hashlib.file_digest(file, "sha256").hexdigest()
 
 
 def save_arrays(path: Path, arrays: Mapping[str, NDArray[Any]]) -> None:
@@ -39,7 +63,7 @@ def save_arrays(path: Path, arrays: Mapping[str, NDArray[Any]]) -> None:
             raise TypeError(f"{path.name}: array {name!r} holds Python objects, "
                             "which are not handed over")
     names = _texts(path, "names of arrays", list(arrays))
-    _replace(path, lambda file: np.savez(file, names, *arrays.values()))
+    save_whole(path, lambda file: np.savez(file, names, *arrays.values()))
 
 
 def load_arrays(path: Path) -> dict[str, NDArray[Any]]:
@@ -126,7 +150,7 @@ def save_facts(path: Path, facts: Mapping[str, Any]) -> None:
         If a number is NaN or infinite.
     """
     text = json.dumps(facts, sort_keys=True, indent=1, ensure_ascii=False, allow_nan=False)
-    _replace(path, lambda file: file.write(text.encode("utf-8") + b"\n"))
+    save_text(path, f"{text}\n")
 
 
 def load_facts(path: Path) -> dict[str, Any]:
@@ -155,14 +179,3 @@ def _texts(path: Path, what: str, texts: list[str]) -> NDArray[np.str_]:
     if held.tolist() != texts:  # numpy drops trailing NUL characters
         raise TypeError(f"{path.name}: {what}: a text ends with a NUL character")
     return held
-
-
-def _replace(path: Path, write: Callable[[BinaryIO], Any]) -> None:
-    path.parent.mkdir(parents=True, exist_ok=True)
-    beside = path.with_name(f".{path.name}.{os.getpid()}.new")
-    try:
-        with beside.open("wb") as file:
-            write(file)
-        os.replace(beside, path)
-    finally:
-        beside.unlink(missing_ok=True)

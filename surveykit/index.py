@@ -2,12 +2,11 @@
 
 from __future__ import annotations
 
-import json
-import os
 from pathlib import Path
 
 import pandas as pd
 
+from surveykit.handover import load_facts, save_text
 from surveykit.locking import locked
 from surveykit.report.contents import Entry, contents_page
 
@@ -21,19 +20,14 @@ def write_index(root: Path) -> Path:
     with locked(root, "_index"):
         entries = [entry for path in sorted(reports.glob("*/run.json"))
                    if (entry := _entry(path)) is not None]
-        new = page.with_name(f".index.{os.getpid()}.new")
-        try:
-            new.write_text(contents_page(entries), encoding="utf-8", newline="\n")
-            os.replace(new, page)
-        finally:
-            new.unlink(missing_ok=True)
+        save_text(page, contents_page(entries))
     return page
 
 
 def _entry(run_json: Path) -> Entry | None:
     """Return one report's entry; None where it is incomplete or not of this version."""
     try:
-        facts = json.loads(run_json.read_text(encoding="utf-8"))
+        facts = load_facts(run_json)
         if not isinstance(facts, dict) or not facts.keys() >= NEEDED:
             return None
         surfaces, changes = (pd.read_csv(

@@ -2,7 +2,11 @@
 
 from __future__ import annotations
 
+import builtins
+import os
+import sys
 import threading
+from collections.abc import Mapping
 from pathlib import Path
 from types import TracebackType
 from typing import Any
@@ -13,12 +17,22 @@ from jupyter_client.client import KernelClient
 from jupyter_client.manager import KernelManager
 from traitlets import default
 
+from surveykit.core import InputError
+
+# jupyterlab brings rfc3987_syntax, which compiles a grammar for 1.2 s at import, reached through
+# jsonschema's optional format checkers; without it jsonschema skips that one optional format.
+sys.modules.setdefault("rfc3987_syntax", None)  # type: ignore[arg-type]
+
 # What every notebook imports first; run silently, so that it leaves no trace in the notebook.
 WARM_UP = """\
 from surveykit import facts, overview, pipeline
 from surveykit.report import figures, sentences, tables
 del facts, overview, pipeline, figures, sentences, tables
 """
+
+
+class KernelGoneError(OSError):
+    """The system stopped a notebook's kernel; no fault of the input."""
 
 
 class QuietKernelManager(KernelManager):
@@ -48,7 +62,8 @@ class QuietKernelManager(KernelManager):
 
         It inherits the descriptors `inherited`: a lock among them is held while it lives.
         """
-        self.start_kernel(cwd=str(folder), pass_fds=inherited)
+        handed = inherited if os.name == "posix" else ()  # elsewhere none can be
+        self.start_kernel(cwd=str(folder), pass_fds=handed)
         warm = BlockingKernelClient()
         warm.load_connection_info(self.get_connection_info())
         warm.start_channels(shell=True, iopub=False, stdin=False, hb=False, control=False)
@@ -109,3 +124,57 @@ class Kernels:
     def __exit__(self, kind: type[BaseException] | None, error: BaseException | None,
                  trace: TracebackType | None) -> None:
         self.close()
+
+
+def execute(source: Path, target: Path, root: Path, handed: Mapping[str, str],
+            kernel: QuietKernelManager) -> None:
+    """Run a notebook in the project folder `root`, in a kernel that ends with it.
+
+    Parameters
+    ----------
+    source, target : Path
+        The notebook, and where the executed one goes.
+    root : Path
+        The project folder.
+    handed : mapping of str
+        What its parameters cell is given.
+    kernel : QuietKernelManager
+        A kernel that has begun.
+
+    Raises
+    ------
+    InputError
+        If the input is at fault, or the notebook is missing or does not take what is handed over.
+    OSError
+        If the notebook could not write, or the system stopped its kernel.
+    """
+    import papermill
+    from nbclient.exceptions import DeadKernelError
+
+    read, write = (str(path).replace("{", "{{").replace("}", "}}")  # else names of parameters
+                   for path in (source, target))
+    try:
+        if not source.is_file():
+            raise InputError(f"notebooks/{source.name} is missing; restore it from the project")
+        lacking = [key for key in handed if key not in papermill.inspect_notebook(read)]
+        if lacking:
+            raise InputError(f"notebooks/{source.name}: its parameters cell lacks "
+                             f"{' and '.join(lacking)}; restore the cell and its tag 'parameters'")
+        papermill.execute_notebook(
+            read, write, parameters=handed, kernel_name="python3", progress_bar=False,
+            log_output=False, request_save_on_cell_execute=False, autosave_cell_every=0,
+            cwd=str(root), km=kernel)
+    except papermill.PapermillExecutionError as error:
+        if error.ename == InputError.__name__:
+            raise InputError(*error.evalue.splitlines()) from None
+        kind = getattr(builtins, error.ename, None)
+        if isinstance(kind, type) and issubclass(kind, OSError):
+            raise OSError(f"notebook {source.stem}: {error.evalue}") from None
+        raise
+    except RuntimeError as error:
+        if isinstance(error, DeadKernelError) or "Kernel died" in str(error):
+            raise KernelGoneError(f"notebook {source.stem}: the system stopped its kernel, as when "
+                                  "memory runs out") from None
+        raise
+    finally:
+        kernel.end()

@@ -13,6 +13,7 @@ import sys
 import time
 from collections.abc import Callable, Iterator
 from contextlib import ExitStack, contextmanager, suppress
+from io import BufferedRandom
 from pathlib import Path
 
 from surveykit.core import InputError
@@ -25,6 +26,7 @@ else:
 
 BUSY = {errno.EAGAIN, errno.EACCES, errno.EWOULDBLOCK, errno.EDEADLK}
 PAUSE_S = 0.1
+BYTE = 1 << 30  # locked where only bytes can be: beyond what is written, which stays readable
 
 
 @contextmanager
@@ -53,26 +55,26 @@ def locked(root: Path, name: str, earlier: tuple[str, ...] = (),
     """
     with ExitStack() as stack:
         own = stack.enter_context(_taken(root, name, False, say))
-        for one in earlier:
+        for one in dict.fromkeys(earlier):
             stack.enter_context(_taken(root, one, True, say))
         yield own
 
 
-def free(root: Path, name: str) -> bool:
-    """Return whether no run of the campaign `name` is under way."""
-    path = _path(root, name)
-    if not path.exists():
-        return True
-    with path.open("r+b") as file:
-        return _take(file.fileno(), False)
+@contextmanager
+def idle(root: Path, name: str) -> Iterator[bool]:
+    """Yield whether no run of the campaign `name` is under way; none begins meanwhile if so."""
+    with ExitStack() as stack:
+        path = _path(root, name)
+        yield not path.exists() or _take(stack.enter_context(path.open("r+b")).fileno(), False)
 
 
 def heal_all(root: Path) -> None:
     """Put right what stopped swaps left in reports/, but for campaigns under way."""
     for aside in (root / "reports").glob(".*.old"):
         name = aside.name.removeprefix(".").removesuffix(".old")
-        if free(root, name):
-            heal(aside.parent, name)
+        with idle(root, name) as free:
+            if free:
+                heal(aside.parent, name)
 
 
 @contextmanager
@@ -80,30 +82,36 @@ def _taken(root: Path, name: str, shared: bool,
            say: Callable[[str], None] | None) -> Iterator[int]:
     path = _path(root, name)
     fresh = not path.exists()
-    path.parent.mkdir(exist_ok=True)
     with ExitStack() as stack:
-        file = stack.enter_context(path.open("a+b"))
+        file = stack.enter_context(_opened(path))
         told = say is None
         while not (_take(file.fileno(), shared) and _same(file.fileno(), path)):
             if not _same(file.fileno(), path):  # a refused run took its lock away meanwhile
-                file = stack.enter_context(path.open("a+b"))
+                file = stack.enter_context(_opened(path))
                 continue
             if not told and say is not None:
                 file.seek(0)
                 holder = file.read(200).decode("utf-8", "replace").strip()
-                say(f"{name}: waits for another run of it ({holder or 'starting'})")
+                say(f"{name}: waits for another run that uses it ({holder or 'starting'})")
                 told = True
             time.sleep(PAUSE_S)
-        if not shared:
-            file.truncate(0)
-            file.write(f"process {os.getpid()} on {socket.gethostname()}\n".encode())
-            file.flush()
+        file.truncate(0)
+        file.write(f"process {os.getpid()} on {socket.gethostname()}\n".encode())
+        file.flush()
         try:
             yield file.fileno()
         except InputError:
             if fresh and not shared:  # a refused run leaves nothing behind
                 _away(path)
             raise
+
+
+def _opened(path: Path) -> BufferedRandom:
+    """Open a lock, made where it is missing; a refused run may just be taking its folder away."""
+    while True:
+        path.parent.mkdir(exist_ok=True)
+        with suppress(FileNotFoundError):
+            return path.open("a+b")
 
 
 def _same(descriptor: int, path: Path) -> bool:
@@ -130,6 +138,7 @@ def _take(descriptor: int, shared: bool) -> bool:
     """Try once; True also where the storage knows no locks, as there is nothing to wait for."""
     try:
         if sys.platform == "win32":
+            os.lseek(descriptor, BYTE, os.SEEK_SET)
             msvcrt.locking(descriptor, msvcrt.LK_NBLCK, 1)
         else:
             kind = fcntl.LOCK_SH if shared else fcntl.LOCK_EX

@@ -11,6 +11,7 @@ from pathlib import Path
 from typing import Any
 
 from surveykit.core import InputError
+from surveykit.handover import sha256
 from surveykit.intake.loggers import expand_files
 from surveykit.intake.params import (
     Campaign,
@@ -28,11 +29,13 @@ SECTIONS = tuple(Campaign.model_fields)
 
 @cache
 def code_digest() -> str:
-    """Return a hash of the package's source: edited code never meets results it did not make."""
+    """Return a hash of the package's files: edited ones never meet results they did not make."""
     digest = hashlib.sha256()
     package = Path(__file__).parent
-    for path in sorted(package.rglob("*.py")):
-        digest.update(path.relative_to(package).as_posix().encode() + b"\0" + path.read_bytes())
+    for path in sorted(package.rglob("*")):
+        if path.is_file() and "__pycache__" not in path.parts:
+            digest.update(path.relative_to(package).as_posix().encode() + b"\0"
+                          + path.read_bytes())
     return digest.hexdigest()
 
 
@@ -129,13 +132,10 @@ def open_file(path: Path, run_folder: str | Path | None = None, *,
                and not file.resolve().is_relative_to(root.resolve())]
     if faults:
         raise InputError(*faults)
-    inputs = []
-    for file in files:
-        with file.open("rb") as data:
-            inputs.append({"path": _shown(file, root), "bytes": file.stat().st_size,
-                           "sha256": hashlib.file_digest(data, "sha256").hexdigest()})
+    inputs = tuple({"path": _shown(file, root), "bytes": file.stat().st_size,
+                    "sha256": sha256(file)} for file in files)
     folder = Path(run_folder) if run_folder else root / ".surveykit" / campaign.campaign
-    return Survey(parameters, folder, tuple(inputs))
+    return Survey(parameters, folder, inputs)
 
 
 def _shown(path: Path, root: Path) -> str:

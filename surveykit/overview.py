@@ -2,14 +2,14 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
 import pandas as pd
 
-from surveykit.accounting import BIT, NOT_A_FAULT, REASONS
+from surveykit.accounting import BIT, NOT_A_FAULT, REASONS, primary
 from surveykit.intake.params import Parameters
 from surveykit.intake.passes import Pass
 from surveykit.intake.paths import walk
@@ -28,16 +28,9 @@ SHOWN = {  # how a quantity is shown: unit, and scale and shift from SI
                      "red_up", "nir_down", "nir_up"), ("W m-2", 1.0, 0.0)),
     "relative_humidity": ("%", 100.0, 0.0), "wind_speed": ("m s-1", 1.0, 0.0),
     "air_pressure": ("hPa", 0.01, 0.0)}
-COURSE = {"housing_temperature": "body_temperature_degc", "air_temperature": "air_temperature_degc",
+COURSE = {"shortwave_down": "irradiance_w_m2",
+          "housing_temperature": "body_temperature_degc", "air_temperature": "air_temperature_degc",
           "wind_speed": "wind_speed_m_s", "relative_humidity": "relative_humidity_percent"}
-
-
-@dataclass(frozen=True)
-class Understood:
-    """Records by logger beside the parameters that say what they are."""
-
-    parameters: Parameters
-    records: Mapping[str, Records]
 
 
 def loggers(records: Mapping[str, Records], time_zone: str) -> pd.DataFrame:
@@ -54,11 +47,11 @@ def loggers(records: Mapping[str, Records], time_zone: str) -> pd.DataFrame:
     return pd.DataFrame(rows)
 
 
-def channels(day: Understood | Day) -> pd.DataFrame:
+def channels(parameters: Parameters, records: Mapping[str, Records]) -> pd.DataFrame:
     """Return one row a channel: quantity, unit as logged, typical value in its own unit."""
     rows = []
-    for logger, log in day.records.items():
-        for channel in day.parameters.channels(logger):
+    for logger, log in records.items():
+        for channel in parameters.channels(logger):
             good = log.channels[channel.column]
             good = good[np.isfinite(good)]
             unit, scale, shift = SHOWN[channel.quantity]
@@ -72,17 +65,15 @@ def channels(day: Understood | Day) -> pd.DataFrame:
 
 def passes(some: tuple[Pass, ...], labels: Mapping[str, str]) -> pd.DataFrame:
     """Return one row a surface: patches, and passes by quantity and kind."""
-    rows: dict[str, dict[str, object]] = {}
+    rows: dict[str, Counter[str]] = {}
     patches: dict[str, set[str]] = {}
-    columns = dict.fromkeys(" ".join(w for w in (p.quantity, p.kind) if w) for p in some)
     for p in some:
         label = labels.get(p.surface, p.surface)
         patches.setdefault(label, set()).add(p.patch)
-        row = rows.setdefault(label, {"Surface": label, "Patches": 0, **dict.fromkeys(columns, 0)})
-        row["Patches"] = len(patches[label])
-        word = " ".join(w for w in (p.quantity, p.kind) if w)
-        row[word] = int(str(row[word])) + 1
-    return pd.DataFrame(list(rows.values()))
+        rows.setdefault(label, Counter())[f"{p.quantity} {p.kind}".strip()] += 1
+    columns = dict.fromkeys(f"{p.quantity} {p.kind}".strip() for p in some)
+    return pd.DataFrame([{"Surface": label, "Patches": len(patches[label])}
+                         | {word: row[word] for word in columns} for label, row in rows.items()])
 
 
 def day_course(day: Day, some: tuple[Pass, ...]) -> dict[str, pd.DataFrame]:
@@ -98,36 +89,37 @@ def day_course(day: Day, some: tuple[Pass, ...]) -> dict[str, pd.DataFrame]:
     stop = max(p.stop_ns for p in some)
     grid = np.arange(start, stop + STEP_NS, STEP_NS)
     sky = {"time_utc": pd.to_datetime(grid, utc=True), "zenith_deg": day.sun(grid).zenith_deg}
-    for channel in day.channels.get("shortwave_down", []):
-        time, value = day.readings(channel, start, stop + STEP_NS, through=("sun too low",))
-        sky["irradiance_w_m2"] = _minutes(grid, time, day.without_dark(channel, time, value))
     weather = {"time_utc": sky["time_utc"]}
     for quantity, column in COURSE.items():
         _, scale, shift = SHOWN[quantity]
-        for channel in day.channels.get(quantity, []):
-            time, value = day.readings(channel, start, stop + STEP_NS)
-            weather[column] = _minutes(grid, time, value) * scale + shift
+        for channel in day.channels.get(quantity, []):  # the first that tells anything
+            time, value = day.readings(channel, start, stop + STEP_NS, through=("sun too low",))
+            if time.size:
+                if quantity == "shortwave_down":
+                    sky[column] = _minutes(grid, time, day.without_dark(channel, time, value))
+                else:
+                    weather[column] = scale * _minutes(grid, time, value) + shift
+                break
     return {"sky": pd.DataFrame(sky), "weather": pd.DataFrame(weather)}
 
 
 def excluded(day: Day, some: tuple[Pass, ...]) -> pd.DataFrame:
     """Return stretches of at least 10 s whose readings were left out for a fault of their own.
 
-    One row a stretch: start_utc, stop_utc, reason with the logger's name.
+    One row a stretch: start_utc, stop_utc, its primary reason with the logger's name.
     """
-    faults = [(r.name, BIT[r.name]) for r in REASONS
-              if not BIT[r.name] & (NOT_A_FAULT | BIT["capped"] | BIT["no partner"])]
-    rows = []
+    rows, whole = [], BIT["capped"] | BIT["repeated record"]  # nothing of the day is lost with them
     for logger, columns in day.quality.masks.items():
         log = day.records[logger]
-        time = log.time_ns[:log.n_timed]
         for mask in columns.values():
-            for reason, bit in faults:
-                hit = time[(mask[:log.n_timed] & bit) != 0]
+            bits = mask[:log.n_timed]
+            why = primary(np.where(bits & whole, 0, bits & ~(NOT_A_FAULT | BIT["no partner"])))
+            for reason in np.unique(why[why >= 0]):
+                hit = log.time_ns[:log.n_timed][why == reason]
                 apart = np.flatnonzero(np.diff(hit) > 2.5e9 * log.interval_s) + 1
-                rows += [(run[0], run[-1], f"{logger}, {reason}") for run in np.split(hit, apart)
-                         if run.size and run[-1] - run[0] >= SHOWN_FROM_NS]
-    frame = pd.DataFrame(dict.fromkeys(rows), columns=["start_utc", "stop_utc", "reason"])
+                rows += [(run[0], run[-1], f"{logger}: {REASONS[reason].name}")
+                         for run in np.split(hit, apart) if run[-1] - run[0] >= SHOWN_FROM_NS]
+    frame = pd.DataFrame([*dict.fromkeys(rows)], columns=["start_utc", "stop_utc", "reason"])
     if some:
         frame = frame[(frame["stop_utc"] > min(p.start_ns for p in some))
                       & (frame["start_utc"] < max(p.stop_ns for p in some))]

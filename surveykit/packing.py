@@ -3,10 +3,13 @@
 from __future__ import annotations
 
 import zipfile
+from collections.abc import Mapping
 from importlib.metadata import version
 from pathlib import Path
+from typing import BinaryIO
 
 from surveykit.core import InputError
+from surveykit.handover import save_whole
 from surveykit.opening import open_file
 from surveykit.verifying import verify
 
@@ -33,7 +36,7 @@ def pack(path: Path) -> Path:
     Raises
     ------
     InputError
-        If the report is missing or does not belong to its inputs.
+        If the report is missing or does not belong to its inputs, or these lie outside the project.
     """
     survey = open_file(path)
     root, name = survey.parameters.root, survey.campaign.campaign
@@ -43,22 +46,29 @@ def pack(path: Path) -> Path:
                          f"{survey.inputs[0]['path']}")
     verify(report)
     listed = [survey, *(open_file(earlier) for earlier in survey.parameters.earlier)]
-    inputs = [root / str(item["path"]) for one in listed for item in one.inputs]
-    files = {*inputs, *(root / "notebooks").glob("*.ipynb"),
+    inputs = sorted({str(item["path"]) for one in listed for item in one.inputs})
+    outside = [path for path in inputs if path.startswith("..")]
+    if outside:
+        raise InputError(*(f"{path}: lies outside the project folder and cannot be packed; copy it "
+                           "into the project" for path in outside))
+    files = {*(root / path for path in inputs), *(root / "notebooks").glob("*.ipynb"),
              *(p for p in report.rglob("*") if p.is_file() and ".ipynb_checkpoints" not in p.parts)}
     constraints = root / "constraints.txt"
     if constraints.is_file():
         files.add(constraints)
     target = report.with_name(f"{name}.zip")
-    contents = {p.relative_to(root).as_posix(): p.read_bytes() for p in files}
+    contents: dict[str, Path | bytes] = {p.relative_to(root).as_posix(): p for p in files}
     contents["README.txt"] = READ_ME.format(
         title=survey.campaign.title, name=name, version=version("surveykit")).encode()
-    new = target.with_name(f".{name}.zip.new")
-    with zipfile.ZipFile(new, "w") as packed:
+    save_whole(target, lambda file: _zip(file, contents))
+    return target
+
+
+def _zip(file: BinaryIO, contents: Mapping[str, Path | bytes]) -> None:
+    with zipfile.ZipFile(file, "w") as packed:
         for inside in sorted(contents):
             entry = zipfile.ZipInfo(inside, OLDEST)
             entry.external_attr = 0o644 << 16
             entry.compress_type = zipfile.ZIP_DEFLATED
-            packed.writestr(entry, contents[inside])
-    new.replace(target)
-    return target
+            held = contents[inside]
+            packed.writestr(entry, held if isinstance(held, bytes) else held.read_bytes())

@@ -2,18 +2,16 @@
 
 from __future__ import annotations
 
-import json
-import os
 import shutil
 import time
 from pathlib import Path
-from typing import Any
 
 import nbformat
 from nbformat import NotebookNode
 
 from surveykit import facts, overview, pipeline
 from surveykit.core import InputError
+from surveykit.handover import save_facts
 from surveykit.opening import Survey, open_file
 from surveykit.report import datapackage, page
 from surveykit.verifying import outputs
@@ -53,22 +51,17 @@ def write(survey: Survey, new: Path, notebooks: tuple[str, ...], durations: dict
     if open_file(survey.parameters.path).key != survey.key:
         raise InputError(f"{survey.inputs[0]['path']}: an input changed while the campaign was "
                          "run; run it again")
-    kept: dict[str, Any] = {
-        "key": survey.key, "command": known["rerun"], "campaign": known["campaign"],
-        "title": known["title"], "date": known["date"], "site": known["site"]["name"],
-        "surfaces": known["surfaces"],
-        "inputs": known["inputs"], "params_file": known["params_file"],
+    kept = {name: known[name] for name in (
+        "campaign", "title", "date", "surfaces", "inputs", "params_file", "versions", "seed",
+        "draws")}
+    kept |= {
+        "key": survey.key, "command": known["rerun"], "site": known["site"]["name"],
         "earlier_inputs": [item for one in earlier for item in one.inputs],
-        "outputs": outputs(new), "versions": known["versions"], "seed": known["seed"],
-        "draws": known["draws"],
+        "outputs": outputs(new),
         "finished_utc": time.strftime("%Y-%m-%dT%H:%M:%SZ", time.gmtime()),
-        "durations_s": {k: round(v, 3) for k, v in sorted(durations.items())},
+        "durations_s": {k: round(v, 3) for k, v in durations.items()},
         "total_s": round(time.perf_counter() - started, 3)}
-    with open(new / "run.json", "w", encoding="utf-8", newline="\n") as file:
-        json.dump(kept, file, indent=1, sort_keys=True)
-        file.write("\n")
-        file.flush()
-        os.fsync(file.fileno())
+    save_facts(new / "run.json", kept)
 
 
 def _kept(path: Path) -> NotebookNode:

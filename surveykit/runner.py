@@ -5,11 +5,8 @@ Kernels start first and import while this process does; heavy imports therefore 
 
 from __future__ import annotations
 
-import builtins
-import json
 import os
 import shutil
-import sys
 import time
 from collections.abc import Callable, Iterator
 from concurrent.futures import Future, ThreadPoolExecutor, as_completed
@@ -17,21 +14,14 @@ from contextlib import contextmanager
 from pathlib import Path
 
 from surveykit.core import InputError
-from surveykit.kernels import Kernels
+from surveykit.handover import load_facts
+from surveykit.kernels import Kernels, execute
 from surveykit.locking import locked
 from surveykit.opening import Survey, open_file
-from surveykit.swap import heal, swap_in
-
-# jupyterlab brings rfc3987_syntax, which compiles a grammar for 1.2 s at import, reached through
-# jsonschema's optional format checkers; without it jsonschema skips that one optional format.
-sys.modules.setdefault("rfc3987_syntax", None)  # type: ignore[arg-type]
+from surveykit.swap import SwapError, heal, swap_in
 
 NOTEBOOKS = ("01_ingest", "02_quality", "03_surfaces", "04_comparison")
 Say = Callable[[str], None]
-
-
-class KernelGoneError(OSError):
-    """The system stopped a notebook's kernel; no fault of the input."""
 
 
 def cores() -> int:
@@ -81,17 +71,20 @@ def run(path: Path, say: Say, *, lanes: int | None = None,
 
 def up_to_date(survey: Survey) -> bool:
     """Return whether a campaign's report stands and belongs to its present inputs."""
-    folder = _reports(survey) / survey.campaign.campaign
+    folder = survey.parameters.root / "reports" / survey.campaign.campaign
     try:
-        kept = json.loads((folder / "run.json").read_text(encoding="utf-8"))
-    except (OSError, ValueError):
+        kept = load_facts(folder / "run.json")
+        now = [item for path in survey.parameters.earlier for item in open_file(path).inputs]
+    except (OSError, ValueError, InputError):
         return False
-    return bool(kept.get("key") == survey.key and (folder / "report.html").is_file())
+    return (kept.get("key") == survey.key and kept.get("earlier_inputs") == now
+            and (folder / "report.html").is_file())
 
 
 def _run_one(survey: Survey, say: Say, lanes: int, notebooks: tuple[str, ...]) -> Path:
     started = time.perf_counter()
-    name, root, reports = survey.campaign.campaign, survey.parameters.root, _reports(survey)
+    name, root = survey.campaign.campaign, survey.parameters.root
+    reports = root / "reports"
     earlier = tuple(path.stem for path in survey.parameters.earlier)
     with locked(root, name, earlier, say) as lock, _new_folder(reports, name) as new:
         lanes = min(lanes, len(notebooks))
@@ -119,7 +112,7 @@ def _new_folder(reports: Path, name: str) -> Iterator[Path]:
     try:
         yield new
     except BaseException as error:
-        if not getattr(error, "keeps_new", False):
+        if not isinstance(error, SwapError):
             shutil.rmtree(new, ignore_errors=True)
         raise
 
@@ -132,7 +125,6 @@ def _execute(survey: Survey, folder: Path, kernels: Kernels, say: Say,
     """
     if not notebooks:
         return {}
-    _check_parameters(survey.parameters.root, notebooks)
     durations: dict[str, float] = {}
     with ThreadPoolExecutor(lanes) as pool:
         asked: dict[Future[float], str] = {
@@ -149,59 +141,9 @@ def _execute(survey: Survey, folder: Path, kernels: Kernels, say: Say,
 
 
 def _execute_one(survey: Survey, folder: Path, kernels: Kernels, name: str) -> float:
-    import papermill
-    from nbclient.exceptions import DeadKernelError
-
     begun = time.perf_counter()
     root = survey.parameters.root
-    handed = {"params_file": survey.inputs[0]["path"], "run_folder": _from_root(survey)}
-    kernel = kernels.take()
-    try:
-        papermill.execute_notebook(
-            _literal(root / "notebooks" / f"{name}.ipynb"), _literal(folder / f"{name}.ipynb"),
-            parameters=handed, kernel_name="python3", progress_bar=False, log_output=False,
-            request_save_on_cell_execute=False, autosave_cell_every=0, cwd=str(root), km=kernel)
-    except papermill.PapermillExecutionError as error:
-        if error.ename == InputError.__name__:
-            raise InputError(*error.evalue.splitlines()) from None
-        kind = getattr(builtins, error.ename, None)
-        if isinstance(kind, type) and issubclass(kind, OSError):
-            raise OSError(f"notebook {name}: {error.evalue}") from None
-        raise
-    except RuntimeError as error:
-        if isinstance(error, DeadKernelError) or "Kernel died" in str(error):
-            raise KernelGoneError(f"notebook {name}: the system stopped its kernel, as when memory "
-                                  "runs out") from None
-        raise
-    finally:
-        kernel.end()
+    execute(root / "notebooks" / f"{name}.ipynb", folder / f"{name}.ipynb", root,
+            {"params_file": survey.inputs[0]["path"],
+             "run_folder": survey.run_folder.relative_to(root).as_posix()}, kernels.take())
     return time.perf_counter() - begun
-
-
-def _from_root(survey: Survey) -> str:
-    """Return the run folder as the notebooks, which run in the project folder, reach it."""
-    return survey.run_folder.relative_to(survey.parameters.root).as_posix()
-
-
-def _literal(path: Path) -> str:
-    """Return a path for papermill, which reads braces in paths as names of parameters."""
-    return str(path).replace("{", "{{").replace("}", "}}")
-
-
-def _check_parameters(root: Path, notebooks: tuple[str, ...]) -> None:
-    """Refuse notebooks whose parameters cell would not take what is handed over."""
-    import papermill
-
-    for name in notebooks:
-        path = root / "notebooks" / f"{name}.ipynb"
-        if not path.is_file():
-            raise InputError(f"notebooks/{name}.ipynb is missing; restore it from the project")
-        known = papermill.inspect_notebook(_literal(path))
-        for key in ("params_file", "run_folder"):
-            if key not in known:
-                raise InputError(f"notebooks/{name}.ipynb: its parameters cell lacks {key}; "
-                                 "restore the cell and its tag 'parameters'")
-
-
-def _reports(survey: Survey) -> Path:
-    return survey.parameters.root / "reports"

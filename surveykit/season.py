@@ -2,13 +2,12 @@
 
 from __future__ import annotations
 
-import errno
 import multiprocessing
 import os
 import threading
 import time
 import traceback
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from concurrent.futures import (
     FIRST_COMPLETED,
     BrokenExecutor,
@@ -17,6 +16,7 @@ from concurrent.futures import (
     ProcessPoolExecutor,
     wait,
 )
+from contextlib import contextmanager
 from dataclasses import dataclass, replace
 from functools import partial
 from graphlib import CycleError, TopologicalSorter
@@ -25,15 +25,15 @@ from pathlib import Path
 
 from surveykit import runner
 from surveykit.core import InputError, shown_faults
-from surveykit.intake.params import is_kit_file, read_plain
+from surveykit.intake.params import is_kit_file, load
 from surveykit.opening import open_file
+from surveykit.swap import UNTOUCHED, storage
 
 DONE, BUG, USER = 0, 1, 2
 TRIES = 2  # of a campaign whose worker died
-STORAGE = {errno.ENOSPC, errno.EDQUOT, errno.EROFS, errno.EACCES, errno.EPERM, errno.EFBIG}
-UNTOUCHED = "nothing of an earlier report was touched"
 Say = Callable[[str], None]
 Work = Callable[[Path, bool], "Outcome"]
+Submit = Callable[[Work, Path, bool], Future["Outcome"]]
 
 
 @dataclass(frozen=True)
@@ -72,13 +72,6 @@ def work(path: Path, only_if_needed: bool, *, lanes: int | None = None,
                     (f"{path}: a bug; please report it:", traceback.format_exc()))
 
 
-def storage(error: OSError) -> str:
-    """Return a sentence on something that could not be read or written."""
-    where = f"{error.filename}: " if error.filename else ""
-    cure = "; make room or give access, then run again" if error.errno in STORAGE else ""
-    return f"{where}{error.strerror or error}{cure}; {UNTOUCHED}"
-
-
 def run_all(paths: Sequence[Path], say: Say, *, jobs: int = 1, cluster: str | None = None,
             notebooks: tuple[str, ...] = runner.NOTEBOOKS) -> list[Outcome]:
     """Run campaigns, each after the earlier ones it names; return what became of each.
@@ -107,18 +100,16 @@ def run_all(paths: Sequence[Path], say: Say, *, jobs: int = 1, cluster: str | No
             campaigns.append(path)
     needs = _needs(campaigns)
     asked = {_same(path) for path in campaigns}
+    one = partial(work, notebooks=notebooks)
     if cluster is None and (jobs == 1 or len(needs) < 2):
-        one = partial(work, notebooks=notebooks, say=say)
-        return _ordered(needs, asked, lambda path, spare: _now(one, path, spare), say, jobs=1)
-    lanes = max(1, runner.cores() // jobs)
-    pool = _Cluster(cluster) if cluster is not None else _Processes(jobs)
-    try:
-        one = partial(work, notebooks=notebooks, lanes=1 if cluster is not None else lanes)
-        width = len(needs) if cluster is not None else jobs
-        return _ordered(needs, asked, lambda path, spare: pool.submit(one, path, spare),
-                        say, jobs=width, renew=pool.renew)
-    finally:
-        pool.close()
+        return _ordered(needs, asked, partial(_now, partial(one, say=say)), say, jobs=1)
+    if cluster is not None:
+        workers, lanes, jobs = _cluster(cluster), 1, len(needs)
+    else:
+        workers, lanes = _processes(jobs), max(1, runner.cores() // jobs)
+    one = partial(one, lanes=lanes)
+    with workers as submit:
+        return _ordered(needs, asked, partial(submit, one), say, jobs=jobs)
 
 
 def run_campaigns(paths: Sequence[Path], say: Say, *, jobs: int = 1, cluster: str | None = None,
@@ -135,7 +126,11 @@ def run_campaigns(paths: Sequence[Path], say: Say, *, jobs: int = 1, cluster: st
         from surveykit.index import write_index
 
         for root in {one.report.parents[2] for one in outcomes if one.report is not None}:
-            write_index(root)
+            try:
+                write_index(root)
+            except OSError as error:
+                outcomes.append(Outcome(root / "reports" / "index.html", BUG, "not written",
+                                        lines=(storage(error),)))
     return outcomes
 
 
@@ -171,22 +166,17 @@ def _needs(campaigns: list[Path]) -> dict[Path, set[Path]]:
             return needs
 
 
-def _earlier(path: Path) -> list[Path]:
+def _earlier(path: Path) -> tuple[Path, ...]:
     """Return the earlier campaigns a file names; none where it is at fault: its run says so."""
     try:
-        stated = read_plain(path).get("comparison")
+        return load(path).earlier
     except InputError:
-        return []
-    named = stated.get("earlier") if isinstance(stated, dict) else None
-    root = path.parent.parent
-    found = [root / text for text in named if isinstance(text, str) and "\0" not in text] \
-        if isinstance(named, list) else []
-    return [one for one in found if one.parent == path.parent and one.is_file()]
+        return ()
 
 
 def _ordered(needs: dict[Path, set[Path]], asked: set[Path],
-             submit: Callable[[Path, bool], Future[Outcome]], say: Say, *, jobs: int,
-             renew: Callable[[], None] = lambda: None) -> list[Outcome]:
+             submit: Callable[[Path, bool], Future[Outcome]], say: Say, *,
+             jobs: int) -> list[Outcome]:
     sorter = TopologicalSorter(needs)
     sorter.prepare()
     ready: list[Path] = []
@@ -218,7 +208,6 @@ def _ordered(needs: dict[Path, set[Path]], asked: set[Path],
             try:
                 settle(replace(one.result(), path=path))
             except Exception as error:  # the worker died, not the campaign
-                renew()
                 if tries[path] < TRIES:
                     ready.insert(0, path)
                 else:
@@ -234,57 +223,43 @@ def _now(one: Work, path: Path, only_if_needed: bool) -> Future[Outcome]:
     return done
 
 
-class _Processes:
-    """Processes of this machine, started anew; a broken pool is replaced."""
+@contextmanager
+def _processes(jobs: int) -> Iterator[Submit]:
+    """Yield what hands work to processes of this machine; a broken pool of them is replaced."""
+    def started() -> Executor:
+        return ProcessPoolExecutor(jobs, multiprocessing.get_context("spawn"), _end_with_parent)
 
-    def __init__(self, jobs: int) -> None:
-        self.jobs = jobs
-        self.executor: Executor = self._new()
+    pool = started()
 
-    def _new(self) -> Executor:
-        return ProcessPoolExecutor(self.jobs, multiprocessing.get_context("spawn"),
-                                   _end_with_parent)
-
-    def submit(self, one: Work, path: Path, only_if_needed: bool) -> Future[Outcome]:
-        self.renew()
-        return self.executor.submit(one, path, only_if_needed)
-
-    def renew(self) -> None:
-        """Replace the pool if it is broken."""
+    def submit(one: Work, path: Path, only_if_needed: bool) -> Future[Outcome]:
+        nonlocal pool
         try:
-            self.executor.submit(os.getpid)
+            return pool.submit(one, path, only_if_needed)
         except BrokenExecutor:
-            self.executor.shutdown(wait=False, cancel_futures=True)
-            self.executor = self._new()
+            pool = started()
+            return pool.submit(one, path, only_if_needed)
 
-    def close(self) -> None:
-        self.executor.shutdown(wait=True, cancel_futures=True)
+    try:
+        yield submit
+    finally:
+        pool.shutdown(wait=True, cancel_futures=True)
 
 
-class _Cluster:
-    """Workers of a dask cluster that see the project folder under the same path."""
-
-    def __init__(self, address: str) -> None:
-        try:
-            from distributed import Client
-        except ImportError:
-            raise InputError("--cluster: dask.distributed is not installed; write: pip install "
-                             "'surveykit[cluster]'") from None
-        try:
-            self.client = Client(address, timeout=10)
-        except (OSError, ValueError) as error:
-            raise InputError(f"--cluster: got {address!r}: {error}; write the address of a "
-                             "scheduler, such as tcp://host:8786") from None
-        self.executor: Executor = self.client.get_executor(pure=False)
-
-    def submit(self, one: Work, path: Path, only_if_needed: bool) -> Future[Outcome]:
-        return self.executor.submit(one, path, only_if_needed)
-
-    def renew(self) -> None:
-        """Nothing: the scheduler itself replaces a worker."""
-
-    def close(self) -> None:
-        self.client.close()
+@contextmanager
+def _cluster(address: str) -> Iterator[Submit]:
+    """Yield what hands work to a dask cluster that sees the project folder under the same path."""
+    try:
+        from distributed import Client
+    except ImportError:
+        raise InputError("--cluster: dask.distributed is not installed; write: pip install "
+                         "'surveykit[cluster]'") from None
+    try:
+        client = Client(address, timeout=10)
+    except (OSError, ValueError) as error:
+        raise InputError(f"--cluster: got {address!r}: {error}; write the address of a "
+                         "scheduler, such as tcp://host:8786") from None
+    with client:
+        yield client.get_executor(pure=False).submit
 
 
 def _end_with_parent() -> None:

@@ -8,6 +8,7 @@ from collections.abc import Sequence
 from pathlib import Path
 
 from surveykit.core import InputError
+from surveykit.handover import save_text
 from surveykit.intake.params import find_root
 
 PARAMETERS = """\
@@ -64,13 +65,16 @@ def start(name: str, here: Path, logs: Sequence[Path] = ()) -> list[str]:
     if not re.fullmatch(r"[a-z0-9][a-z0-9-]{0,63}", name):
         raise InputError(f"ID: got {name[:80]!r}; write lower-case letters, digits and -, "
                          "at most 64, such as mill-yard-2025-07-24")
+    if re.fullmatch("con|prn|aux|nul|(com|lpt)[0-9]", name):
+        raise InputError(f"ID: {name!r} is a device on some systems and cannot name a file there; "
+                         "choose another ID")
     kit, loggers, written, over = "instruments", LOGGERS, {}, []
     if logs:
         from surveykit.intake.sketching import is_sheet, sketch
 
-        over = [f"{path.name}: a field sheet, no log; passed over" for path in logs
-                if is_sheet(path)]
-        logs = [path for path in logs if not is_sheet(path)]
+        sheets = [path for path in logs if is_sheet(path)]
+        over = [f"{path.name}: a field sheet, no log; passed over" for path in sheets]
+        logs = [path for path in logs if path not in sheets]
         if not logs:
             raise InputError(*over, "--log: none of the files is a log; name the loggers' files")
         kit = f"{name}-instruments"
@@ -87,15 +91,15 @@ def start(name: str, here: Path, logs: Sequence[Path] = ()) -> list[str]:
               "move it away" for path in written if path.exists()]
     if faults:
         raise InputError(*faults)
-    for path, text in written.items():
-        path.parent.mkdir(parents=True, exist_ok=True)
-        with path.open("x", encoding="utf-8", newline="\n") as file:
-            file.write(text)
-    shown = [path.relative_to(root).as_posix() for path in written]
-    if logs:
-        return [*over, *(f"wrote {name}" for name in shown),
-                "compare each CONFIRM with the logger's program, fill in each FILL IN, then: "
-                f"surveykit check params/{kit}.yml"]
-    return [*(f"wrote {name}" for name in shown),
-            f"put the logger files into data/{name}/, fill in both files, then: "
-            f"surveykit check {shown[0]}"]
+    try:
+        for path, text in written.items():
+            save_text(path, text)
+    except BaseException:
+        for path in written:
+            path.unlink(missing_ok=True)
+        raise
+    file, next_step = (
+        kit, "compare each CONFIRM with the logger's program, fill in each FILL IN") if logs else (
+        name, f"put the logger files into data/{name}/, fill in both files")
+    return [*over, *(f"wrote {path.relative_to(root).as_posix()}" for path in written),
+            f"{next_step}, then: surveykit check params/{file}.yml"]

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import ctypes
+import errno
 import os
 import shutil
 import sys
@@ -10,12 +11,22 @@ from pathlib import Path
 
 AT_FDCWD = -100
 RENAME_EXCHANGE = 2
+UNSYNCED = {errno.EINVAL, errno.ENOTSUP}  # of storages that cannot sync a folder
+
+
+STORAGE = {errno.ENOSPC, errno.EDQUOT, errno.EROFS, errno.EACCES, errno.EPERM, errno.EFBIG}
+UNTOUCHED = "nothing of an earlier report was touched"
 
 
 class SwapError(OSError):
     """The system would not rename a folder (a table open elsewhere); both folders are whole."""
 
-    keeps_new = True
+
+def storage(error: OSError) -> str:
+    """Return a sentence on something that could not be read or written."""
+    where = f"{error.filename}: " if error.filename else ""
+    cure = "; make room or give access, then run again" if error.errno in STORAGE else ""
+    return f"{where}{error.strerror or error}{cure}; {UNTOUCHED}"
 
 
 def heal(folder: Path, name: str) -> None:
@@ -37,6 +48,9 @@ def settle(folder: Path) -> None:
         descriptor = os.open(path, os.O_RDONLY if os.name != "nt" else os.O_RDWR)
         try:
             os.fsync(descriptor)
+        except OSError as error:
+            if error.errno not in UNSYNCED:
+                raise
         finally:
             os.close(descriptor)
 
@@ -55,12 +69,11 @@ def swap_in(folder: Path, name: str) -> None:
     place, new, aside = folder / name, folder / f".{name}.new", folder / f".{name}.old"
     settle(new)
     try:
-        if not place.exists():
-            os.rename(new, place)
-        elif exchange(new, place):
-            os.rename(new, aside)
+        if place.exists() and exchange(new, place):
+            aside = new
         else:
-            os.rename(place, aside)
+            if place.exists():
+                os.rename(place, aside)
             os.rename(new, place)
     except OSError as error:
         heal(folder, name)

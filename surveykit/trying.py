@@ -1,9 +1,12 @@
-"""Other settings tried on one surface or one pair, in memory: no file and no report changes."""
+"""Other settings tried on one surface or one pair: no file of the project changes."""
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+import shutil
+from collections.abc import Callable, Mapping
 from dataclasses import replace
+from pathlib import Path
+from tempfile import TemporaryDirectory
 from typing import Any
 
 import pandas as pd
@@ -11,16 +14,8 @@ from pydantic import ValidationError
 
 from surveykit import pipeline
 from surveykit.core import InputError
-from surveykit.evidence import compare
-from surveykit.evidence import surfaces as pooling
-from surveykit.evidence.comparability import Date
-from surveykit.evidence.conditions import Day
-from surveykit.evidence.estimates import estimate_all
-from surveykit.intake.aligning import align
 from surveykit.intake.params import Parameters
-from surveykit.keeping import load_records
 from surveykit.opening import Survey
-from surveykit.quality import examine
 
 Changes = Mapping[str, Mapping[str, Any]]
 RUN, TRIED = "as run", "tried"
@@ -46,54 +41,51 @@ def surface(survey: Survey, name: str, changes: Changes) -> pd.DataFrame:
         If the surface or a setting is not known.
     """
     _known(survey, name)
-    before = pipeline.surfaces(survey).tables["surfaces"]
-    parameters, groups = _groups(survey, (name,), changes)
-    after = pooling.surface_table([g for g in groups if g.surface == name],
-                                  parameters.settings.statistics.coverage)
-    return _beside(before[before["surface"] == name], after, SHOWN)
+
+    def rows(some: Survey) -> pd.DataFrame:
+        table = pipeline.surfaces(some).tables["surfaces"]
+        return table[table["surface"] == name]
+
+    return _beside(survey, changes, SHOWN, rows)
 
 
 def difference(survey: Survey, one: str, other: str, changes: Changes) -> pd.DataFrame:
     """Return the differences of one pair as run and with other settings, side by side.
 
-    Verdicts are left out: they weigh all pairs of a date together.
+    Verdicts are left out: a setting is tried for what it does to a number.
 
     Raises
     ------
     InputError
         If a surface or a setting is not known.
     """
-    for name in (one, other):
-        _known(survey, name)
-    # Every surface takes part: the common time of a date is that of all of them.
-    parameters, groups = _groups(survey, tuple(survey.campaign.surfaces), changes)
-    after = compare.differences(Date(parameters, {g.key: g for g in groups}), survey.draws())
-    before = pipeline.comparison(survey)["differences"]
-    then, now = (table[[{*ends} == {one, other} for ends in zip(
-        table["surface"], table["other"], strict=True)]] for table in (before, after))
-    return _beside(then, now, COMPARED)
+    _known(survey, one, other)
+
+    def rows(some: Survey) -> pd.DataFrame:
+        table = pipeline.comparison(some)["differences"]
+        return table[table["surface"].isin((one, other)) & table["other"].isin((one, other))]
+
+    return _beside(survey, changes, COMPARED, rows)
 
 
-def _known(survey: Survey, name: str) -> None:
-    if name not in survey.campaign.surfaces:
-        raise InputError(f"surface {name!r} is not one of this campaign's; write one of "
-                         f"{', '.join(survey.campaign.surfaces)}")
+def _known(survey: Survey, *names: str) -> None:
+    for name in names:
+        if name not in survey.campaign.surfaces:
+            raise InputError(f"surface {name!r} is not one of this campaign's; write one of "
+                             f"{', '.join(survey.campaign.surfaces)}")
 
 
-def _groups(survey: Survey, names: tuple[str, ...],
-            changes: Changes) -> tuple[Parameters, tuple[pooling.Group, ...]]:
-    """Return the changed parameters and what the passes of some surfaces come to under them."""
-    parameters = _changed(survey, changes)
+def _beside(survey: Survey, changes: Changes, columns: tuple[str, ...],
+            rows: Callable[[Survey], pd.DataFrame]) -> pd.DataFrame:
+    """Return what `rows` gives of a survey and of the same with changed settings."""
+    parameters, before = _changed(survey, changes), rows(survey)
     pipeline.ingest(survey)
-    kept = load_records(survey.run_folder / "ingest")
-    made = align(parameters, {logger: kept[logger] for logger in survey.campaign.loggers}, [])
-    marked = examine(parameters, made.records, made.sheet, made.passes)
-    day = Day(parameters, made.records, made.sheet, marked)
-    control = parameters.campaign.comparison.control
-    wanted = tuple(p for p in made.passes if p.surface in (*names, control))
-    found = pooling.groups(parameters.name, estimate_all(day, wanted), survey.draws(),
-                           coverage=parameters.settings.statistics.coverage)
-    return parameters, found
+    with TemporaryDirectory() as aside:
+        shutil.copytree(survey.run_folder / "ingest", Path(aside) / "ingest")
+        after = rows(replace(survey, parameters=parameters, run_folder=Path(aside), made={}))
+    both = pd.concat([before.assign(settings=RUN), after.assign(settings=TRIED)])
+    order = both.sort_values(["quantity", "kind"], kind="stable")
+    return order[["settings", *columns]].reset_index(drop=True)
 
 
 def _changed(survey: Survey, changes: Changes) -> Parameters:
@@ -108,9 +100,3 @@ def _changed(survey: Survey, changes: Changes) -> Parameters:
                            for e in error.errors())) from None
     campaign = survey.campaign.model_copy(update={"settings": new})
     return replace(survey.parameters, campaign=campaign)
-
-
-def _beside(before: pd.DataFrame, after: pd.DataFrame, columns: tuple[str, ...]) -> pd.DataFrame:
-    both = pd.concat([before.assign(settings=RUN), after.assign(settings=TRIED)])
-    order = both.sort_values(["quantity", "kind"], kind="stable")
-    return order[["settings", *columns]].reset_index(drop=True)

@@ -60,14 +60,43 @@ def test_hours_of_sun_at_40_north(survey):
     """Computed (two independent scripts): zenith below 45 degrees at 40 N for 6.7 h on 21 June,
     3.0 h on 20 March and not at all in December."""
     for day, hours in (("2025-06-21", 6.7), ("2025-03-20", 3.0), ("2025-12-21", 0.0)):
-        campaign = survey.campaign.model_copy(update={
-            "date": day, "site": survey.campaign.site.model_copy(update={"latitude": 40.0})})
-        other = dataclasses.replace(survey, parameters=dataclasses.replace(
-            survey.parameters, campaign=campaign))
+        other = changed(survey, date=day,
+                        site=survey.campaign.site.model_copy(update={"latitude": 40.0}))
         windows = planning.sun_windows(planning.sun_course(other), other)
         assert windows["hours"].iloc[0] == pytest.approx(hours, abs=0.15), day
         if not hours:
             assert windows["first"].iloc[0] == "never"
+
+
+def changed(survey, **sections):
+    campaign = survey.campaign.model_copy(update=sections)
+    return dataclasses.replace(survey, parameters=dataclasses.replace(
+        survey.parameters, campaign=campaign))
+
+
+def test_a_day_whose_midnight_the_clocks_leap_over(survey):
+    """Chile puts its clocks forward at midnight: 7 September 2025 begins at 01:00 (IANA zone)."""
+    site = survey.campaign.site.model_copy(update={
+        "latitude": -33.4, "longitude": -70.6, "time_zone": "America/Santiago"})
+    course = planning.sun_course(changed(survey, date="2025-09-07", site=site))
+    assert course["time_utc"].iloc[0] == pd.Timestamp("2025-09-07T04:00Z")
+
+
+def test_limits_of_the_sun_that_coincide_keep_both_meanings(survey):
+    albedo = survey.campaign.settings.albedo.model_copy(update={"zenith_standard_deg": 60.0})
+    other = changed(survey, settings=survey.campaign.settings.model_copy(
+        update={"albedo": albedo}))
+    windows = planning.sun_windows(planning.sun_course(other), other)
+    assert windows["meaning"].iloc[0] == "albedo, standard; albedo, qualified"
+
+
+def test_a_wider_coverage_needs_more_passes(survey, plan):
+    statistics = survey.campaign.settings.statistics.model_copy(update={"coverage": 0.99})
+    other = changed(survey, settings=survey.campaign.settings.model_copy(
+        update={"statistics": statistics}))
+    wide = planning.make(other).passes
+    assert (wide["passes"] >= plan.passes["passes"]).all()
+    assert (wide["passes"] > plan.passes["passes"]).any()
 
 
 @pytest.mark.parametrize(("radius", "zenith", "contrast", "height_cm"), [

@@ -132,6 +132,17 @@ def test_the_page_that_lists_all_reports(yards):
     assert page.read_text(encoding="utf-8") == text
 
 
+def test_a_contents_page_that_cannot_be_written_hides_no_report(yards, monkeypatch):
+    def full(root):
+        raise OSError(28, "No space left on device", "reports/index.html")
+
+    monkeypatch.setattr("surveykit.index.write_index", full)
+    made, page = season.run_campaigns([yards / "params" / "z-first.yml"], quiet, notebooks=())
+    assert (made.code, made.word) == (DONE, "done")
+    assert (page.code, page.word) == (BUG, "not written")
+    assert "No space left on device; make room" in page.lines[0]
+
+
 def test_a_broken_report_is_left_out_of_the_page(yards):
     run_here(yards, ["z-first"])
     broken = yards / "reports" / "broken"

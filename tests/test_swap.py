@@ -1,6 +1,8 @@
 """The swap of report folders, stopped at each of its steps on purpose."""
 
+import errno
 import os
+import stat
 
 import pytest
 
@@ -112,3 +114,27 @@ def test_all_is_on_the_disk_before_the_folders_change_places(reports, monkeypatc
     files = sum(1 for _ in (reports / ".yard.new").rglob("*"))
     swap.swap_in(reports, "yard")
     assert order == ["sync"] * (files + 1) + ["rename", "rename"]
+
+
+def test_a_storage_that_cannot_sync_folders_still_takes_the_report(reports, monkeypatch):
+    """Network folders answer fsync of a folder with EINVAL; for a file it is a fault."""
+    real = os.fsync
+
+    def sync(descriptor):
+        if stat.S_ISDIR(os.fstat(descriptor).st_mode):
+            raise OSError(errno.EINVAL, "Invalid argument")
+        real(descriptor)
+
+    monkeypatch.setattr(os, "fsync", sync)
+    swap.swap_in(reports, "yard")
+    assert content(reports) == "new"
+
+
+def test_after_the_exchange_no_failure_says_that_the_old_one_still_stands(reports):
+    """An aside that cannot be taken away must not turn a finished report into a failed one."""
+    if not swap.exchange(reports / "yard", reports / ".yard.new"):
+        pytest.skip("no exchange of folders here")
+    swap.exchange(reports / "yard", reports / ".yard.new")
+    (reports / ".yard.old").write_text("in the way")
+    swap.swap_in(reports, "yard")
+    assert content(reports) == "new"

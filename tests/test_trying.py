@@ -68,6 +68,17 @@ def test_the_same_settings_give_the_same_numbers_and_others_move_them(project):
         assert block["difference"].nunique() == 1 or np.ptp(block["difference"].abs()) < 1e-9
 
 
+def test_what_a_setting_of_the_statistics_does_is_seen(project):
+    """Scatter between passes taken in common for a quantity widens what one pass leaves open."""
+    survey = open_file(project / "params" / f"{NAME}.yml")
+    common = trying.surface(survey, "lawn", {"statistics": {"between_passes": "common"}})
+    u = common.pivot_table(index=["quantity", "kind"], columns="settings", values="u")
+    assert (abs(u["tried"] / u["as run"] - 1) > 1e-3).any()
+    fewer = trying.surface(survey, "lawn", {"statistics": {"seed": 7}})
+    u = fewer.pivot_table(index=["quantity", "kind"], columns="settings", values="u")
+    assert (u["tried"] != u["as run"]).any()
+
+
 def test_unknown_names_are_refused(project):
     survey = open_file(project / "params" / f"{NAME}.yml")
     with pytest.raises(InputError, match="surface 'pond' is not one of"):

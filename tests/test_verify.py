@@ -87,7 +87,9 @@ def test_what_is_missing_or_added_is_refused(project, report):
 
 @pytest.mark.parametrize("spoil", [
     lambda kept: kept.pop("outputs"), lambda kept: kept["outputs"].pop("report.html"),
-    lambda kept: kept.pop("inputs")])
+    lambda kept: kept.pop("inputs"), lambda kept: kept.update(outputs=[]),
+    lambda kept: kept.update(inputs=[1]), lambda kept: kept.update(params_file=None),
+    lambda kept: kept.update(versions="1.0"), lambda kept: kept["inputs"].append({"path": 3})])
 def test_an_incomplete_run_json_is_refused(report, spoil):
     path = report / "run.json"
     before = path.read_text(encoding="utf-8")
@@ -124,7 +126,7 @@ def test_rerun_waits_for_a_run_under_way(project, report):
             limit = time.monotonic() + 30
             while not said and time.monotonic() < limit:
                 time.sleep(0.02)
-            assert said[0].startswith(f"{NAME}: waits for another run of it")
+            assert said[0].startswith(f"{NAME}: waits for another run that uses it")
             assert not again.done()
         assert "no cell of the tables moved" in again.result(timeout=60)[1]
 
@@ -161,4 +163,6 @@ def test_moved_cells_by_hand():
                        ("c,a,declared,1.0,0.5,,qualified,",
                         ["row 2, status: ok then, qualified now"])):
         assert [*moved_cells(old, f"{head}\n{row}\n", "clocks")] == moved
-    assert [*moved_cells(old, f"{head}\n", "clocks")] == ["1 rows then, 0 rows now"]
+    assert [*moved_cells(old, f"{head}\n", "clocks")] == ["1 row then, 0 rows now"]
+    assert [*moved_cells(old, old.replace("drift_ppm", "drift"), "clocks")] == [
+        "columns drift_ppm then, drift now"]

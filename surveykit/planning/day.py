@@ -16,7 +16,7 @@ from surveykit.intake.params import Channel
 from surveykit.opening import Survey, open_file
 from surveykit.physics import footprint, walking
 from surveykit.physics.sun import sun_track
-from surveykit.planning.patches import Patch, patches
+from surveykit.planning.patches import Patch, offered, patches
 from surveykit.statistics.pooling import passes_needed, paule_mandel
 
 MINUTE_NS = 60_000_000_000
@@ -61,7 +61,8 @@ def earlier(survey: Survey) -> tuple[str, pipeline.Tables]:
 def sun_course(survey: Survey) -> pd.DataFrame:
     """Return the sun's zenith angle in each minute of the campaign's day at the site."""
     site = survey.campaign.site
-    midnight = pd.Timestamp(survey.campaign.date).tz_localize(site.time_zone)
+    midnight = pd.Timestamp(survey.campaign.date).tz_localize(
+        site.time_zone, nonexistent="shift_forward", ambiguous=True)
     minutes = midnight.value + np.arange(24 * 60, dtype=np.int64) * MINUTE_NS
     track = sun_track(minutes, site.latitude, site.longitude, site.elevation_m)
     return pd.DataFrame({"time_utc": pd.to_datetime(minutes, utc=True),
@@ -71,20 +72,22 @@ def sun_course(survey: Survey) -> pd.DataFrame:
 def sun_windows(course: pd.DataFrame, survey: Survey) -> pd.DataFrame:
     """Return for each limit of the zenith angle when the sun is inside it.
 
-    Columns: limit_deg, meaning, first, last (site time, "" where never), hours.
+    Columns: limit_deg, meaning, first, last (site time; "never" and "" where it is not), hours.
     """
     albedo, ndvi = survey.campaign.settings.albedo, survey.campaign.settings.ndvi
-    limits = {albedo.zenith_standard_deg: "albedo, standard",
-              albedo.zenith_qualified_deg: "albedo, qualified",
-              albedo.zenith_max_deg: "albedo, the last usable"}
-    limits[ndvi.zenith_max_deg] = "; ".join(filter(None, (
-        limits.get(ndvi.zenith_max_deg, ""), "NDVI, the last usable")))
+    limits: dict[float, list[str]] = {}
+    for limit, meaning in ((albedo.zenith_standard_deg, "albedo, standard"),
+                           (albedo.zenith_qualified_deg, "albedo, qualified"),
+                           (albedo.zenith_max_deg, "albedo, the last usable"),
+                           (ndvi.zenith_max_deg, "NDVI, the last usable")):
+        limits.setdefault(limit, []).append(meaning)
     rows = []
     zone = survey.campaign.site.time_zone
-    for limit, meaning in sorted(limits.items()):
+    for limit, meanings in sorted(limits.items()):
         inside = course.loc[course["zenith_deg"] <= limit, "time_utc"]
         ends = [f"{t.tz_convert(zone):%H:%M}" for t in inside.iloc[[0, -1]]] if len(inside) else []
-        rows.append({"limit_deg": limit, "meaning": meaning, "first": ends[0] if ends else "never",
+        rows.append({"limit_deg": limit, "meaning": "; ".join(meanings),
+                     "first": ends[0] if ends else "never",
                      "last": ends[1] if ends else "", "hours": round(len(inside) / 60, 1)})
     return pd.DataFrame(rows)
 
@@ -177,19 +180,18 @@ def passes(survey: Survey, before: tuple[str, pipeline.Tables]) -> pd.DataFrame:
     top and do not shrink with passes.
     """
     wanted, rows = survey.campaign.relevant_change, []
+    coverage = survey.campaign.settings.statistics.coverage
     told, planning = _spreads(*before), survey.campaign.settings.planning
     assumed = {"temperature": (planning.temperature_between_k, planning.temperature_within_k),
                "albedo": (planning.albedo_between, planning.albedo_within),
                "ndvi": (planning.ndvi_between, planning.ndvi_within)}
-    quantities = [q for q, name in (("temperature", "brightness_temperature"),
-                                    ("temperature", "longwave_up"), ("albedo", "shortwave_up"),
-                                    ("ndvi", "red_up")) if _channel(survey, name)]
-    for quantity in dict.fromkeys(quantities):
+    for quantity in dict.fromkeys(head if head in assumed else "temperature"
+                                  for head in offered(survey)):
         for surface in survey.campaign.surfaces:
             known = {k: v for k, v in told.items() if k[:2] == (surface, quantity)}
             for (_, _, kind), (between, within, source) in (known or {
                     (surface, quantity, ""): (*assumed[quantity], "settings")}).items():
-                need = passes_needed(between, within, wanted.of(quantity))
+                need = passes_needed(between, within, wanted.of(quantity), coverage)
                 rows.append({"surface": surface, "quantity": quantity, "kind": kind,
                              "between": between, "within": within, "wanted": wanted.of(quantity),
                              "passes": need, "unit": UNITS[quantity], "source": source})

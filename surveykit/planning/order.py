@@ -11,6 +11,7 @@ from surveykit.opening import Survey
 from surveykit.planning.day import Plan
 from surveykit.planning.patches import Patch
 from surveykit.report.standing import SAFETY as SAFETY
+from surveykit.report.wording import plural
 from surveykit.starting import COLUMNS
 
 LIGHT = ("shortwave_down", "shortwave_up", "red_down", "red_up")
@@ -94,7 +95,8 @@ def fits(survey: Survey, plan: Plan, visits: pd.DataFrame) -> str:
     window = plan.windows.iloc[0]
     room = 60 * float(window["hours"])
     word = "fits" if minutes <= room else "does not fit"
-    return (f"{len(visits)} visits to {len(plan.patches)} patches take about {minutes:.0f} min; "
+    places = plural(len(plan.patches), "patch", "patches")
+    return (f"{len(visits)} visits to {places} take about {minutes:.0f} min; "
             f"that {word} the {room:.0f} min in which the sun stands within "
             f"{window['limit_deg']:.0f} degrees of the zenith ({window['meaning']}).")
 

@@ -39,7 +39,7 @@ def patches(survey: Survey) -> tuple[tuple[Patch, ...], str]:
         found = tuple(p for p in _from_sheet(sheet) if p.surface in survey.campaign.surfaces)
         if found:
             return found, f"Patches as on the field sheet of {one.campaign.campaign}."
-    heads = _offered(survey)
+    heads = offered(survey)
     return (tuple(Patch(surface, f"{surface}-1", heads=heads)
                   for surface in survey.campaign.surfaces),
             "No field sheet names patches yet: one patch a surface, its size not known.")
@@ -60,7 +60,8 @@ def _from_sheet(sheet: Sheet) -> tuple[Patch, ...]:
     return tuple(found.values())
 
 
-def _offered(survey: Survey) -> tuple[str, ...]:
+def offered(survey: Survey) -> tuple[str, ...]:
+    """Return the ways to read that the campaign's loggers offer; contact is left to the crew."""
     held = {c.quantity for name in survey.campaign.loggers
             for c in survey.parameters.channels(name)}
     words = {"brightness_temperature": "stand-off", "longwave_up": "longwave",

@@ -32,14 +32,15 @@ def examine(parameters: Parameters, records: dict[str, Records], sheet: Sheet,
     AssertionError
         If a record of a file is not accounted for exactly once (a bug, never the user's fault).
     """
-    study = Study(parameters, records, sheet, passes)
     site = parameters.campaign.site
-    for name, log in records.items():
-        study.channels[name] = {c.column: c for c in parameters.channels(name)}
-        study.sun[name] = sun_track(log.time_ns, site.latitude, site.longitude, site.elevation_m)
+    study = Study(
+        parameters, records, sheet, passes,
+        {name: {c.column: c for c in parameters.channels(name)} for name in records},
+        {name: sun_track(log.time_ns, site.latitude, site.longitude, site.elevation_m)
+         for name, log in records.items()})
     masks = {name: mark(study, name) for name in records}
     compare(study, masks)
-    support(study)
+    support(study, masks)
     chosen = {p.name: choose(study, p, masks) for p in passes}
     return Quality(masks, chosen, table("checks", study.checks), ledger(study, masks, chosen),
                    waterfall(study, masks, chosen))

@@ -11,6 +11,8 @@ from surveykit.physics.shortwave import shortwave_limits
 from surveykit.physics.sun import Sun
 
 TO_SD = 1.4826  # of the median absolute deviation of normal readings
+LIMITS = {"shortwave_down": ("down_possible", "down_rare"),
+          "shortwave_up": ("up_possible", "up_rare")}  # of physics.shortwave
 PILE = 5  # times as many readings at a channel's end as at the next value show a limit
 
 
@@ -20,30 +22,22 @@ def out_of_range(values: FloatArray, low: float, high: float) -> BoolArray:
         return (values < low) | (values > high)
 
 
-def physically_impossible(values: FloatArray, quantity: str, sun: Sun) -> BoolArray:
-    """Shortwave irradiance [W m-2] above the limits of Long & Shi (2008); others never.
+def too_much_light(values: FloatArray, quantity: str, sun: Sun, *, rare: bool) -> BoolArray:
+    """Shortwave irradiance [W m-2] above what is physically possible; others never.
 
-    The lower limits are left out: readings still hold the head's dark reading here, which may lie
-    below them.
+    With `rare`, above the extremely rare limits, made for one-minute means. The lower limits are
+    left out: readings still hold the head's dark reading here, which may lie below them.
 
     References
     ----------
     Long, C. N. and Shi, Y. (2008), The Open Atmospheric Science Journal 2, 23-37 (down);
     BSRN limits for the upward flux (from memory).
     """
+    if quantity not in LIMITS:
+        return np.zeros(values.shape, dtype=bool)
     limits = shortwave_limits(sun.cos_zenith, sun.extraterrestrial_w_m2)
-    return _above(values, quantity, limits.down_possible, limits.up_possible)
-
-
-def extremely_rare(values: FloatArray, quantity: str, sun: Sun) -> BoolArray:
-    """Shortwave irradiance [W m-2] above the extremely rare limits; others never.
-
-    References
-    ----------
-    As `physically_impossible`; made for one-minute means.
-    """
-    limits = shortwave_limits(sun.cos_zenith, sun.extraterrestrial_w_m2)
-    return _above(values, quantity, limits.down_rare, limits.up_rare)
+    with np.errstate(invalid="ignore"):
+        return np.asarray(values > getattr(limits, LIMITS[quantity][rare]))
 
 
 def end_of_range(values: FloatArray, low: float, high: float, share: float, *,
@@ -152,10 +146,3 @@ def steps(time_ns: IntArray, values: FloatArray, max_per_s: float, interval_s: f
         lapse_s = np.maximum((time_ns[back:] - time_ns[:-back]) / NS, 1e-9)
         out[back:] = np.abs(values[back:] - values[:-back]) > max_per_s * np.maximum(lapse_s, 1.0)
     return out
-
-
-def _above(values: FloatArray, quantity: str, down: FloatArray, up: FloatArray) -> BoolArray:
-    if quantity not in ("shortwave_down", "shortwave_up"):
-        return np.zeros(values.shape, dtype=bool)
-    with np.errstate(invalid="ignore"):
-        return values > (down if quantity == "shortwave_down" else up)

@@ -11,14 +11,13 @@ from surveykit.intake.params import Channel
 from surveykit.intake.passes import Pass
 from surveykit.physics.bands import SIGMA
 from surveykit.quality.checks import out_of_range
-from surveykit.quality.series import inside, nearest, slopes
+from surveykit.quality.series import chosen, inside, nearest, partners, slopes, within
 from surveykit.quality.sky import Watch, changed, unsteady, watch
 from surveykit.quality.study import Masks, Study
 from surveykit.quality.supports import dark_levels
 
 ZERO_U = 3.0  # standard uncertainties of a head's zero that an improbable albedo must exceed
 PAIRS = (("shortwave_up", "shortwave_down"), ("red_up", "red_down"), ("nir_up", "nir_down"))
-ROUNDING_S = 1e-3  # of printed times, beyond half an interval between partners
 
 
 def more_up_than_down(up: FloatArray, down: FloatArray, least_up: float) -> BoolArray:
@@ -69,9 +68,8 @@ def compare(study: Study, masks: Masks) -> None:
                 served[up.logger, up.column, down.logger, down.column] = up, down
         for up, down in served.values():
             _up_and_down(study, masks, up, down)
-    for columns in study.channels.values():
-        for channel in columns.values():
-            _air(study, masks, channel)
+    for channel in study.every_channel:
+        _air(study, masks, channel)
     _sky(study, masks)
 
 
@@ -81,22 +79,20 @@ def air_at(study: Study, masks: Masks, time_ns: IntArray) -> FloatArray:
     Neighbours are interpolated, never further than `temperature.weather_reach_s` beyond them.
     """
     reach_s = study.parameters.campaign.settings.temperature.weather_reach_s
-    known, air = np.zeros(0, dtype=np.int64), np.zeros(0)
-    for logger, columns in study.channels.items():
-        for column, channel in columns.items():
-            if channel.quantity == "air_temperature" and not known.size:
-                good = masks[logger][column] == 0
-                known = study.records[logger].time_ns[good]
-                air = study.records[logger].channels[column][good]
-    if not known.size:
-        rows = sorted((e.start_ns, e.reading) for e in study.sheet.entries
-                      if e.entry == "weather" and e.quantity == "air_temperature")
-        known = np.array([row[0] for row in rows], dtype=np.int64)
-        air = np.array([row[1] for row in rows])
-    if not known.size:
-        return np.full(time_ns.shape, np.nan)
-    near = nearest(time_ns, known, reach_s) >= 0
-    return np.where(near, np.interp(time_ns, known, air), np.nan)
+    told = []
+    for channel in study.every_channel:
+        if channel.quantity == "air_temperature":
+            log, good = study.records[channel.logger], masks[channel.logger][channel.column] == 0
+            told.append((log.time_ns[good], log.channels[channel.column][good]))
+    rows = [e for e in study.sheet.entries
+            if e.entry == "weather" and e.quantity == "air_temperature"]
+    told.append((np.array([e.start_ns for e in rows], dtype=np.int64),
+                 np.array([e.reading for e in rows])))
+    air = np.full(time_ns.shape, np.nan)
+    for known, read in told:
+        near = (nearest(time_ns, known, reach_s) >= 0) & np.isnan(air)
+        air[near] = np.interp(time_ns[near], known, read) if known.size else np.nan
+    return air
 
 
 def _housing(study: Study, masks: Masks, logger: str) -> None:
@@ -130,9 +126,7 @@ def _up_and_down(study: Study, masks: Masks, up: Channel, down: Channel) -> None
     spans = study.spans(up)
     rows = np.flatnonzero(inside(log.time_ns, spans) & ~inside(
         log.time_ns, windows(study.sheet, "swap", up.logger, up.quantity)))
-    reach_s = 0.5 * max(log.interval_s, other.interval_s) + ROUNDING_S
-    at = rows if up.logger == down.logger else nearest(
-        log.time_ns[rows], other.time_ns[:other.n_timed], reach_s)
+    at = rows if up.logger == down.logger else partners(log, rows, other)
     rows, at = rows[at >= 0], at[at >= 0]
     sent, came = masks[up.logger][up.column], masks[down.logger][down.column]
     both = sent[rows] | came[at]
@@ -143,20 +137,17 @@ def _up_and_down(study: Study, masks: Masks, up: Channel, down: Channel) -> None
         level = np.interp(log.time_ns[rows], *dark) if dark[0].size else 0.0
         for name, odd in (("brighter than the sky", more_up_than_down(back, light, 0.0)),
                           ("negative reflectance", back < level)):
-            hit = np.zeros(log.time_ns.size, dtype=bool)
-            hit[rows] = dim & odd
-            study.found(name, hit, sent, logger=up.logger, column=up.column)
+            study.found(name, chosen(sent.size, rows[dim & odd]), sent, logger=up.logger,
+                        column=up.column)
         return
     more = dim & more_up_than_down(back, light, quality.up_down_min_w_m2)
     odd = (both == 0) & ~more & improbable_albedo(
         back, light, *quality.albedo_plausible, least_down=settings.albedo.min_down_w_m2,
         zero=ZERO_U * settings.albedo.zero_offset_u_w_m2)
     for name, found in (("more light up than down", more), ("improbable albedo", odd)):
-        hit, paired = np.zeros(sent.size, dtype=bool), np.zeros(came.size, dtype=bool)
-        hit[rows[found]] = True
-        paired[at[found]] = True
-        study.found(name, hit, sent, logger=up.logger, column=up.column)
-        study.found(name, paired, came, logger=down.logger, column=down.column, told=False)
+        study.found(name, chosen(sent.size, rows[found]), sent, logger=up.logger, column=up.column)
+        study.found(name, chosen(came.size, at[found]), came, logger=down.logger,
+                    column=down.column, told=False)
 
 
 def _air(study: Study, masks: Masks, channel: Channel) -> None:
@@ -170,17 +161,16 @@ def _air(study: Study, masks: Masks, channel: Channel) -> None:
     if not rows.size:
         return
     values, air_k = log.channels[channel.column][rows], air_at(study, masks, log.time_ns[rows])
-    hit = np.zeros(mask.size, dtype=bool)
     if channel.quantity == "longwave_down":
-        hit[rows] = longwave_off(values, air_k, quality.longwave_air_low,
-                                 quality.longwave_air_high_w_m2)
-        study.found("longwave against air", hit, mask, logger=channel.logger,
-                    column=channel.column)
-        return
-    if channel.quantity == "longwave_up":
-        values = (values / SIGMA.value) ** 0.25
-    hit[rows] = far_from_air(values, air_k, quality.below_air_k, quality.above_air_k)
-    study.found("far from the air", hit, mask, logger=channel.logger, column=channel.column)
+        name, hit = "longwave against air", longwave_off(
+            values, air_k, quality.longwave_air_low, quality.longwave_air_high_w_m2)
+    else:
+        if channel.quantity == "longwave_up":
+            values = (values / SIGMA.value) ** 0.25
+        name, hit = "far from the air", far_from_air(
+            values, air_k, quality.below_air_k, quality.above_air_k)
+    study.found(name, chosen(mask.size, rows[hit]), mask, logger=channel.logger,
+                column=channel.column)
 
 
 def placed_far_from_air(study: Study, masks: Masks, this: Pass, rows: IntArray) -> BoolArray:
@@ -190,10 +180,9 @@ def placed_far_from_air(study: Study, masks: Masks, this: Pass, rows: IntArray) 
     found = far_from_air(log.channels[channel.column][rows],
                          air_at(study, masks, log.time_ns[rows]),
                          quality.below_air_k, quality.above_air_k)
-    hit = np.zeros(log.time_ns.size, dtype=bool)
-    hit[rows[found]] = True
-    study.found("far from the air", hit, masks[channel.logger][channel.column],
-                logger=channel.logger, column=channel.column)
+    study.found("far from the air", chosen(log.time_ns.size, rows[found]),
+                masks[channel.logger][channel.column], logger=channel.logger,
+                column=channel.column)
     return found
 
 
@@ -202,11 +191,14 @@ def _sky(study: Study, masks: Masks) -> None:
     heat = [p for p in study.passes if p.quantity == "temperature"]
     light = [p for p in study.passes if p.quantity == "albedo"]
     sky, quality = watch(study, masks), study.quality
+    unseen = [p for p in heat if _by_day(study, p) and not (sky and sky.covers(p))]
+    if unseen:
+        some = "" if len(unseen) == len(heat) else \
+            f" during {len(unseen)} of {len(heat)} temperature passes"
+        study.note("irradiance history", "flag", f"the sky was not watched{some}: whether the "
+                   f"light had just changed before {'them' if some else 'the temperature passes'} "
+                   "is not known", "engineering default")
     if sky is None:
-        if heat:
-            study.note("irradiance history", "flag", "the sky was not watched: whether the light "
-                       "had just changed before the temperature passes is not known",
-                       "engineering default")
         return
     had_changed = changed(sky, within_s=quality.history_s, max_w_m2=quality.history_max_w_m2)
     drifting = np.zeros(sky.time_ns.size, dtype=bool)
@@ -224,3 +216,10 @@ def _sky(study: Study, masks: Masks) -> None:
         for logger, column in sorted(heads):
             study.found(name, sky.at(hit, study.records[logger].time_ns), masks[logger][column],
                         logger=logger, column=column)
+
+
+def _by_day(study: Study, this: Pass) -> bool:
+    """Return whether the sun stood above the horizon at any record of a pass's first logger."""
+    logger = this.loggers[0]
+    window = slice(*within(study.records[logger].time_ns, this.start_ns, this.stop_ns))
+    return bool((study.sun[logger].zenith_deg[window] < 90).any())

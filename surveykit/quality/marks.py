@@ -10,13 +10,12 @@ from surveykit.intake.capped import windows
 from surveykit.intake.params import Channel
 from surveykit.quality.checks import (
     end_of_range,
-    extremely_rare,
     out_of_range,
-    physically_impossible,
     saturated,
     spikes,
     steps,
     stuck,
+    too_much_light,
 )
 from surveykit.quality.series import inside, within
 from surveykit.quality.study import CLEAR_MAXIMUM, HEAT, LIGHT, MAIN, Study
@@ -48,7 +47,8 @@ def _mark(study: Study, channel: Channel, line: Mask) -> Mask:
         "no reading": np.isnan(values) & ~log.unreadable[channel.column],
         "unreadable value": log.unreadable[channel.column],
         beyond: out_of_range(values, low, high),
-        "physically impossible": physically_impossible(values, channel.quantity, sun) & ~capped,
+        "physically impossible": ~capped & too_much_light(
+            values, channel.quantity, sun, rare=False),
     }
     if channel.quantity in MAIN:
         whole = np.where((mask == 0) & ~faults[beyond] & ~dull, values, np.nan)
@@ -64,7 +64,7 @@ def _mark(study: Study, channel: Channel, line: Mask) -> Mask:
         limits = settings.albedo if channel.quantity[:5] == "short" else settings.ndvi
         served = inside(log.time_ns, [(p.start_ns, p.stop_ns) for p in study.passes])
         faults["sun too low"] = (sun.zenith_deg > limits.zenith_max_deg) & served
-        faults["too little light"] = served & ~capped & _dim(values, channel, study, capped)
+        faults["too little light"] = served & ~capped & _dim(values, channel, study, whole)
         _short_darks(study, channel)
     legible = (line & BIT["unreadable line"]) == 0
     for name, marked in faults.items():
@@ -78,7 +78,7 @@ def _mark(study: Study, channel: Channel, line: Mask) -> Mask:
             & (mask == 0), mask, logger=channel.logger, column=channel.column)
     if quality.rare_limit_warning:
         study.found("extremely rare irradiance",
-                    extremely_rare(values, channel.quantity, sun) & (mask == 0), mask,
+                    too_much_light(values, channel.quantity, sun, rare=True) & (mask == 0), mask,
                     logger=channel.logger, column=channel.column)
     return mask
 
@@ -110,12 +110,13 @@ def _walked(study: Study, channel: Channel, mask: Mask) -> None:
         study.found(name, hit, mask, logger=channel.logger, column=channel.column)
 
 
-def _dim(values: FloatArray, channel: Channel, study: Study, capped: BoolArray) -> BoolArray:
+def _dim(values: FloatArray, channel: Channel, study: Study, whole: FloatArray) -> BoolArray:
+    """Readings under the floor of light; `whole` holds what is fit to tell the day's largest."""
     settings = study.parameters.campaign.settings
     if channel.quantity == "shortwave_down":
         floor = settings.albedo.min_down_w_m2
     elif channel.quantity in ("red_down", "nir_down"):
-        bright = values[~capped & np.isfinite(values)]
+        bright = whole[np.isfinite(whole)]
         top = float(np.quantile(bright, CLEAR_MAXIMUM)) if bright.size else 0.0
         floor = settings.ndvi.min_down_share * top
     else:

@@ -17,12 +17,12 @@ from surveykit.accounting import (
     PassRecords,
     counted,
     percent,
+    primary,
 )
 from surveykit.core import BoolArray, IntArray
 from surveykit.intake.passes import Pass, find_dwells
-from surveykit.intake.records import Records
-from surveykit.quality.consistency import ROUNDING_S, placed_far_from_air
-from surveykit.quality.series import nearest, primary, within
+from surveykit.quality.consistency import placed_far_from_air
+from surveykit.quality.series import partners, within
 from surveykit.quality.study import Masks, Study
 
 FEWEST = 2  # records that have a spread
@@ -34,14 +34,14 @@ def choose(study: Study, this: Pass, masks: Masks) -> PassRecords:
     log, sun = study.records[main], study.sun[main]
     window = np.arange(*within(log.time_ns, this.start_ns, this.stop_ns))
     mask = np.zeros(window.size, dtype=np.uint32)
-    partners: dict[str, IntArray] = {}
+    matched: dict[str, IntArray] = {}
     for channel in this.channels.values():
         if channel.logger == main:
             mask |= masks[main][channel.column][window]
             continue
-        if channel.logger not in partners:
-            partners[channel.logger] = _partners(log, window, study.records[channel.logger])
-        at = partners[channel.logger]
+        if channel.logger not in matched:
+            matched[channel.logger] = partners(log, window, study.records[channel.logger])
+        at = matched[channel.logger]
         mask |= np.where(at < 0, BIT["no partner"], masks[channel.logger][channel.column][at])
     mask |= study.off_patch(this, log.time_ns[window])
     dwells: list[tuple[int, int]] = []
@@ -60,17 +60,12 @@ def choose(study: Study, this: Pass, masks: Masks) -> PassRecords:
     lit = window[used] if used.any() else window
     zenith = float(np.mean(sun.zenith_deg[lit])) if lit.size else float("nan")
     where = np.cumsum(used) - 1
+    kept = {main: window[used]} | {name: at[used] for name, at in matched.items()}
     return PassRecords(
-        main, window[used], {name: at[used] for name, at in partners.items()}, int(window.size),
+        main, window[used], {name: kept[name] for name in matched}, int(window.size),
         dict(Counter(REASONS[i].name for i in primary(mask) if i >= 0)), refusal,
         tuple((int(where[a]), int(where[b - 1]) + 1) for a, b in dwells), zenith,
-        _flags(study, this, main, window[used], {n: at[used] for n, at in partners.items()}))
-
-
-def _partners(log: Records, window: IntArray, other: Records) -> IntArray:
-    """Return for each record of a window the nearest of another logger, or -1."""
-    reach_s = 0.5 * max(log.interval_s, other.interval_s) + ROUNDING_S
-    return nearest(log.time_ns[window], other.time_ns[:other.n_timed], reach_s)
+        _flags(study, this, kept))
 
 
 def _place(study: Study, this: Pass, window: IntArray,
@@ -119,7 +114,7 @@ def _refusal(study: Study, this: Pass, window: IntArray, mask: Mask) -> str:
         return "no record of its logger falls into the pass"
     left_s = max((this.to_ns - this.from_ns) / NS, 0.0)
     if left_s < settings.passes.min_duration_s:
-        return (f"{left_s:.0f} s of the pass lie between its uncertain edges, less than "
+        return (f"{int(left_s)} s of the pass lie between its uncertain edges, less than "
                 f"{settings.passes.min_duration_s:g} s")
     inside, faults = _faulty(mask)
     share = float(faults.sum() / max(inside.sum(), 1))
@@ -157,7 +152,7 @@ def _dark_refusal(study: Study, this: Pass, rows: IntArray) -> str:
     if channel is None or channel.quantity != "shortwave_down":
         return "the sun is below the horizon"
     log = study.records[channel.logger]
-    at = _partners(study.records[main], rows, log)
+    at = partners(study.records[main], rows, log)
     read = log.channels[channel.column][at[at >= 0]]
     read = read[np.isfinite(read)]
     if read.size and read.mean() > study.parameters.campaign.settings.albedo.min_down_w_m2:
@@ -179,19 +174,18 @@ def _note(study: Study, this: Pass, logger: str, mask: Mask, refusal: str) -> No
             study.note(check, "flag", f"{percent(off / (off + inside.sum()))} of the walk {where}",
                        CHECKS[name].source, logger=logger, surface=this.surface, pass_=this.name,
                        records=off)
-    if refusal or share > study.parameters.campaign.settings.quality.excluded_flag:
+    if refusal or share > study.quality.excluded_flag:
         study.note("records of a pass", "refuse" if refusal else "flag",
                    refusal or f"{percent(share)} of the pass's records are excluded",
                    "engineering default", logger=logger, surface=this.surface, pass_=this.name,
                    records=int(faults.sum()))
 
 
-def _flags(study: Study, this: Pass, main: str, index: IntArray,
-           partners: dict[str, IntArray]) -> tuple[str, ...]:
-    """Note what was flagged among the records a pass uses; return the flags' names."""
+def _flags(study: Study, this: Pass, kept: dict[str, IntArray]) -> tuple[str, ...]:
+    """Note what was flagged among the records `kept` of each logger; return the flags' names."""
     names = []
     for channel in this.channels.values():
-        rows = index if channel.logger == main else partners[channel.logger]
+        rows = kept[channel.logger]
         for name, hit in study.flagged.get((channel.logger, channel.column), {}).items():
             count = int(np.count_nonzero(hit[rows]))
             if count:
@@ -205,7 +199,7 @@ def _flags(study: Study, this: Pass, main: str, index: IntArray,
 
 def _missing(study: Study, this: Pass) -> None:
     """Note the loggers of a pass that hold fewer records than their interval promises."""
-    limit = study.parameters.campaign.settings.quality.missing_flag
+    limit = study.quality.missing_flag
     for name in this.loggers:
         log = study.records[name]
         if not log.interval_s > 0:

@@ -4,9 +4,11 @@ from __future__ import annotations
 
 import numpy as np
 
-from surveykit.accounting import NS, Mask
+from surveykit.accounting import NS
 from surveykit.core import BoolArray, FloatArray, IntArray
-from surveykit.intake.records import NO_TIME_NS
+from surveykit.intake.records import NO_TIME_NS, Records
+
+ROUNDING_S = 1e-3  # of printed times
 
 
 def within(time_ns: IntArray, start_ns: int, stop_ns: int) -> tuple[int, int]:
@@ -47,10 +49,20 @@ def nearest(time_ns: IntArray, other_ns: IntArray, within_s: float) -> IntArray:
     return np.where(np.abs(other_ns[pick] - time_ns) <= within_s * NS, pick, -1)
 
 
-def primary(mask: Mask) -> IntArray:
-    """Return the index of the first reason set in each mask; -1 where none is."""
-    lowest = mask & (~mask + np.uint32(1))
-    return np.where(mask == 0, -1, np.log2(np.maximum(lowest, 1)).astype(np.int64))
+def partners(log: Records, rows: IntArray, other: Records) -> IntArray:
+    """Return for each of a logger's records `rows` the nearest of another logger, or -1.
+
+    Half the longer of the two intervals is near.
+    """
+    reach_s = 0.5 * max(log.interval_s, other.interval_s) + ROUNDING_S
+    return nearest(log.time_ns[rows], other.time_ns[:other.n_timed], reach_s)
+
+
+def chosen(size: int, rows: IntArray) -> BoolArray:
+    """Return which of `size` records are among `rows`."""
+    out = np.zeros(size, dtype=bool)
+    out[rows] = True
+    return out
 
 
 def slopes(time_ns: IntArray, values: FloatArray, window_s: float) -> FloatArray:

@@ -10,13 +10,13 @@ from surveykit.accounting import BIT, NS
 from surveykit.core import BoolArray, FloatArray, IntArray
 from surveykit.intake.capped import windows
 from surveykit.intake.params import Channel
+from surveykit.intake.passes import Pass
 from surveykit.physics.sun import MISSING_NS
-from surveykit.quality.series import inside, medians, nearest
+from surveykit.quality.series import ROUNDING_S, inside, medians, nearest
 from surveykit.quality.study import CLEAR_MAXIMUM, Masks, Study
 
 STRETCH_S = 10.0  # medians of it, so that neither a hand nor the sway of a pole is a cloud
 FEWEST = 3  # of them judge a stretch
-ROUNDING_S = 1e-3  # of printed times
 
 
 @dataclass(frozen=True)
@@ -38,6 +38,11 @@ class Watch:
             out[timed] = found[row] & (ahead > 0) & (ahead <= self.width_s * NS)
         return out
 
+    def covers(self, this: Pass) -> bool:
+        """Return whether any stretch touches a pass."""
+        ends = [this.start_ns, this.stop_ns + round(self.width_s * NS)]
+        return bool(np.ptp(np.searchsorted(self.time_ns, ends)))
+
 
 def watch(study: Study, masks: Masks) -> Watch | None:
     """Return what watched the sky: a shortwave head, else the red and near-infrared pair.
@@ -46,9 +51,8 @@ def watch(study: Study, masks: Masks) -> Watch | None:
     `quality.full_light_w_m2`. None if no head looked up.
     """
     offered: dict[str, list[Channel]] = {}
-    for columns in study.channels.values():
-        for channel in columns.values():
-            offered.setdefault(channel.quantity, []).append(channel)
+    for channel in study.every_channel:
+        offered.setdefault(channel.quantity, []).append(channel)
     for channel in offered.get("shortwave_down", []):
         time_ns, values = _open(study, masks, channel)
         if values.size:

@@ -22,6 +22,7 @@ Masks = dict[str, dict[str, Mask]]
 LIGHT = ("shortwave_down", "shortwave_up", "red_down", "red_up", "nir_down", "nir_up")
 HEAT = ("brightness_temperature", "longwave_down", "longwave_up")
 MAIN = (*LIGHT, *HEAT)
+GROUND = ("brightness_temperature", "shortwave_up", "longwave_up", "red_up", "nir_up")
 CLEAR_MAXIMUM = 0.99  # quantile of a head's readings that stands for its clear maximum
 
 
@@ -36,10 +37,15 @@ class Study:
     records: dict[str, Records]
     sheet: Sheet
     passes: tuple[Pass, ...]
-    channels: dict[str, dict[str, Channel]] = field(default_factory=dict)
-    sun: dict[str, Sun] = field(default_factory=dict)
+    channels: dict[str, dict[str, Channel]]
+    sun: dict[str, Sun]
     checks: list[dict[str, Any]] = field(default_factory=list)
     flagged: dict[tuple[str, str], dict[str, BoolArray]] = field(default_factory=dict)
+
+    @property
+    def every_channel(self) -> list[Channel]:
+        """Return the channels of all loggers, in the order of the loggers."""
+        return [channel for columns in self.channels.values() for channel in columns.values()]
 
     @property
     def quality(self) -> QualitySettings:

@@ -9,22 +9,21 @@ from surveykit.core import FloatArray
 from surveykit.intake.capped import windows
 from surveykit.intake.params import Channel
 from surveykit.quality.series import within
-from surveykit.quality.study import CLEAR_MAXIMUM, LIGHT, Study
+from surveykit.quality.study import CLEAR_MAXIMUM, LIGHT, Masks, Study
 
 ENGINEERING = "engineering default"
 
 
-def support(study: Study) -> None:
+def support(study: Study, masks: Masks) -> None:
     """Note wet ground, dark readings that drifted, and panel rows too far from a pass."""
     campaign = study.parameters.campaign
     rain_mm, limit_mm = campaign.conditions.rain_48h_mm, campaign.settings.comparison.wet_rain_mm
     if rain_mm is not None and rain_mm > limit_mm:
         study.note("wet ground", "flag", f"{rain_mm:g} mm of rain in 48 h, more than {limit_mm:g}: "
                    "wet ground is darker and cooler, and of another emissivity", ENGINEERING)
-    for columns in study.channels.values():
-        for channel in columns.values():
-            if channel.quantity in LIGHT:
-                _dark_drift(study, channel)
+    for channel in study.every_channel:
+        if channel.quantity in LIGHT:
+            _dark_drift(study, channel, masks)
     _panel(study)
 
 
@@ -42,12 +41,13 @@ def dark_levels(study: Study, channel: Channel) -> tuple[FloatArray, FloatArray]
     return level[:, 0], level[:, 1]
 
 
-def _dark_drift(study: Study, channel: Channel) -> None:
+def _dark_drift(study: Study, channel: Channel, masks: Masks) -> None:
     _, dark = dark_levels(study, channel)
-    if dark.size < 2:
+    good = study.records[channel.logger].channels[channel.column][
+        masks[channel.logger][channel.column] == 0]
+    if dark.size < 2 or not good.size:
         return
-    values = study.records[channel.logger].channels[channel.column]
-    top = float(np.nanquantile(values, CLEAR_MAXIMUM))
+    top = float(np.quantile(good, CLEAR_MAXIMUM))
     share, limit = float(np.ptp(dark)) / max(top, 1e-9), study.quality.dark_drift_max
     if share > limit:
         study.note("dark drift", "flag", f"its dark reading moved by {np.ptp(dark):.3g} W m-2 "

@@ -20,7 +20,7 @@ import pytest
 from small_campaigns import LIGHT, left_behind, processes, project, run_here, start, whole
 
 from surveykit import season
-from surveykit.locking import free, locked
+from surveykit.locking import idle, locked
 
 NAME = "yard-storage"
 ROOT_USER = hasattr(os, "geteuid") and os.geteuid() == 0
@@ -168,12 +168,14 @@ def test_the_second_of_two_runs_waits_for_the_first(old):
             limit = time.monotonic() + 30
             while not said and time.monotonic() < limit:
                 time.sleep(0.02)
-            assert said == [f"{NAME}: waits for another run of it (process {os.getpid()} on "
+            assert said == [f"{NAME}: waits for another run that uses it (process {os.getpid()} on "
                             f"{socket.gethostname()})"]
-            assert not free(old, NAME)
+            with idle(old, NAME) as free:
+                assert not free
             assert not second.done()
         assert [one.word for one in second.result(timeout=60)] == ["done"]
-    assert free(old, NAME)
+    with idle(old, NAME) as free:
+        assert free
     whole(old, NAME)
     assert left_behind(old) == []
 

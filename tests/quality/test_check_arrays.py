@@ -9,13 +9,12 @@ import pytest
 from surveykit.physics.sun import Sun
 from surveykit.quality.checks import (
     end_of_range,
-    extremely_rare,
     noise_sd,
     out_of_range,
-    physically_impossible,
     saturated,
     spikes,
     steps,
+    too_much_light,
 )
 from surveykit.quality.consistency import (
     far_from_air,
@@ -37,13 +36,12 @@ def test_shortwave_limits(zenith, possible, rare, up_possible, up_rare):
     """Long & Shi 2008 with S = 1361 (upward: from memory): the limit passes, half a watt more not.
     """
     sun = Sun(*(np.full(2, v) for v in (zenith, 180.0, np.cos(np.radians(zenith)), 1361.0, 900.0)))
-    for limit, quantity, check in (
-            (possible, "shortwave_down", physically_impossible),
-            (up_possible, "shortwave_up", physically_impossible),
-            (rare, "shortwave_down", extremely_rare), (up_rare, "shortwave_up", extremely_rare)):
+    for limit, quantity, seldom in (
+            (possible, "shortwave_down", False), (up_possible, "shortwave_up", False),
+            (rare, "shortwave_down", True), (up_rare, "shortwave_up", True)):
         around = np.array([limit - 1, limit + 1])
-        assert check(around, quantity, sun).tolist() == [False, True]
-    assert not physically_impossible(np.array([9e3, 9e3]), "red_down", sun).any()
+        assert too_much_light(around, quantity, sun, rare=seldom).tolist() == [False, True]
+    assert not too_much_light(np.array([9e3, 9e3]), "red_down", sun, rare=False).any()
 
 
 def test_a_missing_reading_is_in_no_range_and_at_no_end():

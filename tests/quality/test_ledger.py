@@ -9,7 +9,7 @@ import numpy as np
 import pytest
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
-from small_survey import ALBEDO, CONTACT, NDVI, STAND_OFF, lines, row, small
+from small_survey import ALBEDO, CONTACT, KIT, NDVI, STAND_OFF, lines, row, small
 
 from surveykit.core import InputError
 
@@ -168,3 +168,34 @@ def test_a_refused_pass_uses_no_record_and_says_so(tmp_path):
     assert rows["out of range"] == 80
     assert rows["pass not evaluated"] == 40
     assert np.isfinite(chosen.zenith_deg)
+
+
+def test_a_head_that_no_pass_calls_for_is_not_said_to_be_used(tmp_path):
+    """An infrared thermometer was carried along and no temperature pass stands on the sheet."""
+    quality = small(tmp_path, [row(**ALBEDO)],
+                    {"pair": CLEAN["pair"], "thermal": CLEAN["thermal"],
+                     "weather": CLEAN["weather"]}).quality()
+    for table in (quality.ledger, quality.waterfall):
+        found = table.groupby("logger")["disposition"].agg(set)
+        assert found["thermal"] == {"outside passes"}
+        assert found["weather"] == {"used"}
+    assert quality.ledger.groupby("logger").records.sum()["thermal"] == N
+
+
+def test_a_record_that_two_passes_left_out_counts_under_the_first_reason_in_order(tmp_path):
+    """At the edge of the NDVI pass (12:01:02) the sky reading of the albedo pass is 2,500 W m-2."""
+    kit = {"heads": {**KIT["rednir-sky"], "head_radius_cm": 1.2, "columns": {
+        **KIT["pair"]["columns"], "red": KIT["rednir-sky"]["columns"]["red"],
+        "nir": KIT["rednir-sky"]["columns"]["nir"],
+        "red_g": KIT["rednir-ground"]["columns"]["red"],
+        "nir_g": KIT["rednir-ground"]["columns"]["nir"]}}}
+    log = lines("heads", kit=kit, red=70 + np.arange(160) % 7, nir=50 + np.arange(160) % 7,
+                red_g=4 + np.arange(160) % 3, nir_g=20 + np.arange(160) % 3)
+    cells = log[63].split(",")
+    log[63] = ",".join([cells[0], "2500", *cells[2:]])
+    sheet = [row(**ALBEDO, stop="12:01:20"), row(**NDVI, start="12:01:00", stop="12:02:10")]
+    quality = small(tmp_path, sheet, {"heads": log}, kit=kit,
+                    settings={"passes": {"sheet_u_s": 5.0}}).quality()
+    rows = quality.ledger[quality.ledger["pass"] == "C1-albedo-1 + C1-ndvi-1"]
+    assert dict(zip(rows.reason, rows.records, strict=True)) == {"": 19, "out of range": 1}
+    assert quality.ledger.records.sum() == 160

@@ -15,8 +15,9 @@ from small_survey import (
     small,
 )
 
+from surveykit.accounting import primary
 from surveykit.quality.checks import stuck
-from surveykit.quality.series import nearest, primary
+from surveykit.quality.series import nearest
 
 NS = 1_000_000_000
 PASS = [row(**ALBEDO)]
@@ -54,6 +55,10 @@ def test_a_pass_too_short_between_its_edges_is_refused(tmp_path):
     refusal = lost.quality().passes["C1-albedo-1"].refusal
     assert refusal == "29 s of the pass lie between its uncertain edges, less than 30 s"
     assert told(lost.quality(), "records of a pass").severity.tolist() == ["refuse"]
+    # 29.6 s is not told as 30 s, less than 30 s
+    nearly = albedo(tmp_path / "c", sheet=[row(**ALBEDO, stop="12:01:00")],
+                    settings={"passes": {"sheet_u_s": 5.2}}).quality().passes["C1-albedo-1"]
+    assert nearly.refusal.startswith("29 s of the pass lie")
 
 
 # ---- partners
@@ -252,3 +257,13 @@ def test_bright_light_with_the_computed_sun_down_asks_for_longitude_zone_or_cloc
     refusal = albedo(tmp_path, site=site).quality().passes["C1-albedo-1"].refusal
     assert refusal == ("computed sun below the horizon while the pair reads 900 W m-2: "
                        "check longitude, zone or clock")
+
+
+def test_a_few_spoilt_readings_are_no_measure_of_the_days_light(tmp_path):
+    """Three of 160 say 99,999: 1.9 %, more than lie above the quantile .99 that stands for noon."""
+    sky = lines("rednir-sky")
+    for i in (10, 11, 12):
+        sky[i] = sky[i].split(",")[0] + ",99999,99999"
+    survey = small(tmp_path, [row(**NDVI)],
+                   {"rednir-sky": sky, "rednir-ground": lines("rednir-ground")})
+    assert survey.quality().passes["C1-ndvi-1"].index.size == 120

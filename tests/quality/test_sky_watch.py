@@ -104,3 +104,28 @@ def test_contact_readings_are_held_against_the_air_only_where_they_settled(tmp_p
     assert "far from the air" in hot.passes["C1-contact-1"].refusal
     rows = hot.ledger.set_index("reason").records
     assert rows["far from the air"] > rows["pass not evaluated"]
+
+
+def test_a_pass_after_the_watching_head_was_put_away_is_told(tmp_path):
+    """The pair stops at 12:02:39; of the two passes only the one from 12:03 on was not watched."""
+    logs = {"thermal": lines("thermal", n=400), "pair": lines("pair")}
+    later = row(**STAND_OFF, start="12:03:00", stop="12:05:00")
+    (message,) = told(small(tmp_path, [*SHEET, later], logs), HISTORY).message
+    assert message.startswith("the sky was not watched during 1 of 2 temperature passes: ")
+
+
+def test_at_night_there_is_no_light_that_could_have_changed(tmp_path):
+    """The sun has set at 22:00 UTC in the west of Europe (common knowledge)."""
+    logs = {"thermal": lines("thermal", start="22:00:00")}
+    survey = small(tmp_path, [row(**STAND_OFF, start="22:00:20", stop="22:02:20")], logs)
+    assert told(survey, HISTORY).empty
+    assert survey.quality().passes["C1-standoff-1"].index.size == 120
+
+
+def test_air_read_by_hand_stands_in_where_the_logged_one_ends(tmp_path):
+    """Logged to 10:03, read by hand at 12:00: 10 degC, so ground at 80 degC is too far from it."""
+    logs = {"thermal": lines("thermal", target=80 + (readings("target", 160, 1) - 47)),
+            "weather": lines("weather", start="10:00:00", n=4, step_s=60)}
+    hand = row(entry="weather", quantity="air_temperature", start="12:00:00", reading="10")
+    found = told(small(tmp_path, [*SHEET, hand], logs), "far from the air")
+    assert found.records.tolist() == [120]

@@ -161,6 +161,8 @@ class AlbedoSettings(Strict):
     head_radius_assumed_cm: float = setting(
         4.0, "cm", "Largest radius of a head that states none, for its shade.", gt=0)
     correct_darks: bool = setting(True, "1", "Whether dark readings are taken off.")
+    correct_lag: bool = setting(
+        True, "1", "Whether light that changes is made up for where two heads differ in speed.")
     correct_gain_ratio: bool = setting(
         True, "1", "Whether the heads' gain ratio found by swapping them is used.")
     correct_surroundings: bool = setting(
@@ -228,6 +230,8 @@ class NdviSettings(Strict):
     around_ndvi_u: float = setting(
         0.25, "1", "Its standard uncertainty (paving to dense green, rectangular).", ge=0)
     correct_darks: bool = setting(True, "1", "Whether dark readings are taken off.")
+    correct_lag: bool = setting(
+        True, "1", "Whether light that changes is made up for where two heads differ in speed.")
     correct_gain_ratio: bool = setting(
         True, "1", "Whether a gain ratio by panel, swap or certificate is used.")
     correct_bands: bool = setting(
