@@ -35,7 +35,7 @@ REASONS = (
     Reason("unreadable time", "the time does not have the stated format", "file format"),
     Reason("repeated record", "the same record stands in the files twice", "order of records"),
     Reason("conflicting records", "two different records carry one time", "order of records"),
-    Reason("time stepped back", "the logger's time runs backward", "order of records"),
+    Reason("time stepped back", "the logger's time is out of order there", "order of records"),
     Reason("clock refused", "the logger's clock could not be set, so its time is not known",
            "clock evidence"),
     Reason("no reading", "the cell is empty or holds a missing code", "file format"),

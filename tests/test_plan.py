@@ -18,6 +18,7 @@ from surveykit.intake.fieldsheet import read_sheet
 from surveykit.opening import open_file
 from surveykit.physics.footprint import best_height_m, disc_share
 from surveykit.physics.walking import footprint_m, lanes, spot_height_m, walking_speed_m_s
+from surveykit.planning.day import _channel, _height
 from surveykit.statistics.pooling import passes_needed
 
 
@@ -174,6 +175,26 @@ def test_what_a_plan_assumes_is_a_setting(survey):
     need = [made.passes.set_index("quantity")["passes"]["albedo"].iloc[0] for made in (plan, wide)]
     assert need == [passes_needed(0.01, 0.005, 0.02), passes_needed(0.02, 0.005, 0.02)]
     assert need[1] > need[0]
+
+
+def test_the_wait_is_the_heads_settling_time(plan):
+    """Time constants of the demo's kit times ln(1 / .0033) = 5.714 (hand arithmetic): of a step
+    of 30 K .1 K is left."""
+    waits = plan.heights.groupby("reading")["settle_s"].first()
+    for reading, tau in {"stand-off": 0.3, "albedo": 1.0}.items():
+        assert waits[reading] == pytest.approx(5.714 * tau, rel=1e-3)
+
+
+def test_a_tilted_head_is_held_lower(survey, plan):
+    """A cone of 10 degrees tilted by 50 has a spot tan 60 - tan 40 = .893 heights long, straight
+    down 2 tan 10 = .353: held .395 as high for a spot as long (closed form)."""
+    patch = next(p for p in plan.patches if np.isfinite(p.across_m))
+    head = dataclasses.replace(_channel(survey, "brightness_temperature"), half_angle_deg=10.0)
+    down, tilted = (_height(survey, dataclasses.replace(patch, length_m=1.0, width_m=1.0),
+                                "stand-off", dataclasses.replace(head, view_angle_deg=angle),
+                                30.0, 0.5)[0] for angle in (None, 50.0))
+    assert tilted["height_m"] / down["height_m"] == pytest.approx(0.395, abs=1e-3)
+    assert tilted["footprint_m"] == pytest.approx(down["footprint_m"])
 
 
 def test_walking_by_hand():

@@ -166,17 +166,15 @@ def lanes(width_m: float, footprint: float) -> int:
     return 2 * max(1, ceil(ceil(width_m / footprint) / 2))
 
 
-def edge_margin_m(patch_m: float, height_m: float, half_angle_deg: float) -> float:
+def edge_margin_m(patch_m: float, footprint: float) -> float:
     """Return how far inside the edge a head must stay so that it sees the patch.
 
     Parameters
     ----------
     patch_m : float
         The patch's smaller side or its diameter [m].
-    height_m : float
-        Height of the head [m].
-    half_angle_deg : float
-        Half the full field of view [deg].
+    footprint : float
+        Diameter of the footprint, see `footprint_m` [m].
 
     Returns
     -------
@@ -185,10 +183,10 @@ def edge_margin_m(patch_m: float, height_m: float, half_angle_deg: float) -> flo
 
     Examples
     --------
-    >>> edge_margin_m(4.0, 0.4, 90.0), edge_margin_m(1.0, 0.4, 90.0)
+    >>> edge_margin_m(4.0, 2.4), edge_margin_m(1.0, 2.4)
     (1.2, 0.5)
     """
-    return floor(100 * min(footprint_m(height_m, half_angle_deg) / 2, patch_m / 2) + 0.5) / 100
+    return floor(100 * min(footprint / 2, patch_m / 2) + 0.5) / 100
 
 
 def settling_time_s(step: float, left: float, time_constant_s: float) -> float:

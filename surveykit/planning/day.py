@@ -114,6 +114,7 @@ def _height(survey: Survey, patch: Patch, head: str, channel: Channel, zenith_de
             contrast: float) -> tuple[dict[str, object], pd.DataFrame | None]:
     """Return the row of one patch and head, and for albedo the curve of errors over height."""
     across, half_angle = patch.across_m, channel.half_angle_deg or 90.0
+    view_angle = channel.view_angle_deg or 0.0
     planning = survey.campaign.settings.planning
     if not np.isfinite(across):
         return {"height_m": np.nan, "note": "the patch's size is not known"}, None
@@ -129,14 +130,16 @@ def _height(survey: Survey, patch: Patch, head: str, channel: Channel, zenith_de
     elif half_angle >= 89.9:
         height = across / 2 / walking.RADII_FOR_90
     else:
-        height = walking.spot_height_m(across, half_angle, planning.spot_share)
+        height = walking.spot_height_m(across, half_angle, planning.spot_share, view_angle)
     height = min(height, planning.reach_m)
-    wide = walking.footprint_m(height, half_angle)
+    wide = walking.footprint_m(height, half_angle, view_angle)
     speed = walking.walking_speed_m_s(wide, channel.time_constant_s)
     return {"height_m": height, "footprint_m": wide,
-            "margin_m": walking.edge_margin_m(across, height, half_angle),
+            "margin_m": walking.edge_margin_m(across, wide),
             "lanes": walking.lanes(patch.width_m if np.isfinite(patch.width_m) else across, wide),
             "speed_m_s": min(speed, 1.0),
+            "settle_s": walking.settling_time_s(1.0, planning.settled_share,
+                                                channel.time_constant_s),
             "note": "; ".join(filter(None, (note, "stop and hold instead of walking"
                                             if speed < planning.hold_below_m_s else "")))}, curve
 

@@ -8,7 +8,7 @@ import numpy as np
 
 from surveykit.accounting import BIT, NS
 from surveykit.core import BoolArray, FloatArray, IntArray
-from surveykit.intake.capped import windows
+from surveykit.intake.capped import PRODUCTS, windows
 from surveykit.intake.params import Channel
 from surveykit.intake.passes import Pass
 from surveykit.physics.sun import MISSING_NS
@@ -17,6 +17,7 @@ from surveykit.quality.study import CLEAR_MAXIMUM, Masks, Study
 
 STRETCH_S = 10.0  # medians of it, so that neither a hand nor the sway of a pole is a cloud
 FEWEST = 3  # of them judge a stretch
+TURNING_S = 15.0  # that it takes to turn a pair of heads over, engineering default
 
 
 @dataclass(frozen=True)
@@ -100,7 +101,7 @@ def unsteady(sky: Watch, *, window_s: float, max_sd: float, max_rate_w_m2_s: flo
 
 
 def _open(study: Study, masks: Masks, channel: Channel) -> tuple[IntArray, FloatArray]:
-    """Return good readings of a head that looked at the sky: not covered, nor about to be.
+    """Return good readings of a head that looked at the sky: not covered, nor turned over.
 
     Within `passes.settle_time_constants` time constants of a dark reading a head says little.
     """
@@ -111,13 +112,24 @@ def _open(study: Study, masks: Masks, channel: Channel) -> tuple[IntArray, Float
     settle_s = settings.passes.settle_time_constants * (channel.time_constant_s or 0.0)
     capped = inside(log.time_ns[:n], [span for kind in ("dark", "cover") for span in windows(
         study.sheet, kind, channel.logger, channel.quantity)])
-    good = (mask == 0) & ~capped
+    good = (mask == 0) & ~capped & ~inside(log.time_ns[:n], _turned(study, channel))
     floor = (settings.albedo.min_down_w_m2 if channel.quantity == "shortwave_down"
              else settings.ndvi.min_down_share * _top(values[good]))
     with np.errstate(invalid="ignore"):
         dark = log.time_ns[:n][(values < floor) | capped]
     good &= nearest(log.time_ns[:n], dark, settle_s + ROUNDING_S) < 0
     return log.time_ns[:n][good], values[good]
+
+
+def _turned(study: Study, channel: Channel) -> list[tuple[int, int]]:
+    """Return when the pair of a head was turned over, with the time it took to turn it."""
+    family = channel.quantity.partition("_")[0]
+    loggers = {"", *(c.logger for c in study.every_channel if c.quantity.startswith(family))}
+    product = PRODUCTS[family]
+    return [(row.start_ns - around, row.stop_ns + around) for row in study.sheet.entries
+            if row.entry == "swap" and row.instrument in loggers
+            and row.quantity in ("", product) and not row.reading > 0  # inverted
+            for around in [round((row.edge_u_s + TURNING_S) * NS)]]
 
 
 def _watch(study: Study, logger: str, time_ns: IntArray, values: FloatArray) -> Watch:

@@ -77,7 +77,7 @@ def window_table(windows: pd.DataFrame) -> Html:
 
 
 def height_table(heights: pd.DataFrame, labels: Labels = None) -> Html:
-    """Return one row a kind of patch and way of reading: height, footprint, lanes, speed."""
+    """Return one row a kind of patch and way of reading: height, footprint, lanes, speed, wait."""
     groups: dict[str, list[list[str | Cell]]] = {}
     alike = [name for name in heights if name != "patch"]
     told = heights.groupby(alike, sort=False, dropna=False)["patch"].agg(", ".join).reset_index() \
@@ -86,16 +86,18 @@ def height_table(heights: pd.DataFrame, labels: Labels = None) -> Html:
         known = np.isfinite(row["height_m"])
         values = [w.number(100 * row["height_m"], 0), w.number(100 * row["footprint_m"], 0),
                   w.number(100 * row["margin_m"], 0), w.number(row["lanes"], 0),
-                  w.number(row["speed_m_s"], 2)] if known else [""] * 5
+                  w.number(row["speed_m_s"], 2),
+                  w.number(row["settle_s"], 0)] if known else [""] * 6
         groups.setdefault(str(row["reading"]).replace("ndvi", "NDVI"), []).append(
             [row["patch"], w.label(row["surface"], labels), *values, row["note"]])
     heads = {"Patch": "text", "Surface": "short", f"Height,{w.NO_BREAK}cm": "number",
              f"Footprint,{w.NO_BREAK}cm": "number", f"Margin,{w.NO_BREAK}cm": "number",
              "Lanes": "number", f"Walk at most,{w.NO_BREAK}m{w.NO_BREAK}s⁻¹": "number",
-             "Note": "long"}
+             f"Wait,{w.NO_BREAK}s": "number", "Note": "long"}
     return grouped_table("Best height of the head (of a narrow one the greatest, up to 100 cm), "
-                         "the ground that matters to it, how far to stay from the edge, lanes and "
-                         "speed.", heads, [*groups.items()],
+                         "the ground that matters to it, how far to stay from the edge, lanes, "
+                         "speed, and how long to wait after a placement until the head has "
+                         "settled.", heads, [*groups.items()],
                          empty="No reading that stands off is planned, so there is no height to "
                                "choose.")
 

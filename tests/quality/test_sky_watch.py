@@ -129,3 +129,18 @@ def test_air_read_by_hand_stands_in_where_the_logged_one_ends(tmp_path):
     hand = row(entry="weather", quantity="air_temperature", start="12:00:00", reading="10")
     found = told(small(tmp_path, [*SHEET, hand], logs), "far from the air")
     assert found.records.tolist() == [120]
+
+
+def test_a_pair_turned_over_is_no_cloud(tmp_path):
+    """The sky head looks at the ground from 12:01:27 to 12:02:53, the sheet says 12:01:35 to
+    12:02:45; the pass begins at 12:03:10 under a steady sky."""
+    sky, ground = readings("sky", 420, 1), readings("ground", 420, 1)
+    up, down = sky.copy(), ground.copy()
+    up[87:173], down[87:173] = ground[87:173], sky[87:173]
+    swap = [row(entry="swap", surface="court", patch="C1", instrument="pair", start=start,
+                stop=stop, reading=word) for word, start, stop in (
+                    ("normal", "12:00:15", "12:01:20"), ("inverted", "12:01:35", "12:02:45"))]
+    heat = row(**STAND_OFF | {"start": "12:03:10", "stop": "12:05:00"})
+    logs = {"pair": lines("pair", n=420, sky=up, ground=down), "thermal": lines("thermal", n=420)}
+    assert told(small(tmp_path / "a", [heat, *swap], logs), HISTORY).empty
+    assert not told(small(tmp_path / "b", [heat], logs), HISTORY).empty  # without the rows, it is

@@ -168,6 +168,9 @@ class PlanningSettings(Strict):
         0.33, "1", "Largest spot of an infrared head, as a share of the patch.", gt=0, le=1)
     hold_below_m_s: float = setting(
         0.3, "m s-1", "Walking speed below which the plan says stop and hold.", ge=0)
+    settled_share: float = setting(
+        0.0033, "1", "Share of a step that may be left when a head counts as settled: 0.1 K of "
+        "30 K.", gt=0, lt=1)
     control_every_min: float = setting(
         20.0, "min", "Longest time between two visits to the control.", gt=0)
     walk_min: float = setting(1.0, "min", "Walk from one patch to the next.", ge=0)
