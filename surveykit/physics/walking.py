@@ -40,7 +40,7 @@ def spot(height_m: float, half_angle_deg: float, view_angle_deg: float = 0.0) ->
     Examples
     --------
     >>> print("{:.3f} {:.3f} {:.3f}".format(*spot(1.0, 22.0, 30.0)))
-    1.138 0.949 0.708
+    1.139 0.960 0.710
     """
     view, half = radians(view_angle_deg), radians(half_angle_deg)
     if view_angle_deg + half_angle_deg >= 90:
