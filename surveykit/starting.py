@@ -25,7 +25,7 @@ site:
   longitude: 0.0              # FILL IN: degrees east, west negative
   elevation_m: 0              # FILL IN
   time_zone: "..."            # FILL IN: zone of the field sheet, as Europe/Lisbon or UTC
-  sky_view: 1.0               # share of the sky seen from the ground
+  sky_view: 1.0               # share of the sky seen from the ground; or horizon_deg: [30, 10, ...]
 instruments: params/{kit}.yml   # your kit: an entry a logger
 data_folder: data/{name}
 field_sheet: field_sheet.csv

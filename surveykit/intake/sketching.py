@@ -113,6 +113,7 @@ def _entry(name: str, guess: Guess) -> Iterable[str]:
         yield from _column(column, seen)
     if seen & {"brightness_temperature"}:
         yield f"  band_um: [8, 14]  {CONFIRM}"
+        yield "  # view_angle_deg: 30  where the head looks aslant, from straight down"
     if seen & set(MAIN):
         yield f"  time_constant_s:  {FILL_IN}: time to 63 % of a step"
         yield f"  half_angle_deg:  {FILL_IN}: half of the field of view, 90 for a hemisphere"

@@ -38,6 +38,16 @@ CASES = {
         CONTROL, "  families: {dry: [lawn, worn-asphalt, lawn]}\n" + CONTROL,
         "  families: {dry: [lawn, worn-asphalt]}\n" + CONTROL,
         "comparison.families.dry: names 'lawn' twice; write each surface once"),
+    "second control alone": (
+        "  control: worn-asphalt", "  second_control: lawn",
+        "  control: worn-asphalt\n  second_control: lawn",
+        "comparison.second_control: got 'lawn' without a first to hold it against; write control"),
+    "product twice": (
+        CONDITIONS, "derived: [sri, savi, sri]\n" + CONDITIONS, "derived: [sri]\n" + CONDITIONS,
+        "derived: names 'sri' twice; write each product once"),
+    "blank file": (
+        "files: weather.csv", 'files: " "', "files: weather.csv",
+        "loggers.weather.files: got ' '; write some text"),
     "horizon above the zenith": (
         "  sky_view: 0.85", "  horizon_deg: [1, 2, 3, 100]", "  horizon_deg: [1, 2, 3, 10]",
         "line 11: site.horizon_deg[3]: got 100; write a number, at most 90"),
@@ -53,7 +63,7 @@ CASES = {
     "vegetation beside a logarithm": (
         EMISSIVITY, "{from: ndvi, form: logarithmic, vegetation: 0.98, u: 0.01}",
         "{from: ndvi, form: logarithmic, u: 0.01}",
-        "emissivity.vegetation: does not go with form: logarithmic; leave it out"),
+        "emissivity.vegetation: does not go with from: ndvi, form: logarithmic;"),
     "form of a stated emissivity": (
         EMISSIVITY, EMISSIVITY.replace("}", ", form: linear}"), EMISSIVITY,
         "emissivity.form: goes with from: ndvi only; leave it out"),
@@ -69,6 +79,11 @@ WEATHER = """\
     humidity: {quantity: relative_humidity, unit: "%"}
 """
 KIT_CASES = {
+    "a later header twice": (
+        "{column: time, zone: UTC}", "{column: [date, time, time], zone: UTC}",
+        "{column: [date, time], zone: UTC}", "weather.time.column: names 'time' twice; write each"),
+    "half a band": (RESPONSE, "band_um: [x]", RESPONSE,
+                    "thermal.band_um[0]: got 'x'; write a number"),
     "view angle of a housing": (
         "housing_temperature, unit: degC", "housing_temperature, unit: degC, view_angle_deg: 20",
         "housing_temperature, unit: degC", "thermal.columns.body.view_angle_deg: got 20 in a "
@@ -208,3 +223,10 @@ def test_what_is_at_fault_in_one_file_hides_no_fault_of_the_other(project):
     assert "watch.u_s: got 'x'" in campaign
     assert "thermal.calibration.date: got '2026-02-10', after the campaign" in kit
     assert load(project.write()).notes == ()
+
+
+def test_a_file_name_that_no_campaign_can_have_is_not_proposed(project):
+    path = project.path.rename(project.path.with_name("Mill Yard.yml"))
+    [sentence] = refused(path)
+    assert sentence.endswith("got 'mill-yard-2025-07-24' in the file Mill Yard.yml; "
+                             "name the file mill-yard-2025-07-24.yml")

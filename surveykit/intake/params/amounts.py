@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any
 
-from pydantic import Field, GetCoreSchemaHandler, GetJsonSchemaHandler, ValidationInfo
+from pydantic import GetCoreSchemaHandler, GetJsonSchemaHandler, ValidationInfo
 from pydantic.json_schema import JsonSchemaValue
 from pydantic_core import CoreSchema, core_schema
 
@@ -61,9 +61,8 @@ class BareNumber:
         if self.high < 1e300:
             number["maximum"] = self.high
         if self.setting:
-            section, name = self.setting.split(".")
-            default = getattr(getattr(Settings(), section), name)
-            number["description"] = f"u is then settings.{self.setting} (default {default:g})"
+            number["description"] = (f"u is then settings.{self.setting} "
+                                     f"(default {setting_value(None, self.setting):g})")
         return {"anyOf": [number, handler(schema)]}
 
     def _wrap(self, data: Any, info: ValidationInfo) -> Any:
@@ -105,9 +104,3 @@ def whole(amount: Amount, short_u: float | None) -> Uncertain:
     """Return a number with its u, whether that was written with it or under its short key."""
     u = short_u if amount.u is None else amount.u
     return Uncertain(value=amount.value, u=u or 0.0)
-
-
-def u_field(unit: str, description: str) -> Any:
-    """Return the field of a short u key."""
-    return Field(default=None, ge=0, description=description, json_schema_extra={
-        "write": number_words(unit, ge=0), "unit": unit})

@@ -5,6 +5,7 @@ from __future__ import annotations
 import difflib
 import re
 import unicodedata
+from collections import Counter
 from collections.abc import Iterable, Mapping
 from datetime import UTC, date, datetime
 from typing import Annotated, Any, Self
@@ -34,6 +35,12 @@ def meant(name: Any, known: Iterable[str]) -> str:
     """Return the part of a sentence that asks for the known name close to `name`, "" if none is."""
     close = nearest(name, known)
     return f"did you mean {close}? " if close else ""
+
+
+def twice(where: Loc, names: Iterable[str], what: str) -> list[Fault]:
+    """Return the fault of a list that names something twice, if it does."""
+    again = [name for name, count in Counter(names).items() if count > 1]
+    return [(where, f"names {again[0]!r} twice; write each {what} once")] if again else []
 
 
 class Strict(BaseModel):

@@ -14,12 +14,14 @@ from surveykit.intake.params.base import (
     DATE_WRITE,
     TEXT_WRITE,
     DateText,
+    Fault,
     Initials,
     Name,
     Notes,
     Strict,
     Text,
     key,
+    twice,
 )
 from surveykit.intake.params.channels import Channel
 from surveykit.intake.params.instruments import Instrument
@@ -105,6 +107,10 @@ class Campaign(Strict):
     caution: Caution | None = key(
         "A surface temperature from which the report cautions.", default=None,
         write="{temperature_degC, source}")
+
+    def faults(self) -> list[Fault]:
+        """What is to be derived is named once."""
+        return twice(("derived",), self.derived, "product")
 
     @property
     def relevant_change(self) -> RelevantChange:

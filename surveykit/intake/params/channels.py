@@ -83,11 +83,8 @@ def channel(name: str, header: str, column: Column, entry: Head, owner: str,
     units = PHYSICAL_UNITS[column.quantity]
     scale, shift = units.get(column.unit, next(iter(units.values())))
     gain, offset = column.gain or Amount(value=1.0), column.offset or Amount(value=0.0)
-    u_gain, u_offset = column.u_gain, column.u_offset
-    if gain.u is not None:
-        u_gain = gain.u / abs(gain.value)
-    if offset.u is not None:
-        u_offset = offset.u
+    u_gain = column.u_gain if gain.u is None else gain.u / abs(gain.value)
+    u_offset = column.u_offset if offset.u is None else offset.u
     if u_gain is None and u_offset is None and column.quantity in DEFAULT_U:
         u_offset = getattr(settings.temperature, DEFAULT_U[column.quantity]) / scale
     u_gain, u_offset = u_gain or 0.0, (u_offset or 0.0) * scale

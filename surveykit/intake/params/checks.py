@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 import os
+import re
 from collections.abc import Iterator, Mapping
 from pathlib import Path
 
 from surveykit.intake.params.base import Fault, Loc, meant
-from surveykit.intake.params.campaign import Campaign
+from surveykit.intake.params.campaign import CAMPAIGN_PATTERN, Campaign
 from surveykit.intake.params.heads import Calibration
 from surveykit.intake.params.instruments import Instrument
 from surveykit.intake.params.paths import path_fault
@@ -31,8 +32,9 @@ def cross_faults(
         The parameter file and the project folder.
     """
     if campaign.campaign != path.stem:
-        yield ("campaign",), f"got {campaign.campaign!r} in the file {path.name}; write " \
-                             f"{path.stem}, or name the file {campaign.campaign}.yml"
+        write = f"write {path.stem}, or " if re.match(CAMPAIGN_PATTERN, path.stem) else ""
+        yield ("campaign",), f"got {campaign.campaign!r} in the file {path.name}; {write}" \
+                             f"name the file {campaign.campaign}.yml"
     yield from _paths(campaign, root)
     loggers, surfaces = names.get("loggers", ()), names.get("surfaces", ())
     yield from clock_faults({name: use.clock for name, use in campaign.loggers.items()}, loggers)
@@ -81,7 +83,10 @@ def _comparison(
             for index, name in enumerate(names))]
     for where, name in named:
         yield from _no_surface(("comparison", *where), name, surfaces)
-    if comparison.second_control and comparison.second_control == comparison.control:
+    if comparison.second_control and not comparison.control:
+        yield ("comparison", "second_control"), f"got {comparison.second_control!r} without a " \
+            "first to hold it against; write control as well"
+    elif comparison.second_control and comparison.second_control == comparison.control:
         yield ("comparison", "second_control"), f"got {comparison.control!r}, which is control " \
             "already; write another surface"
     seen = {os.path.realpath(path): ", this file itself; write an earlier campaign's file"}

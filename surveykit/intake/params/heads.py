@@ -9,7 +9,7 @@ from typing import Annotated, Literal
 
 from pydantic import Discriminator, Field, Tag
 
-from surveykit.intake.params.amounts import Amount, BareNumber, Uncertain, given_once, u_field
+from surveykit.intake.params.amounts import Amount, BareNumber, Uncertain, given_once
 from surveykit.intake.params.base import (
     DATE_WRITE,
     TEXT_WRITE,
@@ -179,8 +179,10 @@ class Column(Head):
     range: Pair | None = key(
         "Smallest and largest reading that head and logger can give, as logged.", default=None,
         write="[low, high] as logged, two numbers, low below high")
-    u_gain: float | None = u_field("1", "Relative standard uncertainty of the gain.")
-    u_offset: float | None = u_field("", "Standard uncertainty of the offset, physical unit.")
+    u_gain: float | None = key(
+        "Relative standard uncertainty of the gain.", default=None, ge=0, unit="1")
+    u_offset: float | None = key(
+        "Standard uncertainty of the offset, physical unit.", default=None, ge=0, unit="")
     emissivity_setting: float | None = key(
         "Emissivity set in the infrared logger.", default=None, gt=0, le=1, unit="")
     reflected_setting_degC: float | None = key(  # noqa: N815 - the unit is written so

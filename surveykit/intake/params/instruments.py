@@ -10,7 +10,7 @@ from zoneinfo import ZoneInfo
 
 from pydantic import BeforeValidator, Field
 
-from surveykit.intake.params.base import TEXT_WRITE, Fault, Strict, Text, key
+from surveykit.intake.params.base import TEXT_WRITE, Fault, Strict, Text, key, twice
 from surveykit.intake.params.channels import Channel, channel
 from surveykit.intake.params.heads import Column, Head
 from surveykit.intake.params.quantities import MAIN
@@ -84,8 +84,7 @@ class TimeColumn(Strict):
     def faults(self) -> Iterator[Fault]:
         """The format must hold a whole date and time; the zone must exist."""
         count = len(self.column)
-        if len(set(self.column)) < count:
-            yield ("column",), f"names {self.column[0]!r} twice; write each header once"
+        yield from twice(("column",), self.column, "header")
         if self.format == "epoch_s":
             if count > 1:
                 yield ("column",), f"got {count} columns; epoch_s is one column: write its header"

@@ -160,11 +160,13 @@ def model_faults(
         if not under(place.path, skip):
             found.append((*_sentence(kind, item, place), place))
     # A misspelt key explains that the one it meant is missing, an entry that its list is short.
-    told = {(*place.path[:-1], nearest(str(place.path[-1]), keys_of(place.parent)))
-            for word, _, place in found if word == "unknown"}
-    told |= {place.path[:n] for *_, place in found for n in range(1, len(place.path))}
+    misspelt = {(*place.path[:-1], nearest(place.path[-1], keys_of(place.parent)))
+                for word, _, place in found if word == "unknown"}
+    entries = {place.path[:n] for word, _, place in found if word != "too_short"
+               for n in range(1, len(place.path) + 1)}
     return [(place.path, text) for word, text, place in found
-            if word not in ("missing", "too_short") or place.path not in told]
+            if not (word == "missing" and place.path in misspelt)
+            and not (word == "too_short" and place.path in entries)]
 
 
 def under(path: Loc, others: Iterable[Loc]) -> bool:
@@ -191,4 +193,4 @@ def _sentence(kind: str, item: Mapping[str, Any], place: Place) -> tuple[str, st
         write += f', in quotes: "{got}"' if "quotes" not in write else f': "{got}"'
     if kind in ("float_type", "int_type") and isinstance(got, str) and NUMBER.fullmatch(got):
         write += ", without quotes"
-    return kind, f"got {shown(got)}; write {write}"
+    return "too_short" if kind == "missing" else kind, f"got {shown(got)}; write {write}"

@@ -93,51 +93,52 @@ class _Kit:
     entries: dict[str, Instrument] = field(default_factory=dict)
     written: Mapping[str, Any] = field(default_factory=dict)
     faults: tuple[Fault, ...] = ()
-    document: Document | None = None
+    document: Document | None = None  # absent: it stands in the campaign's file
     path: Path | None = None
+    unreadable: tuple[str, ...] = ()
 
 
 def _checked(document: Document, path: Path, root: Path) -> Partly:
     data, doubtful = document.data, set[str]()
     settings = _settings(data.get("settings"))
-    try:
-        campaign = Campaign.model_validate(data, context={"settings": settings})
-        wrong = []
-    except ValidationError as error:
-        wrong = model_faults(error, Campaign, data, document.refused)
-        mended = _mended(Campaign, data, settings, lambda rest: _fill(rest, path, doubtful))
-        if mended is None:
-            return Partly(None, tuple(located(document, [*document.faults, *wrong])))
-        campaign = mended
+    campaign, wrong = _campaign(document, settings, doubtful)
+    if campaign is None:
+        return Partly(None, tuple(located(document, [*document.faults, *wrong])))
+    kit = _find_kit(data.get("instruments"), root, settings)
     at_fault = {*document.refused, *(where for where, _ in wrong),
-                *((key,) for key in doubtful & {"instruments"})}
-    sentences: tuple[str, ...] = ()
-    try:
-        kit = _find_kit(data.get("instruments"), root, settings)
-    except InputError as error:
-        kit, sentences = _Kit(), error.faults
+                *((key,) for key in doubtful & {"campaign", "instruments"})}
     names = {key: tuple(data[key]) for key in ("surfaces", "loggers")
              if isinstance(data.get(key), Mapping)} | {"kit": tuple(kit.written)}
     wrong += [(where, text) for where, text in cross_faults(campaign, names, path, root)
               if not under(where, at_fault)]
-    bad = {where[0] for where, _ in kit.faults if where}
-    used = {name: kit.entries[name] for name in names.get("loggers", ()) if name in kit.entries}
-    day = None if "date" in doubtful else campaign.date
-    own = kit_faults({name: used[name] for name in used if name not in bad}, day)
+    bad = {where[0] for where, _ in kit.faults if where} | {
+        where[1] for where in at_fault if where[0] == "instruments" and where[1:]}
+    used = {name: kit.entries[name] for name in names.get("loggers", ())
+            if name in kit.entries and name not in bad}
+    found = [*kit_faults(used, None if "date" in doubtful else campaign.date)]
+    sentences = [*kit.unreadable]
     if kit.document is None:
-        wrong += ((("instruments", *where), text) for where, text in own
-                  if not under(("instruments", *where[:1]), at_fault))
+        wrong += ((("instruments", *where), text) for where, text in found)
     else:
-        sentences = tuple(located(kit.document, [*kit.faults, *own]))
-    faults = dict.fromkeys([*located(document, [*document.faults, *wrong]), *sentences])
-    notes = () if faults else tuple(dict.fromkeys(kit_notes(used, campaign.date)))
+        sentences += located(kit.document, [*kit.faults, *found])
+    faults = tuple(dict.fromkeys([*located(document, [*document.faults, *wrong]), *sentences]))
     if faults:
         campaign = _usable(campaign, data, kit, root, doubtful)
     if "data_folder" in doubtful or path_fault(root, campaign.data_folder):
-        return Partly(None, tuple(faults))
+        return Partly(None, faults)
+    notes = () if faults else tuple(dict.fromkeys(kit_notes(used, campaign.date)))
     files = (path,) if kit.path is None else (path, kit.path)
     return Partly(Parameters(path, root, campaign, kit.entries, kit.path, files, notes),
-                  tuple(faults), frozenset(doubtful))
+                  faults, frozenset(doubtful))
+
+
+def _campaign(document: Document, settings: Settings,
+              doubtful: set[str]) -> tuple[Campaign | None, list[Fault]]:
+    try:
+        return Campaign.model_validate(document.data, context={"settings": settings}), []
+    except ValidationError as error:
+        wrong = model_faults(error, Campaign, document.data, document.refused)
+    return _mended(Campaign, document.data, settings, lambda data: _fill(data, doubtful)), wrong
 
 
 def _settings(raw: Any) -> Settings:
@@ -153,10 +154,13 @@ def _find_kit(stated: Any, root: Path, settings: Settings) -> _Kit:
     if not isinstance(stated, str) or path_fault(root, stated) or not os.path.isfile(root / stated):
         return _Kit()  # the cross checks say so
     path = root / stated
-    document = read_document(path, display_name(path, root))
+    try:
+        document = read_document(path, display_name(path, root))
+    except InputError as error:
+        return _Kit(unreadable=error.faults)
     entries, faults = read_kit(document, settings)
-    return _Kit(entries, {} if "campaign" in document.data else document.data, tuple(faults),
-                document, path)
+    written = {} if "campaign" in document.data else document.data
+    return _Kit(entries, written, tuple(faults), document, path)
 
 
 def _usable(campaign: Campaign, data: Mapping[str, Any], kit: _Kit, root: Path,
@@ -205,12 +209,11 @@ def _mended(model: type[Model], written: Any, settings: Settings,
     return None
 
 
-def _fill(data: dict[str, Any], path: Path, doubtful: set[str]) -> None:
+def _fill(data: dict[str, Any], doubtful: set[str]) -> None:
     """Fill in what is missing and not needed to read the files; note what is then doubtful."""
-    for key in ("campaign", "title"):
-        data[key] = data.get(key) or path.stem
+    data["title"] = data.get("title") or "unknown"
     stand_ins: dict[str, Any] = {
-        "date": _DAY, "instruments": "unknown", "data_folder": "unknown",
+        "campaign": "unknown", "date": _DAY, "instruments": "unknown", "data_folder": "unknown",
         "field_sheet": "unknown", "loggers": {"unknown": {"files": "unknown"}},
         "surfaces": {"unknown": {"label": "unknown"}}}
     for key, value in stand_ins.items():
@@ -224,7 +227,7 @@ def _fill(data: dict[str, Any], path: Path, doubtful: set[str]) -> None:
         site["time_zone"] = zone = "UTC"
     offset = datetime(2025, 1, 1, tzinfo=ZoneInfo(zone)).utcoffset()
     east = offset.total_seconds() / 240 if offset else 0.0
-    data["site"] = {"name": path.stem, "latitude": 0.0, "elevation_m": 0.0,
+    data["site"] = {"name": "unknown", "latitude": 0.0, "elevation_m": 0.0,
                     "longitude": (east + 180) % 360 - 180} | site
     if isinstance(data["surfaces"], dict):
         for name, surface in data["surfaces"].items():

@@ -4,9 +4,9 @@ from __future__ import annotations
 
 from typing import Annotated
 
-from pydantic import Field
+from pydantic import AfterValidator, Field
 
-from surveykit.intake.params.base import Fault, Strict, key
+from surveykit.intake.params.base import Fault, Strict, fault, key
 from surveykit.intake.params.defaults import MEMORY, STANDARD, rising, setting
 
 BSRN = "BSRN recommended limits, Long & Shi 2008"
@@ -15,28 +15,32 @@ COMPARISON = "BSRN comparison of longwave irradiance with air temperature"
 Pair = Annotated[tuple[float, float], Field(strict=False)]
 
 
+def _low_first(pair: tuple[float, float]) -> tuple[float, float]:
+    if not pair[0] < pair[1]:
+        raise fault(f"got {list(pair)}; write [low, high], two numbers, low below high")
+    return pair
+
+
+Range = Annotated[Pair, AfterValidator(_low_first)]
+
+
 class Ranges(Strict):
     """Readings outside [low, high] are excluded; SI units."""
 
-    brightness_temperature: Pair = setting((233.15, 373.15), "K", "Infrared readings.")
-    housing_temperature: Pair = setting((263.15, 333.15), "K", "Housing temperature.")
-    shortwave_down: Pair = setting((-20.0, 2200.0), "W m-2", "Downwelling shortwave.")
-    shortwave_up: Pair = setting((-20.0, 1800.0), "W m-2", "Upwelling shortwave.")
-    longwave_down: Pair = setting((40.0, 700.0), "W m-2", "Downwelling longwave.", MEMORY, BSRN)
-    longwave_up: Pair = setting((40.0, 900.0), "W m-2", "Upwelling longwave.", MEMORY, BSRN)
-    red_down: Pair = setting((-20.0, 2200.0), "W m-2", "Downwelling red.")
-    red_up: Pair = setting((-20.0, 2200.0), "W m-2", "Upwelling red.")
-    nir_down: Pair = setting((-20.0, 2200.0), "W m-2", "Downwelling near-infrared.")
-    nir_up: Pair = setting((-20.0, 2200.0), "W m-2", "Upwelling near-infrared.")
-    air_temperature: Pair = setting((223.15, 333.15), "K", "Air temperature.")
-    relative_humidity: Pair = setting((0.0, 1.05), "1", "Relative humidity.")
-    wind_speed: Pair = setting((0.0, 75.0), "m s-1", "Wind speed.")
-    air_pressure: Pair = setting((30000.0, 110000.0), "Pa", "Air pressure.")
-
-    def faults(self) -> list[Fault]:
-        """A range needs low below high."""
-        return [((name,), f"got {list(pair)}; write [low, high], two numbers, low below high")
-                for name, pair in self if not pair[0] < pair[1]]
+    brightness_temperature: Range = setting((233.15, 373.15), "K", "Infrared readings.")
+    housing_temperature: Range = setting((263.15, 333.15), "K", "Housing temperature.")
+    shortwave_down: Range = setting((-20.0, 2200.0), "W m-2", "Downwelling shortwave.")
+    shortwave_up: Range = setting((-20.0, 1800.0), "W m-2", "Upwelling shortwave.")
+    longwave_down: Range = setting((40.0, 700.0), "W m-2", "Downwelling longwave.", MEMORY, BSRN)
+    longwave_up: Range = setting((40.0, 900.0), "W m-2", "Upwelling longwave.", MEMORY, BSRN)
+    red_down: Range = setting((-20.0, 2200.0), "W m-2", "Downwelling red.")
+    red_up: Range = setting((-20.0, 2200.0), "W m-2", "Upwelling red.")
+    nir_down: Range = setting((-20.0, 2200.0), "W m-2", "Downwelling near-infrared.")
+    nir_up: Range = setting((-20.0, 2200.0), "W m-2", "Upwelling near-infrared.")
+    air_temperature: Range = setting((223.15, 333.15), "K", "Air temperature.")
+    relative_humidity: Range = setting((0.0, 1.05), "1", "Relative humidity.")
+    wind_speed: Range = setting((0.0, 75.0), "m s-1", "Wind speed.")
+    air_pressure: Range = setting((30000.0, 110000.0), "Pa", "Air pressure.")
 
 
 class QualitySettings(Strict):
@@ -69,7 +73,7 @@ class QualitySettings(Strict):
         gt=0)
     step_max_k_s: float = setting(
         5.0, "K s-1", "Change of a stand-off reading within a second that is flagged.", gt=0)
-    albedo_plausible: Pair = setting(
+    albedo_plausible: Range = setting(
         (0.02, 0.95), "1", "Share of the light that ground without snow sends back.")
     up_down_min_w_m2: float = setting(
         50.0, "W m-2", "Upwelling shortwave from which it must stay below the downwelling.",
@@ -141,9 +145,6 @@ class QualitySettings(Strict):
 
     def faults(self) -> list[Fault]:
         """Limits of the sky, of the housing and of exclusion rise."""
-        low, high = self.albedo_plausible
-        pair = [] if low < high else [(("albedo_plausible",), f"got {[low, high]}; write "
-                                       "[low, high], two numbers, low below high")]
-        return [*pair, *rising(self, "excluded_flag", "excluded_refuse"),
+        return [*rising(self, "excluded_flag", "excluded_refuse"),
                 *rising(self, "body_rate_flag_k_min", "body_rate_max_k_min"),
                 *rising(self, "overcast_index_max", "clear_index_min", "clear_index_max")]

@@ -46,12 +46,10 @@ def read_text(path: Path, name: str) -> str:
         If it is missing, no plain file, too long, binary, or not UTF-8.
     """
     try:
-        if path.is_dir():
-            raise InputError(f"{name}: is a folder; name a parameter file, such as params/x.yml")
-        if not path.exists():
-            raise InputError(f"{name}: no such file; name a parameter file, such as params/x.yml")
         if not path.is_file():
-            raise InputError(f"{name}: is no plain file; name a parameter file")
+            what = ("is a folder" if path.is_dir() else "is no plain file" if path.exists()
+                    else "no such file")
+            raise InputError(f"{name}: {what}; name a parameter file, such as params/x.yml")
         size = path.stat().st_size
         if size > MAX_BYTES:
             raise InputError(f"{name}: {size} bytes; a parameter file has at most {MAX_BYTES}: "
@@ -189,16 +187,11 @@ class _Reader(yaml.SafeLoader):
         if not isinstance(node, yaml.ScalarNode):
             self.faults.append((path, f"a list or mapping as a key in line {line}; write a name"))
             return None
-        if node.style is not None:
-            return str(node.value)
-        value, spelling = plain_reading(node.value)
-        if spelling is None and isinstance(value, str):
-            return value
         text = str(node.value)
-        self.lines.setdefault((*path, text), line)
-        if text == "<<":
+        value, spelling = (text, None) if node.style is not None else plain_reading(text)
+        if text == "<<" and spelling:
             self.refuse((*path, text), "merging is not supported; write the keys out")
-        else:
+        elif spelling or not isinstance(value, str):
             self.refuse((*path, text), f"as a key, a bare {_short(text)} is no text to every YAML "
                                        f'reader; write "{_short(text)}", in quotes')
         return text

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections import Counter
 from collections.abc import Iterator
 from datetime import UTC, datetime
 from typing import Annotated, Any, Literal
@@ -16,7 +15,6 @@ from surveykit.intake.params.amounts import (
     FromSettings,
     Uncertain,
     given_once,
-    u_field,
     whole,
 )
 from surveykit.intake.params.base import (
@@ -29,6 +27,7 @@ from surveykit.intake.params.base import (
     Text,
     fault,
     key,
+    twice,
 )
 from surveykit.intake.params.instruments import one_or_more, zone_fault
 from surveykit.intake.params.timekeeping import Clock
@@ -116,7 +115,7 @@ class LoggerUse(Strict):
 # how an emissivity is found: (keys that it needs, keys that may stand beside them)
 _WAYS = {"from: None": (("value", "u", "source"), ()),
          "from: ndvi": (("vegetation", "soil", "u"), ("form",)),
-         "form: logarithmic": (("u",), ("form",))}
+         "from: ndvi, form: logarithmic": (("u",), ("form",))}
 
 
 class Emissivity(Strict):
@@ -141,8 +140,8 @@ class Emissivity(Strict):
 
     def faults(self) -> Iterator[Fault]:
         """Each way needs its own keys and takes no others."""
-        way = f"form: {self.form}" if self.from_ == "ndvi" and self.form == "logarithmic" else (
-            f"from: {self.from_}")
+        way = f"from: {self.from_}" + (", form: logarithmic" if self.from_ == "ndvi"
+                                       and self.form == "logarithmic" else "")
         needed, optional = _WAYS.get(way, ((), ()))
         for name, info in type(self).model_fields.items():
             given = getattr(self, name) is not None
@@ -159,7 +158,7 @@ class Around(Strict):
 
     albedo: Annotated[Amount, BareNumber(None, 0.0, 1.0)] = key(
         "Its albedo.", write="a number from 0 to 1, or {value, u}")
-    u: float | None = u_field("1", "Standard uncertainty of albedo.")
+    u: float | None = key("Standard uncertainty of albedo.", default=None, ge=0, unit="1")
 
     def faults(self) -> Iterator[Fault]:
         """The u of the albedo, once."""
@@ -247,6 +246,4 @@ class Comparison(Strict):
     def faults(self) -> Iterator[Fault]:
         """A family names each surface once."""
         for family, names in self.families.items():
-            twice = [name for name, count in Counter(names).items() if count > 1]
-            if twice:
-                yield ("families", family), f"names {twice[0]!r} twice; write each surface once"
+            yield from twice(("families", family), names, "surface")

@@ -16,7 +16,6 @@ from surveykit.intake.params.defaults import (
     rising,
     setting,
 )
-from surveykit.intake.params.quality import Pair as Pair
 from surveykit.intake.params.quality import QualitySettings
 
 GUM = "JCGM 100:2008 (GUM)"

@@ -12,7 +12,6 @@ from surveykit.intake.params.amounts import (
     FromSettings,
     Uncertain,
     given_once,
-    u_field,
     whole,
 )
 from surveykit.intake.params.base import Fault, Name, Strict, key, since_epoch_ns
@@ -24,7 +23,7 @@ class Clock(Strict):
     offset_s: Annotated[Amount, BareNumber(None, -86400.0 * 366, 86400.0 * 366, "s")] = key(
         "Seconds to ADD to the logger's time; positive: its clock was slow.",
         default=0.0, validate_default=True, write="a number of seconds, or {value, u}")
-    u_s: float | None = u_field("s", "Standard uncertainty of offset_s.")
+    u_s: float | None = key("Standard uncertainty of offset_s.", default=None, ge=0, unit="s")
     drift_ppm: float = key(
         "Rate of the offset: microseconds to add for each second after drift_from.", default=0.0,
         ge=-10000, le=10000, unit="ppm")
