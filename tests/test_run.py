@@ -2,6 +2,7 @@
 
 import hashlib
 import json
+import shutil
 import subprocess
 import sys
 
@@ -41,20 +42,6 @@ def test_run_json_holds_the_hash_of_every_input(demo):
     for item in kept["inputs"]:
         assert hashlib.sha256((folder / item["path"]).read_bytes()).hexdigest() == item["sha256"]
     assert kept["seed"] == 20251
-
-
-def test_two_runs_in_two_folders_are_byte_identical(demo, tmp_path):
-    first, _ = demo
-    second = copy_project(tmp_path / "elsewhere" / "another name")
-    done = surveykit(second, "run", f"params/{DEMO[0]}.yml")
-    assert done.returncode == 0, done.stderr
-    compared = 0
-    for path in sorted((first / "reports" / DEMO[0]).rglob("*")):
-        relative = path.relative_to(first)
-        if path.is_file() and path.suffix in (".html", ".csv") or path.name == "datapackage.json":
-            assert path.read_bytes() == (second / relative).read_bytes(), relative
-            compared += 1
-    assert compared == 2 + len(PUBLISHED)
 
 
 def test_plain_papermill_gives_the_same_numbers(demo, tmp_path):
@@ -151,8 +138,8 @@ def test_the_ledger_accounts_for_every_record(demo):
     assert np.isclose(ledger.loc[ledger["disposition"] == "excluded", "reason"].eq("").sum(), 0)
 
 
-def test_a_failed_notebook_keeps_the_old_report(project):
-    assert surveykit(project, "run", f"params/{DEMO[0]}.yml").returncode == 0
+def test_a_failed_notebook_keeps_the_old_report(demo, tmp_path):
+    project = shutil.copytree(demo[0], tmp_path / "project")
     report = project / "reports" / DEMO[0] / "report.html"
     before = report.read_bytes()
     broken = project / "notebooks" / "03_surfaces.ipynb"
@@ -163,7 +150,7 @@ def test_a_failed_notebook_keeps_the_old_report(project):
     assert done.returncode == 1
     assert "ZeroDivisionError" in done.stderr
     assert report.read_bytes() == before
-    assert sorted(p.name for p in (project / "reports").iterdir()) == ["index.html", DEMO[0]]
+    assert sorted(p.name for p in (project / "reports").iterdir()) == ["index.html", *DEMO]
 
 
 def test_a_campaign_that_compares_with_itself_through_another_is_refused(project):
