@@ -213,7 +213,8 @@ def soil_adjusted(asked: Asked) -> Rows:
             whole = sum(float(part) for part in models.reflectances(x))
             passes.append(replace(
                 p, model="savi", inputs=inputs, value=float(models.MODELS["savi"](x)),
-                u_within=p.u_within * (1 + factor) * whole / (whole + factor)))
+                u_within=p.u_within / x.get("conversion_slope", 1.0) * (1 + factor) * whole
+                / (whole + factor)))
         made = pool_passes(asked.day.name, (asked.surface, "savi", ""), passes, asked.draws,
                            asked.coverage)
         yield asked.row(f"L {factor:g}", "1", made.result, value=made.value,

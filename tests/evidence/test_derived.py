@@ -200,3 +200,24 @@ def test_a_caution_of_a_longwave_pair(tmp_path):
     assert one["value"] == pytest.approx(np.quantile(each[used], 0.95), abs=1e-6)
     assert one["form"] == "longwave"
     assert one["note"].startswith("caution: upper bound")
+
+
+def test_savi_does_not_hang_on_a_conversion_of_ndvi(tmp_path):
+    """A line for NDVI says nothing of the reflectances: the same value and u with it and without.
+    """
+    sheet = [row(**NDVI | {"start": f"12:0{m}:10", "stop": f"12:0{m + 2}:30"}) for m in (0, 3, 6)]
+    line = {"slope": 0.5, "intercept": 0.4, "u": 0.0, "source": "invented",
+            "centres_nm": {"red": 670, "nir": 780}, "widths_nm": {"red": 50, "nir": 50}}
+    found = []
+    for name, more in (("plain", {}), ("converted", {"band_conversion": line})):
+        kit = {key: value | {"columns": {c: column | {"u_gain": 0.0, "u_offset": 0.0}
+                                         for c, column in value["columns"].items()}}
+               if key in HEADS else value for key, value in KIT.items()}
+        kit["rednir-ground"] = kit["rednir-ground"] | more
+        logs = {head: lines(head, n=600, kit=kit) for head in HEADS}
+        made = small(tmp_path / name, sheet, logs, kit=kit, derived=["savi"])
+        day = made.day()
+        pooled = groups(day.name, estimate_all(day, made.passes), DRAWS, coverage=0.95)
+        found.append(derived(day, pooled, DRAWS, 0.95).iloc[0])
+    assert found[1].value == pytest.approx(found[0].value, rel=1e-12)
+    assert found[1].u == pytest.approx(found[0].u, rel=1e-9)
