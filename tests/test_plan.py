@@ -195,6 +195,10 @@ def test_a_tilted_head_is_held_lower(survey, plan):
                                 30.0, 0.5)[0] for angle in (None, 50.0))
     assert tilted["height_m"] / down["height_m"] == pytest.approx(0.395, abs=1e-3)
     assert tilted["footprint_m"] == pytest.approx(down["footprint_m"])
+    aloft = dataclasses.replace(head, half_angle_deg=45.0, view_angle_deg=45.0)
+    row, _ = _height(survey, patch, "stand-off", aloft, 30.0, 0.5)
+    assert np.isnan(row["height_m"])
+    assert row["note"] == "the head looks above the horizon"
 
 
 def test_walking_by_hand():

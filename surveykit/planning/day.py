@@ -118,6 +118,8 @@ def _height(survey: Survey, patch: Patch, head: str, channel: Channel, zenith_de
     planning = survey.campaign.settings.planning
     if not np.isfinite(across):
         return {"height_m": np.nan, "note": "the patch's size is not known"}, None
+    if view_angle and view_angle + half_angle >= 90:
+        return {"height_m": np.nan, "note": "the head looks above the horizon"}, None
     curve, note = None, ""
     if head == "albedo":
         settings = survey.campaign.settings.albedo
